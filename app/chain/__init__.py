@@ -1,0 +1,1 @@
+"""Everything between the air and the sets. Read parts.py, then document.py."""

@@ -1,0 +1,1 @@
+"""The invented scenario that an empty data folder starts with."""

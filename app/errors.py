@@ -1,0 +1,52 @@
+"""What can go wrong in the job itself.
+
+AppError
+├── RequestError (ValueError)            a question that cannot be answered as asked
+│   └── RoofError                        the place: out of range, at sea, no ground
+├── TransmitterFileError (ValueError)    a register or template file
+├── ChainError (ValueError)              a chain or a part of it
+├── NotStoredError (LookupError)         a name or id that the store does not hold
+├── StoreError (OSError)                 the data folder or its database
+└── ModeError (ValueError)                an unknown system, mode or channel raster
+
+Each message says what came, what is allowed and what to do next.
+`field` and `allowed` travel with it for the page.
+"""
+
+
+class AppError(Exception):
+    """Root of the package; carries what the page needs to point at the field."""
+
+    def __init__(self, message: str, *, field: str | None = None, allowed: str | None = None) -> None:
+        super().__init__(message)
+        self.message = message
+        self.field = field
+        self.allowed = allowed
+
+
+class RequestError(AppError, ValueError):
+    """A question that cannot be answered as it was asked."""
+
+
+class RoofError(RequestError):
+    """The place cannot be a roof: out of range, far out at sea, without ground."""
+
+
+class TransmitterFileError(AppError, ValueError):
+    """A file of transmitters that cannot be read at all (bad rows are listed, not raised)."""
+
+
+class ChainError(AppError, ValueError):
+    """A chain or one of its parts is not possible as described."""
+
+
+class NotStoredError(AppError, LookupError):
+    """A name or id that the store does not hold."""
+
+
+class StoreError(AppError, OSError):
+    """The data folder or its database cannot be used."""
+
+
+class ModeError(AppError, ValueError):
+    """A broadcast system, mode or channel raster that is not in the tables."""

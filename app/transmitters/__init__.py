@@ -1,0 +1,1 @@
+"""Masts and what they radiate. Read model.py, then store.py and template.py."""

@@ -1,0 +1,1 @@
+"""The page and the API: translate and nothing more. Read main.py."""

@@ -1,0 +1,1 @@
+"""What lies under a path: elevation, water, cover. Read mosaic.py, then profile.py."""
