@@ -1,0 +1,110 @@
+"""Every value we chose ourselves, with the reason; shown to the user and changeable per request."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from app.errors import RequestError
+
+
+@dataclass(frozen=True, slots=True)
+class Assumption:
+    """One value of ours."""
+
+    id: str
+    value: float
+    unit: str
+    lowest: float
+    highest: float
+    reason: str
+    source: str  # published figure beside it, or "our choice"
+
+
+def _table(*rows: Assumption) -> dict[str, Assumption]:
+    return {row.id: row for row in rows}
+
+
+OURS = "our choice, not measured by us"
+
+ASSUMPTIONS: dict[str, Assumption] = _table(
+    # the path
+    Assumption("delta_n_per_km", 40.0, "N/km", 20, 156, "median lapse of refractivity, gives k = 1.34", "Rec. ITU-R P.452 default for temperate land; from memory"),
+    # the receiving chain
+    Assumption("reserve_db", 3.0, "dB", 0, 20, "ageing, weather and leaves between two visits", "common practice, no source"),
+    # errors, one normal each (standard deviations)
+    Assumption("roof_sd_db", 2.0, "dB", 0, 15, "what one roof does to all signals alike", OURS),
+    Assumption("path_clear_sd_db", 3.0, "dB", 0, 20, "clear by 0.6 of the first Fresnel zone or more", OURS),
+    Assumption("path_grazing_sd_db", 5.0, "dB", 0, 20, "ray touching the ground", OURS),
+    Assumption("path_obstructed_sd_db", 7.0, "dB", 0, 20, "ground one Fresnel radius into the line", OURS),
+    Assumption("path_beyond_horizon_sd_db", 8.0, "dB", 0, 20, "beyond the horizon of the smooth Earth", OURS),
+    Assumption("path_bearing_correlation", 0.5, "-", 0, 0.95, "share of the path error that neighbouring bearings have in common", OURS),
+    Assumption("path_bearing_scale_deg", 20.0, "deg", 1, 180, "difference of bearing over which that share fades by e", OURS),
+    Assumption("single_method_factor", 1.4, "-", 1, 3, "path error where only P.1546 answers", OURS),
+    Assumption("disagreement_free_db", 6.0, "dB", 0, 30, "difference between the methods that adds no doubt", OURS),
+    Assumption("disagreement_sd_max_db", 6.0, "dB", 0, 20, "most that a difference between the methods adds", OURS),
+    Assumption("band_sd_db", 2.0, "dB", 0, 15, "one mast and band", OURS),
+    Assumption("emission_sd_db", 2.5, "dB", 0, 15, "one channel", OURS),
+    Assumption("fade_sd_share", 0.4, "-", 0, 1, "spread of the fade as a share of it", OURS),
+    Assumption("aerial_gain_sd_db", 1.5, "dB", 0, 10, "catalogue gain and pointing", "common practice, no source"),
+    Assumption("aerial_own_build_sd_db", 4.0, "dB", 0, 15, "own build without a measured gain", OURS),
+    Assumption("off_axis_sd_db", 3.0, "dB", 0, 15, "gain beyond half the beamwidth", OURS),
+    Assumption("cross_polar_sd_db", 4.0, "dB", 0, 15, "response to the other polarisation", OURS),
+    Assumption("feeder_sd_db", 1.0, "dB", 0, 10, "feeder and joints", OURS),
+    Assumption("erp_unknown_sd_db", 4.0, "dB", 0, 15, "power or pattern not stated by the register", OURS),
+    Assumption("erp_unknown_mean_db", -3.0, "dB", -20, 0, "wanted power where only the maximum is stated", OURS),
+    # the loft and the cross-polar answer
+    Assumption("loft_covering_db", 5.0, "dB", 0, 40, "dry tile or slate over the aerial; foil and metal lose far more", "common practice, no source"),
+    Assumption("cross_polar_db", 16.0, "dB", 0, 40, "aerial and emission of different polarisation", "Rec. ITU-R BT.419-3 Note 3, from memory"),
+    # fade
+    Assumption("least_fade_99_db", 1.5, "dB", 0, 10, "every path fades a little", OURS),
+    Assumption("sea_fade_99_db", 3.0, "dB", 0, 20, "line of sight over more than 20 km of sea: reflections", OURS),
+    Assumption("fade_share_90", 0.55, "-", 0, 1, "fade to 90 % as a share of that to 99 %", "ratio of the normal quantiles 1.28 / 2.33"),
+    # the decision
+    Assumption("worth_per_multiplex", 50.0, "currency", 0, 1e6, "what one more wanted multiplex is worth", "yours to set"),
+    Assumption("reading_cost", 10.0, "currency", 0, 1e6, "what taking a reading costs", "yours to set"),
+)
+
+
+class Assumptions:
+    """The values of one request: defaults with the changes that came with it."""
+
+    def __init__(self, changes: Mapping[str, float] | None = None) -> None:
+        """Take changes by id; unknown ids and impossible values are refused."""
+        self.changes: dict[str, float] = {}
+        for key, value in (changes or {}).items():
+            known = ASSUMPTIONS.get(key)
+            if known is None:
+                raise RequestError(
+                    f'assumption "{key}" is not known: use one of {", ".join(ASSUMPTIONS)}',
+                    field=f"assumptions.{key}",
+                    allowed=", ".join(ASSUMPTIONS),
+                )
+            if not (math.isfinite(value) and known.lowest <= value <= known.highest):
+                raise RequestError(
+                    f"assumption {key} is {value:g}: use {known.lowest:g} to {known.highest:g} {known.unit}",
+                    field=f"assumptions.{key}",
+                    allowed=f"{known.lowest:g} to {known.highest:g}",
+                )
+            self.changes[key] = float(value)
+
+    def value(self, key: str) -> float:
+        """Value in force for one assumption."""
+        return self.changes.get(key, ASSUMPTIONS[key].value)
+
+    def document(self) -> list[dict[str, object]]:
+        """Return every assumption with the value in force, for the answer and the page."""
+        return [
+            {
+                "id": row.id,
+                "value": self.value(row.id),
+                "default": row.value,
+                "unit": row.unit,
+                "lowest": row.lowest,
+                "highest": row.highest,
+                "reason": row.reason,
+                "source": row.source,
+            }
+            for row in ASSUMPTIONS.values()
+        ]
