@@ -2,7 +2,8 @@
 
 PropagationError
 ├── RangeError (ValueError)      an input outside the Recommendation
-└── ProfileError (ValueError)    a profile that is no path
+├── ProfileError (ValueError)    a profile that is no path
+└── MapError (ValueError)        a digital map that is missing or damaged
 """
 
 
@@ -16,3 +17,7 @@ class RangeError(PropagationError, ValueError):
 
 class ProfileError(PropagationError, ValueError):
     """A profile that is no path: unordered, too short or with missing heights."""
+
+
+class MapError(PropagationError, ValueError):
+    """A digital map that is missing or not of the published form."""
