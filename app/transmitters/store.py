@@ -1,0 +1,254 @@
+"""What is on the air, and the user's roofs and chains, in one SQLite file of the data folder."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from datetime import date
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from app.errors import RequestError, StoreError
+from app.transmitters import documents
+from app.transmitters.database import Database
+from app.transmitters.documents import Document
+from app.transmitters.model import Emission, Multiplex, Transmitter
+from app.transmitters.rows import EMISSION, TRANSMITTER, Source, emission_of, write_source
+from terrain.geodesy import distance_and_bearing
+
+DEMO_SOURCE = "demo"  # left out as soon as there is any other source
+
+Found = tuple[Emission, Transmitter, float, float]
+
+_KM_PER_DEGREE = 110.5  # shortest degree of latitude on WGS 84 is 110.57 km, at the equator
+_SHOWN = f"(t.source != '{DEMO_SOURCE}' OR NOT EXISTS (SELECT 1 FROM source WHERE id != '{DEMO_SOURCE}'))"
+
+
+@dataclass(frozen=True, slots=True)
+class Replaced:
+    """What an import changed: ids of emissions."""
+
+    added: tuple[str, ...]
+    changed: tuple[str, ...]
+    gone: tuple[str, ...]
+
+
+class Store:
+    """Transmitters, multiplexes, emissions and sources; roofs and chains as JSON documents.
+
+    Every call opens its own connection, so one Store may serve many threads.
+    Every method may raise StoreError.
+    """
+
+    def __init__(self, database: Database) -> None:
+        """Use Store.open."""
+        self._database = database
+
+    @classmethod
+    def open(cls, data_dir: Path, wait_s: float = 5.0) -> Store:
+        """Open the store of a data folder; wait_s seconds of patience with another writer."""
+        return cls(Database.open(Path(data_dir), wait_s))
+
+    @property
+    def path(self) -> Path:
+        """The database file."""
+        return self._database.path
+
+    @property
+    def read_only(self) -> bool:
+        """Whether the folder cannot be written."""
+        return self._database.read_only
+
+    # What is on the air
+
+    def emissions_within(
+        self, latitude_deg: float, longitude_deg: float, reach_km: float, day: date | None = None
+    ) -> list[Found]:
+        """Emissions on the air on a day (default today) within a distance, nearest first.
+
+        Each with its transmitter, the WGS 84 distance [km] and the true bearing at the given place [deg].
+        """
+        today = (day or date.today()).isoformat()
+        boxes = _boxes(latitude_deg, longitude_deg, reach_km)
+        inside = " OR ".join(["(north >= ? AND south <= ? AND east >= ? AND west <= ?)"] * len(boxes))
+        with self._database.transaction() as connection:
+            rows = connection.execute(
+                f"SELECT {EMISSION}, {TRANSMITTER} FROM transmitter t "
+                "JOIN emission e ON e.transmitter = t.number "
+                f"WHERE t.number IN (SELECT number FROM transmitter_box WHERE {inside}) "
+                f"AND {_SHOWN} AND e.is_on "
+                "AND (e.valid_from IS NULL OR e.valid_from <= ?) AND (e.valid_to IS NULL OR e.valid_to >= ?)",
+                [*(edge for box in boxes for edge in box), today, today],
+            ).fetchall()
+        if not rows:
+            return []
+        transmitters = {row[16]: Transmitter(*row[16:]) for row in rows}
+        masts = list(transmitters.values())
+        distance_km, bearing_deg = distance_and_bearing(
+            latitude_deg,
+            longitude_deg,
+            np.array([mast.latitude_deg for mast in masts]),
+            np.array([mast.longitude_deg for mast in masts]),
+        )
+        away = {
+            mast.id: (float(d), float(b)) for mast, d, b in zip(masts, distance_km, bearing_deg, strict=True)
+        }
+        found = [(emission_of(row[:16]), transmitters[row[16]], *away[row[16]]) for row in rows]
+        return sorted(
+            (f for f in found if f[2] <= reach_km), key=lambda f: (f[2], f[1].id, f[0].frequency_mhz, f[0].id)
+        )
+
+    def nearest_transmitter(
+        self, latitude_deg: float, longitude_deg: float
+    ) -> tuple[Transmitter, float] | None:
+        """Return the nearest mast that is on the air today and its distance [km]; None in an empty store."""
+        for reach_km in (300, 1500, 21_000):
+            found = self.emissions_within(latitude_deg, longitude_deg, reach_km)
+            if found:
+                return found[0][1], found[0][2]
+        return None
+
+    def transmitters(self) -> list[Transmitter]:
+        """Every transmitter in use, by id."""
+        with self._database.transaction() as connection:
+            found = connection.execute(
+                f"SELECT {TRANSMITTER} FROM transmitter t WHERE {_SHOWN} ORDER BY t.id"
+            )
+            return [Transmitter(*row) for row in found]
+
+    def emissions(self) -> list[Emission]:
+        """Every emission in use, on the air or not, by id."""
+        with self._database.transaction() as connection:
+            rows = connection.execute(
+                f"SELECT {EMISSION} FROM emission e JOIN transmitter t ON t.number = e.transmitter "
+                f"WHERE {_SHOWN} ORDER BY e.id"
+            )
+            return [emission_of(row) for row in rows]
+
+    def multiplexes(self) -> dict[str, Multiplex]:
+        """Every multiplex in use, by id."""
+        with self._database.transaction() as connection:
+            rows = connection.execute(
+                f"SELECT id, name FROM multiplex t WHERE {_SHOWN} ORDER BY id, source DESC"
+            )
+            return {row[0]: Multiplex(*row) for row in rows}
+
+    def sources(self) -> list[Source]:
+        """Every source, the demo among them even where it is left out."""
+        with self._database.transaction() as connection:
+            rows = connection.execute(
+                "SELECT id, name, licence, attribution, rows_refused, rows_kept, imported_at "
+                "FROM source ORDER BY id"
+            )
+            return [Source(*row) for row in rows]
+
+    def replace_source(
+        self,
+        source: Source,
+        transmitters: Iterable[Transmitter],
+        emissions: Iterable[Emission],
+        multiplexes: Iterable[Multiplex],
+    ) -> Replaced:
+        """Put a source's rows in place of those it had, all or nothing.
+
+        Raises
+        ------
+        StoreError
+            An id is used twice or belongs to another source, or an emission names an unknown
+            transmitter or multiplex.
+        """
+        emissions = list(emissions)
+        new = {emission.id: emission for emission in emissions}
+        with self._database.transaction(write=True) as connection:
+            before = {
+                row[0]: emission_of(row)
+                for row in connection.execute(
+                    f"SELECT {EMISSION} FROM emission e JOIN transmitter t ON t.number = e.transmitter "
+                    "WHERE e.source = ?",
+                    [source.id],
+                )
+            }
+            try:
+                write_source(connection, source, transmitters, emissions, multiplexes)
+            except sqlite3.IntegrityError as error:
+                raise StoreError(
+                    f'source "{source.id}" was not stored ({error}): every id once and in no other source, '
+                    "each emission with a transmitter and a multiplex of the same source; nothing was changed"
+                ) from error
+        return Replaced(
+            added=tuple(sorted(new.keys() - before.keys())),
+            changed=tuple(sorted(key for key in new.keys() & before.keys() if new[key] != before[key])),
+            gone=tuple(sorted(before.keys() - new.keys())),
+        )
+
+    # Roofs and chains: {"id", "name", "created", "updated", …}
+
+    def list_roofs(self) -> list[Document]:
+        """Every stored roof, by name."""
+        with self._database.transaction() as connection:
+            return documents.listed(connection, "roof")
+
+    def get_roof(self, roof_id: str) -> Document:
+        """One roof by id; NotStoredError if there is none."""
+        with self._database.transaction() as connection:
+            return documents.one(connection, "roof", roof_id)
+
+    def put_roof(self, document: Mapping[str, Any]) -> Document:
+        """Store a roof under its "id", or as a new one without; return it as stored."""
+        with self._database.transaction(write=True) as connection:
+            return documents.put(connection, "roof", document)
+
+    def delete_roof(self, roof_id: str) -> None:
+        """Remove one roof; NotStoredError if there is none."""
+        with self._database.transaction(write=True) as connection:
+            documents.remove(connection, "roof", roof_id)
+
+    def list_chains(self) -> list[Document]:
+        """Every stored chain, by name."""
+        with self._database.transaction() as connection:
+            return documents.listed(connection, "chain")
+
+    def get_chain(self, chain: str) -> Document:
+        """One chain by id or by name; NotStoredError if there is none."""
+        with self._database.transaction() as connection:
+            return documents.one(connection, "chain", chain)
+
+    def put_chain(self, document: Mapping[str, Any]) -> Document:
+        """Store a chain under its "id", or as a new one without; its name may be taken only once."""
+        with self._database.transaction(write=True) as connection:
+            return documents.put(connection, "chain", document)
+
+    def delete_chain(self, chain: str) -> None:
+        """Remove one chain by id or by name; NotStoredError if there is none."""
+        with self._database.transaction(write=True) as connection:
+            documents.remove(connection, "chain", chain)
+
+
+def _boxes(
+    latitude_deg: float, longitude_deg: float, reach_km: float
+) -> list[tuple[float, float, float, float]]:
+    """South, north, west and east of one or two boxes round all that is in reach, a little too large."""
+    if not (-90 <= latitude_deg <= 90 and -180 <= longitude_deg <= 180 and reach_km >= 0):
+        raise RequestError(
+            f"position {latitude_deg}, {longitude_deg} with a reach of {reach_km} km: "
+            "use latitudes -90 to 90, longitudes -180 to 180 degrees and a reach of 0 km or more"
+        )
+    radius_deg = reach_km / _KM_PER_DEGREE * 1.01 + 1e-4  # 1 % for the ellipsoid against the sphere below
+    south, north = latitude_deg - radius_deg, latitude_deg + radius_deg
+    if south <= -90 or north >= 90:
+        return [(south, north, -180.0, 180.0)]
+    # Widest longitude of a small circle on the sphere: sin = sin(radius) / cos(latitude).
+    ratio = np.sin(np.radians(radius_deg)) / np.cos(np.radians(latitude_deg))
+    half_deg = float(np.degrees(np.arcsin(min(1.0, ratio)))) * 1.01 if radius_deg < 90 else 180.0
+    west, east = longitude_deg - half_deg, longitude_deg + half_deg
+    if east - west >= 360:
+        return [(south, north, -180.0, 180.0)]
+    boxes = [(south, north, max(west, -180.0), min(east, 180.0))]
+    if west < -180:
+        boxes.append((south, north, west + 360, 180.0))
+    if east > 180:
+        boxes.append((south, north, -180.0, east - 360))
+    return boxes
