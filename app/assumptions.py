@@ -57,6 +57,9 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
     # the loft and the cross-polar answer
     Assumption("loft_covering_db", 5.0, "dB", 0, 40, "dry tile or slate over the aerial; foil and metal lose far more", "common practice, no source"),
     Assumption("cross_polar_db", 16.0, "dB", 0, 40, "aerial and emission of different polarisation", "Rec. ITU-R BT.419-3 Note 3, from memory"),
+    # the aerial beyond its table and in its nulls
+    Assumption("aerial_out_of_range_db_per_octave", 40.0, "dB", 0, 200, "gain beyond the frequencies of the aerial's table falls from its end", OURS),
+    Assumption("dipole_null_db", 20.0, "dB", 3, 60, "deepest null of a dipole among roofs: reflections fill it", OURS),
     # fade
     Assumption("least_fade_99_db", 1.5, "dB", 0, 10, "every path fades a little", OURS),
     Assumption("sea_fade_99_db", 3.0, "dB", 0, 20, "line of sight over more than 20 km of sea: reflections", OURS),
