@@ -151,8 +151,10 @@ class Store:
         transmitters: Iterable[Transmitter],
         emissions: Iterable[Emission],
         multiplexes: Iterable[Multiplex],
+        *,
+        dry_run: bool = False,
     ) -> Replaced:
-        """Put a source's rows in place of those it had, all or nothing.
+        """Put a source's rows in place of those it had, all or nothing; a dry run only tells the changes.
 
         Raises
         ------
@@ -171,6 +173,7 @@ class Store:
                     [source.id],
                 )
             }
+            connection.execute("SAVEPOINT before")
             try:
                 write_source(connection, source, transmitters, emissions, multiplexes)
             except sqlite3.IntegrityError as error:
@@ -178,6 +181,8 @@ class Store:
                     f'source "{source.id}" was not stored ({error}): every id once and in no other source, '
                     "each emission with a transmitter and a multiplex of the same source; nothing was changed"
                 ) from error
+            if dry_run:
+                connection.execute("ROLLBACK TO before")
         return Replaced(
             added=tuple(sorted(new.keys() - before.keys())),
             changed=tuple(sorted(key for key in new.keys() & before.keys() if new[key] != before[key])),

@@ -9,7 +9,8 @@ from pyproj import Geod
 
 from app.errors import NotStoredError, RequestError, StoreError
 from app.transmitters.model import Emission, Multiplex, Transmitter
-from app.transmitters.store import Source, Store
+from app.transmitters.rows import Source
+from app.transmitters.store import Store
 
 
 def mast(key="hill", lat=44.0, lon=-37.0, source="mine", **more):
