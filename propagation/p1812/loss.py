@@ -195,7 +195,7 @@ def loss_of_path(
     absent = (refractivity < 200) | (refractivity > 500)
     if absent.any():
         raise RangeError(
-            f"sea-level refractivity {refractivity[absent].flat[0]:g} N occurs nowhere on Earth: use 200 to 500 N"
+            f"sea-level refractivity {refractivity[absent].flat[0]:g} N occurs nowhere: use 200 to 500 N"
         )
     power = np.asarray(erp_kw, dtype=float)
     if (power <= 0).any():
