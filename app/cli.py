@@ -1,0 +1,259 @@
+"""The same questions on the command line: parse, call one function of app, show."""
+
+from __future__ import annotations
+
+import json
+import socket
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Annotated, Any
+
+import typer
+
+from app.errors import AppError, RequestError
+from propagation.errors import PropagationError
+from terrain.errors import TerrainError
+
+main = typer.Typer(
+    name="gainworth",
+    help="Which television multiplexes will this roof receive, and is a better aerial worth its price?",
+    no_args_is_help=True,
+    add_completion=False,
+    pretty_exceptions_enable=False,
+)
+transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
+terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
+chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
+main.add_typer(transmitters, name="transmitters")
+main.add_typer(terrain, name="terrain")
+main.add_typer(chains, name="chains")
+
+Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
+WRONG, MENDABLE = 1, 2
+
+
+@contextmanager
+def _mendable() -> Iterator[None]:
+    """Print what the user can mend as one line and leave with 2."""
+    try:
+        yield
+    except (AppError, TerrainError, PropagationError) as error:
+        typer.echo(str(error), err=True)
+        raise typer.Exit(MENDABLE) from error
+
+
+def _show(document: Any, as_json: bool, text: Callable[[], str]) -> None:
+    typer.echo(json.dumps(document, ensure_ascii=False, indent=1) if as_json else text().rstrip("\n"))
+
+
+def _pair(text: str, what: str, example: str) -> tuple[float, float]:
+    """Two numbers with a comma between them."""
+    try:
+        first, second = (float(part) for part in text.split(","))
+    except ValueError:
+        raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
+    return first, second
+
+
+@main.command()
+def serve(
+    host: Annotated[str | None, typer.Option(help="Address to listen on.")] = None,
+    port: Annotated[int | None, typer.Option(help="Port to listen on; 0 takes a free one.")] = None,
+    open_page: Annotated[bool, typer.Option("--open", help="Open the page in the browser.")] = False,
+    as_json: Json = False,
+) -> None:
+    """Serve the page and the API until stopped; print the address."""
+    import uvicorn
+
+    from app.paths import data_dir
+    from app.settings import load_settings
+    from app.web.main import create_app
+    from app.world import open_world
+
+    with _mendable():
+        settings = load_settings(data_dir())
+        changes = {key: value for key, value in (("host", host), ("port", port)) if value is not None}
+        settings = settings.model_copy(update=changes)
+        listener = _listener(settings.host, settings.port)
+        world = open_world()
+    address = f"http://{f'[{settings.host}]' if ':' in settings.host else settings.host}:{listener.getsockname()[1]}/"
+    _show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
+    sys.stdout.flush()
+    if open_page:
+        typer.launch(address)
+    config = uvicorn.Config(create_app(world.store, world.ground, settings), log_level="warning")
+    uvicorn.Server(config).run(sockets=[listener])
+
+
+def _listener(host: str, port: int) -> socket.socket:
+    if not 0 <= port <= 65535:
+        raise RequestError(f"port {port} is not possible: use 0 to 65535", field="port", allowed="0 to 65535")
+    try:
+        family, kind, proto, _, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
+        listener = socket.socket(family, kind, proto)
+        listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        listener.bind(address)
+        listener.listen(128)
+    except OSError as error:
+        raise RequestError(
+            f"cannot listen on {host} port {port} ({error.strerror or error}): use another one with --port, or --port 0 for a free one",
+            field="port",
+        ) from error
+    return listener
+
+
+@main.command()
+def assess(
+    at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
+    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")] = 10.0,
+    chain: Annotated[list[str] | None, typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored.")] = None,
+    now: Annotated[str | None, typer.Option(metavar="NAME|nothing", help="What is up now.")] = None,
+    want: Annotated[list[str] | None, typer.Option(metavar="MULTIPLEX", help="Wanted multiplex; may be repeated. Default: those that differ.")] = None,
+    worth: Annotated[float | None, typer.Option(metavar="V", help="What one more wanted multiplex is worth.")] = None,
+    reach: Annotated[float, typer.Option(metavar="KM", help="How far to look for transmitters.")] = 150.0,
+    method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
+    availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.")] = 99,
+    surroundings: Annotated[str, typer.Option(help="open, suburban, urban or trees.")] = "open",
+    as_json: Json = False,
+) -> None:
+    """Say what a roof receives with each chain, and whether a better one is worth its price."""
+    from app.planner import assess as answer_to
+    from app.request import AssessRequest
+    from app.roof import Roof
+    from app.telling import told
+    from app.world import open_world
+
+    with _mendable():
+        latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+        request = AssessRequest(
+            roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
+            chains=tuple(chain) if chain else None,
+            now=now,
+            wanted=tuple(want) if want else None,
+            worth_per_multiplex=worth,
+            availability_percent=availability,
+            reach_km=reach,
+            method=method,  # type: ignore[arg-type]  # AssessRequest checks the word
+        )
+        world = open_world()
+        document = answer_to(request, world.store, world.ground)
+    _show(document, as_json, lambda: told(document))
+
+
+@main.command()
+def path(
+    start: Annotated[str, typer.Option("--from", metavar="LAT,LON", help="Position of the transmitter.")],
+    end: Annotated[str, typer.Option("--to", metavar="LAT,LON", help="Position of the roof.")],
+    frequency: Annotated[float, typer.Option(metavar="MHZ", help="Centre frequency.")],
+    heights: Annotated[str, typer.Option(metavar="TX,RX", help="Antenna and aerial above ground, in m.")] = "100,10",
+    polarisation: Annotated[str, typer.Option(help="horizontal or vertical.")] = "horizontal",
+    as_json: Json = False,
+) -> None:
+    """Compute one path with both methods and show every term, for 1 kW ERP."""
+    from app.path_query import path_document, told_path
+    from app.world import open_world
+
+    with _mendable():
+        document = path_document(
+            open_world().ground,
+            *_pair(start, "--from", "44.5,-37.2"),
+            *_pair(end, "--to", "44.3,-37.3"),
+            frequency,
+            *_pair(heights, "--heights", "150,10"),
+            polarisation,
+        )
+    _show(document, as_json, lambda: told_path(document))
+
+
+@main.command()
+def verify(
+    folder: Annotated[Path | None, typer.Argument(metavar="[DIR]", help="Worked examples; default: those in the package.")] = None,
+    as_json: Json = False,
+) -> None:
+    """Replay published worked examples; leaves with 1 if a case is off by more than 1e-6 dB."""
+    from app.verify import verify as replay
+
+    with _mendable():
+        report = replay(folder)
+    _show(report.document(), as_json, report.text)
+    if report.failed:
+        raise typer.Exit(WRONG)
+
+
+@transmitters.command("import")
+def import_file(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="CSV in our template's columns.")],
+    dry_run: Annotated[bool, typer.Option("--dry-run", help="Check only; store nothing.")] = False,
+    as_json: Json = False,
+) -> None:
+    """Import transmitters; good rows are kept, refused rows are listed."""
+    from app.paths import data_dir
+    from app.transmitters.store import Store
+    from app.transmitters.template import import_template
+
+    with _mendable():
+        summary = import_template(file, Store.open(data_dir()), dry_run)
+    _show(summary.document(), as_json, summary.text)
+
+
+@transmitters.command("template")
+def print_template() -> None:
+    """Print an example of the CSV template, to fill in."""
+    from app.transmitters.template import template_example
+
+    typer.echo(template_example().rstrip("\n"))
+
+
+@transmitters.command("list")
+def list_transmitters(as_json: Json = False) -> None:
+    """List what is on the air."""
+    from app.lists import emission_rows, table
+    from app.world import open_world
+
+    with _mendable():
+        rows = emission_rows(open_world().store)
+    _show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
+
+
+@terrain.command("add")
+def add_rasters(
+    paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="Raster files.")],
+    crs: Annotated[str | None, typer.Option(help="Coordinate system of rasters that do not say, as EPSG:N.")] = None,
+    kind: Annotated[str | None, typer.Option(help="surface, radar-surface or bare.")] = None,
+    as_json: Json = False,
+) -> None:
+    """Copy elevation rasters into the data folder, checked first."""
+    from app.ground_files import add_raster
+    from app.lists import table
+
+    with _mendable():
+        rows = [add_raster(one, crs, kind) for one in paths]
+    _show(rows, as_json, lambda: table(rows, "nothing was added"))
+
+
+@terrain.command("list")
+def list_rasters(as_json: Json = False) -> None:
+    """List rasters in use and those refused, with the reason."""
+    from app.lists import raster_rows, table
+    from app.world import open_world
+
+    with _mendable():
+        rows = raster_rows(open_world().ground)
+    _show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
+
+
+@chains.command("list")
+def list_chains(as_json: Json = False) -> None:
+    """List stored chains with their parts and prices."""
+    from app.lists import chain_rows, table
+    from app.world import open_world
+
+    with _mendable():
+        rows = chain_rows(open_world().store)
+    _show(rows, as_json, lambda: table(rows, "no chain is stored"))
+
+
+if __name__ == "__main__":
+    main()

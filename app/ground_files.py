@@ -1,0 +1,37 @@
+"""The user's rasters: checked, then copied into the data folder."""
+
+from __future__ import annotations
+
+import os
+import shutil
+import tempfile
+from pathlib import Path
+from typing import Any
+
+from app.errors import StoreError
+from app.world import terrain_dir
+from terrain.errors import RasterError
+from terrain.raster import declare, open_raster
+
+
+def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> dict[str, Any]:
+    """Copy one raster into the data folder under its own name, with what is declared of it.
+
+    A file that cannot serve is refused and nothing is copied; one of the same name is replaced whole.
+    """
+    if not path.is_file():
+        raise RasterError(f"{path} is no file: name an elevation raster such as a GeoTIFF or an .hgt tile")
+    target = terrain_dir() / path.name
+    try:
+        terrain_dir().mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryDirectory(dir=terrain_dir(), prefix=".adding-") as folder:
+            copy = Path(folder) / path.name
+            shutil.copyfile(path, copy)
+            if crs or kind:
+                declare(copy, crs=crs, kind=kind)
+            info = open_raster(copy)
+            for one in sorted(Path(folder).iterdir()):
+                os.replace(one, target.parent / one.name)
+    except OSError as error:
+        raise StoreError(f"{path.name} could not be copied into {terrain_dir()} ({error.strerror or error})") from error
+    return {"file": path.name, "kind": info.kind, "spacing_m": round(info.spacing_m, 1), "stored": str(target)}

@@ -1,0 +1,140 @@
+"""The way of one request: roof, emissions, fields, chains, chances, verdict."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from datetime import date
+from typing import Any
+
+from app.answer import answer_document
+from app.assumptions import Assumptions
+from app.chain.document import CHAIN_KEYS, chain_from_document
+from app.chain.parts import Chain
+from app.errors import RequestError
+from app.fields import fields_at
+from app.margins import Air, Turned, air_of, multiplex_chances, turn
+from app.request import NOTHING, AssessRequest
+from app.site import site_of
+from app.transmitters.store import Store
+from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multiplexes
+from terrain.mosaic import Ground
+
+
+def assess(request: AssessRequest, store: Store, ground: Ground, today: date | None = None) -> dict[str, Any]:
+    """Answer one request with the document of the interface, the same for API and command line.
+
+    Raises
+    ------
+    AppError, TerrainError
+        The roof, a name or a value is not possible: the message says what is.
+    """
+    assumptions = Assumptions(request.assumptions)
+    chains = _chains(request, store)
+    site = site_of(request.roof, ground)
+    found = store.emissions_within(
+        request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
+    )
+    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent)
+    air = air_of(fields)
+    multiplexes = sorted(set(air.multiplex_of))
+    chosen = _wanted_ids(request, store)
+    counted = [one for one in chosen or multiplexes if one in multiplexes]
+    turned = {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
+    outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
+    verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions)
+    return answer_document(
+        request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts
+    )
+
+
+def stored_chain(store: Store, name: str) -> Chain:
+    """Return a stored chain by name or id; NotStoredError if there is none."""
+    document = store.get_chain(name)
+    return chain_from_document({key: value for key, value in document.items() if key in CHAIN_KEYS})
+
+
+def _chains(request: AssessRequest, store: Store) -> list[Chain]:
+    """Return the chains in question, the one that is up now among them."""
+    asked: Sequence[str | Chain]
+    asked = request.chains if request.chains is not None else [str(one["name"]) for one in store.list_chains()]
+    chains = [one if isinstance(one, Chain) else stored_chain(store, one) for one in asked]
+    names = [chain.name for chain in chains]
+    for name in names:
+        if names.count(name) > 1:
+            raise RequestError(
+                f'two chains are named "{name}": give each its own name', field="chains", allowed="different names"
+            )
+    if request.now not in (None, NOTHING, *names):
+        chains.insert(0, stored_chain(store, str(request.now)))
+    if not chains:
+        raise RequestError(
+            "no chain is stored and none came with the request: name or describe at least one", field="chains"
+        )
+    currencies = sorted({chain.currency for chain in chains})
+    if len(currencies) > 1:
+        raise RequestError(
+            f"the chains are priced in {', '.join(currencies)}: use one currency to compare them",
+            field="chains",
+            allowed="one currency",
+        )
+    return chains
+
+
+def _wanted_ids(request: AssessRequest, store: Store) -> list[str]:
+    """Return the wanted multiplexes, given by id or by name."""
+    if request.wanted is None:
+        return []
+    known = store.multiplexes()
+    by_name = {multiplex.name: multiplex.id for multiplex in known.values()}
+    ids = []
+    for one in request.wanted:
+        if one not in known and one not in by_name:
+            names = ", ".join(f"{m.id} ({m.name})" for m in list(known.values())[:20])
+            raise RequestError(f'multiplex "{one}" is not known: use one of {names}', field="wanted", allowed=names)
+        ids.append(one if one in known else by_name[one])
+    return list(dict.fromkeys(ids))
+
+
+def _outcome(turned: Turned, air: Air, multiplexes: Sequence[str]) -> Outcome:
+    draws, chance = multiplex_chances(turned, air, multiplexes)
+    return Outcome(turned.chain.name, turned.chain, draws, chance, turned.held_back_by(air, multiplexes))
+
+
+def _verdicts(
+    request: AssessRequest,
+    chains: Sequence[Chain],
+    outcomes: dict[str, Outcome],
+    multiplexes: Sequence[str],
+    chosen: Sequence[str],
+    assumptions: Assumptions,
+) -> list[Verdict]:
+    """Return the verdict on every candidate, best first."""
+    if not outcomes:
+        return []
+    in_question = [outcomes[chain.name] for chain in chains]
+    if request.now == NOTHING:
+        baseline = nothing(len(multiplexes))
+        compared = [baseline, *in_question]
+    else:
+        baseline = outcomes[request.now or chains[0].name]
+        compared = in_question
+    if chosen:
+        wanted = [one for one in chosen if one in multiplexes]
+    else:
+        wanted = wanted_multiplexes(multiplexes, compared)
+    worth = request.worth_per_multiplex
+    return ranked(
+        [
+            compare(
+                candidate,
+                baseline,
+                in_question,
+                multiplexes,
+                wanted,
+                assumptions.value("worth_per_multiplex") if worth is None else worth,
+                baseline_is_up=request.now is not None,
+            )
+            for candidate in in_question
+            if candidate is not baseline
+        ]
+    )

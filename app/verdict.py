@@ -1,0 +1,177 @@
+"""Is the better chain worth its price: the decision rule and what is reported beside it.
+
+With N the number of wanted multiplexes received (random under the joint model), v the worth of one more
+and the price difference of the candidate over the baseline,
+
+    U = v * (N candidate - N baseline) - price difference        worth it if E(U) > 0.
+
+Without a price there is no answer, only the break-even price v * E(N candidate - N baseline).
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.chain.parts import Chain
+from app.chance import DRAWS
+
+Answer = Literal["worth it", "not worth it", "measure first"]
+BoolArray = NDArray[np.bool_]
+
+GAIN_STEP = 0.2  # a chance must move by more than this to count as gained or lost
+HAVE = 0.70  # and reach, or have had, this
+SECURE = 0.95
+COUNTS_FROM, COUNTS_TO = 0.05, 0.95  # wanted unless chosen: possible somewhere, not secure everywhere
+SAME_CHANCE = 0.02  # chances this close are the same to a person
+
+
+@dataclass(frozen=True, slots=True)
+class Outcome:
+    """What one chain (or nothing at all) brings: draws and chances per multiplex."""
+
+    name: str
+    chain: Chain | None  # None: nothing is up
+    received: BoolArray  # (draws, m)
+    chance: NDArray[np.float64]  # (m,)
+    held_back_by: tuple[str | None, ...]  # (m,) the limit that holds each back
+
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """One candidate against the baseline."""
+
+    baseline: str
+    candidate: str
+    answer: Answer | None
+    expected_worth: float | None
+    chance_of_gain: float
+    expected_extra: float
+    price_difference: float | None
+    price_per_extra: float | None
+    break_even_price: float
+    gained: tuple[str, ...]
+    lost: tuple[str, ...]
+    now_secure: tuple[str, ...]
+    cheapest_equal: str | None
+    wanted: tuple[str, ...]
+    reason: str
+
+
+def nothing(multiplexes: int) -> Outcome:
+    """What a bare roof receives."""
+    none = np.zeros((DRAWS, multiplexes), dtype=bool)
+    return Outcome("nothing", None, none, np.zeros(multiplexes), (None,) * multiplexes)
+
+
+def wanted_multiplexes(multiplexes: Sequence[str], outcomes: Sequence[Outcome]) -> list[str]:
+    """Return what counts unless chosen: possible under one of the outcomes, not secure under all."""
+    chances = np.stack([outcome.chance for outcome in outcomes])
+    counts = (chances.max(axis=0) >= COUNTS_FROM) & (chances.min(axis=0) <= COUNTS_TO)
+    return list(_named(multiplexes, counts))
+
+
+def price_difference(candidate: Chain | None, baseline: Chain | None, baseline_is_up: bool) -> float | None:
+    """What changing to the candidate costs; parts, labour and visit. What is already up costs nothing.
+
+    None where a price is missing. A candidate that is the baseline costs nothing.
+    """
+    if candidate is None or candidate == baseline:
+        return 0.0
+    if baseline_is_up:
+        kept = {part.id for part in baseline.parts} if baseline else set()
+        return candidate.price_without(kept)
+    base = 0.0 if baseline is None else baseline.price
+    return None if candidate.price is None or base is None else candidate.price - base
+
+
+def compare(
+    candidate: Outcome,
+    baseline: Outcome,
+    others: Sequence[Outcome],
+    multiplexes: Sequence[str],
+    wanted: Sequence[str],
+    worth_per_multiplex: float,
+    baseline_is_up: bool,
+) -> Verdict:
+    """Return the verdict on one candidate; `others` are all chains in question, for the cheapest equal one."""
+    counted = [multiplexes.index(name) for name in wanted]
+    extra = candidate.received[:, counted].sum(axis=1) - baseline.received[:, counted].sum(axis=1)
+    expected_extra = float(extra.mean())
+    price = price_difference(candidate.chain, baseline.chain, baseline_is_up)
+    worth = None if price is None else worth_per_multiplex * expected_extra - price
+    answer: Answer | None = None if worth is None else "worth it" if worth > 0 else "not worth it"
+    before, after = baseline.chance, candidate.chance
+    return Verdict(
+        baseline=baseline.name,
+        candidate=candidate.name,
+        answer=answer,
+        expected_worth=worth,
+        chance_of_gain=float((extra > 0).mean()),
+        expected_extra=expected_extra,
+        price_difference=price,
+        price_per_extra=None if price is None or expected_extra <= 0 else price / expected_extra,
+        break_even_price=worth_per_multiplex * expected_extra,
+        gained=_named(multiplexes, (after - before > GAIN_STEP) & (after >= HAVE)),
+        lost=_named(multiplexes, (before - after > GAIN_STEP) & (before >= HAVE)),
+        now_secure=_named(multiplexes, (after >= SECURE) & (before < SECURE)),
+        cheapest_equal=_cheapest_equal(candidate, others, counted, baseline, baseline_is_up),
+        wanted=tuple(wanted),
+        reason=reason(candidate, baseline, multiplexes, wanted),
+    )
+
+
+def ranked(verdicts: Sequence[Verdict]) -> list[Verdict]:
+    """Best first: by expected worth; those without a price after them, by what they bring."""
+    return sorted(
+        verdicts,
+        key=lambda one: (one.expected_worth is None, -(one.expected_worth if one.expected_worth is not None else one.expected_extra), one.candidate),
+    )
+
+
+def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wanted: Sequence[str]) -> str:
+    """One sentence from what holds back the wanted multiplexes today and what the candidate does about it."""
+    if not wanted:
+        return "No multiplex is open to change: every chain in question receives the same ones."
+    place = {name: m for m, name in enumerate(multiplexes)}
+    missing = [name for name in wanted if baseline.chance[place[name]] < HAVE]
+    if not missing:
+        return f"All {len(wanted)} wanted are likely already with {baseline.name}; little is left to gain."
+    limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
+    cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
+    held = "; ".join(f"{limit} holds back {count} of {len(missing)}" for limit, count in limits.most_common())
+    if baseline.chain is None:
+        held = f"nothing is up today for {len(missing)} wanted"
+    if not cured:
+        return f"{_capital(held)}; {candidate.name} does not bring any of them to a likely chance."
+    return f"{_capital(held)}; {candidate.name} brings {len(cured)} of them to a likely chance."
+
+
+def _cheapest_equal(
+    candidate: Outcome, others: Sequence[Outcome], counted: Sequence[int], baseline: Outcome, baseline_is_up: bool
+) -> str | None:
+    def price(outcome: Outcome) -> float | None:
+        return price_difference(outcome.chain, baseline.chain, baseline_is_up)
+
+    own = price(candidate)
+    as_good: Mapping[str, float] = {
+        other.name: cost
+        for other in others
+        if (cost := price(other)) is not None
+        and (other.chance[counted] >= candidate.chance[counted] - SAME_CHANCE).all()
+        and (own is None or cost < own)
+    }
+    return min(as_good, key=lambda name: (as_good[name], name)) if as_good else None
+
+
+def _named(multiplexes: Sequence[str], which: BoolArray) -> tuple[str, ...]:
+    return tuple(name for name, yes in zip(multiplexes, which, strict=True) if yes)
+
+
+def _capital(text: str) -> str:
+    return text[:1].upper() + text[1:]
