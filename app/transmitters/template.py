@@ -25,8 +25,9 @@ from __future__ import annotations
 import re
 import unicodedata
 from collections import Counter
-from dataclasses import dataclass, replace
+from dataclasses import asdict, dataclass, replace
 from pathlib import Path
+from typing import Any
 
 from app.errors import TransmitterFileError
 from app.transmitters.cells import Cells
@@ -82,6 +83,40 @@ class ImportSummary:
     changed: tuple[str, ...]
     gone: tuple[str, ...]
     written: bool
+
+    def document(self) -> dict[str, Any]:
+        """Return everything as one JSON document."""
+        result = self.result
+        return {
+            "source": result.source,
+            "written": self.written,
+            "rows_read": result.rows_read,
+            "rows_kept": len(result.emissions),
+            "rows_refused": result.rows_refused,
+            "transmitters": len(result.transmitters),
+            "multiplexes": len(result.multiplexes),
+            "added": list(self.added),
+            "changed": list(self.changed),
+            "gone": list(self.gone),
+            "refused": [asdict(refusal) for refusal in result.refused],
+            "encoding": result.encoding,
+            "separator": result.separator,
+            "ignored_columns": list(result.ignored_columns),
+        }
+
+    def text(self) -> str:
+        """Return counts and refused rows as lines to read."""
+        result = self.result
+        changes = f"{len(self.added)} added, {len(self.changed)} changed, {len(self.gone)} gone"
+        lines = [
+            f"{len(result.emissions)} of {result.rows_read} rows kept, {result.rows_refused} refused "
+            f"(transmitters: {len(result.transmitters)}, multiplexes: {len(result.multiplexes)})",
+            f'source "{result.source}": {changes}'
+            + ("" if self.written else " (dry run: nothing was stored)"),
+        ]
+        if result.ignored_columns:
+            lines.append(f"columns not used: {', '.join(result.ignored_columns)}")
+        return "\n".join([*lines, *(str(refusal) for refusal in result.refused)])
 
 
 def read_template(path: Path) -> TemplateResult:

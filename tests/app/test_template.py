@@ -2,6 +2,7 @@
 
 import csv
 import io
+import json
 from datetime import date
 
 import pytest
@@ -421,6 +422,25 @@ def test_an_import_stores_the_good_rows_and_counts_the_others(tmp_path, store):
     assert [e.channel for e in store.emissions()] == ["47", "48"]
     (source,) = store.sources()
     assert (source.id, source.name, source.rows_kept, source.rows_refused) == ("mine", "mine.csv", 2, 1)
+
+
+def test_an_import_is_told_in_lines_and_as_json(tmp_path, store):
+    text = text_of({}, {"channel": "1"}, {"channel": "48", "erp_kw": "x"}, columns=(*COLUMNS, "remark"))
+    summary = import_template(write(tmp_path, text), store, dry_run=True)
+    lines = summary.text().splitlines()
+    assert lines[0] == "1 of 3 rows kept, 2 refused (transmitters: 1, multiplexes: 1)"
+    assert lines[1] == 'source "mine": 1 added, 0 changed, 0 gone (dry run: nothing was stored)'
+    assert lines[2] == "columns not used: remark"
+    assert (
+        lines[4]
+        == 'line 4: erp_kw is "x": write a number such as 100, or <=100 where only the limit is known'
+    )
+    document = json.loads(json.dumps(summary.document()))
+    assert (document["rows_kept"], document["refused"][1]["column"], document["written"]) == (
+        1,
+        "erp_kw",
+        False,
+    )
 
 
 def test_a_dry_run_tells_the_changes_and_stores_nothing(tmp_path, store):
