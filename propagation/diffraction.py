@@ -250,17 +250,80 @@ def delta_bullington(
     x = np.asarray(distance_km, dtype=float)
     tx_height = np.asarray(tx_amsl_m, dtype=float) - np.asarray(tx_smooth_amsl_m, dtype=float)  # eq. (37)
     rx_height = np.asarray(rx_amsl_m, dtype=float) - np.asarray(rx_smooth_amsl_m, dtype=float)  # eq. (38)
-    actual = bullington_loss_db(
-        x, height_amsl_m, tx_amsl_m, rx_amsl_m, frequency_mhz, effective_earth_radius_km
+    actual_edge = bullington_edge(x, height_amsl_m, tx_amsl_m, rx_amsl_m, effective_earth_radius_km)
+    smooth_edge = bullington_edge(x, np.zeros_like(x), tx_height, rx_height, effective_earth_radius_km)
+    return delta_bullington_of_edges(
+        actual_edge,
+        smooth_edge,
+        x[..., -1],
+        tx_height,
+        rx_height,
+        frequency_mhz,
+        effective_earth_radius_km,
+        sea_share,
+        polarisation,
     )
-    smooth = bullington_loss_db(
-        x, np.zeros_like(x), tx_height, rx_height, frequency_mhz, effective_earth_radius_km
-    )
+
+
+def delta_bullington_of_edges(
+    actual_edge: ArrayLike,
+    smooth_edge: ArrayLike,
+    path_length_km: ArrayLike,
+    tx_over_smooth_earth_m: ArrayLike,
+    rx_over_smooth_earth_m: ArrayLike,
+    frequency_mhz: ArrayLike,
+    effective_earth_radius_km: ArrayLike,
+    sea_share: ArrayLike,
+    polarisation: ArrayLike,
+) -> DeltaBullington:
+    """Delta-Bullington loss of a path whose edges are known, at each frequency.
+
+    Inputs broadcast, NaN in, NaN out. Edges from `bullington_edge` over the ground and over a flat
+    profile with the antennas' heights over the smooth Earth [m^0.5]; the rest, errors and
+    references as `delta_bullington`.
+    """
+    actual = bullington_loss_of_edge_db(actual_edge, path_length_km, frequency_mhz)
+    smooth = bullington_loss_of_edge_db(smooth_edge, path_length_km, frequency_mhz)
     spherical = spherical_earth_loss_db(
-        x[..., -1], tx_height, rx_height, frequency_mhz, effective_earth_radius_km, sea_share, polarisation
+        path_length_km,
+        tx_over_smooth_earth_m,
+        rx_over_smooth_earth_m,
+        frequency_mhz,
+        effective_earth_radius_km,
+        sea_share,
+        polarisation,
     )
     loss = actual + np.maximum(spherical - smooth, 0.0)  # eq. (39)
     return DeltaBullington(actual_db=actual, smooth_db=smooth, spherical_db=spherical, loss_db=loss)
+
+
+def delta_bullington_loss_db(
+    distance_km: ArrayLike,
+    height_amsl_m: ArrayLike,
+    tx_amsl_m: ArrayLike,
+    rx_amsl_m: ArrayLike,
+    frequency_mhz: ArrayLike,
+    effective_earth_radius_km: ArrayLike,
+    sea_share: ArrayLike,
+    polarisation: ArrayLike,
+) -> FloatArray:
+    """Delta-Bullington loss of bare ground, the smooth Earth fitted to the same profile.
+
+    Shapes, units, errors and references as `delta_bullington`. Result (...) in dB.
+    """
+    smooth = smooth_earth(distance_km, height_amsl_m, tx_amsl_m, rx_amsl_m)
+    return delta_bullington(
+        distance_km,
+        height_amsl_m,
+        tx_amsl_m,
+        rx_amsl_m,
+        smooth.tx_amsl_m,
+        smooth.rx_amsl_m,
+        frequency_mhz,
+        effective_earth_radius_km,
+        sea_share,
+        polarisation,
+    ).loss_db
 
 
 def checked_profile(distance_km: ArrayLike, height_m: ArrayLike) -> tuple[FloatArray, FloatArray]:
