@@ -1,25 +1,16 @@
-"""From field strength to a level at the aerial's terminals, and the noise that stands beside it."""
+"""From field strength to a level at the aerial's terminals."""
 
 from __future__ import annotations
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from propagation.constants import (
-    BOLTZMANN_J_K,
-    HALF_WAVE_DIPOLE_GAIN_DBI,
-    RECEIVER_IMPEDANCE_OHM,
-    REFERENCE_TEMPERATURE_KELVIN,
-)
-from propagation.noise import man_made_fam_db
-from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db, wavelength_m
+from propagation.constants import HALF_WAVE_DIPOLE_GAIN_DBI, RECEIVER_IMPEDANCE_OHM
+from propagation.units import db_from_ratio, wavelength_m
 
 FloatArray = NDArray[np.float64]
 
 FREE_SPACE_IMPEDANCE_OHM = 120 * np.pi  # as the planning formulas of GE06 take it; 0.003 dB off the exact one
-
-# Surroundings of a roof -> environment of Rec. ITU-R P.372, Table 1; the pairing is ours.
-ENVIRONMENTS = {"open": "rural", "suburban": "residential", "urban": "city", "trees": "rural"}
 
 
 def level_dbuv(field_dbuv_m: ArrayLike, gain_dbd: ArrayLike, frequency_mhz: ArrayLike) -> FloatArray:
@@ -40,18 +31,3 @@ def effective_aperture_dbm2(gain_dbd: ArrayLike, frequency_mhz: ArrayLike) -> Fl
     """Aperture of an aerial, 10 log(g λ²/(4 π)) [dB(m²)], broadcasts; GE06, chapter 3 to annex 2."""
     gain_dbi = np.asarray(gain_dbd, dtype=float) + HALF_WAVE_DIPOLE_GAIN_DBI
     return np.asarray(gain_dbi + 2 * db_from_ratio(wavelength_m(frequency_mhz)) - db_from_ratio(4 * np.pi))
-
-
-def thermal_noise_dbuv(bandwidth_mhz: ArrayLike) -> FloatArray:
-    """Level of k T0 B across 75 ohms [dB(µV)], elementwise over bandwidth [MHz]; T0 = 290 K."""
-    power_w = BOLTZMANN_J_K * REFERENCE_TEMPERATURE_KELVIN * 1e6 * np.asarray(bandwidth_mhz, dtype=float)
-    return dbuv_from_dbm(db_from_ratio(power_w) + 30)
-
-
-def external_noise_factor(frequency_mhz: ArrayLike, surroundings: str) -> FloatArray:
-    """Noise factor of what the aerial gathers from outside, at least 1 [-], elementwise; Rec. ITU-R P.372.
-
-    Below 1 the table's environments are quieter than 290 K; an aerial that sees the ground is not.
-    """
-    fam_db = man_made_fam_db(frequency_mhz, ENVIRONMENTS[surroundings])
-    return np.maximum(1.0, ratio_from_db(fam_db))

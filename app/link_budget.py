@@ -16,10 +16,14 @@ from app.chain import aerial as response
 from app.chain.cascade import Stage, cascade_noise_factor, stages, total_gain_db
 from app.chain.parts import Chain, MastheadAmplifier
 from app.errors import RequestError
-from app.levels import ENVIRONMENTS, external_noise_factor, level_dbuv, thermal_noise_dbuv
-from propagation.units import db_from_ratio
+from app.levels import level_dbuv
+from propagation.noise import man_made_fam_db, noise_power_dbm, system_noise_factor
+from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
 
 FloatArray = NDArray[np.float64]
+
+# Surroundings of a roof -> environment of Rec. ITU-R P.372, Table 1; the pairing is ours.
+ENVIRONMENTS = {"open": "rural", "suburban": "residential", "urban": "city", "trees": "rural"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,8 +116,10 @@ def receive(
     Cascade of passive parts at 290 K: Friis 1944. External noise: Rec. ITU-R P.372, section 2: the system's
     noise factor is fext + frx − 1 with every term referred to the aerial's terminals.
     """
-    external = external_noise_factor(signals.frequency_mhz, surroundings)
-    return receive_with_noise(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, external)
+    outside_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
+    return receive_with_noise(
+        chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, outside_db
+    )
 
 
 def receive_with_noise(
@@ -123,9 +129,9 @@ def receive_with_noise(
     pointing_deg: ArrayLike,
     polarisation: str,
     assumptions: Assumptions,
-    external_factor: FloatArray,
+    external_fam_db: ArrayLike,
 ) -> Reception:
-    """Return the same as `receive`, for a stated noise factor of what comes from outside [-], (e,)."""
+    """Return the same as `receive`, for a stated noise from outside over 290 K [dB], (e,) or scalar."""
     air = _air(chain, signals, pointing_deg, polarisation, assumptions)
     at_aerial = level_dbuv(field_dbuv_m, air.gain_dbd, signals.frequency_mhz) - air.loss_db
     required = signals.required_cn_db + assumptions.value("reserve_db")
@@ -134,8 +140,9 @@ def receive_with_noise(
         row = stages(chain.run_to(name), signals.frequency_mhz)
         gain = total_gain_db(row, signals.frequency_mhz.size)
         level = at_aerial + gain
-        factor = external_factor + chain_noise_factor(row, set_noise_figure_db(chain, signals)) - 1
-        noise = thermal_noise_dbuv(signals.bandwidth_mhz) + db_from_ratio(factor) + gain
+        own = chain_noise_factor(row, set_noise_figure_db(chain, signals))
+        at_terminals_dbm = noise_power_dbm(signals.bandwidth_mhz, system_noise_factor(external_fam_db, own))
+        noise = dbuv_from_dbm(at_terminals_dbm) + gain
         outlets.append(AtOutlet(name, level, noise, level - noise, level - noise - required))
     margins = np.stack([outlet.margin_db for outlet in outlets])
     worst = np.argmin(np.where(np.isnan(margins), np.inf, margins), axis=0)
@@ -302,14 +309,18 @@ def _air_lines(chain: Chain, signals: Signals, air: _Air, polarisation: str) -> 
 
 def _noise_lines(chain: Chain, signals: Signals, row: list[Stage], surroundings: str) -> list[Line]:
     """Noise at the outlet, split by where it comes from; each line is 0 or a loss of C/N."""
-    gain = 10 ** (total_gain_db(row, 1) / 10)
+    gain = ratio_from_db(total_gain_db(row, 1))
     set_figure_db = set_noise_figure_db(chain, signals)
-    inside = gain * chain_noise_factor(row, set_figure_db)  # at the outlet, in units of k T0 B
-    outside = gain * (external_noise_factor(signals.frequency_mhz, surroundings) - 1)
+    fam_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
+    own = chain_noise_factor(row, set_figure_db)
     bandwidth = signals.bandwidth_mhz[0]
     stated = chain.receiver.noise_figure_db is not None
     lines: list[Line] = [
-        ("thermal noise", -thermal_noise_dbuv(bandwidth), f"k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms"),
+        (
+            "thermal noise",
+            -dbuv_from_dbm(noise_power_dbm(bandwidth)),
+            f"k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms",
+        ),
         (
             f"noise of {chain.receiver.name}",
             -set_figure_db,
@@ -317,9 +328,9 @@ def _noise_lines(chain: Chain, signals: Signals, row: list[Stage], surroundings:
         ),
     ]
     if any(isinstance(stage.part, MastheadAmplifier) for stage in row):
-        left = db_from_ratio(inside) - set_figure_db
+        left = db_from_ratio(gain * own) - set_figure_db
         lines.append(("noise the amplifier leaves", -left, "cascade rule (Friis 1944), parts at 290 K"))
-    heard = db_from_ratio(1 + outside / inside)
+    heard = db_from_ratio(system_noise_factor(fam_db, own) / own)
     lines.append(
         ("noise from outside", -heard, f"Rec. ITU-R P.372, {ENVIRONMENTS[surroundings]}, at least 290 K")
     )

@@ -88,9 +88,7 @@ def minimum_field(
         bearing_deg=np.zeros(1),
         polarisation=("horizontal",),
     )
-    got = receive_with_noise(
-        chain, signals, 0.0, 0.0, "horizontal", Assumptions({"reserve_db": 0.0}), np.ones(1)
-    )
+    got = receive_with_noise(chain, signals, 0.0, 0.0, "horizontal", Assumptions({"reserve_db": 0.0}), 0.0)
     least = -got.margin_db.item()
     level = got.noise_dbuv.item() + required_cn_db
     location = NormalDist().inv_cdf(location_percent / 100) * float(

@@ -44,7 +44,7 @@ def chain_from_document(document: object) -> Chain:
         raise ChainError(
             f"a chain is a table of keys and values, not {_came(document)}: give at least name and parts"
         )
-    what = f'chain "{document.get("name", "")}"'
+    what = f'chain "{document.get("name") or ""}"'
     _known_keys(document, CHAIN_KEYS, what, "")
     values = _values(Chain, document, what, "", skip=("parts",))
     parts = document.get("parts")
