@@ -20,12 +20,14 @@ from app.transmitters.store import Store
 from app.verdict import HAVE, Outcome, Verdict
 
 CAUTIONS = (
-    "Roofs, ladders and masts can kill: never alone, never in wind, ice or thunder; local codes and licensed practice decide.",
+    "Roofs, ladders and masts can kill: never alone, never in wind, ice or thunder; "
+    "local codes and licensed practice decide.",
     "Keep mast, aerial and ladder farther from overhead lines than they could fall.",
     "Earth the mast and bond the feeder's screen as the local code asks; an earthed mast is no lightning protection.",
     "An amplifier's supply is mains equipment: leave its circuit to a licensed person.",
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
+METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
 NOT_YET = (
     "Interference from other transmitters is not counted yet: a chance can be lower than shown.",
     "Overload by strong signals is not counted yet.",
@@ -66,7 +68,9 @@ def answer_document(
             for m, name in enumerate(multiplexes)
         ],
         "emissions": [_emission(request, field, fields, place, turned, air, assumptions) for field in fields],
-        "chains": {chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains},
+        "chains": {
+            chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
+        },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
         "assumptions": assumptions.document(),
         "cautions": [*_cautions(request, site, store, fields), *NOT_YET, *CAUTIONS],
@@ -209,21 +213,35 @@ def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[di
         nonlocal total
         total = value_db if not rows else total + value_db
         rows.append(
-            {"step": step, "value_db": round(value_db, 2), "total": round(total, 2), "source": source, "state": "a"}
+            {
+                "step": step,
+                "value_db": round(value_db, 2),
+                "total": round(total, 2),
+                "source": source,
+                "state": "a",
+            }
         )
 
     assert field.path is not None  # only emissions with an answer have a ledger
-    add(f"radiated power towards the roof, {field.erp_kw:.3g} kW ERP", power_db, f"register: {field.transmitter.source}")
+    add(
+        f"radiated power towards the roof, {field.erp_kw:.3g} kW ERP",
+        power_db,
+        f"register: {field.transmitter.source}",
+    )
     add(
         f"free space over {field.distance_km:.1f} km",
         field.free_space_dbuv_m - power_db,
         "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
     )
     modelled = field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m
-    add(f"ground and atmosphere: {field.path.kind}", modelled, field.method_source)
+    add(f"ground and atmosphere: {field.path.kind}", modelled, METHOD_SOURCES[str(field.method)])
     if field.doubt_db:
         add("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db")
-    add(f"fade that {availability_percent} % of the time stays above", -field.fade_db, "assumptions of the fade; P.1546 at 1 and 50 % of time")
+    add(
+        f"fade that {availability_percent} % of the time stays above",
+        -field.fade_db,
+        "assumptions of the fade; P.1546 at 1 and 50 % of time",
+    )
     return rows
 
 
@@ -275,23 +293,32 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
     }
 
 
-def _cautions(
-    request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField]
-) -> list[str]:
+def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField]) -> list[str]:
     cautions = list(site.cautions)
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
         cautions.append(
             f"Nothing is on the air within {request.reach_km:g} km: "
-            + (f"the nearest transmitter is {nearest[0].name}, {nearest[1]:.0f} km away." if nearest else "no transmitter is stored; import some first.")
+            + (
+                f"the nearest transmitter is {nearest[0].name}, {nearest[1]:.0f} km away."
+                if nearest
+                else "no transmitter is stored; import some first."
+            )
         )
     without = sorted({field.transmitter.name for field in fields if field.path is None})
     if without:
-        cautions.append(f"No prediction for {', '.join(without)}: see the reason beside each channel; they take no part in the verdict.")
+        cautions.append(
+            f"No prediction for {', '.join(without)}: see the reason beside each channel; "
+            "they take no part in the verdict."
+        )
     shared = [field for field in fields if _shared_channel(field, fields)]
     if shared:
-        channels = ", ".join(sorted({field.emission.channel or f"{field.emission.frequency_mhz:g} MHz" for field in shared}))
-        cautions.append(f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted.")
+        channels = ", ".join(
+            sorted({field.emission.channel or f"{field.emission.frequency_mhz:g} MHz" for field in shared})
+        )
+        cautions.append(
+            f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted."
+        )
     return cautions
 
 

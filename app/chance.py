@@ -35,7 +35,12 @@ DRAWS = 4096
 SEED = "gainworth-1"
 
 Grade = Literal["secure", "likely", "open", "doubtful"]
-GRADES: tuple[tuple[float, Grade], ...] = ((0.95, "secure"), (0.70, "likely"), (0.30, "open"), (0.0, "doubtful"))
+GRADES: tuple[tuple[float, Grade], ...] = (
+    (0.95, "secure"),
+    (0.70, "likely"),
+    (0.30, "open"),
+    (0.0, "doubtful"),
+)
 
 
 def grade(chance: float) -> Grade:
@@ -108,8 +113,10 @@ def received(draws_db: FloatArray, multiplex_of: Sequence[str], multiplexes: Seq
     """Whether at least one emission of each multiplex is receivable, draw by draw. (DRAWS, m)"""
     good = draws_db >= 0
     columns = {name: [e for e, owner in enumerate(multiplex_of) if owner == name] for name in multiplexes}
-    return np.stack([good[:, columns[name]].any(axis=1) for name in multiplexes], axis=1) if multiplexes else (
-        np.zeros((len(draws_db), 0), dtype=bool)
+    return (
+        np.stack([good[:, columns[name]].any(axis=1) for name in multiplexes], axis=1)
+        if multiplexes
+        else (np.zeros((len(draws_db), 0), dtype=bool))
     )
 
 

@@ -49,9 +49,7 @@ def raster_of(raster: str) -> Raster:
     found = _rasters().get(raster.strip().casefold())
     if found is None:
         listed = ", ".join(_rasters())
-        raise ModeError(
-            f'channel raster "{raster}" is not known: use {listed}', field="raster", allowed=listed
-        )
+        raise ModeError(f'channel raster "{raster}" is not known: use {listed}', field="raster", allowed=listed)
     return found
 
 
@@ -67,9 +65,7 @@ def centre_mhz(raster: str, channel: str) -> tuple[float, float]:
     name = channel.strip().upper().lstrip("0")
     if name not in found.channels:
         listed = _spans(found)
-        raise ModeError(
-            f'raster {found.id} has no channel "{channel}": use {listed}', field="channel", allowed=listed
-        )
+        raise ModeError(f'raster {found.id} has no channel "{channel}": use {listed}', field="channel", allowed=listed)
     known = found.channels[name]
     return known.centre_mhz, known.bandwidth_mhz
 
@@ -102,9 +98,7 @@ def _rasters() -> dict[str, Raster]:
         for number in range(int(row["first"]), int(row["last"]) + 1):
             name = row["label"] or str(number)
             centre = float(row["base_mhz"]) + float(row["step_mhz"]) * number
-            raster.channels[name] = Channel(
-                name, centre, float(row["bandwidth_mhz"]), row["flag"], row["source"]
-            )
+            raster.channels[name] = Channel(name, centre, float(row["bandwidth_mhz"]), row["flag"], row["source"])
     return found
 
 

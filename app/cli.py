@@ -98,7 +98,8 @@ def _listener(host: str, port: int) -> socket.socket:
         listener.listen(128)
     except OSError as error:
         raise RequestError(
-            f"cannot listen on {host} port {port} ({error.strerror or error}): use another one with --port, or --port 0 for a free one",
+            f"cannot listen on {host} port {port} ({error.strerror or error}): "
+            "use another one with --port, or --port 0 for a free one",
             field="port",
         ) from error
     return listener
@@ -108,9 +109,15 @@ def _listener(host: str, port: int) -> socket.socket:
 def assess(
     at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
     height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")] = 10.0,
-    chain: Annotated[list[str] | None, typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored.")] = None,
+    chain: Annotated[
+        list[str] | None,
+        typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored."),
+    ] = None,
     now: Annotated[str | None, typer.Option(metavar="NAME|nothing", help="What is up now.")] = None,
-    want: Annotated[list[str] | None, typer.Option(metavar="MULTIPLEX", help="Wanted multiplex; may be repeated. Default: those that differ.")] = None,
+    want: Annotated[
+        list[str] | None,
+        typer.Option(metavar="MULTIPLEX", help="Wanted multiplex; may be repeated. Default: those that differ."),
+    ] = None,
     worth: Annotated[float | None, typer.Option(metavar="V", help="What one more wanted multiplex is worth.")] = None,
     reach: Annotated[float, typer.Option(metavar="KM", help="How far to look for transmitters.")] = 150.0,
     method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
@@ -169,7 +176,9 @@ def path(
 
 @main.command()
 def verify(
-    folder: Annotated[Path | None, typer.Argument(metavar="[DIR]", help="Worked examples; default: those in the package.")] = None,
+    folder: Annotated[
+        Path | None, typer.Argument(metavar="[DIR]", help="Worked examples; default: those in the package.")
+    ] = None,
     as_json: Json = False,
 ) -> None:
     """Replay published worked examples; leaves with 1 if a case is off by more than 1e-6 dB."""

@@ -34,4 +34,9 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
                 os.replace(one, target.parent / one.name)
     except OSError as error:
         raise StoreError(f"{path.name} could not be copied into {terrain_dir()} ({error.strerror or error})") from error
-    return {"file": path.name, "kind": info.kind, "spacing_m": round(info.spacing_m, 1), "stored": str(target)}
+    return {
+        "file": path.name,
+        "kind": info.kind,
+        "spacing_m": round(info.spacing_m, 1),
+        "stored": str(target),
+    }

@@ -51,9 +51,7 @@ class Signals:
         count = self.frequency_mhz.size
         for key in self.__slots__:
             if len(getattr(self, key)) != count and not (key == "mode_source" and not self.mode_source):
-                raise RequestError(
-                    f"signals: {key} has {len(getattr(self, key))} rows, frequency_mhz has {count}"
-                )
+                raise RequestError(f"signals: {key} has {len(getattr(self, key))} rows, frequency_mhz has {count}")
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,9 +115,7 @@ def receive(
     noise factor is fext + frx − 1 with every term referred to the aerial's terminals.
     """
     outside_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
-    return receive_with_noise(
-        chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, outside_db
-    )
+    return receive_with_noise(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, outside_db)
 
 
 def receive_with_noise(
@@ -193,9 +189,7 @@ class _Air:
         return self.covering_loss_db + self.pattern_loss_db + self.polarisation_loss_db
 
 
-def _air(
-    chain: Chain, signals: Signals, pointing_deg: ArrayLike, polarisation: str, assumptions: Assumptions
-) -> _Air:
+def _air(chain: Chain, signals: Signals, pointing_deg: ArrayLike, polarisation: str, assumptions: Assumptions) -> _Air:
     aerial = chain.aerial
     off_axis = response.off_axis_deg(signals.bearing_deg, pointing_deg)
     pattern = response.pattern_loss_db(aerial, off_axis, polarisation, assumptions.value("dipole_null_db"))
@@ -208,9 +202,7 @@ def _air(
     # A mixed emission loses its other half in every direction.
     added = np.where(mixed, on_axis, np.maximum(on_axis - pattern, 0))
     return _Air(
-        response.gain_dbd(
-            aerial, signals.frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave")
-        ),
+        response.gain_dbd(aerial, signals.frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave")),
         assumptions.value("loft_covering_db") if aerial.place == "loft" else 0.0,
         off_axis,
         pattern,
@@ -282,9 +274,7 @@ def _air_lines(chain: Chain, signals: Signals, air: _Air, polarisation: str) -> 
         stated += " beyond its frequencies: assumption aerial_out_of_range_db_per_octave"
     pattern = {
         "class": f"{aerial.beamwidth_deg:g}° beamwidth, {aerial.front_to_back_db:g} dB front to back",
-        "dipole": "round, rods upright"
-        if polarisation == "vertical"
-        else "figure of eight, assumption dipole_null_db",
+        "dipole": "round, rods upright" if polarisation == "vertical" else "figure of eight, assumption dipole_null_db",
     }[aerial.pattern]
     emitted = signals.polarisation[0]
     turned = {
@@ -331,9 +321,7 @@ def _noise_lines(chain: Chain, signals: Signals, row: list[Stage], surroundings:
         left = db_from_ratio(gain * own) - set_figure_db
         lines.append(("noise the amplifier leaves", -left, "cascade rule (Friis 1944), parts at 290 K"))
     heard = db_from_ratio(system_noise_factor(fam_db, own) / own)
-    lines.append(
-        ("noise from outside", -heard, f"Rec. ITU-R P.372, {ENVIRONMENTS[surroundings]}, at least 290 K")
-    )
+    lines.append(("noise from outside", -heard, f"Rec. ITU-R P.372, {ENVIRONMENTS[surroundings]}, at least 290 K"))
     return lines
 
 

@@ -37,7 +37,13 @@ def emission_rows(store: Store) -> list[dict[str, Any]]:
 def raster_rows(ground: Ground) -> list[dict[str, Any]]:
     """One row per raster, in use or refused."""
     used = [
-        {"file": one.name, "state": "in use", "kind": one.kind, "spacing_m": round(one.spacing_m, 1), "note": ""}
+        {
+            "file": one.name,
+            "state": "in use",
+            "kind": one.kind,
+            "spacing_m": round(one.spacing_m, 1),
+            "note": "",
+        }
         for one in ground.rasters
     ]
     refused = [

@@ -83,6 +83,7 @@ def air_of(fields: Sequence[EmissionField]) -> Air:
         receiver_noise_figure_db=np.array([mode.noise_figure_db for mode in modes]),
         bearing_deg=np.array([field.bearing_deg for field in kept]),
         polarisation=tuple(field.emission.polarisation for field in kept),
+        mode_source=tuple(mode.source for mode in modes),
     )
     return Air(
         fields=kept,
@@ -112,7 +113,13 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
     assert best is not None  # there is always a polarisation
     _, pointing_deg, polarisation, counts = best
     faded = receive(
-        chain, air.signals, air.used_dbuv_m - air.fade_db, pointing_deg, polarisation, assumptions, roof.surroundings
+        chain,
+        air.signals,
+        air.used_dbuv_m - air.fade_db,
+        pointing_deg,
+        polarisation,
+        assumptions,
+        roof.surroundings,
     )
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
     cells = Cells(faded.margin_db, _path_error(air, assumptions), _parts(chain, polarisation, air, faded, assumptions))
@@ -148,13 +155,25 @@ def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
 
 
 def _sweep(
-    chain: Chain, polarisation: AerialPolarisation, air: Air, roof: Roof, counted: Sequence[str], assumptions: Assumptions
+    chain: Chain,
+    polarisation: AerialPolarisation,
+    air: Air,
+    roof: Roof,
+    counted: Sequence[str],
+    assumptions: Assumptions,
 ) -> FloatArray:
     reception = receive(
-        chain, air.signals, air.used_dbuv_m - air.fade_db, BEARINGS[:, None], polarisation, assumptions, roof.surroundings
+        chain,
+        air.signals,
+        air.used_dbuv_m - air.fade_db,
+        BEARINGS[:, None],
+        polarisation,
+        assumptions,
+        roof.surroundings,
     )
     fixed = air.path_sd_db**2 + sum(
-        (part.sd_db**2 for part in _parts_of_any_pointing(chain, air, assumptions)), np.zeros_like(air.path_sd_db)
+        (part.sd_db**2 for part in _parts_of_any_pointing(chain, air, assumptions)),
+        np.zeros_like(air.path_sd_db),
     )
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     chance = exceedance(reception.margin_db, np.sqrt(fixed + turned_away**2))
@@ -204,7 +223,8 @@ def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> 
         ),
         ErrorPart(tuple(f"emission:{name}" for name in ids), np.full(len(ids), assumptions.value("emission_sd_db"))),
         ErrorPart(
-            tuple(f"erp:{name}" for name in ids), np.where(air.doubtful_erp, assumptions.value("erp_unknown_sd_db"), 0.0)
+            tuple(f"erp:{name}" for name in ids),
+            np.where(air.doubtful_erp, assumptions.value("erp_unknown_sd_db"), 0.0),
         ),
         ErrorPart(tuple(f"fade:{mast}" for mast in air.masts), assumptions.value("fade_sd_share") * air.fade_db),
         same(

@@ -34,12 +34,14 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     found = store.emissions_within(
         request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
     )
-    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent)
+    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent, request.method)
     air = air_of(fields)
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]
-    turned = {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
+    turned = (
+        {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
+    )
     outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
     verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions)
     return answer_document(
@@ -62,7 +64,9 @@ def _chains(request: AssessRequest, store: Store) -> list[Chain]:
     for name in names:
         if names.count(name) > 1:
             raise RequestError(
-                f'two chains are named "{name}": give each its own name', field="chains", allowed="different names"
+                f'two chains are named "{name}": give each its own name',
+                field="chains",
+                allowed="different names",
             )
     if request.now not in (None, NOTHING, *names):
         chains.insert(0, stored_chain(store, str(request.now)))

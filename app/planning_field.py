@@ -91,9 +91,7 @@ def minimum_field(
     got = receive_with_noise(chain, signals, 0.0, 0.0, "horizontal", Assumptions({"reserve_db": 0.0}), 0.0)
     least = -got.margin_db.item()
     level = got.noise_dbuv.item() + required_cn_db
-    location = NormalDist().inv_cdf(location_percent / 100) * float(
-        np.hypot(location_sd_db, entry_loss_sd_db)
-    )
+    location = NormalDist().inv_cdf(location_percent / 100) * float(np.hypot(location_sd_db, entry_loss_sd_db))
     return PlanningField(
         noise_dbw=dbm_from_dbuv(got.noise_dbuv).item() - 30,
         minimum_power_dbw=dbm_from_dbuv(level).item() - 30,

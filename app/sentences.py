@@ -19,24 +19,34 @@ def path_kind(clearance_ratio: float, beyond_horizon: bool) -> Kind:
 
 
 def path_sentence(
-    kind: Kind, distance_km: float, worst_point_km: float, into_line_m: float, clearance_ratio: float, sea_share: float
+    kind: Kind,
+    distance_km: float,
+    worst_point_km: float,
+    into_line_m: float,
+    clearance_ratio: float,
+    sea_share: float,
 ) -> str:
     """Tell the path from the transmitter's mast to the aerial.
 
     worst_point_km counts from the roof, as a person there looks; into_line_m is how far ground and
     Earth bulge stand above the straight ray there, negative below it.
     """
-    ground = "ground"
     sea = f", {sea_share:.0%} of the way over sea" if sea_share >= 0.05 else ""
-    length = f"{distance_km:.0f} km" if distance_km >= 10 else f"{distance_km:.1f} km"
-    place = f"{worst_point_km:.0f} km" if worst_point_km >= 10 else f"{worst_point_km:.1f} km"
+    start = f"{_kilometres(distance_km)}{sea}"
+    place = _kilometres(worst_point_km)
     if kind == "beyond the horizon":
         if into_line_m > 0:
-            return f"{length}{sea}, beyond the horizon: {ground} and the Earth's curve at {place} stand {into_line_m:.0f} m into the line."
-        return f"{length}{sea}, at the edge of the horizon: the line passes {-into_line_m:.0f} m over the {ground} at {place}."
+            into = f"ground and the Earth's curve at {place} stand {into_line_m:.0f} m into the line"
+            return f"{start}, beyond the horizon: {into}."
+        return f"{start}, at the edge of the horizon: the line passes {-into_line_m:.0f} m over the ground at {place}."
     if kind == "clear":
-        return f"{length}{sea}, a clear line: it passes {-into_line_m:.0f} m over the {ground} at its tightest, {place} away."
+        over = f"{-into_line_m:.0f} m over the ground at its tightest, {place} away"
+        return f"{start}, a clear line: it passes {over}."
     if kind == "grazing":
         share = f"{clearance_ratio:.1f} of the first Fresnel radius"
-        return f"{length}{sea}, in sight but tight: only {-into_line_m:.0f} m over the {ground} at {place}, {share}."
-    return f"{length}{sea}, blocked: the {ground} at {place} stands {into_line_m:.0f} m into the line."
+        return f"{start}, in sight but tight: only {-into_line_m:.0f} m over the ground at {place}, {share}."
+    return f"{start}, blocked: the ground at {place} stands {into_line_m:.0f} m into the line."
+
+
+def _kilometres(distance_km: float) -> str:
+    return f"{distance_km:.0f} km" if distance_km >= 10 else f"{distance_km:.1f} km"

@@ -43,8 +43,8 @@ def site_of(roof: Roof, ground: Ground) -> Site:
     shore_m = _distance_to_land_m(roof, ground)
     if shore_m is None:
         raise RoofError(
-            f"{place(roof.latitude_deg, roof.longitude_deg)} lies more than {FARTHEST_OFFSHORE_M:.0f} m out on the water: "
-            "choose a place on land",
+            f"{place(roof.latitude_deg, roof.longitude_deg)} lies more than {FARTHEST_OFFSHORE_M:.0f} m out "
+            "on the water: choose a place on land",
             field="roof",
             allowed=f"land, or water within {FARTHEST_OFFSHORE_M:.0f} m of it",
         )

@@ -66,7 +66,11 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
     total = len(answer["multiplexes"])
     baseline, candidate = verdict["baseline"], verdict["candidate"]
     currency = answer["chains"][candidate]["currency"]
-    extra, price, limit = verdict["expected_extra"], verdict["price_difference"], max(0.0, verdict["break_even_price"])
+    extra, price, limit = (
+        verdict["expected_extra"],
+        verdict["price_difference"],
+        max(0.0, verdict["break_even_price"]),
+    )
     today = (
         "Nothing is up today."
         if baseline not in answer["chains"]
@@ -93,7 +97,9 @@ def _table(answer: Mapping[str, Any], names: Sequence[str]) -> Iterator[str]:
     if rows:
         table = [["what changes" if len(names) > 1 else "multiplex", *names], *rows]
         widths = [max(len(row[column]) for row in table) for column in range(len(table[0]))]
-        yield from ("  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip() for row in table)
+        yield from (
+            "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip() for row in table
+        )
     if unchanged:
         yield f"{len(unchanged)} unchanged: {', '.join(unchanged)}"
 

@@ -130,7 +130,11 @@ def ranked(verdicts: Sequence[Verdict]) -> list[Verdict]:
     """Best first: by expected worth; those without a price after them, by what they bring."""
     return sorted(
         verdicts,
-        key=lambda one: (one.expected_worth is None, -(one.expected_worth if one.expected_worth is not None else one.expected_extra), one.candidate),
+        key=lambda one: (
+            one.expected_worth is None,
+            -(one.expected_worth if one.expected_worth is not None else one.expected_extra),
+            one.candidate,
+        ),
     )
 
 
@@ -153,7 +157,11 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
 
 
 def _cheapest_equal(
-    candidate: Outcome, others: Sequence[Outcome], counted: Sequence[int], baseline: Outcome, baseline_is_up: bool
+    candidate: Outcome,
+    others: Sequence[Outcome],
+    counted: Sequence[int],
+    baseline: Outcome,
+    baseline_is_up: bool,
 ) -> str | None:
     def price(outcome: Outcome) -> float | None:
         return price_difference(outcome.chain, baseline.chain, baseline_is_up)

@@ -113,9 +113,7 @@ def _outcome(example: WorkedExample) -> _Outcome:
     except KeyError as error:
         raise RequestError(f"case {example.name} lacks the input {error}: add it") from error
     except (PropagationError, TypeError, ValueError) as error:
-        raise RequestError(
-            f"case {example.name} cannot be computed: {error}; mend its inputs or profile"
-        ) from error
+        raise RequestError(f"case {example.name} cannot be computed: {error}; mend its inputs or profile") from error
 
     wrong = [
         _difference(name, value, derived[name])
@@ -179,9 +177,7 @@ def _computed(example: WorkedExample) -> tuple[Mapping[str, float], p1546.P1546R
 def _term(result: object, name: str, example: WorkedExample) -> float:
     value = getattr(result, name, None)
     if value is None:
-        raise RequestError(
-            f"case {example.name}: {name} is no term of {RECOMMENDATIONS[example.method]} here"
-        )
+        raise RequestError(f"case {example.name}: {name} is no term of {RECOMMENDATIONS[example.method]} here")
     return float(value)
 
 

@@ -112,11 +112,7 @@ def _set_in(folder: Path) -> ExampleSet:
     if not listed or missing or unlisted:
         raise RequestError(
             f"{folder / 'index.csv'} lists {len(listed)} cases, {folder / 'cases'} holds {len(present)}"
-            + (
-                f"; missing there: {', '.join(name or '(no name)' for name in missing[:5])}"
-                if missing
-                else ""
-            )
+            + (f"; missing there: {', '.join(name or '(no name)' for name in missing[:5])}" if missing else "")
             + (f"; not in the list: {', '.join(unlisted[:5])}" if unlisted else "")
             + ": make both agree, one cases/NAME.json for each line of the list"
         )
@@ -148,18 +144,12 @@ def _case(folder: Path, name: str, profiles: dict[str, dict[str, FloatArray]]) -
             _ours(case["inputs"]),
             _ours(derived),
             steps,
-            {
-                key: value
-                for key, value in _ours(case["expected"]).items()
-                if not key.startswith("published_")
-            },
+            {key: value for key, value in _ours(case["expected"]).items() if not key.startswith("published_")},
         )
     except RequestError:
         raise
     except json.JSONDecodeError as error:
-        raise RequestError(
-            f"{path} is no JSON (line {error.lineno}: {error.msg}): mend or replace it"
-        ) from error
+        raise RequestError(f"{path} is no JSON (line {error.lineno}: {error.msg}): mend or replace it") from error
     except KeyError as error:
         raise RequestError(f"{path} lacks {error}: give every field of a worked example") from error
     except (OSError, UnicodeDecodeError, TypeError, ValueError, AttributeError) as error:

@@ -35,7 +35,9 @@ def test_draws_have_the_stated_median_and_spread():
     assert drawn.std(axis=0) == pytest.approx(np.sqrt(29), rel=0.03)
 
 
-@pytest.mark.parametrize(("apart_deg", "expected"), [(0.0, 0.5), (20.0, 0.5 / np.e), (180.0, 0.0), (340.0, 0.5 / np.e)])
+@pytest.mark.parametrize(
+    ("apart_deg", "expected"), [(0.0, 0.5), (20.0, 0.5 / np.e), (180.0, 0.0), (340.0, 0.5 / np.e)]
+)
 def test_masts_correlate_by_their_difference_of_bearing(apart_deg, expected):
     """0.5 exp(-difference / 20 degrees), the shorter way round; sampling error 1 / sqrt(4096) = 0.016."""
     drawn = cells([0, 0], bearings=(30.0, (30.0 + apart_deg) % 360)).draws()
@@ -66,7 +68,11 @@ def test_field_over_bearing_has_unit_spread():
 
 def test_a_multiplex_is_received_if_one_of_its_emissions_is():
     draws = np.array([[1.0, -1.0, -1.0], [-1.0, 1.0, -1.0], [-1.0, -1.0, 1.0]])
-    assert received(draws, ("m", "m", "n"), ("m", "n")).tolist() == [[True, False], [True, False], [False, True]]
+    assert received(draws, ("m", "m", "n"), ("m", "n")).tolist() == [
+        [True, False],
+        [True, False],
+        [False, True],
+    ]
 
 
 def test_grades_begin_at_the_location_classes_of_ge06():

@@ -48,7 +48,12 @@ def test_higher_price_and_no_gain_is_not_worth_it():
 def test_an_identical_candidate_differs_by_exactly_nothing():
     same = outcome(SMALL, 0.3, 0.6, 0.9)
     found = verdict(same, outcome(SMALL, 0.3, 0.6, 0.9))
-    assert (found.expected_extra, found.price_difference, found.expected_worth, found.chance_of_gain) == (0, 0, 0, 0)
+    assert (found.expected_extra, found.price_difference, found.expected_worth, found.chance_of_gain) == (
+        0,
+        0,
+        0,
+        0,
+    )
     assert found.answer == "not worth it"
 
 
@@ -110,4 +115,7 @@ def test_best_verdict_comes_first():
 def test_reason_counts_what_holds_back():
     small = outcome(SMALL, 0.1, 0.2, 0.3, limits=("noise", "noise", "time"))
     found = verdict(outcome(LARGE, 0.9, 0.9, 0.1), small)
-    assert found.reason == "Noise holds back 2 of 3; time holds back 1 of 3; high-gain brings 2 of them to a likely chance."
+    assert (
+        found.reason
+        == "Noise holds back 2 of 3; time holds back 1 of 3; high-gain brings 2 of them to a likely chance."
+    )

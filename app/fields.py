@@ -1,0 +1,280 @@
+"""The field of every emission at a roof: median, terms, spread.
+
+One profile per transmitter, one digest per antenna height, then every emission and time percentage of
+all transmitters in one call of each method. P.1812 is used where it holds, P.1546 elsewhere; the
+location terms of both Recommendations are left out, the spread of app/margins.py stands for them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.assumptions import Assumptions
+from app.paths_to_roof import Path, PathKey, paths_to_roof
+from app.request import Method
+from app.roof import Roof
+from app.sentences import CLEAR_RATIO, Kind, path_kind, path_sentence
+from app.transmitters.model import Emission, Transmitter
+from propagation import p1546, p1812
+from propagation.digest import PathDigest, stacked_digests
+from propagation.fading import enhancement_db, fade_db, subrefraction_db
+from propagation.free_space import field_strength_dbuv_m
+from terrain.geodesy import distance_and_bearing
+from terrain.mosaic import Ground
+
+FloatArray = NDArray[np.float64]
+Found = tuple[Emission, Transmitter, float, float]  # with distance_km and bearing_deg at the roof
+
+DOUBTFUL_FLAGS = ("erp-unknown", "pattern-unknown")
+
+
+@dataclass(frozen=True, slots=True)
+class PathFacts:
+    """What the ground does to one path."""
+
+    sentence: str
+    kind: Kind
+    line_of_sight: bool
+    clearance_ratio: float
+    terrain_clearance_angle_deg: float
+    effective_height_m: float
+    diffraction_loss_db: float
+    land_km: float
+    sea_km: float
+    sd_db: float  # spread that the kind of path and the methods' disagreement give
+
+
+@dataclass(frozen=True, slots=True)
+class EmissionField:
+    """One emission as the roof meets it."""
+
+    emission: Emission
+    transmitter: Transmitter
+    distance_km: float
+    bearing_deg: float  # from the roof
+    erp_kw: float  # towards the roof
+    free_space_dbuv_m: float
+    reason: str | None = None  # why there is no answer; then all below are empty
+    path: PathFacts | None = None
+    p1546_dbuv_m: float | None = None
+    p1812_dbuv_m: float | None = None
+    used_dbuv_m: float = float("nan")
+    method: str | None = None
+    doubt_db: float = 0.0  # part of used_dbuv_m: power or pattern not stated
+    fade_db: float = 0.0
+    enhancement_db: float = 0.0
+
+    @property
+    def erp_is_doubtful(self) -> bool:
+        """Whether the register left the power or the pattern open."""
+        return any(flag in DOUBTFUL_FLAGS for flag in self.emission.flags)
+
+
+def fields_at(
+    roof: Roof,
+    found: Sequence[Found],
+    ground: Ground,
+    assumptions: Assumptions,
+    availability_percent: int,
+    method: Method = "both",
+) -> list[EmissionField]:
+    """Return the field of each emission found, in the same order.
+
+    An emission whose path has no answer (no ground, too near) keeps its place with the reason.
+    """
+    if not found:
+        return []
+    keys = [PathKey(transmitter, emission.antenna_agl_m) for emission, transmitter, _, _ in found]
+    paths = paths_to_roof(roof, keys, ground, assumptions)
+    erp_kw = _erp_towards_roof_kw(roof, found)
+    good = [e for e, key in enumerate(keys) if isinstance(paths[key], Path)]
+    rows = [found[e] for e in good]
+    mine = [path for key in keys if isinstance(path := paths[key], Path)]
+    answered = iter(
+        _answered(rows, mine, erp_kw[good], roof, assumptions, availability_percent, method) if rows else []
+    )
+    return [
+        _unanswered(row, float(power), reason) if isinstance(reason := paths[key], str) else next(answered)
+        for row, key, power in zip(found, keys, erp_kw, strict=True)
+    ]
+
+
+def _unanswered(row: Found, erp_kw: float, reason: str) -> EmissionField:
+    emission, transmitter, distance_km, bearing_deg = row
+    free_space = float(field_strength_dbuv_m(max(distance_km, 1e-3), erp_kw))
+    return EmissionField(emission, transmitter, distance_km, bearing_deg, erp_kw, free_space, reason)
+
+
+def _answered(
+    rows: Sequence[Found],
+    paths: Sequence[Path],
+    erp_kw: FloatArray,
+    roof: Roof,
+    assumptions: Assumptions,
+    availability_percent: int,
+    method: Method,
+) -> list[EmissionField]:
+    digest = stacked_digests([path.digest for path in paths])
+    frequency_mhz = np.array([row[0].frequency_mhz for row in rows])
+    plane = np.array(["vertical" if row[0].polarisation == "vertical" else "horizontal" for row in rows])
+    n0 = np.array([path.n0 for path in paths])
+    times = np.array([50.0, 1.0, min(50.0, 100.0 - availability_percent)])[:, None]
+
+    by_p1546 = _by_p1546(digest, paths, roof, frequency_mhz, times, erp_kw)
+    by_p1812 = np.full_like(by_p1546, np.nan)
+    if method != "p1546":
+        by_p1812 = _by_p1812(paths, frequency_mhz, plane, times, n0, erp_kw)
+    holds = ~np.isnan(by_p1812[0])
+    at_50, at_1, in_state_b = np.where(holds, by_p1812, by_p1546)
+
+    fade = fade_db(
+        availability_percent,
+        subrefraction_db=subrefraction_db(digest, frequency_mhz, plane, n0),
+        enhancement_1_db=at_1 - at_50,
+        line_of_sight=digest.line_of_sight,
+        sea_km=digest.sea_km,
+        least_fade_99_db=assumptions.value("least_fade_99_db"),
+        sea_fade_99_db=assumptions.value("sea_fade_99_db"),
+        fade_share_90=assumptions.value("fade_share_90"),
+    )
+    rise = enhancement_db(in_state_b, at_50)
+    free_space = field_strength_dbuv_m(digest.path_length_km, erp_kw)
+    clearance = digest.clearance_ratio(frequency_mhz)
+    diffraction = digest.diffraction(frequency_mhz, plane).loss_db
+    kinds = [path_kind(c, b) for c, b in zip(clearance.tolist(), digest.beyond_horizon.tolist(), strict=True)]
+    sd = _path_sd_db(clearance, digest.beyond_horizon, by_p1812[0], by_p1546[0], assumptions)
+    unstated = assumptions.value("erp_unknown_mean_db")
+
+    answers = []
+    for e, (emission, transmitter, distance_km, bearing_deg) in enumerate(rows):
+        doubt = unstated if any(flag in DOUBTFUL_FLAGS for flag in emission.flags) else 0.0
+        facts = PathFacts(
+            sentence=path_sentence(
+                kinds[e],
+                distance_km,
+                float(digest.path_length_km[e] - digest.worst_point_km[e]),
+                float(digest.obstacle_into_line_m[e]),
+                float(clearance[e]),
+                float(digest.sea_km[e] / digest.path_length_km[e]),
+            ),
+            kind=kinds[e],
+            line_of_sight=bool(digest.line_of_sight[e]),
+            clearance_ratio=float(clearance[e]),
+            terrain_clearance_angle_deg=float(digest.rx_clearance_angle_deg[e]),
+            effective_height_m=float(digest.h1_source_height_m[e]),
+            diffraction_loss_db=float(diffraction[e]),
+            land_km=float(digest.land_km[e]),
+            sea_km=float(digest.sea_km[e]),
+            sd_db=float(sd[e]),
+        )
+        answers.append(
+            EmissionField(
+                emission=emission,
+                transmitter=transmitter,
+                distance_km=distance_km,
+                bearing_deg=bearing_deg,
+                erp_kw=float(erp_kw[e]),
+                free_space_dbuv_m=float(free_space[e]),
+                path=facts,
+                p1546_dbuv_m=float(by_p1546[0, e]),
+                p1812_dbuv_m=float(by_p1812[0, e]) if holds[e] else None,
+                used_dbuv_m=float(at_50[e]) + doubt,
+                method="p1812" if holds[e] else "p1546",
+                doubt_db=doubt,
+                fade_db=float(fade[e]),
+                enhancement_db=float(rise[e]),
+            )
+        )
+    return answers
+
+
+def _by_p1546(
+    digest: PathDigest,
+    paths: Sequence[Path],
+    roof: Roof,
+    frequency_mhz: FloatArray,
+    times: FloatArray,
+    erp_kw: FloatArray,
+) -> FloatArray:
+    """Field by Rec. ITU-R P.1546-6 for each time and emission. (t, e)"""
+    obstacle_m = [path.local_obstacle_m for path in paths]
+    return p1546.field_strength(
+        frequency_mhz=frequency_mhz,
+        time_percent=times,
+        path_length_km=digest.path_length_km,
+        land_km=digest.land_km,
+        cold_sea_km=digest.sea_km,
+        h1_source_height_m=digest.h1_source_height_m,
+        tx_height_agl_m=np.array([path.antenna_agl_m for path in paths]),
+        rx_height_agl_m=roof.aerial_agl_m,
+        rx_environment=np.array(["urban" if height > 0 else "rural" for height in obstacle_m]),
+        rx_clutter_height_m=np.array(obstacle_m),
+        tx_clearance_angle_deg=digest.tx_clearance_angle_deg,
+        rx_clearance_angle_deg=digest.rx_clearance_angle_deg,
+        tx_ground_amsl_m=digest.tx_ground_amsl_m,
+        rx_ground_amsl_m=digest.rx_ground_amsl_m,
+        erp_kw=erp_kw,
+    ).field_dbuv_m
+
+
+def _by_p1812(
+    paths: Sequence[Path],
+    frequency_mhz: FloatArray,
+    plane: NDArray[np.str_],
+    times: FloatArray,
+    n0: FloatArray,
+    erp_kw: FloatArray,
+) -> FloatArray:
+    """Field by Rec. ITU-R P.1812-7 for each time and emission, NaN where it does not hold. (t, e)"""
+    field = np.full((len(times), len(paths)), np.nan)
+    inside = [e for e, path in enumerate(paths) if path.terms is not None]
+    if inside:
+        terms = p1812.stacked_paths([path.terms for path in paths if path.terms is not None])
+        field[:, inside] = p1812.loss_of_path(
+            terms,
+            frequency_mhz=frequency_mhz[inside],
+            time_percent=times,
+            polarisation=plane[inside],
+            n0=n0[inside],
+            erp_kw=erp_kw[inside],
+        ).field_dbuv_m
+    return field
+
+
+def _path_sd_db(
+    clearance_ratio: FloatArray,
+    beyond_horizon: NDArray[np.bool_],
+    p1812_dbuv_m: FloatArray,
+    p1546_dbuv_m: FloatArray,
+    assumptions: Assumptions,
+) -> FloatArray:
+    """Spread of the path error: by kind, interpolated in the clearance ratio, and by disagreement."""
+    value = assumptions.value
+    by_kind = np.interp(
+        clearance_ratio,
+        [-1.0, 0.0, CLEAR_RATIO],
+        [value("path_obstructed_sd_db"), value("path_grazing_sd_db"), value("path_clear_sd_db")],
+    )
+    by_kind = np.where(beyond_horizon, value("path_beyond_horizon_sd_db"), by_kind)
+    apart = np.abs(p1812_dbuv_m - p1546_dbuv_m)
+    disagreement = np.clip((apart - value("disagreement_free_db")) / 2, 0, value("disagreement_sd_max_db"))
+    both = np.hypot(by_kind, disagreement)
+    return np.where(np.isnan(p1812_dbuv_m), by_kind * value("single_method_factor"), both)
+
+
+def _erp_towards_roof_kw(roof: Roof, found: Sequence[Found]) -> FloatArray:
+    """Radiated power of each emission in the direction of the roof. (e,)"""
+    _, from_mast_deg = distance_and_bearing(
+        np.array([row[1].latitude_deg for row in found]),
+        np.array([row[1].longitude_deg for row in found]),
+        roof.latitude_deg,
+        roof.longitude_deg,
+    )
+    attenuation_db = [
+        row[0].attenuation_db(bearing_deg) for row, bearing_deg in zip(found, from_mast_deg.tolist(), strict=True)
+    ]
+    return np.array([row[0].erp_kw for row in found]) * 10 ** (-np.array(attenuation_db) / 10)
