@@ -1,0 +1,44 @@
+"""What every route works with."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import Annotated, ParamSpec, TypeVar
+
+import anyio
+import anyio.to_thread
+from fastapi import Depends, Request
+
+from app.settings import Settings
+from app.transmitters.store import Store
+from terrain.mosaic import Ground
+
+P = ParamSpec("P")
+T = TypeVar("T")
+
+
+@dataclass(frozen=True, slots=True)
+class Context:
+    """Store, ground and settings of this server, and its places for computing."""
+
+    store: Store
+    ground: Ground
+    settings: Settings
+    places: anyio.CapacityLimiter = field(init=False)
+
+    def __post_init__(self) -> None:
+        """Make as many places as questions may be computed at once; tiles and lists have threads of their own."""
+        object.__setattr__(self, "places", anyio.CapacityLimiter(self.settings.workers))
+
+    async def compute(self, function: Callable[P, T], *args: P.args, **kwargs: P.kwargs) -> T:
+        """Run a long function in a thread, at most `settings.workers` at once."""
+        return await anyio.to_thread.run_sync(lambda: function(*args, **kwargs), limiter=self.places)
+
+
+def _context(request: Request) -> Context:
+    context: Context = request.app.state.context
+    return context
+
+
+ContextDep = Annotated[Context, Depends(_context)]

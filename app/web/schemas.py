@@ -1,0 +1,152 @@
+"""What may be sent: JSON translated to the dataclasses of app. Names are those of the answer's document.
+
+Only the shape is checked here (known names, numbers that are numbers); whether a value is possible is said
+by Roof, AssessRequest and the chain itself, so that the command line says the same.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from contextlib import contextmanager
+from typing import Annotated, Any, Literal
+
+from pydantic import AfterValidator, BaseModel, ConfigDict, Field, ValidationInfo, model_validator
+from pydantic_core import PydanticCustomError
+
+from app.chain.document import chain_from_document
+from app.errors import AppError
+from app.request import AssessRequest
+from app.roof import Obstacle, Roof, Surroundings
+
+DEEPEST = 12  # of lists and objects inside one another
+LONGEST_NAME = 200
+
+
+class Strict(BaseModel):
+    """Known names only, no text for numbers, no NaN."""
+
+    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
+
+    @model_validator(mode="before")
+    @classmethod
+    def _known_names(cls, data: Any, info: ValidationInfo) -> Any:
+        unknown = [name for name in data if name not in cls.model_fields] if isinstance(data, dict) else []
+        if unknown:
+            raise PydanticCustomError(
+                "unknown_field", "unknown name", {"name": str(unknown[0]), "allowed": ", ".join(cls.model_fields)}
+            )
+        return data
+
+
+def _plain_json(value: dict[str, Any]) -> dict[str, Any]:
+    """Refuse what JSON, the database or a person could not take back."""
+
+    def walk(node: object, depth: int) -> None:
+        if depth > DEEPEST:
+            raise PydanticCustomError("plain_value", "too deep", {"allowed": f"at most {DEEPEST} levels"})
+        if isinstance(node, float) and not math.isfinite(node):
+            raise PydanticCustomError("plain_value", "not finite", {"allowed": "finite numbers"})
+        if isinstance(node, str) and any("\ud800" <= letter <= "\udfff" for letter in node):
+            raise PydanticCustomError("plain_value", "no text", {"allowed": "text in UTF-8"})
+        if isinstance(node, dict):
+            for key, inner in node.items():
+                walk(key, depth + 1)
+                walk(inner, depth + 1)
+        elif isinstance(node, list):
+            for inner in node:
+                walk(inner, depth + 1)
+
+    walk(value, 0)
+    return value
+
+
+ChainDocument = Annotated[dict[str, Any], AfterValidator(_plain_json)]
+Name = Annotated[str, Field(min_length=1, max_length=LONGEST_NAME)]
+
+
+class ObstacleIn(Strict):
+    """Something near the roof that stands in one direction."""
+
+    bearing_deg: float
+    distance_m: float
+    height_agl_m: float
+    width_m: float
+
+
+class RoofIn(Strict):
+    """A receiving place."""
+
+    latitude_deg: float = Field(examples=[0.0])
+    longitude_deg: float = Field(examples=[0.0])
+    aerial_agl_m: float = 10.0
+    surroundings: Surroundings = "open"
+    obstacles: list[ObstacleIn] = Field([], max_length=360)
+
+    def roof(self) -> Roof:
+        """Return the roof that app works with."""
+        with errors_at("roof"):
+            return Roof(
+                latitude_deg=self.latitude_deg,
+                longitude_deg=self.longitude_deg,
+                aerial_agl_m=self.aerial_agl_m,
+                surroundings=self.surroundings,
+                obstacles=tuple(Obstacle(**one.model_dump()) for one in self.obstacles),
+            )
+
+
+class AssessIn(Strict):
+    """The question: a roof, and what to compare there."""
+
+    roof: RoofIn
+    chains: list[Name | ChainDocument] | None = Field(None, max_length=50)
+    now: Name | None = None
+    wanted: list[Name] | None = Field(None, max_length=1000)
+    readings: list[dict[str, Any]] = Field([], max_length=0, description="not taken into account yet: leave it empty")
+    worth_per_multiplex: float | None = None
+    reading_cost: float | None = None
+    availability_percent: Literal[50, 90, 99] = 99
+    reach_km: float = 150.0
+    method: Literal["p1812", "p1546", "both"] = "both"
+    assumptions: dict[str, float] = {}
+
+    def request(self, worth_per_multiplex: float | None, reading_cost: float | None) -> AssessRequest:
+        """Return the question that the planner answers; the arguments stand in for what was not said."""
+        chains = (
+            None
+            if self.chains is None
+            else tuple(one if isinstance(one, str) else chain_from_document(one) for one in self.chains)
+        )
+        return AssessRequest(
+            roof=self.roof.roof(),
+            chains=chains,
+            now=self.now,
+            wanted=None if self.wanted is None else tuple(self.wanted),
+            worth_per_multiplex=worth_per_multiplex if self.worth_per_multiplex is None else self.worth_per_multiplex,
+            reading_cost=reading_cost if self.reading_cost is None else self.reading_cost,
+            availability_percent=self.availability_percent,
+            reach_km=self.reach_km,
+            method=self.method,
+            assumptions=self.assumptions,
+        )
+
+
+class SavedRoofIn(Strict):
+    """A roof kept under a name, with what the page was showing for it."""
+
+    name: Name
+    roof: RoofIn
+    now: Name | None = None
+    idea: Name | None = None
+    note: str = Field("", max_length=4000)
+
+
+@contextmanager
+def errors_at(place: str) -> Iterator[None]:
+    """Let an error of app name its field as the request does."""
+    try:
+        yield
+    except AppError as error:
+        if error.field:
+            error.field = f"{place}.{error.field}"
+        raise
