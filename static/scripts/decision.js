@@ -1,0 +1,56 @@
+/** The sentence, its reason, and whatever went wrong. */
+
+import { sentence } from './sentence.js';
+import { titleOf, verdictOf } from './state.js';
+import { moneyText } from './units.js';
+
+/** @param {HTMLElement} element */
+export function createDecision(element) {
+  const told = /** @type {HTMLElement} */ (element.querySelector('.sentence'));
+  const reason = /** @type {HTMLElement} */ (element.querySelector('.reason'));
+  const terms = /** @type {HTMLElement} */ (element.querySelector('.terms'));
+  const trouble = /** @type {HTMLElement} */ (element.querySelector('.trouble'));
+  let shown = '';
+
+  /** @param {import('./state.js').State} state */
+  function update(state) {
+    const verdict = verdictOf(state);
+    const pieces = state.answer ? sentence(state.answer, verdict) : [{ text: invitation(state) }];
+    const now = JSON.stringify(pieces);
+    if (now !== shown) {
+      // Only a changed sentence is read out.
+      shown = now;
+      told.replaceChildren(...pieces.map((piece) => {
+        const node = document.createElement(piece.weight ? 'strong' : 'span');
+        node.textContent = piece.text;
+        if (piece.weight) node.className = piece.weight;
+        return node;
+      }));
+    }
+    element.classList.toggle('asking', state.asking);
+    element.classList.toggle('empty', !state.answer);
+    element.setAttribute('aria-busy', String(state.asking));
+    reason.textContent = verdict?.reason ?? '';
+    terms.textContent = verdict ? counted(state, verdict) : '';
+    const text = state.trouble?.message ?? '';
+    if (trouble.textContent !== text) trouble.textContent = text;
+  }
+  return { update };
+}
+
+/** @param {import('./state.js').State} state */
+function invitation(state) {
+  if (state.asking) return 'Looking along every path to this roof …';
+  if (state.chains?.length === 0) return 'No chain is kept yet: import one, then place the roof.';
+  return 'Where is the roof? Type its position, or click it on the map.';
+}
+
+/** @param {import('./state.js').State} state @param {any} verdict */
+function counted(state, verdict) {
+  const currency = state.answer.chains[verdict.candidate]?.currency;
+  const worth = state.answer.assumptions.find((one) => one.id === 'worth_per_multiplex')?.value;
+  const lines = [];
+  if (worth !== undefined) lines.push(`One more multiplex is counted as worth ${moneyText(worth, currency)}.`);
+  if (verdict.cheapest_equal) lines.push(`${titleOf(state, verdict.cheapest_equal)} brings the same for less.`);
+  return lines.join(' ');
+}

@@ -1,0 +1,48 @@
+/** Every gain and loss of the shown cell, as a table and a staircase. */
+
+import { shownCell, titleOf } from './state.js';
+import { numberText, signedText } from './units.js';
+
+const SVG = 'http://www.w3.org/2000/svg';
+
+/** @param {HTMLElement} element */
+export function createLedger(element) {
+  const title = /** @type {HTMLElement} */ (element.querySelector('h2'));
+  const body = /** @type {HTMLElement} */ (element.querySelector('tbody'));
+  const row = /** @type {HTMLTemplateElement} */ (document.getElementById('ledger-row'));
+
+  /** @param {import('./state.js').State} state */
+  function update(state) {
+    const cell = shownCell(state);
+    const outlets = cell?.through?.outlets ?? [];
+    element.hidden = outlets.length === 0;
+    if (outlets.length === 0) return;
+    const outlet = outlets.reduce((least, one) => (one.margin_db < least.margin_db ? one : least));
+    title.textContent = `${cell.multiplex.name} from the mast to ${outlet.name}, through ${titleOf(state, cell.chain)}`;
+    const totals = [0, ...outlet.ledger.map((step) => step.total)];
+    const scale = { low: Math.min(...totals), high: Math.max(...totals) };
+    body.replaceChildren(...outlet.ledger.map((step, place) => line(step, totals[place], scale)));
+    body.append(line({ step: 'margin', value_db: null, total: outlet.margin_db, source: '' }, 0, scale));
+    body.lastElementChild?.classList.add('result');
+  }
+
+  /** @param {any} step @param {number} from total before the step @param {{low: number, high: number}} scale */
+  function line(step, from, { low, high }) {
+    const made = /** @type {HTMLElement} */ (row.content.cloneNode(true));
+    made.querySelector('th').textContent = step.step;
+    made.querySelector('.value').textContent = step.value_db === null ? '' : signedText(step.value_db);
+    made.querySelector('.total').textContent = numberText(step.total, 1);
+    made.querySelector('.source').textContent = step.source;
+    const place = (value) => (100 * (value - low)) / (high - low || 1);
+    const bar = document.createElementNS(SVG, 'rect');
+    const [left, right] = [place(from), place(step.total)].sort((a, b) => a - b);
+    for (const [key, value] of Object.entries({ x: left, y: 1, width: Math.max(0.4, right - left), height: 8 })) bar.setAttribute(key, String(value));
+    bar.setAttribute('class', step.value_db === null ? 'end' : step.value_db < 0 ? 'down' : 'up');
+    const zero = document.createElementNS(SVG, 'path');
+    zero.setAttribute('d', `M${place(0)} -2V12`);
+    zero.setAttribute('class', 'zero');
+    made.querySelector('svg').append(zero, bar);
+    return made;
+  }
+  return { update };
+}

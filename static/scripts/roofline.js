@@ -1,0 +1,49 @@
+/** The line for whoever turns the aerial. */
+
+import { NOTHING, titleOf, verdictOf } from './state.js';
+import { bearingText, numberText, rodsText } from './units.js';
+
+/** @param {HTMLElement} element */
+export function createRoofline(element) {
+  const list = /** @type {HTMLElement} */ (element.querySelector('ol'));
+  const title = /** @type {HTMLElement} */ (element.querySelector('.chain'));
+
+  /** @param {import('./state.js').State} state */
+  function update(state) {
+    const verdict = verdictOf(state);
+    const name = verdict?.candidate ?? NOTHING;
+    const pointing = state.answer?.chains[name]?.pointings[0];
+    element.hidden = !pointing;
+    if (!pointing) return;
+    title.textContent = titleOf(state, name);
+    const level = levelToFind(state.answer, name);
+    const rows = [
+      [bearingText(pointing.pointing_deg), 'from true north'],
+      [rodsText(pointing.polarisation), 'as seen from the ground'],
+      [`${numberText(state.answer.roof.aerial_agl_m, 0)}\u00a0m`, 'above the ground'],
+      ...(level ? [[`${numberText(level.dbuv, 0)}\u00a0dB(µV)`, `or more on ${level.channel}, at ${level.outlet}`]] : []),
+    ];
+    list.replaceChildren(...rows.map(([figure, words]) => {
+      const item = document.createElement('li');
+      item.append(
+        Object.assign(document.createElement('b'), { textContent: figure }), ' ',
+        Object.assign(document.createElement('span'), { textContent: words }),
+      );
+      return item;
+    }));
+  }
+  return { update };
+}
+
+/**
+ * The emission that is easiest to find with a meter, and the level it keeps on a bad night.
+ * @param {any} answer @param {string} chain
+ */
+function levelToFind(answer, chain) {
+  const heard = answer.emissions.filter((one) => one.chains[chain]);
+  if (heard.length === 0) return null;
+  const surest = heard.reduce((best, one) => (one.chains[chain].chance > best.chains[chain].chance ? one : best));
+  const outlet = surest.chains[chain].outlets.reduce((least, one) => (one.margin_db < least.margin_db ? one : least));
+  const channel = surest.channel ? `channel ${surest.channel}` : `${surest.frequency_mhz} MHz`;
+  return { dbuv: outlet.level_dbuv, outlet: outlet.name, channel };
+}
