@@ -19,8 +19,8 @@ _OURS = ("id", "name", "created", "updated")
 
 
 def listed(connection: sqlite3.Connection, kind: Kind) -> list[Document]:
-    """Every document of a kind, by name."""
-    rows = connection.execute(f"{_SELECT} WHERE kind = ? ORDER BY name COLLATE NOCASE, id", [kind])
+    """Every document of a kind, oldest first."""
+    rows = connection.execute(f"{_SELECT} WHERE kind = ? ORDER BY rowid", [kind])
     return [_document(row) for row in rows]
 
 

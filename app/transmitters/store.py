@@ -192,7 +192,7 @@ class Store:
     # Roofs and chains: {"id", "name", "created", "updated", …}
 
     def list_roofs(self) -> list[Document]:
-        """Every stored roof, by name."""
+        """Every stored roof, oldest first."""
         with self._database.transaction() as connection:
             return documents.listed(connection, "roof")
 
@@ -212,7 +212,7 @@ class Store:
             documents.remove(connection, "roof", roof_id)
 
     def list_chains(self) -> list[Document]:
-        """Every stored chain, by name."""
+        """Every stored chain, oldest first."""
         with self._database.transaction() as connection:
             return documents.listed(connection, "chain")
 

@@ -288,3 +288,10 @@ def test_contents_that_json_cannot_hold_are_refused(store, value):
     with pytest.raises(RequestError, match="cannot be stored"):
         store.put_roof({"name": "Mill", "value": value})
     assert store.list_roofs() == []
+
+
+def test_documents_come_in_the_order_in_which_they_were_made(store):
+    for name in ("short", "long", "another"):
+        store.put_chain({"id": name, "name": name})
+    store.put_chain({"id": "short", "name": "zz"})  # a change keeps the place
+    assert [chain["id"] for chain in store.list_chains()] == ["short", "long", "another"]
