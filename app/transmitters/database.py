@@ -50,8 +50,7 @@ class Database:
             return database
         if not path.exists():
             raise StoreError(
-                f"the data folder {folder} cannot be written and holds no {FILE_NAME}: "
-                f"allow writing there {_ELSEWHERE}"
+                f"the data folder {folder} cannot be written and holds no {FILE_NAME}: allow writing there {_ELSEWHERE}"
             )
         database = cls(path, True, wait_s)
         with database.transaction() as connection:
@@ -99,7 +98,10 @@ class Database:
         try:
             connection = self._connect("rwc")
             try:
-                if _version(connection, self.path) < len(MIGRATIONS):
+                connection.execute("BEGIN")  # one view of the file, whatever others do meanwhile
+                version = _version(connection, self.path)
+                connection.execute("COMMIT")
+                if version < len(MIGRATIONS):
                     connection.execute("PRAGMA journal_mode = WAL")
                     connection.execute("BEGIN IMMEDIATE")
                     # Asked again under the lock: another process may have been quicker.
@@ -120,7 +122,10 @@ def _may_write(path: Path) -> bool:
 
 
 def _version(connection: sqlite3.Connection, path: Path) -> int:
-    """Steps of MIGRATIONS that the file has taken; refuses what is not ours or newer than we are."""
+    """Steps of MIGRATIONS that the file has taken; refuses what is not ours or newer than we are.
+
+    Asked inside a transaction, so that its answers belong together.
+    """
     version = int(connection.execute("PRAGMA user_version").fetchone()[0])
     owner = int(connection.execute("PRAGMA application_id").fetchone()[0])
     tables = int(connection.execute("SELECT count(*) FROM sqlite_master").fetchone()[0])
@@ -145,14 +150,10 @@ def _told(error: sqlite3.Error, path: Path) -> str:
         case sqlite3.SQLITE_CORRUPT | sqlite3.SQLITE_NOTADB:
             return f"{path} is damaged or no database ({error}): {_TRY_COPY}; Gainworth has not changed it"
         case sqlite3.SQLITE_READONLY | sqlite3.SQLITE_CANTOPEN | sqlite3.SQLITE_PERM:
-            return (
-                f"{path} cannot be opened or written ({error}): check the folder's permissions {_ELSEWHERE}"
-            )
+            return f"{path} cannot be opened or written ({error}): check the folder's permissions {_ELSEWHERE}"
         case sqlite3.SQLITE_FULL | sqlite3.SQLITE_IOERR:
             return f"{path} cannot be written, nothing was saved ({error}): make room on the disk"
         case _ if "no such module: rtree" in str(error):
-            return (
-                "the SQLite of this Python has no R*Tree: use a Python from python.org or your distribution"
-            )
+            return "the SQLite of this Python has no R*Tree: use a Python from python.org or your distribution"
         case _:
             return f"{path} did not answer ({error}): {_TRY_COPY}"

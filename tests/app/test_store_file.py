@@ -3,6 +3,7 @@
 import os
 import sqlite3
 import tempfile
+import threading
 from contextlib import closing, contextmanager
 from pathlib import Path
 
@@ -35,10 +36,29 @@ def test_the_file_is_marked_and_in_wal_mode(tmp_path):
     Store.open(tmp_path)
     with raw(tmp_path) as connection:
         pragmas = [
-            connection.execute(f"PRAGMA {p}").fetchone()[0]
-            for p in ("application_id", "user_version", "journal_mode")
+            connection.execute(f"PRAGMA {p}").fetchone()[0] for p in ("application_id", "user_version", "journal_mode")
         ]
     assert pragmas == [APPLICATION_ID, len(MIGRATIONS), "wal"]
+
+
+def test_many_may_open_a_new_folder_at_once(tmp_path):
+    for n in range(5):
+        folder, gate, faults = tmp_path / str(n), threading.Barrier(6), []
+
+        def enter(folder=folder, gate=gate, faults=faults):
+            gate.wait()
+            try:
+                Store.open(folder).put_roof({"name": "Mill"})
+            except Exception as error:
+                faults.append(error)
+
+        threads = [threading.Thread(target=enter) for _ in range(6)]
+        for thread in threads:
+            thread.start()
+        for thread in threads:
+            thread.join()
+        assert faults == []
+        assert len(Store.open(folder).list_roofs()) == 6
 
 
 def test_a_newer_file_is_left_alone(tmp_path):
@@ -60,9 +80,7 @@ def test_another_programs_database_is_left_alone(tmp_path):
     assert (tmp_path / FILE_NAME).read_bytes() == before
 
 
-@pytest.mark.parametrize(
-    "content", [b"no database at all, only text " * 100, b"SQLite format 3\x00" + b"\xff" * 4000]
-)
+@pytest.mark.parametrize("content", [b"no database at all, only text " * 100, b"SQLite format 3\x00" + b"\xff" * 4000])
 def test_a_damaged_file_is_told_and_kept(tmp_path, content):
     (tmp_path / FILE_NAME).write_bytes(content)
     with pytest.raises(StoreError, match="keep a copy of it"):
