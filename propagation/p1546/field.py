@@ -178,7 +178,7 @@ def _steps(given: Inputs) -> dict[str, FloatArray]:
     slope = maximum.slope_correction_db(d_step, difference)
     e = e + _or_0(slope)  # step 16
 
-    short = d < 1
+    short = d < 1 - 1e-9  # a length of 1 km with rounding is 1 km
     short_path = np.where(short, corrections.short_path_dbuv_m(d, difference, e), np.nan)
     e = np.where(short, short_path, e)  # step 17
 
