@@ -68,7 +68,7 @@ def path_over(profile: Profile, antenna_agl_m: float, roof: Roof, assumptions: A
     """Digest one profile for one antenna height, or say why neither method can."""
     middle = len(profile.distance_km) // 2
     delta_n_per_km, n0 = (
-        float(one) for one in refractivity(profile.latitude_deg[middle], profile.longitude_deg[middle])
+        one.item() for one in refractivity(profile.latitude_deg[middle], profile.longitude_deg[middle])
     )
     near_roof = profile.distance_km[-1] - profile.distance_km <= FLATTENED_KM
     ground_amsl_m = np.where(near_roof, profile.ground_amsl_m[-1], profile.ground_amsl_m)
