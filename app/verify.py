@@ -36,14 +36,18 @@ class SetReport:
 
 @dataclass(frozen=True, slots=True)
 class VerifyReport:
-    """All sets; good if no case failed."""
+    """All sets."""
 
     sets: tuple[SetReport, ...]
 
     @property
-    def good(self) -> bool:
-        """No case failed."""
-        return all(report.failed == 0 for report in self.sets)
+    def failed(self) -> int:
+        """Failed cases of all sets."""
+        return sum(report.failed for report in self.sets)
+
+    def text(self) -> str:
+        """Return the report as lines for a person."""
+        return "\n".join(line for report in self.sets for line in (_headline(report), *report.failures))
 
     def document(self) -> dict[str, Any]:
         """Return the report as the command line's JSON."""
@@ -118,7 +122,7 @@ def _outcome(example: WorkedExample) -> _Outcome:
     wrong = [
         _difference(name, value, derived[name])
         for name, value in example.derived.items()
-        if not abs(derived[name] - value) <= DERIVED_RELATIVE * max(1.0, abs(value))
+        if value is not None and not abs(derived[name] - value) <= DERIVED_RELATIVE * max(1.0, abs(value))
     ]
     for name, printed in example.steps.items():
         ours = _term(result, name, example)
@@ -147,10 +151,15 @@ def half_of_last_digit(printed: float, digits: int) -> float:
     return 0.5 * 10.0**last * (1 + 1e-6) + 1e-12 if float(mantissa) else 1e-12
 
 
-def _computed(example: WorkedExample) -> tuple[Mapping[str, float], p1546.P1546Result | p1812.P1812Result]:
+def _computed(
+    example: WorkedExample,
+) -> tuple[Mapping[str, Any], p1546.P1546Result | p1812.P1812Result]:
     profile, inputs = example.profile, example.inputs
     if example.method == "p1812":
         return {}, p1812.basic_loss(**profile, **inputs)
+    environment = str(inputs["rx_environment"]).lower().replace(" ", "_")
+    if not inputs.get("terrain_information", True):  # then the inputs are a planner's, not the profile's
+        return example.derived, p1546.field_strength(**{**inputs, **example.derived, "rx_environment": environment})
     ground = path_inputs(
         profile["distance_km"],
         profile["terrain_amsl_m"],
@@ -159,18 +168,18 @@ def _computed(example: WorkedExample) -> tuple[Mapping[str, float], p1546.P1546R
         inputs["rx_height_agl_m"],
         coastal_land_is_sea=True,
     )
+    warm_sea_km = example.derived.get("warm_sea_km") or 0.0  # a profile does not tell warm from cold
     derived = {
         "path_length_km": float(ground.path_length_km),
         "land_km": float(ground.land_km),
-        "cold_sea_km": float(ground.sea_km),
-        "warm_sea_km": 0.0,  # no profile tells cold from warm
+        "cold_sea_km": float(ground.sea_km) - warm_sea_km,
+        "warm_sea_km": warm_sea_km,
         "h1_source_height_m": float(ground.h1_source_height_m),
         "tx_ground_amsl_m": float(ground.tx_ground_amsl_m),
         "rx_ground_amsl_m": float(ground.rx_ground_amsl_m),
         "tx_clearance_angle_deg": float(ground.tx_clearance_angle_deg),
         "rx_clearance_angle_deg": float(ground.rx_clearance_angle_deg),
     }
-    environment = str(inputs["rx_environment"]).lower().replace(" ", "_")
     return derived, p1546.field_strength(**{**inputs, **derived, "rx_environment": environment})
 
 
@@ -179,6 +188,16 @@ def _term(result: object, name: str, example: WorkedExample) -> float:
     if value is None:
         raise RequestError(f"case {example.name}: {name} is no term of {RECOMMENDATIONS[example.method]} here")
     return float(value)
+
+
+def _headline(report: SetReport) -> str:
+    return (
+        f"{report.recommendation} ({report.name}): {report.cases} case{'s' * (report.cases != 1)}, "
+        f"{report.failed or 'none'} failed; "
+        f"largest difference in field and loss {report.largest_difference_db:.1e} dB; "
+        f"{report.values_compared - report.values_failed} of {report.values_compared} other values "
+        "within their printed digits"
+    )
 
 
 def _difference(name: str, printed: float | None, ours: float) -> str:

@@ -40,7 +40,7 @@ class WorkedExample:
     method: Method
     profile: Mapping[str, FloatArray]  # distance_km, terrain_amsl_m, clutter_height_m, zone; each (n,)
     inputs: Mapping[str, Any]
-    derived: Mapping[str, float]  # inputs that come from the profile, full precision
+    derived: Mapping[str, float | None]  # inputs that come from the profile, full precision; None: not known
     steps: Mapping[str, float | None]  # as printed; None where a step does not apply
     expected: Mapping[str, float]  # field_dbuv_m, field_1kw_dbuv_m, basic_loss_db
 
@@ -171,7 +171,7 @@ def _example(
         profile = {**profile, "distance_km": profile["distance_km"][0] - profile["distance_km"]}
     for group, values in (("derived_inputs", derived), ("intermediate", steps), ("expected", expected)):
         for key, value in values.items():
-            absent = value is None and group == "intermediate"
+            absent = value is None and group != "expected"
             number = isinstance(value, int | float) and math.isfinite(value)
             if not (absent or number):
                 raise ValueError(f"{group} {key} is {value!r}, a number is needed")

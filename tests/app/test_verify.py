@@ -67,7 +67,7 @@ def test_packaged_examples_all_agree():
     ]
     assert [s.values_compared for s in report.sets] == [1196, 2898]
     assert all(s.values_failed == 0 and s.largest_difference_db <= 1e-6 for s in report.sets)
-    assert report.good
+    assert report.failed == 0
 
 
 def test_document_has_the_fixed_fields():
@@ -77,10 +77,23 @@ def test_document_has_the_fixed_fields():
     json.dumps(document)
 
 
+def test_text_has_a_line_for_each_set():
+    lines = verify().text().splitlines()
+    assert len(lines) == 2
+    assert lines[0].startswith("ITU-R P.1546-6 (p1546): 52 cases, none failed; largest difference in field and loss")
+    assert lines[1].endswith("2898 of 2898 other values within their printed digits")
+
+
+def test_text_tells_each_failed_case(folder):
+    headline, failure = verify(folder).text().splitlines()
+    assert "1 case, 1 failed" in headline
+    assert failure.startswith("hills_1: field_dbuv_m off by")
+
+
 def test_wrong_published_field_fails_its_case(folder):
     report = verify(folder)
     assert (report.sets[0].name, report.sets[0].cases, report.sets[0].failed) == ("one_set", 1, 1)
-    assert not report.good
+    assert report.failed == 1
     assert "field_dbuv_m off by" in report.sets[0].failures[0]
     assert report.sets[0].largest_difference_db > 10
 
@@ -117,6 +130,29 @@ def test_profile_stored_receiver_first_is_turned_round(folder):
         folder,
         profile_first_point="rx",
         derived_inputs={"h1_source_height_m": 100 + 10 - 28.125},
+    )
+    assert verify(folder).sets[0].values_failed == 0
+
+
+def test_warm_sea_is_taken_from_the_case(folder):
+    """The profile says 4 km of sea, half way round points at 2 and 4 km; it does not say how warm."""
+    write_rows(
+        folder / "profiles" / "hills.csv",
+        ["distance_km", "terrain_m_amsl", "cover_class", "clutter_height_m", "zone"],
+        [[x, 0, 1, 0, 1 if x in (2, 4) else 4] for x, _, _ in PROFILE],
+    )
+    sections = [{"surface": "land", "length_km": 6.0}, {"surface": "warm_sea", "length_km": 4.0}]
+    write_case(folder, derived_inputs={"sections": sections})
+    assert verify(folder).sets[0].values_failed == 0
+
+
+def test_unknown_terrain_takes_the_inputs_as_published(folder):
+    case = json.loads((folder / "cases" / "hills_1.json").read_text())
+    write_case(
+        folder,
+        inputs=case["inputs"] | {"terrain_information": False},
+        derived_inputs={"path_length_km": 9.0, "h1_source_height_m": 60.0, "rx_clearance_angle_deg": None},
+        intermediate={"h1_m": 80.0},  # half way from 100 m over ground to 60 m, P.1546 eq. (5)
     )
     assert verify(folder).sets[0].values_failed == 0
 
