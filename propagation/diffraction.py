@@ -98,9 +98,7 @@ def bullington_edge(
     return edge
 
 
-def bullington_loss_of_edge_db(
-    edge: ArrayLike, path_length_km: ArrayLike, frequency_mhz: ArrayLike
-) -> FloatArray:
+def bullington_loss_of_edge_db(edge: ArrayLike, path_length_km: ArrayLike, frequency_mhz: ArrayLike) -> FloatArray:
     """Bullington loss of an equivalent edge at each frequency.
 
     Inputs broadcast. NaN in, NaN out.

@@ -197,12 +197,8 @@ def _angular_distance_mrad(
     d, inner = x[..., -1], x[..., 1:-1]
     to_rx = d[..., None] - inner
     double = 2 * radius[..., None]
-    from_tx = np.arctan((ground[..., 1:-1] - tx_amsl[..., None]) / (1000 * inner) - inner / double).max(
-        axis=-1
-    )
-    from_rx = np.arctan((ground[..., 1:-1] - rx_amsl[..., None]) / (1000 * to_rx) - to_rx / double).max(
-        axis=-1
-    )
+    from_tx = np.arctan((ground[..., 1:-1] - tx_amsl[..., None]) / (1000 * inner) - inner / double).max(axis=-1)
+    from_rx = np.arctan((ground[..., 1:-1] - rx_amsl[..., None]) / (1000 * to_rx) - to_rx / double).max(axis=-1)
     direct = np.arctan((rx_amsl - tx_amsl) / (1000 * d) - d / (2 * radius))
     back = np.arctan((tx_amsl - rx_amsl) / (1000 * d) - d / (2 * radius))
     hidden = from_tx > direct

@@ -19,9 +19,7 @@ FloatArray = NDArray[np.float64]
 REFLECTING_SEA_KM = 20.0  # water in sight beyond which a reflected ray is to be expected
 
 
-def subrefraction_db(
-    path: PathDigest, frequency_mhz: ArrayLike, polarisation: ArrayLike, n0: ArrayLike
-) -> FloatArray:
+def subrefraction_db(path: PathDigest, frequency_mhz: ArrayLike, polarisation: ArrayLike, n0: ArrayLike) -> FloatArray:
     """Extra loss of a path where rays are not bent (k = 1), without ducting but with troposcatter.
 
     Parameters
@@ -97,9 +95,7 @@ def fade_db(
     """
     shares = {50.0: 0.0, 90.0: fade_share_90, 99.0: 1.0}
     if availability_percent not in shares:
-        raise RangeError(
-            f"availability {availability_percent:g} % has no fade defined: use 50, 90 or 99 % of the time"
-        )
+        raise RangeError(f"availability {availability_percent:g} % has no fade defined: use 50, 90 or 99 % of the time")
     limited = np.minimum(np.asarray(subrefraction_db, dtype=float), np.asarray(enhancement_1_db, dtype=float))
     to_99 = np.maximum(least_fade_99_db, limited)
     reflected = np.asarray(line_of_sight, dtype=bool) & (np.asarray(sea_km, dtype=float) > REFLECTING_SEA_KM)

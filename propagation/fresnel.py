@@ -7,9 +7,7 @@ from propagation.errors import ProfileError
 from propagation.units import wavelength_m
 
 
-def first_zone_radius_m(
-    to_tx_km: ArrayLike, to_rx_km: ArrayLike, frequency_mhz: ArrayLike
-) -> NDArray[np.float64]:
+def first_zone_radius_m(to_tx_km: ArrayLike, to_rx_km: ArrayLike, frequency_mhz: ArrayLike) -> NDArray[np.float64]:
     """Radius of the first Fresnel ellipsoid at a point of the path.
 
     Inputs broadcast. NaN in, NaN out.

@@ -47,9 +47,7 @@ def man_made_fam_db(frequency_mhz: ArrayLike, environment: ArrayLike) -> FloatAr
     """
     f = np.asarray(frequency_mhz, dtype=float)
     if (f < 0.3).any():
-        raise RangeError(
-            f"frequency {f.min():g} MHz is outside Rec. ITU-R P.372 Table 1: use 0.3 MHz or more"
-        )
+        raise RangeError(f"frequency {f.min():g} MHz is outside Rec. ITU-R P.372 Table 1: use 0.3 MHz or more")
     names = np.asarray(environment)
     unknown = names[~np.isin(names, ENVIRONMENTS)]
     if unknown.size:
@@ -99,7 +97,5 @@ def noise_power_dbm(bandwidth_mhz: ArrayLike, noise_factor: ArrayLike = 1.0) -> 
     bandwidth = np.asarray(bandwidth_mhz, dtype=float)
     if (bandwidth <= 0).any():
         raise RangeError(f"bandwidth {bandwidth.min():g} MHz holds no noise: use more than 0 MHz")
-    watts = (
-        BOLTZMANN_J_K * REFERENCE_TEMPERATURE_KELVIN * 1e6 * bandwidth * np.asarray(noise_factor, dtype=float)
-    )
+    watts = BOLTZMANN_J_K * REFERENCE_TEMPERATURE_KELVIN * 1e6 * bandwidth * np.asarray(noise_factor, dtype=float)
     return db_from_ratio(watts) + 30

@@ -149,7 +149,5 @@ def _first_term_of_surface_db(
 def _height_gain_db(b: FloatArray, floor_db: FloatArray) -> FloatArray:
     high = np.maximum(b, 2.0) - 1.1
     low = np.minimum(b, 2.0)
-    gain = np.where(
-        b > 2, 17.6 * np.sqrt(high) - 5 * np.log10(high) - 8, 20 * np.log10(low + 0.1 * low**3)
-    )  # eq. (34)
+    gain = np.where(b > 2, 17.6 * np.sqrt(high) - 5 * np.log10(high) - 8, 20 * np.log10(low + 0.1 * low**3))  # eq. (34)
     return np.maximum(gain, floor_db)

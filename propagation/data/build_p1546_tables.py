@@ -38,20 +38,14 @@ def main(source: Path) -> None:
             fields.setdefault(row, {})[column] = line["field_dbuv_m"]
 
     heights.sort(key=lambda name: float(name) if name != "maximum" else float("inf"))
-    lines = [
-        ",".join(
-            ["figure", "frequency_mhz", "surface", "time_percent", "distance_km", *map(_column, heights)]
-        )
-    ]
+    lines = [",".join(["figure", "frequency_mhz", "surface", "time_percent", "distance_km", *map(_column, heights)])]
     written: dict[Row, dict[str, str]] = {}
     for row in sorted(fields):
         figure, frequency, surface, time, distance = row
         shared = (figure, frequency, "sea" if len(surfaces[figure]) == 2 else surface, time, distance)
         if shared in written:
             if written[shared] != fields[row]:
-                raise SystemExit(
-                    f"figure {figure} differs between both seas at {distance:g} km: mend {source}"
-                )
+                raise SystemExit(f"figure {figure} differs between both seas at {distance:g} km: mend {source}")
             continue
         written[shared] = fields[row]
         cells = [*map(str, shared[:4]), f"{distance:g}", *(fields[row][height] for height in heights)]

@@ -89,9 +89,7 @@ def _at_time(
     short = (surface > 0) & (f < 100) & (d < d600)
     if short.any():
         e = e.copy()
-        e[short] = _low_frequency_sea(
-            surface[short], time[short], d[short], h1[short], f[short], t[short], d600[short]
-        )
+        e[short] = _low_frequency_sea(surface[short], time[short], d[short], h1[short], f[short], t[short], d600[short])
     return e
 
 
@@ -151,9 +149,7 @@ def _at_frequency(
     return e
 
 
-def _column(
-    surface: IntArray, time: IntArray, frequency: IntArray, height: IntArray, across: Place
-) -> FloatArray:
+def _column(surface: IntArray, time: IntArray, frequency: IntArray, height: IntArray, across: Place) -> FloatArray:
     """Tabulated field of one height, interpolated in distance (section 5, eq. 13)."""
     field = field_tables().field_dbuv_m
     return across.between(

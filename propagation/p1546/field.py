@@ -225,9 +225,7 @@ def _land_and_sea(given: Inputs, d: FloatArray, h1: FloatArray, cap: FloatArray)
     has_land |= np.isnan(given.sea_share)
     sea_surface = np.where(given.warm_sea_km > 0, 2, 1)
     # On a mixed path the text uses h1 for land and at least 3 m for sea.
-    both = [
-        np.concatenate([x[has_land], x[has_sea]]) for x in (d, given.frequency_mhz, given.time_percent, cap)
-    ]
+    both = [np.concatenate([x[has_land], x[has_sea]]) for x in (d, given.frequency_mhz, given.time_percent, cap)]
     heights = np.concatenate([h1[has_land], np.maximum(h1[has_sea], 3.0)])
     surface = np.concatenate([np.zeros(np.count_nonzero(has_land), dtype=int), sea_surface[has_sea]])
     fields = curves.field_over_surface_dbuv_m(surface, both[0], heights, both[1], both[2], both[3])

@@ -66,9 +66,7 @@ class Inputs:
     erp_kw: FloatArray
 
 
-def checked_inputs(
-    *, rx_environment: ArrayLike, terrain_information: ArrayLike, **numbers: ArrayLike | None
-) -> Inputs:
+def checked_inputs(*, rx_environment: ArrayLike, terrain_information: ArrayLike, **numbers: ArrayLike | None) -> Inputs:
     """Broadcast all arguments and refuse what lies outside the Recommendation (RangeError)."""
     environment = np.asarray(rx_environment)
     names = list(numbers)
@@ -95,14 +93,11 @@ def checked_inputs(
         )
     d, ha = value["path_length_km"], value["tx_height_agl_m"]
     if ((d < 1) & np.isnan(ha)).any():
-        raise RangeError(
-            f"path of {d.min():g} km needs the antenna's height: give tx_height_agl_m below 1 km"
-        )
+        raise RangeError(f"path of {d.min():g} km needs the antenna's height: give tx_height_agl_m below 1 km")
     no_spread = terrain & np.isnan(value["location_sigma_db"]) & np.isnan(value["location_area_width_m"])
     if ((value["location_percent"] != 50) & ~at_sea & no_spread).any():
         raise RangeError(
-            "location percentages other than 50 need a spread: "
-            "give location_sigma_db or location_area_width_m"
+            "location percentages other than 50 need a spread: give location_sigma_db or location_area_width_m"
         )
 
     ground = value["tx_ground_amsl_m"] - value["rx_ground_amsl_m"]

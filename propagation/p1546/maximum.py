@@ -35,8 +35,6 @@ def slope_correction_db(d: FloatArray, height_difference_m: FloatArray) -> Float
     return correction
 
 
-def field_maximum_dbuv_m(
-    d: FloatArray, t: FloatArray, sea_share: FloatArray, slope_db: FloatArray
-) -> FloatArray:
+def field_maximum_dbuv_m(d: FloatArray, t: FloatArray, sea_share: FloatArray, slope_db: FloatArray) -> FloatArray:
     """Field that the path cannot exceed (section 2, eqs. 2, 3 and 42) with its slope correction."""
     return land_maximum_dbuv_m(d) + sea_share * sea_enhancement_db(d, t) + slope_db

@@ -105,17 +105,13 @@ def _mean_ground_m(x: FloatArray, ground: FloatArray) -> FloatArray:
     steps = np.where(both, np.diff(x, axis=-1), 0.0)
     span = steps.sum(axis=-1)
     if (span <= 0).any():
-        raise ProfileError(
-            "profile is too coarse for a mean height: give 2 points 3 to 15 km from the transmitter"
-        )
+        raise ProfileError("profile is too coarse for a mean height: give 2 points 3 to 15 km from the transmitter")
     area = (steps * (ground[..., :-1] + ground[..., 1:])).sum(axis=-1) / 2
     mean: FloatArray = area / span
     return mean
 
 
-def _horizon_angle_deg(
-    away_km: FloatArray, ground: FloatArray, eye_amsl_m: FloatArray, reach_km: float
-) -> FloatArray:
+def _horizon_angle_deg(away_km: FloatArray, ground: FloatArray, eye_amsl_m: FloatArray, reach_km: float) -> FloatArray:
     """Highest elevation of the ground within reach of an antenna, no Earth curvature."""
     seen = (away_km > 0) & (away_km <= reach_km)
     slope = (ground - eye_amsl_m[..., None]) / np.where(seen, 1000 * away_km, 1.0)
