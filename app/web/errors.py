@@ -142,7 +142,7 @@ def _allowed(kind: str, context: Mapping[str, Any], errors: Sequence[Mapping[str
 
 def _field(place: Sequence[str | int]) -> str:
     """Write a place as in JSON, `roof.latitude_deg`, without pydantic's names for the members of a union."""
-    return ".".join(str(part) for part in place if not (isinstance(part, str) and (part == "str" or "[" in part)))
+    return ".".join(str(part) for part in place if not (part in ("str", "constrained-str") or "[" in str(part)))
 
 
 def _shown(value: object) -> str:

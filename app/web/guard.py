@@ -8,7 +8,9 @@ request must come from our own page or from no page at all.
 from __future__ import annotations
 
 import ipaddress
+import json
 import logging
+import re
 from collections.abc import Awaitable, Callable
 from urllib.parse import urlsplit
 
@@ -40,6 +42,7 @@ HEADERS = {
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
 READING = {"GET", "HEAD", "OPTIONS"}
+HALF_LETTER = re.compile(rb"\\u[dD][89a-fA-F]")
 
 
 class Guard:
@@ -74,6 +77,9 @@ class Guard:
             refusal = error_response(
                 413, "too_large", f"the request is too large: send at most {allowed}", None, allowed
             )
+        elif body and not _is_text(body):
+            words = "the request holds half a letter (a lone surrogate): send text in UTF-8"
+            refusal = error_response(422, "json", words, None, "text in UTF-8")
         if refusal:
             await refusal(scope, receive, send_with_headers)
             return
@@ -130,6 +136,19 @@ async def _read(receive: Receive, headers: Headers, largest: int) -> bytes | Non
         chunks.append(chunk)
         more = message.get("more_body", False)
     return b"".join(chunks)
+
+
+def _is_text(body: bytes) -> bool:
+    """Whether no escape in the JSON stands for half a letter, which neither database nor answer can carry."""
+    if not HALF_LETTER.search(body):
+        return True
+    try:
+        json.dumps(json.loads(body), ensure_ascii=False).encode()
+    except UnicodeEncodeError:
+        return False
+    except (ValueError, RecursionError):
+        return True  # no JSON at all: the route says so
+    return True
 
 
 def _replay(body: bytes, receive: Receive) -> Callable[[], Awaitable[Message]]:

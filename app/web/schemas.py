@@ -47,11 +47,8 @@ def _plain_json(value: dict[str, Any]) -> dict[str, Any]:
             raise PydanticCustomError("plain_value", "too deep", {"allowed": f"at most {DEEPEST} levels"})
         if isinstance(node, float) and not math.isfinite(node):
             raise PydanticCustomError("plain_value", "not finite", {"allowed": "finite numbers"})
-        if isinstance(node, str) and any("\ud800" <= letter <= "\udfff" for letter in node):
-            raise PydanticCustomError("plain_value", "no text", {"allowed": "text in UTF-8"})
         if isinstance(node, dict):
-            for key, inner in node.items():
-                walk(key, depth + 1)
+            for inner in node.values():
                 walk(inner, depth + 1)
         elif isinstance(node, list):
             for inner in node:

@@ -4,12 +4,17 @@ import { sentence } from './sentence.js';
 import { titleOf, verdictOf } from './state.js';
 import { moneyText } from './units.js';
 
-/** @param {HTMLElement} element */
-export function createDecision(element) {
+/**
+ * @param {HTMLElement} element
+ * @param {{place: (place: import('./state.js').Place) => void}} actions
+ */
+export function createDecision(element, { place }) {
   const told = /** @type {HTMLElement} */ (element.querySelector('.sentence'));
   const reason = /** @type {HTMLElement} */ (element.querySelector('.reason'));
   const terms = /** @type {HTMLElement} */ (element.querySelector('.terms'));
   const trouble = /** @type {HTMLElement} */ (element.querySelector('.trouble'));
+  const demo = /** @type {HTMLElement} */ (element.querySelector('.demo'));
+  const roofs = /** @type {HTMLElement} */ (element.querySelector('.demo ul'));
   let shown = '';
 
   /** @param {import('./state.js').State} state */
@@ -34,6 +39,21 @@ export function createDecision(element) {
     terms.textContent = verdict ? counted(state, verdict) : '';
     const text = state.trouble?.message ?? '';
     if (trouble.textContent !== text) trouble.textContent = text;
+    offer(state);
+  }
+
+  /** The roofs of the demo, for whoever has none yet. */
+  function offer(state) {
+    const known = state.health?.demo_roofs ?? [];
+    demo.hidden = known.length === 0 || state.answer !== null || state.asking;
+    if (demo.hidden || roofs.children.length === known.length) return;
+    roofs.replaceChildren(...known.map((roof) => {
+      const item = document.createElement('li');
+      const button = Object.assign(document.createElement('button'), { type: 'button', textContent: roof.name });
+      button.addEventListener('click', () => place(roof));
+      item.append(button, ` ${roof.shows}`);
+      return item;
+    }));
   }
   return { update };
 }

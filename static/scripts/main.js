@@ -20,7 +20,7 @@ const byId = (id) => /** @type {any} */ (document.getElementById(id));
 
 const panels = [
   createWhere(byId('where'), { type: (change) => store.set(change), submit: assess, choose }),
-  createDecision(byId('decision')),
+  createDecision(byId('decision'), { place }),
   createChanges(byId('changes'), { choose }),
   createRoofline(byId('roofline')),
   createCautions(byId('cautions')),

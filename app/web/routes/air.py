@@ -9,8 +9,10 @@ from typing import Annotated, Any
 from fastapi import APIRouter, Query
 
 from app.assumptions import Assumptions
+from app.demo.scenario import DEMO_ROOFS
 from app.errors import RequestError
 from app.request import LONGEST_REACH_KM
+from app.transmitters.store import DEMO_SOURCE
 from app.web.assets import ASSETS
 from app.web.context import ContextDep
 
@@ -62,6 +64,8 @@ def assumptions() -> dict[str, list[dict[str, object]]]:
 def health(context: ContextDep) -> dict[str, Any]:
     """Tell version, ground, sources and libraries: what the page needs before there is a roof."""
     ground = context.ground
+    sources = context.store.sources()
+    is_demo = [source.id for source in sources] == [DEMO_SOURCE]
     return {
         "status": "ok",
         "version": metadata.version("gainworth"),
@@ -80,7 +84,8 @@ def health(context: ContextDep) -> dict[str, Any]:
             ],
             "refused": [{"file": one.path.name, "message": one.message} for one in ground.refused],
         },
-        "sources": [dataclasses.asdict(one) for one in context.store.sources()],
+        "sources": [dataclasses.asdict(one) for one in sources],
+        "demo_roofs": [dataclasses.asdict(one) for one in DEMO_ROOFS] if is_demo else [],
         "libraries": [
             {"file": one.name, "package": one.package, "version": one.version, "licence": one.licence}
             for one in ASSETS.values()

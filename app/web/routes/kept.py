@@ -6,7 +6,7 @@ from typing import Annotated, Any
 
 from fastapi import APIRouter, Path, Response
 
-from app.chain.document import chain_from_document
+from app.chain.document import chain_from_document, chain_to_document
 from app.web.context import ContextDep
 from app.web.schemas import ChainDocument, SavedRoofIn
 
@@ -14,6 +14,7 @@ router = APIRouter(prefix="/api", tags=["what you keep"])
 
 Id = Annotated[str, Path(min_length=1, max_length=200)]
 Document = dict[str, Any]
+ADDED_BY_STORE = ("id", "created", "updated")
 
 
 @router.get("/roofs", summary="Kept roofs")
@@ -57,8 +58,7 @@ def chains(context: ContextDep) -> dict[str, list[Document]]:
 @router.post("/chains", status_code=201, summary="Keep a chain")
 def keep_chain(chain: ChainDocument, context: ContextDep) -> Document:
     """Keep a chain under a new id, once it has been read as one."""
-    chain_from_document(chain)
-    return context.store.put_chain({key: value for key, value in chain.items() if key != "id"})
+    return context.store.put_chain(_read(chain))
 
 
 @router.get("/chains/{id}", summary="One kept chain, by id or name")
@@ -71,8 +71,7 @@ def chain(id: Id, context: ContextDep) -> Document:
 def change_chain(id: Id, chain: ChainDocument, context: ContextDep) -> Document:
     """Put a chain in the place of a kept one, once it has been read as one."""
     kept = context.store.get_chain(id)
-    chain_from_document(chain)
-    return context.store.put_chain(chain | {"id": kept["id"]})
+    return context.store.put_chain(_read(chain) | {"id": kept["id"]})
 
 
 @router.delete("/chains/{id}", status_code=204, summary="Forget a chain")
@@ -85,3 +84,8 @@ def forget_chain(id: Id, context: ContextDep) -> Response:
 def _checked(saved: SavedRoofIn) -> Document:
     saved.roof.roof()
     return saved.model_dump()
+
+
+def _read(chain: Document) -> Document:
+    """Return the document of a chain as it is read back, without what the store adds."""
+    return chain_to_document(chain_from_document({key: chain[key] for key in chain if key not in ADDED_BY_STORE}))

@@ -1,0 +1,80 @@
+import assert from 'node:assert/strict';
+import test from 'node:test';
+import {
+  chainNow, changes, createStore, decode, encode, initialState, NOTHING, question, shownCell, titleOf, verdictOf,
+} from '../../static/scripts/state.js';
+import { sampleAnswer, sampleVerdict } from './sample.js';
+
+const answered = (change = {}) => ({ ...initialState(), answer: sampleAnswer(), now: 'loft', ...change });
+
+test('a link carries what was typed and chosen', () => {
+  const state = { ...initialState(), where: '44.5, -37.2 & #', height: '8', now: 'loft', idea: 'long', cell: { multiplex: 'b', chain: 'long' } };
+  const { where, height, now, idea, cell } = state;
+  assert.deepEqual(decode(`#${encode(state)}`), { where, height, now, idea, cell });
+});
+
+test('a link of another version or from elsewhere is left alone', () => {
+  for (const text of ['', '#', '#v=0&at=1,2', '#top', '#v=99']) assert.deepEqual(decode(text), {});
+});
+
+test('listeners hear each change with the state before it', () => {
+  const store = createStore(initialState());
+  const heard = [];
+  store.subscribe((state, before) => heard.push([before.height, state.height]));
+  store.set({ height: '12' });
+  assert.deepEqual(heard, [['10', '12']]);
+});
+
+test('the question names the roof and what is up, nothing if nothing was said', () => {
+  const state = { ...initialState(), roof: { latitude_deg: 1, longitude_deg: 2 } };
+  assert.deepEqual(question(state, 10), { roof: { latitude_deg: 1, longitude_deg: 2, aerial_agl_m: 10 }, now: NOTHING });
+});
+
+test('the chain that is already up is taken as up now', () => {
+  assert.equal(chainNow([{ name: 'a' }, { name: 'b', already_up: true }]), 'b');
+  assert.equal(chainNow([{ name: 'a' }]), NOTHING);
+});
+
+test('without a chosen idea the best verdict is shown', () => {
+  const answer = { ...sampleAnswer(), verdicts: [sampleVerdict(), sampleVerdict({ candidate: 'short' })] };
+  assert.equal(verdictOf(answered({ answer })).candidate, 'long');
+  assert.equal(verdictOf(answered({ answer, idea: 'short' })).candidate, 'short');
+  assert.equal(verdictOf(answered({ answer, idea: 'gone' })).candidate, 'long');
+});
+
+test('what changes comes first by the size of the change; what does not is apart', () => {
+  const { changed, same } = changes(sampleAnswer(), 'loft', 'long');
+  assert.deepEqual(changed.map((one) => one.id), ['c', 'b']);
+  assert.deepEqual(same.map((one) => one.id), ['a']);
+});
+
+test('from nothing, everything that can be had is a change', () => {
+  assert.equal(changes(sampleAnswer(), NOTHING, 'long').changed.length, 3);
+});
+
+test('a change of the word counts even where the chance hardly moves', () => {
+  const answer = sampleAnswer();
+  answer.multiplexes[0].chains.loft = { ...answer.multiplexes[0].chains.loft, chance: 0.949, grade: 'likely' };
+  assert.ok(changes(answer, 'loft', 'long').changed.some((one) => one.id === 'a'));
+});
+
+test('the cell that is shown is the chosen one, else where the idea changes most', () => {
+  assert.deepEqual([shownCell(answered()).multiplex.id, shownCell(answered()).chain], ['c', 'long']);
+  const chosen = shownCell(answered({ cell: { multiplex: 'b', chain: 'loft' } }));
+  assert.deepEqual([chosen.multiplex.id, chosen.chain, chosen.emission.id], ['b', 'loft', 'near-b']);
+});
+
+test('a chosen cell of a chain that is no longer compared gives way', () => {
+  assert.equal(shownCell(answered({ cell: { multiplex: 'b', chain: 'short' } })).chain, 'long');
+});
+
+test('without an answer there is no cell and no verdict', () => {
+  assert.equal(shownCell(initialState()), null);
+  assert.equal(verdictOf(initialState()), null);
+});
+
+test('chains are called by their title', () => {
+  assert.equal(titleOf(answered(), 'long'), 'Long aerial');
+  assert.equal(titleOf(answered(), NOTHING), 'nothing');
+  assert.equal(titleOf(answered(), 'unknown'), 'unknown');
+});

@@ -1,0 +1,81 @@
+import assert from 'node:assert/strict';
+import test from 'node:test';
+import {
+  bearingText, chanceText, countText, distanceText, moneyText, numberText, parseHeight, parsePlace, placeText, rodsText, signedText,
+} from '../../static/scripts/units.js';
+
+test('a chance is told in tenths, and never as certain or impossible', () => {
+  assert.deepEqual([0.9, 0.72, 0.5, 0.3, 0.1].map(chanceText), ['9 in 10', '7 in 10', '5 in 10', '3 in 10', '1 in 10']);
+  assert.equal(chanceText(1), '99 in 100');
+  assert.equal(chanceText(0), '1 in 100');
+});
+
+test('19 in 20 begins where a chance is called secure', () => {
+  assert.equal(chanceText(0.95), '19 in 20');
+  assert.equal(chanceText(0.9499), '9 in 10');
+});
+
+test('a larger chance is never told as a smaller one', () => {
+  const value = (text) => Number(text.split(' ')[0]) / Number(text.split(' ')[2]);
+  const told = Array.from({ length: 1001 }, (_, step) => value(chanceText(step / 1000)));
+  assert.ok(told.every((one, place) => place === 0 || one >= told[place - 1]));
+});
+
+test('counts say how sure they are', () => {
+  assert.deepEqual([0, 0.4, 1, 2.2, 2.5, 6.9].map(countText), ['none', 'less than 1', 'about 1', 'about 2', '2 to 3', 'about 7']);
+});
+
+test('numbers have a true minus and no negative zero', () => {
+  assert.equal(numberText(-3.14, 1), '\u22123.1');
+  assert.equal(numberText(-0.01, 1), '0.0');
+  assert.equal(signedText(2), '+2.0');
+  assert.equal(signedText(-2), '\u22122.0');
+});
+
+test('money stands with its currency only if there is one', () => {
+  assert.equal(moneyText(90.4, ''), '90');
+  assert.equal(moneyText(90.4, 'EUR'), '90\u00a0EUR');
+});
+
+test('bearings are three figures from 000 to 359', () => {
+  assert.deepEqual([8, 118.4, 359.7, -1].map(bearingText), ['008°', '118°', '000°', '359°']);
+});
+
+test('short distances have a decimal', () => {
+  assert.deepEqual([1.24, 9.96, 52.3].map(distanceText), ['1.2\u00a0km', '10.0\u00a0km', '52\u00a0km']);
+});
+
+test('polarisation is told by how the rods lie', () => {
+  assert.deepEqual(['horizontal', 'vertical', 'mixed'].map(rodsText), ['rods flat', 'rods upright', 'rods either way']);
+});
+
+for (const [text, latitude, longitude] of [
+  ['44.5, -37.25', 44.5, -37.25], ['44.5 -37.25', 44.5, -37.25], ['44.5N 37.25W', 44.5, -37.25], ['12.5 S, 7 E', -12.5, 7],
+  ['44.5° N, 37.25° W', 44.5, -37.25], ['\u221212, +7.5', -12, 7.5], ['12,5; -7,25', 12.5, -7.25], [' 1,2 ', 1, 2],
+]) {
+  test(`the position “${text}” is read`, () => {
+    assert.deepEqual(parsePlace(text), { place: { latitude_deg: latitude, longitude_deg: longitude } });
+  });
+}
+
+for (const [text, words] of [
+  ['', /empty/], ['somewhere', /“somewhere” is not a position: write/], ['44.5', /not a position/], ['91, 0', /Latitude 91.*90/],
+  ['0, 181', /Longitude 181.*180/], ['NaN, 3', /not a position/], ['1e3, 2', /not a position/], ['44.5, -37.2, 8', /not a position/],
+]) {
+  test(`the position “${text}” is refused with what to write`, () => {
+    assert.match(parsePlace(text).problem, words);
+  });
+}
+
+test('a position can be typed as it is shown', () => {
+  const place = { latitude_deg: -44.12345, longitude_deg: 7.5 };
+  assert.deepEqual(parsePlace(placeText(place)), { place });
+});
+
+test('a height is metres, with or without the unit', () => {
+  assert.deepEqual(['10', ' 8.5 m', '8,5'].map(parseHeight), [{ height: 10 }, { height: 8.5 }, { height: 8.5 }]);
+});
+
+test('what is no height says what to write', () => {
+  for (const text of ['', 'ten', '1e2', '10 ft']) assert.match(parseHeight(text).problem, /metres, such as 10/);
+});
