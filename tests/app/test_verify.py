@@ -243,5 +243,5 @@ def test_missing_input_is_named(folder):
         folder,
         inputs={"frequency_mhz": 600.0},
     )
-    with pytest.raises(RequestError, match="lacks the input 'tx_height_agl_m'"):
+    with pytest.raises(RequestError, match="lacks the input 'rx_environment'"):
         verify(folder)
