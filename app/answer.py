@@ -189,7 +189,7 @@ def _cell(
                             "source": step.source,
                             "state": "a",
                         }
-                        for step in steps
+                        for step in steps[1:]  # the first is the field, which the steps before end with
                     ),
                 ],
             }
@@ -240,7 +240,7 @@ def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[di
     add(
         f"fade that {availability_percent} % of the time stays above",
         -field.fade_db,
-        "assumptions of the fade; P.1546 at 1 and 50 % of time",
+        f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90",
     )
     return rows
 
@@ -251,7 +251,7 @@ def _limit(turned: Turned, e: int) -> dict[str, Any]:
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
     chances = outcome.chance if outcome else np.zeros(0)
-    counts = {word: sum(grade(one) == word for one in chances) for _, word in GRADES}
+    counts: dict[str, int] = {word: sum(grade(one) == word for one in chances) for _, word in GRADES}
     return {
         "title": chain.title or chain.name,
         "price": chain.price,

@@ -156,7 +156,8 @@ def _bearing_noise() -> FloatArray:
 @lru_cache(maxsize=1)
 def _strata() -> FloatArray:
     centres: FloatArray = ndtri((np.arange(DRAWS) + 0.5) / DRAWS)
-    return centres / centres.std()
+    strata: FloatArray = centres / centres.std()
+    return strata
 
 
 def _generator(key: str) -> np.random.Generator:

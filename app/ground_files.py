@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 import shutil
 import tempfile
 from pathlib import Path
@@ -31,12 +30,12 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
                 declare(copy, crs=crs, kind=kind)
             info = open_raster(copy)
             for one in sorted(Path(folder).iterdir()):
-                os.replace(one, target.parent / one.name)
+                one.replace(target.parent / one.name)
     except OSError as error:
         raise StoreError(f"{path.name} could not be copied into {terrain_dir()} ({error.strerror or error})") from error
     return {
         "file": path.name,
         "kind": info.kind,
-        "spacing_m": round(info.spacing_m, 1),
+        "spacing_m": round(info.grid.spacing_m, 1),
         "stored": str(target),
     }

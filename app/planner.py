@@ -122,10 +122,8 @@ def _verdicts(
     else:
         baseline = outcomes[request.now or chains[0].name]
         compared = in_question
-    if chosen:
-        wanted = [one for one in chosen if one in multiplexes]
-    else:
-        wanted = wanted_multiplexes(multiplexes, compared)
+    present = [one for one in chosen if one in multiplexes]
+    wanted = present if chosen else wanted_multiplexes(multiplexes, compared)
     worth = request.worth_per_multiplex
     return ranked(
         [

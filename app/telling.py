@@ -7,6 +7,7 @@ from typing import Any
 
 from app.site import place
 
+LEAST_CHANGE = 0.05  # of a chance: less is no change to a person
 RODS = {"horizontal": "rods flat", "vertical": "rods upright"}
 
 
@@ -90,7 +91,11 @@ def _table(answer: Mapping[str, Any], names: Sequence[str]) -> Iterator[str]:
     for multiplex in answer["multiplexes"]:
         cells = [multiplex["chains"][name] for name in names if name in multiplex["chains"]]
         words = [f"{chance_words(cell['chance'])} {cell['grade']}" for cell in cells]
-        if len(set(words)) > 1 or len(words) == 1:
+        chances = [cell["chance"] for cell in cells]
+        moved = len(cells) > 1 and (
+            max(chances) - min(chances) >= LEAST_CHANGE or len({cell["grade"] for cell in cells}) > 1
+        )
+        if moved or len(cells) == 1:
             rows.append([multiplex["name"], *words])
         elif words:
             unchanged.append(f"{multiplex['name']} ({words[0]})")

@@ -1,0 +1,143 @@
+"""The command line: the same answers as the API, exit codes, no traceback for what the user can mend."""
+
+import json
+import socket
+
+import pytest
+from typer.testing import CliRunner
+
+from app.cli import main
+from app.demo.scenario import DEMO_ROOFS
+
+NORTH = f"{DEMO_ROOFS[0].latitude_deg},{DEMO_ROOFS[0].longitude_deg}"
+
+
+@pytest.fixture
+def run(demo_world, monkeypatch):
+    """Run a command on the demo's folders."""
+    monkeypatch.setenv("GAINWORTH_DATA_DIR", str(demo_world.store.path.parent))
+
+    def ran(*words, code=0):
+        result = CliRunner().invoke(main, list(words))
+        assert result.exit_code == code, result.output + repr(result.exception)
+        if code == 2:
+            assert "Traceback" not in result.output
+            assert result.stdout == ""
+        return result
+
+    return ran
+
+
+@pytest.fixture
+def own(tmp_path, monkeypatch):
+    """Empty folders of their own."""
+    monkeypatch.setenv("GAINWORTH_DATA_DIR", str(tmp_path / "data"))
+    return tmp_path
+
+
+def test_assess_begins_with_the_decision(run):
+    told = run("assess", "--at", NORTH, "--now", "roof-yagi").stdout
+    assert "worth it" in told.splitlines()[2]
+    assert "On the roof" in told
+    assert "local codes" in told
+
+
+def test_assess_json_is_the_document(run):
+    document = json.loads(run("assess", "--at", NORTH, "--now", "roof-yagi", "--json").stdout)
+    assert document["verdicts"][0]["baseline"] == "roof-yagi"
+    assert document["roof"]["latitude_deg"] == DEMO_ROOFS[0].latitude_deg
+
+
+@pytest.mark.parametrize(
+    ("words", "message"),
+    [
+        (("assess", "--at", "here"), 'is "here": write two numbers'),
+        (("assess", "--at", "nan,1"), "use -90 to 90"),
+        (("assess", "--at", "95,1"), "use -90 to 90"),
+        (("assess", "--at", "1,2"), "no elevation at"),
+        (("assess", "--at", "44.35,-37.15"), "out on the water"),
+        (("assess", "--at", NORTH, "--height", "5000"), "use 1 to 200 m"),
+        (("assess", "--at", NORTH, "--height", "-5"), "use 1 to 200 m"),
+        (("assess", "--at", NORTH, "--chain", "no-such"), "no-such"),
+        (("assess", "--at", NORTH, "--availability", "80"), "use 50, 90, 99"),
+        (("assess", "--at", NORTH, "--surroundings", "moon"), "open, suburban, urban, trees"),
+        (("path", "--from", NORTH, "--to", NORTH, "--frequency", "600"), "one place"),
+        (("path", "--from", NORTH, "--to", "44.2,-37.5", "--frequency", "9"), "use 30 to 4000 MHz"),
+        (("path", "--from", NORTH, "--to", "44.2,-37.5", "--frequency", "600", "--heights", "1"), "two numbers"),
+        (("path", "--from", NORTH, "--to", "45.9,-37.5", "--frequency", "600"), "no elevation"),
+        (("verify", "no-such-folder"), "no-such-folder"),
+        (("transmitters", "import", "no-such.csv"), "no-such.csv"),
+        (("terrain", "add", "no-such.tif"), "no-such.tif"),
+    ],
+)
+def test_what_the_user_can_mend_is_one_line_and_exit_2(run, words, message):
+    assert message in run(*words, code=2).stderr
+
+
+def test_path_shows_both_methods(run):
+    told = run("path", "--from", "44.2258,-37.4944", "--to", NORTH, "--frequency", "600").stdout
+    assert "Rec. ITU-R P.1812-7" in told
+    assert "Rec. ITU-R P.1546-6" in told
+    document = json.loads(
+        run("path", "--from", "44.2258,-37.4944", "--to", NORTH, "--frequency", "600", "--json").stdout
+    )
+    assert len(document["p1812"]["basic_loss_db"]) == 3
+    assert len(document["drawing"]["distance_km"]) == len(document["drawing"]["ground_amsl_m"])
+
+
+def test_verify_replays_both_sets(run):
+    sets = json.loads(run("verify", "--json").stdout)["sets"]
+    assert [(one["recommendation"], one["cases"], one["failed"]) for one in sets] == [
+        ("ITU-R P.1546-6", 52, 0),
+        ("ITU-R P.1812", 63, 0),
+    ]
+    assert all(one["largest_difference_db"] <= 1e-6 for one in sets)
+
+
+def test_lists_name_what_is_stored(run):
+    assert "high-gain-masthead" in run("chains", "list").stdout
+    assert len(json.loads(run("transmitters", "list", "--json").stdout)) == 11
+    assert json.loads(run("terrain", "list", "--json").stdout)[0]["state"] == "in use"
+
+
+def test_template_can_be_imported_and_takes_the_demos_place(own):
+    def run(*words):
+        return CliRunner().invoke(main, list(words))
+
+    file = own / "mine.csv"
+    file.write_text(run("transmitters", "template").stdout)
+    assert run("transmitters", "import", str(file), "--dry-run").exit_code == 0
+    assert json.loads(run("transmitters", "list", "--json").stdout)[0]["source"] == "demo"
+    assert run("transmitters", "import", str(file)).exit_code == 0
+    assert {row["source"] for row in json.loads(run("transmitters", "list", "--json").stdout)} != {"demo"}
+
+
+def test_raster_without_a_place_is_refused_and_can_be_declared(own):
+    grid = own / "hills.asc"
+    grid.write_text("ncols 3\nnrows 3\nxllcorner 10\nyllcorner 50\ncellsize 0.001\n" + "100 110 120\n" * 3)
+    refused = CliRunner().invoke(main, ["terrain", "add", str(grid)])
+    assert refused.exit_code == 2
+    assert "--crs EPSG:" in refused.stderr
+    assert (
+        CliRunner().invoke(main, ["terrain", "add", str(grid), "--crs", "EPSG:4326", "--kind", "bare"]).exit_code == 0
+    )
+    rows = json.loads(CliRunner().invoke(main, ["terrain", "list", "--json"]).stdout)
+    assert next(row for row in rows if row["file"].startswith("hills"))["kind"] == "bare"
+
+
+def test_serve_says_when_its_port_is_taken(own):
+    with socket.socket() as taken:
+        taken.bind(("127.0.0.1", 0))
+        taken.listen()
+        result = CliRunner().invoke(main, ["serve", "--port", str(taken.getsockname()[1])])
+    assert result.exit_code == 2
+    assert "use another one with --port" in result.stderr
+
+
+def test_data_folder_that_cannot_be_made_is_said(own, monkeypatch):
+    blocker = own / "file"
+    blocker.write_text("")
+    monkeypatch.setenv("GAINWORTH_DATA_DIR", str(blocker / "data"))
+    result = CliRunner().invoke(main, ["chains", "list"])
+    assert result.exit_code == 2
+    assert "set GAINWORTH_DATA_DIR to a folder you may write" in result.stderr

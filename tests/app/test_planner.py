@@ -1,0 +1,226 @@
+"""The whole way of a request on the demo: document, decisions, refusals."""
+
+import json
+import math
+from dataclasses import replace
+
+import pytest
+
+from app.answer import CAUTIONS
+from app.demo.scenario import DEMO_ROOFS
+from app.errors import ChainError, NotStoredError, RequestError, RoofError
+from app.planner import assess, stored_chain
+from app.request import AssessRequest
+from app.roof import Roof
+from terrain.errors import CoverageError
+
+PLACES = {roof.name: Roof(roof.latitude_deg, roof.longitude_deg) for roof in DEMO_ROOFS}
+NORTH, WEST, BAY = PLACES.values()
+
+
+@pytest.fixture(scope="module")
+def ask(demo_world):
+    def asked(roof=NORTH, **wishes):
+        return assess(AssessRequest(roof, **wishes), demo_world.store, demo_world.ground)
+
+    return asked
+
+
+def cell(answer, multiplex, chain):
+    return next(one for one in answer["multiplexes"] if one["id"] == multiplex)["chains"][chain]
+
+
+def test_document_has_the_shape_of_the_interface(ask):
+    answer = ask(now="roof-yagi")
+    assert set(answer) == {
+        "roof", "multiplexes", "emissions", "chains", "verdicts", "assumptions", "cautions", "sources",
+    }  # fmt: skip
+    emission = answer["emissions"][0]
+    assert {"id", "transmitter", "multiplex", "channel", "frequency_mhz", "system", "mode", "erp_kw", "polarisation",
+            "bearing_deg", "distance_km", "path", "field", "chains"} <= set(emission)  # fmt: skip
+    assert {"sentence", "line_of_sight", "clearance_ratio", "terrain_clearance_angle_deg", "effective_height_m",
+            "diffraction_loss_db", "zones", "kind"} <= set(emission["path"])  # fmt: skip
+    assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "used_dbuv_m", "method", "sigma_db", "fade_db",
+            "enhancement_db"} == set(emission["field"])  # fmt: skip
+    outlet = emission["chains"]["roof-yagi"]["outlets"][0]
+    assert {"name", "level_dbuv", "cn_db", "required_cn_db", "margin_db", "headroom_db", "chance", "held_back_by",
+            "ledger"} == set(outlet)  # fmt: skip
+    assert {"baseline", "candidate", "answer", "expected_worth", "chance_of_gain", "expected_extra", "price_difference",
+            "price_per_extra", "break_even_price", "gained", "lost", "now_secure", "cheapest_equal", "measure_next",
+            "reason"} <= set(answer["verdicts"][0])  # fmt: skip
+    json.dumps(answer, allow_nan=False)
+
+
+def test_worth_it_and_not_worth_it_both_occur(ask):
+    assert ask(NORTH, now="roof-yagi")["verdicts"][0]["answer"] == "worth it"
+    assert {verdict["answer"] for verdict in ask(WEST, now="roof-yagi")["verdicts"]} == {"not worth it"}
+
+
+def test_every_ledger_runs_from_the_radiated_power_to_the_margin(ask):
+    ledgers = 0
+    for emission in ask(now="roof-yagi")["emissions"]:
+        for chain in emission["chains"].values():
+            for outlet in chain["outlets"]:
+                steps = outlet["ledger"]
+                assert steps[0]["step"].startswith("radiated power")
+                assert steps[-1]["total"] == pytest.approx(outlet["margin_db"], abs=0.02)
+                assert all(step["source"] for step in steps)
+                assert sum(step["value_db"] for step in steps) == pytest.approx(outlet["margin_db"], abs=0.2)
+                ledgers += 1
+    assert ledgers >= 40
+
+
+def test_chance_of_one_emission_is_the_normal_of_its_margin(ask):
+    for emission in ask(now="roof-yagi")["emissions"]:
+        for chain in emission["chains"].values():
+            expected = 0.5 * math.erfc(-chain["margin_db"] / chain["sigma_db"] / math.sqrt(2))
+            assert chain["chance"] == pytest.approx(expected, abs=2e-3)
+
+
+def test_multiplex_on_two_masts_has_at_least_the_better_ones_chance(ask):
+    answer = ask(BAY)
+    for multiplex in answer["multiplexes"]:
+        for name, one in multiplex["chains"].items():
+            alone = [e["chains"][name]["chance"] for e in answer["emissions"] if e["multiplex"] == multiplex["id"]]
+            assert one["chance"] >= max(alone) - 0.02
+
+
+def test_the_same_chain_twice_differs_by_exactly_nothing(ask, demo_world):
+    chain = stored_chain(demo_world.store, "high-gain")
+    twin = replace(chain, name="twin")
+    verdict = ask(chains=(chain, twin))["verdicts"][0]
+    assert (verdict["expected_extra"], verdict["chance_of_gain"], verdict["price_difference"]) == (0, 0, 0)
+
+
+def test_an_aerial_turned_away_is_worse(ask, demo_world):
+    chain = stored_chain(demo_world.store, "high-gain")
+    toward = cell(ask(chains=(chain,), wanted=("strait-1",)), "strait-1", "high-gain")
+    pointing = (toward["pointing_deg"] + 120) % 360
+    away = cell(ask(chains=(replace(chain, pointing_deg=pointing),)), "strait-1", "high-gain")
+    assert away["chance"] < toward["chance"] - 0.2
+
+
+def test_verdicts_are_empty_with_one_chain(ask):
+    assert ask(chains=("high-gain",))["verdicts"] == []
+
+
+def test_nothing_up_today_compares_with_a_bare_roof(ask):
+    verdict = ask(chains=("high-gain",), now="nothing")["verdicts"][0]
+    assert verdict["baseline"] == "nothing"
+    assert verdict["price_difference"] == 39 + 12 + 5 + 4 + 4 + 20 + 15  # parts, labour, visit of the catalogue
+
+
+def test_what_is_up_now_joins_the_chains_in_question(ask):
+    assert set(ask(chains=("high-gain",), now="loft-dipole")["chains"]) == {"loft-dipole", "high-gain"}
+
+
+def test_wanted_multiplexes_may_be_given_by_name(ask):
+    assert ask(now="roof-yagi", wanted=("Strait One",))["verdicts"][0]["wanted"] == ["strait-1"]
+
+
+def test_higher_availability_never_raises_a_chance(ask):
+    chances = [
+        [e["chains"]["high-gain"]["margin_db"] for e in ask(chains=("high-gain",), availability_percent=t)["emissions"]]
+        for t in (50, 90, 99)
+    ]
+    assert all(a >= b >= c for a, b, c in zip(*chances, strict=True))
+
+
+def test_p1546_alone_leaves_the_other_figure_out_and_widens_the_spread(ask):
+    alone, both = ask(method="p1546")["emissions"][0], ask()["emissions"][0]
+    assert alone["field"]["p1812_dbuv_m"] is None
+    assert alone["field"]["method"] == "p1546"
+    assert both["field"]["method"] == "p1812"
+    assert both["path"]["kind"] == "clear"
+    assert alone["field"]["sigma_db"] == pytest.approx(1.4 * 3.0)
+    apart_db = abs(both["field"]["p1812_dbuv_m"] - both["field"]["p1546_dbuv_m"])
+    beyond_6_db = min(6.0, max(0.0, (apart_db - 6) / 2))
+    assert both["field"]["sigma_db"] == pytest.approx(math.hypot(3.0, beyond_6_db), abs=0.01)
+
+
+def test_nothing_in_reach_is_an_answer_that_names_the_nearest(ask):
+    answer = ask(reach_km=1)
+    assert answer["emissions"] == []
+    assert answer["multiplexes"] == []
+    assert any("the nearest transmitter is" in caution for caution in answer["cautions"])
+
+
+def test_shared_channel_is_said_to_be_not_counted_yet(ask):
+    answer = ask(NORTH)
+    assert any("interference between them is not yet counted" in caution for caution in answer["cautions"])
+
+
+def test_usual_cautions_are_always_there(ask):
+    assert set(CAUTIONS) <= set(ask()["cautions"])
+
+
+def test_an_assumption_can_be_changed(ask):
+    usual, strict = (
+        ask(assumptions=changes)["emissions"][0]["chains"]["high-gain"]["margin_db"]
+        for changes in ({}, {"reserve_db": 8.0})
+    )
+    assert strict == pytest.approx(usual - 5, abs=0.011)
+
+
+@pytest.mark.parametrize(
+    ("wishes", "error", "message"),
+    [
+        ({"chains": ("no-such",)}, NotStoredError, "no-such"),
+        ({"now": "no-such"}, NotStoredError, "no-such"),
+        ({"wanted": ("no-such",)}, RequestError, "is not known: use one of"),
+        ({"wanted": ()}, RequestError, "no multiplex is wanted"),
+        ({"chains": ("high-gain", "high-gain")}, RequestError, "give each its own name"),
+        ({"chains": ()}, RequestError, "name or describe at least one"),
+        ({"reach_km": math.nan}, RequestError, "use 1 to 500 km"),
+        ({"method": "guess"}, RequestError, "use p1812, p1546, both"),
+        ({"availability_percent": 95}, RequestError, "use 50, 90, 99"),
+        ({"worth_per_multiplex": -1.0}, RequestError, "use 0 to 1000000"),
+        ({"assumptions": {"reserve": 1.0}}, RequestError, "is not known: use one of"),
+        ({"assumptions": {"reserve_db": 99.0}}, RequestError, "use 0 to 20 dB"),
+    ],
+)
+def test_impossible_wishes_are_refused_with_what_is_allowed(ask, wishes, error, message):
+    with pytest.raises(error, match=message):
+        ask(**wishes)
+
+
+@pytest.mark.parametrize(
+    ("latitude_deg", "longitude_deg", "height_m", "message"),
+    [
+        (91, 0, 10, "use -90 to 90"),
+        (44, 181, 10, "use -180 to 180"),
+        (math.nan, 0, 10, "use -90 to 90"),
+        (44, -37, -5, "use 1 to 200 m"),
+        (44, -37, 5000, "use 1 to 200 m"),
+    ],
+)
+def test_impossible_roofs_are_refused_with_what_is_allowed(latitude_deg, longitude_deg, height_m, message):
+    with pytest.raises(RoofError, match=message):
+        Roof(latitude_deg, longitude_deg, height_m)
+
+
+def test_roof_outside_all_rasters_names_the_tile(ask):
+    with pytest.raises(CoverageError, match=r"no elevation at 10\.5000 N 20\.5000 W: add .* N10W021"):
+        ask(Roof(10.5, -20.5))
+
+
+def test_roof_far_out_at_sea_is_refused(ask):
+    with pytest.raises(RoofError, match="more than 500 m out on the water"):
+        ask(Roof(44.35, -37.15))
+
+
+def test_chains_in_two_currencies_are_not_compared(ask, demo_world):
+    chain = stored_chain(demo_world.store, "high-gain")
+    with pytest.raises(RequestError, match="use one currency"):
+        ask(chains=(chain, replace(chain, name="other", currency="XYZ")))
+
+
+def test_a_chain_that_is_no_chain_is_refused(ask):
+    with pytest.raises(ChainError):
+        ask(chains=(replace(stored_chain_of_nothing()),))
+
+
+def stored_chain_of_nothing():
+    from app.chain.document import chain_from_document
+
+    return chain_from_document({"name": "empty", "parts": []})
