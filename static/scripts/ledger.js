@@ -36,10 +36,10 @@ export function createLedger(element) {
     const place = (value) => (100 * (value - low)) / (high - low || 1);
     const bar = document.createElementNS(SVG, 'rect');
     const [left, right] = [place(from), place(step.total)].sort((a, b) => a - b);
-    for (const [key, value] of Object.entries({ x: left, y: 1, width: Math.max(0.4, right - left), height: 8 })) bar.setAttribute(key, String(value));
+    for (const [key, value] of Object.entries({ x: left, y: 2, width: Math.max(0.4, right - left), height: 6 })) bar.setAttribute(key, String(value));
     bar.setAttribute('class', step.value_db === null ? 'end' : step.value_db < 0 ? 'down' : 'up');
     const zero = document.createElementNS(SVG, 'path');
-    zero.setAttribute('d', `M${place(0)} -2V12`);
+    zero.setAttribute('d', `M${place(0)} 0V10`);
     zero.setAttribute('class', 'zero');
     made.querySelector('svg').append(zero, bar);
     return made;

@@ -45,7 +45,9 @@ async function assess() {
     const answer = await askAssess(question(store.get(), up.height));
     if (answer) store.set({ answer, asking: false });
   } catch (error) {
-    store.set({ asking: false, trouble: { message: error.message, field: error.field ?? null } });
+    // A refused place has no answer; a server that is gone leaves the last one standing.
+    const answer = error.status >= 400 && error.status < 500 ? null : store.get().answer;
+    store.set({ answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
   }
 }
 
