@@ -91,6 +91,14 @@ class Grid:
         inside &= east_of_west <= self.east_deg - self.west_deg + 2e-6
         return inside
 
+    def meets(self, south: float, west: float, north: float, east: float) -> bool:
+        """Whether the bounding box shares ground with another one [deg], whose east is not below its west."""
+        if south > self.north_deg + 1e-6 or north < self.south_deg - 1e-6:
+            return False
+        its_west_inside = (west - self.west_deg) % 360.0 <= self.east_deg - self.west_deg + 1e-6
+        own_west_inside = (self.west_deg - west) % 360.0 <= east - west + 1e-6
+        return its_west_inside or own_west_inside
+
 
 def _apply(transform: Affine, across: FloatArray, down: FloatArray) -> tuple[FloatArray, FloatArray]:
     t = transform

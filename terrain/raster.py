@@ -34,6 +34,7 @@ KINDS = ("surface", "radar-surface", "bare")
 SUFFIXES = (".tif", ".tiff", ".hgt", ".asc", ".zip", ".hgt.gz")
 
 # Samples along each side of a block: whole tiles of 1 arc-second, and 32 MB of 16-bit samples.
+# A multiple of the largest coarse cell (blocks.py).
 BLOCK_SIDE = 4096
 
 _UNREADABLE = (
@@ -172,7 +173,7 @@ def open_raster(path: Path) -> Raster:
             zero_declared_void=file.nodata == 0,
             scale=scale,
             offset_m=offset_m,
-            block_rows=max(64, BLOCK_SIDE**2 // file.width) if striped else BLOCK_SIDE,
+            block_rows=max(1, BLOCK_SIDE**2 // file.width // 64) * 64 if striped else BLOCK_SIDE,
             block_columns=file.width if striped else BLOCK_SIDE,
             attribution=file.tags().get("TIFFTAG_COPYRIGHT", ""),
             content=_content(path, (file.shape, dtype, file.nodata, scale, offset_m)),
