@@ -142,9 +142,7 @@ class Ground:
         layer = int(self._answer(lat.ravel(), lon.ravel()).layer[0])
         return self._layers[layer].raster.grid.spacing_m if layer >= 0 else float("nan")
 
-    def answering(
-        self, latitude_deg: ArrayLike, longitude_deg: ArrayLike
-    ) -> tuple[NDArray[np.str_], FloatArray]:
+    def answering(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[NDArray[np.str_], FloatArray]:
         """Kind and spacing [m] of the raster that answers at each position; "" and NaN where none does."""
         lat, lon = _positions(latitude_deg, longitude_deg)
         layer = self._answer(lat.ravel(), lon.ravel()).layer.reshape(lat.shape)

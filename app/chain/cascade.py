@@ -59,9 +59,7 @@ def total_gain_db(row: Sequence[Stage], emissions: int) -> NDArray[np.float64]:
     return sum((stage.gain_db for stage in row), np.zeros(emissions))
 
 
-def cascade_noise_factor(
-    gain_db: Sequence[ArrayLike], noise_figure_db: Sequence[ArrayLike]
-) -> NDArray[np.float64]:
+def cascade_noise_factor(gain_db: Sequence[ArrayLike], noise_figure_db: Sequence[ArrayLike]) -> NDArray[np.float64]:
     """Noise factor of stages in a row, referred to the input of the first [-]; stages broadcast.
 
     F = F1 + (F2 - 1) / G1 + (F3 - 1) / (G1 G2) + …; the gain of the last stage plays no part.
