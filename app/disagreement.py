@@ -17,6 +17,7 @@ class Terms:
     surroundings_db: float
     obstacle_db: float
     p1546_scatter_db: float
+    near_edge_db: float
     diffraction_db: float
     brought_back_db: float
     clearance_angle_deg: float
@@ -26,7 +27,7 @@ class Terms:
     @property
     def difference_db(self) -> float:
         """P.1812 less P.1546, as the terms add up."""
-        return self._p1546_db - (self.diffraction_db - self.brought_back_db)
+        return self._p1546_db - (self.diffraction_db + self.near_edge_db - self.brought_back_db)
 
     @property
     def _p1546_db(self) -> float:
@@ -59,20 +60,23 @@ def _p1546_is_lower(terms: Terms) -> str:
     causes = {
         # the ground as a whole, which P.1812 pays for by diffraction
         f"its curves{height} take {terms.curves_db:.0f} dB off free space{sight}": terms.curves_db
-        - max(0.0, terms.diffraction_db - terms.clearance_angle_db - terms.obstacle_db - terms.surroundings_db),
+        - max(0.0, terms.diffraction_db),
         f"it takes {terms.clearance_angle_db:.0f} dB for ground that rises {terms.clearance_angle_deg:.1f}° before "
         f"the aerial, however high the antenna stands{sight}": terms.clearance_angle_db,
-        f"it takes {terms.surroundings_db:.0f} dB for the height of the aerial among what stands round it"
-        f"{sight}": terms.surroundings_db,
-        f"it takes {terms.obstacle_db:.0f} dB for the obstacle entered{sight}": terms.obstacle_db,
+        f"it takes {terms.surroundings_db:.0f} dB for the height of the aerial among what stands round it, where P.1812 "
+        f"takes {terms.near_edge_db:.0f} dB": terms.surroundings_db - terms.near_edge_db,
         f"in P.1812, scatter and layers in the air bring back {terms.brought_back_db:.0f} dB": terms.brought_back_db,
     }
     return max(causes, key=lambda cause: causes[cause])
 
 
 def _p1812_is_lower(terms: Terms) -> str:
-    taken_db = terms.curves_db + terms.clearance_angle_db + terms.surroundings_db + terms.obstacle_db
+    taken_db = terms.curves_db + terms.clearance_angle_db
     causes = {
+        f"it takes {terms.near_edge_db:.0f} dB for what stands round the roof, where P.1546 takes "
+        f"{terms.surroundings_db + terms.obstacle_db:.0f} dB": terms.near_edge_db
+        - terms.surroundings_db
+        - terms.obstacle_db,
         f"it finds {terms.diffraction_db:.0f} dB of diffraction on this path, where the curves and corrections of "
         f"P.1546 take {taken_db:.0f} dB": terms.diffraction_db - taken_db,
         f"in P.1546, scatter in the air brings back {terms.p1546_scatter_db:.0f} dB": terms.p1546_scatter_db,

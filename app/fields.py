@@ -152,7 +152,7 @@ def _answered(
     )
     rise = enhancement_db(in_state_b, at_50)
     free_space = field_strength_dbuv_m(digest.path_length_km, erp_kw)
-    clearance = digest.clearance_ratio(frequency_mhz)
+    clearance = np.array([path.clearance_ratio(f) for path, f in zip(paths, frequency_mhz.tolist(), strict=True)])
     diffraction = digest.diffraction(frequency_mhz, plane)
     kinds = [path_kind(c, b) for c, b in zip(clearance.tolist(), digest.beyond_horizon.tolist(), strict=True)]
     sd = _path_sd_db(clearance, digest.beyond_horizon, by_p1812[0], by_p1546[0], assumptions)
@@ -162,13 +162,13 @@ def _answered(
     for e, (emission, transmitter, distance_km, bearing_deg) in enumerate(rows):
         doubt = unstated if any(flag in DOUBTFUL_FLAGS for flag in emission.flags) else 0.0
         facts = PathFacts(
-            sentence=path_sentence(story_of(paths[e], kinds[e], float(clearance[e]), diffraction, both, e)),
+            sentence=path_sentence(story_of(paths[e], kinds[e], float(frequency_mhz[e]), diffraction, both, e)),
             kind=kinds[e],
-            line_of_sight=bool(digest.line_of_sight[e]),
+            line_of_sight=bool(digest.line_of_sight[e]) and float(clearance[e]) >= 0,
             clearance_ratio=float(clearance[e]),
             terrain_clearance_angle_deg=float(digest.rx_clearance_angle_deg[e]),
             effective_height_m=float(digest.h1_source_height_m[e]),
-            diffraction_loss_db=float(diffraction.loss_db[e]),
+            diffraction_loss_db=float(diffraction.loss_db[e] + both.near_edge_db[e]),
             land_km=float(digest.land_km[e]),
             sea_km=float(digest.sea_km[e]),
             ground_kinds=paths[e].profile.kinds,

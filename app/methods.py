@@ -32,9 +32,10 @@ class MethodFields:
     curves_db: FloatArray  # P.1546: curves for its effective height, all that is not named below
     clearance_angle_db: FloatArray  # P.1546: ground that rises before the aerial
     surroundings_db: FloatArray  # P.1546: height of the aerial and cover round it
-    obstacle_db: FloatArray  # P.1546: obstacles entered, our knife edge
+    obstacle_db: FloatArray  # P.1546: the worst obstacle entered, a knife edge
     p1546_scatter_db: FloatArray  # P.1546: what scatter makes good
-    diffraction_db: FloatArray  # P.1812: NaN where it does not hold
+    near_edge_db: FloatArray  # P.1812: the worst edge near the roof, a knife edge
+    diffraction_db: FloatArray  # P.1812: over the ground; NaN where it does not hold
     brought_back_db: FloatArray  # P.1812: what scatter and ducting make good of the diffraction
 
 
@@ -50,9 +51,10 @@ def fields_of_methods(
 ) -> MethodFields:
     """Return both fields for each time and emission; `digest` stacks those of the paths (e,)."""
     times = np.asarray(times_percent, dtype=float)[:, None]
-    obstacle_db = knife_edge_loss_db(
-        np.array([path.entered_edge for path in paths]) / np.sqrt(wavelength_m(frequency_mhz))
-    )
+    near = np.array([path.edges[0].size if path.edges else -np.inf for path in paths])
+    near_edge_db = knife_edge_loss_db(near / np.sqrt(wavelength_m(frequency_mhz)))
+    # P.1546 has its own way with what surrounds an aerial; only an obstacle entered is an edge to it
+    obstacle_db = np.where([path.p1546_surroundings_m > 0 for path in paths], 0.0, near_edge_db)
     result = _p1546(digest, paths, aerial_agl_m, frequency_mhz, times, erp_kw)
     by_p1546 = result.field_dbuv_m - obstacle_db
 
@@ -69,7 +71,7 @@ def fields_of_methods(
             n0=np.array([path.n0 for path in paths])[inside],
             erp_kw=erp_kw[inside],
         )
-        by_p1812[:, inside] = loss.field_dbuv_m
+        by_p1812[:, inside] = loss.field_dbuv_m - near_edge_db[inside]
         diffraction[inside] = loss.diffraction_median_db
         brought_back[inside] = np.maximum(0.0, loss.loss_diffraction_median_db - loss.basic_loss_db[0])
 
@@ -90,6 +92,7 @@ def fields_of_methods(
         surroundings_db=surroundings,
         obstacle_db=obstacle_db,
         p1546_scatter_db=scatter,
+        near_edge_db=near_edge_db,
         diffraction_db=diffraction,
         brought_back_db=brought_back,
     )
@@ -103,7 +106,7 @@ def _p1546(
     times_percent: FloatArray,
     erp_kw: FloatArray,
 ) -> P1546Result:
-    cover_m = np.array([path.surroundings_m for path in paths])
+    cover_m = np.array([path.p1546_surroundings_m for path in paths])
     return p1546.field_strength(
         frequency_mhz=frequency_mhz,
         time_percent=times_percent,

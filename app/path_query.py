@@ -81,7 +81,7 @@ def path_document(
     if isinstance(path, str):
         raise RequestError(path)
     digest = path.digest
-    ratio = float(digest.clearance_ratio(frequency_mhz))
+    ratio = path.clearance_ratio(frequency_mhz)
     kind = path_kind(ratio, bool(digest.beyond_horizon))
     one, plane, carrier = stacked_digests([digest]), np.array([polarisation]), np.array([frequency_mhz])
     both = fields_of_methods(one, [path], aerial_agl_m, carrier, plane, (50.0,), np.ones(1))
@@ -95,7 +95,7 @@ def path_document(
         "polarisation": polarisation,
         "distance_km": length_km,
         "kind": kind,
-        "sentence": path_sentence(story_of(path, kind, ratio, one.diffraction(carrier, plane), both, 0)),
+        "sentence": path_sentence(story_of(path, kind, frequency_mhz, one.diffraction(carrier, plane), both, 0)),
         "method": "p1546" if path.terms is None else "p1812",
         "method_reason": method_reason("both", path.p1812_refusal),
         "difference_db": _finite(difference),
@@ -185,7 +185,7 @@ def _p1812_terms(path: Path, frequency_mhz: float, polarisation: str) -> dict[st
 
 def _drawing(path: Path, frequency_mhz: float, antenna_agl_m: float, aerial_agl_m: float) -> dict[str, Any]:
     """Points for a drawing: the highest ground of each of up to 400 stretches, so that no ridge is lost."""
-    x, ground = path.ground.distance_km, path.ground.surface_amsl_m
+    x, ground = path.profile.distance_km, path.surface_amsl_m
     inner = np.array_split(np.arange(1, len(x) - 1), min(DRAWN_POINTS, max(1, len(x) - 2)))
     keep = np.array([0, *(int(stretch[np.argmax(ground[stretch])]) for stretch in inner if stretch.size), len(x) - 1])
     d1, d2 = x[keep], x[-1] - x[keep]
@@ -194,11 +194,11 @@ def _drawing(path: Path, frequency_mhz: float, antenna_agl_m: float, aerial_agl_
     return {
         "distance_km": _rounded(x[keep], 4),
         "ground_amsl_m": _rounded(ground[keep], 1),
-        "bare_amsl_m": _rounded(path.ground.bare_amsl_m[keep], 1),
+        "bare_amsl_m": _rounded(path.profile.bare_amsl_m[keep], 1),
         "bulge_m": _rounded(500 * d1 * d2 / radius_km, 2),
         "line_amsl_m": _rounded(start + (end - start) * d1 / x[-1], 2),
         "first_fresnel_m": _rounded(np.sqrt(299.792458 / frequency_mhz * 1e3 * d1 * d2 / x[-1]), 2),
-        "water": [bool(one) for one in path.ground.zone[keep] == SEA],
+        "water": [bool(one) for one in path.profile.zone[keep] == SEA],
         "effective_earth_radius_km": radius_km,
     }
 

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
-from app.near_roof import Edge, PathGround, ground_for_methods
+from app.near_roof import Edge, edges_near_roof, flattened_surface_m
 from app.roof import Roof
 from app.transmitters.model import Transmitter
 from propagation import p1812
@@ -27,7 +27,6 @@ FloatArray = NDArray[np.float64]
 
 NEAREST_KM = 0.05  # a mast nearer than this stands on the roof's own plot: no method here holds
 NO_COAST_KM = 500.0
-NO_EDGE = -np.inf
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,15 +42,24 @@ class Path:
     """One path without any frequency."""
 
     profile: Profile
-    ground: PathGround
+    surface_amsl_m: FloatArray  # (n,) what a ray meets, flattened near the roof; equal to the bare ground at both ends
     antenna_agl_m: float
     digest: PathDigest
     terms: PathTerms | None  # for P.1812; None: outside its range
     p1812_refusal: str  # why, else empty
     delta_n_per_km: float
     n0: float
-    surroundings_m: float  # P.1546's cover height at the aerial, above the roof's ground; 0: none
-    entered_edge: float  # nu times the root of the wavelength of the worst obstacle entered [m^0.5]; -inf: none
+    edges: tuple[Edge, ...]  # near the roof, worst first; no part of profile, digest and terms
+
+    @property
+    def p1546_surroundings_m(self) -> float:
+        """Cover height at the aerial for P.1546, 0 for none: an obstacle entered that is worse takes its place."""
+        return self.edges[0].height_m if self.edges and self.edges[0].what == "surroundings" else 0.0
+
+    def clearance_ratio(self, frequency_mhz: float) -> float:
+        """Clearance of the ray at its worst point, near edges included, in first Fresnel radii."""
+        over_ground = float(self.digest.clearance_ratio(frequency_mhz))
+        return min(over_ground, float(self.edges[0].clearance_ratio(frequency_mhz))) if self.edges else over_ground
 
 
 def paths_to_roof(
@@ -92,41 +100,35 @@ def path_over(
         one.item()
         for one in refractivity(profile.latitude_deg[middle], profile.longitude_deg[middle], refractivity_maps)
     )
-    line = ground_for_methods(profile, roof, assumptions)
+    radius_km = effective_earth_radius_km(delta_n_per_km)
+    surface_amsl_m = flattened_surface_m(profile)
     try:
         digest = path_digest(
-            line.distance_km,
-            line.bare_amsl_m,
-            line.zone,
+            profile.distance_km,
+            profile.bare_amsl_m,
+            profile.zone,
             antenna_agl_m,
             roof.aerial_agl_m,
-            effective_earth_radius_km(delta_n_per_km),
-            line.surface_amsl_m,
+            radius_km,
+            surface_amsl_m,
         )
     except (ProfileError, RangeError) as error:
         return f"no method holds on this path: {error}"
     terms, refusal = None, ""
     try:
-        terms = _p1812_terms(profile, line, antenna_agl_m, roof, delta_n_per_km)
+        terms = _p1812_terms(profile, surface_amsl_m, antenna_agl_m, roof, delta_n_per_km)
     except RangeError as error:
         refusal = str(error)  # P.1546 answers alone
-    aerial_amsl_m = float(digest.rx_ground_amsl_m) + roof.aerial_agl_m
-    worst = max(line.edges, key=lambda edge: (edge.top_amsl_m - aerial_amsl_m) / edge.from_roof_km, default=None)
     return Path(
         profile=profile,
-        ground=line,
+        surface_amsl_m=surface_amsl_m,
         antenna_agl_m=antenna_agl_m,
         digest=digest,
         terms=terms,
         p1812_refusal=refusal,
         delta_n_per_km=delta_n_per_km,
         n0=n0,
-        surroundings_m=float(worst.top_amsl_m - digest.rx_ground_amsl_m)
-        if worst is not None and worst.what == "surroundings"
-        else 0.0,
-        entered_edge=max(_edge(one, digest, antenna_agl_m, roof.aerial_agl_m) for one in line.entered)
-        if worst is not None and worst.what == "obstacle"
-        else NO_EDGE,
+        edges=edges_near_roof(profile, surface_amsl_m, antenna_agl_m, roof, assumptions, radius_km.item()),
     )
 
 
@@ -140,14 +142,15 @@ def _profile(roof: Roof, mast: Transmitter, ground: Ground) -> Profile | str:
 
 
 def _p1812_terms(
-    profile: Profile, line: PathGround, antenna_agl_m: float, roof: Roof, delta_n_per_km: float
+    profile: Profile, surface_amsl_m: FloatArray, antenna_agl_m: float, roof: Roof, delta_n_per_km: float
 ) -> PathTerms:
     """Bare ground where the Recommendation wants terrain; with the cover that stands on it, it is the surface."""
+    distance_km, zone = profile.distance_km, profile.zone
     return p1812.path_terms(
-        distance_km=line.distance_km,
-        terrain_amsl_m=line.bare_amsl_m,
-        clutter_height_m=line.surface_amsl_m - line.bare_amsl_m,
-        zone=line.zone,
+        distance_km=distance_km,
+        terrain_amsl_m=profile.bare_amsl_m,
+        clutter_height_m=surface_amsl_m - profile.bare_amsl_m,
+        zone=zone,
         tx_height_agl_m=antenna_agl_m,
         rx_height_agl_m=roof.aerial_agl_m,
         tx_latitude_deg=profile.latitude_deg[0],
@@ -155,8 +158,8 @@ def _p1812_terms(
         rx_latitude_deg=profile.latitude_deg[-1],
         rx_longitude_deg=profile.longitude_deg[-1],
         delta_n_per_km=delta_n_per_km,
-        tx_distance_to_coast_km=to_coast_km(line.distance_km, line.zone),
-        rx_distance_to_coast_km=to_coast_km(line.distance_km[-1] - line.distance_km[::-1], line.zone[::-1]),
+        tx_distance_to_coast_km=to_coast_km(distance_km, zone),
+        rx_distance_to_coast_km=to_coast_km(distance_km[-1] - distance_km[::-1], zone[::-1]),
     )
 
 
@@ -164,19 +167,3 @@ def to_coast_km(away_km: FloatArray, zone: NDArray[np.int8]) -> float:
     """Distance over land from the first point to the sea; 0 at sea, 500 where the path meets none."""
     at_sea = zone == SEA
     return float(away_km[int(np.argmax(at_sea))]) if at_sea.any() else NO_COAST_KM
-
-
-def _edge(edge: Edge, digest: PathDigest, antenna_agl_m: float, aerial_agl_m: float) -> float:
-    """How far an obstacle stands into what arrives at the aerial: nu times the root of the wavelength. [m^0.5]
-
-    P.1546 has no profile in which it could stand. The ray comes from the mast, or from the horizon of the bare
-    ground where that is higher, which the Recommendation's clearance angle pays for (Annex 5, section 11). The
-    knife edge is that of Rec. ITU-R P.526-16, section 4.1, eq. (26).
-    """
-    d, away = float(digest.path_length_km), edge.from_roof_km
-    aerial_amsl_m = float(digest.rx_ground_amsl_m) + aerial_agl_m
-    antenna_amsl_m = float(digest.tx_ground_amsl_m) + antenna_agl_m
-    to_mast = (antenna_amsl_m - aerial_amsl_m) / d - 500 * d / float(digest.effective_earth_radius_km)  # m per km
-    to_horizon = 1e3 * float(np.tan(np.radians(digest.rx_clearance_angle_deg)))
-    into_ray_m = edge.top_amsl_m - aerial_amsl_m - max(to_mast, to_horizon) * away
-    return into_ray_m * float(np.sqrt(0.002 * d / (away * (d - away))))
