@@ -166,7 +166,7 @@ class Ground:
         """
         lat, lon = (position.ravel() for position in _positions(latitude_deg, longitude_deg))
         height = np.full(lat.size, np.nan)
-        for _, layer in self._near(lat, lon):
+        for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
             open_still = np.nonzero(np.isnan(height))[0]
             if cell_m < COARSE[1] * grid.spacing_m:
@@ -184,7 +184,7 @@ class Ground:
     def finest_spacing_m(self, south: float, west: float, north: float, east: float) -> float:
         """Spacing of the finest raster that reaches into a box [deg], in m; infinite if none does."""
         near = self._near(np.array([south, north]), np.array([west, east]))
-        return min((layer.raster.grid.spacing_m for _, layer in near), default=float("inf"))
+        return min((layer.raster.grid.spacing_m for _, layer, _ in near), default=float("inf"))
 
     def covers(self, latitude_deg: float, longitude_deg: float) -> bool:
         """Whether there is an elevation at a position."""
@@ -206,11 +206,12 @@ class Ground:
         near = self._near(lat, lon)
         reached = np.zeros(lat.size, dtype=bool)
         for bridged in (False, True):
-            for number, layer in near:
+            for number, layer, holds_all in near:
                 asked = answer.layer < 0
                 if bridged:
                     asked &= reached
-                asked &= layer.raster.grid.near(lat, lon)
+                if not holds_all:
+                    asked &= layer.raster.grid.near(lat, lon)
                 if not asked.any():
                     continue
                 reached |= asked
@@ -221,16 +222,17 @@ class Ground:
                 answer.layer[which] = np.where(known, number, -1)
                 answer.bridged[which] = known & bridged
 
-    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer]]:
-        """Layers whose bounding box meets that of the positions, with their numbers."""
+    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer, bool]]:
+        """Layers whose bounding box meets that of the positions, their numbers, and if it holds them all."""
         south, north = np.fmin.reduce(lat, initial=90.0), np.fmax.reduce(lat, initial=-90.0)
         west, east = np.fmin.reduce(lon, initial=540.0), np.fmax.reduce(lon, initial=-540.0)
         if not (south <= north and west <= east):
             return []
+        box = (south, west, north, east)
         return [
-            (number, layer)
+            (number, layer, layer.raster.grid.holds(*box))
             for number, layer in enumerate(self._layers)
-            if layer.raster.grid.meets(south, west, north, east)
+            if layer.raster.grid.meets(*box)
         ]
 
     def _interpolate(self, layer: _Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
