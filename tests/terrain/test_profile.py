@@ -4,6 +4,7 @@ import pytest
 from terrain.errors import PathError
 from terrain.mosaic import Ground
 from terrain.profile import sample_profile
+from terrain.raster import declare
 from terrain.water import zones
 
 
@@ -95,3 +96,25 @@ def test_coastal_land_is_low_and_within_50_km_of_the_sea():
     assert zones(distance_km, height_m, water[::-1]).tolist() == [4, 4, 4, 4, 3, 4, 1]
     assert zones(distance_km, height_m, ~water | water)[1:].tolist() == [1] * 6
     assert zones(distance_km, height_m, water & ~water).tolist() == [4] * 7
+
+
+def test_a_lake_crossed_for_100_km_counts_as_sea_and_a_smaller_one_as_land():
+    """Rec. ITU-R P.1812-7, section 3.2, from memory: water that covers a circle of 100 km counts as sea."""
+    distance_km = np.linspace(0, 200, 201)
+    dry = np.zeros(201, dtype=bool)
+    for shore_km, sea_share in ((155, 101 / 201), (145, 0.0)):
+        height_m = np.where((distance_km >= 55) & (distance_km <= shore_km), 183.0, 183.5 + distance_km)
+        assert (zones(distance_km, height_m, dry) == 1).mean() == pytest.approx(sea_share)
+
+
+def test_a_level_plain_is_no_lake():
+    assert (zones(np.linspace(0, 200, 201), np.full(201, 120.0), np.zeros(201, dtype=bool)) == 4).all()
+
+
+def test_a_profile_says_which_kinds_of_raster_answered(write_raster, tmp_path, slope):
+    west, east = write_raster(slope(60, 60), "west.tif"), write_raster(slope(60, 60), "east.tif", west=8.06)
+    declare(west, kind="bare")
+    declare(east, kind="radar-surface")
+    ground = Ground.open([west, east], tmp_path / "cache")
+    assert sample_profile(ground, 46.97, 8.01, 46.97, 8.11).kinds == ("bare", "radar-surface")
+    assert sample_profile(ground, 46.97, 8.01, 46.95, 8.03).kinds == ("bare",)
