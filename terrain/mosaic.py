@@ -142,6 +142,11 @@ class Ground:
         layer = int(self._answer(lat.ravel(), lon.ravel()).layer[0])
         return self._layers[layer].raster.grid.spacing_m if layer >= 0 else float("nan")
 
+    def answering(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.intp]:
+        """Number in `rasters` of the raster that answers at positions, -1 where none does."""
+        lat, lon = _positions(latitude_deg, longitude_deg)
+        return self._answer(lat.ravel(), lon.ravel()).layer.reshape(lat.shape)
+
     def is_water(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.bool_]:
         """Whether the nearest sample belongs to a connected flat area at 0 m of at least 1 km².
 
