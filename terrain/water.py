@@ -39,8 +39,8 @@ def zones(
     """Zone of each point (n,) of a path: 1 sea, 3 coastal land, 4 inland.
 
     Sea is what `water` says, and a lake that the path crosses for 100 km or more: ground of one and the same
-    height between higher shores. A large lake crossed by less of it stays land, as do all smaller ones. Coastal land lies below 100 m and within 50 km of sea, here along the
-    path. Points without height count as inland.
+    height between higher shores. A large lake crossed by less of it stays land, as do all smaller ones. Coastal
+    land lies below 100 m and within 50 km of sea, here along the path. Points without height count as inland.
 
     References
     ----------

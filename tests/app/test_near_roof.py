@@ -45,7 +45,6 @@ def fields(ground, roof, frequency_mhz=600.0, antenna_agl_m=300.0):
     both = fields_of_methods(
         stacked_digests([path.digest]),
         [path],
-        roof.aerial_agl_m,
         np.array([frequency_mhz]),
         np.array(["horizontal"]),
         (50.0,),

@@ -1,5 +1,6 @@
 import numpy as np
 import pytest
+from affine import Affine
 
 from terrain.errors import PathError
 from terrain.mosaic import Ground
@@ -118,3 +119,20 @@ def test_a_profile_says_which_kinds_of_raster_answered(write_raster, tmp_path, s
     ground = Ground.open([west, east], tmp_path / "cache")
     assert sample_profile(ground, 46.97, 8.01, 46.97, 8.11).kinds == ("bare", "radar-surface")
     assert sample_profile(ground, 46.97, 8.01, 46.95, 8.03).kinds == ("bare",)
+
+
+def test_a_path_over_houses_keeps_its_surface_and_gets_the_ground(write_raster, tmp_path):
+    """Houses of 8 m, 12 by 12 m in every 40 m, both ends between them: the ground is level at 200 m."""
+    heights = np.full((600, 600), 200.0)
+    for top in range(10, 590, 40):
+        for left in range(10, 590, 40):
+            heights[top : top + 12, left : left + 12] += 8
+    metre = 1 / 111_195  # of latitude, in degrees; at the equator of longitude, too
+    path = write_raster(heights.astype("float32"), transform=Affine(metre, 0, 8, 0, -metre, 0))
+    ground = Ground.open([path], tmp_path / "cache")
+    profile = sample_profile(ground, -100 * metre, 8 + 100 * metre, -500 * metre, 8 + 480 * metre)
+    assert profile.ground_amsl_m.max() == pytest.approx(208, abs=0.1)
+    near = np.minimum(profile.distance_km, profile.distance_km[-1] - profile.distance_km) <= 0.25
+    assert profile.bare_amsl_m[near] == pytest.approx(200, abs=0.3)
+    assert (profile.bare_amsl_m <= profile.ground_amsl_m).all()
+    assert profile.kinds == ("surface",)
