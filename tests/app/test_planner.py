@@ -233,7 +233,7 @@ def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
         ledger = emission["chains"]["roof-yagi"]["outlets"][0]["ledger"]
         ground = next(row for row in ledger if row["step"].startswith("ground and atmosphere"))
         fade = next(row for row in ledger if row["step"].startswith("fade"))
-        assert f"P.1812 {field['p1812_dbuv_m']:.1f}, P.1546 {field['p1546_dbuv_m']:.1f}" in ground["source"]
-        assert f"difference {field['difference_db']:+.1f} dB" in ground["source"]
+        assert f"P.1812 {field['p1812_dbuv_m']:.2f}, P.1546 {field['p1546_dbuv_m']:.2f}" in ground["source"]
+        assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
         assert fade["value_db"] == -field["fade_db"]
-        assert f"rises by {field['enhancement_db']:.1f} dB" in fade["source"]
+        assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]
