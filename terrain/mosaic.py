@@ -304,10 +304,11 @@ def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[Float
 def _snapped(row: FloatArray, column: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Row and column with rounding errors taken off whole numbers."""
     whole_row, whole_column = np.rint(row), np.rint(column)
-    return (
-        np.where(np.abs(row - whole_row) < _ROUNDING, whole_row, row),
-        np.where(np.abs(column - whole_column) < _ROUNDING, whole_column, column),
-    )
+    with np.errstate(invalid="ignore"):  # infinite where a coordinate system does not reach
+        return (
+            np.where(np.abs(row - whole_row) < _ROUNDING, whole_row, row),
+            np.where(np.abs(column - whole_column) < _ROUNDING, whole_column, column),
+        )
 
 
 def _within(layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:

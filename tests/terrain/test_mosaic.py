@@ -1,3 +1,4 @@
+import contextlib
 import os
 import subprocess
 import sys
@@ -421,3 +422,19 @@ def test_two_processes_share_a_cache_folder(write_raster, tmp_path):
     expected = Ground.open([path], tmp_path / "own").elevation_m(46.9, 8.1)
     assert [float(answer) for answer in said] == [expected, expected]
     assert not list((tmp_path / "cache").rglob("*.part"))
+
+
+def test_a_randomly_damaged_file_is_refused_or_said_when_read_and_nothing_else(write_raster, slope, tmp_path):
+    random = np.random.default_rng(9)
+    sound = write_raster(slope(), compress="deflate").read_bytes()
+    lat, lon = samples(20, 30)
+    for number in range(150):
+        content = bytearray(sound)
+        for place in random.integers(0, len(content), 1 + number % 5):
+            content[place] = random.integers(256)
+        path = tmp_path / f"damaged-{number}.tif"
+        path.write_bytes(content)
+        ground = Ground.open([path], tmp_path / "cache")
+        assert len(ground.rasters) + len(ground.refused) == 1
+        with contextlib.suppress(RasterError):
+            ground.elevation_m(lat, lon)
