@@ -53,9 +53,7 @@ class Pairs:
     def weights(self, tropospheric: bool) -> csr_array:
         """Factor by which each disturber's power counts, (wanted, disturbers), sparse."""
         ratio_db = self.tropospheric_db if tropospheric else self.steady_db
-        return csr_array(
-            (10 ** (ratio_db / 10), (self.wanted, self.disturber)), shape=self.shape[::-1], dtype=float
-        )
+        return csr_array((10 ** (ratio_db / 10), (self.wanted, self.disturber)), shape=self.shape[::-1], dtype=float)
 
     def of_wanted(self, e: int) -> NDArray[np.intp]:
         """Return the entries that disturb one wanted emission."""

@@ -98,9 +98,7 @@ def window_start(power: FloatArray, arrival_us: FloatArray, window: Window, thre
     return np.asarray(np.argmin(arrivals, axis=-1))
 
 
-def split(
-    power: FloatArray, arrival_us: FloatArray, symbol: Symbol, window: Window, threshold_db: float
-) -> FloatArray:
+def split(power: FloatArray, arrival_us: FloatArray, symbol: Symbol, window: Window, threshold_db: float) -> FloatArray:
     """Useful share of each member's power, (…, m) for powers (…, m) and arrivals (m,) [µs]."""
     start = window_start(power, arrival_us, window, threshold_db)
     table = useful_share(arrival_us[None, :] - arrival_us[:, None], symbol)  # row: who starts

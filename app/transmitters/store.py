@@ -94,7 +94,10 @@ class Store:
             np.array([mast.longitude_deg for mast in masts]),
         )
         away = {mast.id: (float(d), float(b)) for mast, d, b in zip(masts, distance_km, bearing_deg, strict=True)}
-        found = [(emission_of(row[:EMISSION_COLUMNS]), transmitters[row[EMISSION_COLUMNS]], *away[row[16]]) for row in rows]
+        found = [
+            (emission_of(row[:EMISSION_COLUMNS]), transmitters[row[EMISSION_COLUMNS]], *away[row[EMISSION_COLUMNS]])
+            for row in rows
+        ]
         return sorted(
             (f for f in found if f[2] <= reach_km), key=lambda f: (f[2], f[1].id, f[0].frequency_mhz, f[0].id)
         )
