@@ -104,6 +104,12 @@ class Grid:
         own_west_inside = (self.west_deg - west) % 360.0 <= east - west + slack
         return its_west_inside or own_west_inside
 
+    def holds(self, south: float, west: float, north: float, east: float) -> bool:
+        """Whether another box lies wholly in the bounding box [deg]."""
+        if south < self.south_deg or north > self.north_deg:
+            return False
+        return (west - self.west_deg) % 360.0 + (east - west) <= self.east_deg - self.west_deg
+
     @property
     def _slack_deg(self) -> float:
         """Rounding of positions; for curved edges also what bulges out between the places looked at."""
