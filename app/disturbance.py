@@ -15,6 +15,7 @@ from typing import Literal
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
+from scipy.sparse import csr_array
 
 from app import network
 from app.assumptions import Assumptions
@@ -25,7 +26,7 @@ from app.fields import EmissionField
 from app.interference import Pairs, degradation_db, nuisance_power, pairs_between
 from app.interferers import Interferer, spectra_of
 from app.link_budget import Reception, Signals, receive
-from app.rejection import rejection_db
+from app.rejection import curve_of, rejection_db
 from app.systems import mode_of
 
 FloatArray = NDArray[np.float64]
@@ -55,6 +56,7 @@ class Company:
 
     interferers: tuple[Interferer, ...]  # (i,) the wanted emissions first, in their order
     pairs: Pairs
+    weights: dict[State, csr_array]  # (e, i) factor by which each interferer's power counts
     networks: tuple[Network, ...]
     acting: NDArray[np.bool_]  # (e,) False for all but the first member of a network: they act as one
     cautions: tuple[str, ...]
@@ -94,9 +96,11 @@ def company_of(wanted: Sequence[EmissionField], interferers: Sequence[Interferer
     )
     kept = (together[i] != together[e]) & ~same_place & ~np.isin(i, sorted(twice))
     acting = together[: len(wanted)] == np.arange(len(wanted))
+    pairs = _only(pairs, kept)
     return Company(
         tuple(interferers),
-        _only(pairs, kept),
+        pairs,
+        {"a": pairs.weights(tropospheric=False), "b": pairs.weights(tropospheric=True)},
         tuple(networks),
         acting,
         tuple(cautions),
@@ -114,19 +118,47 @@ class Ear:
     assumptions: Assumptions
     company: Company
     on_axis_dbuv: dict[State, FloatArray]  # (i,) at the first outlet
+    kinds: _Kinds
 
-    def powers(self, pointing_deg: ArrayLike, state: State) -> FloatArray:
-        """Power of each interferer at the first outlet, (…, i), relative to 1 µV across 75 ohms."""
-        bearing = np.array([one.bearing_deg for one in self.company.interferers])
+    def left(self, pointing_deg: ArrayLike) -> FloatArray:
+        """Share of each interferer's power that the aerial lets in, (…, i), linear."""
         rejected = rejection_db(
             self.chain.aerial,
-            np.array([one.emission.frequency_mhz for one in self.company.interferers]),
-            response.off_axis_deg(bearing, pointing_deg),
+            self.kinds.frequency_mhz,
+            response.off_axis_deg(self.kinds.bearing_deg, pointing_deg),
             self.polarisation,
-            [one.emission.polarisation for one in self.company.interferers],
+            self.kinds.polarisation,
             self.assumptions,
         )
-        return np.asarray(10 ** ((self.on_axis_dbuv[state] - rejected) / 10))
+        return np.asarray((10 ** (-rejected / 10))[..., self.kinds.of])
+
+
+@dataclass(frozen=True, slots=True)
+class _Kinds:
+    """Interferers that an aerial cannot tell apart: one direction, band and polarisation."""
+
+    bearing_deg: FloatArray  # (k,)
+    frequency_mhz: FloatArray  # (k,)
+    polarisation: tuple[str, ...]  # (k,)
+    of: NDArray[np.intp]  # (i,) kind of each interferer
+
+
+def _kinds(interferers: Sequence[Interferer]) -> _Kinds:
+    places: dict[tuple[float, int, str], int] = {}
+    first, of = [], []
+    for i, one in enumerate(interferers):
+        key = (one.bearing_deg, curve_of(one.emission.frequency_mhz), one.emission.polarisation)
+        if key not in places:
+            places[key] = len(places)
+            first.append(i)
+        of.append(places[key])
+    ones = [interferers[i] for i in first]
+    return _Kinds(
+        np.array([one.bearing_deg for one in ones]),
+        np.array([one.emission.frequency_mhz for one in ones]),
+        tuple(one.emission.polarisation for one in ones),
+        np.array(of, dtype=np.intp),
+    )
 
 
 def ear_of(chain: Chain, polarisation: str, company: Company, assumptions: Assumptions, surroundings: str) -> Ear:
@@ -144,7 +176,7 @@ def ear_of(chain: Chain, polarisation: str, company: Company, assumptions: Assum
     field = np.array([one.field_dbuv_m for one in ones])
     level = receive(chain, signals, field, 0.0, polarisation, assumptions, surroundings).outlets[0].level_dbuv
     risen = level + np.array([one.enhancement_db for one in ones])
-    return Ear(chain, polarisation, assumptions, company, {"a": level, "b": risen})
+    return Ear(chain, polarisation, assumptions, company, {"a": level, "b": risen}, _kinds(ones))
 
 
 @dataclass(frozen=True, slots=True)
@@ -166,35 +198,36 @@ class Effect:
         """Interference over noise at the deciding outlet, (…, e), linear."""
         return np.asarray(self.i_over_c * 10 ** (self.cn_db / 10))
 
-    def contributions(self, company: Company, e: int) -> list[tuple[int, float]]:
-        """Interferers of one wanted emission with their power over its carrier (linear), strongest first."""
-        weights = company.pairs.weights(tropospheric=self.state == "b")
+    def contributions(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
+        """Interferers of one wanted emission and their power over its carrier (linear), strongest first. (k,)"""
+        weights = company.weights[self.state]
         row = slice(weights.indptr[e], weights.indptr[e + 1])
-        found = list(zip(weights.indices[row].tolist(), weights.data[row].tolist(), strict=True))
-        powers = [(i, weight * float(self.powers[i])) for i, weight in found]
+        who = weights.indices[row]
+        power = weights.data[row] * self.powers[who]
         mine = company.network_of(e)
         if mine is not None:
-            powers += [(int(m), float(self.stray[m])) for m in mine.members if self.stray[m] > 0]
-        carrier = float(self.carrier[e])
-        return sorted(((i, power / carrier) for i, power in powers if power > 0), key=lambda one: -one[1])
+            who, power = np.append(who, mine.members), np.append(power, self.stray[mine.members])
+        order = np.argsort(-power)
+        order = order[power[order] > 0]
+        return who[order], power[order] / self.carrier[e]
 
     def strongest(self, company: Company, e: int) -> tuple[int | None, float | None]:
         """Row of the strongest interferer and how far below it the next one stands [dB]; None: there is none."""
-        ranked = self.contributions(company, e)
-        if not ranked:
+        who, over_c = self.contributions(company, e)
+        if not who.size:
             return None, None
-        return ranked[0][0], float(10 * np.log10(ranked[0][1] / ranked[1][1])) if len(ranked) > 1 else None
+        return int(who[0]), float(10 * np.log10(over_c[0] / over_c[1])) if who.size > 1 else None
 
 
-def effect_of(ear: Ear, reception: Reception, pointing_deg: ArrayLike, state: State) -> Effect:
+def effect_of(ear: Ear, reception: Reception, left: FloatArray, state: State) -> Effect:
     """Interference, self-interference and network gain for every wanted emission.
 
-    `reception` holds the wanted emissions at the same pointing, in the same state.
+    `reception` holds the wanted emissions in the same state, `left` is `Ear.left`, both at the same pointing.
     """
     company = ear.company
     own = 10 ** (reception.outlets[0].level_dbuv / 10)
-    powers = ear.powers(pointing_deg, state)
-    disturbing = nuisance_power(powers, company.pairs.weights(tropospheric=state == "b"))
+    powers = left * 10 ** (ear.on_axis_dbuv[state] / 10)
+    disturbing = nuisance_power(powers, company.weights[state])
     disturbing = np.broadcast_to(disturbing, own.shape).copy()
     carrier, rise, useful = own.copy(), np.zeros(own.shape), np.ones(own.shape)
     stray = np.zeros(own.shape)

@@ -30,6 +30,7 @@ from app.interference import degradation_db, nuisance_power
 FloatArray = NDArray[np.float64]
 
 STRONGEST = 3  # interferers with keys of their own for each wanted emission; the others share one
+NAMED_FROM_DB = 0.3  # those that move a margin by less share it too
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +84,9 @@ def slope_and_spread(ear: Ear, effect: Effect, spread_db: FloatArray) -> tuple[F
 
     `spread_db` (…, i) is that of each interferer.
     """
-    weights = ear.company.pairs.weights(tropospheric=effect.state == "b")
+    if not ear.company.pairs.disturber.size:
+        return np.zeros(effect.i_over_c.shape), np.zeros(effect.i_over_c.shape)
+    weights = ear.company.weights[effect.state]
     squares = weights.copy()
     squares.data = squares.data**2
     moving = nuisance_power((effect.powers * spread_db) ** 2, squares)
@@ -125,7 +128,7 @@ def moved_by(
         effect, spread = effects[state], disturbers.spread_db(state, rejection)
         slope, _ = slope_and_spread(ear, effect, spread)
         alike = 1 / (1 + effect.i_over_n)
-        weights = company.pairs.weights(tropospheric=state == "b")
+        weights = company.weights[state]
         for e in np.flatnonzero(state_b == (state == "b")):
             common[e] = alike[e]
             row = slice(weights.indptr[e], weights.indptr[e + 1])
@@ -134,14 +137,15 @@ def moved_by(
                 continue
             share = slope[e] * weights.data[row] * effect.powers[who] / (effect.i_over_c[e] * effect.carrier[e])
             order = np.argsort(-share * spread[who])
-            for place, k in enumerate(order[:STRONGEST].tolist()):
+            named = [k for k in order[:STRONGEST].tolist() if share[k] * spread[who[k]] >= NAMED_FROM_DB]
+            for place, k in enumerate(named):
                 i, moves = int(who[k]), float(share[k])
                 same_mast = disturbers.masts[i] == disturbers.masts[leader[e]]
                 if same_mast:
                     path_off[e] += moves * disturbers.path_db[i]
                     band_off[e] += moves * disturbers.band_db
                 ranks[place].put(int(e), i, moves, disturbers, float(rejection[i]), state, same_mast)
-            left = order[STRONGEST:]
+            left = order[len(named) :]
             rest[e] = float(np.sqrt(np.sum((share[left] * spread[who[left]]) ** 2)))
     ids = disturbers.ids
     parts = [part for rank in ranks for part in rank.parts(ear.chain.aerial.id, disturbers)]

@@ -41,7 +41,7 @@ class Spectra:
 
 @dataclass(frozen=True, slots=True)
 class Pairs:
-    """Which emission disturbs which: one entry per pair that does. All arrays (k,)."""
+    """Which emission disturbs which: one entry per pair that does, by rising wanted one. All arrays (k,)."""
 
     disturber: NDArray[np.intp]
     wanted: NDArray[np.intp]
@@ -55,9 +55,10 @@ class Pairs:
         ratio_db = self.tropospheric_db if tropospheric else self.steady_db
         return csr_array((10 ** (ratio_db / 10), (self.wanted, self.disturber)), shape=self.shape[::-1], dtype=float)
 
-    def of_wanted(self, e: int) -> NDArray[np.intp]:
+    def of_wanted(self, e: int) -> range:
         """Return the entries that disturb one wanted emission."""
-        return np.flatnonzero(self.wanted == e)
+        first, end = np.searchsorted(self.wanted, [e, e + 1])
+        return range(int(first), int(end))
 
 
 @dataclass(frozen=True, slots=True)
@@ -118,7 +119,8 @@ def pairs_between(wanted: Spectra, required_cn_db: FloatArray, disturbers: Spect
     overlaps = share_db > relative[0]
     rule[overlaps] = SPECTRAL
     both = [np.maximum(values, share_db) for values in relative]
-    kept = np.isfinite(both[0])
+    kept = np.flatnonzero(np.isfinite(both[0]))
+    kept = kept[np.argsort(e[kept], kind="stable")]
     return Pairs(
         i[kept], e[kept], both[0][kept], both[1][kept], tuple(rule[kept]), (len(disturbers.system), len(wanted.system))
     )

@@ -11,6 +11,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -108,11 +109,16 @@ def spectra_of(emissions: Sequence[Emission]) -> Spectra:
 
 
 def _occupied_mhz(emission: Emission) -> float:
+    return _width_mhz(emission.system, emission.mode, emission.bandwidth_mhz)
+
+
+@cache
+def _width_mhz(system: str, mode: str, channel_mhz: float) -> float:
     try:
-        width = mode_of(emission.system, emission.mode).noise_bandwidth_mhz(emission.bandwidth_mhz)
+        width = mode_of(system, mode).noise_bandwidth_mhz(channel_mhz)
     except ModeError:
-        return emission.bandwidth_mhz
-    return occupied_mhz(emission.system, emission.bandwidth_mhz, width)
+        return channel_mhz
+    return occupied_mhz(system, channel_mhz, width)
 
 
 def _of_field(field: EmissionField) -> Interferer:

@@ -30,28 +30,38 @@ def ledger(
 ) -> list[dict[str, Any]]:
     """Steps of one emission to one outlet, the state that decides last; each state ends with its margin."""
     rows: list[dict[str, Any]] = []
-    for state in sorted(STATES, key=lambda one: one == turned.state(e)):
+    behind: list[Step] = []
+    states = sorted(STATES, key=lambda one: one == turned.state(e))
+    for state in states:
         faded_db = field.fade_db if state == "a" else 0.0
         before = _to_the_field(field, request.availability_percent, faded_db, state)
-        steps = ledger_steps(
-            turned.chain,
-            air.signals,
-            e,
-            field.used_dbuv_m - faded_db,
-            turned.pointing_deg,
-            turned.polarisation,
-            assumptions,
-            request.roof.surroundings,
-            outlet,
-        )[1:]  # the first is the field, which the steps before end with
+        if not behind or not _alike(turned, e, field.fade_db):
+            behind = ledger_steps(
+                turned.chain,
+                air.signals,
+                e,
+                field.used_dbuv_m - faded_db,
+                turned.pointing_deg,
+                turned.polarisation,
+                assumptions,
+                request.roof.surroundings,
+                outlet,
+            )[1:]  # the first is the field, which the steps before end with
         reception = turned.raised if state == "b" else turned.faded
         place = [one.name for one in reception.outlets].index(outlet)
-        at = next(k for k, step in enumerate(steps) if step.step == NEEDED)
-        change_db = float(reception.outlets[place].cn_db[e]) - steps[at - 1].total
-        lines = [(step.step, step.value_db, step.source) for step in steps]
+        at = next(k for k, step in enumerate(behind) if step.step == NEEDED)
+        cn_db = before[-1].total + sum(step.value_db for step in behind[:at])
+        change_db = float(reception.outlets[place].cn_db[e]) - cn_db
+        lines = [(step.step, step.value_db, step.source) for step in behind]
         lines[at:at] = _company_lines(turned.effects[state], air.company, e, state, change_db)
         rows += [_row(step, state) for step in (*before, *_summed(lines, before[-1].total))]
     return rows
+
+
+def _alike(turned: Turned, e: int, fade_db: float) -> bool:
+    """Whether everything behind the field does the same in both states: C/N differs by the fade alone."""
+    alone = {state: effect.cn_db[e] - effect.gain_db[e] for state, effect in turned.effects.items()}
+    return bool(abs(alone["b"] - alone["a"] - fade_db) < 1e-9)
 
 
 def _row(step: Step, state: State) -> dict[str, Any]:
@@ -124,14 +134,16 @@ def _company_lines(
             )
         )
     lost_db = change_db - float(effect.gain_db[e])
-    ranked = effect.contributions(company, e)
-    if ranked:
-        together = sum(power for _, power in ranked)
-        shares = [(i, power / together) for i, power in ranked[:NAMED]]
-        lines += [(_named(company, i), lost_db * share, _rule(company, i, e, state)) for i, share in shares]
-        rest = 1 - sum(share for _, share in shares)
-        if len(ranked) > NAMED:
-            lines.append((f"{len(ranked) - NAMED} weaker interferers", lost_db * rest, "the same rules"))
+    who, over_c = effect.contributions(company, e)
+    if who.size:
+        shares = over_c / over_c.sum()
+        lines += [
+            (_named(company, i), lost_db * share, _rule(company, i, e, state))
+            for i, share in zip(who[:NAMED].tolist(), shares.tolist(), strict=False)
+        ]
+        if who.size > NAMED:
+            rest_db = lost_db * float(shares[NAMED:].sum())
+            lines.append((f"{who.size - NAMED} weaker interferers", rest_db, "the same rules"))
     if effect.rise_db[e]:
         lines.append(
             (

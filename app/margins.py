@@ -157,12 +157,13 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
         receive(chain, air.signals, field, pointing_deg, polarisation, assumptions, roof.surroundings)
         for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
     )
+    left = ear.left(pointing_deg)
     effects: dict[State, Effect] = {
-        "a": effect_of(ear, alone_faded, pointing_deg, "a"),
-        "b": effect_of(ear, alone, pointing_deg, "b"),
+        "a": effect_of(ear, alone_faded, left, "a"),
+        "b": effect_of(ear, alone, left, "b"),
     }
     faded, raised = disturbed(alone_faded, effects["a"]), disturbed(alone, effects["b"])
-    median = disturbed(alone, effect_of(ear, alone, pointing_deg, "a"))
+    median = disturbed(alone, effect_of(ear, alone, left, "a"))
     state_b = raised.margin_db < faded.margin_db
     moved = moved_by(ear, effects, state_b, _disturbers(air, assumptions), pointing_deg)
     cells = Cells(
@@ -219,12 +220,12 @@ def _sweep(
     turned = BEARINGS[:, None]
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     disturbers = _disturbers(air, assumptions)
-    rejection = rejection_sd_db(ear, turned)
+    rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
     margin, moved = np.full((len(BEARINGS), len(air.fields)), np.inf), np.zeros((len(BEARINGS), len(air.fields)))
     fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
     for state, field in fields:
         alone = receive(chain, air.signals, field, turned, polarisation, assumptions, roof.surroundings)
-        effect = effect_of(ear, alone, turned, state)
+        effect = effect_of(ear, alone, left, state)
         reception = disturbed(alone, effect)
         slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
         moved = np.where(reception.margin_db < margin, slope * spread, moved)

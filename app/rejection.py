@@ -30,6 +30,11 @@ def bt419_db(frequency_mhz: ArrayLike, off_axis_deg: ArrayLike) -> FloatArray:
     return np.asarray(floor_db * np.clip(share, 0, 1))
 
 
+def curve_of(frequency_mhz: float) -> int:
+    """Row of the curve for a frequency [MHz]."""
+    return int(np.searchsorted(_corners()[:, 0], frequency_mhz, side="right"))
+
+
 def rejection_db(
     aerial: Aerial,
     frequency_mhz: FloatArray,
