@@ -1,39 +1,40 @@
-"""Rec. ITU-R BT.419-3, Fig. 1: discrimination of household aerials against interferers."""
+"""Directivity that planning counts on, Rec. ITU-R BT.419-3."""
 
 import numpy as np
 import pytest
 
-from app.assumptions import Assumptions
-from app.chain.catalogue import demo_chains
-from app.rejection import bt419_db, rejection_db
-
-LOFT, SHORT = demo_chains()[0].aerial, demo_chains()[1].aerial
+from app.chain.bt419 import bt419_rejection_db, planning_curve
+from propagation.errors import RangeError
 
 
-def test_bands_iv_and_v_match_the_corners_of_the_figure():
-    """Flat to 20°, -0.4 dB a degree to 16 dB at 60°; two public implementations of the curve agree (second-hand)."""
-    expected = {0: 0, 20: 0, 30: 4, 40: 8, 60: 16, 90: 16, 180: 16}
-    assert bt419_db(650.0, list(expected)) == pytest.approx(list(expected.values()), abs=1e-9)
+@pytest.mark.parametrize(
+    ("angle_deg", "rejection_db"), [(0, 0), (20, 0), (30, 4), (40, 8), (60, 16), (90, 16), (180, 16)]
+)
+@pytest.mark.parametrize("frequency_mhz", [474, 690])
+def test_bands_iv_and_v(frequency_mhz, angle_deg, rejection_db):
+    """Corners at 20 and 60 degrees; two public implementations agree (S2)."""
+    assert bt419_rejection_db(frequency_mhz, angle_deg) == pytest.approx(rejection_db, abs=1e-9)
+    assert bt419_rejection_db(frequency_mhz, -angle_deg) == pytest.approx(rejection_db, abs=1e-9)
+    assert bt419_rejection_db(frequency_mhz, 360 - angle_deg) == pytest.approx(rejection_db, abs=1e-9)
+    assert planning_curve(frequency_mhz).flag == "S2"
 
 
-@pytest.mark.parametrize(("frequency_mhz", "off_axis_deg", "expected_db"), [(200, 45, 6.55), (55, 60, 3.0)])
-def test_consistency_bands_i_and_iii(frequency_mhz, off_axis_deg, expected_db):
-    """Bands I and III of the figure from memory, medium confidence: a consistency check only."""
-    assert float(bt419_db(frequency_mhz, off_axis_deg)) == pytest.approx(expected_db, abs=0.01)
+@pytest.mark.parametrize(
+    ("frequency_mhz", "angle_deg", "rejection_db"),
+    [(200, 27, 0), (200, 45, 6.545), (200, 60, 12), (60, 50, 0), (60, 60, 3), (60, 70, 6), (98, 45, 6.545)],
+)
+def test_consistency_with_bands_one_to_three_as_recalled(frequency_mhz, angle_deg, rejection_db):
+    """Rec. ITU-R BT.419-3 and BS.599, from memory with medium confidence (MM)."""
+    assert bt419_rejection_db(frequency_mhz, angle_deg) == pytest.approx(rejection_db, abs=5e-4)
 
 
-def test_cross_polar_rejection_does_not_add_to_the_pattern():
-    """BT.419-3, Note 3 (from memory, high confidence): 16 dB at all azimuths, together with directivity."""
-    off = np.array([0.0, 30.0, 180.0])
-    crossed = rejection_db(SHORT, np.full(3, 650.0), off, "horizontal", ["vertical"] * 3, Assumptions())
-    own = rejection_db(SHORT, np.full(3, 650.0), off, "horizontal", ["horizontal"] * 3, Assumptions())
-    assert crossed == pytest.approx(np.maximum(own, 16.0))
+def test_other_polarisation_is_16_db_all_round():
+    """BT.419-3, Note 3 (MH): not added to directivity, the larger of both holds."""
+    angles = np.arange(0, 181, 5)
+    assert (bt419_rejection_db(600, angles, True) == 16).all()
+    assert bt419_rejection_db(np.array([600.0, 600]), 10, [False, True]).tolist() == [0, 16]
 
 
-def test_no_aerial_rejects_more_than_its_own_ratio_front_to_back_and_a_dipole_keeps_its_eight():
-    back = rejection_db(SHORT, np.array([650.0]), np.array([180.0]), "horizontal", ["horizontal"], Assumptions())
-    assert float(back[0]) == pytest.approx(SHORT.front_to_back_db)
-    both_ways = rejection_db(
-        LOFT, np.full(2, 650.0), np.array([0.0, 180.0]), "horizontal", ["horizontal"] * 2, Assumptions()
-    )
-    assert both_ways == pytest.approx([0, 0], abs=1e-9)
+def test_outside_the_bands_is_told():
+    with pytest.raises(RangeError, match=r"1800 MHz is outside Rec\. ITU-R BT\.419: use 41 to 1000 MHz"):
+        bt419_rejection_db([600, 1800], 0)
