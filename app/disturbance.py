@@ -26,7 +26,7 @@ from app.fields import EmissionField
 from app.interference import Pairs, degradation_db, nuisance_power, pairs_between
 from app.interferers import Interferer, spectra_of
 from app.link_budget import Reception, Signals, receive
-from app.rejection import curve_of, rejection_db
+from app.rejection import band_of, rejection_db
 from app.systems import mode_of
 
 FloatArray = NDArray[np.float64]
@@ -144,10 +144,10 @@ class _Kinds:
 
 
 def _kinds(interferers: Sequence[Interferer]) -> _Kinds:
-    places: dict[tuple[float, int, str], int] = {}
+    places: dict[tuple[float, str, str], int] = {}
     first, of = [], []
     for i, one in enumerate(interferers):
-        key = (one.bearing_deg, curve_of(one.emission.frequency_mhz), one.emission.polarisation)
+        key = (one.bearing_deg, band_of(one.emission.frequency_mhz), one.emission.polarisation)
         if key not in places:
             places[key] = len(places)
             first.append(i)

@@ -68,9 +68,7 @@ def main() -> None:
     far = [field(k, 200.0, float(rng.uniform(-10, 35)), rng) for k in range(300, 2300)]
     roof, assumptions = Roof(44.3, -37.45), Assumptions()
     names = [one.emission.multiplex_id for one in wanted]
-    spread = [
-        replace(one, emission=replace(one.emission, frequency_mhz=100.0 + 50 * k)) for k, one in enumerate(wanted)
-    ]
+    spread = [replace(one, emission=replace(one.emission, frequency_mhz=50.0 + 3 * k)) for k, one in enumerate(wanted)]
     for told, ones, others in (
         ("alone", spread, []),
         ("300 among themselves", wanted, []),
