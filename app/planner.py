@@ -12,7 +12,7 @@ from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
 from app.errors import RequestError
 from app.fields import fields_at
-from app.interferers import SEA_REACH_KM, interferers_at
+from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
 from app.request import NOTHING, AssessRequest
 from app.site import site_of
@@ -35,7 +35,7 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     on_the_air = store.emissions_within(
         request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
     )
-    found = [row for row in on_the_air if row[2] <= request.reach_km]
+    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
     fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent, request.method)
     air = air_of(
         fields,
