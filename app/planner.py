@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 from app.answer import answer_document
@@ -21,7 +22,13 @@ from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multi
 from terrain.mosaic import Ground
 
 
-def assess(request: AssessRequest, store: Store, ground: Ground, today: date | None = None) -> dict[str, Any]:
+def assess(
+    request: AssessRequest,
+    store: Store,
+    ground: Ground,
+    today: date | None = None,
+    refractivity_maps: Path | None = None,
+) -> dict[str, Any]:
     """Answer one request with the document of the interface, the same for API and command line.
 
     Raises
@@ -36,11 +43,20 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
         request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
     )
     found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
-    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent, request.method)
+    fields = fields_at(
+        request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
+    )
     air = air_of(
         fields,
         interferers_at(
-            request.roof, fields, on_the_air, ground, assumptions, request.availability_percent, request.method
+            request.roof,
+            fields,
+            on_the_air,
+            ground,
+            assumptions,
+            request.availability_percent,
+            request.method,
+            refractivity_maps,
         ),
     )
     multiplexes = sorted(set(air.multiplex_of))
