@@ -91,18 +91,14 @@ def _listener(host: str, port: int) -> socket.socket:
     if not 0 <= port <= 65535:
         raise RequestError(f"port {port} is not possible: use 0 to 65535", field="port", allowed="0 to 65535")
     try:
-        family, kind, proto, _, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
-        listener = socket.socket(family, kind, proto)
-        listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-        listener.bind(address)
-        listener.listen(128)
+        family, *_, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
+        return socket.create_server(address, family=family, backlog=128)
     except OSError as error:
         raise RequestError(
             f"cannot listen on {host} port {port} ({error.strerror or error}): "
             "use another one with --port, or --port 0 for a free one",
             field="port",
         ) from error
-    return listener
 
 
 @main.command()

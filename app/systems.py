@@ -132,9 +132,9 @@ def _source(row: dict[str, str], system: dict[str, str]) -> str:
 
 
 def _plain(text: str) -> str:
-    return re.sub(r"[^a-z0-9]", "", text.casefold())
+    return re.sub(r"[^a-z0-9+]", "", text.casefold().replace("plus", "+"))  # DAB+ is not DAB
 
 
 def _plain_mode(text: str) -> str:
     kept = re.sub(r"[^a-z0-9/]", "", text.casefold())
-    return re.sub(r"^(qam|vsb)(\d+?)(?=\d/\d|$)", r"\2\1", kept)
+    return re.sub(r"^(qam|vsb)(256|64|32|16|8|4)", r"\2\1", kept)

@@ -2,6 +2,7 @@
 
 TerrainError
 ├── CoverageError (LookupError)    no elevation at a place
+├── PathError (ValueError)         two places between which there is no path
 ├── RasterError (ValueError)       a raster that cannot be used as it is
 │   └── UnplacedRasterError        a raster without a coordinate system
 └── CacheError (OSError)           the cache folder cannot be used
@@ -14,6 +15,10 @@ class TerrainError(Exception):
 
 class CoverageError(TerrainError, LookupError):
     """No elevation at a place: says where and what to add."""
+
+
+class PathError(TerrainError, ValueError):
+    """Two places between which there is no path: out of range, or one and the same."""
 
 
 class RasterError(TerrainError, ValueError):

@@ -73,3 +73,10 @@ def demo_world(tmp_path_factory: pytest.TempPathFactory) -> Iterator[World]:
 @pytest.fixture(scope="session")
 def repository() -> Path:
     return Path(__file__).parent.parent
+
+
+@pytest.fixture(scope="session")
+def chromium_path() -> str:
+    path = chromium()
+    assert path is not None  # tests that ask for it are marked, and not run without
+    return path

@@ -61,9 +61,7 @@ def read_table(path: Path, known_columns: Collection[str]) -> Table:
     text, encoding = _text(path)
     lines = text.replace("\r\n", "\n").replace("\r", "\n").split("\n")
     numbered = [(number, line) for number, line in enumerate(lines, start=1) if line.strip(" \t,;")]
-    if numbered and re.fullmatch(
-        r"sep=.", numbered[0][1].strip(), re.IGNORECASE
-    ):  # a spreadsheet's own first line
+    if numbered and re.fullmatch(r"sep=.", numbered[0][1].strip(), re.IGNORECASE):  # a spreadsheet's own first line
         numbered = numbered[1:]
     if not numbered:
         raise TransmitterFileError(
@@ -97,8 +95,7 @@ def _text(path: Path) -> tuple[str, str]:
         size = path.stat().st_size
         if size > limit:
             raise TransmitterFileError(
-                f"{path.name} has {size / 1e6:.0f} MB, the limit is {LARGEST_FILE_MB} MB: "
-                "split it into several files"
+                f"{path.name} has {size / 1e6:.0f} MB, the limit is {LARGEST_FILE_MB} MB: split it into several files"
             )
         with path.open("rb") as file:
             data = file.read(limit + 1)

@@ -32,13 +32,10 @@ def one(connection: sqlite3.Connection, kind: Kind, key: str) -> Document:
     ).fetchall()
     if rows:
         return _document(rows[0])
-    names = [
-        row[0] for row in connection.execute("SELECT name FROM document WHERE kind = ? ORDER BY name", [kind])
-    ]
+    names = [row[0] for row in connection.execute("SELECT name FROM document WHERE kind = ? ORDER BY name", [kind])]
     known = ", ".join(f'"{name}"' for name in names[:12]) + (" …" if len(names) > 12 else "")
     raise NotStoredError(
-        f'there is no {kind} "{key}": '
-        + (f"stored are {known}" if names else f"no {kind} is stored yet, add one"),
+        f'there is no {kind} "{key}": ' + (f"stored are {known}" if names else f"no {kind} is stored yet, add one"),
         field=kind,
         allowed=known or None,
     )
@@ -59,9 +56,7 @@ def put(connection: sqlite3.Connection, kind: Kind, document: Mapping[str, Any])
         text = json.dumps(body, allow_nan=False, ensure_ascii=False)
         (text + key).encode()  # half a surrogate pair has no UTF-8
     except (TypeError, ValueError) as error:
-        raise RequestError(
-            f'{kind} "{name}" cannot be stored ({error}): use JSON with finite numbers'
-        ) from error
+        raise RequestError(f'{kind} "{name}" cannot be stored ({error}): use JSON with finite numbers') from error
     # Chains are asked for by name, so a name means one of them.
     taken = connection.execute(
         "SELECT 1 FROM document WHERE kind = ? AND kind = 'chain' AND id != ? AND (name = ? OR id = ?)",

@@ -135,9 +135,7 @@ def _tuned(cells: Cells) -> _Tuned | None:
             cells.note(column, error.message)
             return None
         if width is not None and width != raster_width:
-            cells.refuse(
-                "bandwidth_mhz", f"channels of {raster} have {raster_width:g} MHz: correct or empty it"
-            )
+            cells.refuse("bandwidth_mhz", f"channels of {raster} have {raster_width:g} MHz: correct or empty it")
             return None
         width = raster_width
         if frequency is None:

@@ -93,17 +93,13 @@ class Store:
             np.array([mast.latitude_deg for mast in masts]),
             np.array([mast.longitude_deg for mast in masts]),
         )
-        away = {
-            mast.id: (float(d), float(b)) for mast, d, b in zip(masts, distance_km, bearing_deg, strict=True)
-        }
+        away = {mast.id: (float(d), float(b)) for mast, d, b in zip(masts, distance_km, bearing_deg, strict=True)}
         found = [(emission_of(row[:16]), transmitters[row[16]], *away[row[16]]) for row in rows]
         return sorted(
             (f for f in found if f[2] <= reach_km), key=lambda f: (f[2], f[1].id, f[0].frequency_mhz, f[0].id)
         )
 
-    def nearest_transmitter(
-        self, latitude_deg: float, longitude_deg: float
-    ) -> tuple[Transmitter, float] | None:
+    def nearest_transmitter(self, latitude_deg: float, longitude_deg: float) -> tuple[Transmitter, float] | None:
         """Return the nearest mast that is on the air today and its distance [km]; None in an empty store."""
         for reach_km in (300, 1500, 21_000):
             found = self.emissions_within(latitude_deg, longitude_deg, reach_km)
@@ -114,9 +110,7 @@ class Store:
     def transmitters(self) -> list[Transmitter]:
         """Every transmitter in use, by id."""
         with self._database.transaction() as connection:
-            found = connection.execute(
-                f"SELECT {TRANSMITTER} FROM transmitter t WHERE {_SHOWN} ORDER BY t.id"
-            )
+            found = connection.execute(f"SELECT {TRANSMITTER} FROM transmitter t WHERE {_SHOWN} ORDER BY t.id")
             return [Transmitter(*row) for row in found]
 
     def emissions(self) -> list[Emission]:
@@ -131,17 +125,14 @@ class Store:
     def multiplexes(self) -> dict[str, Multiplex]:
         """Every multiplex in use, by id."""
         with self._database.transaction() as connection:
-            rows = connection.execute(
-                f"SELECT id, name FROM multiplex t WHERE {_SHOWN} ORDER BY id, source DESC"
-            )
+            rows = connection.execute(f"SELECT id, name FROM multiplex t WHERE {_SHOWN} ORDER BY id, source DESC")
             return {row[0]: Multiplex(*row) for row in rows}
 
     def sources(self) -> list[Source]:
         """Every source, the demo among them even where it is left out."""
         with self._database.transaction() as connection:
             rows = connection.execute(
-                "SELECT id, name, licence, attribution, rows_refused, rows_kept, imported_at "
-                "FROM source ORDER BY id"
+                "SELECT id, name, licence, attribution, rows_refused, rows_kept, imported_at FROM source ORDER BY id"
             )
             return [Source(*row) for row in rows]
 
@@ -232,9 +223,7 @@ class Store:
             documents.remove(connection, "chain", chain)
 
 
-def _boxes(
-    latitude_deg: float, longitude_deg: float, reach_km: float
-) -> list[tuple[float, float, float, float]]:
+def _boxes(latitude_deg: float, longitude_deg: float, reach_km: float) -> list[tuple[float, float, float, float]]:
     """South, north, west and east of one or two boxes round all that is in reach, a little too large."""
     if not (-90 <= latitude_deg <= 90 and -180 <= longitude_deg <= 180 and reach_km >= 0):
         raise RequestError(

@@ -111,8 +111,7 @@ class ImportSummary:
         lines = [
             f"{len(result.emissions)} of {result.rows_read} rows kept, {result.rows_refused} refused "
             f"(transmitters: {len(result.transmitters)}, multiplexes: {len(result.multiplexes)})",
-            f'source "{result.source}": {changes}'
-            + ("" if self.written else " (dry run: nothing was stored)"),
+            f'source "{result.source}": {changes}' + ("" if self.written else " (dry run: nothing was stored)"),
         ]
         if result.ignored_columns:
             lines.append(f"columns not used: {', '.join(result.ignored_columns)}")
@@ -169,8 +168,7 @@ def import_template(path: Path, store: Store, dry_run: bool = False) -> ImportSu
     told = "; ".join(str(refusal) for refusal in result.refused[:_EXAMPLES_SHOWN])
     if not result.emissions:
         raise TransmitterFileError(
-            f"{path.name} has no usable row ({result.rows_read} read): "
-            + (told or "add rows under the header")
+            f"{path.name} has no usable row ({result.rows_read} read): " + (told or "add rows under the header")
         )
     stored = any(source.id == result.source for source in store.sources())
     if stored and result.rows_refused > MOST_REFUSED_SHARE * result.rows_read:
@@ -180,9 +178,7 @@ def import_template(path: Path, store: Store, dry_run: bool = False) -> ImportSu
             f"nothing was changed ({told})"
         )
     source = Source(result.source, path.name, rows_refused=result.rows_refused)
-    changes = store.replace_source(
-        source, result.transmitters, result.emissions, result.multiplexes, dry_run=dry_run
-    )
+    changes = store.replace_source(source, result.transmitters, result.emissions, result.multiplexes, dry_run=dry_run)
     return ImportSummary(result, changes.added, changes.changed, changes.gone, written=not dry_run)
 
 
@@ -321,10 +317,7 @@ def _overlap(one: Emission, other: Emission) -> bool:
 
 def _with_ids(emissions: list[Emission], source: str) -> tuple[Emission, ...]:
     """Give each emission an id that a later import of the same rows gives again."""
-    plain = [
-        f"{e.transmitter_id}:{e.multiplex_id.removeprefix(source + ':')}:{e.frequency_mhz:g}"
-        for e in emissions
-    ]
+    plain = [f"{e.transmitter_id}:{e.multiplex_id.removeprefix(source + ':')}:{e.frequency_mhz:g}" for e in emissions]
     often = Counter(plain)
     return tuple(
         replace(e, id=key if often[key] == 1 else f"{key}:{e.valid_from}")

@@ -15,7 +15,7 @@ export class ApiError extends Error {
 }
 
 export const GONE =
-  'Gainworth does not answer. Nothing you typed is lost: start it again with “gainworth serve”, then press Work it out.';
+  'Gainworth does not answer. Nothing you typed is lost, and what is shown is its last answer: start it again with “gainworth serve”, then press Work it out.';
 
 /**
  * @param {string} path

@@ -92,7 +92,7 @@ function chance(cell) {
   made.querySelector('.figure').textContent = chanceText(cell.chance);
   made.querySelector('use').setAttribute('href', `#mark-${cell.grade}`);
   made.querySelector('.word').textContent = cell.grade;
-  const limit = cell.grade === 'secure' ? null : cell.held_back_by?.limit;
+  const limit = ['open', 'doubtful'].includes(cell.grade) ? cell.held_back_by?.limit : null;
   made.querySelector('.held').textContent = limit ? `held back by ${limit}` : '';
   return made;
 }

@@ -12,7 +12,7 @@
  * @typedef {object} MapAdapter
  * @property {(latitude: number, longitude: number) => {x: number, y: number}} project
  * @property {(x: number, y: number) => import('./state.js').Place} unproject
- * @property {(latitude: number, longitude: number, zoom?: number) => void} centre
+ * @property {(latitude: number, longitude: number) => void} centre
  * @property {(bounds: number[], padding: number) => void} fit   west, south, east, north
  * @property {(x: number, y: number) => void} pan
  * @property {(steps: number) => void} zoom
@@ -28,7 +28,6 @@ const SVG = 'http://www.w3.org/2000/svg';
 const SIDE = 42; // px between the map and the outer line, left and right; as in map.css
 const RIM = 30; // the same, above and below
 const STEP = 10; // px a press of an arrow key moves the crosshair
-const NEAR_ZOOM = 11;
 
 /** @param {string} file */
 function script(file) {
@@ -123,15 +122,16 @@ export function createMap(element, { place }) {
     const now = JSON.stringify([roof, far?.transmitter]);
     if (!adapter || !roof || now === shown) return;
     shown = now;
-    if (!far) {
-      adapter.centre(roof.latitude_deg, roof.longitude_deg, NEAR_ZOOM);
-      return;
-    }
-    const inside = [roof, far].every((end) => {
+    const ends = far ? [roof, far] : [roof];
+    const inside = ends.every((end) => {
       const point = adapter?.project(end.latitude_deg, end.longitude_deg) ?? { x: -1, y: -1 };
       return point.x > 12 && point.y > 12 && point.x < view.clientWidth - 12 && point.y < view.clientHeight - 12;
     });
     if (inside) return;
+    if (!far) {
+      adapter.centre(roof.latitude_deg, roof.longitude_deg);
+      return;
+    }
     adapter.fit([
       Math.min(roof.longitude_deg, far.longitude_deg), Math.min(roof.latitude_deg, far.latitude_deg),
       Math.max(roof.longitude_deg, far.longitude_deg), Math.max(roof.latitude_deg, far.latitude_deg),
@@ -228,7 +228,8 @@ export function createMap(element, { place }) {
     const ground = state.health?.ground;
     const names = [...new Set((ground?.rasters ?? []).map((raster) => raster.attribution).filter(Boolean))];
     const refused = (ground?.refused ?? []).map((one) => `${one.file}: ${one.message}`);
-    if (credit) credit.textContent = [names.length ? `Ground: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
+    const demo = state.health?.demo_roofs.length ? 'An invented island: no real place.' : '';
+    if (credit) credit.textContent = [demo, names.length ? `Ground: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
   }
 
   /** @param {KeyboardEvent} event */

@@ -32,7 +32,7 @@ export async function open(element, options) {
       const place = map.containerPointToLatLng([x, y]).wrap();
       return { latitude_deg: place.lat, longitude_deg: place.lng };
     },
-    centre: (lat, lon, zoom) => map.setView([lat, lon], zoom === undefined ? map.getZoom() : zoom, { animate: false }),
+    centre: (lat, lon) => map.setView([lat, lon], map.getZoom(), { animate: false }),
     fit: ([west, south, east, north], padding) =>
       map.fitBounds([[south, west], [north, east]], { padding: [padding, padding], animate: false, maxZoom: 12 }),
     pan: (x, y) => map.panBy([x, y], { animate: false }),

@@ -32,8 +32,7 @@ export async function open(element, options) {
   });
   map.touchZoomRotate.disableRotation();
   map.scrollZoom.disable();
-  map.getCanvas().tabIndex = -1;
-  map.getCanvas().setAttribute('role', 'presentation');
+  for (const name of ['tabindex', 'role', 'aria-label']) map.getCanvas().removeAttribute(name); // the view round it has them
   map.on('move', options.onMove);
   map.on('resize', options.onMove);
   map.on('idle', options.onIdle);
@@ -48,7 +47,7 @@ export async function open(element, options) {
       const place = map.unproject([x, y]).wrap();
       return { latitude_deg: place.lat, longitude_deg: place.lng };
     },
-    centre: (lat, lon, zoom) => map.jumpTo({ center: [lon, lat], ...(zoom === undefined ? {} : { zoom }) }),
+    centre: (lat, lon) => map.jumpTo({ center: [lon, lat] }),
     fit: ([west, south, east, north], padding) => map.fitBounds([[west, south], [east, north]], { padding, animate: false, maxZoom: 12 }),
     pan: (x, y) => map.panBy([x, y], { animate: false }),
     zoom: (steps) => map.jumpTo({ zoom: map.getZoom() + steps }),

@@ -2,7 +2,7 @@
 
 import { drawing, pointAt } from './drawing.js';
 import { shownCell } from './state.js';
-import { bearingText, distanceText, numberText } from './units.js';
+import { bearingText, distanceText, numberText, unbroken } from './units.js';
 
 const SVG = 'http://www.w3.org/2000/svg';
 
@@ -15,6 +15,7 @@ export function createPath(element) {
   const caption = /** @type {HTMLElement} */ (element.querySelector('figcaption'));
   const facts = /** @type {HTMLElement} */ (element.querySelector('.facts'));
   const text = /** @type {SVGElement} */ (element.querySelector('#drawing-text'));
+  const inside = /** @type {SVGElement} */ (element.querySelector('#drawing-inside rect'));
   const fixed = [...picture.children];
   /** @type {import('./state.js').State} */
   let state;
@@ -29,19 +30,18 @@ export function createPath(element) {
     const { emission, multiplex } = cell;
     const channel = emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`;
     title.textContent = `Why: ${multiplex.name} on ${channel} from ${emission.transmitter_name}`;
-    told.textContent = emission.path?.sentence ?? emission.reason ?? '';
+    told.textContent = unbroken(emission.path?.sentence ?? emission.reason ?? '');
     const path = state.path?.emission === emission.id ? state.path.document : null;
     figure.hidden = !path;
     if (path) draw(path, emission);
-    facts.replaceChildren(...factsOf(emission).flatMap(([name, value]) => [
-      Object.assign(document.createElement('div'), {}),
-    ].map((pair) => {
+    facts.replaceChildren(...factsOf(emission).map(([name, value]) => {
+      const pair = document.createElement('div');
       pair.append(
         Object.assign(document.createElement('dt'), { textContent: name }),
         Object.assign(document.createElement('dd'), { textContent: value }),
       );
       return pair;
-    })));
+    }));
   }
 
   /** @param {any} path @param {any} emission */
@@ -53,13 +53,16 @@ export function createPath(element) {
     const shapes = drawing(path.drawing, box);
     const { x, y } = shapes;
     picture.replaceChildren(...fixed);
+    for (const [key, value] of Object.entries({ x: box.left, y: 0, width: box.right - box.left, height: box.bottom })) {
+      inside.setAttribute(key, String(value));
+    }
     text.textContent = emission.path?.sentence ?? '';
     for (const height of shapes.heights) {
       add('path', { d: `M${box.left} ${y(height)}H${box.right}`, class: 'grid' });
       add('text', { x: box.left - 10, y: y(height) + 4, 'text-anchor': 'end', class: 'axis' }, numberText(height, 0));
     }
     add('path', { d: shapes.ground, class: 'ground' });
-    add('path', { d: shapes.taken, class: 'taken' });
+    add('path', { d: shapes.taken, class: 'taken', 'clip-path': 'url(#drawing-inside)' });
     add('path', { d: shapes.surface, class: 'ground-line' });
     for (const depth of [4, 8]) add('path', { d: shapes.water, class: 'water', transform: `translate(0 ${depth})` });
     add('path', { d: shapes.line, class: 'line' });

@@ -3,6 +3,8 @@
 import { NOTHING, titleOf, verdictOf } from './state.js';
 import { bearingText, numberText, rodsText } from './units.js';
 
+const SAME_MAST_DEG = 1;
+
 /** @param {HTMLElement} element */
 export function createRoofline(element) {
   const list = /** @type {HTMLElement} */ (element.querySelector('ol'));
@@ -16,7 +18,7 @@ export function createRoofline(element) {
     element.hidden = !pointing;
     if (!pointing) return;
     title.textContent = titleOf(state, name);
-    const level = levelToFind(state.answer, name);
+    const level = levelToFind(state.answer, name, pointing.pointing_deg);
     const rows = [
       [bearingText(pointing.pointing_deg), 'from true north'],
       [rodsText(pointing.polarisation), 'as seen from the ground'],
@@ -36,13 +38,17 @@ export function createRoofline(element) {
 }
 
 /**
- * The emission that is easiest to find with a meter, and the level it keeps on a bad night.
- * @param {any} answer @param {string} chain
+ * What a meter should find when the aerial is turned right: the surest emission from where it points, and
+ * the level it keeps on a bad night.
+ * @param {any} answer @param {string} chain @param {number} pointing degrees
  */
-function levelToFind(answer, chain) {
+function levelToFind(answer, chain, pointing) {
+  const away = (one) => Math.abs(((one.bearing_deg - pointing + 540) % 360) - 180);
   const heard = answer.emissions.filter((one) => one.chains[chain]);
-  if (heard.length === 0) return null;
-  const surest = heard.reduce((best, one) => (one.chains[chain].chance > best.chains[chain].chance ? one : best));
+  const least = Math.min(...heard.map(away));
+  const ahead = heard.filter((one) => away(one) <= least + SAME_MAST_DEG);
+  if (ahead.length === 0) return null;
+  const surest = ahead.reduce((best, one) => (one.chains[chain].chance > best.chains[chain].chance ? one : best));
   const outlet = surest.chains[chain].outlets.reduce((least, one) => (one.margin_db < least.margin_db ? one : least));
   const channel = surest.channel ? `channel ${surest.channel}` : `${surest.frequency_mhz} MHz`;
   return { dbuv: outlet.level_dbuv, outlet: outlet.name, channel };

@@ -65,6 +65,11 @@ export function distanceText(km) {
   return km < 10 ? `${km.toFixed(1)}\u00a0km` : `${Math.round(km)}\u00a0km`;
 }
 
+/** @param {string} text @returns {string} with no line break between a number and its unit */
+export function unbroken(text) {
+  return text.replace(/(\d) (?=(k?m|dB|MHz|%)(\W|$))/g, '$1\u00a0');
+}
+
 /** @param {string} polarisation @returns {string} how the rods of the aerial lie */
 export function rodsText(polarisation) {
   return { horizontal: 'rods flat', vertical: 'rods upright' }[polarisation] ?? 'rods either way';

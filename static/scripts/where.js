@@ -34,7 +34,7 @@ export function createWhere(element, { type, submit, choose }) {
     options(
       idea,
       [
-        ['', best ? `the best: ${titleOf(state, best.candidate)}` : 'the best of them'],
+        ['', best ? `best: ${titleOf(state, best.candidate)}` : 'the best there is'],
         ...titled.filter(([name]) => name !== state.now).map(([name, title]) => [name, answers.get(name) ? `${title}: ${answers.get(name)}` : title]),
       ],
       state.idea ?? '',

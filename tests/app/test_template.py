@@ -33,9 +33,7 @@ ROW = {
 def text_of(*changes, separator=",", columns=COLUMNS):
     """A file with one row per dictionary of changes to ROW."""
     file = io.StringIO()
-    writer = csv.DictWriter(
-        file, columns, delimiter=separator, restval="", extrasaction="ignore", lineterminator="\n"
-    )
+    writer = csv.DictWriter(file, columns, delimiter=separator, restval="", extrasaction="ignore", lineterminator="\n")
     writer.writeheader()
     for change in changes:
         writer.writerow(ROW | change)
@@ -161,9 +159,7 @@ def test_a_spreadsheets_sep_line_a_blank_line_and_empty_rows_are_passed_over(rea
 
 
 def test_columns_come_in_any_order_and_unknown_ones_are_named(read):
-    result = read(
-        text_of({"remark": "x"}, columns=(*reversed(COLUMNS), "remark")).replace("erp_kw", "ERP_kW")
-    )
+    result = read(text_of({"remark": "x"}, columns=(*reversed(COLUMNS), "remark")).replace("erp_kw", "ERP_kW"))
     assert len(result.emissions) == 1
     assert result.ignored_columns == ("remark",)
 
@@ -294,9 +290,7 @@ def test_a_far_position_that_no_slip_explains_is_kept(read):
 
 def test_swapped_positions_are_seen_across_the_date_line(read):
     result = read(
-        placed(
-            ("-16.5", "179.9"), ("-16.6", "-179.9"), ("-16.9", "179.5"), ("-17", "-179.5"), ("-16.5", "-0.1")
-        )
+        placed(("-16.5", "179.9"), ("-16.6", "-179.9"), ("-16.9", "179.5"), ("-17", "-179.5"), ("-16.5", "-0.1"))
     )
     assert result.refused == ()  # far off, but no slip: kept
     swapped = read(placed(("60", "20"), ("61", "21"), ("60.5", "22"), ("20", "60")))
@@ -307,9 +301,7 @@ def test_two_masts_are_no_neighbourhood(read):
     assert read(placed(("44", "-37"), ("-37", "44"))).refused == ()
 
 
-@pytest.mark.parametrize(
-    "change", [{}, {"multiplex": "Other"}, {"transmitter": "Mast Same"}, {"polarisation": "V"}]
-)
+@pytest.mark.parametrize("change", [{}, {"multiplex": "Other"}, {"transmitter": "Mast Same"}, {"polarisation": "V"}])
 def test_a_repetition_is_refused_with_the_line_of_the_first(read, change):
     refusal = only_refusal(read(text_of({}, change)))
     assert refusal.line == 3
@@ -431,10 +423,7 @@ def test_an_import_is_told_in_lines_and_as_json(tmp_path, store):
     assert lines[0] == "1 of 3 rows kept, 2 refused (transmitters: 1, multiplexes: 1)"
     assert lines[1] == 'source "mine": 1 added, 0 changed, 0 gone (dry run: nothing was stored)'
     assert lines[2] == "columns not used: remark"
-    assert (
-        lines[4]
-        == 'line 4: erp_kw is "x": write a number such as 100, or <=100 where only the limit is known'
-    )
+    assert lines[4] == 'line 4: erp_kw is "x": write a number such as 100, or <=100 where only the limit is known'
     document = json.loads(json.dumps(summary.document()))
     assert (document["rows_kept"], document["refused"][1]["column"], document["written"]) == (
         1,

@@ -1,0 +1,194 @@
+"""The samples of one raster, decoded block by block when they are first needed."""
+
+from __future__ import annotations
+
+import threading
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from terrain.cache import ArrayCache
+from terrain.raster import Raster
+from terrain.voids import BRIDGED_SAMPLES, bridge_small_voids, is_void, settle_declared_zeros
+from terrain.water import flat_zero_areas
+
+FloatArray = NDArray[np.float64]
+IndexArray = NDArray[np.intp]
+
+# Cells of this many samples across are kept as means; all divide a block's side.
+COARSE = (1, 4, 16, 64)
+
+# Enough that a void which may be bridged is seen whole from each block it reaches into.
+_MARGIN = BRIDGED_SAMPLES + 2
+
+
+class Blocks:
+    """Samples of a raster by row and column, in metres, NaN where missing.
+
+    A block holds its own rows and columns and the first of the next block, so that the four
+    corners of every cell lie in one block.
+    """
+
+    def __init__(self, raster: Raster, cache: ArrayCache) -> None:
+        self._raster = raster
+        self._cache = cache
+        self._lock = threading.Lock()
+        self._down = max(1, -(-(raster.grid.rows - 1) // raster.block_rows))
+        self._across = max(1, -(-(raster.grid.columns - 1) // raster.block_columns))
+
+    def cells(self, row: IndexArray, column: IndexArray, bridged: bool) -> FloatArray:
+        """Corners (4, n) of cells by their upper left samples: itself, right of it, below, both.
+
+        With `bridged`, small voids have values.
+        """
+        corners = np.empty((4, row.size))
+        for which, block, top, left in self._by_block(row, column):
+            samples = self._bridged(block) if bridged else self._samples(block)
+            r, c = row[which] - top, column[which] - left
+            corners[:, which] = self._metres(
+                np.stack([samples[r, c], samples[r, c + 1], samples[r + 1, c], samples[r + 1, c + 1]])
+            )
+        return corners
+
+    def samples(self, row: IndexArray, column: IndexArray, bridged: bool) -> FloatArray:
+        """Single samples (n,)."""
+        values = np.empty(row.size)
+        for which, block, top, left in self._by_block(row, column):
+            samples = self._bridged(block) if bridged else self._samples(block)
+            values[which] = self._metres(samples[row[which] - top, column[which] - left])
+        return values
+
+    def water(self, row: IndexArray, column: IndexArray) -> NDArray[np.bool_]:
+        """Which samples (n,) belong to a connected flat area at 0 m."""
+        wet = np.zeros(row.size, dtype=bool)
+        for which, block, top, left in self._by_block(row, column):
+            r, c = row[which] - top, column[which] - left
+            at_zero = self._metres(self._samples(block)[r, c]) == 0
+            if at_zero.any():
+                wet[which] = at_zero & self._water(block)[r, c]
+        return wet
+
+    def means(self, row: IndexArray, column: IndexArray, samples_across: float) -> FloatArray:
+        """Mean heights (n,) of the coarse cells that hold single samples.
+
+        The cells are the largest of COARSE that measure at most `samples_across` samples; missing
+        samples do not count.
+        """
+        level = max(number for number, factor in enumerate(COARSE) if factor <= max(1.0, samples_across))
+        values = np.empty(row.size)
+        for which, block, top, left in self._by_block(row, column):
+            coarse = self._means(block, level)
+            values[which] = coarse[(row[which] - top) // COARSE[level], (column[which] - left) // COARSE[level]]
+        return values
+
+    def void_share(self) -> float | None:
+        """Share of missing samples, 0 to 1, or None as long as the raster was never read whole."""
+        kept = self._cache.load(self._named("voids"))
+        return None if kept is None else float(kept)
+
+    def read_whole(self) -> float:
+        """Decode every block that is not decoded yet; returns the share of missing samples.
+
+        Raises RasterError where the file is damaged.
+        """
+        missing = 0
+        for down in range(self._down):
+            for across in range(self._across):
+                samples = self._samples((down, across))
+                own = samples[: None if down == self._down - 1 else -1, : None if across == self._across - 1 else -1]
+                missing += int(np.count_nonzero(is_void(own, self._raster.void)))
+        share = missing / (self._raster.grid.rows * self._raster.grid.columns)
+        self._cache.keep(self._named("voids"), np.array(share))
+        return share
+
+    def _by_block(
+        self, row: IndexArray, column: IndexArray
+    ) -> list[tuple[IndexArray | slice, tuple[int, int], int, int]]:
+        """Groups of indices in one block each: which, the block, its first row and column."""
+        if row.size == 0:
+            return []
+        if self._down * self._across == 1:
+            return [(slice(None), (0, 0), 0, 0)]
+        height, width = self._raster.block_rows, self._raster.block_columns
+        down = np.minimum(row // height, self._down - 1)
+        across = np.minimum(column // width, self._across - 1)
+        number = down * self._across + across
+        groups: list[tuple[IndexArray | slice, tuple[int, int], int, int]] = []
+        for block in np.unique(number):
+            d, a = divmod(int(block), self._across)
+            groups.append((np.nonzero(number == block)[0], (d, a), d * height, a * width))
+        return groups
+
+    def _metres(self, samples: NDArray[Any]) -> FloatArray:
+        heights: FloatArray = samples * float(self._raster.scale) + self._raster.offset_m
+        heights[is_void(samples, self._raster.void)] = np.nan
+        return heights
+
+    def _samples(self, block: tuple[int, int]) -> NDArray[Any]:
+        name = self._named("samples", block)
+        kept = self._cache.load(name)
+        if kept is not None:
+            return kept
+        with self._lock:
+            kept = self._cache.load(name)
+            return self._decode(block) if kept is None else kept
+
+    def _bridged(self, block: tuple[int, int]) -> NDArray[Any]:
+        samples = self._samples(block)
+        kept = self._cache.load(self._named("bridged", block))
+        return samples if kept is None else kept
+
+    def _means(self, block: tuple[int, int], level: int) -> NDArray[np.float32]:
+        if level == 0:
+            return self._metres(self._samples(block)).astype(np.float32)
+        name = self._named(f"means{COARSE[level]}", block)
+        kept = self._cache.load(name)
+        if kept is None:
+            kept = self._cache.keep(name, _fourfold_means(self._means(block, level - 1)))
+        return kept
+
+    def _water(self, block: tuple[int, int]) -> NDArray[np.bool_]:
+        name = self._named("water", block)
+        kept = self._cache.load(name)
+        if kept is None:
+            zero = self._metres(self._samples(block)) == 0
+            kept = self._cache.keep(name, flat_zero_areas(zero, self._raster.grid.spacing_m))
+        return kept
+
+    def _decode(self, block: tuple[int, int]) -> NDArray[Any]:
+        raster = self._raster
+        top, left = block[0] * raster.block_rows, block[1] * raster.block_columns
+        bottom = min(top + raster.block_rows + 1, raster.grid.rows)
+        right = min(left + raster.block_columns + 1, raster.grid.columns)
+        first_row, first_column = max(0, top - _MARGIN), max(0, left - _MARGIN)
+        wide = raster.read(
+            first_row,
+            first_column,
+            min(bottom + _MARGIN, raster.grid.rows) - first_row,
+            min(right + _MARGIN, raster.grid.columns) - first_column,
+        )
+        if raster.zero_declared_void:
+            wide = settle_declared_zeros(wide, raster.void, raster.scale)
+        own = np.s_[top - first_row : bottom - first_row, left - first_column : right - first_column]
+        bridged = bridge_small_voids(wide, raster.void)
+        if bridged is not wide:
+            # Before the samples: whoever finds those takes a missing bridge for "nothing to bridge".
+            self._cache.keep(self._named("bridged", block), np.ascontiguousarray(bridged[own]))
+        return self._cache.keep(self._named("samples", block), np.ascontiguousarray(wide[own]))
+
+    def _named(self, what: str, block: tuple[int, int] | None = None) -> str:
+        place = "" if block is None else f"-{block[0]}-{block[1]}"
+        return f"{self._raster.content}/{what}{place}"
+
+
+def _fourfold_means(heights: NDArray[np.float32]) -> NDArray[np.float32]:
+    """Means over 4 × 4 values each, of those that are not NaN; the last cells may be smaller."""
+    rows, columns = (-(-side // 4) for side in heights.shape)
+    padded = np.full((4 * rows, 4 * columns), np.nan, dtype=np.float32)
+    padded[: heights.shape[0], : heights.shape[1]] = heights
+    cells = padded.reshape(rows, 4, columns, 4)
+    known = np.isfinite(cells)
+    count = known.sum(axis=(1, 3))
+    total = np.where(known, cells, 0).sum(axis=(1, 3))
+    return np.where(count > 0, total / np.maximum(count, 1), np.nan).astype(np.float32)

@@ -1,0 +1,138 @@
+"""Where a raster's samples lie on Earth: positions to rows and columns, and back."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from affine import Affine
+from numpy.typing import NDArray
+from pyproj import CRS, Transformer
+
+from terrain.errors import RasterError
+from terrain.geodesy import distance_and_bearing
+
+FloatArray = NDArray[np.float64]
+
+_WGS84 = CRS.from_epsg(4326)
+
+
+@dataclass(frozen=True, slots=True)
+class Grid:
+    """Samples in rows and columns of one coordinate system; row 0, column 0 is the first sample.
+
+    Rows and columns are counted between sample *centres*: a point sample on a tile's edge and a
+    pixel's middle are both whole numbers. Rotated and south-up rasters are as good as any.
+    """
+
+    rows: int
+    columns: int
+    transform: Affine  # column, row of pixel corners -> x, y of the coordinate system
+    crs: CRS  # horizontal part only
+    to_crs: Transformer | None  # None where x, y are WGS 84 longitude and latitude as they are
+    turns_deg: float  # whole turns that a plain raster's own x stands above longitudes from -180
+    west_deg: float  # -180 to 180
+    south_deg: float
+    east_deg: float  # above 180 where the raster reaches over the 180th meridian
+    north_deg: float
+    spacing_m: float  # side of the square as large as one cell in the raster's middle
+
+    @classmethod
+    def place(cls, rows: int, columns: int, transform: Affine, crs: CRS) -> Grid:
+        """Grid of a raster of `rows` × `columns` pixels.
+
+        Raises RasterError where the numbers cannot be a place in that coordinate system.
+        """
+        horizontal = _horizontal(crs)
+        plain = horizontal.is_geographic and _is_wgs84(horizontal)
+        to_crs = None if plain else Transformer.from_crs(_WGS84, horizontal, always_xy=True)
+        bounds = _bounds(rows, columns, transform, to_crs)
+        west, south, east, north = bounds
+        if not (np.isfinite(bounds).all() and -90.01 <= south < north <= 90.01 and 0 < east - west <= 360.1):
+            raise RasterError(
+                f"its corner x = {transform.c:g}, y = {transform.f:g} is no place on Earth in {crs_text(crs)}"
+            )
+        turns = 360.0 * float(np.floor((west + 180) / 360))
+        grid = cls(
+            rows, columns, transform, horizontal, to_crs, turns, west - turns, south, east - turns, north, np.nan
+        )
+        corner = np.array([[-0.5, -0.5], [-0.5, 0.5], [0.5, -0.5]])
+        row, column = (np.array([rows - 1.0, columns - 1.0]) / 2 + corner).T
+        lat, lon = grid.position(row, column)
+        sides_km, _ = distance_and_bearing(lat[0], lon[0], lat[1:], lon[1:])
+        return replace(grid, spacing_m=1e3 * float(np.sqrt(sides_km.prod())))
+
+    def index(self, lat: FloatArray, lon: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Row and column (fractional) of positions [deg]; NaN or outside the raster where it does not reach."""
+        if self.to_crs is None:
+            # The unlit side of the Earth is shared between both edges, so that a point a little
+            # outside is a little outside on its own side.
+            start = self.west_deg - max(0.0, 360.0 - (self.east_deg - self.west_deg)) / 2
+            with np.errstate(invalid="ignore"):
+                x, y = start + (lon - start) % 360.0 + self.turns_deg, lat
+        else:
+            x, y = (np.asarray(value) for value in self.to_crs.transform(lon, lat))
+        with np.errstate(invalid="ignore"):
+            column, row = _apply(~self.transform, x, y)
+        return row - 0.5, column - 0.5
+
+    def position(self, row: FloatArray, column: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Latitude and longitude [deg] of rows and columns, fractional or outside the raster alike."""
+        x, y = _apply(self.transform, column + 0.5, row + 0.5)
+        if self.to_crs is not None:
+            x, y = self.to_crs.transform(x, y, direction="INVERSE")
+        lon = (np.asarray(x, dtype=float) + 180.0) % 360.0 - 180.0
+        return np.asarray(y, dtype=float), lon
+
+    def near(self, lat: FloatArray, lon: FloatArray) -> NDArray[np.bool_]:
+        """Whether positions lie in the bounding box; a few points too many, never one too few."""
+        east_of_west = (lon - self.west_deg + 1e-6) % 360.0
+        inside: NDArray[np.bool_] = (lat >= self.south_deg - 1e-6) & (lat <= self.north_deg + 1e-6)
+        inside &= east_of_west <= self.east_deg - self.west_deg + 2e-6
+        return inside
+
+    def meets(self, south: float, west: float, north: float, east: float) -> bool:
+        """Whether the bounding box shares ground with another one [deg], whose east is not below its west."""
+        if south > self.north_deg + 1e-6 or north < self.south_deg - 1e-6:
+            return False
+        its_west_inside = (west - self.west_deg) % 360.0 <= self.east_deg - self.west_deg + 1e-6
+        own_west_inside = (self.west_deg - west) % 360.0 <= east - west + 1e-6
+        return its_west_inside or own_west_inside
+
+
+def _apply(transform: Affine, across: FloatArray, down: FloatArray) -> tuple[FloatArray, FloatArray]:
+    t = transform
+    return t.a * across + t.b * down + t.c, t.d * across + t.e * down + t.f
+
+
+def crs_text(crs: CRS) -> str:
+    """Short name of a coordinate system: its EPSG code where it carries one, else its name."""
+    identity = crs.to_json_dict().get("id")
+    return f"{identity['authority']}:{identity['code']}" if identity else str(crs.name)
+
+
+def _horizontal(crs: CRS) -> CRS:
+    """The part that places a sample; a vertical part or a third axis says nothing of where it is."""
+    part = crs.sub_crs_list[0] if crs.is_compound else crs
+    return part.to_2d() if len(part.axis_info) > 2 else part
+
+
+def _is_wgs84(crs: CRS) -> bool:
+    """Longitude and latitude in degrees from Greenwich on WGS 84, as nearly all open tiles are."""
+    datum = crs.datum or (crs.source_crs.datum if crs.source_crs else None)
+    degrees = all(axis.unit_name == "degree" for axis in crs.axis_info)
+    greenwich = crs.prime_meridian is not None and crs.prime_meridian.longitude == 0
+    return degrees and greenwich and datum is not None and datum.name.startswith("World Geodetic System 1984")
+
+
+def _bounds(
+    rows: int, columns: int, transform: Affine, to_crs: Transformer | None
+) -> tuple[float, float, float, float]:
+    """West, south, east, north of the pixels' outer edges [deg]; east may exceed 180, never below west."""
+    across, down = np.array([0.0, columns, columns, 0.0]), np.array([0.0, 0.0, rows, rows])
+    corner_x, corner_y = _apply(transform, across, down)
+    box = (corner_x.min(), corner_y.min(), corner_x.max(), corner_y.max())
+    if to_crs is None:
+        return float(box[0]), float(box[1]), float(box[2]), float(box[3])
+    west, south, east, north = to_crs.transform_bounds(*box, densify_pts=41, direction="INVERSE")
+    return west, south, east + 360.0 * (east < west), north

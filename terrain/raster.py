@@ -1,0 +1,344 @@
+"""Opens one elevation raster of any kind. Only this module touches raster files.
+
+GeoTIFF in any coordinate system and number type, .hgt (plain, zipped, gzipped), ESRI ASCII grids.
+What a file does not say of itself stands in a sidecar `NAME.gainworth.toml` beside it.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import threading
+import tomllib
+import warnings
+import zipfile
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import rasterio
+from affine import Affine
+from numpy.typing import NDArray
+from pyproj import CRS
+from pyproj.exceptions import CRSError
+from rasterio.windows import Window
+
+from terrain.ascii_grid import check_ascii_grid
+from terrain.errors import RasterError, UnplacedRasterError
+from terrain.grid import Grid, crs_text
+
+KINDS = ("surface", "radar-surface", "bare")
+SUFFIXES = (".tif", ".tiff", ".hgt", ".asc", ".zip", ".hgt.gz")
+
+# Samples along each side of a block: whole tiles of 1 arc-second, and 32 MB of 16-bit samples.
+# A multiple of the largest coarse cell (blocks.py).
+BLOCK_SIDE = 4096
+
+_UNREADABLE = (
+    "is no raster we can read, or is cut short: use GeoTIFF, .hgt, .hgt.zip, .hgt.gz or an ESRI ASCII grid (.asc)"
+)
+_DRIVERS = {".tif": "GTiff", ".tiff": "GTiff", ".hgt": "SRTMHGT", ".asc": "AAIGrid"}
+_ZIPPED = (".tif", ".tiff", ".hgt")  # grids of text are looked over as plain files
+_METRES = {
+    "": 1.0, "m": 1.0, "metre": 1.0, "meter": 1.0, "metres": 1.0, "meters": 1.0,
+    "ft": 0.3048, "foot": 0.3048, "feet": 0.3048, "international foot": 0.3048,
+    "us survey foot": 1200 / 3937, "us-ft": 1200 / 3937, "us_survey_foot": 1200 / 3937, "ftus": 1200 / 3937,
+}  # fmt: skip
+# No ground stands outside these heights; deeper than the Mariana trench or above Everest is a void
+# that the file forgot to declare, and so is -9999.
+_LOWEST_M, _HIGHEST_M = -12_000.0, 9_000.0
+_FORGOTTEN_VOID = -9999.0
+_CACHED_AS = {"uint8": "int16", "int8": "int16", "int64": "float64", "uint64": "float64"}
+_NUMBERS = ("int16", "uint16", "int32", "uint32", "float32", "float64", *_CACHED_AS)
+_WHOLLY_HASHED_BYTES = 4 << 20
+_WARNINGS = threading.Lock()
+
+
+@dataclass(frozen=True, slots=True)
+class Raster:
+    """One raster that can be used: where its samples lie and how their numbers become metres."""
+
+    path: Path
+    kind: str  # one of KINDS
+    grid: Grid
+    crs: str  # short name of the coordinate system as the file or the sidecar says
+    dtype: str  # of the samples as `read` gives them
+    void: float  # value of a missing sample in `read`; NaN for float samples
+    zero_declared_void: bool
+    scale: float  # metres = sample × scale + offset_m
+    offset_m: float
+    block_rows: int  # a block that the file yields without decoding others in vain
+    block_columns: int
+    attribution: str
+    content: str  # hash of the file and of what decides how it is decoded
+
+    @property
+    def name(self) -> str:
+        """The file's name."""
+        return self.path.name
+
+    def read(self, row: int, column: int, rows: int, columns: int) -> NDArray[Any]:
+        """Samples of a window in `dtype`, missing ones as `void`.
+
+        Where the file declares 0 as void, zeros stay zeros: whether they are ground is seen only
+        from what lies round them (voids.py).
+
+        Raises RasterError where the file is damaged there.
+        """
+        window = Window(column, row, columns, rows)
+        with _open(self.path) as file:
+            try:
+                raw = file.read(1, window=window)
+                missing = file.read_masks(1, window=window) == 0
+            except rasterio.errors.RasterioError as error:
+                raise RasterError(
+                    f"{self.name} is damaged or cut short near row {row}: fetch it again or take it out"
+                ) from error
+        if self.zero_declared_void:
+            missing &= raw != 0
+        lowest, highest = ((limit - self.offset_m) / self.scale for limit in (_LOWEST_M, _HIGHEST_M))
+        missing |= ~((raw >= lowest) & (raw <= highest)) | (raw == _FORGOTTEN_VOID)
+        samples = raw.astype(self.dtype)
+        samples[missing] = self.void
+        return np.asarray(samples)
+
+
+def declare(path: Path, crs: str | None = None, kind: str | None = None) -> Path:
+    """Write down beside a raster what it does not say itself; what is not given stays as it was.
+
+    Parameters
+    ----------
+    path : the raster.
+    crs : its coordinate system, such as "EPSG:4326"; goes before the one in the file.
+    kind : "surface" (with houses and trees), "radar-surface" (in between, as SRTM) or "bare".
+
+    Returns the sidecar's path. Raises RasterError for an unknown coordinate system or kind, a
+    missing raster, or a folder that cannot be written.
+    """
+    if not path.is_file():
+        raise RasterError(f"{path} is not a file: give the path of a raster")
+    said = _declared(path)
+    said |= {key: value for key, value in (("crs", crs), ("kind", kind)) if value is not None}
+    _check_declared(path, said)
+    sidecar = _sidecar(path)
+    try:
+        sidecar.write_text("".join(f"{key} = {json.dumps(value)}\n" for key, value in sorted(said.items())))
+    except OSError as error:
+        raise RasterError(
+            f"{sidecar} cannot be written ({error.strerror}): copy {path.name} to a folder you may write"
+        ) from error
+    return sidecar
+
+
+def open_raster(path: Path) -> Raster:
+    """Read what a raster says of itself, and check that it can be used.
+
+    Raises
+    ------
+    UnplacedRasterError
+        Neither the file nor the sidecar says in which coordinate system it lies.
+    RasterError
+        It is no raster, damaged, of a kind we do not read, or no elevation.
+    """
+    said = _declared(path)
+    _check_declared(path, said)
+    if not path.is_file() or path.stat().st_size == 0:
+        raise RasterError(f"{path.name} is empty or not a file: fetch it again or take it out")
+    if path.suffix.lower() == ".asc":
+        check_ascii_grid(path)
+    with _open(path) as file:
+        _check_bands(path, file)
+        crs = _crs(path, file, said.get("crs"))
+        try:
+            grid = Grid.place(file.height, file.width, _transform(path, file), crs)
+        except RasterError as error:
+            raise RasterError(
+                f"{path.name}: {error}. Declare the right one: gainworth terrain add {path} --crs EPSG:NUMBER"
+            ) from error
+        scale, offset_m = _metres(path, file, crs)
+        _check_end(path, file)
+        dtype = _CACHED_AS.get(file.dtypes[0], file.dtypes[0])
+        striped = file.block_shapes[0][1] == file.width
+        default_kind = "radar-surface" if file.driver == "SRTMHGT" else "surface"
+        return Raster(
+            path=path,
+            kind=said.get("kind", default_kind),
+            grid=grid,
+            crs=crs_text(crs),
+            dtype=dtype,
+            void=_void(dtype, file.nodata),
+            zero_declared_void=file.nodata == 0,
+            scale=scale,
+            offset_m=offset_m,
+            block_rows=max(1, BLOCK_SIDE**2 // file.width // 64) * 64 if striped else BLOCK_SIDE,
+            block_columns=file.width if striped else BLOCK_SIDE,
+            attribution=file.tags().get("TIFFTAG_COPYRIGHT", ""),
+            content=_content(path, (file.shape, dtype, file.nodata, scale, offset_m)),
+        )
+
+
+@contextmanager
+def _open(path: Path) -> Iterator[Any]:
+    """The open dataset. The driver follows from the name: nothing else is tried."""
+    inner, driver = _inside(path)
+    # GDAL takes a grid for whole numbers from its first lines, and would cut later decimals off.
+    options = {"DATATYPE": "Float32"} if driver == "AAIGrid" else {}
+    with rasterio.Env(CPL_VSIL_GZIP_WRITE_PROPERTIES="NO"):
+        try:
+            # A file without place makes rasterio warn; we answer that ourselves. The lock is for
+            # the list of warning filters, which Python shares between threads.
+            with _WARNINGS, warnings.catch_warnings():
+                warnings.simplefilter("ignore", rasterio.errors.NotGeoreferencedWarning)
+                file = rasterio.open(inner, driver=driver, **options)
+        except rasterio.errors.RasterioError as error:
+            named = ", and .hgt files are named by their place, such as N49E011" if driver == "SRTMHGT" else ""
+            raise RasterError(f"{path.name} {_UNREADABLE}{named}") from error
+        with file:
+            yield file
+
+
+def _inside(path: Path) -> tuple[str, str]:
+    """What GDAL is to open, and with which driver."""
+    name = path.name.lower()
+    prefix, member = "", path.name
+    if name.endswith(".gz"):
+        prefix, member = "/vsigzip/", path.name[:-3]
+    elif name.endswith(".zip"):
+        member = _member(path)
+        prefix = "/vsizip/"
+    driver = _DRIVERS.get(Path(member).suffix.lower())
+    if driver is None:
+        raise RasterError(f"{path.name} {_UNREADABLE}")
+    inner = f"{prefix}{path.resolve()}" + (f"/{member}" if prefix == "/vsizip/" else "")
+    return inner, driver
+
+
+def _member(path: Path) -> str:
+    """Name of the one raster in a zip file."""
+    try:
+        with zipfile.ZipFile(path) as archive:
+            rasters = [name for name in archive.namelist() if Path(name).suffix.lower() in _ZIPPED]
+    except (zipfile.BadZipFile, OSError) as error:
+        raise RasterError(f"{path.name} is no zip file, or is cut short: fetch it again") from error
+    if len(rasters) != 1:
+        raise RasterError(f"{path.name} holds {len(rasters)} rasters: give zip files with one raster each")
+    return rasters[0]
+
+
+def _check_bands(path: Path, file: Any) -> None:
+    """An elevation raster has one band of numbers (and perhaps a mask), and no colours."""
+    alpha = rasterio.enums.ColorInterp.alpha
+    heights = [band for band, use in enumerate(file.colorinterp, 1) if use != alpha]
+    if heights != [1] or file.colorinterp[0] == rasterio.enums.ColorInterp.palette:
+        what = "a colour table" if heights == [1] else f"{len(heights)} bands"
+        raise RasterError(f"{path.name} has {what}: give an elevation raster with one band of heights")
+    if file.dtypes[0] not in _NUMBERS:
+        raise RasterError(f"{path.name} has {file.dtypes[0]} samples: use whole numbers or floats")
+    if min(file.shape) < 2:
+        raise RasterError(f"{path.name} has {file.height} × {file.width} samples: at least 2 × 2 are needed")
+
+
+def _crs(path: Path, file: Any, declared: str | None) -> CRS:
+    if declared is not None:
+        return CRS.from_user_input(declared)
+    if not file.crs:
+        raise UnplacedRasterError(
+            f"{path.name} does not say in which coordinate system it lies. Declare it: "
+            f"gainworth terrain add {path} --crs EPSG:4326 "
+            "(EPSG:4326 for degrees of longitude and latitude, else the number that its source names)"
+        )
+    try:
+        return CRS.from_wkt(file.crs.to_wkt())
+    except CRSError as error:
+        raise UnplacedRasterError(
+            f"{path.name} lies in a coordinate system that we do not know. Declare it: "
+            f"gainworth terrain add {path} --crs EPSG:NUMBER"
+        ) from error
+
+
+def _transform(path: Path, file: Any) -> Affine:
+    transform: Affine = file.transform
+    if transform.is_identity or transform.is_degenerate:
+        raise RasterError(
+            f"{path.name} names a coordinate system but not where in it the samples lie: "
+            "write its corner and pixel size into it, for instance with gdal_edit"
+        )
+    return transform
+
+
+def _metres(path: Path, file: Any, crs: CRS) -> tuple[float, float]:
+    """Scale and offset from stored numbers to metres, from the band's unit or the vertical system's."""
+    unit = (file.units[0] or "").strip().lower()
+    if not unit and crs.is_compound:
+        unit = crs.sub_crs_list[-1].axis_info[0].unit_name.strip().lower()
+    if unit not in _METRES:
+        raise RasterError(f'{path.name} has heights in "{unit}": use metres or feet')
+    factor = _METRES[unit]
+    return factor * file.scales[0], factor * file.offsets[0]
+
+
+def _check_end(path: Path, file: Any) -> None:
+    """The last sample of a GeoTIFF can be read: else the file is cut short. (Other drivers look at the size.)"""
+    if file.driver != "GTiff":
+        return
+    try:
+        file.read(1, window=Window(file.width - 1, file.height - 1, 1, 1))
+    except rasterio.errors.RasterioError as error:
+        raise RasterError(f"{path.name} is cut short or damaged: fetch it again or take it out") from error
+
+
+def _void(dtype: str, nodata: float | None) -> float:
+    """A value that stands for "missing" in samples of this type."""
+    if np.dtype(dtype).kind == "f":
+        return float("nan")
+    limits = np.iinfo(dtype)
+    # 0 is a height even where the file says otherwise (see voids.py), so it cannot stand for a void.
+    if nodata is not None and nodata != 0 and limits.min <= nodata <= limits.max and nodata == int(nodata):
+        return float(nodata)
+    return float(limits.min if limits.min < 0 else limits.max)
+
+
+def _content(path: Path, decoding: tuple[Any, ...]) -> str:
+    """Hash of a file: whole below 4 MiB, else its size, time of change and 16 samples of 64 KiB."""
+    size = path.stat().st_size
+    digest = hashlib.sha256(repr((size, decoding)).encode())
+    with path.open("rb") as file:
+        if size <= _WHOLLY_HASHED_BYTES:
+            digest.update(file.read())
+        else:
+            digest.update(str(path.stat().st_mtime_ns).encode())
+            for start in np.linspace(0, size - 65536, 16).astype(int):
+                file.seek(int(start))
+                digest.update(file.read(65536))
+    return digest.hexdigest()[:24]
+
+
+def _sidecar(path: Path) -> Path:
+    return path.with_name(f"{path.name}.gainworth.toml")
+
+
+def _declared(path: Path) -> dict[str, str]:
+    sidecar = _sidecar(path)
+    try:
+        return {key: str(value) for key, value in tomllib.loads(sidecar.read_text()).items()}
+    except FileNotFoundError:
+        return {}
+    except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
+        raise RasterError(
+            f'{sidecar.name} cannot be read: write lines such as crs = "EPSG:4326", or delete it'
+        ) from error
+
+
+def _check_declared(path: Path, said: dict[str, str]) -> None:
+    if said.get("kind", "surface") not in KINDS:
+        raise RasterError(f'{path.name} is declared as "{said["kind"]}": use {", ".join(KINDS)}')
+    try:
+        if "crs" in said:
+            CRS.from_user_input(said["crs"])
+    except CRSError as error:
+        raise RasterError(
+            f'{path.name} is declared to lie in "{said["crs"]}", which is not known: write for example EPSG:4326'
+        ) from error

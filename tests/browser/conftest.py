@@ -1,0 +1,104 @@
+"""A server on the demo and a Chromium that listens for errors and for requests that leave the server."""
+
+from __future__ import annotations
+
+import threading
+import time
+from collections.abc import Iterator
+
+import pytest
+import uvicorn
+from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Playwright, Request, sync_playwright
+
+from app.web.main import create_app
+
+FLAGS = [
+    "--headless",
+    "--no-sandbox",
+    "--disable-gpu",
+    "--disable-quic",
+    "--no-first-run",
+    "--disable-background-networking",
+    "--disable-component-update",
+    "--disable-sync",
+]
+NO_WEBGL = ["--disable-webgl", "--disable-webgl2", "--disable-3d-apis"]
+
+
+@pytest.fixture(scope="session")
+def address(demo_world) -> Iterator[str]:
+    config = uvicorn.Config(create_app(demo_world.store, demo_world.ground), port=0, log_level="error")
+    server = uvicorn.Server(config)
+    thread = threading.Thread(target=server.run, daemon=True)
+    thread.start()
+    end = time.monotonic() + 20
+    while not server.started:
+        assert time.monotonic() < end, "the server did not start"
+        time.sleep(0.05)
+    yield f"http://127.0.0.1:{server.servers[0].sockets[0].getsockname()[1]}"
+    server.should_exit = True
+    thread.join(10)
+
+
+@pytest.fixture(scope="session")
+def playwright() -> Iterator[Playwright]:
+    with sync_playwright() as one:
+        yield one
+
+
+@pytest.fixture(scope="session")
+def browser(playwright, chromium_path) -> Iterator[Browser]:
+    one = playwright.chromium.launch(executable_path=chromium_path, args=FLAGS)
+    yield one
+    one.close()
+
+
+@pytest.fixture(scope="session")
+def browser_without_webgl(playwright, chromium_path) -> Iterator[Browser]:
+    one = playwright.chromium.launch(executable_path=chromium_path, args=[*FLAGS, *NO_WEBGL])
+    yield one
+    one.close()
+
+
+class Watched:
+    """Pages whose console and requests are watched; what went wrong is checked when the test ends."""
+
+    def __init__(self, address: str) -> None:
+        self.address = address
+        self.contexts: list[BrowserContext] = []
+        self.wrong: list[str] = []
+        self.expected = ""  # part of a console error that the test brings about
+
+    def open(self, browser: Browser, **options: object) -> Page:
+        """Open a new page in a context of its own."""
+        wanted = {"viewport": {"width": 1280, "height": 900}, "base_url": self.address} | options
+        context = browser.new_context(**wanted)
+        self.contexts.append(context)
+        page = context.new_page()
+        page.set_default_timeout(15_000)
+        page.on("pageerror", lambda error: self.wrong.append(str(error)))
+        page.on("console", self._hear)
+        page.on("request", self._see)
+        return page
+
+    def _hear(self, message: ConsoleMessage) -> None:
+        if message.type == "error" and not (self.expected and self.expected in message.text):
+            self.wrong.append(message.text)
+
+    def _see(self, request: Request) -> None:
+        if not request.url.startswith((self.address, "data:", "blob:")):
+            self.wrong.append(f"left the server: {request.url}")
+
+
+@pytest.fixture
+def watched(address) -> Iterator[Watched]:
+    one = Watched(address)
+    yield one
+    for context in one.contexts:
+        context.close()
+    assert one.wrong == []
+
+
+@pytest.fixture
+def page(watched, browser) -> Page:
+    return watched.open(browser)
