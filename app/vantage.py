@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain, Feeder, Outlet, Receiver
-from app.chance import Cells, Loadings
+from app.chance import Cells, Knowledge, Loadings
 from app.link_budget import receive
 from app.margins import Air, error_parts, path_error
 from app.readings import AT_THE_AERIAL, Size
@@ -38,12 +38,17 @@ class Vantage:
     level_dbuv: FloatArray  # (e,)
     cn_db: FloatArray  # (e,)
     margin_db: FloatArray  # (e,) above the required C/N, without reserve
-    loadings: Loadings  # (e, k) the errors of each
+    cells: Cells  # the margins with their errors
+    loadings: Loadings  # (e, k) of those
 
     @property
     def name(self) -> str:
         """Key of its readings."""
         return f"{self.chain.name}:{self.pointing_deg:.0f}:{self.polarisation}:{self.point}"
+
+    def level_draws(self) -> FloatArray:
+        """Joint samples of the levels there. (DRAWS, e)"""
+        return self.cells.draws() + (self.level_dbuv - self.margin_db)
 
 
 def vantage(
@@ -54,6 +59,7 @@ def vantage(
     air: Air,
     roof: Roof,
     assumptions: Assumptions,
+    known: Knowledge | None = None,
 ) -> Vantage:
     """Predict every emission as a reading there would show it."""
     seen = at_the_aerial(chain) if point == AT_THE_AERIAL else chain
@@ -66,8 +72,9 @@ def vantage(
         and not (point == AT_THE_AERIAL and part.keys[0].startswith("feeder:"))
     )
     margin_db = shown.cn_db - air.signals.required_cn_db
-    cells = Cells(margin_db, path_error(air, assumptions), parts)
-    return Vantage(chain, pointing_deg, polarisation, point, shown.level_dbuv, shown.cn_db, margin_db, cells.loadings())
+    cells = Cells(margin_db, path_error(air, assumptions), parts, known)
+    levels = shown.level_dbuv
+    return Vantage(chain, pointing_deg, polarisation, point, levels, shown.cn_db, margin_db, cells, cells.loadings())
 
 
 def at_the_aerial(chain: Chain) -> Chain:
@@ -93,6 +100,21 @@ def neighbours_chain(size: Size) -> Chain:
     return Chain(
         name=f"neighbour {size}",
         parts=(aerial, feeder, Outlet(id="outlet", name="outlet"), Receiver(id="set", name="Set")),
+    )
+
+
+def measuring_chain() -> Chain:
+    """Return a measuring aerial at the end of a pole: 6 dBd whatever it points at, straight into the meter."""
+    aerial = Aerial(
+        id="measuring-aerial",
+        name="Measuring aerial",
+        gain_dbd=((30, 6.0), (6000, 6.0)),
+        beamwidth_deg=360,
+        front_to_back_db=0,
+    )
+    return Chain(
+        name="measuring aerial",
+        parts=(aerial, Outlet(id="terminals", name=AT_THE_AERIAL), Receiver(id="meter", name="Meter")),
     )
 
 
