@@ -50,6 +50,7 @@ class Weighed:
     reason: str  # why not, or how
     emission: str | None = None
     predicted_db: float | None = None  # before any reading
+    read_db: float | None = None  # what is compared with it; of a MER the C/N behind it
     spread_db: float | None = None  # of prediction and reading together
     surprise_sd: float | None = None
     candidates: tuple[str, ...] = ()  # for the cause of a surprise
@@ -138,6 +139,7 @@ def weigh(readings: Sequence[Reading], situation: Situation) -> Evidence:
             why,
             one.emission,
             one.predicted_db,
+            value,
             spread,
             far if far is not None else _prior_surprise(one, loadings, wide),
             ()

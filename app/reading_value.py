@@ -30,6 +30,7 @@ FloatArray = NDArray[np.float64]
 QUANTILES = 64
 MOST_TRIED = 16  # readings whose value is computed: those that move most with the worth
 LEAST_CORRELATION = 0.05
+LEAST_VALUE = 0.01  # less than this is nothing in any currency
 STEP_DB = 0.5
 RARE = 0.02  # an interval of levels less likely than this is none
 MOST_TIPPING = 4
@@ -89,6 +90,8 @@ def most_valuable(
     if not values:
         return None
     best = max(values, key=lambda k: (values[k], -k))
+    if values[best] < LEAST_VALUE:
+        return None
     one = readables[best]
     return MeasureNext(
         one.emission,

@@ -136,6 +136,7 @@ class Reading:
 
 
 READING_KEYS = tuple(one.name for one in fields(Reading))
+UNCONFIRMED = ("confirmed", False)
 _TEXT = ("kind", "emission", "multiplex", "state", "chain", "polarisation", "point", "instrument", "size", "id", "note")
 _NUMBERS = ("value_db", "pointing_deg", "aerial_agl_m", "sd_db", "limit_db")
 
@@ -179,7 +180,9 @@ def reading_to_document(reading: Reading) -> dict[str, Any]:
     document = {key: getattr(reading, key) for key in READING_KEYS}
     document["day"] = reading.day.isoformat() if reading.day else None
     document["stronger"] = list(reading.stronger)
-    return {key: value for key, value in document.items() if value not in (None, "", [], False) or key == "works"}
+    return {
+        key: value for key, value in document.items() if value not in (None, "", []) and (key, value) != UNCONFIRMED
+    }
 
 
 def _word(name: str, value: str, allowed: Sequence[str]) -> None:

@@ -31,6 +31,7 @@ def _item(one: Weighed) -> dict[str, Any]:
         "reason": one.reason,
         "read_of": one.emission,
         "predicted_db": _rounded(one.predicted_db),
+        "read_db": _rounded(one.read_db),
         "spread_db": _rounded(one.spread_db),
         "surprise_sd": _rounded(one.surprise_sd),
         "candidates": list(one.candidates),

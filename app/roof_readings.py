@@ -96,9 +96,7 @@ class Place:
             roof = replace(self.request.roof, aerial_agl_m=max(1.0, height_m))
             request = self.request
             self._airs[height_m] = air_of(
-                fields_at(
-                    roof, self.found, self.ground, self.assumptions, request.availability_percent, request.method
-                )
+                fields_at(roof, self.found, self.ground, self.assumptions, request.availability_percent, request.method)
             )
         return self._airs[height_m]
 
@@ -167,9 +165,7 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
         weather = (fade_db[here.emission.id] + enhancement_db[here.emission.id]) / 2 / QUANTILE_99
         parts = (meter.calibration_sd_db, meter.repeat_sd_db, value("position_sd_db"), weather)
         if float((levels[:, e] >= LEAST_READABLE_DBUV).mean()) >= 0.05:
-            readables.append(
-                Readable(here.emission.id, here.bearing_deg, levels[:, e], float(np.linalg.norm(parts)))
-            )
+            readables.append(Readable(here.emission.id, here.bearing_deg, levels[:, e], float(np.linalg.norm(parts))))
     return readables
 
 
