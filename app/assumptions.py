@@ -107,7 +107,9 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
     # readings
     Assumption("position_sd_db", 1.5, "dB", 0, 10, "field a step away from where the aerial stands", OURS),
     Assumption("sensitivity_sd_db", 1.5, "dB", 0, 10, "a set against the C/N its mode is planned with", OURS),
-    Assumption("breaks_up_db", 3.0, "dB", 0.5, 10, "breaking up means so near to what the mode needs", OURS),
+    Assumption(
+        "breaks_up_db", 1.5, "dB", 0.2, 10, "breaking up: within so much of what the mode needs; perfect: above", OURS
+    ),
     Assumption("seen_softness_db", 1.0, "dB", 0.1, 10, "words such as perfect mean more to one than to another", OURS),
     Assumption("order_softness_db", 3.0, "dB", 0.1, 20, "bars and per cent of a set, compared within a list", OURS),
     Assumption("order_wrong_share", 0.1, "-", 0, 0.5, "pairs of a set's list that stand in the wrong order", OURS),

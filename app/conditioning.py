@@ -87,7 +87,9 @@ class Posterior:
     keys: tuple[str, ...]  # (k,)
     mean: FloatArray  # (k,)
     covariance: FloatArray  # (k, k)
-    shift: FloatArray  # (DRAWS, k) what the readings add to each prior sample
+    gain: FloatArray  # (k, f) S A', how each quantity that was read moves the normals
+    moved: FloatArray  # (DRAWS, f) by how much, sample by sample
+    widened: FloatArray  # (k,) prior standard deviation less 1
     picked: IndexArray | None  # (DRAWS,) samples that stand for the exact posterior; None: all once
     is_normal: bool
     effective_share: float  # of the samples; 1 without bounds
@@ -101,8 +103,11 @@ class Posterior:
 
     def applied(self, draws_db: FloatArray, loadings: Loadings) -> FloatArray:
         """Prior samples of each quantity turned into samples of the posterior. (DRAWS, e)"""
-        moved: FloatArray = draws_db + self.shift @ loadings.over(self.keys).T
-        return moved if self.picked is None else moved[self.picked]
+        ours = loadings.over(self.keys)
+        after: FloatArray = draws_db + self.moved @ (ours @ self.gain).T
+        for k in np.flatnonzero(self.widened):
+            after += np.outer(normals(self.keys[k]), self.widened[k] * ours[:, k])
+        return after if self.picked is None else after[self.picked]
 
     def of(self, key: str) -> tuple[float, float]:
         """Mean and standard deviation of one named normal."""
@@ -154,8 +159,7 @@ def condition(
     mean = gain @ matched.lean
     covariance = np.diag(prior_sd**2) - gain @ matched.weights @ gain.T
 
-    z = np.stack([normals(key) for key in loadings.keys], axis=1) if loadings.keys else np.zeros((DRAWS, 0))
-    before = (z * prior_sd) @ loadings.db.T
+    before = np.stack([normals(key) for key in loadings.keys], axis=1) @ scaled.T
     precision = np.bincount([site.row for site in proposing], matched.precision, len(loadings.db))
     noise = np.stack(
         [normals(f"reading:{names[f] if names else f}") for f in range(len(loadings.db))] or [np.zeros(DRAWS)], axis=1
@@ -164,12 +168,11 @@ def condition(
     root = np.sqrt(precision)
     scatter = np.divide(1.0, root, out=np.zeros_like(root), where=root > 0)
     moved = matched.lean - (before + noise[:, : len(root)] * scatter) @ matched.weights
-    shift = z * (prior_sd - 1) + moved @ gain.T
 
     picked, share = None, 1.0
     bounds = [s for s, site in enumerate(proposing) if isinstance(site, Bound)]
     if bounds:
-        f = (z + shift) @ loadings.db.T
+        f = before + moved @ (scaled @ scaled.T)
         log_weight = np.zeros(DRAWS)
         for s in bounds:
             site = proposing[s]
@@ -186,7 +189,7 @@ def condition(
         if share >= LEAST_SHARE:
             steps = (np.arange(DRAWS) + 0.5) / DRAWS
             picked = np.minimum(np.searchsorted(np.cumsum(weight), steps), DRAWS - 1)
-    return Posterior(loadings.keys, mean, covariance, shift, picked, not bounds, share)
+    return Posterior(loadings.keys, mean, covariance, gain, moved, prior_sd - 1, picked, not bounds, share)
 
 
 def match(prior_covariance: FloatArray, sites: Sequence[Site]) -> Matched:

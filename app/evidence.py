@@ -18,7 +18,7 @@ from __future__ import annotations
 
 import itertools
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,7 +28,19 @@ from app.assumptions import Assumptions
 from app.causes import candidates
 from app.chain.parts import Chain
 from app.chance import Loadings
-from app.conditioning import FAR_SD, Bound, Joint, Plain, Posterior, Site, condition, match, surprise, without
+from app.conditioning import (
+    FAR_SD,
+    SURELY_WRONG,
+    Bound,
+    Joint,
+    Plain,
+    Posterior,
+    Site,
+    condition,
+    match,
+    surprise,
+    without,
+)
 from app.findings import findings
 from app.margins import Air
 from app.readings import AT_THE_AERIAL, Reading
@@ -208,7 +220,9 @@ def _of_a_picture(
     rows: _Rows,
 ) -> _Statement:
     near, softness = situation.assumptions.value("breaks_up_db"), situation.assumptions.value("seen_softness_db")
-    low, high = {"perfect": (0.0, np.inf), "breaks up": (-near, near), "not found": (-np.inf, 0.0)}[str(reading.state)]
+    low, high = {"perfect": (near, np.inf), "breaks up": (-near, near), "not found": (-np.inf, -near)}[
+        str(reading.state)
+    ]
     bounds = []
     for e in emissions:
         predicted = float(looked.margin_db[e])
@@ -219,27 +233,23 @@ def _of_a_picture(
     id_, margin = air.fields[emissions[best]].emission.id, float(looked.margin_db[emissions[best]])
     if len(bounds) == 1 or reading.state == "not found":
         return _Statement(reading, tuple(bounds), None, looked, id_, margin, None)
-    return _Statement(reading, (), _any_of(bounds, best), looked, id_, margin, None)
+    return _Statement(reading, (), best_of(bounds, best), looked, id_, margin, None)
 
 
-def _any_of(bounds: Sequence[Bound], best: int) -> Joint:
-    """At least one of several emissions is as the word says: the best of them bears the stand-in."""
+def best_of(bounds: Sequence[Bound], best: int) -> Joint:
+    """The best of several emissions lies between the limits of its bound; `best` bears the stand-in.
+
+    With softness s, P(best < limit) is the product of Phi((limit - f) / s) over the emissions.
+    """
+    rows = tuple(bound.row for bound in bounds)
 
     def log_likelihood(f: FloatArray) -> FloatArray:
-        good = np.stack([_soft(bound, f[:, b]) for b, bound in enumerate(bounds)], axis=1)
-        return np.asarray(np.log(np.maximum(1 - np.prod(1 - good, axis=1), 1e-6)))
+        below_high = np.prod([ndtr((one.high_db - f[:, b]) / one.softness_db) for b, one in enumerate(bounds)], axis=0)
+        below_low = np.prod([ndtr((one.low_db - f[:, b]) / one.softness_db) for b, one in enumerate(bounds)], axis=0)
+        return np.asarray(np.log(np.maximum(below_high - below_low, SURELY_WRONG)))
 
-    stand_in = bounds[best]
-    wrong = 0.3  # another of them may be the one that is seen: only shapes the proposal, the samples are exact
-    return Joint(
-        tuple(bound.row for bound in bounds),
-        log_likelihood,
-        Bound(stand_in.row, stand_in.low_db, stand_in.high_db, stand_in.softness_db, wrong),
-    )
-
-
-def _soft(bound: Bound, x: FloatArray) -> FloatArray:
-    return np.asarray(ndtr((x - bound.low_db) / bound.softness_db) - ndtr((x - bound.high_db) / bound.softness_db))
+    # Another of them may be the one that is seen. This only shapes the proposal, the samples are exact.
+    return Joint(rows, log_likelihood, replace(bounds[best], wrong=0.3))
 
 
 def _of_an_order(reading: Reading, looked: Vantage, air: Air, situation: Situation, rows: _Rows) -> _Statement:
