@@ -22,6 +22,7 @@ FloatArray = NDArray[np.float64]
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
 TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
 
@@ -184,7 +185,9 @@ def _sweep(
     fixed = Cells(nowhere, path_error(air, assumptions), _parts_of_any_pointing(chain, air, assumptions), known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     chance = exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
-    return expected_count(chance, air.multiplex_of, counted)
+    # What no direction brings does not sway the choice of one, however much of it there is.
+    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
+    return expected_count(chance, air.multiplex_of, [one for one in counted if one in within_reach])
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
