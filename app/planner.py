@@ -30,7 +30,7 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     AppError, TerrainError
         The roof, a name or a value is not possible: the message says what is.
     """
-    assumptions = Assumptions(request.assumptions)
+    assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = _chains(request, store)
     site = site_of(request.roof, ground)
     found = store.emissions_within(
@@ -127,7 +127,6 @@ def _verdicts(
         compared = in_question
     present = [one for one in chosen if one in multiplexes]
     wanted = present if chosen else wanted_multiplexes(multiplexes, compared)
-    worth, cost = request.worth_per_multiplex, request.reading_cost
     return ranked(
         [
             compare(
@@ -136,10 +135,10 @@ def _verdicts(
                 in_question,
                 multiplexes,
                 wanted,
-                assumptions.value("worth_per_multiplex") if worth is None else worth,
+                assumptions.value("worth_per_multiplex"),
                 baseline_is_up=request.now is not None,
                 readables=readables,
-                reading_cost=assumptions.value("reading_cost") if cost is None else cost,
+                reading_cost=assumptions.value("reading_cost"),
             )
             for candidate in in_question
             if candidate is not baseline

@@ -9,7 +9,7 @@ from app.conditioning import Bound, Joint, Plain, condition, match, surprise
 
 
 def three_emissions(known=None):
-    """Two emissions of one mast and one of another: roof 2 dB, masts 4 dB, each emission 3 dB; no fields over bearing."""
+    """Two emissions of one mast and one of another: roof 2 dB, masts 4 dB, each emission 3 dB."""
     path = PathError(("a", "a", "b"), np.array([10.0, 10.0, 200.0]), np.full(3, 4.0), 0.0, 20.0)
     parts = (
         ErrorPart(("roof",) * 3, np.full(3, 2.0)),

@@ -172,8 +172,8 @@ def test_works_already_is_among_the_intervals():
     found = decide(Side("now", (-3,) * 4), Side("idea", (7,) * 4, "large", 100))
     whys = [part.why for part in found.measure_next.tipping]
     assert whys == ["out of reach", "the candidate brings them", "works already"]
-    assert [part.from_dbuv for part in found.measure_next.tipping][0] is None
-    assert [part.to_dbuv for part in found.measure_next.tipping][-1] is None
+    assert found.measure_next.tipping[0].from_dbuv is None
+    assert found.measure_next.tipping[-1].to_dbuv is None
 
 
 def test_one_gained_one_lost_is_not_worth_its_price():

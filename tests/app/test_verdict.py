@@ -118,5 +118,5 @@ def test_reason_counts_what_holds_back():
     assert (
         found.reason
         == "Noise holds back 2 of 3, gain helps; time holds back 1 of 3, gain helps on bad nights; "
-        "high-gain brings 2 of them to a likely chance."
+        "High-gain roof aerial brings 2 of them to a likely chance."
     )
