@@ -185,7 +185,7 @@ def _cell(
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),
                 "headroom_db": None,
-                "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
+                "chance": _probability(_outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)),
                 "held_back_by": limit,
                 "ledger": [
                     *before,
@@ -212,6 +212,14 @@ def _cell(
         "held_back_by": limit,
         "outlets": outlets,
     }
+
+
+def _outlet_chance(turned: Turned, e: int, unread_db: float, margin_db: float, sigma_db: float) -> float:
+    """Chance at one outlet: that of the chain where it decides, in closed form where it is better off."""
+    decides = float(turned.chance[e])
+    if unread_db == float(turned.faded.margin_db[e]):
+        return decides
+    return max(decides, float(exceedance(np.array(margin_db), np.array(sigma_db))))
 
 
 def _ledger_of_readings(turned: Turned, read_db: float, margin_db: float) -> list[dict[str, Any]]:

@@ -170,7 +170,7 @@ class Cells:
 
 def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
     """Probability that a normal of this median and spread is at least 0; a spread of 0 decides by sign."""
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         score = np.where(sigma_db > 0, median_db / sigma_db, np.where(median_db >= 0, np.inf, -np.inf))
     result: FloatArray = ndtr(score)
     return result
