@@ -13,7 +13,7 @@ from app.chance import GRADES, exceedance, grade
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
-from app.margins import Air, Turned
+from app.margins import Air, FloatArray, Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest
@@ -55,6 +55,7 @@ def answer_document(
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
+    spreads = {key: (one.cells.sigma_db, one.cells.mean_db - one.cells.median_db) for key, one in turned.items()}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -72,7 +73,7 @@ def answer_document(
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, air, assumptions) for field in fields],
+        "emissions": [_emission(request, field, fields, place, turned, spreads, air, assumptions) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
@@ -102,6 +103,7 @@ def _emission(
     fields: Sequence[EmissionField],
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
+    spreads: Mapping[str, tuple[FloatArray, FloatArray]],
     air: Air,
     assumptions: Assumptions,
 ) -> dict[str, Any]:
@@ -151,15 +153,20 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, e, field, air, assumptions) for name, one in turned.items()},
+        else {name: _cell(request, one, spreads[name], e, field, air, assumptions) for name, one in turned.items()},
     }
 
 
 def _cell(
-    request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, assumptions: Assumptions
+    request: AssessRequest,
+    turned: Turned,
+    spread: tuple[FloatArray, FloatArray],
+    e: int,
+    field: EmissionField,
+    air: Air,
+    assumptions: Assumptions,
 ) -> dict[str, Any]:
-    sigma_db = float(turned.cells.sigma_db[e])
-    read_db = float(turned.cells.mean_db[e] - turned.cells.median_db[e])  # what readings moved it by
+    sigma_db, read_db = (float(one[e]) for one in spread)  # the second: by how much readings moved the margin
     limit = _limit(turned, e)
     before = _ledger_to_field(field, request.availability_percent)
     outlets = []

@@ -116,6 +116,7 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
         "breaks_up_db", 1.5, "dB", 0.2, 10, "breaking up: within so much of what the mode needs; perfect: above", OURS
     ),
     Assumption("seen_softness_db", 1.0, "dB", 0.1, 10, "words such as perfect mean more to one than to another", OURS),
+    Assumption("count_sd", 0.7, "multiplexes", 0.1, 5, "people count programmes, or forget one", OURS),
     Assumption("order_softness_db", 3.0, "dB", 0.1, 20, "bars and per cent of a set, compared within a list", OURS),
     Assumption("order_wrong_share", 0.1, "-", 0, 0.5, "pairs of a set's list that stand in the wrong order", OURS),
     Assumption("neighbour_softness_db", 6.0, "dB", 0.1, 20, "another roof, another aerial, seen from below", OURS),

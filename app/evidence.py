@@ -50,6 +50,7 @@ FloatArray = NDArray[np.float64]
 
 QUANTILE_99 = 2.3263  # of the standard normal: fades and enhancements are stated for 1 and 99 % of time
 NEIGHBOUR_WITHIN_DEG = 20.0
+DECIDED_DB = 30.0  # a margin this far from 0 is no question
 LARGEST_ROUNDS = 200  # of setting readings aside
 
 
@@ -181,6 +182,8 @@ def _statement(reading: Reading, situation: Situation, rows: _Rows) -> _Statemen
     if reading.kind == "neighbour":
         return _of_a_neighbour(reading, situation, rows)
     looked, air = situation.look(reading, None)
+    if reading.kind == "count":
+        return _of_a_count(reading, looked, air, situation, rows)
     if reading.kind == "order":
         return _of_an_order(reading, looked, air, situation, rows)
     emissions = _emissions(reading.emission, reading.multiplex, looked, air, situation)
@@ -250,6 +253,27 @@ def best_of(bounds: Sequence[Bound], best: int) -> Joint:
 
     # Another of them may be the one that is seen. This only shapes the proposal, the samples are exact.
     return Joint(rows, log_likelihood, replace(bounds[best], wrong=0.3))
+
+
+def _of_a_count(reading: Reading, looked: Vantage, air: Air, situation: Situation, rows: _Rows) -> _Statement:
+    """So many multiplexes are received: N(number, count_sd²) over the number above what their modes need."""
+    open_ones = [e for e in range(len(air.fields)) if abs(looked.margin_db[e]) < DECIDED_DB]
+    sure = {air.multiplex_of[e] for e in range(len(air.fields)) if looked.margin_db[e] >= DECIDED_DB}
+    numbered = tuple(_row(rows, reading, looked, e, air, situation, False, calibrated=False) for e in open_ones)
+    owners = sorted({air.multiplex_of[e] for e in open_ones} - sure)
+    sd = situation.assumptions.value("count_sd")
+    count = reading.count or 0
+
+    def log_likelihood(f: FloatArray) -> FloatArray:
+        good = f + looked.margin_db[open_ones] >= 0
+        columns = [[k for k, e in enumerate(open_ones) if air.multiplex_of[e] == name] for name in owners]
+        received = [good[:, mine].any(axis=1) for mine in columns]
+        number = len(sure) + np.sum(received, axis=0)
+        return np.asarray(-(((number - count) / sd) ** 2) / 2)
+
+    if not numbered:
+        raise LookupError("nothing in reach is open: a count says nothing here; kept, not used")
+    return _Statement(reading, (), Joint(numbered, log_likelihood), looked, None, None, None)
 
 
 def _of_an_order(reading: Reading, looked: Vantage, air: Air, situation: Situation, rows: _Rows) -> _Statement:
@@ -407,6 +431,8 @@ def _covariance(loadings: Loadings, wide: Mapping[str, float]) -> FloatArray:
 def _prior_surprise(one: _Statement, loadings: Loadings, wide: Mapping[str, float]) -> float:
     if one.joint:
         stand_in = one.joint.stand_in
+        if stand_in is None:
+            return 0.0
         return surprise(stand_in, 0.0, _variance(stand_in.row, loadings, wide))
     return max(surprise(site, 0.0, _variance(site.row, loadings, wide)) for site in one.sites)
 

@@ -106,6 +106,14 @@ def test_a_scan_word_of_a_multiplex_counts(ask, plain):
     assert answer["readings"]["effective_share"] > 0.5
 
 
+def test_a_count_alone_tells_which_way_it_is(ask, plain):
+    """Range's three are sure; four and more are open together: "today I get 3" means the far island is not there."""
+    three, seven = (ask(Reading(kind="count", count=n)) for n in (3, 7))
+    assert chance(three, "strait-1", "roof-yagi") < chance(plain, "strait-1", "roof-yagi") - 0.1
+    assert chance(seven, "strait-1", "roof-yagi") > chance(plain, "strait-1", "roof-yagi") + 0.1
+    assert three["readings"]["bounds"] == "sampled"
+
+
 def test_windy_nights_are_told_by_breaking_up(ask):
     """Breaking up: near what the mode needs without fade and reserve, so the chance on a bad night is small."""
     answer = ask(Reading(kind="seen", multiplex="strait-1", state="breaks up"))
