@@ -144,7 +144,7 @@ class Cells:
             add(f"path:{mast}", e, float(self.path.sd_db[e] * own))
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] > 0:
+                if part.sd_db[e] != 0:
                     add(key, e, float(part.sd_db[e]))
         rows = np.stack([_bearing_row(float(one), self.path.scale_deg) for one in self.path.bearing_deg])
         over_bearing = common * self.path.sd_db[:, None] * rows
@@ -163,7 +163,7 @@ class Cells:
             margins[:, e] += self.path.sd_db[e] * (common * along + own * normals(f"path:{mast}"))
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] > 0:
+                if part.sd_db[e] != 0:
                     margins[:, e] += part.sd_db[e] * normals(key)
         return margins if self.known is None else self.known.applied(margins, self.loadings())
 

@@ -130,8 +130,7 @@ def turn(
         roof.surroundings,
     )
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
-    parts = error_parts(chain, polarisation, air, faded, assumptions)
-    cells = Cells(faded.margin_db, path_error(air, assumptions), parts, known)
+    cells = Cells(faded.margin_db, *wanted_errors(chain, polarisation, air, faded, assumptions), known)
     return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts)
 
 
@@ -182,7 +181,8 @@ def _sweep(
         roof.surroundings,
     )
     nowhere = np.zeros_like(air.path_sd_db)
-    fixed = Cells(nowhere, path_error(air, assumptions), _parts_of_any_pointing(chain, air, assumptions), known)
+    path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
+    fixed = Cells(nowhere, path, parts[:-1], known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     chance = exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
     # What no direction brings does not sway the choice of one, however much of it there is.
@@ -195,29 +195,6 @@ def _best_bearing(counts: FloatArray, air: Air) -> float:
     as_good = np.flatnonzero(counts >= counts.max() - TIE_COUNT)
     away = np.abs((as_good - strongest + 180) % 360 - 180)
     return float(as_good[int(np.argmin(away))])
-
-
-def path_error(air: Air, assumptions: Assumptions) -> PathError:
-    """Return the errors of the paths of all emissions."""
-    return PathError(
-        masts=air.masts,
-        bearing_deg=air.signals.bearing_deg,
-        sd_db=air.path_sd_db,
-        correlation=assumptions.value("path_bearing_correlation"),
-        scale_deg=assumptions.value("path_bearing_scale_deg"),
-    )
-
-
-def error_parts(
-    chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
-) -> tuple[ErrorPart, ...]:
-    """Return every error beside the paths' for one chain turned one way."""
-    ids = [field.emission.id for field in air.fields]
-    rejection = ErrorPart(
-        tuple(f"off-axis:{chain.aerial.id}:{name}" for name in ids),
-        _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
-    )
-    return (*_parts_of_any_pointing(chain, air, assumptions), rejection)
 
 
 def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> tuple[ErrorPart, ...]:
@@ -276,3 +253,21 @@ def _masts(fields: Sequence[EmissionField]) -> tuple[str, ...]:
         if near is None:
             heads.append(key)
     return tuple(names[field.transmitter.id] for field in fields)
+
+
+def wanted_errors(
+    chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
+) -> tuple[PathError, tuple[ErrorPart, ...]]:
+    """Return the errors of the wanted signals themselves, as a reading of their level meets them."""
+    path = PathError(
+        masts=air.masts,
+        bearing_deg=air.signals.bearing_deg,
+        sd_db=air.path_sd_db,
+        correlation=assumptions.value("path_bearing_correlation"),
+        scale_deg=assumptions.value("path_bearing_scale_deg"),
+    )
+    rejection = ErrorPart(
+        tuple(f"off-axis:{chain.aerial.id}:{field.emission.id}" for field in air.fields),
+        _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
+    )
+    return path, (*_parts_of_any_pointing(chain, air, assumptions), rejection)

@@ -11,12 +11,13 @@ from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
 from app.chance import Knowledge
 from app.errors import NotStoredError, ReadingError
-from app.evidence import QUANTILE_99, Evidence, Situation, weigh
+from app.evidence import Evidence, weigh
 from app.fields import EmissionField, Found, fields_at
 from app.margins import Air, Turned, air_of, turn
 from app.reading_value import Readable
 from app.readings import AT_THE_AERIAL, INSTRUMENTS, Reading, reading_from_document
 from app.request import NOTHING, AssessRequest
+from app.statements import QUANTILE_99, Situation
 from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from app.vantage import Vantage, measuring_chain, vantage
@@ -48,13 +49,13 @@ class Place:
         now = self.request.now
         return now if now not in (None, NOTHING) else next(iter(self.turned), None)
 
-    def look(self, reading: Reading, point: str | None) -> tuple[Vantage, Air]:
+    def look(self, reading: Reading) -> tuple[Vantage, Air]:
         """Return how one was looking when a reading was taken; LookupError if that cannot be said."""
         name = reading.chain or self.default_chain()
         if name is None:
             raise LookupError("no chain to read through: name one")
         one = self.turned.get(name) or self._turned(name)
-        point = (point or reading.point) or ""
+        point = reading.point or ""
         if point not in ("", AT_THE_AERIAL, *one.chain.outlet_names):
             names = ", ".join((AT_THE_AERIAL, *one.chain.outlet_names))
             raise LookupError(f'chain "{name}" has no point "{point}": use one of {names}; kept, not used')

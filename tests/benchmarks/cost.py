@@ -1,6 +1,6 @@
 """What chances, readings and verdict cost beside the computation of the fields. A report.
 
-    python tests/benchmarks/cost.py
+python tests/benchmarks/cost.py
 """
 
 from __future__ import annotations
