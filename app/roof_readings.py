@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from pathlib import Path
 
 import numpy as np
 
@@ -17,6 +18,7 @@ from app.margins import Air, Turned, air_of, turn
 from app.reading_value import Readable
 from app.readings import AT_THE_AERIAL, INSTRUMENTS, Reading, reading_from_document
 from app.request import NOTHING, AssessRequest
+from app.roof import Roof
 from app.statements import QUANTILE_99, Situation
 from app.stored_chains import stored_chain
 from app.transmitters.store import Store
@@ -41,6 +43,7 @@ class Place:
     air: Air
     turned: Mapping[str, Turned]  # before any reading
     assumptions: Assumptions
+    refractivity_maps: Path | None = None
     _airs: dict[float, Air] = field(default_factory=dict)
     _vantages: dict[tuple[str, float, str, str, float], Vantage] = field(default_factory=dict)
 
@@ -87,6 +90,18 @@ class Place:
             )
         return self._vantages[key], air
 
+    def fields_on(self, roof: Roof, availability_percent: int) -> list[EmissionField]:
+        """Return all fields again for another height or share of time."""
+        return fields_at(
+            roof,
+            self.found,
+            self.ground,
+            self.assumptions,
+            availability_percent,
+            self.request.method,
+            self.refractivity_maps,
+        )
+
     def _air_at(self, height_m: float) -> Air:
         height_m = round(height_m / HEIGHT_STEP_M) * HEIGHT_STEP_M
         if abs(height_m - self.request.roof.aerial_agl_m) <= SAME_HEIGHT_M:
@@ -95,10 +110,7 @@ class Place:
             if len(self._airs) >= MOST_HEIGHTS:
                 raise LookupError(f"readings at more than {MOST_HEIGHTS} heights: this one is kept, not used")
             roof = replace(self.request.roof, aerial_agl_m=max(1.0, height_m))
-            request = self.request
-            self._airs[height_m] = air_of(
-                fields_at(roof, self.found, self.ground, self.assumptions, request.availability_percent, request.method)
-            )
+            self._airs[height_m] = air_of(self.fields_on(roof, self.request.availability_percent))
         return self._airs[height_m]
 
     def _turned(self, name: str) -> Turned:
@@ -174,8 +186,7 @@ def _weather(place: Place) -> tuple[dict[str, float], dict[str, float]]:
     """Fade to 99 % and enhancement of 1 % of time by emission [dB], whatever availability is asked for."""
     fields = place.fields
     if place.request.availability_percent != 99:
-        request = place.request
-        fields = fields_at(request.roof, place.found, place.ground, place.assumptions, 99, request.method)
+        fields = place.fields_on(place.request.roof, 99)
     return (
         {one.emission.id: one.fade_db for one in fields},
         {one.emission.id: one.enhancement_db for one in fields},
