@@ -14,6 +14,7 @@ from app.chance import Knowledge
 from app.errors import NotStoredError, ReadingError
 from app.evidence import Evidence, weigh
 from app.fields import EmissionField, Found, fields_at
+from app.interferers import interferers_at
 from app.margins import Air, Turned, air_of, turn
 from app.reading_value import Readable
 from app.readings import AT_THE_AERIAL, INSTRUMENTS, Reading, reading_from_document
@@ -39,6 +40,7 @@ class Place:
     store: Store
     ground: Ground
     found: Sequence[Found]
+    on_the_air: Sequence[Found]  # what disturbs among it
     fields: Sequence[EmissionField]
     air: Air
     turned: Mapping[str, Turned]  # before any reading
@@ -110,7 +112,10 @@ class Place:
             if len(self._airs) >= MOST_HEIGHTS:
                 raise LookupError(f"readings at more than {MOST_HEIGHTS} heights: this one is kept, not used")
             roof = replace(self.request.roof, aerial_agl_m=max(1.0, height_m))
-            self._airs[height_m] = air_of(self.fields_on(roof, self.request.availability_percent))
+            share, method = self.request.availability_percent, self.request.method
+            fields = self.fields_on(roof, share)
+            disturbers = interferers_at(roof, fields, self.on_the_air, self.ground, self.assumptions, share, method)
+            self._airs[height_m] = air_of(fields, disturbers)
         return self._airs[height_m]
 
     def _turned(self, name: str) -> Turned:

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain, Feeder, Outlet, Receiver
 from app.chance import Cells, Knowledge, Loadings
+from app.disturbance import disturbed, ear_of, effect_of
 from app.link_budget import receive
 from app.margins import Air, wanted_errors
 from app.readings import AT_THE_AERIAL, Size
@@ -64,6 +65,8 @@ def vantage(
     """Predict every emission as a reading there would show it."""
     seen = at_the_aerial(chain) if point == AT_THE_AERIAL else chain
     got = receive(seen, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
+    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+    got = disturbed(got, effect_of(ear, got, ear.left(pointing_deg), "a"))
     shown = next((outlet for outlet in got.outlets if outlet.name == point), got)
     path, errors = wanted_errors(chain, polarisation, air, got, assumptions)
     parts = tuple(
