@@ -12,6 +12,7 @@ from app.chain.parts import Feeder, Outlet
 from app.chance import exceedance
 from app.demo.scenario import DEMO_ROOFS
 from app.fields import fields_at
+from app.interferers import interferers_at
 from app.margins import air_of, expected_count, turn
 from app.roof import Roof
 from app.stored_chains import stored_chain
@@ -35,7 +36,8 @@ def test_more_loss_interference_or_noise_never_raises_a_chance(margin, loss, spr
 @pytest.fixture(scope="module")
 def air(demo_world):
     found = demo_world.store.emissions_within(ROOF.latitude_deg, ROOF.longitude_deg, 150)
-    return air_of(fields_at(ROOF, found, demo_world.ground, ASSUMED, 99))
+    fields = fields_at(ROOF, found, demo_world.ground, ASSUMED, 99)
+    return air_of(fields, interferers_at(ROOF, fields, found, demo_world.ground, ASSUMED, 99))
 
 
 def count(chain, air):

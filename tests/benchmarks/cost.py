@@ -18,6 +18,7 @@ sys.path.insert(0, str(Path(__file__).parents[2]))
 from app.assumptions import Assumptions
 from app.demo.scenario import DEMO_ROOFS
 from app.fields import fields_at
+from app.interferers import interferers_at
 from app.margins import air_of, multiplex_chances, turn
 from app.planner import assess
 from app.readings import Reading
@@ -46,7 +47,8 @@ def main() -> None:
     assumptions = Assumptions()
     found = world.store.emissions_within(roof.latitude_deg, roof.longitude_deg, 150)
     chains = [stored_chain(world.store, str(one["name"])) for one in world.store.list_chains()]
-    air = air_of(fields_at(roof, found, world.ground, assumptions, 99))
+    fields = fields_at(roof, found, world.ground, assumptions, 99)
+    air = air_of(fields, interferers_at(roof, fields, found, world.ground, assumptions, 99))
     names = sorted(set(air.multiplex_of))
     turned = [turn(chain, air, roof, names, assumptions) for chain in chains]
     request = AssessRequest(roof, now="roof-yagi")
