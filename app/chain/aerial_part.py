@@ -1,0 +1,128 @@
+"""The aerial as it is bought, described or measured."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import ClassVar, Literal
+
+from app.chain.base import Part, one_of, refuse, rising, within
+
+AerialPolarisation = Literal["horizontal", "vertical"]
+AERIAL_POLARISATIONS: tuple[AerialPolarisation, ...] = ("horizontal", "vertical")
+PATTERNS = ("class", "dipole", "measured")
+PLACES = ("roof", "loft", "room")
+BUILDINGS = ("traditional", "efficient")
+PLANES = ("horizontal", "vertical")
+STACKS = (1, 2, 4)
+WIDEST_PATTERN_GAP_DEG = 15.0  # of a measured pattern: a wider gap hides side lobes
+Table = tuple[tuple[float, float], ...]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Aerial(Part):
+    """The antenna on the roof, in the loft or in a room."""
+
+    kind: ClassVar[str] = "aerial"
+
+    gain_dbd: Table  # (frequency_mhz, gain over a half-wave dipole), rising
+    beamwidth_deg: float  # between the half-power points, horizontally; 360: round
+    front_to_back_db: float  # how far the pattern falls at most; 0: round, or a dipole
+    pattern: Literal["class", "dipole", "measured"] = "class"
+    pattern_db: Table = ()  # (degrees off the axis clockwise, loss against the axis), only if measured
+    polarisation: AerialPolarisation | None = None  # None: may be mounted either way
+    place: Literal["roof", "loft", "room"] = "roof"
+    building: Literal["traditional", "efficient"] = "traditional"  # round a room
+    measured: bool = True  # False: own build whose gain nobody measured
+    reflection: Table = ()  # (frequency_mhz, |Γ| at 75 ohms) as measured
+    gain_includes_mismatch: bool = True  # a catalogue's or measured gain does
+    stacked: int = 1  # alike, side by side or one above the other: 1, 2 or 4
+    stack_spacing_m: float = 0.0
+    stack_plane: Literal["horizontal", "vertical"] = "vertical"
+    stack_loss_db: float = 0.5  # combiner and leads between them
+    pointing_deg: float | None = None  # of a second aerial; the first one's is the chain's
+    wind_area_m2: float | None = None
+
+    def __post_init__(self) -> None:
+        """Refuse a gain table or a pattern that describes no aerial."""
+        Part.__post_init__(self)
+        if self.after:
+            refuse(self, "is fed by another part", "leave out after: an aerial is where a chain begins", "after")
+        one_of(self, "pattern", self.pattern, PATTERNS)
+        one_of(self, "place", self.place, PLACES)
+        one_of(self, "building", self.building, BUILDINGS)
+        if self.polarisation is not None:
+            one_of(self, "polarisation", self.polarisation, AERIAL_POLARISATIONS)
+        if self.pointing_deg is not None:
+            within(self, "pointing_deg", self.pointing_deg, 0, 360, "degrees from true north")
+        if self.wind_area_m2 is not None:
+            within(self, "wind_area_m2", self.wind_area_m2, 0, 10, "m²")
+        self._check_gain()
+        self._check_reflection()
+        self._check_stack()
+        within(self, "beamwidth_deg", self.beamwidth_deg, 1, 360, "degrees between the half-power points")
+        within(self, "front_to_back_db", self.front_to_back_db, 0, 60, "dB")
+        self._check_pattern()
+
+    def _check_gain(self) -> None:
+        rising(self, "gain_dbd", self.gain_dbd, "[frequency_mhz, gain_dbd]", (30, 6000, "MHz"), "gain")
+        for _, gain_dbd in self.gain_dbd:
+            within(self, "gain_dbd: gain", gain_dbd, -40, 40, "dBd")
+
+    def _check_reflection(self) -> None:
+        if not self.reflection:
+            if not self.gain_includes_mismatch:
+                refuse(
+                    self,
+                    "the gain is stated without mismatch, and no match was measured",
+                    "give reflection as pairs [frequency_mhz, reflection], or set gain_includes_mismatch to true",
+                    "reflection",
+                )
+            return
+        rising(
+            self, "reflection", self.reflection, "[frequency_mhz, reflection]", (1, 20000, "MHz"), "reflection"
+        )
+        for _, reflection in self.reflection:
+            within(self, "reflection: magnitude", reflection, 0, 10, "of the voltage; 1 is total")
+
+    def _check_stack(self) -> None:
+        if self.stacked not in STACKS:
+            refuse(self, f"{self.stacked} are stacked", "use 1, 2 or 4", "stacked")
+        one_of(self, "stack_plane", self.stack_plane, PLANES)
+        within(self, "stack_loss_db", self.stack_loss_db, 0, 20, "dB")
+        within(self, "stack_spacing_m", self.stack_spacing_m, 0, 20, "m")
+        if self.stacked > 1 and self.stack_spacing_m == 0:
+            refuse(self, "is stacked without a spacing", "give stack_spacing_m between neighbours", "stack_spacing_m")
+
+    def _check_pattern(self) -> None:
+        if (self.pattern == "measured") != bool(self.pattern_db):
+            mend = 'give pattern_db with pattern "measured", and only then'
+            refuse(self, "pattern and pattern_db do not go together", mend, "pattern_db")
+        if self.pattern == "measured":
+            self._check_measured_pattern()
+        if self.pattern != "class":
+            return
+        if self.beamwidth_deg == 360 and self.front_to_back_db != 0:
+            refuse(
+                self, "a beamwidth of 360 degrees means round", "set front_to_back_db to 0", "front_to_back_db"
+            )
+        if self.beamwidth_deg < 360 and self.front_to_back_db <= 3:
+            refuse(
+                self,
+                f"front_to_back_db {self.front_to_back_db:g} leaves no half-power beamwidth",
+                'use more than 3 dB, pattern "dipole", or a beamwidth of 360 degrees for a round one',
+                "front_to_back_db",
+            )
+
+    def _check_measured_pattern(self) -> None:
+        rising(self, "pattern_db", self.pattern_db, "[degrees, loss_db]", (0, 359.999, "degrees"), "pattern")
+        for _, loss_db in self.pattern_db:
+            within(self, "pattern_db: loss", loss_db, -1, 80, "dB below the axis")
+        angles = [pair[0] for pair in self.pattern_db]
+        for low, high in zip(angles, [*angles[1:], angles[0] + 360], strict=True):
+            if high - low > WIDEST_PATTERN_GAP_DEG:
+                refuse(
+                    self,
+                    f"the pattern has a gap from {low:g} to {high % 360:g} degrees",
+                    f"measure at least every {WIDEST_PATTERN_GAP_DEG:g} degrees all round",
+                    "pattern_db",
+                )
