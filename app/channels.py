@@ -11,6 +11,7 @@ from app.tables import rows
 
 # Older assignments stand up to 1/6 MHz off the raster, to spare a neighbour on the same channel.
 OFFSET_MHZ = 0.17
+OFFSET_SHARE = 0.1  # of the channel's width, where that is less: FM
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +72,7 @@ def centre_mhz(raster: str, channel: str) -> tuple[float, float]:
 
 
 def channel_of(raster: str, frequency_mhz: float) -> str:
-    """Name of the channel whose centre this frequency is, up to an offset of 1/6 MHz.
+    """Name of the channel whose centre this frequency is, up to an offset of 1/6 MHz or a tenth of its width.
 
     Raises
     ------
@@ -80,7 +81,7 @@ def channel_of(raster: str, frequency_mhz: float) -> str:
     """
     found = raster_of(raster)
     nearest = min(found.channels.values(), key=lambda channel: abs(channel.centre_mhz - frequency_mhz))
-    if not abs(nearest.centre_mhz - frequency_mhz) <= OFFSET_MHZ:
+    if not abs(nearest.centre_mhz - frequency_mhz) <= min(OFFSET_MHZ, OFFSET_SHARE * nearest.bandwidth_mhz):
         raise ModeError(
             f"{frequency_mhz:g} MHz is no channel's centre in raster {found.id}: "
             f"the nearest is channel {nearest.name} at {nearest.centre_mhz:.6g} MHz",
@@ -96,8 +97,8 @@ def _rasters() -> dict[str, Raster]:
     for row in rows("channels"):
         raster = found.setdefault(row["raster"], Raster(row["raster"], row["area"], {}))
         for number in range(int(row["first"]), int(row["last"]) + 1):
-            name = row["label"] or str(number)
-            centre = float(row["base_mhz"]) + float(row["step_mhz"]) * number
+            centre = round(float(row["base_mhz"]) + float(row["step_mhz"]) * number, 9)
+            name = row["label"].format(mhz=centre) or str(number)  # FM channels are called by their frequency
             raster.channels[name] = Channel(name, centre, float(row["bandwidth_mhz"]), row["flag"], row["source"])
     return found
 

@@ -91,18 +91,14 @@ def _listener(host: str, port: int) -> socket.socket:
     if not 0 <= port <= 65535:
         raise RequestError(f"port {port} is not possible: use 0 to 65535", field="port", allowed="0 to 65535")
     try:
-        family, kind, proto, _, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
-        listener = socket.socket(family, kind, proto)
-        listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-        listener.bind(address)
-        listener.listen(128)
+        family, *_, address = socket.getaddrinfo(host, port, type=socket.SOCK_STREAM)[0]
+        return socket.create_server(address, family=family, backlog=128)
     except OSError as error:
         raise RequestError(
             f"cannot listen on {host} port {port} ({error.strerror or error}): "
             "use another one with --port, or --port 0 for a free one",
             field="port",
         ) from error
-    return listener
 
 
 @main.command()
@@ -126,20 +122,24 @@ def assess(
     as_json: Json = False,
 ) -> None:
     """Say what a roof receives with each chain, and whether a better one is worth its price."""
+    from app.paths import data_dir
     from app.planner import assess as answer_to
     from app.request import AssessRequest
     from app.roof import Roof
+    from app.settings import load_settings
     from app.telling import told
     from app.world import open_world
 
     with _mendable():
         latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+        settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
             chains=tuple(chain) if chain else None,
             now=now,
             wanted=tuple(want) if want else None,
-            worth_per_multiplex=worth,
+            worth_per_multiplex=settings.worth_per_multiplex if worth is None else worth,
+            reading_cost=settings.reading_cost,
             availability_percent=availability,
             reach_km=reach,
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word

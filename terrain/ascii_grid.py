@@ -40,7 +40,7 @@ def check_ascii_grid(path: Path) -> None:
             chunk = np.frombuffer(data, dtype=np.uint8)
             if not _OF_NUMBERS[chunk].all():
                 strange = chr(chunk[~_OF_NUMBERS[chunk]][0])
-                raise RasterError(f'{path.name} has "{strange}" among its heights: write plain numbers only')
+                raise RasterError(f"{path.name} has {strange!r} among its heights: write plain numbers only")
             word = chunk > 32
             begins = word & ~np.concatenate([[in_word], word[:-1]])
             found += int(begins.sum())

@@ -16,6 +16,9 @@ from terrain.water import flat_zero_areas
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
 
+# Cells of this many samples across are kept as means; all divide a block's side.
+COARSE = (1, 4, 16, 64)
+
 # Enough that a void which may be bridged is seen whole from each block it reaches into.
 _MARGIN = BRIDGED_SAMPLES + 2
 
@@ -65,6 +68,19 @@ class Blocks:
             if at_zero.any():
                 wet[which] = at_zero & self._water(block)[r, c]
         return wet
+
+    def means(self, row: IndexArray, column: IndexArray, samples_across: float) -> FloatArray:
+        """Mean heights (n,) of the coarse cells that hold single samples.
+
+        The cells are the largest of COARSE that measure at most `samples_across` samples; missing
+        samples do not count.
+        """
+        level = max(number for number, factor in enumerate(COARSE) if factor <= max(1.0, samples_across))
+        values = np.empty(row.size)
+        for which, block, top, left in self._by_block(row, column):
+            coarse = self._means(block, level)
+            values[which] = coarse[(row[which] - top) // COARSE[level], (column[which] - left) // COARSE[level]]
+        return values
 
     def void_share(self) -> float | None:
         """Share of missing samples, 0 to 1, or None as long as the raster was never read whole."""
@@ -123,6 +139,15 @@ class Blocks:
         kept = self._cache.load(self._named("bridged", block))
         return samples if kept is None else kept
 
+    def _means(self, block: tuple[int, int], level: int) -> NDArray[np.float32]:
+        if level == 0:
+            return self._metres(self._samples(block)).astype(np.float32)
+        name = self._named(f"means{COARSE[level]}", block)
+        kept = self._cache.load(name)
+        if kept is None:
+            kept = self._cache.keep(name, _fourfold_means(self._means(block, level - 1)))
+        return kept
+
     def _water(self, block: tuple[int, int]) -> NDArray[np.bool_]:
         name = self._named("water", block)
         kept = self._cache.load(name)
@@ -155,3 +180,15 @@ class Blocks:
     def _named(self, what: str, block: tuple[int, int] | None = None) -> str:
         place = "" if block is None else f"-{block[0]}-{block[1]}"
         return f"{self._raster.content}/{what}{place}"
+
+
+def _fourfold_means(heights: NDArray[np.float32]) -> NDArray[np.float32]:
+    """Means over 4 × 4 values each, of those that are not NaN; the last cells may be smaller."""
+    rows, columns = (-(-side // 4) for side in heights.shape)
+    padded = np.full((4 * rows, 4 * columns), np.nan, dtype=np.float32)
+    padded[: heights.shape[0], : heights.shape[1]] = heights
+    cells = padded.reshape(rows, 4, columns, 4)
+    known = np.isfinite(cells)
+    count = known.sum(axis=(1, 3))
+    total = np.where(known, cells, 0).sum(axis=(1, 3))
+    return np.where(count > 0, total / np.maximum(count, 1), np.nan).astype(np.float32)

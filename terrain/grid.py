@@ -86,10 +86,24 @@ class Grid:
 
     def near(self, lat: FloatArray, lon: FloatArray) -> NDArray[np.bool_]:
         """Whether positions lie in the bounding box; a few points too many, never one too few."""
-        east_of_west = (lon - self.west_deg + 1e-6) % 360.0
-        inside: NDArray[np.bool_] = (lat >= self.south_deg - 1e-6) & (lat <= self.north_deg + 1e-6)
-        inside &= east_of_west <= self.east_deg - self.west_deg + 2e-6
+        slack = self._slack_deg
+        inside: NDArray[np.bool_] = (lat >= self.south_deg - slack) & (lat <= self.north_deg + slack)
+        inside &= (lon - self.west_deg + slack) % 360.0 <= self.east_deg - self.west_deg + 2 * slack
         return inside
+
+    def meets(self, south: float, west: float, north: float, east: float) -> bool:
+        """Whether the bounding box shares ground with another one [deg], whose east is not below its west."""
+        slack = self._slack_deg
+        if south > self.north_deg + slack or north < self.south_deg - slack:
+            return False
+        its_west_inside = (west - self.west_deg) % 360.0 <= self.east_deg - self.west_deg + slack
+        own_west_inside = (self.west_deg - west) % 360.0 <= east - west + slack
+        return its_west_inside or own_west_inside
+
+    @property
+    def _slack_deg(self) -> float:
+        """Rounding of positions; for curved edges also what bulges out between the places looked at."""
+        return 1e-6 if self.to_crs is None else 1e-3 * (self.north_deg - self.south_deg)
 
 
 def _apply(transform: Affine, across: FloatArray, down: FloatArray) -> tuple[FloatArray, FloatArray]:

@@ -10,7 +10,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from terrain.blocks import Blocks
+from terrain.blocks import COARSE, Blocks
 from terrain.cache import ArrayCache
 from terrain.errors import RasterError
 from terrain.raster import SUFFIXES, Raster, open_raster
@@ -159,6 +159,33 @@ class Ground:
         water = self._water(answer, lat.ravel(), lon.ravel())
         return answer.height_m.reshape(lat.shape), water.reshape(lat.shape)
 
+    def coarse_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
+        """Heights for pictures of wide areas [m]: means over cells of at most `cell_m`.
+
+        Rasters whose samples are not much finer than that are interpolated as ever. NaN where missing.
+        """
+        lat, lon = (position.ravel() for position in _positions(latitude_deg, longitude_deg))
+        height = np.full(lat.size, np.nan)
+        for _, layer in self._near(lat, lon):
+            grid = layer.raster.grid
+            open_still = np.nonzero(np.isnan(height))[0]
+            if cell_m < COARSE[1] * grid.spacing_m:
+                height[open_still] = self._interpolate(layer, lat[open_still], lon[open_still], bridged=False)
+                continue
+            row, column = grid.index(lat[open_still], lon[open_still])
+            inside = (row > -0.5) & (row < grid.rows - 0.5) & (column > -0.5) & (column < grid.columns - 0.5)
+            height[open_still[inside]] = layer.blocks.means(
+                np.rint(row[inside]).astype(np.intp),
+                np.rint(column[inside]).astype(np.intp),
+                cell_m / grid.spacing_m,
+            )
+        return height.reshape(np.broadcast_shapes(np.shape(latitude_deg), np.shape(longitude_deg)))
+
+    def finest_spacing_m(self, south: float, west: float, north: float, east: float) -> float:
+        """Spacing of the finest raster that reaches into a box [deg], in m; infinite if none does."""
+        near = self._near(np.array([south, north]), np.array([west, east]))
+        return min((layer.raster.grid.spacing_m for _, layer in near), default=float("inf"))
+
     def covers(self, latitude_deg: float, longitude_deg: float) -> bool:
         """Whether there is an elevation at a position."""
         return bool(np.isfinite(self.elevation_m(latitude_deg, longitude_deg)).all())
@@ -166,8 +193,9 @@ class Ground:
     def _answer(self, lat: FloatArray, lon: FloatArray) -> _Answer:
         answer = _Answer(np.full(lat.size, np.nan), np.full(lat.size, -1), np.zeros(lat.size, dtype=bool))
         reached = np.zeros(lat.size, dtype=bool)
+        near = self._near(lat, lon)
         for bridged in (False, True):
-            for number, layer in enumerate(self._layers):
+            for number, layer in near:
                 open_still = np.nonzero(answer.layer < 0 if not bridged else (answer.layer < 0) & reached)[0]
                 open_still = open_still[layer.raster.grid.near(lat[open_still], lon[open_still])]
                 if open_still.size == 0:
@@ -179,6 +207,18 @@ class Ground:
                 answer.layer[open_still[known]] = number
                 answer.bridged[open_still[known]] = bridged
         return answer
+
+    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer]]:
+        """Layers whose bounding box meets that of the positions, with their numbers."""
+        south, north = np.fmin.reduce(lat, initial=90.0), np.fmax.reduce(lat, initial=-90.0)
+        west, east = np.fmin.reduce(lon, initial=540.0), np.fmax.reduce(lon, initial=-540.0)
+        if not (south <= north and west <= east):
+            return []
+        return [
+            (number, layer)
+            for number, layer in enumerate(self._layers)
+            if layer.raster.grid.meets(south, west, north, east)
+        ]
 
     def _interpolate(self, layer: _Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
         """Bilinear heights of one raster, NaN outside its outer pixel edges and at voids."""
@@ -264,10 +304,11 @@ def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[Float
 def _snapped(row: FloatArray, column: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Row and column with rounding errors taken off whole numbers."""
     whole_row, whole_column = np.rint(row), np.rint(column)
-    return (
-        np.where(np.abs(row - whole_row) < _ROUNDING, whole_row, row),
-        np.where(np.abs(column - whole_column) < _ROUNDING, whole_column, column),
-    )
+    with np.errstate(invalid="ignore"):  # infinite where a coordinate system does not reach
+        return (
+            np.where(np.abs(row - whole_row) < _ROUNDING, whole_row, row),
+            np.where(np.abs(column - whole_column) < _ROUNDING, whole_column, column),
+        )
 
 
 def _within(layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:

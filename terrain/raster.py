@@ -8,10 +8,10 @@ from __future__ import annotations
 
 import hashlib
 import json
+import shlex
 import threading
 import tomllib
 import warnings
-import zipfile
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -26,21 +26,22 @@ from pyproj import CRS
 from pyproj.exceptions import CRSError
 from rasterio.windows import Window
 
+from terrain import hgt
 from terrain.ascii_grid import check_ascii_grid
 from terrain.errors import RasterError, UnplacedRasterError
 from terrain.grid import Grid, crs_text
 
 KINDS = ("surface", "radar-surface", "bare")
-SUFFIXES = (".tif", ".tiff", ".hgt", ".asc", ".zip", ".hgt.gz")
+SUFFIXES = (".tif", ".tiff", ".asc", *hgt.SUFFIXES)
 
 # Samples along each side of a block: whole tiles of 1 arc-second, and 32 MB of 16-bit samples.
+# A multiple of the largest coarse cell (blocks.py).
 BLOCK_SIDE = 4096
 
 _UNREADABLE = (
     "is no raster we can read, or is cut short: use GeoTIFF, .hgt, .hgt.zip, .hgt.gz or an ESRI ASCII grid (.asc)"
 )
-_DRIVERS = {".tif": "GTiff", ".tiff": "GTiff", ".hgt": "SRTMHGT", ".asc": "AAIGrid"}
-_ZIPPED = (".tif", ".tiff", ".hgt")  # grids of text are looked over as plain files
+_DRIVERS = {".tif": "GTiff", ".tiff": "GTiff", ".asc": "AAIGrid"}
 _METRES = {
     "": 1.0, "m": 1.0, "metre": 1.0, "meter": 1.0, "metres": 1.0, "meters": 1.0,
     "ft": 0.3048, "foot": 0.3048, "feet": 0.3048, "international foot": 0.3048,
@@ -87,15 +88,11 @@ class Raster:
 
         Raises RasterError where the file is damaged there.
         """
-        window = Window(column, row, columns, rows)
-        with _open(self.path) as file:
-            try:
-                raw = file.read(1, window=window)
-                missing = file.read_masks(1, window=window) == 0
-            except rasterio.errors.RasterioError as error:
-                raise RasterError(
-                    f"{self.name} is damaged or cut short near row {row}: fetch it again or take it out"
-                ) from error
+        if _is_hgt(self.path):
+            raw = hgt.read_hgt(self.path)[row : row + rows, column : column + columns]
+            missing = raw == hgt.VOID
+        else:
+            raw, missing = _window(self.path, Window(column, row, columns, rows))
         if self.zero_declared_void:
             missing &= raw != 0
         lowest, highest = ((limit - self.offset_m) / self.scale for limit in (_LOWEST_M, _HIGHEST_M))
@@ -144,27 +141,52 @@ def open_raster(path: Path) -> Raster:
     """
     said = _declared(path)
     _check_declared(path, said)
-    if not path.is_file() or path.stat().st_size == 0:
-        raise RasterError(f"{path.name} is empty or not a file: fetch it again or take it out")
-    if path.suffix.lower() == ".asc":
-        check_ascii_grid(path)
+    try:
+        if not path.is_file() or path.stat().st_size == 0:
+            raise RasterError(f"{path.name} is empty or not a file: fetch it again or take it out")
+        if path.suffix.lower() == ".asc":
+            check_ascii_grid(path)
+        return _hgt_header(path, said) if _is_hgt(path) else _header(path, said)
+    except OSError as error:
+        raise RasterError(f"{path.name} cannot be read ({error.strerror or error}): see to its permissions") from error
+
+
+def _is_hgt(path: Path) -> bool:
+    return path.name.lower().endswith(hgt.SUFFIXES)
+
+
+def _hgt_header(path: Path, said: dict[str, str]) -> Raster:
+    side, transform = hgt.hgt_header(path)
+    crs = CRS.from_user_input(said.get("crs", "EPSG:4326"))
+    return Raster(
+        path=path,
+        kind=said.get("kind", "radar-surface"),
+        grid=_grid(path, side, side, transform, crs),
+        crs=crs_text(crs),
+        dtype="int16",
+        void=hgt.VOID,
+        zero_declared_void=False,
+        scale=1.0,
+        offset_m=0.0,
+        block_rows=side,
+        block_columns=side,
+        attribution="",
+        content=_content(path, ("hgt", side)),
+    )
+
+
+def _header(path: Path, said: dict[str, str]) -> Raster:
     with _open(path) as file:
         _check_bands(path, file)
         crs = _crs(path, file, said.get("crs"))
-        try:
-            grid = Grid.place(file.height, file.width, _transform(path, file), crs)
-        except RasterError as error:
-            raise RasterError(
-                f"{path.name}: {error}. Declare the right one: gainworth terrain add {path} --crs EPSG:NUMBER"
-            ) from error
+        grid = _grid(path, file.height, file.width, _transform(path, file), crs)
         scale, offset_m = _metres(path, file, crs)
         _check_end(path, file)
         dtype = _CACHED_AS.get(file.dtypes[0], file.dtypes[0])
-        striped = file.block_shapes[0][1] == file.width
-        default_kind = "radar-surface" if file.driver == "SRTMHGT" else "surface"
+        striped = file.block_shapes[0][1] == file.width <= 16 * BLOCK_SIDE
         return Raster(
             path=path,
-            kind=said.get("kind", default_kind),
+            kind=said.get("kind", "surface"),
             grid=grid,
             crs=crs_text(crs),
             dtype=dtype,
@@ -172,7 +194,7 @@ def open_raster(path: Path) -> Raster:
             zero_declared_void=file.nodata == 0,
             scale=scale,
             offset_m=offset_m,
-            block_rows=max(64, BLOCK_SIDE**2 // file.width) if striped else BLOCK_SIDE,
+            block_rows=max(1, BLOCK_SIDE**2 // file.width // 64) * 64 if striped else BLOCK_SIDE,
             block_columns=file.width if striped else BLOCK_SIDE,
             attribution=file.tags().get("TIFFTAG_COPYRIGHT", ""),
             content=_content(path, (file.shape, dtype, file.nodata, scale, offset_m)),
@@ -182,49 +204,39 @@ def open_raster(path: Path) -> Raster:
 @contextmanager
 def _open(path: Path) -> Iterator[Any]:
     """The open dataset. The driver follows from the name: nothing else is tried."""
-    inner, driver = _inside(path)
-    # GDAL takes a grid for whole numbers from its first lines, and would cut later decimals off.
-    options = {"DATATYPE": "Float32"} if driver == "AAIGrid" else {}
-    with rasterio.Env(CPL_VSIL_GZIP_WRITE_PROPERTIES="NO"):
-        try:
-            # A file without place makes rasterio warn; we answer that ourselves. The lock is for
-            # the list of warning filters, which Python shares between threads.
-            with _WARNINGS, warnings.catch_warnings():
-                warnings.simplefilter("ignore", rasterio.errors.NotGeoreferencedWarning)
-                file = rasterio.open(inner, driver=driver, **options)
-        except rasterio.errors.RasterioError as error:
-            named = ", and .hgt files are named by their place, such as N49E011" if driver == "SRTMHGT" else ""
-            raise RasterError(f"{path.name} {_UNREADABLE}{named}") from error
-        with file:
-            yield file
-
-
-def _inside(path: Path) -> tuple[str, str]:
-    """What GDAL is to open, and with which driver."""
-    name = path.name.lower()
-    prefix, member = "", path.name
-    if name.endswith(".gz"):
-        prefix, member = "/vsigzip/", path.name[:-3]
-    elif name.endswith(".zip"):
-        member = _member(path)
-        prefix = "/vsizip/"
-    driver = _DRIVERS.get(Path(member).suffix.lower())
+    driver = _DRIVERS.get(path.suffix.lower())
     if driver is None:
         raise RasterError(f"{path.name} {_UNREADABLE}")
-    inner = f"{prefix}{path.resolve()}" + (f"/{member}" if prefix == "/vsizip/" else "")
-    return inner, driver
-
-
-def _member(path: Path) -> str:
-    """Name of the one raster in a zip file."""
+    # GDAL takes a grid for whole numbers from its first lines, and would cut later decimals off.
+    options = {"DATATYPE": "Float32"} if driver == "AAIGrid" else {}
     try:
-        with zipfile.ZipFile(path) as archive:
-            rasters = [name for name in archive.namelist() if Path(name).suffix.lower() in _ZIPPED]
-    except (zipfile.BadZipFile, OSError) as error:
-        raise RasterError(f"{path.name} is no zip file, or is cut short: fetch it again") from error
-    if len(rasters) != 1:
-        raise RasterError(f"{path.name} holds {len(rasters)} rasters: give zip files with one raster each")
-    return rasters[0]
+        # A file without place makes rasterio warn; we answer that ourselves. The lock is for
+        # the list of warning filters, which Python shares between threads.
+        with _WARNINGS, warnings.catch_warnings():
+            warnings.simplefilter("ignore", rasterio.errors.NotGeoreferencedWarning)
+            file = rasterio.open(path, driver=driver, **options)
+    except rasterio.errors.RasterioError as error:
+        raise RasterError(f"{path.name} {_UNREADABLE}") from error
+    with file:
+        yield file
+
+
+def _window(path: Path, window: Window) -> tuple[NDArray[Any], NDArray[np.bool_]]:
+    """Samples as they are stored, and which the file says are missing."""
+    with _open(path) as file:
+        try:
+            return file.read(1, window=window), file.read_masks(1, window=window) == 0
+        except (rasterio.errors.RasterioError, MemoryError) as error:
+            raise RasterError(
+                f"{path.name} is damaged or cut short near row {window.row_off}: fetch it again or take it out"
+            ) from error
+
+
+def _grid(path: Path, rows: int, columns: int, transform: Affine, crs: CRS) -> Grid:
+    try:
+        return Grid.place(rows, columns, transform, crs)
+    except RasterError as error:
+        raise RasterError(f"{path.name}: {error}. Declare the right one: {_command(path)}") from error
 
 
 def _check_bands(path: Path, file: Any) -> None:
@@ -246,16 +258,19 @@ def _crs(path: Path, file: Any, declared: str | None) -> CRS:
     if not file.crs:
         raise UnplacedRasterError(
             f"{path.name} does not say in which coordinate system it lies. Declare it: "
-            f"gainworth terrain add {path} --crs EPSG:4326 "
+            f"{_command(path, '4326')} "
             "(EPSG:4326 for degrees of longitude and latitude, else the number that its source names)"
         )
     try:
         return CRS.from_wkt(file.crs.to_wkt())
     except CRSError as error:
         raise UnplacedRasterError(
-            f"{path.name} lies in a coordinate system that we do not know. Declare it: "
-            f"gainworth terrain add {path} --crs EPSG:NUMBER"
+            f"{path.name} lies in a coordinate system that we do not know. Declare it: {_command(path)}"
         ) from error
+
+
+def _command(path: Path, number: str = "NUMBER") -> str:
+    return f"gainworth terrain add {shlex.quote(str(path))} --crs EPSG:{number}"
 
 
 def _transform(path: Path, file: Any) -> Affine:
@@ -280,7 +295,7 @@ def _metres(path: Path, file: Any, crs: CRS) -> tuple[float, float]:
 
 
 def _check_end(path: Path, file: Any) -> None:
-    """The last sample of a GeoTIFF can be read: else the file is cut short. (Other drivers look at the size.)"""
+    """The last sample of a GeoTIFF can be read: else the file is cut short. (Grids of text are counted before.)"""
     if file.driver != "GTiff":
         return
     try:

@@ -25,6 +25,7 @@ from app.chain.parts import (
 )
 from app.chain.tables import CABLES, SPLITTERS
 from app.errors import ChainError
+from app.tables import told_source
 
 FloatArray = NDArray[np.float64]
 
@@ -67,11 +68,11 @@ def stage_of(part: Part, frequency_mhz: ArrayLike, through: bool = False, entry:
             return Stage(part, part.gain_db * everywhere, part.noise_figure_db * everywhere, AS_STATED)
         case Feeder():
             cable = CABLES[part.cable]
-            source = f"{part.length_m:g} m of {cable.id}, a√f + bf; {cable.source} ({cable.flag})"
+            source = f"{part.length_m:g} m of {cable.id}, a√f + bf; {told_source(cable.source, cable.flag)}"
             return _passive(part, feeder_loss_db(part, f), source)
         case Splitter():
             known = SPLITTERS[part.ports] if part.loss_db is None else None
-            source = AS_STATED if known is None else f"{known.ports} ports; {known.source} ({known.flag})"
+            source = AS_STATED if known is None else f"{known.ports} ports; {told_source(known.source, known.flag)}"
             return _passive(part, splitter_loss_db(part) * everywhere, source)
         case Tap():
             loss_db = part.through_loss_db if through else part.tap_loss_db

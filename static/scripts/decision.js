@@ -51,7 +51,7 @@ export function createDecision(element, { place }) {
       const item = document.createElement('li');
       const button = Object.assign(document.createElement('button'), { type: 'button', textContent: roof.name });
       button.addEventListener('click', () => place(roof));
-      item.append(button, ` ${roof.shows}`);
+      item.append(button, Object.assign(document.createElement('span'), { textContent: roof.shows }));
       return item;
     }));
   }
@@ -71,6 +71,7 @@ function counted(state, verdict) {
   const worth = state.answer.assumptions.find((one) => one.id === 'worth_per_multiplex')?.value;
   const lines = [];
   if (worth !== undefined) lines.push(`One more multiplex is counted as worth ${moneyText(worth, currency)}.`);
-  if (verdict.cheapest_equal) lines.push(`${titleOf(state, verdict.cheapest_equal)} brings the same for less.`);
+  const equal = verdict.cheapest_equal;
+  if (equal) lines.push(equal === verdict.baseline ? 'What is up now brings the same.' : `${titleOf(state, equal)} brings the same for less.`);
   return lines.join(' ');
 }

@@ -21,28 +21,30 @@ export function createLedger(element) {
     title.textContent = `${cell.multiplex.name} from the mast to ${outlet.name}, through ${titleOf(state, cell.chain)}`;
     const totals = [0, ...outlet.ledger.map((step) => step.total)];
     const scale = { low: Math.min(...totals), high: Math.max(...totals) };
+    body.style.setProperty('--zero', `${placed(0, scale)}%`);
     body.replaceChildren(...outlet.ledger.map((step, place) => line(step, totals[place], scale)));
     body.append(line({ step: 'margin', value_db: null, total: outlet.margin_db, source: '' }, 0, scale));
     body.lastElementChild?.classList.add('result');
   }
 
   /** @param {any} step @param {number} from total before the step @param {{low: number, high: number}} scale */
-  function line(step, from, { low, high }) {
+  function line(step, from, scale) {
     const made = /** @type {HTMLElement} */ (row.content.cloneNode(true));
     made.querySelector('th').textContent = step.step;
     made.querySelector('.value').textContent = step.value_db === null ? '' : signedText(step.value_db);
     made.querySelector('.total').textContent = numberText(step.total, 1);
     made.querySelector('.source').textContent = step.source;
-    const place = (value) => (100 * (value - low)) / (high - low || 1);
     const bar = document.createElementNS(SVG, 'rect');
-    const [left, right] = [place(from), place(step.total)].sort((a, b) => a - b);
+    const [left, right] = [placed(from, scale), placed(step.total, scale)].sort((a, b) => a - b);
     for (const [key, value] of Object.entries({ x: left, y: 2, width: Math.max(0.4, right - left), height: 6 })) bar.setAttribute(key, String(value));
     bar.setAttribute('class', step.value_db === null ? 'end' : step.value_db < 0 ? 'down' : 'up');
-    const zero = document.createElementNS(SVG, 'path');
-    zero.setAttribute('d', `M${place(0)} 0V10`);
-    zero.setAttribute('class', 'zero');
-    made.querySelector('svg').append(zero, bar);
+    made.querySelector('svg').append(bar);
     return made;
   }
   return { update };
+}
+
+/** @param {number} value @param {{low: number, high: number}} scale @returns {number} percent of the width */
+function placed(value, { low, high }) {
+  return (100 * (value - low)) / (high - low || 1);
 }

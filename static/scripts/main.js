@@ -19,7 +19,7 @@ const store = createStore(initialState());
 const byId = (id) => /** @type {any} */ (document.getElementById(id));
 
 const panels = [
-  createWhere(byId('where'), { type: (change) => store.set(change), submit: assess, choose }),
+  createWhere(byId('where'), { type, submit: assess, choose }),
   createDecision(byId('decision'), { place }),
   createChanges(byId('changes'), { choose }),
   createRoofline(byId('roofline')),
@@ -49,6 +49,12 @@ async function assess() {
     const answer = error.status >= 400 && error.status < 500 ? null : store.get().answer;
     store.set({ answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
   }
+}
+
+/** @param {Partial<import('./state.js').State>} change what is being typed; kept even if it is never sent */
+function type(change) {
+  store.set(change);
+  remember();
 }
 
 /** @param {import('./state.js').Place} at a place shown on the map */

@@ -262,6 +262,15 @@ def test_the_next_visit_and_a_link_bring_everything_back(page, watched, browser)
     expect(other.locator(".sentence")).to_have_text(told)
 
 
+def test_what_was_only_typed_is_there_after_a_reload(page):
+    start(page)
+    page.get_by_label("Roof at").fill("44.3, ")
+    page.get_by_label("Aerial").fill("7")
+    page.reload()
+    expect(page.get_by_label("Roof at")).to_have_value("44.3, ")
+    expect(page.get_by_label("Aerial")).to_have_value("7")
+
+
 def test_a_link_of_another_version_starts_empty(page):
     start(page, "#v=99&at=1,2")
     expect(page.locator(".sentence")).to_contain_text("Where is the roof?")

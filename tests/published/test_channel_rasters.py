@@ -1,5 +1,6 @@
 """Channel rasters against single published channels, typed here one by one; sources and flags beside each."""
 
+import numpy as np
 import pytest
 
 from app.channels import centre_mhz, channel_of, rasters
@@ -33,6 +34,15 @@ POINTS = [
     ("australia-7", "12", 226.5, 7.0, "ACMA, from memory", "MH"),
     ("australia-7", "28", 529.5, 7.0, "ACMA: 526 to 533 MHz, from memory", "MH"),
     ("australia-7", "51", 690.5, 7.0, "ACMA: 687 to 694 MHz, from memory", "MH"),
+    ("dab-band-iii", "5A", 174.928, 1.536, "Wiesbaden 1995, GE06, from memory", "MH"),
+    ("dab-band-iii", "12B", 225.648, 1.536, "Wiesbaden 1995, GE06, from memory", "MH"),
+    ("dab-band-iii", "13F", 239.2, 1.536, "Wiesbaden 1995, GE06, from memory", "MH"),
+    ("fm-100", "87.5", 87.5, 0.2, "Rec. ITU-R BS.450, from memory", "MH"),
+    ("fm-100", "108.0", 108.0, 0.2, "Rec. ITU-R BS.450, from memory", "MH"),
+    ("fm-americas-200", "201", 88.1, 0.2, "47 CFR 73.201, from memory", "MH"),
+    ("fm-americas-200", "300", 107.9, 0.2, "47 CFR 73.201, from memory", "MH"),
+    ("fm-japan-100", "76.0", 76.0, 0.2, "Japanese FM band, from memory", "MH"),
+    ("fm-japan-100", "95.0", 95.0, 0.2, "Japanese FM band, from memory", "MH"),
 ]
 RECALLED = [
     ("south-africa-vhf-8", "4", 178.0, 8.0),
@@ -60,4 +70,13 @@ def test_consistency_with_national_plans_recalled_with_less_certainty(raster, ch
 
 def test_every_raster_is_checked_at_one_point_or_more():
     assert {raster.id for raster in rasters()} == {point[0] for point in (*POINTS, *RECALLED)}
-    assert len(POINTS) == 27
+    assert len(POINTS) == 36
+
+
+def test_dab_blocks_keep_their_distance():
+    """EN 50248 and GE06, from memory (MH): 1.712 MHz between blocks of a 7 MHz channel; 38 blocks and three N."""
+    (dab,) = (raster for raster in rasters() if raster.id == "dab-band-iii")
+    assert len(dab.channels) == 41
+    for channel in range(5, 13):
+        centres = [dab.channels[f"{channel}{letter}"].centre_mhz for letter in "ABCD"]
+        assert np.diff(centres) == pytest.approx(np.full(3, 1.712), abs=1e-6)

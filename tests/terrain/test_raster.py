@@ -146,7 +146,7 @@ def test_ascii_grid_with_decimals_far_behind_keeps_them(tmp_path):
     ("body", "message"),
     [
         ("1 2 3 4\n5 6 7", "7 heights where its header says 12: it is cut short"),
-        ("1 2 3 4\n5 6 7 8\n9 10 11 x", '"x" among its heights: write plain numbers'),
+        ("1 2 3 4\n5 6 7 8\n9 10 11 x", "'x' among its heights: write plain numbers"),
     ],
 )
 def test_bad_ascii_grid_says_what_is_wrong(tmp_path, body, message):
@@ -229,7 +229,7 @@ def test_what_is_no_raster_is_refused(tmp_path, name, content):
     path = tmp_path / name
     if content is not None:
         path.write_bytes(content)
-    with pytest.raises(RasterError, match=r"is empty or not a file|no raster we can read"):
+    with pytest.raises(RasterError, match=r"is empty or not a file|no raster we can read|cut short or no \.hgt tile"):
         open_raster(path)
 
 
@@ -259,9 +259,25 @@ def test_an_hgt_file_cut_short_is_refused(tmp_path, srtm, suffix):
         open_raster(path)
 
 
+@pytest.mark.parametrize("suffix", [".gz", ".zip"])
+def test_damage_inside_a_packed_tile_is_said_when_it_is_read(tmp_path, srtm, suffix):
+    path = tmp_path / f"N49E011.hgt{suffix}"
+    if suffix == ".gz":
+        path.write_bytes(gzip.compress(srtm, 1))
+    else:
+        with zipfile.ZipFile(path, "w", zipfile.ZIP_DEFLATED) as archive:
+            archive.writestr("N49E011.hgt", srtm)
+    content = bytearray(path.read_bytes())
+    content[len(content) // 2] ^= 0xFF
+    path.write_bytes(content)
+    raster = open_raster(path)
+    with pytest.raises(RasterError, match="is damaged"):
+        raster.read(0, 0, 10, 10)
+
+
 def test_an_hgt_file_with_another_name_says_how_to_name_it(tmp_path, srtm):
     (tmp_path / "hills.hgt").write_bytes(srtm)
-    with pytest.raises(RasterError, match="named by their place, such as N49E011"):
+    with pytest.raises(RasterError, match="named by their south-west corner, such as N49E011"):
         open_raster(tmp_path / "hills.hgt")
 
 
@@ -269,7 +285,7 @@ def test_a_zip_of_several_rasters_is_refused(tmp_path, srtm):
     with zipfile.ZipFile(tmp_path / "two.zip", "w", zipfile.ZIP_DEFLATED) as archive:
         archive.writestr("N49E011.hgt", srtm)
         archive.writestr("N49E012.hgt", srtm)
-    with pytest.raises(RasterError, match="holds 2 rasters: give zip files with one raster each"):
+    with pytest.raises(RasterError, match=r"holds 2 \.hgt tiles: give zip files with one each"):
         open_raster(tmp_path / "two.zip")
 
 
