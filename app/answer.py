@@ -11,7 +11,7 @@ from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
 from app.fields import EmissionField
-from app.link_budget import ledger_steps
+from app.ledger import book_of
 from app.margins import Air, Turned
 from app.request import AssessRequest
 from app.site import Site

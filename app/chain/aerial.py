@@ -41,6 +41,11 @@ def off_axis_deg(bearing_deg: ArrayLike, pointing_deg: ArrayLike) -> NDArray[np.
     return np.asarray(np.abs((difference + 180) % 360 - 180))
 
 
+def clockwise_deg(bearing_deg: ArrayLike, pointing_deg: ArrayLike) -> NDArray[np.float64]:
+    """Angle of a bearing clockwise from the aerial's axis, 0 to 360 [deg]; broadcasts."""
+    return np.asarray((np.asarray(bearing_deg, dtype=float) - np.asarray(pointing_deg, dtype=float)) % 360)
+
+
 def pattern_loss_db(
     aerial: Aerial,
     off_axis_deg: ArrayLike,
@@ -60,11 +65,18 @@ def pattern_loss_db(
     Pattern "dipole" is a figure of eight, cos(x)^2, with nulls no deeper than `null_db`. With its rods
     upright (`polarisation` "vertical") a dipole is round.
 
+    Pattern "measured" is the table of the part, clockwise off the axis, with straight lines in dB between its
+    angles and round the back.
+
     References
     ----------
     The half-wave dipole's figure of eight is taken as the cosine of the short dipole (antenna texts; 90
     instead of 78 degrees between the half-power points).
     """
+    if aerial.pattern == "measured":
+        table = np.array(aerial.pattern_db)
+        angle = np.asarray(off_axis_deg, dtype=float) % 360
+        return np.asarray(np.interp(angle, table[:, 0], table[:, 1], period=360))
     x = np.radians(np.asarray(off_axis_deg, dtype=float))
     if aerial.pattern == "dipole":
         if polarisation == "vertical":

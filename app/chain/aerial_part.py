@@ -11,7 +11,7 @@ AerialPolarisation = Literal["horizontal", "vertical"]
 AERIAL_POLARISATIONS: tuple[AerialPolarisation, ...] = ("horizontal", "vertical")
 PATTERNS = ("class", "dipole", "measured")
 PLACES = ("roof", "loft", "room")
-BUILDINGS = ("traditional", "efficient")
+BUILDINGS = ("traditional", "thermally_efficient")
 PLANES = ("horizontal", "vertical")
 STACKS = (1, 2, 4)
 WIDEST_PATTERN_GAP_DEG = 15.0  # of a measured pattern: a wider gap hides side lobes
@@ -31,7 +31,7 @@ class Aerial(Part):
     pattern_db: Table = ()  # (degrees off the axis clockwise, loss against the axis), only if measured
     polarisation: AerialPolarisation | None = None  # None: may be mounted either way
     place: Literal["roof", "loft", "room"] = "roof"
-    building: Literal["traditional", "efficient"] = "traditional"  # round a room
+    building: Literal["traditional", "thermally_efficient"] = "traditional"  # round a room
     measured: bool = True  # False: own build whose gain nobody measured
     reflection: Table = ()  # (frequency_mhz, |Γ| at 75 ohms) as measured
     gain_includes_mismatch: bool = True  # a catalogue's or measured gain does
