@@ -45,10 +45,10 @@ class Blocks:
         corners = np.empty((4, row.size))
         for which, block, top, left in self._by_block(row, column):
             samples = self._bridged(block) if bridged else self._samples(block)
-            r, c = row[which] - top, column[which] - left
-            corners[:, which] = self._metres(
-                np.stack([samples[r, c], samples[r, c + 1], samples[r + 1, c], samples[r + 1, c + 1]])
-            )
+            width = samples.shape[1]
+            first = (row[which] - top) * width + (column[which] - left)
+            for corner, offset in enumerate((0, 1, width, width + 1)):
+                corners[corner, which] = self._metres(samples.ravel().take(first + offset))
         return corners
 
     def samples(self, row: IndexArray, column: IndexArray, bridged: bool) -> FloatArray:
@@ -121,8 +121,12 @@ class Blocks:
         return groups
 
     def _metres(self, samples: NDArray[Any]) -> FloatArray:
-        heights: FloatArray = samples * float(self._raster.scale) + self._raster.offset_m
-        heights[is_void(samples, self._raster.void)] = np.nan
+        missing = is_void(samples, self._raster.void)
+        heights: FloatArray = samples.astype(float)
+        if (self._raster.scale, self._raster.offset_m) != (1.0, 0.0):
+            heights = heights * self._raster.scale + self._raster.offset_m
+        if missing.any():
+            heights[missing] = np.nan
         return heights
 
     def _samples(self, block: tuple[int, int]) -> NDArray[Any]:
