@@ -9,9 +9,9 @@ import numpy as np
 
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
-from app.chance import GRADES, exceedance, grade
+from app.chance import GRADES, exceedance, grade, not_too_much
 from app.fields import EmissionField
-from app.ledger import book_of
+from app.ledger import Book, book_of
 from app.margins import Air, Turned
 from app.request import AssessRequest
 from app.site import Site
@@ -28,10 +28,7 @@ CAUTIONS = (
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
 METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
-NOT_YET = (
-    "Interference from other transmitters is not counted yet: a chance can be lower than shown.",
-    "Overload by strong signals is not counted yet.",
-)
+NOT_YET = ("Interference from other transmitters is not counted yet: a chance can be lower than shown.",)
 
 
 def answer_document(
@@ -50,6 +47,7 @@ def answer_document(
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
+    books = {key: _book(one, air, request, assumptions) for key, one in turned.items()}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -67,7 +65,7 @@ def answer_document(
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, air, assumptions) for field in fields],
+        "emissions": [_emission(request, field, fields, place, turned, air, books) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
@@ -97,7 +95,7 @@ def _emission(
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
     air: Air,
-    assumptions: Assumptions,
+    books: Mapping[str, Book],
 ) -> dict[str, Any]:
     emission, path = field.emission, field.path
     e = place.get(emission.id)
@@ -145,30 +143,20 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, e, field, air, assumptions) for name, one in turned.items()},
+        else {name: _cell(request, one, e, field, air, books[name]) for name, one in turned.items()},
     }
 
 
-def _cell(
-    request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, assumptions: Assumptions
-) -> dict[str, Any]:
+def _cell(request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, book: Book) -> dict[str, Any]:
     sigma_db = float(turned.cells.sigma_db[e])
     limit = _limit(turned, e)
+    loudest_sd_db = turned.median.of_loudest(turned.cells.sigma_db)[0]
     before = _ledger_to_field(field, request.availability_percent)
     outlets = []
     for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
         margin_db = float(outlet.margin_db[e])
-        steps = ledger_steps(
-            turned.chain,
-            air.signals,
-            e,
-            field.used_dbuv_m - field.fade_db,
-            turned.pointing_deg,
-            turned.polarisation,
-            assumptions,
-            request.roof.surroundings,
-            outlet.name,
-        )
+        headroom_db = float(median.headroom_db[e])
+        enough = exceedance(np.array(margin_db), np.array(sigma_db))
         outlets.append(
             {
                 "name": outlet.name,
@@ -177,8 +165,8 @@ def _cell(
                 "cn_db": round(float(outlet.cn_db[e]), 2),
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),
-                "headroom_db": None,
-                "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
+                "headroom_db": round(headroom_db, 2),
+                "chance": _probability(float(not_too_much(enough, np.array(headroom_db), loudest_sd_db))),
                 "held_back_by": limit,
                 "ledger": [
                     *before,
@@ -190,7 +178,9 @@ def _cell(
                             "source": step.source,
                             "state": "a",
                         }
-                        for step in steps[1:]  # the first is the field, which the steps before end with
+                        for step in book.steps(e, outlet.name)[
+                            1:
+                        ]  # the first is the field, which the steps before end with
                     ),
                 ],
             }
@@ -202,6 +192,19 @@ def _cell(
         "held_back_by": limit,
         "outlets": outlets,
     }
+
+
+def _book(turned: Turned, air: Air, request: AssessRequest, assumptions: Assumptions) -> Book:
+    return book_of(
+        turned.chain,
+        air.signals,
+        air.used_dbuv_m - air.fade_db,
+        turned.pointing_deg,
+        turned.polarisation,
+        assumptions,
+        request.roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
+    )
 
 
 def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[dict[str, Any]]:

@@ -23,6 +23,7 @@ from app.link_budget import (
     noise_factor_at,
     outlets_of,
     set_noise_figure_db,
+    summed_dbuv,
 )
 from propagation.noise import man_made_fam_db, noise_power_dbm
 from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
@@ -187,13 +188,12 @@ class Book:
         run = self.runs[number][0]
         words = []
         for name, place in run.amplifiers.items():
-            gain_db = db_from_ratio(np.maximum(next(iter(place.gain.values())), 1e-30))
-            level = next(iter(self.heard.load_dbuv.values())) + gain_db
+            level = summed_dbuv(self.heard.load_dbuv, place.gain)
             strong = int((level > np.nanmax(level) - 20).sum()) if level.size else 0
             derated = run.rated_dbuv[name] - overload.derating_db(max(strong, 2))
             words.append(
-                f"{self.chain.tree.part(name).name} puts out {float(overload.power_sum_dbuv(level)):.0f} dB(µV) in all, "
-                f"{strong} channels: rated {run.rated_dbuv[name]:g}, {derated:.0f} each by the trade's derating"
+                f"{self.chain.tree.part(name).name} puts out {float(overload.power_sum_dbuv(level)):.0f} dB(µV) "
+                f"in all, {strong} channels: rated {run.rated_dbuv[name]:g}, {derated:.0f} each by the trade's derating"
             )
         return "; ".join(words)
 

@@ -91,6 +91,23 @@ class Reception:
         """Whether too much level holds an emission back sooner than too little. (…, e)"""
         return (self.headroom_db < self.margin_db) | (self.intermodulation_dbuv > self.noise_dbuv)
 
+    @property
+    def loudest(self) -> NDArray[np.intp]:
+        """Row of the emission with the highest level, 0 if there is none. (…)"""
+        if not self.level_dbuv.shape[-1]:
+            return np.zeros(self.level_dbuv.shape[:-1], dtype=np.intp)
+        return np.asarray(np.argmax(np.nan_to_num(self.level_dbuv, nan=-np.inf), axis=-1))
+
+    def of_loudest(self, values: FloatArray) -> FloatArray:
+        """Value of the loudest emission, from values (…, e). (…, 1)"""
+        if not self.level_dbuv.shape[-1]:
+            return values
+        return np.asarray(
+            np.take_along_axis(
+                np.broadcast_to(values, self.level_dbuv.shape), np.asarray(self.loudest)[..., np.newaxis], axis=-1
+            )
+        )
+
 
 def receive(
     chain: Chain,
@@ -150,9 +167,7 @@ def receive_with_noise(
     other_pointings: Mapping[str, ArrayLike] | None = None,
 ) -> Reception:
     """Return the same as `receive`, for a stated noise from outside over 290 K [dB], (e,) or scalar."""
-    heard = hear(
-        chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m, other_pointings
-    )
+    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m, other_pointings)
     outside = np.maximum(ratio_from_db(external_fam_db), 1) - 1
     best: Reception | None = None
     for setting in settings(chain):

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import Cells, ErrorPart, PathError, exceedance, received
+from app.chance import Cells, ErrorPart, PathError, capped, exceedance, not_too_much, received
 from app.fields import EmissionField
 from app.link_budget import Reception, Signals, receive
 from app.roof import Roof
@@ -58,7 +58,9 @@ class Turned:
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
 
     def limit(self, e: int) -> str:
-        """What holds one emission back: time where only the fade takes it below what it needs, else noise."""
+        """What holds one emission back: overload, time where only the fade takes it below what it needs, else noise."""
+        if self.median.is_overload[e]:
+            return "overload"
         return "time" if self.median.margin_db[e] >= 0 > self.faded.margin_db[e] else "noise"
 
     def held_back_by(self, air: Air, multiplexes: Sequence[str]) -> tuple[str, ...]:
@@ -120,10 +122,12 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
         polarisation,
         assumptions,
         roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
     )
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
     cells = Cells(faded.margin_db, _path_error(air, assumptions), _parts(chain, polarisation, air, faded, assumptions))
-    return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts)
+    chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
+    return Turned(chain, pointing_deg, polarisation, faded, median, cells, chance, counts)
 
 
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
@@ -131,7 +135,9 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
 
     One emission alone has its closed form; alternatives are counted over the joint draws.
     """
-    draws = received(turned.cells.draws(), air.multiplex_of, multiplexes)
+    median = turned.median
+    margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
+    draws = received(margins, air.multiplex_of, multiplexes)
     chance = draws.mean(axis=0)
     for m, name in enumerate(multiplexes):
         alone = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
@@ -170,13 +176,16 @@ def _sweep(
         polarisation,
         assumptions,
         roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
     )
     fixed = air.path_sd_db**2 + sum(
         (part.sd_db**2 for part in _parts_of_any_pointing(chain, air, assumptions)),
         np.zeros_like(air.path_sd_db),
     )
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    chance = exceedance(reception.margin_db, np.sqrt(fixed + turned_away**2))
+    sigma_db = np.sqrt(fixed + turned_away**2)
+    enough = exceedance(reception.margin_db, sigma_db)
+    chance = not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
     return expected_count(chance, air.multiplex_of, counted)
 
 

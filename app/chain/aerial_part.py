@@ -41,6 +41,7 @@ class Aerial(Part):
     stack_loss_db: float = 0.5  # combiner and leads between them
     pointing_deg: float | None = None  # of a second aerial; the first one's is the chain's
     wind_area_m2: float | None = None
+    above_clamp_m: float | None = None  # of its centre over the upper clamp; None: at the top of the mast
 
     def __post_init__(self) -> None:
         """Refuse a gain table or a pattern that describes no aerial."""
@@ -56,6 +57,8 @@ class Aerial(Part):
             within(self, "pointing_deg", self.pointing_deg, 0, 360, "degrees from true north")
         if self.wind_area_m2 is not None:
             within(self, "wind_area_m2", self.wind_area_m2, 0, 10, "m²")
+        if self.above_clamp_m is not None:
+            within(self, "above_clamp_m", self.above_clamp_m, 0, 20, "m over the upper clamp")
         self._check_gain()
         self._check_reflection()
         self._check_stack()
@@ -78,9 +81,7 @@ class Aerial(Part):
                     "reflection",
                 )
             return
-        rising(
-            self, "reflection", self.reflection, "[frequency_mhz, reflection]", (1, 20000, "MHz"), "reflection"
-        )
+        rising(self, "reflection", self.reflection, "[frequency_mhz, reflection]", (1, 20000, "MHz"), "reflection")
         for _, reflection in self.reflection:
             within(self, "reflection: magnitude", reflection, 0, 10, "of the voltage; 1 is total")
 
@@ -102,9 +103,7 @@ class Aerial(Part):
         if self.pattern != "class":
             return
         if self.beamwidth_deg == 360 and self.front_to_back_db != 0:
-            refuse(
-                self, "a beamwidth of 360 degrees means round", "set front_to_back_db to 0", "front_to_back_db"
-            )
+            refuse(self, "a beamwidth of 360 degrees means round", "set front_to_back_db to 0", "front_to_back_db")
         if self.beamwidth_deg < 360 and self.front_to_back_db <= 3:
             refuse(
                 self,

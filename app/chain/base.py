@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Collection
 from dataclasses import dataclass
@@ -96,7 +97,7 @@ def rising(
     lowest, highest, x_unit = x
     for first, _ in table:
         within(what, f"{key}: {'frequency' if x_unit == 'MHz' else 'angle'}", first, lowest, highest, x_unit)
-    for (low, _), (high, _) in zip(table, table[1:], strict=False):
+    for (low, _), (high, _) in itertools.pairwise(table):
         if high <= low:
             refuse(
                 what,

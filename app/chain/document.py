@@ -39,6 +39,7 @@ from app.chain.parts import (
     FlyLead,
     LaunchAmplifier,
     MastheadAmplifier,
+    MastTube,
     Outlet,
     Part,
     PowerInserter,
@@ -67,6 +68,7 @@ KINDS: dict[str, type[Part]] = {
         Outlet,
         FlyLead,
         Receiver,
+        MastTube,
     )
 }
 CHAIN_KEYS = tuple(field.name for field in fields(Chain) if field.init)

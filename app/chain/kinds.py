@@ -266,7 +266,29 @@ class Receiver(Part):
             within(self, "most_total_dbuv", self.most_total_dbuv, 60, 130, "dB(µV) across 75 ohms")
 
 
-# how many parts each kind may feed: ports; everything else one
+@dataclass(frozen=True, slots=True, kw_only=True)
+class MastTube(Part):
+    """The tube that carries the aerials, with its brackets; no signal passes it."""
+
+    kind: ClassVar[str] = "mast"
+
+    diameter_mm: float
+    wall_mm: float
+    free_m: float  # from the upper clamp to the top
+    clamped_m: float  # between the clamps
+    bracket_n: float | None = None  # what its maker lets one bracket carry
+
+    def __post_init__(self) -> None:
+        """Refuse a tube that is none."""
+        Part.__post_init__(self)
+        within(self, "diameter_mm", self.diameter_mm, 10, 200, "mm")
+        within(self, "wall_mm", self.wall_mm, 0.5, self.diameter_mm / 2, "mm")
+        within(self, "free_m", self.free_m, 0, 20, "m")
+        within(self, "clamped_m", self.clamped_m, 0.1, 10, "m between the clamps")
+        if self.bracket_n is not None:
+            within(self, "bracket_n", self.bracket_n, 1, 1e6, "N")
+
+
 def tapped_ports(part: Part) -> int:
     """How many parts a part may feed; the way on through a tap not counted."""
     return part.ports if isinstance(part, Splitter | Tap) else 1

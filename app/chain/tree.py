@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from app.chain.aerial_part import Aerial
 from app.chain.base import Named, Part, refuse
-from app.chain.kinds import Combiner, FlyLead, Outlet, Receiver, Splitter, Switch, Tap, tapped_ports
+from app.chain.kinds import Combiner, FlyLead, MastTube, Outlet, Receiver, Splitter, Switch, Tap, tapped_ports
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,7 +43,7 @@ def tree_of(chain: Named, parts: Sequence[Part]) -> Tree:
     for name in names:
         if names.count(name) > 1:
             refuse(chain, f'has two outlets named "{name}"', "name each by its room", "parts")
-    kept = [part for part in parts if part is not general]
+    kept = [part for part in parts if part is not general and not isinstance(part, MastTube)]
     fed_by = _fed_by(chain, kept)
     feeds: dict[str, list[Part]] = {part.id: [] for part in kept}
     for part in kept:
@@ -158,7 +158,9 @@ def _ordered(parts: Sequence[Part], fed_by: dict[str, tuple[str, ...]]) -> list[
         ready = [part for part in waiting if placed.issuperset(fed_by[part.id])]
         if not ready:
             loop = ", ".join(part.id for part in waiting[:8])
-            refuse(waiting[0], f"feeds itself in a loop ({loop})", "let the signal run one way, from an aerial", "after")
+            refuse(
+                waiting[0], f"feeds itself in a loop ({loop})", "let the signal run one way, from an aerial", "after"
+            )
         order += ready
         placed |= {part.id for part in ready}
         waiting = [part for part in waiting if part.id not in placed]
