@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 from app.assumptions import Assumptions
-from app.chain.parts import Aerial, Chain
+from app.chain.parts import Aerial, AerialPolarisation, Chain
 from app.margins import Air, turn
 from app.roof import Roof
 
@@ -33,7 +33,7 @@ def aimed(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumption
     return chain
 
 
-def _with(chain: Chain, ident: str, pointing_deg: float, polarisation: str) -> Chain:
+def _with(chain: Chain, ident: str, pointing_deg: float, polarisation: AerialPolarisation) -> Chain:
     """Return the chain with one aerial mounted so."""
     parts = tuple(
         replace(part, pointing_deg=pointing_deg, polarisation=polarisation)

@@ -13,6 +13,7 @@ from app.chain import aerial as response
 from app.chain.match import mismatch_loss_db
 from app.chain.parts import Aerial
 from app.chain.room import entry_loss
+from app.chain.stacking import Stack, stacked_gain_db, stacked_loss_db
 from app.levels import level_dbuv
 
 FloatArray = NDArray[np.float64]
@@ -48,7 +49,13 @@ def at_aerial(
     """Gain and losses of an aerial turned to `pointing_deg` (…, 1), rods as `polarisation`, for emissions (e,)."""
     off_axis = response.off_axis_deg(bearing_deg, pointing_deg)
     clockwise = response.clockwise_deg(bearing_deg, pointing_deg)
-    pattern = response.pattern_loss_db(aerial, clockwise, polarisation, assumptions.value("dipole_null_db"))
+    null_db = assumptions.value("dipole_null_db")
+    pattern = response.pattern_loss_db(aerial, clockwise, polarisation, null_db)
+    gain = response.gain_dbd(aerial, frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave"))
+    if aerial.stacked > 1 and frequency_mhz.size:
+        stack = Stack(aerial.stacked, aerial.stack_layout, aerial.stack_spacing_m, aerial.stack_loss_db)
+        gain = gain + stacked_gain_db(stack, aerial, frequency_mhz, polarisation)
+        pattern = pattern + stacked_loss_db(stack, clockwise, frequency_mhz, null_db)
     cross_db = assumptions.value("cross_polar_db")
     on_axis = np.array([response.polarisation_loss_db(polarisation, one, cross_db) for one in emitted])
     mixed = np.array([one == "mixed" for one in emitted], dtype=bool)
@@ -57,7 +64,7 @@ def at_aerial(
     added = np.where(mixed, on_axis, np.maximum(on_axis - pattern, 0))
     return AtAerial(
         aerial=aerial,
-        gain_dbd=response.gain_dbd(aerial, frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave")),
+        gain_dbd=gain,
         covering_loss_db=_covering_db(aerial, frequency_mhz, assumptions),
         mismatch_loss_db=_mismatch_db(aerial, frequency_mhz),
         off_axis_deg=off_axis,
@@ -88,6 +95,8 @@ def aerial_lines(at: AtAerial, frequency_mhz: float, emitted: str, polarisation:
     aerial = at.aerial
     one = slice(index, index + 1)
     stated = "stated gain" if aerial.measured else "gain of an own build, not measured"
+    if aerial.stacked > 1:
+        stated += f", {aerial.stacked} stacked by their array factor, combiner taken off"
     if not response.in_range(aerial, frequency_mhz).all():
         stated += " beyond its frequencies: assumption aerial_out_of_range_db_per_octave"
     off_axis = f"{float(at.off_axis_deg[..., one].flat[0]):.0f}° off; {_pattern_words(aerial, polarisation)}"

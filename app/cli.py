@@ -264,5 +264,39 @@ def list_chains(as_json: Json = False) -> None:
     _show(rows, as_json, lambda: table(rows, "no chain is stored"))
 
 
+@chains.command("export")
+def export_chains(
+    names: Annotated[
+        list[str] | None, typer.Argument(metavar="[NAME]…", help="Chains; default: all, with parts.")
+    ] = None,
+    out: Annotated[Path | None, typer.Option(metavar="FILE", help="Write there instead of showing it.")] = None,
+) -> None:
+    """Write stored chains, and parts with prices, as one TOML file."""
+    from app.chain_file import export_text, write_file
+    from app.world import open_world
+
+    with _mendable():
+        text = export_text(open_world().store, names)
+        if out is not None:
+            write_file(out, text)
+    if out is None:
+        typer.echo(text.rstrip("\n"))
+
+
+@chains.command("import")
+def import_chains(
+    file: Annotated[Path, typer.Argument(metavar="FILE", help="TOML with [[chains]] and [[parts]].")],
+    dry_run: Annotated[bool, typer.Option("--dry-run", help="Check only; store nothing.")] = False,
+    as_json: Json = False,
+) -> None:
+    """Store chains and parts of a TOML file: all of them, or none if one is not possible."""
+    from app.chain_file import import_file as import_chain_file
+    from app.world import open_world
+
+    with _mendable():
+        summary = import_chain_file(file, open_world().store, dry_run)
+    _show(summary.document(), as_json, summary.text)
+
+
 if __name__ == "__main__":
     main()

@@ -3,13 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import date
 from typing import Any
 
+from app.aiming import aimed
 from app.answer import answer_document
 from app.assumptions import Assumptions
 from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
+from app.chain.powering import as_powered
+from app.chain.windows import DEFAULT_STANDARD
+from app.chain_notes import chain_notes, with_notes
 from app.errors import RequestError
 from app.fields import fields_at
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
@@ -39,20 +44,39 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]
-    turned = (
-        {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
-    )
+
+    def turned_best(chain: Chain) -> Turned:
+        return turn(aimed(chain, air, request.roof, counted, assumptions), air, request.roof, counted, assumptions)
+
+    turned = {chain.name: turned_best(as_powered(chain)) for chain in chains} if air.fields else {}
     outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
     verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions)
-    return answer_document(
+    mended = {
+        chain.name: _outcome(turned_best(chain), air, multiplexes)
+        for chain in chains
+        if turned and as_powered(chain) != chain
+    }
+    notes = {
+        chain.name: chain_notes(
+            chain, turned.get(chain.name), air, request.roof, mended.get(chain.name), DEFAULT_STANDARD
+        )
+        for chain in chains
+    }
+    document = answer_document(
         request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts
     )
+    return with_notes(document, notes)
 
 
 def stored_chain(store: Store, name: str) -> Chain:
-    """Return a stored chain by name or id; NotStoredError if there is none."""
+    """Return a stored chain by name or id, prices it leaves out from the stored parts; NotStoredError if none."""
     document = store.get_chain(name)
-    return chain_from_document({key: value for key, value in document.items() if key in CHAIN_KEYS})
+    chain = chain_from_document({key: value for key, value in document.items() if key in CHAIN_KEYS})
+    if chain.parts_price is not None:
+        return chain
+    prices = {str(part["id"]): part.get("price") for part in store.list_parts()}
+    parts = [replace(part, price=prices.get(part.id)) if part.price is None else part for part in chain.parts]
+    return replace(chain, parts=tuple(parts))
 
 
 def _chains(request: AssessRequest, store: Store) -> list[Chain]:

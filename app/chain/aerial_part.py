@@ -12,7 +12,7 @@ AERIAL_POLARISATIONS: tuple[AerialPolarisation, ...] = ("horizontal", "vertical"
 PATTERNS = ("class", "dipole", "measured")
 PLACES = ("roof", "loft", "room")
 BUILDINGS = ("traditional", "thermally_efficient")
-PLANES = ("horizontal", "vertical")
+STACK_LAYOUTS = ("horizontal", "vertical", "square")
 STACKS = (1, 2, 4)
 WIDEST_PATTERN_GAP_DEG = 15.0  # of a measured pattern: a wider gap hides side lobes
 Table = tuple[tuple[float, float], ...]
@@ -37,7 +37,7 @@ class Aerial(Part):
     gain_includes_mismatch: bool = True  # a catalogue's or measured gain does
     stacked: int = 1  # alike, side by side or one above the other: 1, 2 or 4
     stack_spacing_m: float = 0.0
-    stack_plane: Literal["horizontal", "vertical"] = "vertical"
+    stack_layout: Literal["horizontal", "vertical", "square"] = "vertical"
     stack_loss_db: float = 0.5  # combiner and leads between them
     pointing_deg: float | None = None  # of a second aerial; the first one's is the chain's
     wind_area_m2: float | None = None
@@ -88,11 +88,13 @@ class Aerial(Part):
     def _check_stack(self) -> None:
         if self.stacked not in STACKS:
             refuse(self, f"{self.stacked} are stacked", "use 1, 2 or 4", "stacked")
-        one_of(self, "stack_plane", self.stack_plane, PLANES)
+        one_of(self, "stack_layout", self.stack_layout, STACK_LAYOUTS)
         within(self, "stack_loss_db", self.stack_loss_db, 0, 20, "dB")
         within(self, "stack_spacing_m", self.stack_spacing_m, 0, 20, "m")
         if self.stacked > 1 and self.stack_spacing_m == 0:
             refuse(self, "is stacked without a spacing", "give stack_spacing_m between neighbours", "stack_spacing_m")
+        if self.stack_layout == "square" and self.stacked == 2:
+            refuse(self, "is two stacked in a square", "use four, or another stack_layout", "stack_layout")
 
     def _check_pattern(self) -> None:
         if (self.pattern == "measured") != bool(self.pattern_db):

@@ -100,10 +100,22 @@ def chain_to_document(chain: Chain) -> dict[str, Any]:
     frame = {key: getattr(chain, key) for key in CHAIN_KEYS if key != "parts"}
     if not chain.deciding_outlet:
         del frame["deciding_outlet"]
-    return {**_without_none(frame), "parts": [_part_document(part) for part in chain.parts]}
+    return {**_without_none(frame), "parts": [part_to_document(part) for part in chain.parts]}
 
 
-def _part_document(part: Part) -> dict[str, Any]:
+def part_from_document(document: object) -> Part:
+    """Part described by a document outside a chain, as the list of parts with prices holds it.
+
+    Raises
+    ------
+    ChainError
+        What came, what is allowed and what to do.
+    """
+    return _part(document, 0)
+
+
+def part_to_document(part: Part) -> dict[str, Any]:
+    """Return the document of a part; what is as usual or not known is left out."""
     values: dict[str, Any] = {}
     for field in fields(part):
         value = getattr(part, field.name)
