@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -142,6 +142,11 @@ class Ground:
         layer = int(self._answer(lat.ravel(), lon.ravel()).layer[0])
         return self._layers[layer].raster.grid.spacing_m if layer >= 0 else float("nan")
 
+    def answering(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.intp]:
+        """Number in `rasters` of the raster that answers at positions, -1 where none does."""
+        lat, lon = _positions(latitude_deg, longitude_deg)
+        return self._answer(lat.ravel(), lon.ravel()).layer.reshape(lat.shape)
+
     def is_water(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.bool_]:
         """Whether the nearest sample belongs to a connected flat area at 0 m of at least 1 km².
 
@@ -159,27 +164,53 @@ class Ground:
         water = self._water(answer, lat.ravel(), lon.ravel())
         return answer.height_m.reshape(lat.shape), water.reshape(lat.shape)
 
-    def coarse_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
-        """Heights for pictures of wide areas [m]: means over cells of at most `cell_m`.
+    def mean_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
+        """Mean heights [m] of cells of at most `cell_m` that hold the positions, for wide views.
 
         Rasters whose samples are not much finer than that are interpolated as ever. NaN where missing.
         """
-        lat, lon = (position.ravel() for position in _positions(latitude_deg, longitude_deg))
+        return self._coarse(latitude_deg, longitude_deg, cell_m, Blocks.means)
+
+    def highest_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
+        """As `mean_elevation_m`, but the highest ground of each cell: never below `elevation_m` there."""
+        return self._coarse(latitude_deg, longitude_deg, cell_m, Blocks.maxima)
+
+    def _coarse(
+        self,
+        latitude_deg: ArrayLike,
+        longitude_deg: ArrayLike,
+        cell_m: float,
+        heights: Callable[[Blocks, NDArray[np.intp], NDArray[np.intp], float], FloatArray],
+    ) -> FloatArray:
+        lat, lon = _positions(latitude_deg, longitude_deg)
         height = np.full(lat.size, np.nan)
+        for start in range(0, lat.size, _GROUP):
+            group = slice(start, start + _GROUP)
+            self._coarse_group(lat.ravel()[group], lon.ravel()[group], cell_m, heights, height[group])
+        return height.reshape(lat.shape)
+
+    def _coarse_group(
+        self,
+        lat: FloatArray,
+        lon: FloatArray,
+        cell_m: float,
+        heights: Callable[[Blocks, NDArray[np.intp], NDArray[np.intp], float], FloatArray],
+        height: FloatArray,
+    ) -> None:
         for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
-            open_still = np.nonzero(np.isnan(height))[0]
+            asked = np.nonzero(np.isnan(height))[0]
             if cell_m < COARSE[1] * grid.spacing_m:
-                height[open_still] = self._interpolate(layer, lat[open_still], lon[open_still], bridged=False)
+                height[asked] = self._interpolate(layer, lat[asked], lon[asked], bridged=False)
                 continue
-            row, column = grid.index(lat[open_still], lon[open_still])
+            row, column = grid.index(lat[asked], lon[asked])
             inside = (row > -0.5) & (row < grid.rows - 0.5) & (column > -0.5) & (column < grid.columns - 0.5)
-            height[open_still[inside]] = layer.blocks.means(
-                np.rint(row[inside]).astype(np.intp),
-                np.rint(column[inside]).astype(np.intp),
+            height[asked[inside]] = heights(
+                layer.blocks,
+                np.clip(np.floor(row[inside]), 0, grid.rows - 2).astype(np.intp),
+                np.clip(np.floor(column[inside]), 0, grid.columns - 2).astype(np.intp),
                 cell_m / grid.spacing_m,
             )
-        return height.reshape(np.broadcast_shapes(np.shape(latitude_deg), np.shape(longitude_deg)))
 
     def finest_spacing_m(self, south: float, west: float, north: float, east: float) -> float:
         """Spacing of the finest raster that reaches into a box [deg], in m; infinite if none does."""
@@ -270,7 +301,7 @@ class Ground:
     def _neighbour(self, lat: FloatArray, lon: FloatArray) -> FloatArray:
         """Heights from the first raster whose samples surround a position, NaN where none does."""
         height = np.full(lat.size, np.nan)
-        for layer in self._layers:
+        for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
             open_still = np.nonzero(np.isnan(height))[0]
             open_still = open_still[grid.near(lat[open_still], lon[open_still])]
@@ -316,7 +347,9 @@ def _files(paths: Sequence[Path]) -> list[Path]:
 def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[FloatArray, FloatArray]:
     """Positions of a common shape; what is infinite becomes NaN."""
     lat, lon = (np.asarray(value, dtype=float) for value in (latitude_deg, longitude_deg))
-    lat, lon = (np.where(np.isfinite(value), value, np.nan) for value in (lat, lon))
+    lat, lon = (
+        value if np.isfinite(value).all() else np.where(np.isfinite(value), value, np.nan) for value in (lat, lon)
+    )
     lat, lon = np.broadcast_arrays(lat, lon)
     return lat, lon
 
