@@ -56,6 +56,7 @@ class Turned:
     cells: Cells
     chance: FloatArray  # (e,)
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
+    sweep_chance: FloatArray  # (360, e) chance of each emission for each whole degree, likewise
 
     def limit(self, e: int) -> str:
         """What holds one emission back: overload, time where only the fade takes it below what it needs, else noise."""
@@ -105,15 +106,16 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
     `counted` are the multiplexes that count for the choice. Ties go to the direction nearest to the
     bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray] | None = None
+    best: tuple[float, float, AerialPolarisation, FloatArray, FloatArray] | None = None
     for polarisation in _polarisations(chain):
-        counts = _sweep(chain, polarisation, air, roof, counted, assumptions)
+        chances = _sweep(chain, polarisation, air, roof, assumptions)
+        counts = expected_count(chances, air.multiplex_of, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts)
+            best = (count, pointing_deg, polarisation, counts, chances)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts = best
+    _, pointing_deg, polarisation, counts, chances = best
     faded = receive(
         chain,
         air.signals,
@@ -127,7 +129,7 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
     cells = Cells(faded.margin_db, _path_error(air, assumptions), _parts(chain, polarisation, air, faded, assumptions))
     chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
-    return Turned(chain, pointing_deg, polarisation, faded, median, cells, chance, counts)
+    return Turned(chain, pointing_deg, polarisation, faded, median, cells, chance, counts, chances)
 
 
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
@@ -165,9 +167,9 @@ def _sweep(
     polarisation: AerialPolarisation,
     air: Air,
     roof: Roof,
-    counted: Sequence[str],
     assumptions: Assumptions,
 ) -> FloatArray:
+    """Chance of each emission for each whole degree. (360, e)"""
     reception = receive(
         chain,
         air.signals,
@@ -185,8 +187,7 @@ def _sweep(
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed + turned_away**2)
     enough = exceedance(reception.margin_db, sigma_db)
-    chance = not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
-    return expected_count(chance, air.multiplex_of, counted)
+    return not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:

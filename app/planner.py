@@ -34,7 +34,7 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
         The roof, a name or a value is not possible: the message says what is.
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
-    chains = _chains(request, store)
+    chains = chains_of(request, store)
     site = site_of(request.roof, ground)
     found = store.emissions_within(
         request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
@@ -79,7 +79,7 @@ def stored_chain(store: Store, name: str) -> Chain:
     return replace(chain, parts=tuple(parts))
 
 
-def _chains(request: AssessRequest, store: Store) -> list[Chain]:
+def chains_of(request: AssessRequest, store: Store) -> list[Chain]:
     """Return the chains in question, the one that is up now among them."""
     asked: Sequence[str | Chain]
     asked = request.chains if request.chains is not None else [str(one["name"]) for one in store.list_chains()]
