@@ -33,7 +33,7 @@ def chain_notes(
         "powering": powering_document(chain),
         "if_powered": None if if_powered is None else _counts(if_powered),
         "levels": [] if turned is None else outlet_levels(turned, air, standard),
-        "findings": [*_unused_ports(chain), *(row["message"] for row in powering_document(chain) if row["message"])],
+        "findings": [*unused_ports(chain), *(row["message"] for row in powering_document(chain) if row["message"])],
         "wind": wind_of(chain, roof.aerial_agl_m),
     }
 
@@ -116,7 +116,8 @@ def outlet_levels(turned: Turned, air: Air, standard: str) -> list[dict[str, Any
     return found
 
 
-def _unused_ports(chain: Chain) -> list[str]:
+def unused_ports(chain: Chain) -> list[str]:
+    """Say which ports of splitters and taps have to be closed."""
     found = []
     for part in chain.parts:
         if not isinstance(part, Splitter | Tap):
