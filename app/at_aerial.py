@@ -50,7 +50,7 @@ def at_aerial(
     off_axis = response.off_axis_deg(bearing_deg, pointing_deg)
     clockwise = response.clockwise_deg(bearing_deg, pointing_deg)
     null_db = assumptions.value("dipole_null_db")
-    pattern = response.pattern_loss_db(aerial, clockwise, polarisation, null_db)
+    pattern = response.pattern_loss_db(aerial, clockwise, polarisation, null_db, frequency_mhz)
     gain = response.gain_dbd(aerial, frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave"))
     if aerial.stacked > 1 and frequency_mhz.size:
         stack = Stack(aerial.stacked, aerial.stack_layout, aerial.stack_spacing_m, aerial.stack_loss_db)
@@ -62,6 +62,12 @@ def at_aerial(
     # Rec. ITU-R BT.419-3, Note 3: pattern and cross-polar rejection do not add up, the larger one holds.
     # A mixed emission loses its other half in every direction.
     added = np.where(mixed, on_axis, np.maximum(on_axis - pattern, 0))
+    if aerial.pattern == "measured" and response.measured_pattern(aerial).has_cross(response.mounted(polarisation)):
+        whole = response.measured_pattern(aerial).cross_loss_db(
+            clockwise, frequency_mhz, response.mounted(polarisation)
+        )
+        crossed = np.array([one not in (polarisation, "mixed") for one in emitted], dtype=bool)
+        added = np.where(crossed, whole - pattern, added)
     return AtAerial(
         aerial=aerial,
         gain_dbd=gain,
@@ -130,6 +136,6 @@ def _pattern_words(aerial: Aerial, polarisation: str) -> str:
     words = {
         "class": f"{aerial.beamwidth_deg:g}° beamwidth, {aerial.front_to_back_db:g} dB front to back",
         "dipole": "round, rods upright" if polarisation == "vertical" else "figure of eight, assumption dipole_null_db",
-        "measured": f"measured pattern, {len(aerial.pattern_db)} angles",
+        "measured": f"measured pattern, {len(aerial.cuts)} cuts",
     }[aerial.pattern]
     return words if aerial.stacked == 1 else f"{words}; {aerial.stacked} stacked {aerial.stack_spacing_m:g} m apart"

@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from app.assumptions import ASSUMPTIONS
-from app.chain.parts import Aerial
+from app.chain.parts import Aerial, AerialPolarisation
+from app.chain.pattern import MeasuredPattern
 
 HALF_POWER = 10**-0.3  # the 3 dB that define a beamwidth
 
@@ -51,6 +52,7 @@ def pattern_loss_db(
     off_axis_deg: ArrayLike,
     polarisation: str = "horizontal",
     null_db: float = ASSUMPTIONS["dipole_null_db"].value,
+    frequency_mhz: ArrayLike | None = None,
 ) -> NDArray[np.float64]:
     """Loss against the aerial's axis [dB, 0 or more], elementwise over the angle off the axis [deg].
 
@@ -59,8 +61,8 @@ def pattern_loss_db(
     Pattern "dipole" is a figure of eight, cos(x)^2, with nulls no deeper than `null_db`. With its rods
     upright (`polarisation` "vertical") a dipole is round.
 
-    Pattern "measured" is the table of the part, clockwise off the axis, with straight lines in dB between its
-    angles and round the back.
+    Pattern "measured" has two sides, so angles count clockwise, and cuts by frequency [MHz]; None: the middle of
+    the gain table.
 
     References
     ----------
@@ -68,9 +70,8 @@ def pattern_loss_db(
     instead of 78 degrees between the half-power points).
     """
     if aerial.pattern == "measured":
-        table = np.array(aerial.pattern_db)
-        angle = np.asarray(off_axis_deg, dtype=float) % 360
-        return np.asarray(np.interp(angle, table[:, 0], table[:, 1], period=360))
+        f = np.mean([pair[0] for pair in aerial.gain_dbd]) if frequency_mhz is None else frequency_mhz
+        return measured_pattern(aerial).loss_db(off_axis_deg, f, mounted(polarisation))
     if aerial.pattern == "class":
         return class_pattern_loss_db(off_axis_deg, aerial.beamwidth_deg, aerial.front_to_back_db)
     x = np.radians(np.asarray(off_axis_deg, dtype=float))
@@ -78,6 +79,16 @@ def pattern_loss_db(
         return np.zeros_like(x)
     loss: NDArray[np.float64] = -10 * np.log10(np.maximum(np.cos(x) ** 2, 10 ** (-null_db / 10)))
     return loss + 0.0  # no negative zero on the axis
+
+
+def measured_pattern(aerial: Aerial) -> MeasuredPattern:
+    """Measured pattern of an aerial that has one."""
+    return MeasuredPattern(f'aerial "{aerial.name}"', aerial.cuts)
+
+
+def mounted(polarisation: str) -> AerialPolarisation:
+    """Say how the rods stand."""
+    return "vertical" if polarisation == "vertical" else "horizontal"
 
 
 def class_pattern_loss_db(

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import ClassVar, Literal
 
 from app.chain.base import Part, one_of, refuse, rising, within
+from app.chain.pattern import Cut, checked_cut, checked_pattern
 
 AerialPolarisation = Literal["horizontal", "vertical"]
 AERIAL_POLARISATIONS: tuple[AerialPolarisation, ...] = ("horizontal", "vertical")
@@ -14,7 +15,6 @@ PLACES = ("roof", "loft", "room")
 BUILDINGS = ("traditional", "thermally_efficient")
 STACK_LAYOUTS = ("horizontal", "vertical", "square")
 STACKS = (1, 2, 4)
-WIDEST_PATTERN_GAP_DEG = 15.0  # of a measured pattern: a wider gap hides side lobes
 Table = tuple[tuple[float, float], ...]
 
 
@@ -28,7 +28,7 @@ class Aerial(Part):
     beamwidth_deg: float  # between the half-power points, horizontally; 360: round
     front_to_back_db: float  # how far the pattern falls at most; 0: round, or a dipole
     pattern: Literal["class", "dipole", "measured"] = "class"
-    pattern_db: Table = ()  # (degrees off the axis clockwise, loss against the axis), only if measured
+    cuts: tuple[Cut, ...] = ()  # only if the pattern was measured: loss round the horizon
     polarisation: AerialPolarisation | None = None  # None: may be mounted either way
     place: Literal["roof", "loft", "room"] = "roof"
     building: Literal["traditional", "thermally_efficient"] = "traditional"  # round a room
@@ -97,11 +97,15 @@ class Aerial(Part):
             refuse(self, "is two stacked in a square", "use four, or another stack_layout", "stack_layout")
 
     def _check_pattern(self) -> None:
-        if (self.pattern == "measured") != bool(self.pattern_db):
-            mend = 'give pattern_db with pattern "measured", and only then'
-            refuse(self, "pattern and pattern_db do not go together", mend, "pattern_db")
+        if (self.pattern == "measured") != bool(self.cuts):
+            refuse(
+                self, "pattern and cuts do not go together", 'give cuts with pattern "measured", and only then', "cuts"
+            )
         if self.pattern == "measured":
-            self._check_measured_pattern()
+            name = f'aerial "{self.name}"'
+            for cut in self.cuts:
+                checked_cut(name, cut.angle_deg, cut.loss_db, frequency_mhz=cut.frequency_mhz)
+            checked_pattern(name, self.cuts)
         if self.pattern != "class":
             return
         if self.beamwidth_deg == 360 and self.front_to_back_db != 0:
@@ -113,17 +117,3 @@ class Aerial(Part):
                 'use more than 3 dB, pattern "dipole", or a beamwidth of 360 degrees for a round one',
                 "front_to_back_db",
             )
-
-    def _check_measured_pattern(self) -> None:
-        rising(self, "pattern_db", self.pattern_db, "[degrees, loss_db]", (0, 359.999, "degrees"), "pattern")
-        for _, loss_db in self.pattern_db:
-            within(self, "pattern_db: loss", loss_db, -1, 80, "dB below the axis")
-        angles = [pair[0] for pair in self.pattern_db]
-        for low, high in zip(angles, [*angles[1:], angles[0] + 360], strict=True):
-            if high - low > WIDEST_PATTERN_GAP_DEG:
-                refuse(
-                    self,
-                    f"the pattern has a gap from {low:g} to {high % 360:g} degrees",
-                    f"measure at least every {WIDEST_PATTERN_GAP_DEG:g} degrees all round",
-                    "pattern_db",
-                )

@@ -29,6 +29,7 @@ from dataclasses import MISSING, fields
 from typing import Any
 
 from app.chain.parts import (
+    AERIAL_POLARISATIONS,
     Aerial,
     Attenuator,
     Chain,
@@ -48,6 +49,7 @@ from app.chain.parts import (
     Switch,
     Tap,
 )
+from app.chain.pattern import Cut, checked_cut
 from app.errors import ChainError
 
 KINDS: dict[str, type[Part]] = {
@@ -123,11 +125,47 @@ def part_to_document(part: Part) -> dict[str, Any]:
             continue
         if field.name == "after":
             values["after"] = value[0] if len(value) == 1 else list(value)
+        elif field.name == "cuts":
+            values["cuts"] = [_cut_document(cut) for cut in value]
         elif isinstance(value, tuple):
             values[field.name] = [list(pair) for pair in value]
         else:
             values[field.name] = value
     return {"kind": part.kind, **_without_none(values)}
+
+
+def _cut_document(cut: Cut) -> dict[str, Any]:
+    points = [list(pair) for pair in zip(cut.angle_deg, cut.loss_db, strict=True)]
+    known = {key: getattr(cut, key) for key in ("frequency_mhz", "polarisation", "emission")}
+    return {**_without_none(known), "points": points}
+
+
+def _cuts(value: object, what: str, place: str) -> tuple[Cut, ...]:
+    """Cuts of a measured pattern: tables with points and, where they hold for one only, frequency and polarisation."""
+    cuts = []
+    for number, one in enumerate(value if isinstance(value, list | tuple) else (value,)):
+        here = f"{place}[{number}]"
+        if not isinstance(one, Mapping):
+            raise ChainError(f"{what} holds {_came(one)}: use tables with points = [[degrees, loss_db], …]", field=here)
+        _known_keys(one, ("points", "frequency_mhz", "polarisation", "emission"), what, f"{here}.")
+        points = _pairs(one.get("points"), f"{what}: points", f"{here}.points")
+        frequency = one.get("frequency_mhz")
+        planes = [one.get(key) for key in ("polarisation", "emission")]
+        for plane in planes:
+            if plane not in (None, *AERIAL_POLARISATIONS):
+                listed = ", ".join(AERIAL_POLARISATIONS)
+                raise ChainError(f"{what}: {_came(plane)} is no polarisation: use {listed}", field=here, allowed=listed)
+        cuts.append(
+            checked_cut(
+                what,
+                [pair[0] for pair in points],
+                [pair[1] for pair in points],
+                frequency_mhz=None if frequency is None else _read("float", frequency, what, f"{here}.frequency_mhz"),
+                polarisation=planes[0],
+                emission=planes[1],
+            )
+        )
+    return tuple(cuts)
 
 
 def _without_none(values: Mapping[str, Any]) -> dict[str, Any]:
@@ -187,6 +225,8 @@ def _values(
 
 def _read(wanted: str, value: object, what: str, place: str) -> Any:
     """Value as a field of that annotated type takes it."""
+    if wanted == "tuple[Cut, ...]":
+        return _cuts(value, what, place)
     if wanted == "tuple[str, ...]":
         return _ids(value, what, place)
     if wanted.startswith(("tuple", "Table")):

@@ -22,6 +22,7 @@ from app.chain.parts import (
     Switch,
     Tap,
 )
+from app.chain.pattern import Cut
 from app.chain.powering import as_powered, powering
 from app.errors import ChainError
 
@@ -154,8 +155,14 @@ def test_tree_that_no_signal_can_pass_names_part_and_mend(parts, message):
         (lambda: masthead(draws_ma=-1), r"draws_ma -1 is not possible"),
         (lambda: inserter(supply_v=230), r"supply_v 230 is not possible: use 1 to 60 V, safety extra-low voltage"),
         (
-            lambda: dataclasses.replace(AERIAL, pattern="measured", pattern_db=((0, 0), (10, 1), (350, 1))),
-            r'aerial "Yagi": the pattern has a gap from 10 to 350 degrees: measure at least every 15 degrees',
+            lambda: dataclasses.replace(
+                AERIAL, pattern="measured", cuts=(Cut((0, 5, 10, 15, 340, 345, 350, 355), (0,) * 8),)
+            ),
+            r'aerial "Yagi": has a gap from 15° to 340°: measure every 15° or closer, all round',
+        ),
+        (
+            lambda: dataclasses.replace(AERIAL, pattern="measured"),
+            r'aerial "Yagi": pattern and cuts do not go together: give cuts with pattern "measured"',
         ),
         (
             lambda: dataclasses.replace(AERIAL, stacked=2),
