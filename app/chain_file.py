@@ -23,9 +23,17 @@ from typing import Any
 
 import tomli_w
 
-from app.chain.document import CHAIN_KEYS, chain_from_document, chain_to_document, part_from_document, part_to_document
+from app.chain.document import (
+    CHAIN_KEYS,
+    chain_from_document,
+    chain_to_document,
+    cut_to_document,
+    part_from_document,
+    part_to_document,
+)
 from app.chain.files import content_of, text_of
 from app.chain.parts import Chain, Part
+from app.chain.pattern_files import read_pattern
 from app.errors import ChainError
 from app.transmitters.store import Store
 
@@ -78,6 +86,25 @@ def export_text(store: Store, names: Sequence[str] | None = None) -> str:
     chains = [chain_to_document(chain_from_document(_chain_keys(one))) for one in found]
     parts = [] if names else [part_to_document(part) for part in stored_parts(store)]
     document = {key: rows for key, rows in (("chains", chains), ("parts", parts)) if rows}
+    return tomli_w.dumps(document)
+
+
+def chain_text(chain: Mapping[str, Any]) -> str:
+    """TOML of one chain's document, to edit and import."""
+    return tomli_w.dumps({"chains": [dict(chain)]})
+
+
+def pattern_document(path: Path) -> dict[str, Any]:
+    """Measured pattern of a file as the keys of an aerial: pattern, cuts, and the gain if the file says it."""
+    pattern = read_pattern(path)
+    document: dict[str, Any] = {"pattern": "measured", "cuts": [cut_to_document(cut) for cut in pattern.cuts]}
+    if pattern.gain_dbd:
+        document["gain_dbd"] = [list(pair) for pair in pattern.gain_dbd]
+    return document
+
+
+def pattern_text(document: Mapping[str, Any]) -> str:
+    """TOML of a pattern's document, to copy into an aerial."""
     return tomli_w.dumps(document)
 
 

@@ -2,19 +2,16 @@
 
 from __future__ import annotations
 
-import json
 import socket
 import sys
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
 from pathlib import Path
-from typing import Annotated, Any
+from typing import Annotated
 
 import typer
 
-from app.errors import AppError, RequestError
-from propagation.errors import PropagationError
-from terrain.errors import TerrainError
+from app.chains_cli import chains
+from app.cli_tools import Json, mendable, pair, show
+from app.errors import RequestError
 
 main = typer.Typer(
     name="gainworth",
@@ -25,36 +22,11 @@ main = typer.Typer(
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
 terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
-chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
 main.add_typer(chains, name="chains")
 
-Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
-WRONG, MENDABLE = 1, 2
-
-
-@contextmanager
-def _mendable() -> Iterator[None]:
-    """Print what the user can mend as one line and leave with 2."""
-    try:
-        yield
-    except (AppError, TerrainError, PropagationError) as error:
-        typer.echo(str(error), err=True)
-        raise typer.Exit(MENDABLE) from error
-
-
-def _show(document: Any, as_json: bool, text: Callable[[], str]) -> None:
-    typer.echo(json.dumps(document, ensure_ascii=False, indent=1) if as_json else text().rstrip("\n"))
-
-
-def _pair(text: str, what: str, example: str) -> tuple[float, float]:
-    """Two numbers with a comma between them."""
-    try:
-        first, second = (float(part) for part in text.split(","))
-    except ValueError:
-        raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
-    return first, second
+WRONG = 1
 
 
 @main.command()
@@ -72,14 +44,14 @@ def serve(
     from app.web.main import create_app
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         settings = load_settings(data_dir())
         changes = {key: value for key, value in (("host", host), ("port", port)) if value is not None}
         settings = settings.model_copy(update=changes)
         listener = _listener(settings.host, settings.port)
         world = open_world()
     address = f"http://{f'[{settings.host}]' if ':' in settings.host else settings.host}:{listener.getsockname()[1]}/"
-    _show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
+    show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
     sys.stdout.flush()
     if open_page:
         typer.launch(address)
@@ -130,8 +102,8 @@ def assess(
     from app.telling import told
     from app.world import open_world
 
-    with _mendable():
-        latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+    with mendable():
+        latitude_deg, longitude_deg = pair(at, "--at", "44.5,-37.2")
         settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
@@ -146,7 +118,7 @@ def assess(
         )
         world = open_world()
         document = answer_to(request, world.store, world.ground)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 @main.command()
@@ -162,16 +134,16 @@ def path(
     from app.path_query import path_document, told_path
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         document = path_document(
             open_world().ground,
-            *_pair(start, "--from", "44.5,-37.2"),
-            *_pair(end, "--to", "44.3,-37.3"),
+            *pair(start, "--from", "44.5,-37.2"),
+            *pair(end, "--to", "44.3,-37.3"),
             frequency,
-            *_pair(heights, "--heights", "150,10"),
+            *pair(heights, "--heights", "150,10"),
             polarisation,
         )
-    _show(document, as_json, lambda: told_path(document))
+    show(document, as_json, lambda: told_path(document))
 
 
 @main.command()
@@ -184,9 +156,9 @@ def verify(
     """Replay published worked examples; leaves with 1 if a case is off by more than 1e-6 dB."""
     from app.verify import verify as replay
 
-    with _mendable():
+    with mendable():
         report = replay(folder)
-    _show(report.document(), as_json, report.text)
+    show(report.document(), as_json, report.text)
     if report.failed:
         raise typer.Exit(WRONG)
 
@@ -202,9 +174,9 @@ def import_file(
     from app.transmitters.store import Store
     from app.transmitters.template import import_template
 
-    with _mendable():
+    with mendable():
         summary = import_template(file, Store.open(data_dir()), dry_run)
-    _show(summary.document(), as_json, summary.text)
+    show(summary.document(), as_json, summary.text)
 
 
 @transmitters.command("template")
@@ -221,9 +193,9 @@ def list_transmitters(as_json: Json = False) -> None:
     from app.lists import emission_rows, table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = emission_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
+    show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
 
 
 @terrain.command("add")
@@ -237,9 +209,9 @@ def add_rasters(
     from app.ground_files import add_raster
     from app.lists import table
 
-    with _mendable():
+    with mendable():
         rows = [add_raster(one, crs, kind) for one in paths]
-    _show(rows, as_json, lambda: table(rows, "nothing was added"))
+    show(rows, as_json, lambda: table(rows, "nothing was added"))
 
 
 @terrain.command("list")
@@ -248,54 +220,9 @@ def list_rasters(as_json: Json = False) -> None:
     from app.lists import raster_rows, table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = raster_rows(open_world().ground)
-    _show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
-
-
-@chains.command("list")
-def list_chains(as_json: Json = False) -> None:
-    """List stored chains with their parts and prices."""
-    from app.lists import chain_rows, table
-    from app.world import open_world
-
-    with _mendable():
-        rows = chain_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no chain is stored"))
-
-
-@chains.command("export")
-def export_chains(
-    names: Annotated[
-        list[str] | None, typer.Argument(metavar="[NAME]…", help="Chains; default: all, with parts.")
-    ] = None,
-    out: Annotated[Path | None, typer.Option(metavar="FILE", help="Write there instead of showing it.")] = None,
-) -> None:
-    """Write stored chains, and parts with prices, as one TOML file."""
-    from app.chain_file import export_text, write_file
-    from app.world import open_world
-
-    with _mendable():
-        text = export_text(open_world().store, names)
-        if out is not None:
-            write_file(out, text)
-    if out is None:
-        typer.echo(text.rstrip("\n"))
-
-
-@chains.command("import")
-def import_chains(
-    file: Annotated[Path, typer.Argument(metavar="FILE", help="TOML with [[chains]] and [[parts]].")],
-    dry_run: Annotated[bool, typer.Option("--dry-run", help="Check only; store nothing.")] = False,
-    as_json: Json = False,
-) -> None:
-    """Store chains and parts of a TOML file: all of them, or none if one is not possible."""
-    from app.chain_file import import_file as import_chain_file
-    from app.world import open_world
-
-    with _mendable():
-        summary = import_chain_file(file, open_world().store, dry_run)
-    _show(summary.document(), as_json, summary.text)
+    show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
 
 
 if __name__ == "__main__":

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -207,11 +206,10 @@ def book_of(
     assumptions: Assumptions,
     surroundings: str = "open",
     load_dbuv_m: ArrayLike | None = None,
-    other_pointings: Mapping[str, ArrayLike] | None = None,
 ) -> Book:
     """Gather what the ledgers of one chain need; arguments as those of `receive`, fields (e,) or scalar."""
     field = np.broadcast_to(np.asarray(field_dbuv_m, dtype=float), signals.frequency_mhz.shape)
-    heard = hear(chain, signals, field, pointing_deg, polarisation, assumptions, load_dbuv_m, other_pointings)
+    heard = hear(chain, signals, field, pointing_deg, polarisation, assumptions, load_dbuv_m)
     fam_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
     outside = np.maximum(ratio_from_db(fam_db), 1) - 1
     runs = []

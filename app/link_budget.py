@@ -118,7 +118,6 @@ def receive(
     assumptions: Assumptions,
     surroundings: str = "open",
     load_dbuv_m: ArrayLike | None = None,
-    other_pointings: Mapping[str, ArrayLike] | None = None,
 ) -> Reception:
     """What a chain makes of every emission.
 
@@ -127,14 +126,12 @@ def receive(
     field_dbuv_m : array (…, e)
         Field at the aerial; NaN where it is not known, which stays NaN. [dB(µV/m)]
     pointing_deg : array (…, 1) or scalar
-        True bearing of the first aerial's axis.
+        True bearing of the first aerial's axis, and of others that do not say their own.
     polarisation : "horizontal" or "vertical"
         How the aerial is mounted; another aerial that says its own is mounted that way.
     load_dbuv_m : array (…, e)
         Field that loads amplifiers and set, if it is another than the wanted one's: what fades does not
         unload them. None: the same.
-    other_pointings : by id
-        Of further aerials, (…, 1); those left out take their own, else the first one's.
 
     References
     ----------
@@ -151,7 +148,6 @@ def receive(
         assumptions,
         outside_db,
         load_dbuv_m,
-        other_pointings,
     )
 
 
@@ -164,10 +160,9 @@ def receive_with_noise(
     assumptions: Assumptions,
     external_fam_db: ArrayLike,
     load_dbuv_m: ArrayLike | None = None,
-    other_pointings: Mapping[str, ArrayLike] | None = None,
 ) -> Reception:
     """Return the same as `receive`, for a stated noise from outside over 290 K [dB], (e,) or scalar."""
-    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m, other_pointings)
+    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m)
     outside = np.maximum(ratio_from_db(external_fam_db), 1) - 1
     best: Reception | None = None
     for setting in settings(chain):
@@ -197,7 +192,6 @@ def hear(
     polarisation: str,
     assumptions: Assumptions,
     load_dbuv_m: ArrayLike | None = None,
-    other_pointings: Mapping[str, ArrayLike] | None = None,
 ) -> Heard:
     """Levels that every aerial of a chain gives; arguments as those of `receive`."""
     blocks = mobile_blocks(assumptions)
@@ -208,8 +202,7 @@ def hear(
     for number, aerial in enumerate(chain.aerials):
         pointing, rods = pointing_deg, polarisation
         if number:
-            own = aerial.pointing_deg if aerial.pointing_deg is not None else pointing_deg
-            pointing = (other_pointings or {}).get(aerial.id, own)
+            pointing = pointing_deg if aerial.pointing_deg is None else aerial.pointing_deg
             rods = aerial.polarisation or polarisation
         air = at_aerial(
             aerial, signals.frequency_mhz, signals.bearing_deg, signals.polarisation, pointing, rods, assumptions

@@ -8,9 +8,7 @@ from typing import Any
 
 from app.chain.match import (
     MATCH_IS_NOT_GAIN,
-    Calibration,
     Measurement,
-    Pad,
     match_over_channels,
     measured_match,
 )
@@ -21,8 +19,8 @@ from app.lists import table
 
 def match_document(
     file: Path,
-    calibrated: Calibration,
-    pad: Pad = "none",
+    calibrated: str,
+    pad: str = "none",
     own_pad: Path | None = None,
     standard_ohm: float | None = None,
     raster: str = "europe-uhf-8",
@@ -38,7 +36,11 @@ def match_document(
         An unknown raster or channel.
     """
     measured = Measurement(
-        read_touchstone(file), calibrated, pad, None if own_pad is None else read_touchstone(own_pad), standard_ohm
+        read_touchstone(file),
+        calibrated,  # type: ignore[arg-type]  # measured_match checks the words
+        pad,  # type: ignore[arg-type]
+        None if own_pad is None else read_touchstone(own_pad),
+        standard_ohm,
     )
     match = measured_match(measured)
     wanted = [(name, *centre_mhz(raster, name)) for name in channels]

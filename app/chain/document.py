@@ -126,7 +126,7 @@ def part_to_document(part: Part) -> dict[str, Any]:
         if field.name == "after":
             values["after"] = value[0] if len(value) == 1 else list(value)
         elif field.name == "cuts":
-            values["cuts"] = [_cut_document(cut) for cut in value]
+            values["cuts"] = [cut_to_document(cut) for cut in value]
         elif isinstance(value, tuple):
             values[field.name] = [list(pair) for pair in value]
         else:
@@ -134,7 +134,8 @@ def part_to_document(part: Part) -> dict[str, Any]:
     return {"kind": part.kind, **_without_none(values)}
 
 
-def _cut_document(cut: Cut) -> dict[str, Any]:
+def cut_to_document(cut: Cut) -> dict[str, Any]:
+    """Return the document of one cut of a measured pattern."""
     points = [list(pair) for pair in zip(cut.angle_deg, cut.loss_db, strict=True)]
     known = {key: getattr(cut, key) for key in ("frequency_mhz", "polarisation", "emission")}
     return {**_without_none(known), "points": points}

@@ -35,6 +35,7 @@ def tree_of(chain: Named, parts: Sequence[Part]) -> Tree:
     if not parts or not isinstance(parts[0], Aerial):
         refuse(chain, "does not begin with an aerial", "make an aerial its first part", "parts")
     _check_ids(chain, parts)
+    parts = [part for part in parts if not isinstance(part, MastTube)]  # carries aerials, passes no signal
     outlets = [part for part in parts if isinstance(part, Outlet)]
     general = _general_set(chain, parts)
     if not outlets:
@@ -43,7 +44,7 @@ def tree_of(chain: Named, parts: Sequence[Part]) -> Tree:
     for name in names:
         if names.count(name) > 1:
             refuse(chain, f'has two outlets named "{name}"', "name each by its room", "parts")
-    kept = [part for part in parts if part is not general and not isinstance(part, MastTube)]
+    kept = [part for part in parts if part is not general]
     fed_by = _fed_by(chain, kept)
     feeds: dict[str, list[Part]] = {part.id: [] for part in kept}
     for part in kept:
