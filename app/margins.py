@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.at_aerial import room_sd_db
 from app.chain.parts import Aerial, AerialPolarisation, Chain
 from app.chance import Cells, ErrorPart, PathError, capped, exceedance, not_too_much, received
 from app.fields import EmissionField
@@ -242,6 +243,7 @@ def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> 
             assumptions.value("aerial_gain_sd_db" if aerial.measured else "aerial_own_build_sd_db"),
         ),
         same("feeder:" + "+".join(chain.part_ids_of_feeders), assumptions.value("feeder_sd_db")),
+        ErrorPart(("room",) * len(ids), room_sd_db(aerial, air.signals.frequency_mhz)),
     )
 
 
