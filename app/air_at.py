@@ -6,6 +6,7 @@ from datetime import date
 
 from app.assumptions import Assumptions
 from app.fields import fields_at
+from app.interferers import SEA_REACH_KM, interferers_at
 from app.margins import Air, air_of
 from app.request import AssessRequest
 from app.roof import Roof
@@ -30,5 +31,8 @@ def air_at(
         The place cannot be a roof.
     """
     site_of(roof, ground)
-    found = store.emissions_within(roof.latitude_deg, roof.longitude_deg, request.reach_km, today or date.today())
-    return air_of(fields_at(roof, found, ground, assumptions, request.availability_percent, request.method))
+    on_the_air = store.emissions_within(roof.latitude_deg, roof.longitude_deg, SEA_REACH_KM, today or date.today())
+    found = [row for row in on_the_air if row[2] <= request.reach_km]
+    availability, method = request.availability_percent, request.method
+    fields = fields_at(roof, found, ground, assumptions, availability, method)
+    return air_of(fields, interferers_at(roof, fields, on_the_air, ground, assumptions, availability, method))

@@ -1,247 +1,182 @@
-"""The ledger: every gain and loss of one emission on its way to one outlet, each with its source."""
+"""Every gain and loss from the radiated power to the margin, in both time states."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
-from app.at_aerial import AtAerial, aerial_lines
-from app.chain import overload
-from app.chain.cascade import Stage, stage_of
-from app.chain.flow import Flow, OutletFlow, flow, settings
-from app.chain.parts import Amplifier, Chain
-from app.link_budget import (
-    ENVIRONMENTS,
-    AtOutlet,
-    Heard,
-    Signals,
-    hear,
-    noise_factor_at,
-    outlets_of,
-    set_noise_figure_db,
-    summed_dbuv,
-)
-from propagation.noise import man_made_fam_db, noise_power_dbm
-from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
+from app.disturbance import STATES, Company, Effect, State
+from app.fields import EmissionField
+from app.margins import Air, Turned
+from app.outlet_ledger import Book, Step, book_of
+from app.request import AssessRequest
 
-FloatArray = NDArray[np.float64]
-Line = tuple[str, FloatArray, str]
+METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
+NEEDED = "C/N that the mode needs"  # the step of the link budget before which interference counts
+Books = Mapping[State, Book]  # of one chain, by time state
+NAMED = 3  # interferers with a line of their own
 
 
-@dataclass(frozen=True, slots=True)
-class Step:
-    """One line of the ledger."""
+def ledger(
+    request: AssessRequest,
+    turned: Turned,
+    e: int,
+    field: EmissionField,
+    air: Air,
+    books: Books,
+    outlet: str,
+) -> list[dict[str, Any]]:
+    """Steps of one emission to one outlet, the state that decides last; each state ends with its margin."""
+    rows: list[dict[str, Any]] = []
+    behind: list[Step] = []
+    states = sorted(STATES, key=lambda one: one == turned.state(e))
+    for state in states:
+        faded_db = field.fade_db if state == "a" else 0.0
+        before = _to_the_field(field, request.availability_percent, faded_db, state)
+        if not behind or not _alike(turned, e, field.fade_db):
+            behind = books[state].steps(e, outlet)[1:]  # the first is the field, which the steps before end with
+        reception = turned.raised if state == "b" else turned.faded
+        place = [one.name for one in reception.outlets].index(outlet)
+        at = next(k for k, step in enumerate(behind) if step.step == NEEDED)
+        cn_db = before[-1].total + sum(step.value_db for step in behind[:at])
+        change_db = float(reception.outlets[place].cn_db[e]) - cn_db
+        lines = [(step.step, step.value_db, step.source) for step in behind]
+        lines[at:at] = _company_lines(turned.effects[state], air.company, e, state, change_db)
+        rows += [_row(step, state) for step in (*before, *_summed(lines, before[-1].total))]
+    return rows
 
-    step: str
-    value_db: float
-    total: float  # dB(µV/m) up to the field, dB(µV) as a level, then dB of C/N and margin
-    source: str
+
+def books_of(turned: Turned, air: Air, request: AssessRequest, assumptions: Assumptions) -> Books:
+    """Gather what the ledgers of one chain are written from, in both time states."""
+    fields: dict[State, NDArray[np.float64]] = {"a": air.used_dbuv_m - air.fade_db, "b": air.used_dbuv_m}
+    return {
+        state: book_of(
+            turned.chain,
+            air.signals,
+            field,
+            turned.pointing_deg,
+            turned.polarisation,
+            assumptions,
+            request.roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
+        for state, field in fields.items()
+    }
 
 
-@dataclass(frozen=True, slots=True)
-class Book:
-    """All that the ledgers of one chain at one pointing are written from."""
+def _alike(turned: Turned, e: int, fade_db: float) -> bool:
+    """Whether everything behind the field does the same in both states: C/N differs by the fade alone."""
+    alone = {state: effect.cn_db[e] - effect.gain_db[e] for state, effect in turned.effects.items()}
+    return bool(abs(alone["b"] - alone["a"] - fade_db) < 1e-9)
 
-    chain: Chain
-    signals: Signals
-    field_dbuv_m: FloatArray  # (e,)
-    polarisation: str
-    assumptions: Assumptions
-    surroundings: str
-    heard: Heard
-    runs: tuple[tuple[Flow, tuple[AtOutlet, ...]], ...]  # one for each setting of the switches
 
-    def steps(self, index: int, outlet: str | None = None) -> list[Step]:
-        """Every gain and loss of one emission (row of the signals), from the field at the aerial to the margin.
+def _row(step: Step, state: State) -> dict[str, Any]:
+    return {
+        "step": step.step,
+        "value_db": round(step.value_db, 2) + 0.0,
+        "total": round(step.total, 2) + 0.0,
+        "source": step.source,
+        "state": state,
+    }
 
-        `outlet` None: the one with the least margin of those that count.
-        """
-        number, run, reached = self._best(index)
-        names = [one.name for one in reached]
-        if outlet is None:
-            counting = [i for i, name in enumerate(names) if name in self.chain.deciding_outlets]
-            outlet = names[min(counting, key=lambda i: float(reached[i].margin_db[index]))]
-        at = names.index(outlet)
-        air = self._serving(run.outlets[at], index)
-        lines: list[Line] = [
-            ("field at the aerial", self.field_dbuv_m[index : index + 1], "field of the path"),
-            *aerial_lines(
-                air,
-                float(self.signals.frequency_mhz[index]),
-                self.signals.polarisation[index],
-                self._rods(air),
-                index,
-            ),
-            *self._run_lines(air, outlet, index),
-        ]
-        lines += self._joined(lines, reached[at], index)
-        lines += self._noise_lines(run.outlets[at], reached[at], number, index)
-        needed = self.signals.mode_source[index] if self.signals.mode_source else "planning value of the mode"
+
+def _to_the_field(field: EmissionField, availability_percent: int, faded_db: float, state: State) -> list[Step]:
+    """Steps from the radiated power to the field at the aerial."""
+    assert field.path is not None  # only emissions with an answer have a ledger
+    power_db = 10 * float(np.log10(field.erp_kw))
+    lines = [
+        (
+            f"radiated power towards the roof, {field.erp_kw:.3g} kW ERP",
+            power_db,
+            f"register: {field.transmitter.source}",
+        ),
+        (
+            f"free space over {field.distance_km:.1f} km",
+            field.free_space_dbuv_m - power_db,
+            "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
+        ),
+        (
+            f"ground and atmosphere: {field.path.kind}",
+            field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m,
+            METHOD_SOURCES[str(field.method)],
+        ),
+    ]
+    if field.doubt_db:
+        lines.append(("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db"))
+    if state == "a":
+        lines.append(
+            (
+                f"fade that {availability_percent} % of the time stays above",
+                -faded_db,
+                f"{METHOD_SOURCES[str(field.method)]} and 1 %; "
+                "assumptions least_fade_99_db, sea_fade_99_db, fade_share_90",
+            )
+        )
+    return _summed(lines, 0.0)
+
+
+def _summed(lines: Sequence[tuple[str, float, str]], total: float) -> list[Step]:
+    steps = []
+    for name, value_db, source in lines:
+        total += value_db
+        steps.append(Step(name, value_db, total, source))
+    return steps
+
+
+def _company_lines(
+    effect: Effect, company: Company, e: int, state: State, change_db: float
+) -> Sequence[tuple[str, float, str]]:
+    """What other emissions add to and take from C/N; the values add up to `change_db`, less the echo's rise."""
+    lines: list[tuple[str, float, str]] = []
+    network = company.network_of(e)
+    if network is not None:
+        lines.append(
+            (
+                "other masts of the single-frequency network",
+                float(effect.gain_db[e]),
+                f"useful power within {network.symbol.guard_us:.0f} µs and weighted beyond"
+                + ("; guard interval not stated, the usual one" if network.symbol.assumed else "")
+                + ("; static delays not stated, taken as 0" if network.delay_assumed else ""),
+            )
+        )
+    lost_db = change_db - float(effect.gain_db[e])
+    who, over_c = effect.contributions(company, e)
+    if who.size:
+        shares = over_c / over_c.sum()
         lines += [
-            ("C/N that the mode needs", -self.signals.required_cn_db[index : index + 1], needed),
-            ("reserve", np.array([-self.assumptions.value("reserve_db")]), "assumption reserve_db"),
+            (_named(company, i), lost_db * share, _rule(company, i, e, state))
+            for i, share in zip(who[:NAMED].tolist(), shares.tolist(), strict=False)
         ]
-        steps: list[Step] = []
-        total = 0.0
-        for name, value, source in lines:
-            value_db = float(value.reshape(-1)[0]) + 0.0  # no negative zero
-            total += value_db
-            steps.append(Step(name, value_db, total, source))
-        return steps
-
-    def _best(self, index: int) -> tuple[int, Flow, tuple[AtOutlet, ...]]:
-        """Return the setting of the switches that serves an emission best."""
-
-        def margin(number: int) -> float:
-            return min(
-                float(min(one.margin_db[index], one.headroom_db[index]))
-                for one in self.runs[number][1]
-                if one.name in self.chain.deciding_outlets
-            )
-
-        number = max(range(len(self.runs)), key=margin)
-        return number, *self.runs[number]
-
-    def _serving(self, outlet: OutletFlow, index: int) -> AtAerial:
-        def level(air: AtAerial) -> float:
-            gain = outlet.at.gain.get(air.aerial.id)
-            if gain is None or gain[index] == 0:
-                return -np.inf
-            return float(self.heard.level_dbuv[air.aerial.id][index] + 10 * np.log10(gain[index]))
-
-        return max(self.heard.airs, key=level)
-
-    def _rods(self, air: AtAerial) -> str:
-        first = air.aerial is self.heard.airs[0].aerial
-        return self.polarisation if first else air.aerial.polarisation or self.polarisation
-
-    def _run_lines(self, air: AtAerial, outlet: str, index: int) -> list[Line]:
-        frequency = self.signals.frequency_mhz[index : index + 1]
-        run = self.chain.run_to(outlet, air.aerial.id)
-        lines: list[Line] = []
-        above = air.aerial.id
-        for part, port in zip(run, [*(part.port for part in run[1:]), ""], strict=True):
-            entry = self.chain.tree.fed_by[part.id].index(above)
-            stage: Stage = stage_of(part, frequency, port == "through", entry)
-            lines.append((part.name, stage.gain_db, stage.source))
-            above = part.id
-        return lines
-
-    def _joined(self, lines: list[Line], reached: AtOutlet, index: int) -> list[Line]:
-        """Return what the other aerials add to the level that a combiner gives."""
-        if len(self.heard.airs) == 1:
-            return []
-        alone = sum(float(value.reshape(-1)[0]) for _, value, _ in lines)
-        added = float(reached.level_dbuv[index]) - alone
-        return [("the other aerial adds", np.array([added]), "powers add")] if added > 1e-9 else []
-
-    def _noise_lines(self, outlet: OutletFlow, reached: AtOutlet, number: int, index: int) -> list[Line]:
-        """Noise at the outlet, split by where it comes from; each line is 0 or a loss of C/N."""
-        chain, signals = self.chain, self.signals
-        one = slice(index, index + 1)
-        behind = chain.tree.sets[outlet.name]
-        set_figure_db = set_noise_figure_db(chain, signals, outlet.name)[one]
-        bandwidth = signals.bandwidth_mhz[index]
-        own = noise_factor_at(chain, signals, outlet, np.zeros(1))[one]
-        stated = behind.noise_figure_db is not None
-        lead_db = -db_from_ratio(outlet.lead_gain[one])
-        lines: list[Line] = [
+        if who.size > NAMED:
+            rest_db = lost_db * float(shares[NAMED:].sum())
+            lines.append((f"{who.size - NAMED} weaker interferers", rest_db, "the same rules"))
+    if effect.rise_db[e]:
+        lines.append(
             (
-                "thermal noise",
-                -dbuv_from_dbm(noise_power_dbm(np.array([bandwidth]))),
-                f"k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms",
-            ),
-            (
-                f"noise of {behind.name}",
-                -set_figure_db,
-                "as stated for the part" if stated else "planning noise figure of the system",
-            ),
-        ]
-        if chain.tree.leads[outlet.name]:
-            lines.append(("fly lead to the set", -lead_db, "its loss adds to the noise figure of the set"))
-        left = db_from_ratio(own) - set_figure_db - lead_db
-        if any(isinstance(part, Amplifier) for part in chain.parts):
-            lines.append(("noise the amplifier leaves", -left, "cascade rule (Friis 1944), parts at 290 K"))
-        elif abs(float(left[0])) > 1e-9:
-            lines.append(("noise that the combiner adds", -left, "ports at 290 K"))
-        environment = ENVIRONMENTS[self.surroundings]
-        outside = np.maximum(ratio_from_db(man_made_fam_db(signals.frequency_mhz, environment)), 1) - 1
-        heard = db_from_ratio(noise_factor_at(chain, signals, outlet, outside)[one] / own)
-        lines.append(("noise from outside", -heard, f"Rec. ITU-R P.372, {environment}, at least 290 K"))
-        if self.runs[number][0].amplifiers:
-            noise, products = ratio_from_db(reached.noise_dbuv[one]), ratio_from_db(reached.intermodulation_dbuv[one])
-            lines.append(
-                (
-                    "third-order products of amplifiers",
-                    -db_from_ratio((noise + products) / noise),
-                    f"all that loads them; rated output, C/I3 law from memory; {self._loading(number)}",
-                )
+                "echo of the network as strong as the signal, or nearly",
+                -float(effect.rise_db[e]),
+                "table of echoes of 0 dB; assumption sfn_echo_range_db",
             )
-        return lines
-
-    def _loading(self, number: int) -> str:
-        """Say how far the signals drive each amplifier, beside the trade's derating."""
-        run = self.runs[number][0]
-        words = []
-        for name, place in run.amplifiers.items():
-            level = summed_dbuv(self.heard.load_dbuv, place.gain)
-            strong = int((level > np.nanmax(level) - 20).sum()) if level.size else 0
-            derated = run.rated_dbuv[name] - overload.derating_db(max(strong, 2))
-            words.append(
-                f"{self.chain.tree.part(name).name} puts out {float(overload.power_sum_dbuv(level)):.0f} dB(µV) "
-                f"in all, {strong} channels: rated {run.rated_dbuv[name]:g}, {derated:.0f} each by the trade's derating"
-            )
-        return "; ".join(words)
+        )
+    return lines
 
 
-def book_of(
-    chain: Chain,
-    signals: Signals,
-    field_dbuv_m: ArrayLike,
-    pointing_deg: float,
-    polarisation: str,
-    assumptions: Assumptions,
-    surroundings: str = "open",
-    load_dbuv_m: ArrayLike | None = None,
-) -> Book:
-    """Gather what the ledgers of one chain need; arguments as those of `receive`, fields (e,) or scalar."""
-    field = np.broadcast_to(np.asarray(field_dbuv_m, dtype=float), signals.frequency_mhz.shape)
-    heard = hear(chain, signals, field, pointing_deg, polarisation, assumptions, load_dbuv_m)
-    fam_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
-    outside = np.maximum(ratio_from_db(fam_db), 1) - 1
-    runs = []
-    for setting in settings(chain):
-        run = flow(chain, heard.load_frequency_mhz, setting)
-        runs.append((run, tuple(outlets_of(chain, signals, heard, run, outside, assumptions))))
-    return Book(chain, signals, field, polarisation, assumptions, surroundings, heard, tuple(runs))
+def _named(company: Company, i: int) -> str:
+    one = company.interferers[i]
+    where = f"channel {one.emission.channel}" if one.emission.channel else f"{one.emission.frequency_mhz:g} MHz"
+    return f"interference: {one.transmitter.name}, {where}, from {one.bearing_deg:.0f}°"
 
 
-def ledger_steps(
-    chain: Chain,
-    signals: Signals,
-    index: int,
-    field_dbuv_m: ArrayLike,
-    pointing_deg: float,
-    polarisation: str,
-    assumptions: Assumptions,
-    surroundings: str = "open",
-    outlet: str | None = None,
-) -> list[Step]:
-    """Every gain and loss of one emission, from the field at the aerial to the margin.
-
-    Each step's total is the one before plus its value; the last total is the margin of `receive`.
-
-    Parameters
-    ----------
-    index : int
-        Row of the emission in `signals`.
-    field_dbuv_m : array (e,) or scalar
-        Field at the aerial. [dB(µV/m)]
-    outlet : str or None
-        Name of the outlet; None: the deciding one.
-    """
-    book = book_of(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, surroundings)
-    return book.steps(index, outlet)
+def _rule(company: Company, i: int, e: int, state: State) -> str:
+    pairs = company.pairs
+    found = [pairs.rule[k] for k in pairs.of_wanted(e) if pairs.disturber[k] == i]
+    rule = found[0] if found else "arrives outside the guard interval of its own network"
+    time = "risen" if state == "b" else "at its median"
+    ground = (
+        "" if company.interferers[i].over_ground else "; no ground on its path: Rec. ITU-R P.1546-6 without terrain"
+    )
+    return f"its share of the loss; {time}; {rule}{ground}"

@@ -61,7 +61,10 @@ def sweep_document(
 
 def pointing_sweep(turned: Turned, air: Air, multiplexes: Sequence[str]) -> dict[str, Any]:
     """Chance of each multiplex for each whole degree, in the polarisation that is best; alternatives independent."""
-    columns = {name: [e for e, owner in enumerate(air.multiplex_of) if owner == name] for name in multiplexes}
+    acting = air.company.acting
+    columns = {
+        name: [e for e, owner in enumerate(air.multiplex_of) if owner == name and acting[e]] for name in multiplexes
+    }
     chance = {name: 1 - np.prod(1 - turned.sweep_chance[:, columns[name]], axis=1) for name in multiplexes}
     return {
         "polarisation": turned.polarisation,

@@ -22,8 +22,8 @@ from app.chain.parts import (
     Splitter,
     Switch,
 )
-from app.ledger import book_of, ledger_steps
 from app.link_budget import Signals, receive
+from app.outlet_ledger import book_of, ledger_steps
 from propagation.units import db_from_ratio
 
 DEFAULTS = Assumptions()
