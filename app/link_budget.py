@@ -109,6 +109,10 @@ class Reception:
         )
 
 
+# what a reception takes from the outlet with the least margin
+DECIDED = ("level_dbuv", "noise_dbuv", "intermodulation_dbuv", "cn_db", "margin_db")
+
+
 def receive(
     chain: Chain,
     signals: Signals,
@@ -336,34 +340,38 @@ def most_total_dbuv(chain: Chain, outlet: str, assumptions: Assumptions) -> floa
 def _decided(chain: Chain, heard: Heard, run: Flow, outlets: Sequence[AtOutlet]) -> Reception:
     """Take the outlets that count together: the least margin, the least headroom."""
     counting = [i for i, outlet in enumerate(outlets) if outlet.name in chain.deciding_outlets]
-    margins = np.stack([outlets[i].margin_db for i in counting])
-    least = np.argmin(np.where(np.isnan(margins), np.inf, margins), axis=0)
-    worst = np.asarray(counting, dtype=np.intp)[least]
-
-    def decide(key: str) -> FloatArray:
-        stacked = np.stack([np.broadcast_to(getattr(outlets[i], key), least.shape) for i in counting])
-        return np.asarray(np.take_along_axis(stacked, least[np.newaxis], axis=0)[0])
-
+    first = outlets[counting[0]]
+    worst = np.full(first.margin_db.shape, counting[0], dtype=np.intp)
+    kept = {key: np.array(np.broadcast_to(getattr(first, key), worst.shape)) for key in DECIDED}
+    for i in counting[1:]:
+        with np.errstate(invalid="ignore"):
+            lower = outlets[i].margin_db < kept["margin_db"]
+        if lower.any():
+            worst[lower] = i
+            for key, values in kept.items():
+                np.copyto(values, getattr(outlets[i], key), where=lower)
     gain = run.outlets[counting[0]].at.gain
     with np.errstate(divide="ignore"):
         strength = [
-            np.broadcast_to(level + db_from_ratio(gain[name][: level.shape[-1]]), least.shape)
+            np.broadcast_to(level + db_from_ratio(gain[name][: level.shape[-1]]), worst.shape)
             if name in gain
-            else np.full(least.shape, -np.inf)
+            else np.full(worst.shape, -np.inf)
             for name, level in heard.level_dbuv.items()
         ]
-    serving = np.argmax(np.nan_to_num(np.stack(strength), nan=-np.inf), axis=0)
+    serving = (
+        np.zeros(worst.shape, dtype=np.intp)
+        if len(strength) == 1
+        else np.argmax(np.nan_to_num(np.stack(strength), nan=-np.inf), axis=0)
+    )
 
     def of_serving(values: Sequence[FloatArray]) -> FloatArray:
-        stacked = np.stack([np.broadcast_to(value, least.shape) for value in values])
+        if len(values) == 1:
+            return np.broadcast_to(values[0], worst.shape)
+        stacked = np.stack([np.broadcast_to(value, worst.shape) for value in values])
         return np.asarray(np.take_along_axis(stacked, serving[np.newaxis], axis=0)[0])
 
     return Reception(
-        level_dbuv=decide("level_dbuv"),
-        noise_dbuv=decide("noise_dbuv"),
-        intermodulation_dbuv=decide("intermodulation_dbuv"),
-        cn_db=decide("cn_db"),
-        margin_db=decide("margin_db"),
+        **kept,
         headroom_db=np.min(np.stack([outlets[i].headroom_db for i in counting]), axis=0),
         off_axis_deg=of_serving([air.off_axis_deg for air in heard.airs]),
         pattern_loss_db=of_serving([air.pattern_loss_db for air in heard.airs]),

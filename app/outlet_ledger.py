@@ -54,6 +54,8 @@ class Book:
     heard: Heard
     runs: tuple[tuple[Flow, tuple[AtOutlet, ...]], ...]  # one for each setting of the switches
     stages: dict[tuple[str, bool, int], Stage] = field(default_factory=dict)  # of parts, reckoned once
+    noise: dict[tuple[int, str], list[Line]] = field(default_factory=dict)  # lines by setting and outlet, likewise
+    catch: dict[tuple[str, int], list[Line]] = field(default_factory=dict)  # lines by aerial and emission, likewise
 
     def steps(self, index: int, outlet: str | None = None) -> list[Step]:
         """Every gain and loss of one emission (row of the signals), from the field at the aerial to the margin.
@@ -69,13 +71,7 @@ class Book:
         air = self._serving(run.outlets[at], index)
         lines: list[Line] = [
             ("field at the aerial", self.field_dbuv_m[index : index + 1], "field of the path"),
-            *aerial_lines(
-                air,
-                float(self.signals.frequency_mhz[index]),
-                self.signals.polarisation[index],
-                self._rods(air),
-                index,
-            ),
+            *self._catch(air, index),
             *self._run_lines(air, outlet, index),
         ]
         lines += self._joined(lines, reached[at], index)
@@ -96,6 +92,9 @@ class Book:
     def _best(self, index: int) -> tuple[int, Flow, tuple[AtOutlet, ...]]:
         """Return the setting of the switches that serves an emission best."""
 
+        if len(self.runs) == 1:
+            return 0, *self.runs[0]
+
         def margin(number: int) -> float:
             return min(
                 float(min(one.margin_db[index], one.headroom_db[index]))
@@ -107,6 +106,9 @@ class Book:
         return number, *self.runs[number]
 
     def _serving(self, outlet: OutletFlow, index: int) -> AtAerial:
+        if len(self.heard.airs) == 1:
+            return self.heard.airs[0]
+
         def level(air: AtAerial) -> float:
             gain = outlet.at.gain.get(air.aerial.id)
             if gain is None or gain[index] == 0:
@@ -114,6 +116,13 @@ class Book:
             return float(self.heard.level_dbuv[air.aerial.id][index] + 10 * np.log10(gain[index]))
 
         return max(self.heard.airs, key=level)
+
+    def _catch(self, air: AtAerial, index: int) -> list[Line]:
+        key = (air.aerial.id, index)
+        if key not in self.catch:
+            frequency_mhz, emitted = float(self.signals.frequency_mhz[index]), self.signals.polarisation[index]
+            self.catch[key] = aerial_lines(air, frequency_mhz, emitted, self._rods(air), index)
+        return self.catch[key]
 
     def _rods(self, air: AtAerial) -> str:
         first = air.aerial is self.heard.airs[0].aerial
@@ -146,19 +155,29 @@ class Book:
 
     def _noise_lines(self, outlet: OutletFlow, reached: AtOutlet, number: int, index: int) -> list[Line]:
         """Noise at the outlet, split by where it comes from; each line is 0 or a loss of C/N."""
+        key = (number, outlet.name)
+        if key not in self.noise:
+            self.noise[key] = self._noise_at(outlet, reached, number)
+        bandwidth = self.signals.bandwidth_mhz[index]
+        return [
+            (name, value[index : index + 1], source.format(bandwidth=bandwidth))
+            for name, value, source in self.noise[key]
+        ]
+
+    def _noise_at(self, outlet: OutletFlow, reached: AtOutlet, number: int) -> list[Line]:
+        """Return the same lines for all emissions together, (e,)."""
         chain, signals = self.chain, self.signals
-        one = slice(index, index + 1)
+        count = signals.frequency_mhz.size
         behind = chain.tree.sets[outlet.name]
-        set_figure_db = set_noise_figure_db(chain, signals, outlet.name)[one]
-        bandwidth = signals.bandwidth_mhz[index]
-        own = noise_factor_at(chain, signals, outlet, np.zeros(1))[one]
+        set_figure_db = set_noise_figure_db(chain, signals, outlet.name)
+        own = noise_factor_at(chain, signals, outlet, np.zeros(1))
         stated = behind.noise_figure_db is not None
-        lead_db = -db_from_ratio(outlet.lead_gain[one])
+        lead_db = -db_from_ratio(outlet.lead_gain[:count])
         lines: list[Line] = [
             (
                 "thermal noise",
-                -dbuv_from_dbm(noise_power_dbm(np.array([bandwidth]))),
-                f"k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms",
+                -dbuv_from_dbm(noise_power_dbm(signals.bandwidth_mhz)),
+                "k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms",
             ),
             (
                 f"noise of {behind.name}",
@@ -171,21 +190,17 @@ class Book:
         left = db_from_ratio(own) - set_figure_db - lead_db
         if any(isinstance(part, Amplifier) for part in chain.parts):
             lines.append(("noise the amplifier leaves", -left, "cascade rule (Friis 1944), parts at 290 K"))
-        elif abs(float(left[0])) > 1e-9:
+        elif (np.abs(left) > 1e-9).any():
             lines.append(("noise that the combiner adds", -left, "ports at 290 K"))
         environment = ENVIRONMENTS[self.surroundings]
         outside = np.maximum(ratio_from_db(man_made_fam_db(signals.frequency_mhz, environment)), 1) - 1
-        heard = db_from_ratio(noise_factor_at(chain, signals, outlet, outside)[one] / own)
+        heard = db_from_ratio(noise_factor_at(chain, signals, outlet, outside) / own)
         lines.append(("noise from outside", -heard, f"Rec. ITU-R P.372, {environment}, at least 290 K"))
         if self.runs[number][0].amplifiers:
-            noise, products = ratio_from_db(reached.noise_dbuv[one]), ratio_from_db(reached.intermodulation_dbuv[one])
-            lines.append(
-                (
-                    "third-order products of amplifiers",
-                    -db_from_ratio((noise + products) / noise),
-                    f"all that loads them; rated output, C/I3 law from memory; {self._loading(number)}",
-                )
-            )
+            noise, products = ratio_from_db(reached.noise_dbuv), ratio_from_db(reached.intermodulation_dbuv)
+            source = f"all that loads them; rated output, C/I3 law from memory; {self._loading(number)}"
+            escaped = source.replace("{", "{{").replace("}", "}}")  # names of parts may hold braces
+            lines.append(("third-order products of amplifiers", -db_from_ratio((noise + products) / noise), escaped))
         return lines
 
     def _loading(self, number: int) -> str:
