@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -21,6 +22,7 @@ from app.link_budget import hear
 from app.margins import turn
 from app.planner import stored_chain
 from app.request import AssessRequest
+from app.site import site_of
 from app.transmitters.store import Store
 from app.verdict import HAVE
 from terrain.mosaic import Ground
@@ -42,7 +44,12 @@ class BlockQuestion:
 
 
 def block_document(
-    request: AssessRequest, question: BlockQuestion, store: Store, ground: Ground, today: date | None = None
+    request: AssessRequest,
+    question: BlockQuestion,
+    store: Store,
+    ground: Ground,
+    today: date | None = None,
+    refractivity_maps: Path | None = None,
 ) -> dict[str, Any]:
     """Propose a chain for a block at a roof, its aerial turned its best way.
 
@@ -62,7 +69,8 @@ def block_document(
         aerial,
     )
     assumptions = Assumptions(request.assumptions)
-    air = air_at(request, request.roof, store, ground, assumptions, today)
+    site_of(request.roof, ground)
+    _, air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
     multiplexes = sorted(set(air.multiplex_of))
     direct = Chain("direct", (aerial, Outlet(id="outlet", name="outlet"), Receiver(id="set", name="set")))
     if not air.fields:

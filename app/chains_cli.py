@@ -74,7 +74,9 @@ def sweep(at: At, height: Height = 10.0, names: Names = None, heights: bool = Tr
         roof = Roof(*pair(at, "--at", "44.5,-37.2"), height)
         world = open_world()
         request = AssessRequest(roof=roof, chains=tuple(names) if names else None)
-        document = sweep_document(request, world.store, world.ground, HEIGHTS_M if heights else ())
+        document = sweep_document(
+            request, world.store, world.ground, HEIGHTS_M if heights else (), refractivity_maps=world.refractivity_maps
+        )
     show(document, as_json, lambda: told_sweep(document))
 
 
@@ -101,7 +103,9 @@ def cheapest(
         world = open_world()
         request = AssessRequest(roof=roof, wanted=tuple(want) if want else None)
         wish = Wish(outlets, feeder, labour, visit)
-        document = cheapest_document(request, wish, world.store, world.ground)
+        document = cheapest_document(
+            request, wish, world.store, world.ground, refractivity_maps=world.refractivity_maps
+        )
     show(document, as_json, lambda: told_cheapest(document))
 
 
@@ -130,7 +134,9 @@ def block(
         roof = Roof(*pair(at, "--at", "44.5,-37.2"), height)
         world = open_world()
         question = BlockQuestion(outlets, layout, longest, shortest, aerial, standard)
-        document = block_document(AssessRequest(roof=roof), question, world.store, world.ground)
+        document = block_document(
+            AssessRequest(roof=roof), question, world.store, world.ground, refractivity_maps=world.refractivity_maps
+        )
         if out is not None:
             write_file(out, chain_text(document["chain"]))
     show(document, as_json, lambda: told_block(document))

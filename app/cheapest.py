@@ -11,6 +11,7 @@ import itertools
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -35,6 +36,7 @@ from app.chain_file import stored_parts
 from app.errors import ChainError, RequestError
 from app.margins import Air, Turned, multiplex_chances, turn
 from app.request import AssessRequest
+from app.site import site_of
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
@@ -75,7 +77,12 @@ class Tried:
 
 
 def cheapest_document(
-    request: AssessRequest, wish: Wish, store: Store, ground: Ground, today: date | None = None
+    request: AssessRequest,
+    wish: Wish,
+    store: Store,
+    ground: Ground,
+    today: date | None = None,
+    refractivity_maps: Path | None = None,
 ) -> dict[str, Any]:
     """Answer with the Pareto front of price against expected multiplexes at a roof, from the stored parts.
 
@@ -89,7 +96,8 @@ def cheapest_document(
     parts = stored_parts(store)
     chains = list(sensible_chains(parts, wish))
     assumptions = Assumptions(request.assumptions)
-    air = air_at(request, request.roof, store, ground, assumptions, today)
+    site_of(request.roof, ground)
+    _, air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
     multiplexes = sorted(set(air.multiplex_of))
     counted = [name for name in request.wanted or multiplexes if name in multiplexes]
     tried = [_tried(chain, air, request, multiplexes, counted, assumptions) for chain in chains] if air.fields else []

@@ -12,6 +12,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
@@ -66,6 +67,7 @@ def interferers_at(
     assumptions: Assumptions,
     availability_percent: int,
     method: Method = "both",
+    refractivity_maps: Path | None = None,
 ) -> list[Interferer]:
     """Return what may disturb the wanted emissions with an answer: those themselves first, in their order.
 
@@ -95,7 +97,9 @@ def interferers_at(
         return own
     rows, sea = [far[i] for i in kept], sea[kept]
     strength = (bound.max(axis=0)[kept][:, None] + weight[kept]).max(axis=1)
-    return own + _reckoned(roof, rows, sea, strength, times, ground, assumptions, availability_percent, method)
+    return own + _reckoned(
+        roof, rows, sea, strength, times, ground, assumptions, availability_percent, method, refractivity_maps
+    )
 
 
 def spectra_of(emissions: Sequence[Emission]) -> Spectra:
@@ -230,6 +234,7 @@ def _reckoned(
     assumptions: Assumptions,
     availability_percent: int,
     method: Method,
+    refractivity_maps: Path | None,
 ) -> list[Interferer]:
     strongest: dict[str, float] = {}
     for row, value in zip(rows, strength.tolist(), strict=True):
@@ -238,7 +243,7 @@ def _reckoned(
     asked = [row for row in rows if row[1].id in chosen]
     answered = {
         field.emission.id: _of_field(field)
-        for field in fields_at(roof, asked, ground, assumptions, availability_percent, method)
+        for field in fields_at(roof, asked, ground, assumptions, availability_percent, method, refractivity_maps)
         if field.path is not None
     }
     roof_m = float(ground.elevation_m(roof.latitude_deg, roof.longitude_deg))

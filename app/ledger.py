@@ -102,7 +102,7 @@ def _to_the_field(field: EmissionField, availability_percent: int, faded_db: flo
         (
             f"ground and atmosphere: {field.path.kind}",
             field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m,
-            METHOD_SOURCES[str(field.method)],
+            _method_source(field),
         ),
     ]
     if field.doubt_db:
@@ -113,10 +113,22 @@ def _to_the_field(field: EmissionField, availability_percent: int, faded_db: flo
                 f"fade that {availability_percent} % of the time stays above",
                 -faded_db,
                 f"{METHOD_SOURCES[str(field.method)]} and 1 %; "
-                "assumptions least_fade_99_db, sea_fade_99_db, fade_share_90",
+                "assumptions least_fade_99_db, sea_fade_99_db, fade_share_90; "
+                f"where this emission disturbs, it rises by {field.enhancement_db:.2f} dB instead",
             )
         )
     return _summed(lines, 0.0)
+
+
+def _method_source(field: EmissionField) -> str:
+    """Name the method of a field, what the other one says, and why this one."""
+    source = METHOD_SOURCES[str(field.method)]
+    if field.difference_db is None:
+        return f"{source}: {field.method_reason}"
+    return (
+        f"{source}; P.1812 {field.p1812_dbuv_m:.2f}, P.1546 {field.p1546_dbuv_m:.2f} dB(µV/m), "
+        f"difference {field.difference_db:+.2f} dB"
+    )
 
 
 def _summed(lines: Sequence[tuple[str, float, str]], total: float) -> list[Step]:

@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 from app.aiming import aimed
+from app.air_at import air_at
 from app.answer import answer_document
 from app.assumptions import Assumptions
 from app.chain.document import CHAIN_KEYS, chain_from_document
@@ -16,9 +18,7 @@ from app.chain.powering import as_powered
 from app.chain.windows import DEFAULT_STANDARD
 from app.chain_notes import chain_notes, with_notes
 from app.errors import RequestError
-from app.fields import fields_at
-from app.interferers import SEA_REACH_KM, interferers_at
-from app.margins import Air, Turned, air_of, multiplex_chances, turn
+from app.margins import Air, Turned, multiplex_chances, turn
 from app.request import NOTHING, AssessRequest
 from app.site import site_of
 from app.transmitters.store import Store
@@ -26,7 +26,13 @@ from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multi
 from terrain.mosaic import Ground
 
 
-def assess(request: AssessRequest, store: Store, ground: Ground, today: date | None = None) -> dict[str, Any]:
+def assess(
+    request: AssessRequest,
+    store: Store,
+    ground: Ground,
+    today: date | None = None,
+    refractivity_maps: Path | None = None,
+) -> dict[str, Any]:
     """Answer one request with the document of the interface, the same for API and command line.
 
     Raises
@@ -37,17 +43,7 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = chains_of(request, store)
     site = site_of(request.roof, ground)
-    on_the_air = store.emissions_within(
-        request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
-    )
-    found = [row for row in on_the_air if row[2] <= request.reach_km]
-    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent, request.method)
-    air = air_of(
-        fields,
-        interferers_at(
-            request.roof, fields, on_the_air, ground, assumptions, request.availability_percent, request.method
-        ),
-    )
+    fields, air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]

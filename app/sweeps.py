@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -21,6 +22,7 @@ from app.chain.powering import as_powered
 from app.margins import Air, Turned, multiplex_chances, turn
 from app.planner import chains_of
 from app.request import AssessRequest
+from app.site import site_of
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
@@ -34,6 +36,7 @@ def sweep_document(
     ground: Ground,
     heights_m: Sequence[float] = HEIGHTS_M,
     today: date | None = None,
+    refractivity_maps: Path | None = None,
 ) -> dict[str, Any]:
     """Answer all three sweeps for the chains of a request; an empty list of heights leaves that sweep out.
 
@@ -44,13 +47,14 @@ def sweep_document(
     """
     assumptions = Assumptions(request.assumptions)
     chains = chains_of(request, store)
-    air = air_at(request, request.roof, store, ground, assumptions, today)
+    site_of(request.roof, ground)
+    _, air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
     multiplexes = sorted(set(air.multiplex_of))
     turned = {chain.name: _turned(chain, air, request, multiplexes, assumptions) for chain in chains}
     return {
         "multiplexes": multiplexes,
         "pointing": {name: pointing_sweep(one, air, multiplexes) for name, one in turned.items()},
-        "height": height_sweep(request, chains, store, ground, assumptions, heights_m, today),
+        "height": height_sweep(request, chains, store, ground, assumptions, heights_m, today, refractivity_maps),
         "two_aerials": {
             chain.name: two_aerials(chain, air, request, multiplexes, assumptions)
             for chain in chains
@@ -81,13 +85,14 @@ def height_sweep(
     assumptions: Assumptions,
     heights_m: Sequence[float],
     today: date | None = None,
+    refractivity_maps: Path | None = None,
 ) -> list[dict[str, Any]]:
     """Expected multiplexes of each chain at each height, turned its best way there."""
     found = []
     for height_m in heights_m:
         roof = replace(request.roof, aerial_agl_m=height_m)
         there = replace(request, roof=roof)
-        air = air_at(there, roof, store, ground, assumptions, today)
+        _, air = air_at(there, roof, store, ground, assumptions, today, refractivity_maps)
         multiplexes = sorted(set(air.multiplex_of))
         rows = {}
         for chain in chains:

@@ -21,6 +21,10 @@ COARSEST_M = 35.0
 _ABOVE_PLANE_M = 1.5
 _ROUNDS = 5
 _FEWEST_CELLS = 6
+_MOST_LEFT_OUT = 0.5
+# What the lowest samples depart from the plane is relief: on a crest that falls evenly to both sides they lie
+# up to 3.5 times that (root mean square) below it.
+_DEPARTURES = 3.5
 _METRES_PER_DEGREE = 111_320.0
 
 
@@ -30,8 +34,9 @@ def bare_ground_m(ground: Ground, latitude_deg: ArrayLike, longitude_deg: ArrayL
     Where a raster of bare ground answers, or one coarser than 35 m, its own height. Else the height of a plane
     through the lowest samples of 5 × 5 cells about the position: a plane, because on a slope the
     lowest neighbours stand lower than the ground here (20 % over 100 m: by 14 m). Cells whose lowest
-    sample stands more than 1.5 m above the plane are left out and the plane is fitted again. Never above the
-    surface itself. Positions broadcast.
+    sample stands more than 1.5 m above the plane are left out, up to half of them, and the plane is fitted again.
+    What the others depart from it raises the result: a crest is no house. Never above the surface itself.
+    Positions broadcast.
 
     Raises RasterError and CacheError as `Ground.elevation_m`.
     """
@@ -69,12 +74,16 @@ def _plane_m(ground: Ground, lat: FloatArray, lon: FloatArray, spacing_m: float)
     for _ in range(_ROUNDS):
         above = z - np.einsum("nct,nt->nc", terms, plane) > _ABOVE_PLANE_M
         fewer = used & ~above
-        refit = (fewer.sum(axis=1) >= _FEWEST_CELLS) & (fewer != used).any(axis=1)
+        enough = np.maximum(_FEWEST_CELLS, z.shape[1] * (1 - _MOST_LEFT_OUT))
+        refit = (fewer.sum(axis=1) >= enough) & (fewer != used).any(axis=1)
         if not refit.any():
             break
         used[refit] = fewer[refit]
         plane[refit] = _fit(terms[refit], z[refit], (used * weight)[refit])
-    return np.where(used.sum(axis=1) >= _FEWEST_CELLS, plane[:, 0], np.nan)
+    count = used.sum(axis=1)
+    departure = np.where(used, z - np.einsum("nct,nt->nc", terms, plane), 0.0)
+    relief_m = _DEPARTURES * np.sqrt((departure**2).sum(axis=1) / np.maximum(count, 1))
+    return np.where(count >= _FEWEST_CELLS, plane[:, 0] + relief_m, np.nan)
 
 
 def _fit(terms: FloatArray, z: FloatArray, weight: FloatArray) -> FloatArray:

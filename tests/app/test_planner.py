@@ -40,8 +40,8 @@ def test_document_has_the_shape_of_the_interface(ask):
             "bearing_deg", "distance_km", "path", "field", "chains"} <= set(emission)  # fmt: skip
     assert {"sentence", "line_of_sight", "clearance_ratio", "terrain_clearance_angle_deg", "effective_height_m",
             "diffraction_loss_db", "zones", "kind"} <= set(emission["path"])  # fmt: skip
-    assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "used_dbuv_m", "method", "sigma_db", "fade_db",
-            "enhancement_db"} == set(emission["field"])  # fmt: skip
+    assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "difference_db", "apart", "used_dbuv_m", "method",
+            "method_reason", "sigma_db", "fade_db", "enhancement_db"} == set(emission["field"])  # fmt: skip
     outlet = emission["chains"]["roof-yagi"]["outlets"][0]
     assert {"name", "level_dbuv", "level_median_dbuv", "cn_db", "required_cn_db", "margin_db", "headroom_db", "chance",
             "held_back_by",
@@ -239,3 +239,15 @@ def stored_chain_of_nothing():
     from app.chain.document import chain_from_document
 
     return chain_from_document({"name": "empty", "parts": []})
+
+
+def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
+    for emission in ask(now="roof-yagi")["emissions"]:
+        field = emission["field"]
+        ledger = emission["chains"]["roof-yagi"]["outlets"][0]["ledger"]
+        ground = next(row for row in ledger if row["step"].startswith("ground and atmosphere"))
+        fade = next(row for row in ledger if row["step"].startswith("fade"))
+        assert f"P.1812 {field['p1812_dbuv_m']:.2f}, P.1546 {field['p1546_dbuv_m']:.2f}" in ground["source"]
+        assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
+        assert fade["value_db"] == -field["fade_db"]
+        assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]

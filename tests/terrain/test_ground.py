@@ -92,3 +92,15 @@ def test_many_places_are_what_each_is_alone_and_outside_there_is_nothing(hillsid
     assert np.isnan(together[-1])
     alone = [float(bare_ground_m(ground, a, b)) for a, b in zip(lat[:-1], lon[:-1], strict=True)]
     assert together[:-1] == pytest.approx(alone, abs=1e-9)
+
+
+@pytest.mark.parametrize("pixel_m", [1.0, 10.0, 30.0])
+@pytest.mark.parametrize("fall", [0.03, 0.1, 0.3, 0.6])
+def test_a_crest_is_no_house(write_raster, ground_of, pixel_m, fall):
+    """A ridge that falls evenly to both sides, made by the test: its top is not taken for cover."""
+    heights = 1900 - fall * pixel_m * np.abs(np.arange(SIDE) - SIDE // 2)[:, None] * np.ones(SIDE)
+    transform = Affine(pixel_m, 0, 600_000, 0, -pixel_m, 5_300_000)
+    path = write_raster(heights.astype("float32"), crs="EPSG:32632", transform=transform)
+    x, y = 600_000 + SIDE / 2 * pixel_m, 5_300_000 - (SIDE // 2 + 0.5) * pixel_m
+    lon, lat = TO_DEGREES.transform(x, y)
+    assert float(bare_ground_m(ground_of(path), lat, lon)) == pytest.approx(1900, abs=1.5)

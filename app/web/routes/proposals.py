@@ -19,7 +19,12 @@ async def sweep(question: SweepIn, context: ContextDep) -> JSONResponse:
     """Chance of each multiplex for each whole degree, expected multiplexes by height, two aerials against one."""
     return JSONResponse(
         await context.compute(
-            sweep_document, question.assess_request(), context.store, context.ground, tuple(question.heights_m)
+            sweep_document,
+            question.assess_request(),
+            context.store,
+            context.ground,
+            tuple(question.heights_m),
+            refractivity_maps=context.settings.refractivity_maps,
         )
     )
 
@@ -29,7 +34,12 @@ async def cheapest(question: CheapestIn, context: ContextDep) -> JSONResponse:
     """Pareto front of price against expected multiplexes."""
     return JSONResponse(
         await context.compute(
-            cheapest_document, question.assess_request(), question.wish(), context.store, context.ground
+            cheapest_document,
+            question.assess_request(),
+            question.wish(),
+            context.store,
+            context.ground,
+            refractivity_maps=context.settings.refractivity_maps,
         )
     )
 
@@ -39,6 +49,11 @@ async def block(question: BlockIn, context: ContextDep) -> JSONResponse:
     """Proposed chain with the levels at its outlets and what lies outside the window."""
     return JSONResponse(
         await context.compute(
-            block_document, question.assess_request(), question.question(), context.store, context.ground
+            block_document,
+            question.assess_request(),
+            question.question(),
+            context.store,
+            context.ground,
+            refractivity_maps=context.settings.refractivity_maps,
         )
     )
