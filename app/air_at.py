@@ -7,7 +7,7 @@ from pathlib import Path
 
 from app.assumptions import Assumptions
 from app.fields import EmissionField, fields_at
-from app.interferers import SEA_REACH_KM, interferers_at
+from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
 from app.margins import Air, air_of
 from app.request import AssessRequest
 from app.roof import Roof
@@ -26,7 +26,7 @@ def air_at(
 ) -> tuple[list[EmissionField], Air]:
     """Return the field of each emission in reach of a roof, and those with an answer gathered as columns."""
     on_the_air = store.emissions_within(roof.latitude_deg, roof.longitude_deg, SEA_REACH_KM, today or date.today())
-    found = [row for row in on_the_air if row[2] <= request.reach_km]
+    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
     availability, method = request.availability_percent, request.method
     fields = fields_at(roof, found, ground, assumptions, availability, method, refractivity_maps)
     disturbing = interferers_at(roof, fields, on_the_air, ground, assumptions, availability, method, refractivity_maps)
