@@ -159,7 +159,7 @@ def _cell(
     loudest_sd_db = turned.median.of_loudest(turned.cells.sigma_db)[0]
     reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
-    for outlet, median in zip(reception.outlets, turned.median.outlets, strict=True):
+    for number, (outlet, median) in enumerate(zip(reception.outlets, turned.median.outlets, strict=True)):
         margin_db = float(outlet.margin_db[e])
         headroom_db = float(median.headroom_db[e])
         enough = exceedance(np.array(margin_db), np.array(sigma_db))
@@ -173,7 +173,7 @@ def _cell(
                 "margin_db": round(margin_db, 2),
                 "headroom_db": round(headroom_db, 2),
                 "chance": _probability(float(not_too_much(enough, np.array(headroom_db), loudest_sd_db))),
-                "held_back_by": limit,
+                "held_back_by": _limit(turned, e, number),
                 "ledger": ledger(request, turned, e, field, air, books, outlet.name),
             }
         )
@@ -186,8 +186,8 @@ def _cell(
     }
 
 
-def _limit(turned: Turned, e: int) -> dict[str, Any]:
-    held = turned.held_back(e)
+def _limit(turned: Turned, e: int, outlet: int | None = None) -> dict[str, Any]:
+    held = turned.held_back(e, outlet)
     by = None if held.by is None else turned.company.interferers[held.by]
     return {
         "limit": held.limit,

@@ -87,11 +87,6 @@ class Reception:
     outlets: tuple[AtOutlet, ...]
 
     @property
-    def is_overload(self) -> NDArray[np.bool_]:
-        """Whether too much level holds an emission back sooner than too little. (…, e)"""
-        return (self.headroom_db < self.margin_db) | (self.intermodulation_dbuv > self.noise_dbuv)
-
-    @property
     def loudest(self) -> NDArray[np.intp]:
         """Row of the emission with the highest level, 0 if there is none. (…)"""
         if not self.level_dbuv.shape[-1]:
@@ -107,6 +102,11 @@ class Reception:
                 np.broadcast_to(values, self.level_dbuv.shape), np.asarray(self.loudest)[..., np.newaxis], axis=-1
             )
         )
+
+
+def is_overload(place: Reception | AtOutlet) -> NDArray[np.bool_]:
+    """Whether too much level holds an emission back sooner than too little, there. (…, e)"""
+    return (place.headroom_db < place.margin_db) | (place.intermodulation_dbuv > place.noise_dbuv)
 
 
 # what a reception takes from the outlet with the least margin

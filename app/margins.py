@@ -16,7 +16,7 @@ from app.disturbance import Company, Effect, State, company_of, disturbed, ear_o
 from app.disturbance_errors import Disturbers, Moved, disturbers_of, moved_by, rejection_sd_db, slope_and_spread
 from app.fields import EmissionField
 from app.interferers import Interferer
-from app.link_budget import Reception, Signals, receive
+from app.link_budget import Reception, Signals, is_overload, receive
 from app.roof import Roof
 from app.systems import mode_of
 from terrain.geodesy import distance_and_bearing
@@ -81,11 +81,12 @@ class Turned:
         """What holds one emission back: too much level, interference above noise, time where only a fade does it."""
         return self.held_back(e).limit
 
-    def held_back(self, e: int) -> HeldBack:
-        """What holds one emission back, in the state that decides."""
+    def held_back(self, e: int, outlet: int | None = None) -> HeldBack:
+        """What holds one emission back, in the state that decides, at one outlet; None: at those that count."""
         state = self.state(e)
         reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
-        if self.median.is_overload[e]:
+        place = self.median if outlet is None else self.median.outlets[outlet]
+        if is_overload(place)[e]:
             return HeldBack("overload", state, None, None)
         if float(effect.i_over_n[e]) > 1:
             return HeldBack("interference", state, *effect.strongest(self.company, e))
