@@ -9,9 +9,13 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 import pytest
+from hypothesis import settings
 
 if TYPE_CHECKING:
     from app.world import World
+
+settings.register_profile("gainworth", deadline=None)  # how fast a busy machine is decides no test
+settings.load_profile("gainworth")
 
 BROWSERS = ("chromium", "chromium-browser", "google-chrome")
 MUST_RUN = os.environ.get("GAINWORTH_TEST_ALL") == "1"
