@@ -106,28 +106,6 @@ def emission_of(row: tuple[Any, ...]) -> Emission:
         key, transmitter, multiplex, channel, frequency, bandwidth, system, mode, erp,
         polarisation, height, pattern, valid_from, valid_to, flags, is_on, guard, delay,
     ) = row  # fmt: skip
-<<<<<<< HEAD
-    return Emission(
-        id=key,
-        transmitter_id=transmitter,
-        multiplex_id=multiplex,
-        channel=channel,
-        frequency_mhz=frequency,
-        bandwidth_mhz=bandwidth,
-        system=system,
-        mode=mode,
-        erp_kw=erp,
-        polarisation=cast(Polarisation, polarisation),
-        antenna_agl_m=height,
-        pattern_attenuation_db=tuple(v / 100 for v in struct.unpack(f"<{len(pattern) // 2}H", pattern)),
-        valid_from=date.fromisoformat(valid_from) if valid_from else None,
-        valid_to=date.fromisoformat(valid_to) if valid_to else None,
-        flags=tuple(flags.split()),
-        on=bool(is_on),
-        guard=guard,
-        static_delay_us=delay,
-    )
-=======
     try:
         return Emission(
             id=key,
@@ -146,9 +124,10 @@ def emission_of(row: tuple[Any, ...]) -> Emission:
             valid_to=date.fromisoformat(valid_to) if valid_to else None,
             flags=tuple(flags.split()),
             on=bool(is_on),
+            guard=guard,
+            static_delay_us=delay,
         )
     except (ValueError, TypeError, AttributeError, struct.error) as error:
         raise StoreError(
             f'the stored emission "{key}" is damaged ({error}): import its file again, or restore a backup'
         ) from error
->>>>>>> main
