@@ -288,8 +288,8 @@ def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> lis
     """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
     mine = field.emission
     return [
-        f"{field.transmitter.name} in {field.transmitter.source} "
-        f"and {other.transmitter.name} in {other.transmitter.source}"
+        f"{field.transmitter.name} in {field.transmitter.source} and "
+        f"{other.transmitter.name} in {other.transmitter.source}"
         for other in fields
         if other.transmitter.source > field.transmitter.source
         and other.emission.system == mine.system
