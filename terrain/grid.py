@@ -62,6 +62,21 @@ class Grid:
         sides_km, _ = distance_and_bearing(lat[0], lon[0], lat[1:], lon[1:])
         return replace(grid, spacing_m=1e3 * float(np.sqrt(sides_km.prod())))
 
+    def shifted(self, rows: int, columns: int, transform: Affine) -> Grid:
+        """Grid of the same coordinate system with another corner and size; it may reach over a pole by a few rows."""
+        west, south, east, north = _bounds(rows, columns, transform, self.to_crs)
+        turns = self.turns_deg
+        return replace(
+            self,
+            rows=rows,
+            columns=columns,
+            transform=transform,
+            west_deg=west - turns,
+            south_deg=south,
+            east_deg=east - turns,
+            north_deg=north,
+        )
+
     def index(self, lat: FloatArray, lon: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Row and column (fractional) of positions [deg]; NaN or outside the raster where it does not reach."""
         if self.to_crs is None:

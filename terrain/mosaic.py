@@ -14,6 +14,7 @@ from terrain.blocks import COARSE, Blocks
 from terrain.cache import ArrayCache
 from terrain.errors import RasterError
 from terrain.raster import SUFFIXES, Raster, open_raster
+from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
 
@@ -60,9 +61,10 @@ class Ground:
     across the seam take their corners from both; at an outer edge the last sample holds for half a cell.
     """
 
-    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused]) -> None:
+    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused], cache: ArrayCache) -> None:
         self._layers = tuple(layers)
         self.refused = tuple(refused)
+        self._cache = cache
 
     @classmethod
     def open(cls, paths: Sequence[Path], cache_dir: Path) -> Ground:
@@ -84,7 +86,7 @@ class Ground:
                 seen.add(identity)
                 layers.append(_Layer(raster, Blocks(raster, cache)))
         layers.sort(key=lambda layer: (round(layer.raster.grid.spacing_m, 1), layer.raster.name))
-        return cls(layers, refused)
+        return cls(layers, refused, cache)
 
     @property
     def rasters(self) -> tuple[RasterInfo, ...]:
@@ -116,6 +118,13 @@ class Ground:
             digest.update(f"{raster.content} {raster.kind} {raster.crs} {tuple(raster.grid.transform)}\n".encode())
         return digest.hexdigest()[:12]
 
+    def sheets(self) -> list[Sheet]:
+        """The rasters laid together as far as one array can hold them (sheet.py); decodes them all the first time.
+
+        Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
+        """
+        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache)
+
     def survey(self) -> Ground:
         """Read every raster whole, once: void shares are known, and damaged files join `refused`."""
         layers, refused = [], list(self.refused)
@@ -125,7 +134,7 @@ class Ground:
                 layers.append(layer)
             except RasterError as error:
                 refused.append(Refused(layer.raster.path, str(error)))
-        return Ground(layers, refused)
+        return Ground(layers, refused, self._cache)
 
     def elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> FloatArray:
         """Height above sea level [m], bilinear between samples; NaN where no raster has a value.
