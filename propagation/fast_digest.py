@@ -265,7 +265,7 @@ def _digest(
     )
     return PathDigest(
         path_length_km=d,
-        land_km=d - s["sea_km"],
+        land_km=np.maximum(d - s["sea_km"], 0.0),
         sea_km=s["sea_km"],
         tx_ground_amsl_m=s["tx_ground_amsl_m"],
         rx_ground_amsl_m=s["rx_ground_amsl_m"],

@@ -176,8 +176,9 @@ def _place(
         if top > best or (last and top == best):
             best, best_first = top, first
 
+    # A few points more on both sides: over a level sea, single precision may take the stretch beside the right one.
     place, largest = best_first, -1e300
-    for i in range(best_first, min(best_first + stretch, n - 1)):
+    for i in range(max(1, best_first - 8), min(best_first + stretch + 8, n - 1)):
         above = height[i] - (tx_amsl + (rx_amsl - tx_amsl) * i / (n - 1)) + bulge * i * (n - 1 - i)
         value = above * one[i] * other[i]
         if value > largest or (last and value == largest):
