@@ -156,7 +156,7 @@ def _cell(
     limit = _limit(turned, e)
     before = _ledger_to_field(field, request.availability_percent)
     outlets = []
-    for outlet in turned.faded.outlets:
+    for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
         margin_db = float(outlet.margin_db[e])
         steps = ledger_steps(
             turned.chain,
@@ -173,6 +173,7 @@ def _cell(
             {
                 "name": outlet.name,
                 "level_dbuv": round(float(outlet.level_dbuv[e]), 2),
+                "level_median_dbuv": round(float(median.level_dbuv[e]), 2),
                 "cn_db": round(float(outlet.cn_db[e]), 2),
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),

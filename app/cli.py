@@ -122,20 +122,24 @@ def assess(
     as_json: Json = False,
 ) -> None:
     """Say what a roof receives with each chain, and whether a better one is worth its price."""
+    from app.paths import data_dir
     from app.planner import assess as answer_to
     from app.request import AssessRequest
     from app.roof import Roof
+    from app.settings import load_settings
     from app.telling import told
     from app.world import open_world
 
     with _mendable():
         latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+        settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
             chains=tuple(chain) if chain else None,
             now=now,
             wanted=tuple(want) if want else None,
-            worth_per_multiplex=worth,
+            worth_per_multiplex=settings.worth_per_multiplex if worth is None else worth,
+            reading_cost=settings.reading_cost,
             availability_percent=availability,
             reach_km=reach,
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word

@@ -28,7 +28,7 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     AppError, TerrainError
         The roof, a name or a value is not possible: the message says what is.
     """
-    assumptions = Assumptions(request.assumptions)
+    assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = _chains(request, store)
     site = site_of(request.roof, ground)
     found = store.emissions_within(
@@ -124,7 +124,6 @@ def _verdicts(
         compared = in_question
     present = [one for one in chosen if one in multiplexes]
     wanted = present if chosen else wanted_multiplexes(multiplexes, compared)
-    worth = request.worth_per_multiplex
     return ranked(
         [
             compare(
@@ -133,7 +132,7 @@ def _verdicts(
                 in_question,
                 multiplexes,
                 wanted,
-                assumptions.value("worth_per_multiplex") if worth is None else worth,
+                assumptions.value("worth_per_multiplex"),
                 baseline_is_up=request.now is not None,
             )
             for candidate in in_question

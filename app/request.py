@@ -59,6 +59,12 @@ class AssessRequest:
                 allowed="one or more multiplex ids",
             )
 
+    @property
+    def stated_values(self) -> dict[str, float]:
+        """Assumptions that the request states by a field of their own."""
+        stated = {"worth_per_multiplex": self.worth_per_multiplex, "reading_cost": self.reading_cost}
+        return {key: value for key, value in stated.items() if value is not None}
+
 
 def _one_of(name: str, value: object, allowed: tuple[object, ...]) -> None:
     if value not in allowed:

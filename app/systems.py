@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from functools import cache
 
 from app.errors import ModeError
-from app.tables import rows
+from app.tables import rows, told_source
 
 
 @dataclass(frozen=True, slots=True)
@@ -125,10 +125,10 @@ def _systems() -> dict[str, System]:
 
 def _source(row: dict[str, str], system: dict[str, str]) -> str:
     added = float(system["added_cn_db"])
-    raw = f"{float(row['raw_cn_db']):g} dB, {row['source']} ({row['flag']})"
+    raw = f"{float(row['raw_cn_db']):g} dB, {told_source(row['source'], row['flag'])}"
     if added == 0:
         return raw
-    return f"{raw}; {added:g} dB to planning, {system['added_source']} ({system['added_flag']})"
+    return f"{raw}; {added:g} dB to planning, {told_source(system['added_source'], system['added_flag'])}"
 
 
 def _plain(text: str) -> str:

@@ -41,6 +41,11 @@ class Outcome:
     chance: NDArray[np.float64]  # (m,)
     held_back_by: tuple[str | None, ...]  # (m,) the limit that holds each back
 
+    @property
+    def title(self) -> str:
+        """What people call it."""
+        return (self.chain.title if self.chain else "") or self.name
+
 
 @dataclass(frozen=True, slots=True)
 class Verdict:
@@ -145,15 +150,15 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
     place = {name: m for m, name in enumerate(multiplexes)}
     missing = [name for name in wanted if baseline.chance[place[name]] < HAVE]
     if not missing:
-        return f"All {len(wanted)} wanted are likely already with {baseline.name}; little is left to gain."
+        return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
     held = "; ".join(f"{limit} holds back {count} of {len(missing)}" for limit, count in limits.most_common())
     if baseline.chain is None:
         held = f"nothing is up today for {len(missing)} wanted"
     if not cured:
-        return f"{_capital(held)}; {candidate.name} does not bring any of them to a likely chance."
-    return f"{_capital(held)}; {candidate.name} brings {len(cured)} of them to a likely chance."
+        return f"{_capital(held)}; {candidate.title} does not bring any of them to a likely chance."
+    return f"{_capital(held)}; {candidate.title} brings {len(cured)} of them to a likely chance."
 
 
 def _cheapest_equal(

@@ -92,9 +92,7 @@ def _maps(folder: Path) -> RegularGridInterpolator:
 def _map(path: Path) -> FloatArray:
     wanted = f"{MAP_SHAPE[0]} lines of {MAP_SHAPE[1]} numbers, from 90 N and 0 E in steps of 1.5 degrees"
     if not path.is_file():
-        raise MapError(
-            f"no map {path}: the folder must hold {' and '.join(MAP_NAMES)}, or leave the folder away"
-        )
+        raise MapError(f"no map {path}: the folder must hold {' and '.join(MAP_NAMES)}, or leave the folder away")
     try:
         figures = np.loadtxt(path, dtype=float, ndmin=2)
     except ValueError as error:

@@ -46,10 +46,10 @@ class Blocks:
         corners = np.empty((4, row.size))
         for which, block, top, left in self._by_block(row, column):
             samples = self._bridged(block) if bridged else self._samples(block)
-            r, c = row[which] - top, column[which] - left
-            corners[:, which] = self._metres(
-                np.stack([samples[r, c], samples[r, c + 1], samples[r + 1, c], samples[r + 1, c + 1]])
-            )
+            width = samples.shape[1]
+            first = (row[which] - top) * width + (column[which] - left)
+            for corner, offset in enumerate((0, 1, width, width + 1)):
+                corners[corner, which] = self._metres(samples.ravel().take(first + offset))
         return corners
 
     def samples(self, row: IndexArray, column: IndexArray, bridged: bool) -> FloatArray:
@@ -76,10 +76,20 @@ class Blocks:
         The cells are the largest of COARSE that measure at most `samples_across` samples; missing
         samples do not count.
         """
+        return self._coarse(row, column, samples_across, "means")
+
+    def maxima(self, row: IndexArray, column: IndexArray, samples_across: float) -> FloatArray:
+        """Highest ground (n,) of the coarse cells that hold cells given by their upper left samples.
+
+        As `means`; the ground between samples is never higher, as the corners on the far sides count.
+        """
+        return self._coarse(row, column, samples_across, "maxima")
+
+    def _coarse(self, row: IndexArray, column: IndexArray, samples_across: float, what: str) -> FloatArray:
         level = max(number for number, factor in enumerate(COARSE) if factor <= max(1.0, samples_across))
         values = np.empty(row.size)
         for which, block, top, left in self._by_block(row, column):
-            coarse = self._means(block, level)
+            coarse = self._pyramid(block, level, what)
             values[which] = coarse[(row[which] - top) // COARSE[level], (column[which] - left) // COARSE[level]]
         return values
 
@@ -142,8 +152,12 @@ class Blocks:
         return groups
 
     def _metres(self, samples: NDArray[Any]) -> FloatArray:
-        heights: FloatArray = samples * float(self._raster.scale) + self._raster.offset_m
-        heights[is_void(samples, self._raster.void)] = np.nan
+        missing = is_void(samples, self._raster.void)
+        heights: FloatArray = samples.astype(float)
+        if (self._raster.scale, self._raster.offset_m) != (1.0, 0.0):
+            heights = heights * self._raster.scale + self._raster.offset_m
+        if missing.any():
+            heights[missing] = np.nan
         return heights
 
     def _samples(self, block: tuple[int, int]) -> NDArray[Any]:
@@ -160,13 +174,16 @@ class Blocks:
         kept = self._cache.load(self._named("bridged", block))
         return samples if kept is None else kept
 
-    def _means(self, block: tuple[int, int], level: int) -> NDArray[np.float32]:
+    def _pyramid(self, block: tuple[int, int], level: int, what: str) -> NDArray[np.float32]:
+        """Coarse heights of a block, made from the next finer ones."""
         if level == 0:
-            return self._metres(self._samples(block)).astype(np.float32)
-        name = self._named(f"means{COARSE[level]}", block)
+            heights = self._metres(self._samples(block)).astype(np.float32)
+            return heights if what == "means" else _highest_corners(heights)
+        name = self._named(f"{what}{COARSE[level]}", block)
         kept = self._cache.load(name)
         if kept is None:
-            kept = self._cache.keep(name, _fourfold_means(self._means(block, level - 1)))
+            finer = self._pyramid(block, level - 1, what)
+            kept = self._cache.keep(name, _fourfold(finer, highest=what == "maxima"))
         return kept
 
     def _water(self, block: tuple[int, int]) -> NDArray[np.bool_]:
@@ -203,12 +220,20 @@ class Blocks:
         return f"{self._raster.content}/{what}{place}"
 
 
-def _fourfold_means(heights: NDArray[np.float32]) -> NDArray[np.float32]:
-    """Means over 4 × 4 values each, of those that are not NaN; the last cells may be smaller."""
+def _highest_corners(heights: NDArray[np.float32]) -> NDArray[np.float32]:
+    """Highest of the corners of each cell between samples that is not missing."""
+    across = np.fmax(heights[:, :-1], heights[:, 1:])
+    return np.asarray(np.fmax(across[:-1], across[1:]))
+
+
+def _fourfold(heights: NDArray[np.float32], highest: bool) -> NDArray[np.float32]:
+    """Means (or maxima) over 4 × 4 values each, of those that are not NaN; the last cells may be smaller."""
     rows, columns = (-(-side // 4) for side in heights.shape)
     padded = np.full((4 * rows, 4 * columns), np.nan, dtype=np.float32)
     padded[: heights.shape[0], : heights.shape[1]] = heights
     cells = padded.reshape(rows, 4, columns, 4)
+    if highest:
+        return np.asarray(np.fmax.reduce(np.fmax.reduce(cells, axis=3), axis=1))
     known = np.isfinite(cells)
     count = known.sum(axis=(1, 3))
     total = np.where(known, cells, 0).sum(axis=(1, 3))

@@ -8,6 +8,7 @@ import numpy as np
 from affine import Affine
 from numpy.typing import NDArray
 from pyproj import CRS, Transformer
+from pyproj.exceptions import ProjError
 
 from terrain.errors import RasterError
 from terrain.geodesy import distance_and_bearing
@@ -45,8 +46,11 @@ class Grid:
         """
         horizontal = _horizontal(crs)
         plain = horizontal.is_geographic and _is_wgs84(horizontal)
-        to_crs = None if plain else Transformer.from_crs(_WGS84, horizontal, always_xy=True)
-        bounds = _bounds(rows, columns, transform, to_crs)
+        try:
+            to_crs = None if plain else Transformer.from_crs(_WGS84, horizontal, always_xy=True)
+            bounds = _bounds(rows, columns, transform, to_crs)
+        except ProjError as error:
+            raise RasterError(f"no way leads from longitude and latitude to {crs_text(crs)}") from error
         west, south, east, north = bounds
         if not (np.isfinite(bounds).all() and -90.01 <= south < north <= 90.01 and 0 < east - west <= 360.1):
             raise RasterError(
@@ -114,6 +118,12 @@ class Grid:
         its_west_inside = (west - self.west_deg) % 360.0 <= self.east_deg - self.west_deg + slack
         own_west_inside = (self.west_deg - west) % 360.0 <= east - west + slack
         return its_west_inside or own_west_inside
+
+    def holds(self, south: float, west: float, north: float, east: float) -> bool:
+        """Whether another box lies wholly in the bounding box [deg]."""
+        if south < self.south_deg or north > self.north_deg:
+            return False
+        return (west - self.west_deg) % 360.0 + (east - west) <= self.east_deg - self.west_deg
 
     @property
     def _slack_deg(self) -> float:

@@ -3,25 +3,25 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from terrain.bilinear import ROUNDING, bilinear
 from terrain.blocks import COARSE, Blocks
 from terrain.cache import ArrayCache
 from terrain.errors import RasterError
+from terrain.grid import Grid
 from terrain.raster import SUFFIXES, Raster, open_raster
 from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
 
-# Rounding of positions, as a share of a cell: 3 mm at 1 arc-second, what eight decimals of a degree
-# leave open. A point this near to a sample stands on it, so that a raster's last row is reached and a
-# missing neighbour does not count.
-_ROUNDING = 1e-4
+# Positions are worked through in groups of this many, which keeps their arrays in the processor's cache.
+_GROUP = 16_384
 
 
 @dataclass(frozen=True, slots=True)
@@ -168,32 +168,58 @@ class Ground:
         water = self._water(answer, lat.ravel(), lon.ravel())
         return answer.height_m.reshape(lat.shape), water.reshape(lat.shape)
 
-    def coarse_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
-        """Heights for pictures of wide areas [m]: means over cells of at most `cell_m`.
+    def mean_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
+        """Mean heights [m] of cells of at most `cell_m` that hold the positions, for wide views.
 
         Rasters whose samples are not much finer than that are interpolated as ever. NaN where missing.
         """
-        lat, lon = (position.ravel() for position in _positions(latitude_deg, longitude_deg))
+        return self._coarse(latitude_deg, longitude_deg, cell_m, Blocks.means)
+
+    def highest_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
+        """As `mean_elevation_m`, but the highest ground of each cell: never below `elevation_m` there."""
+        return self._coarse(latitude_deg, longitude_deg, cell_m, Blocks.maxima)
+
+    def _coarse(
+        self,
+        latitude_deg: ArrayLike,
+        longitude_deg: ArrayLike,
+        cell_m: float,
+        heights: Callable[[Blocks, NDArray[np.intp], NDArray[np.intp], float], FloatArray],
+    ) -> FloatArray:
+        lat, lon = _positions(latitude_deg, longitude_deg)
         height = np.full(lat.size, np.nan)
-        for _, layer in self._near(lat, lon):
+        for start in range(0, lat.size, _GROUP):
+            group = slice(start, start + _GROUP)
+            self._coarse_group(lat.ravel()[group], lon.ravel()[group], cell_m, heights, height[group])
+        return height.reshape(lat.shape)
+
+    def _coarse_group(
+        self,
+        lat: FloatArray,
+        lon: FloatArray,
+        cell_m: float,
+        heights: Callable[[Blocks, NDArray[np.intp], NDArray[np.intp], float], FloatArray],
+        height: FloatArray,
+    ) -> None:
+        for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
-            open_still = np.nonzero(np.isnan(height))[0]
+            asked = np.nonzero(np.isnan(height))[0]
             if cell_m < COARSE[1] * grid.spacing_m:
-                height[open_still] = self._interpolate(layer, lat[open_still], lon[open_still], bridged=False)
+                height[asked] = self._interpolate(layer, lat[asked], lon[asked], bridged=False)
                 continue
-            row, column = grid.index(lat[open_still], lon[open_still])
+            row, column = grid.index(lat[asked], lon[asked])
             inside = (row > -0.5) & (row < grid.rows - 0.5) & (column > -0.5) & (column < grid.columns - 0.5)
-            height[open_still[inside]] = layer.blocks.means(
-                np.rint(row[inside]).astype(np.intp),
-                np.rint(column[inside]).astype(np.intp),
+            height[asked[inside]] = heights(
+                layer.blocks,
+                np.clip(np.floor(row[inside]), 0, grid.rows - 2).astype(np.intp),
+                np.clip(np.floor(column[inside]), 0, grid.columns - 2).astype(np.intp),
                 cell_m / grid.spacing_m,
             )
-        return height.reshape(np.broadcast_shapes(np.shape(latitude_deg), np.shape(longitude_deg)))
 
     def finest_spacing_m(self, south: float, west: float, north: float, east: float) -> float:
         """Spacing of the finest raster that reaches into a box [deg], in m; infinite if none does."""
         near = self._near(np.array([south, north]), np.array([west, east]))
-        return min((layer.raster.grid.spacing_m for _, layer in near), default=float("inf"))
+        return min((layer.raster.grid.spacing_m for _, layer, _ in near), default=float("inf"))
 
     def covers(self, latitude_deg: float, longitude_deg: float) -> bool:
         """Whether there is an elevation at a position."""
@@ -201,40 +227,57 @@ class Ground:
 
     def _answer(self, lat: FloatArray, lon: FloatArray) -> _Answer:
         answer = _Answer(np.full(lat.size, np.nan), np.full(lat.size, -1), np.zeros(lat.size, dtype=bool))
-        reached = np.zeros(lat.size, dtype=bool)
-        near = self._near(lat, lon)
-        for bridged in (False, True):
-            for number, layer in near:
-                open_still = np.nonzero(answer.layer < 0 if not bridged else (answer.layer < 0) & reached)[0]
-                open_still = open_still[layer.raster.grid.near(lat[open_still], lon[open_still])]
-                if open_still.size == 0:
-                    continue
-                reached[open_still] = True
-                height = self._interpolate(layer, lat[open_still], lon[open_still], bridged)
-                known = np.isfinite(height)
-                answer.height_m[open_still[known]] = height[known]
-                answer.layer[open_still[known]] = number
-                answer.bridged[open_still[known]] = bridged
+        for start in range(0, lat.size, _GROUP):
+            group = slice(start, start + _GROUP)
+            self._answer_group(
+                lat[group],
+                lon[group],
+                _Answer(answer.height_m[group], answer.layer[group], answer.bridged[group]),
+            )
         return answer
 
-    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer]]:
-        """Layers whose bounding box meets that of the positions, with their numbers."""
+    def _answer_group(self, lat: FloatArray, lon: FloatArray, answer: _Answer) -> None:
+        """Fill the answer for a few positions."""
+        near = self._near(lat, lon)
+        reached = np.zeros(lat.size, dtype=bool)
+        for bridged in (False, True):
+            for number, layer, holds_all in near:
+                asked = answer.layer < 0
+                if bridged:
+                    asked &= reached
+                if not holds_all:
+                    asked &= layer.raster.grid.near(lat, lon)
+                if not asked.any():
+                    continue
+                reached |= asked
+                which = slice(None) if asked.all() else np.nonzero(asked)[0]
+                height = self._interpolate(layer, lat[which], lon[which], bridged)
+                known = np.isfinite(height)
+                answer.height_m[which] = height
+                answer.layer[which] = np.where(known, number, -1)
+                answer.bridged[which] = known & bridged
+
+    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer, bool]]:
+        """Layers whose bounding box meets that of the positions, their numbers, and if it holds them all."""
         south, north = np.fmin.reduce(lat, initial=90.0), np.fmax.reduce(lat, initial=-90.0)
         west, east = np.fmin.reduce(lon, initial=540.0), np.fmax.reduce(lon, initial=-540.0)
         if not (south <= north and west <= east):
             return []
+        box = (south, west, north, east)
         return [
-            (number, layer)
+            (number, layer, layer.raster.grid.holds(*box))
             for number, layer in enumerate(self._layers)
-            if layer.raster.grid.meets(south, west, north, east)
+            if layer.raster.grid.meets(*box)
         ]
 
     def _interpolate(self, layer: _Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
         """Bilinear heights of one raster, NaN outside its outer pixel edges and at voids."""
         grid = layer.raster.grid
-        row, column = _snapped(*grid.index(lat, lon))
+        row, column = grid.index(lat, lon)
+        inside = _surrounded(grid, row, column)
+        if inside.all():
+            return _within(layer, row, column, bridged)
         height = np.full(lat.size, np.nan)
-        inside = (row >= 0) & (row <= grid.rows - 1) & (column >= 0) & (column <= grid.columns - 1)
         height[inside] = _within(layer, row[inside], column[inside], bridged)
         half_out = ~inside & (row >= -0.5) & (row <= grid.rows - 0.5)
         half_out &= (column >= -0.5) & (column <= grid.columns - 0.5)
@@ -257,19 +300,19 @@ class Ground:
                 place = grid.position(beside_r[foreign].astype(float), beside_c[foreign].astype(float))
                 neighbour = self._neighbour(*place)
                 corners[corner, foreign] = np.where(np.isfinite(neighbour), neighbour, corners[corner, foreign])
-        return _bilinear(corners, row - top, column - left)
+        return bilinear(corners, row - top, column - left)
 
     def _neighbour(self, lat: FloatArray, lon: FloatArray) -> FloatArray:
         """Heights from the first raster whose samples surround a position, NaN where none does."""
         height = np.full(lat.size, np.nan)
-        for layer in self._layers:
+        for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
             open_still = np.nonzero(np.isnan(height))[0]
             open_still = open_still[grid.near(lat[open_still], lon[open_still])]
             if open_still.size == 0:
                 continue
-            row, column = _snapped(*grid.index(lat[open_still], lon[open_still]))
-            inside = (row >= 0) & (row <= grid.rows - 1) & (column >= 0) & (column <= grid.columns - 1)
+            row, column = grid.index(lat[open_still], lon[open_still])
+            inside = _surrounded(grid, row, column)
             height[open_still[inside]] = _within(layer, row[inside], column[inside], bridged=False)
         return height
 
@@ -306,30 +349,25 @@ def _files(paths: Sequence[Path]) -> list[Path]:
 
 
 def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[FloatArray, FloatArray]:
-    lat, lon = np.broadcast_arrays(np.asarray(latitude_deg, dtype=float), np.asarray(longitude_deg, dtype=float))
+    """Positions of a common shape; what is infinite becomes NaN."""
+    lat, lon = (np.asarray(value, dtype=float) for value in (latitude_deg, longitude_deg))
+    lat, lon = (
+        value if np.isfinite(value).all() else np.where(np.isfinite(value), value, np.nan) for value in (lat, lon)
+    )
+    lat, lon = np.broadcast_arrays(lat, lon)
     return lat, lon
 
 
-def _snapped(row: FloatArray, column: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Row and column with rounding errors taken off whole numbers."""
-    whole_row, whole_column = np.rint(row), np.rint(column)
-    with np.errstate(invalid="ignore"):  # infinite where a coordinate system does not reach
-        return (
-            np.where(np.abs(row - whole_row) < _ROUNDING, whole_row, row),
-            np.where(np.abs(column - whole_column) < _ROUNDING, whole_column, column),
-        )
+def _surrounded(grid: Grid, row: FloatArray, column: FloatArray) -> NDArray[np.bool_]:
+    """Whether positions lie between samples of a raster, rounding errors allowed for."""
+    inside: NDArray[np.bool_] = (row >= -ROUNDING) & (row <= grid.rows - 1 + ROUNDING)
+    inside &= (column >= -ROUNDING) & (column <= grid.columns - 1 + ROUNDING)
+    return inside
 
 
 def _within(layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:
     """Bilinear heights at positions between samples of one raster."""
     grid = layer.raster.grid
-    top = np.minimum(row.astype(np.intp), grid.rows - 2)
-    left = np.minimum(column.astype(np.intp), grid.columns - 2)
-    return _bilinear(layer.blocks.cells(top, left, bridged), row - top, column - left)
-
-
-def _bilinear(corners: FloatArray, down: FloatArray, right: FloatArray) -> FloatArray:
-    """Mean of corners (4, n) by their weights; a corner of weight 0 does not count, even if missing."""
-    weight = np.stack([(1 - down) * (1 - right), (1 - down) * right, down * (1 - right), down * right])
-    height: FloatArray = np.where(weight == 0, 0.0, weight * corners).sum(axis=0)
-    return height
+    top = np.clip(row.astype(np.intp), 0, grid.rows - 2)
+    left = np.clip(column.astype(np.intp), 0, grid.columns - 2)
+    return bilinear(layer.blocks.cells(top, left, bridged), row - top, column - left)

@@ -24,6 +24,7 @@ from affine import Affine
 from numpy.typing import NDArray
 from pyproj import CRS
 from pyproj.exceptions import CRSError
+from rasterio._err import CPLE_BaseError  # what GDAL says of a damaged header; rasterio lets it through
 from rasterio.windows import Window
 
 from terrain import hgt
@@ -147,6 +148,8 @@ def open_raster(path: Path) -> Raster:
         if path.suffix.lower() == ".asc":
             check_ascii_grid(path)
         return _hgt_header(path, said) if _is_hgt(path) else _header(path, said)
+    except CPLE_BaseError as error:
+        raise RasterError(f"{path.name} is damaged ({error}): fetch it again or take it out") from error
     except OSError as error:
         raise RasterError(f"{path.name} cannot be read ({error.strerror or error}): see to its permissions") from error
 

@@ -72,7 +72,7 @@ def _heights(ground: Ground, lat: FloatArray, lon: FloatArray, pixel_m: float) -
     finest = ground.finest_spacing_m(float(lat.min()), float(lon.min()), float(lat.max()), float(lon.max()))
     if pixel_m < COARSE[1] * finest:
         return ground.elevation_and_water(lat, lon)
-    height = ground.coarse_elevation_m(lat, lon, pixel_m)
+    height = ground.mean_elevation_m(lat, lon, pixel_m)
     water = height == 0
     # Cells and pixels do not coincide: a little blur takes the beat between them out of the slopes.
     known = np.isfinite(height)

@@ -32,7 +32,7 @@ def test_every_command_is_documented():
 
 
 def test_every_address_is_documented(demo_world):
-    paths = {path for path in create_app(demo_world.store, demo_world.ground).openapi()["paths"]}
+    paths = set(create_app(demo_world.store, demo_world.ground).openapi()["paths"])
     assert len(paths) >= 8
     plain = {re.sub(r"\{.*?\}", "{id}", path) for path in paths if path.startswith("/api")}
     # roofs and chains share one line of the README

@@ -4,7 +4,11 @@ import ast
 from pathlib import Path
 
 ROOT = Path(__file__).parent.parent
-MAY_IMPORT = {"terrain": {"terrain"}, "propagation": {"terrain", "propagation"}, "app": {"terrain", "propagation", "app"}}
+MAY_IMPORT = {
+    "terrain": {"terrain"},
+    "propagation": {"terrain", "propagation"},
+    "app": {"terrain", "propagation", "app"},
+}
 
 
 def imported_packages(source: str) -> set[str]:

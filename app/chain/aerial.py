@@ -49,13 +49,7 @@ def pattern_loss_db(
 ) -> NDArray[np.float64]:
     """Loss against the aerial's axis [dB, 0 or more], elementwise over the angle off the axis [deg].
 
-    Pattern "class" knows an aerial by its beamwidth w and front-to-back ratio only. Its power is
-
-        p(x) = b + (1 - b) cos(x / 2)^(2 n)      with b the power to the back and p(w / 2) = half power,
-
-    the smooth curve that is 1 on the axis, 0.5 at half the beamwidth and b at the back; it falls all the
-    way and is the same on both sides. Real side lobes and nulls are not in it: the error model's rejection
-    off axis stands for them. A round aerial (360 degrees) loses nothing.
+    Pattern "class" is `class_pattern_loss_db`.
 
     Pattern "dipole" is a figure of eight, cos(x)^2, with nulls no deeper than `null_db`. With its rods
     upright (`polarisation` "vertical") a dipole is round.
@@ -65,19 +59,34 @@ def pattern_loss_db(
     The half-wave dipole's figure of eight is taken as the cosine of the short dipole (antenna texts; 90
     instead of 78 degrees between the half-power points).
     """
+    if aerial.pattern == "class":
+        return class_pattern_loss_db(off_axis_deg, aerial.beamwidth_deg, aerial.front_to_back_db)
     x = np.radians(np.asarray(off_axis_deg, dtype=float))
-    if aerial.pattern == "dipole":
-        if polarisation == "vertical":
-            return np.zeros_like(x)
-        power = np.maximum(np.cos(x) ** 2, 10 ** (-null_db / 10))
-    elif aerial.beamwidth_deg == 360:
+    if polarisation == "vertical":
         return np.zeros_like(x)
-    else:
-        back = 10 ** (-aerial.front_to_back_db / 10)
-        half_width = np.radians(aerial.beamwidth_deg / 2)
-        exponent = np.log((HALF_POWER - back) / (1 - back)) / np.log(np.cos(half_width / 2))
-        power = back + (1 - back) * np.abs(np.cos(x / 2)) ** exponent
-    loss: NDArray[np.float64] = -10 * np.log10(power)
+    loss: NDArray[np.float64] = -10 * np.log10(np.maximum(np.cos(x) ** 2, 10 ** (-null_db / 10)))
+    return loss + 0.0  # no negative zero on the axis
+
+
+def class_pattern_loss_db(
+    off_axis_deg: ArrayLike, beamwidth_deg: float, front_to_back_db: float
+) -> NDArray[np.float64]:
+    """Loss against the axis of an aerial known by its beamwidth and front-to-back ratio only [dB, 0 or more].
+
+    With b the power to the back and w the beamwidth its power is
+
+        p(x) = b + (1 - b) cos(x / 2)^(2 n)      where p(w / 2) = half power,
+
+    the smooth curve that is 1 on the axis, 0.5 at half the beamwidth and b at the back; it falls all the way
+    and is the same on both sides. Real side lobes and nulls are not in it: the error model's rejection off axis
+    stands for them. A round aerial (360 degrees) loses nothing.
+    """
+    x = np.radians(np.asarray(off_axis_deg, dtype=float))
+    if beamwidth_deg == 360:
+        return np.zeros_like(x)
+    back = 10 ** (-front_to_back_db / 10)
+    exponent = np.log((HALF_POWER - back) / (1 - back)) / np.log(np.cos(np.radians(beamwidth_deg) / 4))
+    loss: NDArray[np.float64] = -10 * np.log10(back + (1 - back) * np.abs(np.cos(x / 2)) ** exponent)
     return loss + 0.0  # no negative zero on the axis
 
 

@@ -12,6 +12,7 @@ from app.chain.feeder import feeder_loss_db, splitter_loss_db
 from app.chain.parts import Feeder, MastheadAmplifier, Outlet, Part, Splitter
 from app.chain.tables import CABLES, SPLITTERS
 from app.errors import ChainError
+from app.tables import told_source
 
 AS_STATED = "as stated for the part"
 
@@ -38,11 +39,11 @@ def _stage(part: Part, frequency_mhz: NDArray[np.float64]) -> Stage:
             return Stage(part, part.gain_db * everywhere, part.noise_figure_db * everywhere, AS_STATED)
         case Feeder():
             cable = CABLES[part.cable]
-            source = f"{part.length_m:g} m of {cable.id}, a√f + bf; {cable.source} ({cable.flag})"
+            source = f"{part.length_m:g} m of {cable.id}, a√f + bf; {told_source(cable.source, cable.flag)}"
             return _passive(part, feeder_loss_db(part, frequency_mhz), source)
         case Splitter():
             known = SPLITTERS[part.ports] if part.loss_db is None else None
-            source = AS_STATED if known is None else f"{known.ports} ports; {known.source} ({known.flag})"
+            source = AS_STATED if known is None else f"{known.ports} ports; {told_source(known.source, known.flag)}"
             return _passive(part, splitter_loss_db(part) * everywhere, source)
         case Outlet():
             return _passive(part, part.loss_db * everywhere, AS_STATED)
@@ -59,9 +60,7 @@ def total_gain_db(row: Sequence[Stage], emissions: int) -> NDArray[np.float64]:
     return sum((stage.gain_db for stage in row), np.zeros(emissions))
 
 
-def cascade_noise_factor(
-    gain_db: Sequence[ArrayLike], noise_figure_db: Sequence[ArrayLike]
-) -> NDArray[np.float64]:
+def cascade_noise_factor(gain_db: Sequence[ArrayLike], noise_figure_db: Sequence[ArrayLike]) -> NDArray[np.float64]:
     """Noise factor of stages in a row, referred to the input of the first [-]; stages broadcast.
 
     F = F1 + (F2 - 1) / G1 + (F3 - 1) / (G1 G2) + …; the gain of the last stage plays no part.

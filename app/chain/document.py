@@ -41,17 +41,13 @@ def chain_from_document(document: object) -> Chain:
         The part, what came, what is allowed and what to do; `field` is the place in the document.
     """
     if not isinstance(document, Mapping):
-        raise ChainError(
-            f"a chain is a table of keys and values, not {_came(document)}: give at least name and parts"
-        )
+        raise ChainError(f"a chain is a table of keys and values, not {_came(document)}: give at least name and parts")
     what = f'chain "{document.get("name") or ""}"'
     _known_keys(document, CHAIN_KEYS, what, "")
     values = _values(Chain, document, what, "", skip=("parts",))
     parts = document.get("parts")
     if not isinstance(parts, list | tuple):
-        raise ChainError(
-            f"{what}: parts is {_came(parts)}: give a list of parts, the aerial first", field="parts"
-        )
+        raise ChainError(f"{what}: parts is {_came(parts)}: give a list of parts, the aerial first", field="parts")
     read = tuple(_part(part, index) for index, part in enumerate(parts))
     return Chain(parts=read, **values)
 
@@ -102,9 +98,7 @@ def _known_keys(document: Mapping[Any, Any], allowed: Sequence[str], what: str, 
     for key in document:
         if key not in allowed:
             listed = ", ".join(allowed)
-            raise ChainError(
-                f'{what}: "{key}" is not a key of it: use {listed}', field=f"{place}{key}", allowed=listed
-            )
+            raise ChainError(f'{what}: "{key}" is not a key of it: use {listed}', field=f"{place}{key}", allowed=listed)
 
 
 def _values(
@@ -120,9 +114,7 @@ def _values(
             continue
         value = document.get(field.name)
         if value is not None:
-            values[field.name] = _read(
-                str(field.type), value, f"{what}: {field.name}", f"{place}{field.name}"
-            )
+            values[field.name] = _read(str(field.type), value, f"{what}: {field.name}", f"{place}{field.name}")
         elif field.default is MISSING:
             raise ChainError(f"{what}: {field.name} is missing: add it", field=f"{place}{field.name}")
     return values
@@ -140,9 +132,7 @@ def _read(wanted: str, value: object, what: str, place: str) -> Any:
         return value
     if not wanted.startswith(("float", "int", "bool")) and isinstance(value, str):
         return value
-    allowed = {"float": "a number", "int": "a whole number", "bool": "true or false"}.get(
-        wanted.split(" ")[0], "text"
-    )
+    allowed = {"float": "a number", "int": "a whole number", "bool": "true or false"}.get(wanted.split(" ")[0], "text")
     raise ChainError(f"{what} is {_came(value)}: use {allowed}", field=place, allowed=allowed)
 
 

@@ -15,12 +15,14 @@ from typing import NoReturn
 import numpy as np
 from numpy.typing import NDArray
 
+from app.chain import files
+from app.chain.files import content_of, text_of
 from app.errors import ChainError
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 
-LARGEST_BYTES = 10_000_000  # some 200 000 points; an analyser writes a few thousand
+FIELD = "match"  # of the part, where the page shows a refusal
 FEWEST_POINTS = 2
 _UNITS = ("HZ", "KHZ", "MHZ", "GHZ")
 _PARAMETERS = ("S", "Y", "Z", "G", "H")
@@ -46,16 +48,7 @@ def read_touchstone(path: Path) -> Touchstone:
     ChainError
         No such file, one that is too large (its size is looked at before it is read), or not of the format.
     """
-    try:
-        size = path.stat().st_size
-    except OSError as error:
-        raise ChainError(f"{path.name}: there is no such file: check its name and folder", field="match") from error
-    _check_size(path.name, size)
-    try:
-        content = path.read_bytes()
-    except OSError as error:
-        raise ChainError(f"{path.name}: cannot be read: {error.strerror}: check its rights", field="match") from error
-    return touchstone_from_bytes(path.name, content)
+    return touchstone_from_bytes(path.name, content_of(path, FIELD))
 
 
 def touchstone_from_bytes(name: str, content: bytes) -> Touchstone:
@@ -73,33 +66,12 @@ def touchstone_from_bytes(name: str, content: bytes) -> Touchstone:
     suffix = Path(name).suffix.casefold()
     if suffix not in _PORTS:
         listed = " or ".join(_PORTS)
-        raise ChainError(f'{name}: is no {listed} file: export it as "Touchstone, 1 port"', field="match")
+        raise ChainError(f'{name}: is no {listed} file: export it as "Touchstone, 1 port"', field=FIELD)
     ports = _PORTS[suffix]
-    _check_size(name, len(content))
-    text = _clean(name, _text(name, content), ports)
+    text = _clean(name, text_of(name, content, FIELD), ports)
     frequency_hz, s, reference = _read(name, text, ports)
     _check(name, frequency_hz, s, reference)
     return Touchstone(name, frequency_hz / 1e6, s, reference)
-
-
-def _check_size(name: str, size: int) -> None:
-    if size > LARGEST_BYTES:
-        refuse(
-            name,
-            f"has {size / 1e6:,.0f} MB, the limit is {LARGEST_BYTES / 1e6:.0f} MB",
-            "export the sweep alone, with 201 to 10 001 points",
-        )
-
-
-def _text(name: str, content: bytes) -> str:
-    if not content.strip():
-        refuse(name, "is empty", "save the measurement again")
-    if b"\x00" in content:
-        refuse(name, "is binary, not text", "export it as Touchstone text, not in the analyser's own format")
-    try:
-        return content.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        return content.decode("latin-1")  # comments in an older code page; the numbers are plain ASCII
 
 
 def _clean(name: str, text: str, ports: int) -> str:
@@ -192,7 +164,7 @@ def _read(name: str, text: str, ports: int) -> tuple[FloatArray, ComplexArray, F
         raise ChainError(
             f"{name}: is not a Touchstone file of {ports} port(s) ({type(error).__name__}: {str(error).strip()[:80]}): "
             "export it again, or save it as version 1",
-            field="match",
+            field=FIELD,
         ) from error
     if np.any(np.imag(reference) != 0):
         refuse(name, "has a complex reference impedance", "export it with a resistance such as R 50")
@@ -219,5 +191,5 @@ def _check(name: str, frequency_hz: FloatArray, s: ComplexArray, reference: Floa
 
 
 def refuse(name: str, came: str, mend: str) -> NoReturn:
-    """Raise the ChainError that names the file, what is wrong with it and the mend."""
-    raise ChainError(f"{name}: {came}: {mend}", field="match")
+    """Raise the ChainError that names a measured file, what is wrong with it and the mend."""
+    files.refuse(name, came, mend, FIELD)

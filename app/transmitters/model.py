@@ -74,6 +74,4 @@ class Emission:
 
     def valid_on(self, day: date) -> bool:
         """Whether it is on the air on a day."""
-        return (self.valid_from is None or self.valid_from <= day) and (
-            self.valid_to is None or day <= self.valid_to
-        )
+        return (self.valid_from is None or self.valid_from <= day) and (self.valid_to is None or day <= self.valid_to)

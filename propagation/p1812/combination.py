@@ -69,8 +69,7 @@ def combined_loss(
     least = np.where(
         p < path.beta0_percent,
         los_p_db + over_land_db,
-        loss_diffraction_median_db
-        + (los_beta0_db + over_land_db - loss_diffraction_median_db) * time_interpolation_fi,
+        loss_diffraction_median_db + (los_beta0_db + over_land_db - loss_diffraction_median_db) * time_interpolation_fi,
     )  # eq. (59)
 
     high, low = np.maximum(loss_ducting_db, los_p_db), np.minimum(loss_ducting_db, los_p_db)

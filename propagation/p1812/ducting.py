@@ -44,21 +44,17 @@ def coupling_loss_db(path: PathTerms, frequency_ghz: FloatArray) -> FloatArray:
         + low
         + _site_shielding_db(path.tx_horizon_angle_mrad, path.tx_horizon_distance_km, f)
         + _site_shielding_db(path.rx_horizon_angle_mrad, path.rx_horizon_distance_km, f)
-        + _over_sea_coupling_db(
-            path, path.tx_distance_to_coast_km, path.tx_horizon_distance_km, path.tx_antenna_amsl_m
-        )
-        + _over_sea_coupling_db(
-            path, path.rx_distance_to_coast_km, path.rx_horizon_distance_km, path.rx_antenna_amsl_m
-        )
+        + _over_sea_coupling_db(path, path.tx_distance_to_coast_km, path.tx_horizon_distance_km, path.tx_antenna_amsl_m)
+        + _over_sea_coupling_db(path, path.rx_distance_to_coast_km, path.rx_horizon_distance_km, path.rx_antenna_amsl_m)
     )
     return loss
 
 
 def _site_shielding_db(angle_mrad: FloatArray, horizon_km: FloatArray, f: FloatArray) -> FloatArray:
     above = np.maximum(angle_mrad - 0.1 * horizon_km, 0.0)
-    shielding: FloatArray = 20 * np.log10(
-        1 + 0.361 * above * np.sqrt(f * horizon_km)
-    ) + 0.264 * above * f ** (1 / 3)  # eq. (48), 0 below the horizon
+    shielding: FloatArray = 20 * np.log10(1 + 0.361 * above * np.sqrt(f * horizon_km)) + 0.264 * above * f ** (
+        1 / 3
+    )  # eq. (48), 0 below the horizon
     return shielding
 
 
@@ -99,9 +95,7 @@ def time_loss_db(path: PathTerms, time_percent: ArrayLike) -> FloatArray:
     beta = np.maximum(path.beta0_percent * mu2 * mu3, 1e-300)  # eq. (54); the floor keeps its logarithm
     log_beta = np.log10(beta)
     gamma = (
-        1.076
-        / (2.0058 - log_beta) ** 1.012
-        * np.exp(-(9.51 - 4.8 * log_beta + 0.198 * log_beta**2) * 1e-6 * d**1.13)
+        1.076 / (2.0058 - log_beta) ** 1.012 * np.exp(-(9.51 - 4.8 * log_beta + 0.198 * log_beta**2) * 1e-6 * d**1.13)
     )  # eq. (53a)
     loss: FloatArray = -12 + (1.2 + 3.7e-3 * d) * (np.log10(p) - log_beta) + 12 * (p / beta) ** gamma  # (53)
     return loss

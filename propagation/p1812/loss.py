@@ -194,9 +194,7 @@ def loss_of_path(
     refractivity = np.asarray(n0, dtype=float)
     absent = (refractivity < 200) | (refractivity > 500)
     if absent.any():
-        raise RangeError(
-            f"sea-level refractivity {refractivity[absent].flat[0]:g} N occurs nowhere: use 200 to 500 N"
-        )
+        raise RangeError(f"sea-level refractivity {refractivity[absent].flat[0]:g} N occurs nowhere: use 200 to 500 N")
     power = np.asarray(erp_kw, dtype=float)
     if (power <= 0).any():
         raise RangeError(f"radiated power {power.min():g} kW gives no field: use more than 0 kW")

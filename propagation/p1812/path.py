@@ -94,9 +94,7 @@ def path_terms(
         raise ProfileError(f"profile has {x.shape[-1]} points: P.1812 needs {LEAST_POINTS} or more")
     cover = np.asarray(clutter_height_m, dtype=float)
     if not (cover >= 0).all() or np.isinf(cover).any():
-        raise ProfileError(
-            "profile has a clutter height that is negative or no number: use 0 for open ground"
-        )
+        raise ProfileError("profile has a clutter height that is negative or no number: use 0 for open ground")
     d = within("path length", x[..., -1], 0.25, 3000, "km")
     tx_height = within("transmitting antenna height", tx_height_agl_m, 1, 3000, "m")
     rx_height = within("receiving antenna height", rx_height_agl_m, 1, 3000, "m")
@@ -104,9 +102,7 @@ def path_terms(
     radius = effective_earth_radius_km(delta_n_per_km)
 
     sea_share, longest_land, longest_inland = zone_lengths(x, zone)
-    latitude = path_centre_latitude_deg(
-        tx_latitude_deg, tx_longitude_deg, rx_latitude_deg, rx_longitude_deg, d
-    )
+    latitude = path_centre_latitude_deg(tx_latitude_deg, tx_longitude_deg, rx_latitude_deg, rx_longitude_deg, d)
     tx_amsl, rx_amsl = terrain[..., 0] + tx_height, terrain[..., -1] + rx_height
     horizons = _horizons(x, terrain, tx_amsl, rx_amsl, radius)
 

@@ -23,7 +23,7 @@ export function createRoofline(element) {
       [bearingText(pointing.pointing_deg), 'from true north'],
       [rodsText(pointing.polarisation), 'as seen from the ground'],
       [`${numberText(state.answer.roof.aerial_agl_m, 0)}\u00a0m`, 'above the ground'],
-      ...(level ? [[`${numberText(level.dbuv, 0)}\u00a0dB(µV)`, `or more on ${level.channel}, at ${level.outlet}`]] : []),
+      ...(level ? [[`${numberText(level.median, 0)}\u00a0dB(µV)`, `on ${level.channel} at ${level.outlet}; ${numberText(level.worst, 0)} on a bad night`]] : []),
     ];
     list.replaceChildren(...rows.map(([figure, words]) => {
       const item = document.createElement('li');
@@ -38,8 +38,8 @@ export function createRoofline(element) {
 }
 
 /**
- * What a meter should find when the aerial is turned right: the surest emission from where it points, and
- * the level it keeps on a bad night.
+ * What a meter should find when the aerial is turned right: the surest emission from where it points, its
+ * usual level and the one it keeps on a bad night.
  * @param {any} answer @param {string} chain @param {number} pointing degrees
  */
 function levelToFind(answer, chain, pointing) {
@@ -51,5 +51,5 @@ function levelToFind(answer, chain, pointing) {
   const surest = ahead.reduce((best, one) => (one.chains[chain].chance > best.chains[chain].chance ? one : best));
   const outlet = surest.chains[chain].outlets.reduce((least, one) => (one.margin_db < least.margin_db ? one : least));
   const channel = surest.channel ? `channel ${surest.channel}` : `${surest.frequency_mhz} MHz`;
-  return { dbuv: outlet.level_dbuv, outlet: outlet.name, channel };
+  return { median: outlet.level_median_dbuv, worst: outlet.level_dbuv, outlet: outlet.name, channel };
 }

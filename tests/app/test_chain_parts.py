@@ -6,9 +6,7 @@ from app.chain.catalogue import demo_chains
 from app.chain.parts import Aerial, Chain, Feeder, MastheadAmplifier, Outlet, Receiver, Splitter
 from app.errors import ChainError
 
-AERIAL = Aerial(
-    id="a", name="Yagi", price=40, gain_dbd=((470, 6), (694, 10)), beamwidth_deg=50, front_to_back_db=18
-)
+AERIAL = Aerial(id="a", name="Yagi", price=40, gain_dbd=((470, 6), (694, 10)), beamwidth_deg=50, front_to_back_db=18)
 FEEDER = Feeder(id="f", name="downlead", price=10, cable="copper-7mm", length_m=15)
 OUTLET = Outlet(id="o", name="Kitchen", price=4)
 SECOND = Outlet(id="o2", name="Attic", price=4)
@@ -113,9 +111,7 @@ def test_impossible_splitter_is_refused(values, message):
 
 
 def test_splitter_with_too_few_ports_says_so():
-    with pytest.raises(
-        ChainError, match=r'splitter "splitter": has 4 ports and feeds 5 outlets: use a larger one'
-    ):
+    with pytest.raises(ChainError, match=r'splitter "splitter": has 4 ports and feeds 5 outlets: use a larger one'):
         split(4, 5)
     assert split(4, 4).outlet_names == ("Room 0", "Room 1", "Room 2", "Room 3")
 

@@ -11,9 +11,7 @@ def cells(median_db, path_sd_db=5.0, masts=("a", "b"), bearings=(10.0, 200.0), p
     return Cells(np.array(median_db, dtype=float), path, tuple(parts))
 
 
-@pytest.mark.parametrize(
-    ("percent", "quantile"), [(50, 0.0), (70, 0.5244), (90, 1.2816), (95, 1.6449), (99, 2.3263)]
-)
+@pytest.mark.parametrize(("percent", "quantile"), [(50, 0.0), (70, 0.5244), (90, 1.2816), (95, 1.6449), (99, 2.3263)])
 def test_chance_is_the_normal_distribution(percent, quantile):
     """Quantiles of the standard normal, any handbook (Abramowitz and Stegun, table 26.5); four digits."""
     assert exceedance(np.array(quantile * 5.5), np.array(5.5)) == pytest.approx(percent / 100, abs=2e-5)
@@ -35,9 +33,7 @@ def test_draws_have_the_stated_median_and_spread():
     assert drawn.std(axis=0) == pytest.approx(np.sqrt(29), rel=0.03)
 
 
-@pytest.mark.parametrize(
-    ("apart_deg", "expected"), [(0.0, 0.5), (20.0, 0.5 / np.e), (180.0, 0.0), (340.0, 0.5 / np.e)]
-)
+@pytest.mark.parametrize(("apart_deg", "expected"), [(0.0, 0.5), (20.0, 0.5 / np.e), (180.0, 0.0), (340.0, 0.5 / np.e)])
 def test_masts_correlate_by_their_difference_of_bearing(apart_deg, expected):
     """0.5 exp(-difference / 20 degrees), the shorter way round; sampling error 1 / sqrt(4096) = 0.016."""
     drawn = cells([0, 0], bearings=(30.0, (30.0 + apart_deg) % 360)).draws()

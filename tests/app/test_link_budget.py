@@ -14,9 +14,7 @@ from app.link_budget import Signals, ledger_steps, receive
 from propagation.noise import man_made_fam_db
 
 DEFAULTS = Assumptions()
-AERIAL = Aerial(
-    id="a", name="Yagi", gain_dbd=((170, 6), (470, 8), (690, 12)), beamwidth_deg=50, front_to_back_db=20
-)
+AERIAL = Aerial(id="a", name="Yagi", gain_dbd=((170, 6), (470, 8), (690, 12)), beamwidth_deg=50, front_to_back_db=20)
 OUTLET = Outlet(id="o", name="Kitchen")
 SET = Receiver(id="r", name="set")
 SIGNALS = Signals(
@@ -43,9 +41,7 @@ def chain(*parts, aerial=AERIAL, outlet=OUTLET, receiver=SET):
     return Chain("c", (aerial, *parts, outlet, receiver))
 
 
-def got(
-    one, field=FIELD, pointing=100.0, polarisation="horizontal", assumptions=DEFAULTS, surroundings="open"
-):
+def got(one, field=FIELD, pointing=100.0, polarisation="horizontal", assumptions=DEFAULTS, surroundings="open"):
     return receive(one, SIGNALS, field, pointing, polarisation, assumptions, surroundings)
 
 
@@ -141,9 +137,7 @@ def test_cross_polar_loss_and_pattern_do_not_add_up():
 def test_worst_outlet_decides():
     drops = [feeder(5, "f1"), feeder(40, "f2")]
     rooms = [Outlet(id="o1", name="near"), Outlet(id="o2", name="far")]
-    star = Chain(
-        "star", (AERIAL, Splitter(id="s", name="s", ports=2), drops[0], rooms[0], drops[1], rooms[1], SET)
-    )
+    star = Chain("star", (AERIAL, Splitter(id="s", name="s", ports=2), drops[0], rooms[0], drops[1], rooms[1], SET))
     reception = got(star)
     assert reception.deciding_outlet.tolist() == [1, 1, 1, 1]
     assert [outlet.name for outlet in reception.outlets] == ["near", "far"]
@@ -187,9 +181,7 @@ def test_ledger_adds_up_to_the_margin(one, surroundings):
         steps = ledger(one, index, surroundings=surroundings)
         assert steps[0].value_db == FIELD[index]
         assert steps[-1].total == pytest.approx(reception.margin_db[index], abs=1e-9)
-        assert math.fsum(step.value_db for step in steps) == pytest.approx(
-            reception.margin_db[index], abs=1e-9
-        )
+        assert math.fsum(step.value_db for step in steps) == pytest.approx(reception.margin_db[index], abs=1e-9)
         totals = np.cumsum([step.value_db for step in steps])
         assert [step.total for step in steps] == pytest.approx(totals.tolist())
         assert all(step.source for step in steps)

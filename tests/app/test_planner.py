@@ -43,7 +43,8 @@ def test_document_has_the_shape_of_the_interface(ask):
     assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "used_dbuv_m", "method", "sigma_db", "fade_db",
             "enhancement_db"} == set(emission["field"])  # fmt: skip
     outlet = emission["chains"]["roof-yagi"]["outlets"][0]
-    assert {"name", "level_dbuv", "cn_db", "required_cn_db", "margin_db", "headroom_db", "chance", "held_back_by",
+    assert {"name", "level_dbuv", "level_median_dbuv", "cn_db", "required_cn_db", "margin_db", "headroom_db", "chance",
+            "held_back_by",
             "ledger"} == set(outlet)  # fmt: skip
     assert {"baseline", "candidate", "answer", "expected_worth", "chance_of_gain", "expected_extra", "price_difference",
             "price_per_extra", "break_even_price", "gained", "lost", "now_secure", "cheapest_equal", "measure_next",

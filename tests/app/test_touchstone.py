@@ -4,7 +4,8 @@ import sys
 import numpy as np
 import pytest
 
-from app.chain.touchstone import LARGEST_BYTES, read_touchstone, touchstone_from_bytes
+from app.chain.files import LARGEST_BYTES
+from app.chain.touchstone import read_touchstone, touchstone_from_bytes
 from app.errors import ChainError
 
 ROWS = "470 0.1 20\n480 0.2 30\n"
@@ -56,9 +57,9 @@ def test_two_port_has_s21_before_s12_and_leaves_noise_figures_aside():
 @pytest.mark.parametrize(
     ("text", "message"),
     [
-        ("", "roof.s1p: is empty: save the measurement again"),
+        ("", "roof.s1p: is empty: save it again"),
         (" \n\n", "is empty"),
-        (b"\x89PNG\x00\x00", "is binary, not text: export it as Touchstone text"),
+        (b"\x89PNG\x00\x00", "is binary, not text: export it as text"),
         ("# MHz S MA R 50\n", "has 0 points: measure the band with at least 2, better 201"),
         ("# MHz S MA R 50\n470 0.1 20\n", "has 1 points"),
         (ROWS, "line 1: data before the option line: begin it with"),
@@ -94,7 +95,7 @@ def test_huge_file_is_refused_without_being_read(tmp_path):
     path = tmp_path / "huge.s1p"
     with path.open("wb") as file:
         file.truncate(2_000_000_000)
-    with pytest.raises(ChainError, match=r"huge.s1p: has 2,000 MB, the limit is 10 MB: export the sweep alone"):
+    with pytest.raises(ChainError, match=r"huge.s1p: has 2,000 MB, the limit is 10 MB: export the measurement alone"):
         read_touchstone(path)
     with pytest.raises(ChainError, match="the limit is 10 MB"):
         read(b"!" * (LARGEST_BYTES + 1))

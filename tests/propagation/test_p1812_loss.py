@@ -43,9 +43,7 @@ def arguments(terrain, length_km=60.0, **changes):
 
 def test_clear_short_path_has_the_loss_of_free_space():
     """5 km between masts of 200 m at 3 GHz: first Fresnel radius 11 m, clearance about 200 m."""
-    result = basic_loss(
-        **arguments(np.zeros(100), 5.0, frequency_mhz=3000, tx_height_agl_m=200, rx_height_agl_m=200)
-    )
+    result = basic_loss(**arguments(np.zeros(100), 5.0, frequency_mhz=3000, tx_height_agl_m=200, rx_height_agl_m=200))
     assert result.diffraction_median_db == 0
     # what stays is the mixture of mechanisms: sea-free notional minimum, ducting far above
     assert result.basic_loss_db == pytest.approx(result.loss_free_space_db, abs=0.05)
@@ -147,9 +145,7 @@ def test_arrays_equal_one_by_one():
     terrain = np.stack([relief(seed) for seed in range(3)])
     frequency, time = np.array([60.0, 500, 800])[:, None, None], np.array([1.0, 50])[:, None]
     polarisation = np.array(["horizontal", "vertical", "horizontal"])[:, None, None]
-    batch = basic_loss(
-        **arguments(terrain, frequency_mhz=frequency, time_percent=time, polarisation=polarisation)
-    )
+    batch = basic_loss(**arguments(terrain, frequency_mhz=frequency, time_percent=time, polarisation=polarisation))
     assert batch.basic_loss_db.shape == (3, 2, 3)
     for i, j, k in np.ndindex(3, 2, 3):
         single = basic_loss(
@@ -167,9 +163,7 @@ def test_paths_of_any_length_go_through_one_call():
     names = ("frequency_mhz", "time_percent", "polarisation", "n0")
     whole = [arguments(relief(seed, 100 + 50 * seed), 20.0 + 30 * seed) for seed in range(3)]
     stack = stacked_paths([path_terms(**{k: v for k, v in a.items() if k not in names}) for a in whole])
-    batch = loss_of_path(
-        stack, frequency_mhz=[[500.0], [700.0]], time_percent=50, polarisation="horizontal", n0=325
-    )
+    batch = loss_of_path(stack, frequency_mhz=[[500.0], [700.0]], time_percent=50, polarisation="horizontal", n0=325)
     assert batch.basic_loss_db.shape == (2, 3)
     for i, given in enumerate(whole):
         single = basic_loss(**{**given, "frequency_mhz": [500.0, 700.0]})
@@ -182,9 +176,7 @@ def test_lapse_of_0_means_the_true_earth():
 
 
 def test_missing_value_gives_no_loss_for_its_element_alone():
-    result = basic_loss(
-        **arguments(relief(4), frequency_mhz=[[600.0], [np.nan]], tx_height_agl_m=[80.0, np.nan, 80.0])
-    )
+    result = basic_loss(**arguments(relief(4), frequency_mhz=[[600.0], [np.nan]], tx_height_agl_m=[80.0, np.nan, 80.0]))
     assert np.isnan(result.basic_loss_db).tolist() == [[False, True, False], [True, True, True]]
 
 

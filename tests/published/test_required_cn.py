@@ -75,6 +75,4 @@ def test_dvb_t_occupies_its_carriers():
 def test_isdb_t_occupies_thirteen_segments():
     """ARIB STD-B31: 13 segments of a fourteenth of the channel; the table rounds to 0.01."""
     for width in (6, 7, 8):
-        assert mode_of("ISDB-T", "QPSK 1/2").noise_bandwidth_mhz(width) == pytest.approx(
-            13 / 14 * width, abs=0.005
-        )
+        assert mode_of("ISDB-T", "QPSK 1/2").noise_bandwidth_mhz(width) == pytest.approx(13 / 14 * width, abs=0.005)

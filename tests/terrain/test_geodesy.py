@@ -2,7 +2,7 @@ import numpy as np
 import pytest
 from pyproj import Geod
 
-from terrain.geodesy import destination, distance_and_bearing, points_along
+from terrain.geodesy import destination, distance_and_bearing, points_along, rays
 
 GEOD = Geod(ellps="WGS84")
 
@@ -65,3 +65,14 @@ def test_a_path_over_the_180th_meridian_stays_short():
     assert bearing_deg == 90
     _, lon = points_along(0, 179.5, 0, -179.5, [0, length / 4, 3 * length / 4, length])
     assert lon == pytest.approx([179.5, 179.75, -179.75, -179.5], abs=1e-9)
+
+
+@pytest.mark.parametrize(("lat", "lon"), [(0, 0), (47, 8), (-33, -70), (70, 179.9), (80, 20), (89, 5)])
+def test_rays_are_within_a_centimetre_of_their_geodesics_to_300_km(lat, lon):
+    bearing_deg, distance_km = np.arange(0, 360, 7.5), np.linspace(0, 300, 101)
+    ray_lat, ray_lon = rays(lat, lon, bearing_deg, distance_km)
+    exact_lat, exact_lon = destination(lat, lon, bearing_deg[:, None], distance_km)
+    error_km, _ = distance_and_bearing(exact_lat, exact_lon, ray_lat, ray_lon)
+    assert ray_lat.shape == (48, 101)
+    assert 1e5 * error_km.max() < 1
+    assert np.abs(ray_lon).max() <= 180

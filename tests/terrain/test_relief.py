@@ -89,7 +89,7 @@ def test_means_are_those_of_the_samples_without_the_missing(write_raster, ground
     lat, lon = 47 - np.array([1.5, 6.5]) * 0.001, 8 + np.array([1.5, 9.5]) * 0.001
     spacing_m = ground.rasters[0].spacing_m
     cells = [hills[0:4, 0:4].astype(float), np.delete(hills[4:8, 8:12].astype(float), 13)]
-    got = ground.coarse_elevation_m(lat, lon, 4 * spacing_m)
+    got = ground.mean_elevation_m(lat, lon, 4 * spacing_m)
     assert got == pytest.approx([cell.mean() for cell in cells], abs=1e-3)
 
 
