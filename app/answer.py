@@ -132,13 +132,17 @@ def _emission(
             "diffraction_loss_db": round(path.diffraction_loss_db, 2),
             "zones": {"land_km": round(path.land_km, 3), "sea_km": round(path.sea_km, 3)},
             "kind": path.kind,
+            "ground_kinds": list(path.ground_kinds),
         },
         "field": {
             "free_space_dbuv_m": round(field.free_space_dbuv_m, 2),
             "p1546_dbuv_m": _rounded(field.p1546_dbuv_m),
             "p1812_dbuv_m": _rounded(field.p1812_dbuv_m),
             "used_dbuv_m": None if path is None else round(field.used_dbuv_m, 2),
+            "difference_db": _rounded(field.difference_db),
+            "apart": field.apart,
             "method": field.method,
+            "method_reason": field.method_reason,
             "sigma_db": None if path is None else round(path.sd_db, 2),
             "fade_db": None if path is None else round(field.fade_db, 2),
             "enhancement_db": None if path is None else round(field.enhancement_db, 2),
@@ -235,15 +239,27 @@ def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[di
         "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
     )
     modelled = field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m
-    add(f"ground and atmosphere: {field.path.kind}", modelled, METHOD_SOURCES[str(field.method)])
+    add(f"ground and atmosphere: {field.path.kind}", modelled, _method_source(field))
     if field.doubt_db:
         add("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db")
     add(
         f"fade that {availability_percent} % of the time stays above",
         -field.fade_db,
-        f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90",
+        f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90; "
+        f"where this emission disturbs, it rises by {field.enhancement_db:.1f} dB instead",
     )
     return rows
+
+
+def _method_source(field: EmissionField) -> str:
+    """Name the method of a field, what the other one says, and why this one."""
+    source = METHOD_SOURCES[str(field.method)]
+    if field.difference_db is None:
+        return f"{source}: {field.method_reason}"
+    return (
+        f"{source}; P.1812 {field.p1812_dbuv_m:.1f}, P.1546 {field.p1546_dbuv_m:.1f} dB(µV/m), "
+        f"difference {field.difference_db:+.1f} dB"
+    )
 
 
 def _limit(turned: Turned, e: int) -> dict[str, Any]:

@@ -145,7 +145,7 @@ def assess(
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word
         )
         world = open_world()
-        document = answer_to(request, world.store, world.ground)
+        document = answer_to(request, world.store, world.ground, refractivity_maps=world.refractivity_maps)
     _show(document, as_json, lambda: told(document))
 
 
@@ -163,13 +163,15 @@ def path(
     from app.world import open_world
 
     with _mendable():
+        world = open_world()
         document = path_document(
-            open_world().ground,
+            world.ground,
             *_pair(start, "--from", "44.5,-37.2"),
             *_pair(end, "--to", "44.3,-37.3"),
             frequency,
             *_pair(heights, "--heights", "150,10"),
             polarisation,
+            world.refractivity_maps,
         )
     _show(document, as_json, lambda: told_path(document))
 

@@ -7,6 +7,7 @@ location terms of both Recommendations are left out, the spread of app/margins.p
 
 from __future__ import annotations
 
+import pathlib
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -14,13 +15,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.disagreement import apart_reason
+from app.methods import fields_of_methods
 from app.paths_to_roof import Path, PathKey, paths_to_roof
 from app.request import Method
 from app.roof import Roof
 from app.sentences import CLEAR_RATIO, Kind, path_kind, path_sentence
+from app.stories import method_reason, story_of, terms_of
 from app.transmitters.model import Emission, Transmitter
-from propagation import p1546, p1812
-from propagation.digest import PathDigest, stacked_digests
+from propagation.digest import stacked_digests
 from propagation.fading import enhancement_db, fade_db, subrefraction_db
 from propagation.free_space import field_strength_dbuv_m
 from terrain.geodesy import distance_and_bearing
@@ -45,6 +48,7 @@ class PathFacts:
     diffraction_loss_db: float
     land_km: float
     sea_km: float
+    ground_kinds: tuple[str, ...]  # of the rasters that answered under the path
     sd_db: float  # spread that the kind of path and the methods' disagreement give
 
 
@@ -62,8 +66,11 @@ class EmissionField:
     path: PathFacts | None = None
     p1546_dbuv_m: float | None = None
     p1812_dbuv_m: float | None = None
+    difference_db: float | None = None  # P.1812 less P.1546; None where one of them answers alone
+    apart: str | None = None  # why they differ by more than 15 dB
     used_dbuv_m: float = float("nan")
     method: str | None = None
+    method_reason: str | None = None
     doubt_db: float = 0.0  # part of used_dbuv_m: power or pattern not stated
     fade_db: float = 0.0
     enhancement_db: float = 0.0
@@ -81,6 +88,7 @@ def fields_at(
     assumptions: Assumptions,
     availability_percent: int,
     method: Method = "both",
+    refractivity_maps: pathlib.Path | None = None,
 ) -> list[EmissionField]:
     """Return the field of each emission found, in the same order.
 
@@ -89,7 +97,7 @@ def fields_at(
     if not found:
         return []
     keys = [PathKey(transmitter, emission.antenna_agl_m) for emission, transmitter, _, _ in found]
-    paths = paths_to_roof(roof, keys, ground, assumptions)
+    paths = paths_to_roof(roof, keys, ground, assumptions, refractivity_maps)
     erp_kw = _erp_towards_roof_kw(roof, found)
     good = [e for e, key in enumerate(keys) if isinstance(paths[key], Path)]
     rows = [found[e] for e in good]
@@ -122,14 +130,15 @@ def _answered(
     frequency_mhz = np.array([row[0].frequency_mhz for row in rows])
     plane = np.array(["vertical" if row[0].polarisation == "vertical" else "horizontal" for row in rows])
     n0 = np.array([path.n0 for path in paths])
-    times = np.array([50.0, 1.0, min(50.0, 100.0 - availability_percent)])[:, None]
+    times = (50.0, 1.0, min(50.0, 100.0 - availability_percent))
 
-    by_p1546 = _by_p1546(digest, paths, roof, frequency_mhz, times, erp_kw)
-    by_p1812 = np.full_like(by_p1546, np.nan)
-    if method != "p1546":
-        by_p1812 = _by_p1812(paths, frequency_mhz, plane, times, n0, erp_kw)
+    both = fields_of_methods(
+        digest, paths, roof.aerial_agl_m, frequency_mhz, plane, times, erp_kw, with_p1812=method != "p1546"
+    )
+    by_p1546, by_p1812 = both.p1546_dbuv_m, both.p1812_dbuv_m
     holds = ~np.isnan(by_p1812[0])
     at_50, at_1, in_state_b = np.where(holds, by_p1812, by_p1546)
+    difference = by_p1812[0] - by_p1546[0]
 
     fade = fade_db(
         availability_percent,
@@ -143,8 +152,8 @@ def _answered(
     )
     rise = enhancement_db(in_state_b, at_50)
     free_space = field_strength_dbuv_m(digest.path_length_km, erp_kw)
-    clearance = digest.clearance_ratio(frequency_mhz)
-    diffraction = digest.diffraction(frequency_mhz, plane).loss_db
+    clearance = np.array([path.clearance_ratio(f) for path, f in zip(paths, frequency_mhz.tolist(), strict=True)])
+    diffraction = digest.diffraction(frequency_mhz, plane)
     kinds = [path_kind(c, b) for c, b in zip(clearance.tolist(), digest.beyond_horizon.tolist(), strict=True)]
     sd = _path_sd_db(clearance, digest.beyond_horizon, by_p1812[0], by_p1546[0], assumptions)
     unstated = assumptions.value("erp_unknown_mean_db")
@@ -153,22 +162,16 @@ def _answered(
     for e, (emission, transmitter, distance_km, bearing_deg) in enumerate(rows):
         doubt = unstated if any(flag in DOUBTFUL_FLAGS for flag in emission.flags) else 0.0
         facts = PathFacts(
-            sentence=path_sentence(
-                kinds[e],
-                distance_km,
-                float(digest.path_length_km[e] - digest.worst_point_km[e]),
-                float(digest.obstacle_into_line_m[e]),
-                float(clearance[e]),
-                float(digest.sea_km[e] / digest.path_length_km[e]),
-            ),
+            sentence=path_sentence(story_of(paths[e], kinds[e], float(frequency_mhz[e]), diffraction, both, e)),
             kind=kinds[e],
-            line_of_sight=bool(digest.line_of_sight[e]),
+            line_of_sight=bool(digest.line_of_sight[e]) and float(clearance[e]) >= 0,
             clearance_ratio=float(clearance[e]),
             terrain_clearance_angle_deg=float(digest.rx_clearance_angle_deg[e]),
             effective_height_m=float(digest.h1_source_height_m[e]),
-            diffraction_loss_db=float(diffraction[e]),
+            diffraction_loss_db=float(diffraction.loss_db[e] + both.near_edge_db[e]),
             land_km=float(digest.land_km[e]),
             sea_km=float(digest.sea_km[e]),
+            ground_kinds=paths[e].profile.kinds,
             sd_db=float(sd[e]),
         )
         answers.append(
@@ -182,67 +185,17 @@ def _answered(
                 path=facts,
                 p1546_dbuv_m=float(by_p1546[0, e]),
                 p1812_dbuv_m=float(by_p1812[0, e]) if holds[e] else None,
+                difference_db=float(difference[e]) if holds[e] else None,
+                apart=apart_reason(float(difference[e]), terms_of(both, digest, e)) if holds[e] else None,
                 used_dbuv_m=float(at_50[e]) + doubt,
                 method="p1812" if holds[e] else "p1546",
+                method_reason=method_reason(method, paths[e].p1812_refusal),
                 doubt_db=doubt,
                 fade_db=float(fade[e]),
                 enhancement_db=float(rise[e]),
             )
         )
     return answers
-
-
-def _by_p1546(
-    digest: PathDigest,
-    paths: Sequence[Path],
-    roof: Roof,
-    frequency_mhz: FloatArray,
-    times: FloatArray,
-    erp_kw: FloatArray,
-) -> FloatArray:
-    """Field by Rec. ITU-R P.1546-6 for each time and emission. (t, e)"""
-    obstacle_m = [path.local_obstacle_m for path in paths]
-    return p1546.field_strength(
-        frequency_mhz=frequency_mhz,
-        time_percent=times,
-        path_length_km=digest.path_length_km,
-        land_km=digest.land_km,
-        cold_sea_km=digest.sea_km,
-        h1_source_height_m=digest.h1_source_height_m,
-        tx_height_agl_m=np.array([path.antenna_agl_m for path in paths]),
-        rx_height_agl_m=roof.aerial_agl_m,
-        rx_environment=np.array(["urban" if height > 0 else "rural" for height in obstacle_m]),
-        rx_clutter_height_m=np.array(obstacle_m),
-        tx_clearance_angle_deg=digest.tx_clearance_angle_deg,
-        rx_clearance_angle_deg=digest.rx_clearance_angle_deg,
-        tx_ground_amsl_m=digest.tx_ground_amsl_m,
-        rx_ground_amsl_m=digest.rx_ground_amsl_m,
-        erp_kw=erp_kw,
-    ).field_dbuv_m
-
-
-def _by_p1812(
-    paths: Sequence[Path],
-    frequency_mhz: FloatArray,
-    plane: NDArray[np.str_],
-    times: FloatArray,
-    n0: FloatArray,
-    erp_kw: FloatArray,
-) -> FloatArray:
-    """Field by Rec. ITU-R P.1812-7 for each time and emission, NaN where it does not hold. (t, e)"""
-    field = np.full((len(times), len(paths)), np.nan)
-    inside = [e for e, path in enumerate(paths) if path.terms is not None]
-    if inside:
-        terms = p1812.stacked_paths([path.terms for path in paths if path.terms is not None])
-        field[:, inside] = p1812.loss_of_path(
-            terms,
-            frequency_mhz=frequency_mhz[inside],
-            time_percent=times,
-            polarisation=plane[inside],
-            n0=n0[inside],
-            erp_kw=erp_kw[inside],
-        ).field_dbuv_m
-    return field
 
 
 def _path_sd_db(

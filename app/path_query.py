@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import pathlib
 from dataclasses import fields
 from typing import Any
 
@@ -10,16 +11,21 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.disagreement import apart_reason
 from app.errors import RequestError
+from app.methods import fields_of_methods
 from app.paths_to_roof import Path, path_over
 from app.roof import Roof, check
 from app.sentences import path_kind, path_sentence
 from app.site import missing_ground
+from app.stories import method_reason, story_of, terms_of
 from propagation import p1546, p1812
+from propagation.digest import stacked_digests
 from propagation.free_space import basic_loss_db, field_strength_dbuv_m
 from terrain.errors import CoverageError
 from terrain.mosaic import Ground
 from terrain.profile import sample_profile
+from terrain.water import SEA
 
 TIMES_PERCENT = (50.0, 10.0, 1.0)
 DRAWN_POINTS = 400
@@ -37,6 +43,7 @@ def path_document(
     antenna_agl_m: float = 100.0,
     aerial_agl_m: float = 10.0,
     polarisation: str = "horizontal",
+    refractivity_maps: pathlib.Path | None = None,
 ) -> dict[str, Any]:
     """Return the terms of both methods for 1 kW ERP, the path's sentence and its drawing.
 
@@ -70,12 +77,15 @@ def path_document(
             f"{profile.missing_share:.0%} of the path has no elevation, the first gap "
             f"{profile.distance_km[first]:.1f} km from its start: {gap}"
         )
-    path = path_over(profile, antenna_agl_m, roof, Assumptions())
+    path = path_over(profile, antenna_agl_m, roof, Assumptions(), refractivity_maps)
     if isinstance(path, str):
         raise RequestError(path)
     digest = path.digest
-    ratio = float(digest.clearance_ratio(frequency_mhz))
+    ratio = path.clearance_ratio(frequency_mhz)
     kind = path_kind(ratio, bool(digest.beyond_horizon))
+    one, plane, carrier = stacked_digests([digest]), np.array([polarisation]), np.array([frequency_mhz])
+    both = fields_of_methods(one, [path], aerial_agl_m, carrier, plane, (50.0,), np.ones(1))
+    difference = float(both.p1812_dbuv_m[0, 0] - both.p1546_dbuv_m[0, 0])
     return {
         "from": {"latitude_deg": start.latitude_deg, "longitude_deg": start.longitude_deg},
         "to": {"latitude_deg": roof.latitude_deg, "longitude_deg": roof.longitude_deg},
@@ -85,14 +95,17 @@ def path_document(
         "polarisation": polarisation,
         "distance_km": length_km,
         "kind": kind,
-        "sentence": path_sentence(
-            kind,
-            length_km,
-            length_km - float(digest.worst_point_km),
-            float(digest.obstacle_into_line_m),
-            ratio,
-            float(digest.sea_km) / length_km,
-        ),
+        "sentence": path_sentence(story_of(path, kind, frequency_mhz, one.diffraction(carrier, plane), both, 0)),
+        "method": "p1546" if path.terms is None else "p1812",
+        "method_reason": method_reason("both", path.p1812_refusal),
+        "difference_db": _finite(difference),
+        "apart": None if path.terms is None else apart_reason(difference, terms_of(both, one, 0)),
+        "ground": {"kinds": list(profile.kinds), "spacing_m": profile.spacing_m},
+        "refractivity": {
+            "delta_n_per_km": path.delta_n_per_km,
+            "n0": path.n0,
+            "source": f"maps in {refractivity_maps}" if refractivity_maps else "table of the package, every 3 degrees",
+        },
         "clearance_ratio": ratio,
         "free_space": {
             "field_dbuv_m": float(field_strength_dbuv_m(length_km, 1.0)),
@@ -112,7 +125,15 @@ def told_path(document: dict[str, Any]) -> str:
         document["sentence"],
         "",
         f"free space: field {free['field_dbuv_m']:.2f} dB(µV/m), loss {free['basic_loss_db']:.2f} dB",
+        f"method: {document['method_reason']}",
+        f"ground: {', '.join(document['ground']['kinds'])}, a point every {document['ground']['spacing_m']:.0f} m",
+        f"refractivity: lapse {document['refractivity']['delta_n_per_km']:.1f} N/km, "
+        f"{document['refractivity']['n0']:.0f} N at sea level ({document['refractivity']['source']})",
     ]
+    if document["difference_db"] is not None:
+        lines.append(f"P.1812 less P.1546: {document['difference_db']:+.1f} dB")
+    if document["apart"]:
+        lines.append(document["apart"])
     for name, title in (("p1812", "Rec. ITU-R P.1812-7"), ("p1546", "Rec. ITU-R P.1546-6")):
         lines += ["", f"{title}, 1 kW ERP"]
         if document[name] is None:
@@ -164,7 +185,7 @@ def _p1812_terms(path: Path, frequency_mhz: float, polarisation: str) -> dict[st
 
 def _drawing(path: Path, frequency_mhz: float, antenna_agl_m: float, aerial_agl_m: float) -> dict[str, Any]:
     """Points for a drawing: the highest ground of each of up to 400 stretches, so that no ridge is lost."""
-    x, ground = path.profile.distance_km, path.profile.ground_amsl_m
+    x, ground = path.profile.distance_km, path.surface_amsl_m
     inner = np.array_split(np.arange(1, len(x) - 1), min(DRAWN_POINTS, max(1, len(x) - 2)))
     keep = np.array([0, *(int(stretch[np.argmax(ground[stretch])]) for stretch in inner if stretch.size), len(x) - 1])
     d1, d2 = x[keep], x[-1] - x[keep]
@@ -173,10 +194,11 @@ def _drawing(path: Path, frequency_mhz: float, antenna_agl_m: float, aerial_agl_
     return {
         "distance_km": _rounded(x[keep], 4),
         "ground_amsl_m": _rounded(ground[keep], 1),
+        "bare_amsl_m": _rounded(path.profile.bare_amsl_m[keep], 1),
         "bulge_m": _rounded(500 * d1 * d2 / radius_km, 2),
         "line_amsl_m": _rounded(start + (end - start) * d1 / x[-1], 2),
         "first_fresnel_m": _rounded(np.sqrt(299.792458 / frequency_mhz * 1e3 * d1 * d2 / x[-1]), 2),
-        "water": [bool(one) for one in path.profile.zone[keep] == 1],
+        "water": [bool(one) for one in path.profile.zone[keep] == SEA],
         "effective_earth_radius_km": radius_km,
     }
 

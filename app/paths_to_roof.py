@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import pathlib
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -9,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.near_roof import Edge, edges_near_roof, flattened_surface_m
 from app.roof import Roof
 from app.transmitters.model import Transmitter
 from propagation import p1812
@@ -19,12 +21,12 @@ from propagation.refraction import effective_earth_radius_km
 from propagation.refractivity import refractivity
 from terrain.mosaic import Ground
 from terrain.profile import Profile, sample_profile
+from terrain.water import SEA
+
+FloatArray = NDArray[np.float64]
 
 NEAREST_KM = 0.05  # a mast nearer than this stands on the roof's own plot: no method here holds
-SEA = 1
 NO_COAST_KM = 500.0
-FLATTENED_KM = 0.05  # no cover and no surface counts this near to the aerial: one local obstacle does
-LOCAL_OBSTACLE_KM = 0.027  # where P.1546 places it
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,15 +42,32 @@ class Path:
     """One path without any frequency."""
 
     profile: Profile
+    surface_amsl_m: FloatArray  # (n,) what a ray meets, flattened near the roof; equal to the bare ground at both ends
     antenna_agl_m: float
     digest: PathDigest
     terms: PathTerms | None  # for P.1812; None: outside its range
+    p1812_refusal: str  # why, else empty
+    delta_n_per_km: float
     n0: float
-    local_obstacle_m: float  # its height above the ground at the roof; 0: none
+    edges: tuple[Edge, ...]  # near the roof, worst first; no part of profile, digest and terms
+
+    @property
+    def p1546_surroundings_m(self) -> float:
+        """Cover height at the aerial for P.1546, 0 for none: an obstacle entered that is worse takes its place."""
+        return self.edges[0].height_m if self.edges and self.edges[0].what == "surroundings" else 0.0
+
+    def clearance_ratio(self, frequency_mhz: float) -> float:
+        """Clearance of the ray at its worst point, near edges included, in first Fresnel radii."""
+        over_ground = float(self.digest.clearance_ratio(frequency_mhz))
+        return min(over_ground, float(self.edges[0].clearance_ratio(frequency_mhz))) if self.edges else over_ground
 
 
 def paths_to_roof(
-    roof: Roof, keys: Sequence[PathKey], ground: Ground, assumptions: Assumptions
+    roof: Roof,
+    keys: Sequence[PathKey],
+    ground: Ground,
+    assumptions: Assumptions,
+    refractivity_maps: pathlib.Path | None = None,
 ) -> dict[PathKey, Path | str]:
     """Return the path of each key, or the reason why there is none."""
     profiles: dict[str, Profile | str] = {}
@@ -60,43 +79,57 @@ def paths_to_roof(
         if mast.id not in profiles:
             profiles[mast.id] = _profile(roof, mast, ground)
         profile = profiles[mast.id]
-        paths[key] = profile if isinstance(profile, str) else path_over(profile, key.antenna_agl_m, roof, assumptions)
+        paths[key] = (
+            profile
+            if isinstance(profile, str)
+            else path_over(profile, key.antenna_agl_m, roof, assumptions, refractivity_maps)
+        )
     return paths
 
 
-def path_over(profile: Profile, antenna_agl_m: float, roof: Roof, assumptions: Assumptions) -> Path | str:
+def path_over(
+    profile: Profile,
+    antenna_agl_m: float,
+    roof: Roof,
+    assumptions: Assumptions,
+    refractivity_maps: pathlib.Path | None = None,
+) -> Path | str:
     """Digest one profile for one antenna height, or say why neither method can."""
     middle = len(profile.distance_km) // 2
     delta_n_per_km, n0 = (
-        one.item() for one in refractivity(profile.latitude_deg[middle], profile.longitude_deg[middle])
+        one.item()
+        for one in refractivity(profile.latitude_deg[middle], profile.longitude_deg[middle], refractivity_maps)
     )
-    near_roof = profile.distance_km[-1] - profile.distance_km <= FLATTENED_KM
-    ground_amsl_m = np.where(near_roof, profile.ground_amsl_m[-1], profile.ground_amsl_m)
-    obstacle_m = local_obstacle_m(roof, assumptions)
+    radius_km = effective_earth_radius_km(delta_n_per_km)
+    surface_amsl_m = flattened_surface_m(profile)
     try:
         digest = path_digest(
             profile.distance_km,
-            ground_amsl_m,
+            profile.bare_amsl_m,
             profile.zone,
             antenna_agl_m,
             roof.aerial_agl_m,
-            effective_earth_radius_km(delta_n_per_km),
+            radius_km,
+            surface_amsl_m,
         )
     except (ProfileError, RangeError) as error:
         return f"no method holds on this path: {error}"
+    terms, refusal = None, ""
     try:
-        terms = _p1812_terms(profile, ground_amsl_m, antenna_agl_m, roof, obstacle_m, delta_n_per_km)
-    except RangeError:
-        terms = None  # P.1546 answers alone
-    return Path(profile, antenna_agl_m, digest, terms, n0, obstacle_m)
-
-
-def local_obstacle_m(roof: Roof, assumptions: Assumptions) -> float:
-    """Height of the one obstacle that stands for the surroundings, above the roof's ground; 0 if below the aerial."""
-    if roof.surroundings == "open":
-        return 0.0
-    height_m = assumptions.value(f"cover_{roof.surroundings}_m")
-    return height_m if height_m > roof.aerial_agl_m else 0.0
+        terms = _p1812_terms(profile, surface_amsl_m, antenna_agl_m, roof, delta_n_per_km)
+    except RangeError as error:
+        refusal = str(error)  # P.1546 answers alone
+    return Path(
+        profile=profile,
+        surface_amsl_m=surface_amsl_m,
+        antenna_agl_m=antenna_agl_m,
+        digest=digest,
+        terms=terms,
+        p1812_refusal=refusal,
+        delta_n_per_km=delta_n_per_km,
+        n0=n0,
+        edges=edges_near_roof(profile, surface_amsl_m, antenna_agl_m, roof, assumptions, radius_km.item()),
+    )
 
 
 def _profile(roof: Roof, mast: Transmitter, ground: Ground) -> Profile | str:
@@ -109,26 +142,14 @@ def _profile(roof: Roof, mast: Transmitter, ground: Ground) -> Profile | str:
 
 
 def _p1812_terms(
-    profile: Profile,
-    ground_amsl_m: NDArray[np.float64],
-    antenna_agl_m: float,
-    roof: Roof,
-    obstacle_m: float,
-    delta_n_per_km: float,
+    profile: Profile, surface_amsl_m: FloatArray, antenna_agl_m: float, roof: Roof, delta_n_per_km: float
 ) -> PathTerms:
+    """Bare ground where the Recommendation wants terrain; with the cover that stands on it, it is the surface."""
     distance_km, zone = profile.distance_km, profile.zone
-    cover_m = np.zeros_like(distance_km)
-    at_km = distance_km[-1] - LOCAL_OBSTACLE_KM
-    if obstacle_m > 0 and at_km > 0:
-        place = int(np.searchsorted(distance_km, at_km))
-        distance_km = np.insert(distance_km, place, at_km)
-        ground_amsl_m = np.insert(ground_amsl_m, place, ground_amsl_m[-1])
-        zone = np.insert(zone, place, zone[-1])
-        cover_m = np.insert(cover_m, place, obstacle_m)
     return p1812.path_terms(
         distance_km=distance_km,
-        terrain_amsl_m=ground_amsl_m,
-        clutter_height_m=cover_m,
+        terrain_amsl_m=profile.bare_amsl_m,
+        clutter_height_m=surface_amsl_m - profile.bare_amsl_m,
         zone=zone,
         tx_height_agl_m=antenna_agl_m,
         rx_height_agl_m=roof.aerial_agl_m,
@@ -137,12 +158,12 @@ def _p1812_terms(
         rx_latitude_deg=profile.latitude_deg[-1],
         rx_longitude_deg=profile.longitude_deg[-1],
         delta_n_per_km=delta_n_per_km,
-        tx_distance_to_coast_km=_to_coast_km(distance_km, zone),
-        rx_distance_to_coast_km=_to_coast_km(distance_km[-1] - distance_km[::-1], zone[::-1]),
+        tx_distance_to_coast_km=to_coast_km(distance_km, zone),
+        rx_distance_to_coast_km=to_coast_km(distance_km[-1] - distance_km[::-1], zone[::-1]),
     )
 
 
-def _to_coast_km(away_km: NDArray[np.float64], zone: NDArray[np.int8]) -> float:
+def to_coast_km(away_km: FloatArray, zone: NDArray[np.int8]) -> float:
     """Distance over land from the first point to the sea; 0 at sea, 500 where the path meets none."""
     at_sea = zone == SEA
     return float(away_km[int(np.argmax(at_sea))]) if at_sea.any() else NO_COAST_KM

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 from app.answer import answer_document
@@ -20,7 +21,13 @@ from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multi
 from terrain.mosaic import Ground
 
 
-def assess(request: AssessRequest, store: Store, ground: Ground, today: date | None = None) -> dict[str, Any]:
+def assess(
+    request: AssessRequest,
+    store: Store,
+    ground: Ground,
+    today: date | None = None,
+    refractivity_maps: Path | None = None,
+) -> dict[str, Any]:
     """Answer one request with the document of the interface, the same for API and command line.
 
     Raises
@@ -34,7 +41,9 @@ def assess(request: AssessRequest, store: Store, ground: Ground, today: date | N
     found = store.emissions_within(
         request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
     )
-    fields = fields_at(request.roof, found, ground, assumptions, request.availability_percent, request.method)
+    fields = fields_at(
+        request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
+    )
     air = air_of(fields)
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)

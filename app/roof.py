@@ -12,16 +12,22 @@ Surroundings = Literal["open", "suburban", "urban", "trees"]
 SURROUNDINGS: tuple[Surroundings, ...] = ("open", "suburban", "urban", "trees")
 
 LOWEST_AERIAL_M, HIGHEST_AERIAL_M = 1.0, 200.0
+FARTHEST_OBSTACLE_M, HIGHEST_OBSTACLE_M = 2000.0, 500.0  # beyond, the elevation rasters show it
 
 
 @dataclass(frozen=True, slots=True)
 class Obstacle:
-    """Something near the roof that stands in one direction."""
+    """Something near the roof that stands in one direction; `Roof` checks its values."""
 
     bearing_deg: float
     distance_m: float
     height_agl_m: float  # above the ground at the roof
     width_m: float
+
+    def stands_towards(self, bearing_deg: float) -> bool:
+        """Whether a direction from the roof falls within its width."""
+        away_deg = abs((bearing_deg - self.bearing_deg + 180) % 360 - 180)
+        return away_deg <= math.degrees(math.atan2(self.width_m / 2, self.distance_m))
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,6 +51,12 @@ class Roof:
                 field="surroundings",
                 allowed=", ".join(SURROUNDINGS),
             )
+        for number, one in enumerate(self.obstacles):
+            place = f"obstacles.{number}"
+            check(f"{place}.bearing_deg", one.bearing_deg, 0, 360, "degrees from north")
+            check(f"{place}.distance_m", one.distance_m, 1, FARTHEST_OBSTACLE_M, "m from the aerial")
+            check(f"{place}.height_agl_m", one.height_agl_m, 0, HIGHEST_OBSTACLE_M, "m above the ground at the roof")
+            check(f"{place}.width_m", one.width_m, 0.5, FARTHEST_OBSTACLE_M, "m across")
 
 
 def check(name: str, value: float, lowest: float, highest: float, unit: str) -> None:

@@ -2,11 +2,32 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Literal
+
+from app.near_roof import Standing
 
 Kind = Literal["clear", "grazing", "obstructed", "beyond the horizon"]
 
 CLEAR_RATIO = 0.6  # of the first Fresnel radius: no diffraction loss to speak of (Rec. ITU-R P.526)
+WORTH_TELLING_DB = 3.0
+
+
+@dataclass(frozen=True, slots=True)
+class PathStory:
+    """The terms of one path that a sentence can be made of."""
+
+    kind: Kind
+    distance_km: float
+    worst_point_km: float  # from the roof, as a person there looks
+    into_line_m: float  # surface and Earth's curve above the straight ray there; negative: below it
+    clearance_ratio: float
+    sea_share: float
+    standing: Standing  # what the surface is there
+    bulge_m: float  # the Earth's curve there
+    diffraction_loss_db: float
+    curve_loss_db: float  # the part of it that the smooth Earth adds
+    brought_back_db: float  # what scatter and ducts make good of it
 
 
 def path_kind(clearance_ratio: float, beyond_horizon: bool) -> Kind:
@@ -18,35 +39,61 @@ def path_kind(clearance_ratio: float, beyond_horizon: bool) -> Kind:
     return "grazing" if clearance_ratio >= 0 else "obstructed"
 
 
-def path_sentence(
-    kind: Kind,
-    distance_km: float,
-    worst_point_km: float,
-    into_line_m: float,
-    clearance_ratio: float,
-    sea_share: float,
-) -> str:
-    """Tell the path from the transmitter's mast to the aerial.
-
-    worst_point_km counts from the roof, as a person there looks; into_line_m is how far ground and
-    Earth bulge stand above the straight ray there, negative below it.
-    """
-    sea = f", {sea_share:.0%} of the way over sea" if sea_share >= 0.05 else ""
-    start = f"{_kilometres(distance_km)}{sea}"
-    place = _kilometres(worst_point_km)
-    if kind == "beyond the horizon":
-        if into_line_m > 0:
-            into = f"ground and the Earth's curve at {place} stand {into_line_m:.0f} m into the line"
-            return f"{start}, beyond the horizon: {into}."
-        return f"{start}, at the edge of the horizon: the line passes {-into_line_m:.0f} m over the ground at {place}."
-    if kind == "clear":
-        over = f"{-into_line_m:.0f} m over the ground at its tightest, {place} away"
-        return f"{start}, a clear line: it passes {over}."
-    if kind == "grazing":
-        share = f"{clearance_ratio:.1f} of the first Fresnel radius"
-        return f"{start}, in sight but tight: only {-into_line_m:.0f} m over the ground at {place}, {share}."
-    return f"{start}, blocked: the ground at {place} stands {into_line_m:.0f} m into the line."
+def path_sentence(story: PathStory) -> str:
+    """Tell the path from the transmitter's mast to the aerial."""
+    sea = f", {story.sea_share:.0%} of the way over sea" if story.sea_share >= 0.05 else ""
+    return f"{_length(story.distance_km)}{sea}, {_line(story)}{_costs(story)}."
 
 
-def _kilometres(distance_km: float) -> str:
+def _line(story: PathStory) -> str:
+    into_m, what = story.into_line_m, _what(story)
+    if story.kind == "beyond the horizon":
+        if into_m > 0:
+            return f"beyond the horizon: {what} {into_m:.0f} m into the line"
+        return f"at the edge of the horizon: the line passes {-into_m:.0f} m over {_under(story)}"
+    if story.kind == "clear":
+        return f"a clear line: it passes {-into_m:.0f} m over {_under(story)} at its tightest"
+    if story.kind == "grazing":
+        share = f"{story.clearance_ratio:.1f} of the first Fresnel radius"
+        return f"in sight but tight: only {-into_m:.0f} m over {_under(story)}, {share}"
+    return f"blocked: {what} {into_m:.0f} m into the line"
+
+
+def _what(story: PathStory) -> str:
+    """Name what stands in the line, with its verb."""
+    if story.standing == "obstacle":
+        return f"the obstacle {_length(story.worst_point_km)} from the aerial stands"
+    if story.standing == "surroundings":
+        return "what stands round the roof reaches"
+    if story.bulge_m >= story.into_line_m:
+        return f"the Earth's curve lifts the ground at {_length(story.worst_point_km)}"
+    return f"the ground at {_length(story.worst_point_km)} stands"
+
+
+def _under(story: PathStory) -> str:
+    if story.standing == "obstacle":
+        return f"the obstacle {_length(story.worst_point_km)} from the aerial"
+    if story.standing == "surroundings":
+        return "what stands round the roof"
+    return f"the ground at {_length(story.worst_point_km)}"
+
+
+def _costs(story: PathStory) -> str:
+    """Say what it costs, and what other ways of propagation make good of it."""
+    loss_db = story.diffraction_loss_db
+    if loss_db < WORTH_TELLING_DB:
+        return ""
+    if story.kind == "clear" or story.into_line_m <= 0 < story.curve_loss_db:
+        by = "the curve of the Earth" if story.curve_loss_db >= loss_db / 2 else "the ground below it"
+        told = f"; {by} still takes {loss_db:.0f} dB"
+    else:
+        told = f", which costs {loss_db:.0f} dB"
+    if story.brought_back_db >= WORTH_TELLING_DB:
+        told += f"; scatter and layers in the air bring back {story.brought_back_db:.0f} dB"
+    return told
+
+
+def _length(distance_km: float) -> str:
+    if distance_km < 1:
+        return f"{1e3 * distance_km:.0f} m"
     return f"{distance_km:.0f} km" if distance_km >= 10 else f"{distance_km:.1f} km"

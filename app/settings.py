@@ -29,6 +29,9 @@ class Settings(BaseSettings):
     workers: int = Field(4, ge=1, le=64, description="questions that are computed at once")
     largest_body_kb: int = Field(1024, ge=16, le=65536, description="largest request that is read")
     worth_per_multiplex: float | None = Field(None, ge=0, le=1e6, description="worth of one more wanted multiplex")
+    refractivity_maps: Path | None = Field(
+        None, description="folder with the full maps DN50.TXT and N050.TXT of P.453 instead of the package's table"
+    )
     reading_cost: float | None = Field(None, ge=0, le=1e6, description="cost of taking a reading")
 
     @classmethod

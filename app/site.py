@@ -10,6 +10,7 @@ from app.errors import RoofError
 from app.roof import Roof
 from terrain.errors import CoverageError
 from terrain.geodesy import destination
+from terrain.ground import bare_ground_m
 from terrain.mosaic import Ground
 
 FARTHEST_OFFSHORE_M = 500.0
@@ -35,7 +36,7 @@ def site_of(roof: Roof, ground: Ground) -> Site:
     RoofError
         More than 500 m out at sea. Nearer to land is answered with a caution.
     """
-    height_m = float(ground.elevation_m(roof.latitude_deg, roof.longitude_deg))
+    height_m = bare_ground_m(ground, roof.latitude_deg, roof.longitude_deg).item()
     if not np.isfinite(height_m):
         raise CoverageError(missing_ground(roof.latitude_deg, roof.longitude_deg))
     if not bool(ground.is_water(roof.latitude_deg, roof.longitude_deg)):

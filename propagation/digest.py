@@ -39,12 +39,12 @@ class PathDigest:
     line_of_sight: NDArray[np.bool_]
     clearance: FloatArray  # at the worst point, in m per root km of d1 d2 / d
     worst_point_km: FloatArray  # from the transmitter
-    obstacle_into_line_m: FloatArray  # ground and bulge above the ray there; negative: clear
+    obstacle_into_line_m: FloatArray  # surface and bulge above the ray there; negative: clear
     tx_over_smooth_earth_m: FloatArray
     rx_over_smooth_earth_m: FloatArray
     smooth_horizon_km: FloatArray  # range at which the smooth Earth hides the antennas from each other
     beyond_horizon: NDArray[np.bool_]
-    actual_edge: FloatArray  # `diffraction.bullington_edge` over the ground
+    actual_edge: FloatArray  # `diffraction.bullington_edge` over the surface
     smooth_edge: FloatArray  # over the smooth Earth
     angular_distance_mrad: FloatArray  # between both horizon rays, P.1812 eq. (84)
     actual_edge_true_earth: FloatArray  # the same three at k = 1, rays not bent at all
@@ -94,17 +94,21 @@ def path_digest(
     antenna_agl_m: ArrayLike,
     aerial_agl_m: ArrayLike,
     effective_earth_radius_km: ArrayLike,
+    surface_amsl_m: ArrayLike | None = None,
 ) -> PathDigest:
     """Digest a profile.
 
     Parameters
     ----------
     distance_km, ground_amsl_m, zone : array (..., n)
-        Profile from the transmitter, n >= 3; zone 1 sea, 3 coastal land, 4 inland. [km], [m], [-]
+        Profile from the transmitter, n >= 3; bare ground; zone 1 sea, 3 coastal land, 4 inland. [km], [m], [-]
     antenna_agl_m, aerial_agl_m : array (...)
         Antenna on the mast and aerial on the roof, above ground. [m]
     effective_earth_radius_km : array (...)
         At the median refractivity. [km]
+    surface_amsl_m : array (..., n), optional
+        What a ray meets between the ends, cover included: it decides sight, clearance and diffraction, while
+        heights, angles and the smooth Earth are those of the bare ground. Without it the ground is bare. [m]
 
     Returns
     -------
@@ -122,12 +126,13 @@ def path_digest(
     Attachment 1; Rec. ITU-R P.526-16, sections 2.1 and 4.5.
     """
     x, ground = checked_profile(distance_km, ground_amsl_m)
+    surface = ground if surface_amsl_m is None else checked_profile(x, surface_amsl_m)[1]
     radius = np.asarray(effective_earth_radius_km, dtype=float)
     inputs = path_inputs(x, ground, zone, antenna_agl_m, aerial_agl_m, coastal_land_is_sea=False)
     tx_amsl = inputs.tx_ground_amsl_m + np.asarray(antenna_agl_m, dtype=float)
     rx_amsl = inputs.rx_ground_amsl_m + np.asarray(aerial_agl_m, dtype=float)
     d = inputs.path_length_km
-    clearance, point_km, into_line = _worst_point(x, ground, tx_amsl, rx_amsl, radius)
+    clearance, point_km, into_line = _worst_point(x, surface, tx_amsl, rx_amsl, radius)
 
     smooth = smooth_earth(x, ground, tx_amsl, rx_amsl)
     tx_over, rx_over = tx_amsl - smooth.tx_amsl_m, rx_amsl - smooth.rx_amsl_m
@@ -151,10 +156,10 @@ def path_digest(
         rx_over_smooth_earth_m=rx_over,
         smooth_horizon_km=horizon,
         beyond_horizon=d > horizon,
-        actual_edge=bullington_edge(x, ground, tx_amsl, rx_amsl, radius),
+        actual_edge=bullington_edge(x, surface, tx_amsl, rx_amsl, radius),
         smooth_edge=bullington_edge(x, flat, tx_over, rx_over, radius),
         angular_distance_mrad=_angular_distance_mrad(x, ground, tx_amsl, rx_amsl, radius),
-        actual_edge_true_earth=bullington_edge(x, ground, tx_amsl, rx_amsl, EARTH_RADIUS_KM),
+        actual_edge_true_earth=bullington_edge(x, surface, tx_amsl, rx_amsl, EARTH_RADIUS_KM),
         smooth_edge_true_earth=bullington_edge(x, flat, tx_over, rx_over, EARTH_RADIUS_KM),
         angular_distance_true_earth_mrad=_angular_distance_mrad(
             x, ground, tx_amsl, rx_amsl, np.asarray(EARTH_RADIUS_KM)

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from terrain.errors import PathError
 from terrain.geodesy import distance_and_bearing, points_along
+from terrain.ground import bare_along_m
 from terrain.mosaic import Ground
 from terrain.water import zones
 
@@ -27,7 +28,9 @@ class Profile:
     """Ground under one path, transmitter first, at equal steps along the WGS 84 geodesic."""
 
     distance_km: FloatArray  # (n,) from 0, rising
-    ground_amsl_m: FloatArray  # (n,) NaN where no raster has a height
+    ground_amsl_m: FloatArray  # (n,) as the raster has it, with what stands on it; NaN where none has a height
+    bare_amsl_m: FloatArray  # (n,) bare ground, never above ground_amsl_m (ground.py)
+    kinds: tuple[str, ...]  # of the rasters that answered: "bare", "radar-surface", "surface"
     zone: NDArray[np.int8]  # (n,) 1 sea, 3 coastal land, 4 inland (water.py)
     latitude_deg: FloatArray  # (n,)
     longitude_deg: FloatArray  # (n,)
@@ -74,6 +77,8 @@ def sample_profile(
     return Profile(
         distance_km=distance_km,
         ground_amsl_m=height_m,
+        bare_amsl_m=bare_along_m(ground, distance_km, lat, lon, height_m),
+        kinds=tuple(sorted({str(kind) for kind in ground.answering(lat, lon)[0]} - {""})),
         zone=zones(distance_km, height_m, water),
         latitude_deg=lat,
         longitude_deg=lon,

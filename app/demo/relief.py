@@ -16,6 +16,7 @@ import rasterio
 from numpy.typing import NDArray
 
 from terrain.errors import CacheError
+from terrain.raster import declare
 
 Array = NDArray[np.float32]
 
@@ -91,13 +92,15 @@ def ensure_demo_relief(folder: Path) -> Path:
         The folder cannot be written.
     """
     path = folder / FILE_NAME
-    if path.is_file():
+    declared = folder / f"{FILE_NAME}.gainworth.toml"
+    if path.is_file() and declared.is_file():
         return path
     try:
         folder.mkdir(parents=True, exist_ok=True)
         with tempfile.TemporaryDirectory(dir=folder, prefix=".making-") as making:
             part = Path(making) / FILE_NAME
             _write(part, island_heights_m())
+            declare(part, kind="bare").replace(declared)  # nothing stands on it
             part.replace(path)  # whole or not at all, also with two processes at once
     except (OSError, rasterio.errors.RasterioIOError) as error:
         raise CacheError(

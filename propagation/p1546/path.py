@@ -73,7 +73,7 @@ def path_inputs(
     sea = sea_length_km(x, zone, (SEA, COASTAL_LAND) if coastal_land_is_sea else (SEA,))
     return PathInputs(
         path_length_km=d,
-        land_km=np.maximum(d - sea, 0.0),  # a path over nothing but water may round below
+        land_km=np.maximum(d - sea, 0.0),  # rounding leaves a hair below 0
         sea_km=sea,
         tx_ground_amsl_m=ground[..., 0],
         rx_ground_amsl_m=ground[..., -1],

@@ -3,10 +3,9 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from propagation.diffraction import DeltaBullington, bullington_loss_of_edge_db
+from propagation.diffraction import DeltaBullington, delta_bullington_of_edges
 from propagation.p1812.normal import inverse_complementary_normal
 from propagation.p1812.path import BETA0_EARTH_RADIUS_KM, PathTerms
-from propagation.spherical_earth import spherical_earth_loss_db
 
 FloatArray = NDArray[np.float64]
 
@@ -62,9 +61,9 @@ def _delta_bullington(
     frequency_mhz: ArrayLike,
     polarisation: ArrayLike,
 ) -> DeltaBullington:
-    actual = bullington_loss_of_edge_db(actual_edge, path.path_length_km, frequency_mhz)
-    smooth = bullington_loss_of_edge_db(smooth_edge, path.path_length_km, frequency_mhz)
-    spherical = spherical_earth_loss_db(
+    return delta_bullington_of_edges(
+        actual_edge,
+        smooth_edge,
         path.path_length_km,
         path.tx_height_above_smooth_earth_m,
         path.rx_height_above_smooth_earth_m,
@@ -73,5 +72,3 @@ def _delta_bullington(
         path.fraction_over_sea,
         polarisation,
     )
-    loss = actual + np.maximum(spherical - smooth, 0.0)
-    return DeltaBullington(actual_db=actual, smooth_db=smooth, spherical_db=spherical, loss_db=loss)

@@ -17,6 +17,7 @@ from app.transmitters.model import Emission, Multiplex, Transmitter
 from app.transmitters.rows import Source
 from app.transmitters.store import Store
 from terrain.errors import CacheError
+from terrain.mosaic import Ground
 
 PIXEL_KM2 = (111.11 / 3600) * (79.78 / 3600)  # at 44.3° N
 GEOD = Geod(ellps="WGS84")
@@ -111,7 +112,8 @@ def test_the_file_is_placed_whole_and_made_once(tmp_path, heights):
     made = path.stat().st_mtime_ns
     assert ensure_demo_relief(tmp_path / "deep" / "folder") == path
     assert path.stat().st_mtime_ns == made
-    assert [file.name for file in path.parent.iterdir()] == [path.name]
+    assert sorted(file.name for file in path.parent.iterdir()) == [path.name, f"{path.name}.gainworth.toml"]
+    assert Ground.open([path], tmp_path).rasters[0].kind == "bare"
 
 
 def test_a_folder_that_cannot_be_written_says_what_to_set(tmp_path):

@@ -40,8 +40,8 @@ def test_document_has_the_shape_of_the_interface(ask):
             "bearing_deg", "distance_km", "path", "field", "chains"} <= set(emission)  # fmt: skip
     assert {"sentence", "line_of_sight", "clearance_ratio", "terrain_clearance_angle_deg", "effective_height_m",
             "diffraction_loss_db", "zones", "kind"} <= set(emission["path"])  # fmt: skip
-    assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "used_dbuv_m", "method", "sigma_db", "fade_db",
-            "enhancement_db"} == set(emission["field"])  # fmt: skip
+    assert {"free_space_dbuv_m", "p1546_dbuv_m", "p1812_dbuv_m", "difference_db", "apart", "used_dbuv_m", "method",
+            "method_reason", "sigma_db", "fade_db", "enhancement_db"} == set(emission["field"])  # fmt: skip
     outlet = emission["chains"]["roof-yagi"]["outlets"][0]
     assert {"name", "level_dbuv", "level_median_dbuv", "cn_db", "required_cn_db", "margin_db", "headroom_db", "chance",
             "held_back_by",

@@ -19,7 +19,15 @@ router = APIRouter(prefix="/api", tags=["answers"])
 async def assess_roof(question: AssessIn, context: ContextDep) -> JSONResponse:
     """Answer one roof: every multiplex, emission, chain and verdict, with assumptions and cautions."""
     request = question.request(context.settings.worth_per_multiplex, context.settings.reading_cost)
-    return JSONResponse(await context.compute(assess, request, context.store, context.ground))
+    return JSONResponse(
+        await context.compute(
+            assess,
+            request,
+            context.store,
+            context.ground,
+            refractivity_maps=context.settings.refractivity_maps,
+        )
+    )
 
 
 Number = Annotated[float, Query(allow_inf_nan=False)]
@@ -49,5 +57,6 @@ async def path(
         antenna_agl_m,
         aerial_agl_m,
         polarisation,
+        context.settings.refractivity_maps,
     )
     return JSONResponse(document)
