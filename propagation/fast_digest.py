@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -21,12 +22,11 @@ from propagation.p1812.climate import beta0_percent, path_centre_latitude_deg
 from propagation.p1812.path import BETA0_EARTH_RADIUS_KM, NO_COAST_KM, PathTerms
 from propagation.refraction import effective_earth_radius_km
 from propagation.refractivity import refractivity
-from propagation.scan import BACK, MOST_POINTS, ROOT, SCAN, scan_profile
-from propagation.scan_zones import all_inland, zone_lengths
+from propagation.scan import BACK, ROOT, SCAN
+from propagation.scan_lines import scan_lines
 from propagation.smooth_edge import smooth_rays
-from terrain.compiled import compiled
-from terrain.kernels import inside, sample_heights
-from terrain.lines import Lines, lines_over
+from terrain.kernels import sheet_arrays
+from terrain.lines import lines_over
 from terrain.sheet import Sheet
 
 FloatArray = NDArray[np.float64]
@@ -45,10 +45,8 @@ class Ends:
     rx_latitude_deg: FloatArray
     rx_longitude_deg: FloatArray
     aerial_agl_m: FloatArray
-    flattened_km: float  # ground this near to the roof counts as the ground at the roof
-    first_edge: NDArray[np.int64]  # (p + 1,) into the edges
-    edge_km: FloatArray  # (e,) from the roof
-    edge_over_ground_m: FloatArray  # (e,) over the ground at the roof
+    first_edge: NDArray[np.int64]  # (p + 1,) into edge_km
+    edge_km: FloatArray  # (e,) distances of what stands near a roof, from the roof
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,14 +56,23 @@ class Digests:
     known: NDArray[np.bool_]  # false: the sheet has a gap under the path
     digest: PathDigest
     terms: PathTerms
+    delta_n_per_km: FloatArray
     n0: FloatArray
+    source_km: FloatArray  # (e,) where the ray past each edge comes from, from the roof; negative: nothing is farther
+    source_slope: FloatArray  # (e,) from the horizontal at the aerial [m/km]
 
 
-def digests(sheet: Sheet, ends: Ends, spacing_m: float | None = None, each: Each = map) -> Digests:
+def digests(
+    sheet: Sheet,
+    ends: Ends,
+    spacing_m: float | None = None,
+    maps_folder: Path | None = None,
+    each: Each = map,
+) -> Digests:
     """Digest paths (p,) over a sheet.
 
-    Spacing as for `terrain.profile.sample_profile`. With `each` the map of a pool of threads, chunks of paths are
-    scanned at the same time.
+    Spacing as for `terrain.profile.sample_profile`, `maps_folder` as for `refractivity`. With `each` the map of a
+    pool of threads, chunks of paths are scanned at the same time.
 
     References
     ----------
@@ -73,7 +80,9 @@ def digests(sheet: Sheet, ends: Ends, spacing_m: float | None = None, each: Each
     """
     paths = ends.tx_latitude_deg.size
     scans = np.zeros(paths, SCAN)
-    length, points, radius, n0 = np.zeros(paths), np.zeros(paths, np.int64), np.zeros(paths), np.zeros(paths)
+    length, points, lapse, n0 = np.zeros(paths), np.zeros(paths, np.int64), np.zeros(paths), np.zeros(paths)
+    sources = np.zeros((2, ends.edge_km.size))
+    arrays = sheet_arrays(sheet)
 
     def scan(part: slice) -> None:
         lines = lines_over(
@@ -84,118 +93,43 @@ def digests(sheet: Sheet, ends: Ends, spacing_m: float | None = None, each: Each
             ends.rx_longitude_deg[part],
             spacing_m,
         )
-        lapse, n0[part] = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg)
-        length[part], points[part], radius[part] = lines.length_km, lines.points, effective_earth_radius_km(lapse)
-        scan_lines(sheet, lines, ends, part, radius[part], scans[part])
+        length[part], points[part] = lines.length_km, lines.points
+        lapse[part], n0[part] = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
+        scan_lines(
+            arrays,
+            lines.first_knot,
+            lines.row,
+            lines.column,
+            lines.length_km,
+            lines.points,
+            500 / effective_earth_radius_km(lapse[part]),
+            ends.antenna_agl_m[part],
+            ends.aerial_agl_m[part],
+            ends.first_edge[part.start : part.stop + 1],
+            ends.edge_km,
+            ROOT,
+            BACK,
+            scans[part],
+            sources,
+        )
 
     list(each(scan, [slice(first, min(first + CHUNK, paths)) for first in range(0, paths, CHUNK)]))
-    return _closed(scans, ends, length, points, radius, n0)
-
-
-def scan_lines(sheet: Sheet, lines: Lines, ends: Ends, part: slice, radius_km: FloatArray, scans: NDArray[Any]) -> None:
-    """Scan the paths of one part into `scans`."""
-    _scan(
-        sheet.samples.reshape(-1),
-        sheet.water.reshape(-1),
-        sheet.samples.shape[0],
-        sheet.samples.shape[1],
-        sheet.void,
-        -sheet.offset_m / sheet.scale,
-        sheet.scale,
-        sheet.offset_m,
-        lines.first_knot,
-        lines.row,
-        lines.column,
-        lines.length_km,
-        lines.points,
-        500 / radius_km,
-        ends.antenna_agl_m[part],
-        ends.aerial_agl_m[part],
-        ends.flattened_km,
-        ends.first_edge[part.start : part.stop + 1],
-        ends.edge_km,
-        ends.edge_over_ground_m,
-        ROOT,
-        BACK,
-        scans,
-    )
-
-
-@compiled
-def _scan(
-    samples: NDArray[Any],
-    water: NDArray[np.bool_],
-    rows: int,
-    columns: int,
-    void: float,
-    zero: float,
-    scale: float,
-    offset_m: float,
-    first_knot: NDArray[np.int64],
-    row: FloatArray,
-    column: FloatArray,
-    length_km: FloatArray,
-    points: NDArray[np.int64],
-    bulge: FloatArray,
-    antenna_agl_m: FloatArray,
-    aerial_agl_m: FloatArray,
-    flattened_km: float,
-    first_edge: NDArray[np.int64],
-    edge_km: FloatArray,
-    edge_over_ground_m: FloatArray,
-    root: NDArray[np.float32],
-    back: NDArray[np.float32],
-    scans: NDArray[np.void],
-) -> None:
-    most = points.max()
-    cell, corners = np.empty(most, np.int64), np.empty((4, most), np.float32)
-    down, right = np.empty(most, np.float32), np.empty(most, np.float32)
-    profile, wet, inland = np.empty(most, np.float32), np.empty(most, np.bool_), np.empty(most, np.bool_)
-    true_earth, beta0 = 500 / EARTH_RADIUS_KM, 500 / BETA0_EARTH_RADIUS_KM
-    for p in range(points.size):
-        n = points[p]
-        r, c = row[first_knot[p] : first_knot[p + 1]], column[first_knot[p] : first_knot[p + 1]]
-        if n == 0 or not inside(r, c, rows, columns):
-            continue
-        known, any_water = sample_heights(
-            samples, water, columns, void, zero, scale, offset_m, r, c, n, cell, down, right, corners, profile, wet
-        )
-        if not known:
-            continue
-        out = scans[p : p + 1]
-        out[0].known = True
-        height = profile[:n]
-        if any_water:
-            zone_lengths(wet[:n], height, inland, length_km[p], out)
-        else:
-            all_inland(length_km[p], out)
-        for i in range(n - 2, -1, -1):
-            if length_km[p] - i * length_km[p] / (n - 1) > flattened_km:
-                break
-            height[i] = height[n - 1]
-        edges = slice(first_edge[p], first_edge[p + 1])
-        scan_profile(
-            height,
-            height,
-            False,
-            length_km[p],
-            antenna_agl_m[p],
-            aerial_agl_m[p],
-            (bulge[p], true_earth, beta0),
-            edge_km[edges],
-            edge_over_ground_m[edges] + float(height[n - 1]),
-            root[:n],
-            back[MOST_POINTS - n :],
-            out,
-        )
+    return _closed(scans, ends, length, points, lapse, n0, sources)
 
 
 @np.errstate(divide="ignore", invalid="ignore")  # of paths that are not known
 def _closed(
-    s: NDArray[Any], ends: Ends, d: FloatArray, points: NDArray[np.int64], radius: FloatArray, n0: FloatArray
+    s: NDArray[Any],
+    ends: Ends,
+    d: FloatArray,
+    points: NDArray[np.int64],
+    lapse: FloatArray,
+    n0: FloatArray,
+    sources: FloatArray,
 ) -> Digests:
     """Every formula after the scan; what follows from a path that is not known is without meaning."""
     known = s["known"]
+    radius = effective_earth_radius_km(lapse)
     d = np.where(known, d, 1.0)
     points = np.where(known, points, 5)
     a, b = s["tx_ground_amsl_m"] + ends.antenna_agl_m, s["rx_ground_amsl_m"] + ends.aerial_agl_m
@@ -214,15 +148,17 @@ def _closed(
         for name, r in (("median", radius), ("true_earth", true_earth), ("beta0", beta0))
     }
     edge = {
-        name: bullington_edge_of_rays(s[f"tx_{name}"], s[f"rx_{name}"], s[f"zone_{name}"], d, a, b)
+        name: bullington_edge_of_rays(s[f"tx_{name}"], s[f"rx_{name}"], s[f"nu_{name}"], d, a, b)
         for name in ("median", "true_earth", "beta0")
     }
-    horizon_rays = _horizon_rays_mrad(s["bare_tx_median"], s["bare_rx_median"], d, a, b, radius)
+    horizon_rays = _horizon_rays_mrad(s["tx_median"], s["rx_median"], d, a, b, radius)
     return Digests(
         known,
         _digest(s, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
         _terms(s, ends, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
+        lapse,
         n0,
+        *sources,
     )
 
 
@@ -261,7 +197,7 @@ def _digest(
     worst, into_line = s["worst_km"], s["worst_into_line_m"]
     clearance = -into_line * np.sqrt(d / np.where(s["known"], worst * (d - worst), 1.0))
     true_earth_rays = _horizon_rays_mrad(
-        s["bare_tx_true_earth"], s["bare_rx_true_earth"], d, a, b, np.full_like(d, EARTH_RADIUS_KM)
+        s["tx_true_earth"], s["rx_true_earth"], d, a, b, np.full_like(d, EARTH_RADIUS_KM)
     )
     return PathDigest(
         path_length_km=d,

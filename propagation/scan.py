@@ -27,6 +27,7 @@ from terrain.compiled import compiled, compiled_as_written, larger
 Heights = NDArray[np.float32]
 
 MOST_POINTS = 20_001
+_BOTH, _TRANSMITTER, _ROOF = 0, 1, 2
 _number = np.arange(MOST_POINTS, dtype=float)
 _number[0] = np.inf  # no point is asked for its distance from itself
 ROOT = (1 / np.sqrt(_number)).astype(np.float32)
@@ -45,11 +46,10 @@ SCAN = np.dtype(
         ("over_line_m", "f8"),  # eq. (89): highest, and its slopes [m/km]
         ("over_line_from_tx", "f8"),
         ("over_line_from_rx", "f8"),
-        *((f"{ray}_{radius}", "f8") for radius in ("median", "true_earth", "beta0") for ray in ("tx", "rx", "zone")),
-        *((f"bare_{ray}_{radius}", "f8") for radius in ("median", "true_earth") for ray in ("tx", "rx")),
-        ("worst_km", "f8"),  # where the surface comes nearest to the ray in Fresnel radii
+        *((f"{ray}_{radius}", "f8") for radius in ("median", "true_earth", "beta0") for ray in ("tx", "rx", "nu")),
+        ("worst_km", "f8"),  # where the ground comes nearest to the ray in Fresnel radii
         ("worst_into_line_m", "f8"),
-        ("line_of_sight", "?"),  # over bare ground
+        ("line_of_sight", "?"),
         ("tx_horizon_km", "f8"),  # eq. (80); from the transmitter
         ("rx_horizon_km", "f8"),  # from the roof
         ("roughness_m", "f8"),  # eq. (95)
@@ -65,58 +65,45 @@ SCAN = np.dtype(
 
 @compiled
 def scan_profile(
-    bare: Heights,  # (n,)
-    surface: Heights,  # (n,) with what stands on the ground; equal to `bare` at both ends
-    covered: bool,  # false: both are the same array
+    height: Heights,  # (n,) bare ground
     length_km: float,
     antenna_agl_m: float,
     aerial_agl_m: float,
     bulges: tuple[float, float, float],  # 500/a per km² at the median, for the true Earth, at beta0
-    edge_km: NDArray[np.float64],  # (e,) straight edges across the path, from the roof
-    edge_amsl_m: NDArray[np.float64],
     root: Heights,  # (n,) 1 / root(i)
     back: Heights,  # (n,) 1 / root(j)
     out: NDArray[np.void],  # (1,) of SCAN
 ) -> None:
     """Scan one profile."""
-    n = bare.size
+    n = height.size
     step = length_km / (n - 1)
-    tx_amsl, rx_amsl = bare[0] + antenna_agl_m, bare[n - 1] + aerial_agl_m
+    tx_amsl, rx_amsl = height[0] + antenna_agl_m, height[n - 1] + aerial_agl_m
     slope = (rx_amsl - tx_amsl) / length_km
-    median, true_earth, beta0 = bulges[0] * step**2, bulges[1] * step**2, bulges[2] * step**2
+    median = bulges[0] * step**2
 
-    _ground(bare, length_km, tx_amsl, rx_amsl, out)
-    rays = _rays(bare, root, back, tx_amsl, rx_amsl, median, true_earth, beta0)
+    _ground(height, length_km, tx_amsl, rx_amsl, out)
+    rays = _rays(height, root, back, tx_amsl, rx_amsl, median, bulges[1] * step**2, bulges[2] * step**2)
+    to_nu = math.sqrt(0.002 * length_km) / step
+    out[0].tx_median, out[0].rx_median, out[0].nu_median = rays[0] / step + slope, rays[1] / step - slope, rays[2] * to_nu
+    out[0].tx_true_earth, out[0].rx_true_earth = rays[3] / step + slope, rays[4] / step - slope
+    out[0].nu_true_earth = rays[5] * to_nu
+    out[0].tx_beta0, out[0].rx_beta0, out[0].nu_beta0 = rays[6] / step + slope, rays[7] / step - slope, rays[8] * to_nu
     out[0].over_line_m = rays[9]
     out[0].over_line_from_tx, out[0].over_line_from_rx = rays[10] / step, rays[11] / step
-    out[0].bare_tx_median, out[0].bare_rx_median = rays[0] / step + slope, rays[1] / step - slope
-    out[0].bare_tx_true_earth, out[0].bare_rx_true_earth = rays[3] / step + slope, rays[4] / step - slope
 
     # The ray meets the ground where the slope to the highest point exceeds that to the other antenna, eq. (78).
-    out[0].line_of_sight = not rays[0] > 0
-    nearest = _place(bare, tx_amsl, rx_amsl, median, root, back, True) if out[0].line_of_sight else 0
-    first = nearest if out[0].line_of_sight else _place(bare, tx_amsl, rx_amsl, median, root, root, False)
-    last = nearest if out[0].line_of_sight else _place(bare, tx_amsl, rx_amsl, median, back, back, True)
+    sees = not rays[0] > 0
+    nearest = _place(height, tx_amsl, rx_amsl, median, root, back, _BOTH, sees, n - 1)
+    first = nearest if sees else _place(height, tx_amsl, rx_amsl, median, root, back, _TRANSMITTER, False, n - 1)
+    last = nearest if sees else _place(height, tx_amsl, rx_amsl, median, root, back, _ROOF, True, n - 1)
+    out[0].line_of_sight = sees
     out[0].tx_horizon_km, out[0].rx_horizon_km = first * step, length_km - last * step
-    out[0].roughness_m = _roughness_m(bare, min(first, last), max(first, last), out[0].tx_fit_amsl_m, out[0].rx_fit_amsl_m)
-
-    if covered:
-        rays = _rays(surface, root, back, tx_amsl, rx_amsl, median, true_earth, beta0)
-    to_zone = math.sqrt(0.002 * length_km) / step
-    out[0].tx_median, out[0].rx_median = rays[0] / step + slope, rays[1] / step - slope
-    out[0].zone_median = rays[2] * to_zone
-    out[0].tx_true_earth, out[0].rx_true_earth = rays[3] / step + slope, rays[4] / step - slope
-    out[0].zone_true_earth = rays[5] * to_zone
-    out[0].tx_beta0, out[0].rx_beta0 = rays[6] / step + slope, rays[7] / step - slope
-    out[0].zone_beta0 = rays[8] * to_zone
-
-    sees = out[0].line_of_sight and not covered
-    worst = nearest if sees else _place(surface, tx_amsl, rx_amsl, median, root, back, False)
-    x = worst * step
+    out[0].roughness_m = _roughness_m(
+        height, min(first, last), max(first, last), out[0].tx_fit_amsl_m, out[0].rx_fit_amsl_m
+    )
+    x = nearest * step
     out[0].worst_km = x
-    out[0].worst_into_line_m = surface[worst] - (tx_amsl + slope * x) + bulges[0] * x * (length_km - x)
-    for e in range(edge_km.size):
-        _add_edge(length_km - edge_km[e], edge_amsl_m[e], length_km, tx_amsl, rx_amsl, bulges, out)
+    out[0].worst_into_line_m = height[nearest] - (tx_amsl + slope * x) + bulges[0] * x * (length_km - x)
 
 
 @compiled
@@ -154,20 +141,29 @@ def _rays(
 
 @compiled
 def _place(
-    height: Heights, tx_amsl: float, rx_amsl: float, bulge: float, one: Heights, other: Heights, last: bool
+    height: Heights,
+    tx_amsl: float,
+    rx_amsl: float,
+    bulge: float,
+    root: Heights,
+    back: Heights,
+    seen_from: int,
+    last: bool,
+    stop: int,
 ) -> int:
-    """Where (H + c i j) times both tables is largest; of equals the first or the last.
+    """Where one of the module's three lines is largest, from 1 to before `stop`; of equals the first or the last.
 
-    Both tables from the transmitter are eq. (13), both from the roof eq. (17), one of each eq. (15). A maximum
-    without its place is several times cheaper: so the best stretch is found first, then the point in it.
+    A maximum without its place is several times cheaper: so the best stretch is found first, then the point in it.
     """
+    one = back if seen_from == _ROOF else root
+    other = root if seen_from == _TRANSMITTER else back
     n = height.size
     stretch = 64
     start, rise = np.float32(tx_amsl), np.float32((rx_amsl - tx_amsl) / (n - 1))
     c = np.float32(bulge)
     best, best_first = np.float32(-3e38), 1
-    for first in range(1, n - 1, stretch):
-        size = min(stretch, n - 1 - first)
+    for first in range(1, stop, stretch):
+        size = min(stretch, stop - first)
         part, p, q = height[first : first + size], one[first : first + size], other[first : first + size]
         top = np.float32(-3e38)
         for k in range(size):
@@ -178,9 +174,9 @@ def _place(
 
     # A few points more on both sides: over a level sea, single precision may take the stretch beside the right one.
     place, largest = best_first, -1e300
-    for i in range(max(1, best_first - 8), min(best_first + stretch + 8, n - 1)):
+    for i in range(max(1, best_first - 8), min(best_first + stretch + 8, stop)):
         above = height[i] - (tx_amsl + (rx_amsl - tx_amsl) * i / (n - 1)) + bulge * i * (n - 1 - i)
-        value = above * one[i] * other[i]
+        value = above / (i if seen_from == _TRANSMITTER else n - 1 - i if seen_from == _ROOF else math.sqrt(i * (n - 1 - i)))
         if value > largest or (last and value == largest):
             place, largest = i, value
     return place
@@ -275,31 +271,34 @@ def _roughness_m(bare: Heights, first: int, last: int, tx_fit: float, rx_fit: fl
 
 
 @compiled
-def _add_edge(
-    x: float,
-    top_amsl: float,
+def ray_source(
+    surface: Heights,
+    beyond_km: float,
     length_km: float,
-    tx_amsl: float,
-    rx_amsl: float,
-    bulges: tuple[float, float, float],
-    out: NDArray[np.void],
-) -> None:
-    """Let one more point, off the equal steps, count among the surface's maxima."""
-    y = length_km - x
-    if not (x > 0 and y > 0):
-        return
-    line = (tx_amsl * y + rx_amsl * x) / length_km
-    from_tx, from_rx = (top_amsl - tx_amsl) / x, (top_amsl - rx_amsl) / y
-    root = math.sqrt(0.002 * length_km / (x * y))
-    zone = (top_amsl - line + bulges[0] * x * y) * root
-    if zone > out[0].zone_median:
-        out[0].worst_km, out[0].worst_into_line_m = x, top_amsl - line + bulges[0] * x * y
-    out[0].tx_median = max(out[0].tx_median, from_tx + bulges[0] * y)
-    out[0].rx_median = max(out[0].rx_median, from_rx + bulges[0] * x)
-    out[0].zone_median = max(out[0].zone_median, zone)
-    out[0].tx_true_earth = max(out[0].tx_true_earth, from_tx + bulges[1] * y)
-    out[0].rx_true_earth = max(out[0].rx_true_earth, from_rx + bulges[1] * x)
-    out[0].zone_true_earth = max(out[0].zone_true_earth, (top_amsl - line + bulges[1] * x * y) * root)
-    out[0].tx_beta0 = max(out[0].tx_beta0, from_tx + bulges[2] * y)
-    out[0].rx_beta0 = max(out[0].rx_beta0, from_rx + bulges[2] * x)
-    out[0].zone_beta0 = max(out[0].zone_beta0, (top_amsl - line + bulges[2] * x * y) * root)
+    antenna_agl_m: float,
+    aerial_agl_m: float,
+    bulge: float,
+    root: Heights,
+    back: Heights,
+) -> tuple[float, float]:
+    """Where the ray comes from that arrives at the aerial, seen past what stands nearer than `beyond_km`.
+
+    The antenna, or the highest of the surface in the aerial's eyes. Returns its distance from the roof [km],
+    negative where nothing stands farther away, and its slope from the horizontal at the aerial [m/km].
+    """
+    n = surface.size
+    step = length_km / (n - 1)
+    if length_km <= beyond_km:
+        return -1.0, 0.0
+    tx_amsl, rx_amsl = surface[0] + antenna_agl_m, surface[n - 1] + aerial_agl_m
+    away, steepest = length_km, (tx_amsl - rx_amsl) / length_km - bulge * length_km
+    stop = n - 1
+    while stop > 1 and (n - stop) * step <= beyond_km:
+        stop -= 1
+    if stop > 1:
+        i = _place(surface, tx_amsl, rx_amsl, bulge * step**2, root, back, _ROOF, False, stop)
+        y = (n - 1 - i) * step
+        slope = (surface[i] - rx_amsl) / y - bulge * y
+        if slope > steepest:
+            away, steepest = y, slope
+    return away, steepest

@@ -8,43 +8,75 @@ vector instructions, as memory is fetched at addresses that the first loop has y
 
 from __future__ import annotations
 
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
 from terrain.compiled import compiled, larger
+from terrain.sheet import Sheet
 
 KNOTS = 3  # new ones per segment; the fourth is the next segment's first
 
 
+class SheetArrays(NamedTuple):
+    """What compiled code takes of a sheet."""
+
+    samples: NDArray[Any]  # (rows * columns,) row by row
+    water: NDArray[np.bool_]  # (rows * columns,)
+    rows: int
+    columns: int
+    void: float  # missing samples are this or less
+    zero: float  # sample at 0 m
+    scale: float  # metres = sample × scale + offset_m
+    offset_m: float
+
+
+class Scratch(NamedTuple):
+    """Arrays for one thread, long enough for the longest profile."""
+
+    cell: NDArray[np.int64]  # index of each point's upper left corner
+    down: NDArray[np.float32]  # share of a cell below it
+    right: NDArray[np.float32]  # share to the right
+    corners: NDArray[np.float32]  # (4, ...)
+
+
+def sheet_arrays(sheet: Sheet) -> SheetArrays:
+    """Give the arrays of a sheet."""
+    rows, columns = sheet.samples.shape
+    return SheetArrays(
+        samples=sheet.samples.reshape(-1),
+        water=sheet.water.reshape(-1),
+        rows=rows,
+        columns=columns,
+        void=sheet.void,
+        zero=-sheet.offset_m / sheet.scale,
+        scale=float(sheet.scale),
+        offset_m=float(sheet.offset_m),
+    )
+
+
 @compiled
 def sample_heights(
-    samples: NDArray[Any],  # (rows * columns,) row by row
-    water: NDArray[np.bool_],  # (rows * columns,)
-    columns: int,
-    void: float,  # missing samples are this or less
-    zero: float,  # sample at 0 m
-    scale: float,  # metres = sample × scale + offset_m
-    offset_m: float,
+    sheet: SheetArrays,
     row: NDArray[np.float64],  # (3 segments + 1,) of the geodesic's knots
     column: NDArray[np.float64],
-    points: int,
-    cell: NDArray[np.int64],  # scratch, (points,) or longer: index of the upper left corner
-    down: NDArray[np.float32],  # scratch: share of a cell below it
-    right: NDArray[np.float32],  # scratch: share to the right
-    corners: NDArray[np.float32],  # scratch: (4, points)
-    height_m: NDArray[np.float32],  # result (points,)
-    wet: NDArray[np.bool_],  # result (points,), written only where the next result is true
+    scratch: Scratch,
+    height_m: NDArray[np.float32],  # result (n,)
+    wet: NDArray[np.bool_],  # result (n,), filled only where the second answer is true
 ) -> tuple[bool, bool]:
     """Fill heights and water at equal steps along a path; returns (every height is known, any water)."""
-    _where(row, column, columns, points, cell, down, right)
-    _fetch(samples, columns, points, cell, corners)
-    lowest, zeros = _blend(points, zero, scale, offset_m, down, right, corners, height_m)
-    if not lowest > void:
+    n = height_m.size
+    _where(row, column, sheet.columns, n, scratch.cell, scratch.down, scratch.right)
+    _fetch(sheet.samples, sheet.columns, n, scratch.cell, scratch.corners)
+    lowest, zeros = _blend(
+        n, sheet.zero, sheet.scale, sheet.offset_m, scratch.down, scratch.right, scratch.corners, height_m
+    )
+    if not lowest > sheet.void:
         return False, False
-    any_water = zeros > 0 and _find_water(water, columns, points, cell, down, right, wet)
-    return True, any_water
+    if zeros == 0:
+        return True, False
+    return True, _find_water(sheet.water, sheet.columns, n, scratch.cell, scratch.down, scratch.right, wet)
 
 
 @compiled
