@@ -63,8 +63,8 @@ def _p1546_is_lower(terms: Terms) -> str:
         - max(0.0, terms.diffraction_db),
         f"it takes {terms.clearance_angle_db:.0f} dB for ground that rises {terms.clearance_angle_deg:.1f}° before "
         f"the aerial, however high the antenna stands{sight}": terms.clearance_angle_db,
-        f"it takes {terms.surroundings_db:.0f} dB for the height of the aerial among what stands round it, where P.1812 "
-        f"takes {terms.near_edge_db:.0f} dB": terms.surroundings_db - terms.near_edge_db,
+        f"it takes {terms.surroundings_db:.0f} dB for the height of the aerial among what stands round it, where "
+        f"P.1812 takes {terms.near_edge_db:.0f} dB": terms.surroundings_db - terms.near_edge_db,
         f"in P.1812, scatter and layers in the air bring back {terms.brought_back_db:.0f} dB": terms.brought_back_db,
     }
     return max(causes, key=lambda cause: causes[cause])

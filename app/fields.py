@@ -132,9 +132,7 @@ def _answered(
     n0 = np.array([path.n0 for path in paths])
     times = (50.0, 1.0, min(50.0, 100.0 - availability_percent))
 
-    both = fields_of_methods(
-        digest, paths, roof.aerial_agl_m, frequency_mhz, plane, times, erp_kw, with_p1812=method != "p1546"
-    )
+    both = fields_of_methods(digest, paths, frequency_mhz, plane, times, erp_kw, with_p1812=method != "p1546")
     by_p1546, by_p1812 = both.p1546_dbuv_m, both.p1812_dbuv_m
     holds = ~np.isnan(by_p1812[0])
     at_50, at_1, in_state_b = np.where(holds, by_p1812, by_p1546)

@@ -42,7 +42,6 @@ class MethodFields:
 def fields_of_methods(
     digest: PathDigest,
     paths: Sequence[Path],
-    aerial_agl_m: float,
     frequency_mhz: FloatArray,
     plane: NDArray[np.str_],
     times_percent: Sequence[float],
@@ -55,7 +54,7 @@ def fields_of_methods(
     near_edge_db = knife_edge_loss_db(near / np.sqrt(wavelength_m(frequency_mhz)))
     # P.1546 has its own way with what surrounds an aerial; only an obstacle entered is an edge to it
     obstacle_db = np.where([path.p1546_surroundings_m > 0 for path in paths], 0.0, near_edge_db)
-    result = _p1546(digest, paths, aerial_agl_m, frequency_mhz, times, erp_kw)
+    result = _p1546(digest, paths, frequency_mhz, times, erp_kw)
     by_p1546 = result.field_dbuv_m - obstacle_db
 
     by_p1812 = np.full_like(by_p1546, np.nan)
@@ -101,7 +100,6 @@ def fields_of_methods(
 def _p1546(
     digest: PathDigest,
     paths: Sequence[Path],
-    aerial_agl_m: float,
     frequency_mhz: FloatArray,
     times_percent: FloatArray,
     erp_kw: FloatArray,
@@ -115,7 +113,7 @@ def _p1546(
         cold_sea_km=digest.sea_km,
         h1_source_height_m=digest.h1_source_height_m,
         tx_height_agl_m=np.array([path.antenna_agl_m for path in paths]),
-        rx_height_agl_m=aerial_agl_m,
+        rx_height_agl_m=np.array([path.aerial_agl_m for path in paths]),
         rx_environment=np.where(cover_m > 0, "urban", "rural"),
         rx_clutter_height_m=cover_m,
         tx_clearance_angle_deg=digest.tx_clearance_angle_deg,

@@ -84,7 +84,7 @@ def path_document(
     ratio = path.clearance_ratio(frequency_mhz)
     kind = path_kind(ratio, bool(digest.beyond_horizon))
     one, plane, carrier = stacked_digests([digest]), np.array([polarisation]), np.array([frequency_mhz])
-    both = fields_of_methods(one, [path], aerial_agl_m, carrier, plane, (50.0,), np.ones(1))
+    both = fields_of_methods(one, [path], carrier, plane, (50.0,), np.ones(1))
     difference = float(both.p1812_dbuv_m[0, 0] - both.p1546_dbuv_m[0, 0])
     return {
         "from": {"latitude_deg": start.latitude_deg, "longitude_deg": start.longitude_deg},

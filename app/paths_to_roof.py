@@ -44,6 +44,7 @@ class Path:
     profile: Profile
     surface_amsl_m: FloatArray  # (n,) what a ray meets, flattened near the roof; equal to the bare ground at both ends
     antenna_agl_m: float
+    aerial_agl_m: float
     digest: PathDigest
     terms: PathTerms | None  # for P.1812; None: outside its range
     p1812_refusal: str  # why, else empty
@@ -123,6 +124,7 @@ def path_over(
         profile=profile,
         surface_amsl_m=surface_amsl_m,
         antenna_agl_m=antenna_agl_m,
+        aerial_agl_m=roof.aerial_agl_m,
         digest=digest,
         terms=terms,
         p1812_refusal=refusal,

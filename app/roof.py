@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import Literal
 
-from app.errors import RoofError
+from app.errors import RequestError, RoofError
 
 Surroundings = Literal["open", "suburban", "urban", "trees"]
 SURROUNDINGS: tuple[Surroundings, ...] = ("open", "suburban", "urban", "trees")
@@ -59,10 +59,17 @@ class Roof:
             check(f"{place}.width_m", one.width_m, 0.5, FARTHEST_OBSTACLE_M, "m across")
 
 
-def check(name: str, value: float, lowest: float, highest: float, unit: str) -> None:
-    """Raise a RoofError unless value is a number from lowest to highest."""
+def check(
+    name: str,
+    value: float,
+    lowest: float,
+    highest: float,
+    unit: str,
+    kind: type[RequestError] = RoofError,
+) -> None:
+    """Raise an error of that kind unless value is a number from lowest to highest."""
     if not (math.isfinite(value) and lowest <= value <= highest):
-        raise RoofError(
+        raise kind(
             f"{name} {value:g} is not possible: use {lowest:g} to {highest:g} {unit}",
             field=name,
             allowed=f"{lowest:g} to {highest:g}",

@@ -151,13 +151,10 @@ class Ground:
         layer = int(self._answer(lat.ravel(), lon.ravel()).layer[0])
         return self._layers[layer].raster.grid.spacing_m if layer >= 0 else float("nan")
 
-    def answering(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[NDArray[np.str_], FloatArray]:
-        """Kind and spacing [m] of the raster that answers at each position; "" and NaN where none does."""
+    def answering(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.intp]:
+        """Number in `rasters` of the raster that answers at positions, -1 where none does."""
         lat, lon = _positions(latitude_deg, longitude_deg)
-        layer = self._answer(lat.ravel(), lon.ravel()).layer.reshape(lat.shape)
-        kinds = np.array([*(one.raster.kind for one in self._layers), ""])
-        spacing = np.array([*(one.raster.grid.spacing_m for one in self._layers), np.nan])
-        return kinds[layer], spacing[layer]
+        return self._answer(lat.ravel(), lon.ravel()).layer.reshape(lat.shape)
 
     def is_water(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.bool_]:
         """Whether the nearest sample belongs to a connected flat area at 0 m of at least 1 km².

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from terrain.errors import PathError
 from terrain.geodesy import distance_and_bearing, points_along
-from terrain.ground import bare_along_m
+from terrain.ground import bare_ground_m
 from terrain.mosaic import Ground
 from terrain.water import zones
 
@@ -21,6 +21,10 @@ FEWEST_POINTS = 5
 MOST_POINTS = 20_001
 # Where neither end stands on a raster there is no spacing to follow: about 3 arc-seconds.
 _SPACING_WITHOUT_RASTER_M = 90.0
+
+# Bare ground under a surface model is estimated this often: near both ends and between.
+NEAR_END_KM, NEAR_KNOT_KM = 0.25, 0.012
+KNOT_KM = 0.25
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,14 +81,49 @@ def sample_profile(
     return Profile(
         distance_km=distance_km,
         ground_amsl_m=height_m,
-        bare_amsl_m=bare_along_m(ground, distance_km, lat, lon, height_m),
-        kinds=tuple(sorted({str(kind) for kind in ground.answering(lat, lon)[0]} - {""})),
+        bare_amsl_m=_bare_along_m(ground, distance_km, lat, lon, height_m),
+        kinds=_kinds(ground, lat, lon),
         zone=zones(distance_km, height_m, water),
         latitude_deg=lat,
         longitude_deg=lon,
         spacing_m=1e3 * length_km / (points - 1),
         missing_share=float(np.isnan(height_m).mean()),
     )
+
+
+def _kinds(ground: Ground, lat: FloatArray, lon: FloatArray) -> tuple[str, ...]:
+    numbers, rasters = np.unique(ground.answering(lat, lon)), ground.rasters
+    return tuple(sorted({rasters[number].kind for number in numbers.tolist() if number >= 0}))
+
+
+def _bare_along_m(
+    ground: Ground, distance_km: FloatArray, lat: FloatArray, lon: FloatArray, surface_amsl_m: FloatArray
+) -> FloatArray:
+    """Bare ground along a path (n,), estimated at some of its points. [m]
+
+    Near both ends, where metres matter, the ground itself is interpolated between estimates; elsewhere what
+    stands on it, so that ridges stay where they are.
+    """
+    to_end_km = np.minimum(distance_km, distance_km[-1] - distance_km)
+    near = to_end_km <= NEAR_END_KM
+    wanted_km = np.concatenate(
+        [
+            np.arange(0.0, NEAR_END_KM, NEAR_KNOT_KM),
+            distance_km[-1] - np.arange(0.0, NEAR_END_KM, NEAR_KNOT_KM),
+            np.arange(0.0, distance_km[-1], KNOT_KM),
+        ]
+    )
+    nearest = np.clip(np.searchsorted(distance_km, wanted_km - 1e-9), 0, distance_km.size - 1)
+    knots = np.unique(np.append(nearest, np.flatnonzero(near)[[0, -1]]))
+    bare = bare_ground_m(ground, lat[knots], lon[knots])
+    known = np.isfinite(bare)
+    if not known.any():
+        return surface_amsl_m.copy()
+    at_km, bare = distance_km[knots[known]], bare[known]
+    cover_m = np.interp(distance_km, at_km, surface_amsl_m[knots[known]] - bare)
+    by_ground = np.interp(distance_km, at_km, bare)
+    result: FloatArray = np.where(near, np.minimum(by_ground, surface_amsl_m), surface_amsl_m - cover_m)
+    return result
 
 
 def _check(lat: float, lon: float, what: str) -> None:

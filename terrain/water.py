@@ -10,6 +10,9 @@ from scipy import ndimage
 # 1 km² is about 120 samples at 3 arc-seconds. Our choice.
 SMALLEST_WATER_KM2 = 1.0
 
+# Rec. ITU-R P.1812-7, section 3.2: other water counts as sea where it covers a circle of this diameter.
+LARGE_WATER_KM = 100.0
+
 # Coastal land lies below 100 m. Five millimetres less: on a flat of exactly 100 m the last digit of an
 # interpolation would decide.
 COASTAL_BELOW_M = 99.995
@@ -39,14 +42,16 @@ def zones(
 ) -> NDArray[np.int8]:
     """Zone of each point (n,) of a path: 1 sea, 3 coastal land, 4 inland.
 
-    Sea is what `water` says. Coastal land lies below 100 m and within 50 km of sea, here along the
-    path. Points without height count as inland.
+    Sea is what `water` says, and a lake that the path crosses for 100 km or more: ground of one and the same
+    height between higher shores. A large lake crossed by less of it stays land, as do all smaller ones. Coastal
+    land lies below 100 m and within 50 km of sea, here along the path. Points without height count as inland.
 
     References
     ----------
     Rec. ITU-R P.1812-7, Annex 1, section 3.2 (radio-climatic zones).
     """
     zone = np.full(distance_km.size, INLAND, dtype=np.int8)
+    water = water | _large_lakes(distance_km, ground_amsl_m)
     sea_km = distance_km[water]
     if sea_km.size == 0:
         return zone
@@ -59,3 +64,18 @@ def zones(
         zone[(to_sea_km <= 50) & (ground_amsl_m < COASTAL_BELOW_M)] = COASTAL_LAND
     zone[water] = SEA
     return zone
+
+
+def _large_lakes(distance_km: NDArray[np.float64], height_m: NDArray[np.float64]) -> NDArray[np.bool_]:
+    """Which points (n,) lie on ground that stays at one height for 100 km or more, between higher shores."""
+    level = np.zeros(height_m.size, dtype=bool)
+    if distance_km[-1] < LARGE_WATER_KM:
+        return level
+    borders = np.flatnonzero(np.diff(height_m) != 0) + 1  # NaN differs from everything
+    starts, ends = np.append(0, borders), np.append(borders, height_m.size) - 1
+    for start, end in zip(starts, ends, strict=True):
+        shores = [height_m[beside] for beside in (start - 1, end + 1) if 0 <= beside < height_m.size]
+        higher = bool(shores) and all(shore > height_m[start] for shore in shores)  # a level model is no lake
+        if higher and distance_km[end] - distance_km[start] >= LARGE_WATER_KM:
+            level[start : end + 1] = True
+    return level

@@ -229,3 +229,22 @@ def test_a_wrong_path_is_refused_at_its_field(client, change, field):
 def test_a_path_without_its_ends_says_what_is_missing(client):
     error = refused(client.get("/api/path"))
     assert error["message"] == "from_latitude_deg is missing: it is needed here"
+
+
+def test_skyline_answers_over_http(client):
+    answer = client.get("/api/skyline", params={"latitude_deg": 44.3, "longitude_deg": -37.4507, "reach_km": 30})
+    assert answer.status_code == 200
+    seen = answer.json()
+    assert len(seen["angle_deg"]) == 720
+    assert {"id", "stands", "above_horizon_deg", "horizon_km"} <= set(seen["transmitters"][0])
+    refused = client.get("/api/skyline", params={"latitude_deg": 44.3, "longitude_deg": -37.4507, "reach_km": 0})
+    assert refused.status_code == 422
+    assert refused.json()["error"]["field"] == "reach_km"
+
+
+def test_an_impossible_obstacle_names_its_field(client):
+    roof = {"latitude_deg": 44.3, "longitude_deg": -37.4507}
+    house = {"bearing_deg": 60.0, "distance_m": 30.0, "height_agl_m": 14.0, "width_m": -1.0}
+    answer = client.post("/api/assess", json={"roof": roof | {"obstacles": [house]}})
+    assert answer.status_code == 422
+    assert answer.json()["error"]["field"] == "roof.obstacles.0.width_m"

@@ -1,9 +1,11 @@
 import numpy as np
 import pytest
+from affine import Affine
 
 from terrain.errors import PathError
 from terrain.mosaic import Ground
 from terrain.profile import sample_profile
+from terrain.raster import declare
 from terrain.water import zones
 
 
@@ -95,3 +97,42 @@ def test_coastal_land_is_low_and_within_50_km_of_the_sea():
     assert zones(distance_km, height_m, water[::-1]).tolist() == [4, 4, 4, 4, 3, 4, 1]
     assert zones(distance_km, height_m, ~water | water)[1:].tolist() == [1] * 6
     assert zones(distance_km, height_m, water & ~water).tolist() == [4] * 7
+
+
+def test_a_lake_crossed_for_100_km_counts_as_sea_and_a_smaller_one_as_land():
+    """Rec. ITU-R P.1812-7, section 3.2, from memory: water that covers a circle of 100 km counts as sea."""
+    distance_km = np.linspace(0, 200, 201)
+    dry = np.zeros(201, dtype=bool)
+    for shore_km, sea_share in ((155, 101 / 201), (145, 0.0)):
+        height_m = np.where((distance_km >= 55) & (distance_km <= shore_km), 183.0, 183.5 + distance_km)
+        assert (zones(distance_km, height_m, dry) == 1).mean() == pytest.approx(sea_share)
+
+
+def test_a_level_plain_is_no_lake():
+    assert (zones(np.linspace(0, 200, 201), np.full(201, 120.0), np.zeros(201, dtype=bool)) == 4).all()
+
+
+def test_a_profile_says_which_kinds_of_raster_answered(write_raster, tmp_path, slope):
+    west, east = write_raster(slope(60, 60), "west.tif"), write_raster(slope(60, 60), "east.tif", west=8.06)
+    declare(west, kind="bare")
+    declare(east, kind="radar-surface")
+    ground = Ground.open([west, east], tmp_path / "cache")
+    assert sample_profile(ground, 46.97, 8.01, 46.97, 8.11).kinds == ("bare", "radar-surface")
+    assert sample_profile(ground, 46.97, 8.01, 46.95, 8.03).kinds == ("bare",)
+
+
+def test_a_path_over_houses_keeps_its_surface_and_gets_the_ground(write_raster, tmp_path):
+    """Houses of 8 m, 12 by 12 m in every 40 m, both ends between them: the ground is level at 200 m."""
+    heights = np.full((600, 600), 200.0)
+    for top in range(10, 590, 40):
+        for left in range(10, 590, 40):
+            heights[top : top + 12, left : left + 12] += 8
+    metre = 1 / 111_195  # of latitude, in degrees; at the equator of longitude, too
+    path = write_raster(heights.astype("float32"), transform=Affine(metre, 0, 8, 0, -metre, 0))
+    ground = Ground.open([path], tmp_path / "cache")
+    profile = sample_profile(ground, -100 * metre, 8 + 100 * metre, -500 * metre, 8 + 480 * metre)
+    assert profile.ground_amsl_m.max() == pytest.approx(208, abs=0.1)
+    near = np.minimum(profile.distance_km, profile.distance_km[-1] - profile.distance_km) <= 0.25
+    assert profile.bare_amsl_m[near] == pytest.approx(200, abs=0.3)
+    assert (profile.bare_amsl_m <= profile.ground_amsl_m).all()
+    assert profile.kinds == ("surface",)

@@ -9,6 +9,7 @@ from fastapi.responses import JSONResponse
 
 from app.path_query import path_document
 from app.planner import assess
+from app.skyline import skyline_document
 from app.web.context import ContextDep
 from app.web.schemas import AssessIn
 
@@ -57,6 +58,28 @@ async def path(
         antenna_agl_m,
         aerial_agl_m,
         polarisation,
+        context.settings.refractivity_maps,
+    )
+    return JSONResponse(document)
+
+
+@router.get("/skyline", summary="The horizon all round a roof, and which masts stand above or behind it")
+async def skyline(
+    latitude_deg: Number,
+    longitude_deg: Number,
+    context: ContextDep,
+    aerial_agl_m: Number = 10.0,
+    reach_km: Number = 60.0,
+) -> JSONResponse:
+    """Give angle and distance of the horizon for every half degree, and each mast in reach against it."""
+    document = await context.compute(
+        skyline_document,
+        context.ground,
+        context.store,
+        latitude_deg,
+        longitude_deg,
+        aerial_agl_m,
+        reach_km,
         context.settings.refractivity_maps,
     )
     return JSONResponse(document)
