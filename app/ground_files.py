@@ -25,10 +25,14 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
         terrain_dir().mkdir(parents=True, exist_ok=True)
         with tempfile.TemporaryDirectory(dir=terrain_dir(), prefix=".adding-") as folder:
             copy = Path(folder) / path.name
-            shutil.copyfile(path, copy)
-            if crs or kind:
-                declare(copy, crs=crs, kind=kind)
-            info = open_raster(copy)
+            for one in (path, *_companions(path)):
+                shutil.copyfile(one, Path(folder) / one.name)
+            try:
+                if crs or kind:
+                    declare(copy, crs=crs, kind=kind)
+                info = open_raster(copy)
+            except RasterError as error:
+                raise type(error)(str(error).replace(str(copy), str(path))) from error
             for one in sorted(Path(folder).iterdir()):
                 one.replace(target.parent / one.name)
     except OSError as error:
@@ -39,3 +43,10 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
         "spacing_m": round(info.grid.spacing_m, 1),
         "stored": str(target),
     }
+
+
+def _companions(path: Path) -> list[Path]:
+    """Files beside a raster that say where it lies: world file, projection, statistics, our own declaration."""
+    beside = [path.with_suffix(ending) for ending in (".prj", ".tfw", ".tifw", ".wld")]
+    beside += [path.with_name(path.name + ending) for ending in (".aux.xml", ".gainworth.toml")]
+    return [one for one in beside if one.is_file()]

@@ -23,9 +23,12 @@ class PathStory:
     into_line_m: float  # surface and Earth's curve above the straight ray there; negative: below it
     clearance_ratio: float
     sea_share: float
-    standing: Standing  # what the surface is there
+    standing: Standing  # what it is there
+    near: Standing  # what stands near the roof, "ground" for nothing
+    near_km: float  # its distance from the aerial
+    near_edge_db: float  # its loss
     bulge_m: float  # the Earth's curve there
-    diffraction_loss_db: float
+    diffraction_loss_db: float  # of the ground, without what stands near the roof
     curve_loss_db: float  # the part of it that the smooth Earth adds
     brought_back_db: float  # what scatter and ducts make good of it
 
@@ -61,36 +64,50 @@ def _line(story: PathStory) -> str:
 
 def _what(story: PathStory) -> str:
     """Name what stands in the line, with its verb."""
-    if story.standing == "obstacle":
-        return f"the obstacle {_length(story.worst_point_km)} from the aerial stands"
-    if story.standing == "surroundings":
-        return "what stands round the roof reaches"
+    if story.standing != "ground":
+        return f"{_near(story)} {'stands' if story.standing == 'obstacle' else 'reaches'}"
     if story.bulge_m >= story.into_line_m:
         return f"the Earth's curve lifts the ground at {_length(story.worst_point_km)}"
     return f"the ground at {_length(story.worst_point_km)} stands"
 
 
 def _under(story: PathStory) -> str:
-    if story.standing == "obstacle":
-        return f"the obstacle {_length(story.worst_point_km)} from the aerial"
-    if story.standing == "surroundings":
-        return "what stands round the roof"
+    if story.standing != "ground":
+        return _near(story)
     return f"the ground at {_length(story.worst_point_km)}"
 
 
 def _costs(story: PathStory) -> str:
     """Say what it costs, and what other ways of propagation make good of it."""
+    if story.standing != "ground":
+        told = f", which costs {story.near_edge_db:.0f} dB" if story.near_edge_db >= WORTH_TELLING_DB else ""
+        return told + _further("the ground on the way", story.diffraction_loss_db) + _brought_back(story)
+    near = _further(_near(story), story.near_edge_db)
     loss_db = story.diffraction_loss_db
     if loss_db < WORTH_TELLING_DB:
-        return ""
+        return near
     if story.kind == "clear" or story.into_line_m <= 0 < story.curve_loss_db:
         by = "the curve of the Earth" if story.curve_loss_db >= loss_db / 2 else "the ground below it"
         told = f"; {by} still takes {loss_db:.0f} dB"
     else:
         told = f", which costs {loss_db:.0f} dB"
-    if story.brought_back_db >= WORTH_TELLING_DB:
-        told += f"; scatter and layers in the air bring back {story.brought_back_db:.0f} dB"
-    return told
+    return told + _brought_back(story) + near
+
+
+def _further(what: str, loss_db: float) -> str:
+    return f"; {what} takes {loss_db:.0f} dB more" if loss_db >= WORTH_TELLING_DB else ""
+
+
+def _brought_back(story: PathStory) -> str:
+    if story.brought_back_db < WORTH_TELLING_DB:
+        return ""
+    return f"; scatter and layers in the air bring back {story.brought_back_db:.0f} dB"
+
+
+def _near(story: PathStory) -> str:
+    if story.near == "obstacle":
+        return f"the obstacle {_length(story.near_km)} from the aerial"
+    return "what stands round the roof"
 
 
 def _length(distance_km: float) -> str:

@@ -21,6 +21,7 @@ from terrain.mosaic import Ground
 from terrain.skyline import horizon, skyline
 
 SHORTEST_REACH_KM, LONGEST_REACH_KM = 1.0, 150.0
+MASTS_KM = 150.0  # the reach within which an answer looks for masts unless told otherwise
 
 
 def skyline_document(
@@ -65,7 +66,7 @@ def skyline_document(
         "angle_deg": [_number(value, 4) for value in seen.angle_deg.tolist()],
         "distance_km": [_number(value, 3) for value in seen.distance_km.tolist()],
         "missing_share": round(float(seen.missing_share.mean()), 4),
-        "transmitters": _masts(roof, store, ground, reach_km, refractivity_maps),
+        "transmitters": _masts(roof, store, ground, max(reach_km, MASTS_KM), refractivity_maps),
         "cautions": list(site.cautions),
     }
 

@@ -27,9 +27,10 @@ def story_of(
     length_km, into_line_m = float(digest.path_length_km), float(digest.obstacle_into_line_m)
     to_roof_km = length_km - float(digest.worst_point_km)
     standing: Standing = "ground"
+    near: Standing = path.edges[0].what if path.edges else "ground"
+    near_km = path.edges[0].from_roof_km if path.edges else 0.0
     if path.edges and path.clearance_ratio(frequency_mhz) < float(digest.clearance_ratio(frequency_mhz)):
-        worst = path.edges[0]
-        to_roof_km, into_line_m, standing = worst.from_roof_km, worst.into_ray_m, worst.what
+        to_roof_km, into_line_m, standing = near_km, path.edges[0].into_ray_m, near
     brought_back = float(both.brought_back_db[e])
     if math.isnan(both.diffraction_db[e]):
         brought_back = float(both.p1546_scatter_db[e])
@@ -41,8 +42,11 @@ def story_of(
         clearance_ratio=path.clearance_ratio(frequency_mhz),
         sea_share=float(digest.sea_km) / length_km,
         standing=standing,
+        near=near,
+        near_km=near_km,
+        near_edge_db=float(both.near_edge_db[e]),
         bulge_m=500 * (length_km - to_roof_km) * to_roof_km / float(digest.effective_earth_radius_km),
-        diffraction_loss_db=float(diffraction.loss_db[e] + both.near_edge_db[e]),
+        diffraction_loss_db=float(diffraction.loss_db[e]),
         curve_loss_db=float(diffraction.loss_db[e] - diffraction.actual_db[e]),
         brought_back_db=brought_back,
     )

@@ -32,6 +32,7 @@ PADS: tuple[Pad, ...] = ("none", "minimum-loss", "series-25", "own")
 RAW_UNCERTAINTY = 0.02  # of the raw reflection, a hand-held analyser after calibration; common practice, no source
 RAW_ROUNDING = 1e-4  # a total reflection written with few digits
 LARGEST_REFLECTION = 1.05  # after removal; more is no passive aerial but a wrong pad or calibration
+LEAST_REFLECTION = 1e-3  # 60 dB: less no analyser tells, and a text needs a number
 TOTAL_REFLECTION = 0.999  # 27 dB of mismatch: as much as a loss in a ledger makes sense
 
 
@@ -273,13 +274,16 @@ def _channel(match: Match, name: str, centre_mhz: float, bandwidth_mhz: float) -
         float(np.interp(points, f, values).max())
         for values in (match.magnitude, match.highest, match.lowest, match.floor)
     )
+    worst_db, low_db, high_db, floor_db = (
+        float(return_loss_db(np.clip(value, LEAST_REFLECTION, 1))) + 0.0 for value in (magnitude, bad, good, floor)
+    )
     loss = mismatch_loss_db(np.array(match.pairs), np.linspace(low, high, 33))
     return ChannelMatch(
         channel=name,
         vswr=float(vswr(min(magnitude, TOTAL_REFLECTION))),
-        return_loss_db=float(return_loss_db(min(magnitude, 1.0))) + 0.0,
-        return_loss_low_db=float(return_loss_db(min(bad, 1.0))) + 0.0,
-        return_loss_high_db=float(return_loss_db(max(good, 1e-6))),
-        floor_db=float(return_loss_db(min(floor, 1.0))),
+        return_loss_db=worst_db,
+        return_loss_low_db=low_db,
+        return_loss_high_db=high_db,
+        floor_db=floor_db,
         mismatch_loss_db=float(-10 * np.log10(np.mean(10 ** (-loss / 10)))) + 0.0,
     )

@@ -139,9 +139,9 @@ def test_loss_beyond_the_sweep_is_not_known():
 def test_better_match_never_loses_more(one, turn_one, other, turn_other):
     losses = [
         float(mismatch_loss_db(measured_match(Measurement(sweep(m * np.exp(1j * t), 75), "behind-pad")).pairs, 600))
-        for m, t in ((one, turn_one), (other, turn_other))
+        for m, t in ((min(one, other), turn_one), (max(one, other), turn_other))
     ]
-    assert (losses[0] <= losses[1] + 1e-12) == (one <= other + 1e-9)
+    assert losses[0] <= losses[1] + 1e-12
 
 
 def test_match_says_that_it_is_not_gain():

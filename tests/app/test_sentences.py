@@ -14,6 +14,9 @@ CLEAR = PathStory(
     clearance_ratio=1.2,
     sea_share=0.0,
     standing="ground",
+    near="ground",
+    near_km=0.0,
+    near_edge_db=0.0,
     bulge_m=8.0,
     diffraction_loss_db=0.0,
     curve_loss_db=0.0,
@@ -106,11 +109,13 @@ def test_clear_line_on_which_the_smooth_earth_costs_says_so():
 
 
 def test_house_in_front_is_not_called_ground():
-    story = replace(BLOCKED, worst_point_km=0.03, into_line_m=5.0, bulge_m=0.0)
-    near = path_sentence(replace(story, standing="obstacle"))
-    assert "blocked: the obstacle 30 m from the aerial stands 5 m into the line" in near
+    story = replace(
+        BLOCKED, worst_point_km=0.03, near_km=0.03, into_line_m=5.0, bulge_m=0.0, diffraction_loss_db=0, near_edge_db=18
+    )
+    near = path_sentence(replace(story, standing="obstacle", near="obstacle"))
+    assert near.endswith("blocked: the obstacle 30 m from the aerial stands 5 m into the line, which costs 18 dB.")
     assert "blocked: what stands round the roof reaches 5 m into" in path_sentence(
-        replace(story, standing="surroundings")
+        replace(story, standing="surroundings", near="surroundings")
     )
 
 
@@ -123,3 +128,12 @@ def test_small_terms_are_left_out():
     told = path_sentence(replace(BLOCKED, brought_back_db=0.5))
     assert "scatter" not in told
     assert "curve" not in path_sentence(replace(CLEAR, diffraction_loss_db=1.0, curve_loss_db=1.0))
+
+
+def test_a_hill_is_not_charged_with_the_house_before_the_aerial():
+    told = path_sentence(replace(BLOCKED, near="obstacle", near_km=0.02, near_edge_db=20.4))
+    assert told.endswith("which costs 20 dB; the obstacle 20 m from the aerial takes 20 dB more.")
+    house = replace(BLOCKED, standing="obstacle", near="obstacle", near_km=0.02, near_edge_db=31, into_line_m=9)
+    assert path_sentence(house).endswith(
+        "9 m into the line, which costs 31 dB; the ground on the way takes 20 dB more."
+    )
