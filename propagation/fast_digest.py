@@ -32,7 +32,7 @@ from terrain.sheet import Sheet
 FloatArray = NDArray[np.float64]
 Each = Callable[[Callable[[slice], None], Iterable[slice]], Any]  # such as `map`, or that of a pool of threads
 
-CHUNK = 4096  # paths that one thread takes at a time
+CHUNK = 4096  # most paths that one thread takes at a time
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,6 +58,7 @@ class Digests:
     terms: PathTerms
     delta_n_per_km: FloatArray
     n0: FloatArray
+    first_edge: NDArray[np.int64]  # (p + 1,) into the next two
     source_km: FloatArray  # (e,) where the ray past each edge comes from, from the roof; negative: nothing is farther
     source_slope: FloatArray  # (e,) from the horizontal at the aerial [m/km]
 
@@ -68,11 +69,12 @@ def digests(
     spacing_m: float | None = None,
     maps_folder: Path | None = None,
     each: Each = map,
+    parts: int = 1,
 ) -> Digests:
     """Digest paths (p,) over a sheet.
 
     Spacing as for `terrain.profile.sample_profile`, `maps_folder` as for `refractivity`. With `each` the map of a
-    pool of threads, chunks of paths are scanned at the same time.
+    pool of threads, at least `parts` of the paths are scanned at the same time.
 
     References
     ----------
@@ -113,7 +115,8 @@ def digests(
             sources,
         )
 
-    list(each(scan, [slice(first, min(first + CHUNK, paths)) for first in range(0, paths, CHUNK)]))
+    size = max(1, min(CHUNK, -(-paths // parts)))
+    list(each(scan, [slice(first, min(first + size, paths)) for first in range(0, paths, size)]))
     return _closed(scans, ends, length, points, lapse, n0, sources)
 
 
@@ -158,6 +161,7 @@ def _closed(
         _terms(s, ends, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
         lapse,
         n0,
+        ends.first_edge,
         *sources,
     )
 

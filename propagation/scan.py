@@ -84,7 +84,11 @@ def scan_profile(
     _ground(height, length_km, tx_amsl, rx_amsl, out)
     rays = _rays(height, root, back, tx_amsl, rx_amsl, median, bulges[1] * step**2, bulges[2] * step**2)
     to_nu = math.sqrt(0.002 * length_km) / step
-    out[0].tx_median, out[0].rx_median, out[0].nu_median = rays[0] / step + slope, rays[1] / step - slope, rays[2] * to_nu
+    out[0].tx_median, out[0].rx_median, out[0].nu_median = (
+        rays[0] / step + slope,
+        rays[1] / step - slope,
+        rays[2] * to_nu,
+    )
     out[0].tx_true_earth, out[0].rx_true_earth = rays[3] / step + slope, rays[4] / step - slope
     out[0].nu_true_earth = rays[5] * to_nu
     out[0].tx_beta0, out[0].rx_beta0, out[0].nu_beta0 = rays[6] / step + slope, rays[7] / step - slope, rays[8] * to_nu
@@ -176,7 +180,9 @@ def _place(
     place, largest = best_first, -1e300
     for i in range(max(1, best_first - 8), min(best_first + stretch + 8, stop)):
         above = height[i] - (tx_amsl + (rx_amsl - tx_amsl) * i / (n - 1)) + bulge * i * (n - 1 - i)
-        value = above / (i if seen_from == _TRANSMITTER else n - 1 - i if seen_from == _ROOF else math.sqrt(i * (n - 1 - i)))
+        value = above / (
+            i if seen_from == _TRANSMITTER else n - 1 - i if seen_from == _ROOF else math.sqrt(i * (n - 1 - i))
+        )
         if value > largest or (last and value == largest):
             place, largest = i, value
     return place

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from propagation.constants import EARTH_RADIUS_KM
 from propagation.p1812.path import BETA0_EARTH_RADIUS_KM
 from propagation.scan import MOST_POINTS, ray_source, scan_profile
-from propagation.scan_zones import all_inland, zone_lengths
+from propagation.scan_zones import all_inland, mark_lakes, zone_lengths
 from terrain.compiled import compiled
 from terrain.kernels import Scratch, SheetArrays, inside, sample_heights
 
@@ -42,7 +42,10 @@ def scan_lines(
     """Scan paths one after the other; those over a gap of the sheet stay unknown."""
     most = points.max()
     scratch = Scratch(
-        np.empty(most, np.int64), np.empty(most, np.float32), np.empty(most, np.float32), np.empty((4, most), np.float32)
+        np.empty(most, np.int64),
+        np.empty(most, np.float32),
+        np.empty(most, np.float32),
+        np.empty((4, most), np.float32),
     )
     wet, inland = np.empty(most, np.bool_), np.empty(most, np.bool_)
     profile = np.empty(most, np.float32)
@@ -56,7 +59,9 @@ def scan_lines(
         if not known:
             continue
         out = scans[p : p + 1]
-        if any_water:
+        if not any_water:
+            wet[:n] = False
+        if mark_lakes(height, length_km[p], wet[:n]) or any_water:
             zone_lengths(wet[:n], height, inland, length_km[p], out)
         else:
             all_inland(length_km[p], out)
@@ -74,5 +79,12 @@ def scan_lines(
         )
         for e in range(first_edge[p], first_edge[p + 1]):
             sources[0, e], sources[1, e] = ray_source(
-                height, edge_km[e], length_km[p], antenna_agl_m[p], aerial_agl_m[p], bulge[p], root[:n], back[MOST_POINTS - n :]
+                height,
+                edge_km[e],
+                length_km[p],
+                antenna_agl_m[p],
+                aerial_agl_m[p],
+                bulge[p],
+                root[:n],
+                back[MOST_POINTS - n :],
             )

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from terrain.compiled import compiled
-from terrain.water import COASTAL_BELOW_M
+from terrain.water import COASTAL_BELOW_M, LARGE_WATER_KM
 
 COASTAL_WITHIN_KM = 50.0
 
@@ -21,6 +21,36 @@ def all_inland(length_km: float, out: NDArray[np.void]) -> None:
     out[0].longest_land_km = out[0].longest_inland_km = length_km
     out[0].tx_coast_km = out[0].rx_coast_km = -1.0
     out[0].rx_at_sea = False
+
+
+@compiled
+def mark_lakes(height_m: NDArray[np.float32], length_km: float, wet: NDArray[np.bool_]) -> bool:
+    """Mark ground that stays level for 100 km between higher shores as water; whether there is any.
+
+    `terrain.water.zones` has the rule.
+    """
+    n = height_m.size
+    step = length_km / (n - 1)
+    if length_km < LARGE_WATER_KM:
+        return False
+    level = np.int32(0)
+    for i in range(n - 1):
+        level += np.int32(height_m[i] == height_m[i + 1])
+    if level * step < LARGE_WATER_KM:
+        return False
+    found = False
+    first = 0
+    for i in range(1, n + 1):
+        if i < n and height_m[i] == height_m[first]:
+            continue
+        shore_before = first == 0 or height_m[first - 1] > height_m[first]
+        shore_after = i == n or height_m[i] > height_m[first]
+        whole = first == 0 and i == n
+        if (i - 1 - first) * step >= LARGE_WATER_KM and shore_before and shore_after and not whole:
+            wet[first:i] = True
+            found = True
+        first = i
+    return found
 
 
 @compiled

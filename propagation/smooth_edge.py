@@ -18,7 +18,11 @@ FloatArray = NDArray[np.float64]
 
 @compiled
 def smooth_rays(
-    tx_over_m: FloatArray, rx_over_m: FloatArray, length_km: FloatArray, points: NDArray[np.int64], radius_km: FloatArray
+    tx_over_m: FloatArray,
+    rx_over_m: FloatArray,
+    length_km: FloatArray,
+    points: NDArray[np.int64],
+    radius_km: FloatArray,
 ) -> FloatArray:
     """Slopes from both ends [m/km], eqs. (13) and (17), and largest nu [m^0.5], eq. (15), of smooth Earths. (3, p)"""
     rays = np.empty((3, length_km.size))

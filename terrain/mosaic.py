@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 
 import numpy as np
@@ -109,7 +110,7 @@ class Ground:
             )
         return tuple(infos)
 
-    @property
+    @cached_property
     def version(self) -> str:
         """Short hash that changes with any raster, its place or its kind."""
         digest = hashlib.sha256()

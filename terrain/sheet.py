@@ -141,9 +141,7 @@ def _sheet(group: list[int], layers: Sequence[tuple[Raster, Blocks]], cache: Arr
     covered = sum((box[2] - box[0] + 1) * (box[3] - box[1] + 1) for box in boxes)
     if rows * columns > min(MOST_SAMPLES, _MOST_EMPTY * covered):
         return None
-    tiles = tuple(
-        Tile(*layers[number], box[0] - top, box[1] - left) for number, box in zip(group, boxes, strict=True)
-    )
+    tiles = tuple(Tile(*layers[number], box[0] - top, box[1] - left) for number, box in zip(group, boxes, strict=True))
     transform = first.grid.transform * Affine.translation(left, top)
     # The ring may reach beyond a pole or a whole turn, where no raster could stand: only `index` is used of it.
     grid = first.grid.shifted(rows, columns, transform)
