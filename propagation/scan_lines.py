@@ -47,7 +47,7 @@ def scan_lines(
         np.empty(most, np.float32),
         np.empty((4, most), np.float32),
     )
-    wet, inland = np.empty(most, np.bool_), np.empty(most, np.bool_)
+    wet = np.empty(most, np.bool_)
     profile = np.empty(most, np.float32)
     for p in range(points.size):
         n = points[p]
@@ -62,7 +62,7 @@ def scan_lines(
         if not any_water:
             wet[:n] = False
         if mark_lakes(height, length_km[p], wet[:n]) or any_water:
-            zone_lengths(wet[:n], height, inland, length_km[p], out)
+            zone_lengths(wet[:n], height, length_km[p], out)
         else:
             all_inland(length_km[p], out)
 

@@ -57,37 +57,58 @@ def mark_lakes(height_m: NDArray[np.float32], length_km: float, wet: NDArray[np.
 def zone_lengths(
     wet: NDArray[np.bool_],  # (n,)
     height_m: NDArray[np.float32],  # (n,) as sampled
-    inland: NDArray[np.bool_],  # scratch (n,)
     length_km: float,
     out: NDArray[np.void],  # (1,) of SCAN
 ) -> None:
-    """Fill in a path with water. A point stands for half of the interval on either side of it."""
+    """Fill in a path with water, one stretch of land after the other.
+
+    A point stands for half of the interval on either side of it.
+    """
     n = wet.size
     step = length_km / (n - 1)
-    reach = COASTAL_WITHIN_KM / step
-
-    water = -n  # number of the nearest water before the point
-    for i in range(n):
-        if wet[i]:
-            water = i
-        inland[i] = not wet[i] and (i - water > reach or not height_m[i] < np.float32(COASTAL_BELOW_M))
+    reach = int(COASTAL_WITHIN_KM / step)  # points from the water that may be coastal
     first_water = last_water = -1
-    water = 2 * n  # and after it
-    for i in range(n - 1, -1, -1):
+    land = longest_land = longest_inland = 0.0
+    i = 0
+    while i < n:
         if wet[i]:
-            water = first_water = i
-            last_water = max(last_water, i)
-        elif water - i <= reach and height_m[i] < np.float32(COASTAL_BELOW_M):
-            inland[i] = False
-
-    sea = land_run = inland_run = longest_land = longest_inland = 0.0
-    for i in range(n):
-        share = 0.5 if i == 0 or i == n - 1 else 1.0
-        sea += share if wet[i] else 0.0
-        land_run = 0.0 if wet[i] else land_run + share
-        inland_run = inland_run + share if inland[i] else 0.0
-        longest_land, longest_inland = max(longest_land, land_run), max(longest_inland, inland_run)
-    out[0].sea_km = sea * step
+            first_water = i if first_water < 0 else first_water
+            last_water = i
+            i += 1
+            continue
+        start = i
+        while i < n and not wet[i]:
+            i += 1
+        stretch = _points(start, i, n)
+        land += stretch
+        longest_land = max(longest_land, stretch)
+        near_before = start + reach if start > 0 else 0  # coastal is only what lies before this
+        near_after = i - reach if i < n else n  # or from this on
+        longest_inland = max(longest_inland, _longest_inland(height_m, start, i, near_before, near_after))
+    out[0].sea_km = (n - 1 - land) * step
     out[0].longest_land_km, out[0].longest_inland_km = longest_land * step, longest_inland * step
     out[0].tx_coast_km, out[0].rx_coast_km = first_water * step, (n - 1 - last_water) * step
     out[0].rx_at_sea = wet[n - 1]
+
+
+@compiled
+def _longest_inland(
+    height_m: NDArray[np.float32], start: int, stop: int, near_before: int, near_after: int
+) -> float:
+    """Longest run of a stretch of land that is not coastal, in points."""
+    low = np.float32(COASTAL_BELOW_M)
+    longest = 0.0
+    run = start
+    for i in range(start, stop):
+        if height_m[i] < low and (i < near_before or i >= near_after):
+            longest = max(longest, _points(run, i, height_m.size))
+            run = i + 1
+    return max(longest, _points(run, stop, height_m.size))
+
+
+@compiled
+def _points(start: int, stop: int, n: int) -> float:
+    """Points from `start` to before `stop`; those at both ends of the path count half."""
+    if stop <= start:
+        return 0.0
+    return stop - start - 0.5 * (start == 0) - 0.5 * (stop == n)

@@ -76,7 +76,9 @@ def sample_heights(
         return False, False
     if zeros == 0:
         return True, False
-    return True, _find_water(sheet.water, sheet.columns, n, scratch.cell, scratch.down, scratch.right, wet)
+    return True, _find_water(
+        sheet.water, sheet.columns, n, sheet.zero, scratch.cell, scratch.down, scratch.right, scratch.corners, wet
+    )
 
 
 @compiled
@@ -189,17 +191,37 @@ def _find_water(
     water: NDArray[np.bool_],
     columns: int,
     points: int,
+    zero: float,
     cell: NDArray[np.int64],
     down: NDArray[np.float32],
     right: NDArray[np.float32],
+    corners: NDArray[np.float32],
     wet: NDArray[np.bool_],
 ) -> bool:
     """Whether each point's nearest sample is water; only paths that meet 0 m come here."""
     found = False
     half = np.float32(0.5)
-    for i in range(points):
-        at = cell[i] + np.int64(down[i] > half) * columns + np.int64(right[i] > half)
-        here = water[np.uint64(at)]
-        wet[i] = here
-        found |= here
+    stretch = 64
+    for first in range(0, points, stretch):
+        last = min(first + stretch, points)
+        if not _touches(corners, zero, first, last):
+            wet[first:last] = False
+            continue
+        for i in range(first, last):
+            at = cell[i] + np.int64(down[i] > half) * columns + np.int64(right[i] > half)
+            here = water[np.uint64(at)]
+            wet[i] = here
+            found |= here
     return found
+
+
+@compiled
+def _touches(corners: NDArray[np.float32], zero: float, first: int, last: int) -> bool:
+    """Whether any corner of a stretch is at 0 m."""
+    at_zero = np.float32(zero)
+    count = np.int32(0)
+    for corner in range(4):
+        part = corners[corner, first:last]
+        for k in range(part.size):
+            count += np.int32(part[k] == at_zero)
+    return count > 0
