@@ -76,7 +76,7 @@ def warm_up_in_background(ground: Ground) -> threading.Thread:
 
 def warm_up(ground: Ground) -> bool:
     """Lay the ground's rasters together and compile; false, with a line in the log, where that is not possible."""
-    _keep_machine_code()
+    keep_machine_code()
     try:
         from propagation.fast_digest import digests
 
@@ -163,7 +163,7 @@ def _is_bare(sheet: Sheet) -> bool:
     return sheet.kind == "bare" or all(tile.raster.grid.spacing_m > COARSEST_M for tile in sheet.tiles)
 
 
-def _keep_machine_code() -> None:
+def keep_machine_code() -> None:
     """Name a folder for compiled code before numba is imported: ours, or a temporary one where that is read-only."""
     if "NUMBA_CACHE_DIR" in os.environ:
         return

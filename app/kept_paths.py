@@ -62,5 +62,11 @@ class KeptPaths:
                 _paths.popitem(last=False)
 
 
+def forget() -> None:
+    """Keep nothing of what was asked for."""
+    with _lock:
+        _paths.clear()
+
+
 def _mast(key: PathKey) -> tuple[float, float, float]:
     return key.transmitter.latitude_deg, key.transmitter.longitude_deg, key.antenna_agl_m

@@ -169,7 +169,8 @@ def _closed(
 def _smooth_edge(
     tx_over: FloatArray, rx_over: FloatArray, d: FloatArray, points: NDArray[np.int64], radius: FloatArray
 ) -> FloatArray:
-    return bullington_edge_of_rays(*smooth_rays(tx_over, rx_over, d, points, radius), d, tx_over, rx_over)
+    steepest, steepest_back, clear = smooth_rays(tx_over, rx_over, d, points, radius)
+    return bullington_edge_of_rays(steepest, steepest_back, clear, d, tx_over, rx_over)
 
 
 def _horizon_rays_mrad(

@@ -23,6 +23,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from terrain.compiled import compiled, compiled_as_written, larger
+from terrain.kernels import Scratch, SheetArrays, height_at
 
 Heights = NDArray[np.float32]
 
@@ -65,6 +66,8 @@ SCAN = np.dtype(
 
 @compiled
 def scan_profile(
+    sheet: SheetArrays,
+    scratch: Scratch,  # as `sample_heights` left it
     height: Heights,  # (n,) bare ground
     length_km: float,
     antenna_agl_m: float,
@@ -97,9 +100,11 @@ def scan_profile(
 
     # The ray meets the ground where the slope to the highest point exceeds that to the other antenna, eq. (78).
     sees = not rays[0] > 0
-    nearest = _place(height, tx_amsl, rx_amsl, median, root, back, _BOTH, sees, n - 1)
-    first = nearest if sees else _place(height, tx_amsl, rx_amsl, median, root, back, _TRANSMITTER, False, n - 1)
-    last = nearest if sees else _place(height, tx_amsl, rx_amsl, median, root, back, _ROOF, True, n - 1)
+    nearest = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _BOTH, sees, n - 1)
+    first = last = nearest
+    if not sees:
+        first = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _TRANSMITTER, False, n - 1)
+        last = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _ROOF, True, n - 1)
     out[0].line_of_sight = sees
     out[0].tx_horizon_km, out[0].rx_horizon_km = first * step, length_km - last * step
     out[0].roughness_m = _roughness_m(
@@ -120,31 +125,33 @@ def _rays(
     bulge_0: float,
     bulge_1: float,
     bulge_2: float,
-) -> tuple[float, float, float, float, float, float, float, float, float, float, float, float]:
+) -> tuple[np.float32, ...]:
     """Largest of the module's three lines at each of three bulges, then of H, H / i and H / j."""
     n = height.size
     inner, inner_root, inner_back = height[1 : n - 1], root[1 : n - 1], back[1 : n - 1]
     start, rise = np.float32(tx_amsl), np.float32((rx_amsl - tx_amsl) / (n - 1))
     c0, c1, c2 = np.float32(bulge_0), np.float32(bulge_1), np.float32(bulge_2)
     least = np.float32(-3e38)
-    tx0 = tx1 = tx2 = rx0 = rx1 = rx2 = zone0 = zone1 = zone2 = over = over_tx = over_rx = least
+    tx0 = tx1 = tx2 = rx0 = rx1 = rx2 = nu0 = nu1 = nu2 = over = over_tx = over_rx = least
     for k in range(n - 2):
         i, j = np.float32(np.int32(k + 1)), np.float32(np.int32(n - 2 - k))
         p, q = inner_root[k], inner_back[k]
         above = inner[k] - (start + rise * i)
-        from_tx, from_rx, in_zone, bulge_in_zone = above * p * p, above * q * q, above * p * q, i * p * j * q
+        from_tx, from_rx, in_nu, bulge_in_nu = above * p * p, above * q * q, above * p * q, i * p * j * q
         over, over_tx, over_rx = larger(over, above), larger(over_tx, from_tx), larger(over_rx, from_rx)
         tx0, rx0 = larger(tx0, from_tx + c0 * j), larger(rx0, from_rx + c0 * i)
         tx1, rx1 = larger(tx1, from_tx + c1 * j), larger(rx1, from_rx + c1 * i)
         tx2, rx2 = larger(tx2, from_tx + c2 * j), larger(rx2, from_rx + c2 * i)
-        zone0 = larger(zone0, in_zone + c0 * bulge_in_zone)
-        zone1 = larger(zone1, in_zone + c1 * bulge_in_zone)
-        zone2 = larger(zone2, in_zone + c2 * bulge_in_zone)
-    return tx0, rx0, zone0, tx1, rx1, zone1, tx2, rx2, zone2, over, over_tx, over_rx
+        nu0 = larger(nu0, in_nu + c0 * bulge_in_nu)
+        nu1 = larger(nu1, in_nu + c1 * bulge_in_nu)
+        nu2 = larger(nu2, in_nu + c2 * bulge_in_nu)
+    return tx0, rx0, nu0, tx1, rx1, nu1, tx2, rx2, nu2, over, over_tx, over_rx
 
 
 @compiled
 def _place(
+    sheet: SheetArrays,
+    scratch: Scratch,
     height: Heights,
     tx_amsl: float,
     rx_amsl: float,
@@ -176,15 +183,21 @@ def _place(
         if top > best or (last and top == best):
             best, best_first = top, first
 
-    # A few points more on both sides: over a level sea, single precision may take the stretch beside the right one.
+    # In double precision: where two points are equal but for a millimetre, the horizon must not jump between them.
+    # A few points more on both sides, as single precision may have taken the stretch beside the right one.
     place, largest = best_first, -1e300
-    for i in range(max(1, best_first - 8), min(best_first + stretch + 8, stop)):
-        above = height[i] - (tx_amsl + (rx_amsl - tx_amsl) * i / (n - 1)) + bulge * i * (n - 1 - i)
-        value = above / (
-            i if seen_from == _TRANSMITTER else n - 1 - i if seen_from == _ROOF else math.sqrt(i * (n - 1 - i))
-        )
+    for number in range(max(1, best_first - 8), min(best_first + stretch + 8, stop)):
+        back_number = n - 1 - number
+        line = tx_amsl + (rx_amsl - tx_amsl) * number / (n - 1)
+        above = height_at(sheet, scratch, number) - line + bulge * number * back_number
+        if seen_from == _TRANSMITTER:
+            value = above / number
+        elif seen_from == _ROOF:
+            value = above / back_number
+        else:
+            value = above / math.sqrt(number * back_number)
         if value > largest or (last and value == largest):
-            place, largest = i, value
+            place, largest = number, value
     return place
 
 
@@ -278,6 +291,8 @@ def _roughness_m(bare: Heights, first: int, last: int, tx_fit: float, rx_fit: fl
 
 @compiled
 def ray_source(
+    sheet: SheetArrays,
+    scratch: Scratch,
     surface: Heights,
     beyond_km: float,
     length_km: float,
@@ -302,7 +317,7 @@ def ray_source(
     while stop > 1 and (n - stop) * step <= beyond_km:
         stop -= 1
     if stop > 1:
-        i = _place(surface, tx_amsl, rx_amsl, bulge * step**2, root, back, _ROOF, False, stop)
+        i = _place(sheet, scratch, surface, tx_amsl, rx_amsl, bulge * step**2, root, back, _ROOF, False, stop)
         y = (n - 1 - i) * step
         slope = (surface[i] - rx_amsl) / y - bulge * y
         if slope > steepest:

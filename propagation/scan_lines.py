@@ -68,6 +68,8 @@ def scan_lines(
 
         out[0].known = True
         scan_profile(
+            sheet,
+            scratch,
             height,
             length_km[p],
             antenna_agl_m[p],
@@ -79,6 +81,8 @@ def scan_lines(
         )
         for e in range(first_edge[p], first_edge[p + 1]):
             sources[0, e], sources[1, e] = ray_source(
+                sheet,
+                scratch,
                 height,
                 edge_km[e],
                 length_km[p],

@@ -92,9 +92,7 @@ def zone_lengths(
 
 
 @compiled
-def _longest_inland(
-    height_m: NDArray[np.float32], start: int, stop: int, near_before: int, near_after: int
-) -> float:
+def _longest_inland(height_m: NDArray[np.float32], start: int, stop: int, near_before: int, near_after: int) -> float:
     """Longest run of a stretch of land that is not coastal, in points."""
     low = np.float32(COASTAL_BELOW_M)
     longest = 0.0

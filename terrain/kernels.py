@@ -82,6 +82,14 @@ def sample_heights(
 
 
 @compiled
+def height_at(sheet: SheetArrays, scratch: Scratch, i: int) -> float:
+    """Height of one point of the path sampled last, in double precision. [m]"""
+    top = scratch.corners[0, i] + np.float64(scratch.right[i]) * (scratch.corners[1, i] - scratch.corners[0, i])
+    low = scratch.corners[2, i] + np.float64(scratch.right[i]) * (scratch.corners[3, i] - scratch.corners[2, i])
+    return float((top + np.float64(scratch.down[i]) * (low - top)) * sheet.scale + sheet.offset_m)
+
+
+@compiled
 def inside(row: NDArray[np.float64], column: NDArray[np.float64], rows: int, columns: int) -> bool:
     """Whether the cubics through the knots stay between the array's first and last samples.
 
@@ -168,7 +176,7 @@ def _blend(
     right: NDArray[np.float32],
     corners: NDArray[np.float32],
     height_m: NDArray[np.float32],
-) -> tuple[float, int]:
+) -> tuple[np.float32, np.int32]:
     """Bilinear heights; returns the lowest corner and how many nearest samples are at 0 m."""
     top_left, top_right, low_left, low_right = corners[0], corners[1], corners[2], corners[3]
     at_zero, metres, base = np.float32(zero), np.float32(scale), np.float32(offset_m)
@@ -224,4 +232,4 @@ def _touches(corners: NDArray[np.float32], zero: float, first: int, last: int) -
         part = corners[corner, first:last]
         for k in range(part.size):
             count += np.int32(part[k] == at_zero)
-    return count > 0
+    return bool(count > 0)

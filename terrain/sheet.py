@@ -2,7 +2,7 @@
 
 A sheet gives the same heights as `Ground.elevation_m` wherever none of the samples it touches is a gap. Gaps are
 all samples where the ground does not follow from this lattice alone: outside the tiles, at larger voids, where a
-finer raster answers, where two tiles disagree about a shared sample, and at voids beside other tiles.
+finer raster answers, where two tiles disagree about a shared sample or its water, at voids beside other tiles.
 """
 
 from __future__ import annotations
@@ -19,7 +19,7 @@ from scipy import ndimage
 
 from terrain.blocks import Blocks
 from terrain.cache import ArrayCache
-from terrain.grid import Grid
+from terrain.grid import Grid, apply
 from terrain.raster import Raster
 
 FloatArray = NDArray[np.float64]
@@ -102,8 +102,8 @@ def _on_one_lattice(one: Raster, other: Raster) -> bool:
     steps = np.array([[a.a, a.b, a.d, a.e], [b.a, b.b, b.d, b.e]])
     if np.abs(steps[0] - steps[1]).max() * size > _SAME_PLACE * np.abs(steps[0]).max():
         return False
-    column, row = ~a * (b.c, b.f)
-    return abs(column - round(column)) < _SAME_PLACE and abs(row - round(row)) < _SAME_PLACE
+    column, row = apply(~a, b.c, b.f)
+    return bool(abs(column - round(column)) < _SAME_PLACE and abs(row - round(row)) < _SAME_PLACE)
 
 
 def _connected(lattice: list[int], grids: Sequence[Grid]) -> list[list[int]]:
@@ -120,7 +120,7 @@ def _connected(lattice: list[int], grids: Sequence[Grid]) -> list[list[int]]:
 
 def _box(grid: Grid, origin: Affine) -> tuple[int, int, int, int]:
     """First row and column, last row and column of a raster on the lattice of another."""
-    column, row = ~origin * (grid.transform.c, grid.transform.f)
+    column, row = apply(~origin, grid.transform.c, grid.transform.f)
     top, left = round(row), round(column)
     return top, left, top + grid.rows - 1, left + grid.columns - 1
 
@@ -142,7 +142,8 @@ def _sheet(group: list[int], layers: Sequence[tuple[Raster, Blocks]], cache: Arr
     if rows * columns > min(MOST_SAMPLES, _MOST_EMPTY * covered):
         return None
     tiles = tuple(Tile(*layers[number], box[0] - top, box[1] - left) for number, box in zip(group, boxes, strict=True))
-    transform = first.grid.transform * Affine.translation(left, top)
+    t = first.grid.transform
+    transform = Affine(t.a, t.b, t.a * left + t.b * top + t.c, t.d, t.e, t.d * left + t.e * top + t.f)
     # The ring may reach beyond a pole or a whole turn, where no raster could stand: only `index` is used of it.
     grid = first.grid.shifted(rows, columns, transform)
     foreign = [(number, raster.grid) for number, (raster, _) in enumerate(layers) if number not in group]
@@ -187,7 +188,7 @@ def _fill(
             edge[:, -1] = column + plain.shape[1] == tile.raster.grid.columns
             values[own_void & (shared_ground[place] | edge | _beside(wet))] = void
             before = taken[place]
-            settled[place] &= ~before | (samples[place] == values)
+            settled[place] &= ~before | ((samples[place] == values) & (water[place] == wet))
             samples[place] = np.where(before, samples[place], values)
             water[place] |= wet
             taken[place] = True

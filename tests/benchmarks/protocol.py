@@ -1,4 +1,8 @@
-"""How the figures are taken: all variants in one run, in random order each round, warm calls first, medians of ratios."""
+"""How the figures are taken: all variants in one run, in random order each round, warm calls first, medians of ratios.
+
+One thread is timed by the processor time of the process, which other programs on the machine move less than the
+clock; what runs on several threads by the clock (" wall" in the names).
+"""
 
 from __future__ import annotations
 
@@ -38,10 +42,10 @@ def timed(variants: Sequence[Variant], rounds: int = ROUNDS, seed: int = 0) -> d
             variant = variants[place]
             for _ in range(variant.warm_calls):
                 variant.run()
-            seconds.setdefault(variant.name, []).append(_once(variant.run) / variant.share)
+            _note(seconds, variant.name, variant)
             if variant.flushed:
                 _FLUSH.__iadd__(1)
-                seconds.setdefault(f"{variant.name} flushed", []).append(_once(variant.run) / variant.share)
+                _note(seconds, f"{variant.name} flushed", variant)
     return {name: np.array(values) for name, values in seconds.items()}
 
 
@@ -78,10 +82,12 @@ def machine() -> str:
     return f"Python {platform.python_version()}, {', '.join(versions)}\n{_processor()}"
 
 
-def _once(run: Callable[[], object]) -> float:
-    start = time.perf_counter()
-    run()
-    return time.perf_counter() - start
+def _note(seconds: dict[str, list[float]], name: str, variant: Variant) -> None:
+    clock, processor = time.perf_counter(), time.process_time()
+    variant.run()
+    processor, clock = time.process_time() - processor, time.perf_counter() - clock
+    seconds.setdefault(name, []).append(processor / variant.share)
+    seconds.setdefault(f"{name} wall", []).append(clock / variant.share)
 
 
 def _installed(name: str) -> bool:

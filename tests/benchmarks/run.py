@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 
+import bench_assess
 import bench_paths
 from protocol import ROUNDS, machine
 
@@ -14,3 +15,4 @@ if __name__ == "__main__":
     print(machine())
     for row in bench_paths.table(rounds):
         print(row.told())
+    print("\n".join(bench_assess.report()))
