@@ -12,7 +12,7 @@ from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
-from app.margins import Air, Turned
+from app.margins import SAME_MAST_KM, Air, Turned
 from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
@@ -328,6 +328,12 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"No prediction for {', '.join(without)}: see the reason beside each channel; "
             "they take no part in the verdict."
         )
+    twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
+    if twice:
+        cautions.append(
+            f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
+            "Take one import out with `gainworth transmitters remove SOURCE`."
+        )
     shared = [field for field in fields if _shared_channel(field, fields)]
     if shared:
         channels = ", ".join(
@@ -337,6 +343,20 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted."
         )
     return cautions
+
+
+def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
+    """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
+    mine = field.emission
+    return [
+        f"{field.transmitter.name} in {field.transmitter.source} and {other.transmitter.name} in {other.transmitter.source}"
+        for other in fields
+        if other.transmitter.source > field.transmitter.source
+        and other.emission.system == mine.system
+        and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
+        and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
+        and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM
+    ]
 
 
 def _shared_channel(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
