@@ -27,6 +27,7 @@ from propagation.p1812 import PathTerms
 from terrain.errors import TerrainError
 from terrain.ground import COARSEST_M
 from terrain.mosaic import Ground
+from terrain.raster import Raster
 from terrain.sheet import Sheet
 
 if TYPE_CHECKING:
@@ -80,7 +81,7 @@ def warm_up(ground: Ground) -> bool:
     try:
         from propagation.fast_digest import digests
 
-        sheets = tuple(sheet for sheet in ground.sheets() if _is_bare(sheet))
+        sheets = tuple(ground.sheets(_is_bare))
         for sheet in sheets:
             tile = sheet.tiles[0].raster.grid
             lat, lon = tile.position(np.array([0.4, 0.6]) * tile.rows, np.array([0.4, 0.6]) * tile.columns)
@@ -158,9 +159,9 @@ def _ends(roof: Roof, lines: Sequence[Line]) -> Ends:
     )
 
 
-def _is_bare(sheet: Sheet) -> bool:
+def _is_bare(raster: Raster) -> bool:
     """Whether its heights are taken for bare ground as they are (`terrain/ground.py`)."""
-    return sheet.kind == "bare" or all(tile.raster.grid.spacing_m > COARSEST_M for tile in sheet.tiles)
+    return raster.kind == "bare" or raster.grid.spacing_m > COARSEST_M
 
 
 def keep_machine_code() -> None:

@@ -119,12 +119,12 @@ class Ground:
             digest.update(f"{raster.content} {raster.kind} {raster.crs} {tuple(raster.grid.transform)}\n".encode())
         return digest.hexdigest()[:12]
 
-    def sheets(self) -> list[Sheet]:
-        """The rasters laid together as far as one array can hold them (sheet.py); decodes them all the first time.
+    def sheets(self, wanted: Callable[[Raster], bool] = lambda _: True) -> list[Sheet]:
+        """The wanted rasters laid together as far as one array can hold them (sheet.py), decoded the first time.
 
         Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
         """
-        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache)
+        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
 
     def survey(self) -> Ground:
         """Read every raster whole, once: void shares are known, and damaged files join `refused`."""

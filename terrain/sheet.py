@@ -8,7 +8,7 @@ finer raster answers, where two tiles disagree about a shared sample or its wate
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -65,17 +65,19 @@ class Sheet:
         return spacing
 
 
-def sheets_of(layers: Sequence[tuple[Raster, Blocks]], cache: ArrayCache) -> list[Sheet]:
-    """Sheets of the layers of a ground, in its order; rasters that fit none are left out.
+def sheets_of(
+    layers: Sequence[tuple[Raster, Blocks]], cache: ArrayCache, wanted: Callable[[Raster], bool]
+) -> list[Sheet]:
+    """Sheets of those layers of a ground that are wanted, in its order; rasters that fit none are left out.
 
     Decodes every raster that is part of a sheet. Raises RasterError, CacheError as reading them does.
     """
-    sheets = []
+    sheets: list[Sheet] = []
     for lattice in _lattices([raster for raster, _ in layers]):
         for group in _connected(lattice, [raster.grid for raster, _ in layers]):
-            sheet = _sheet(group, layers, cache)
-            if sheet is not None:
-                sheets.append(sheet)
+            if all(wanted(layers[number][0]) for number in group):
+                sheet = _sheet(group, layers, cache)
+                sheets += [] if sheet is None else [sheet]
     return sheets
 
 
