@@ -13,6 +13,7 @@ from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
 from app.errors import RequestError
 from app.fields import fields_at
+from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
 from app.request import NOTHING, AssessRequest
 from app.site import site_of
@@ -38,13 +39,26 @@ def assess(
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = _chains(request, store)
     site = site_of(request.roof, ground)
-    found = store.emissions_within(
-        request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
+    on_the_air = store.emissions_within(
+        request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
     )
+    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
     fields = fields_at(
         request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
     )
-    air = air_of(fields)
+    air = air_of(
+        fields,
+        interferers_at(
+            request.roof,
+            fields,
+            on_the_air,
+            ground,
+            assumptions,
+            request.availability_percent,
+            request.method,
+            refractivity_maps,
+        ),
+    )
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]
