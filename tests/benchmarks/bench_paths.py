@@ -13,6 +13,7 @@ import tempfile
 import warnings
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -182,13 +183,14 @@ def fields_of(batch: Digests, frequencies: int, times: np.ndarray, with_p1546: b
     )
 
 
-def table(rounds: int) -> list[Row]:
-    """Measure and return the lines."""
+def table(rounds: int, wide: bool) -> list[Row]:
+    """Measure and return the lines; with `wide` those of a million roofs, too."""
     with tempfile.TemporaryDirectory() as name:
-        return _table(Path(name), rounds)
+        ground, rows = _rooftop_table(Path(name), rounds)
+        return rows + (_million_table(ground, max(1, rounds // 3)) if wide else [])
 
 
-def _table(folder: Path, rounds: int) -> list[Row]:
+def _rooftop_table(folder: Path, rounds: int) -> tuple[Ground, list[Row]]:
     tif, hgt = write_tiles(folder)
     cache = folder / "cache"
     ground = Ground.open([tif], cache)
@@ -216,9 +218,11 @@ def _table(folder: Path, rounds: int) -> list[Row]:
             )
             path_over(profile, ends.antenna_agl_m[p], ROOF, Assumptions())
 
+    (samples_file,), (water_file,) = cache.rglob("*-samples.npy"), cache.rglob("*-water.npy")
+
     def fresh_map() -> None:
-        (again,) = Ground.open([tif], cache).sheets()
-        digests(again, ends, SPACING_M)
+        samples, water = (np.asarray(np.load(file, mmap_mode="r")) for file in (samples_file, water_file))
+        digests(replace(sheet, samples=samples, water=water), ends, SPACING_M)
 
     def decode_ten() -> None:
         for path in sorted(tif.glob("*.tif"))[:10]:
@@ -259,21 +263,30 @@ def _table(folder: Path, rounds: int) -> list[Row]:
     if in_c:
         rows.insert(4, Row("sampling stage, speed of a plain C loop", ratio(s, "C", "kernel sampling"), 0.7))
 
-    roofs = million_roofs()
-    wide = timed(
+    stages = ("scan", "scan flushed", "sampling", "kernel sampling")
+    told = ", ".join(f"{name} {1e6 * np.median(s[name]) / ends.tx_latitude_deg.size:.1f}" for name in stages)
+    print(f"microseconds a path: {told}")
+    return ground, rows
+
+
+def _million_table(ground: Ground, rounds: int) -> list[Row]:
+    (sheet,) = ground.sheets()
+    arrays, roofs, pool = sheet_arrays(sheet), million_roofs(), ThreadPoolExecutor(2)
+    s = timed(
         [
             Variant("million", lambda: digests(sheet, roofs, SPACING_M, each=pool.map, parts=2), 1.0, 0),
             Variant("million one", lambda: digests(sheet, roofs, SPACING_M), 1.0, 0),
             Variant("million sampled", lambda: sampled(sheet, arrays, roofs, 2, pool.map), 1.0, 0),
         ],
-        max(1, rounds // 3),
+        rounds,
     )
-    whole = ratio(wide, "million", "million sampled")
-    rows.append(Row("a million exact paths, two threads, against their own sampling", whole, 1.5, False))
-    rows.append(
-        Row("a million exact paths, two threads against one", ratio(wide, "million one wall", "million wall"), 1.7)
-    )
-    stages = ("scan", "scan flushed", "sampling", "kernel sampling")
-    told = ", ".join(f"{name} {1e6 * np.median(s[name]) / ends.tx_latitude_deg.size:.1f}" for name in stages)
-    print(f"microseconds a path: {told}; a million paths {np.median(wide['million wall']):.1f} s")
-    return rows
+    print(f"a million paths: {np.median(s['million wall']):.1f} s")
+    return [
+        Row(
+            "a million exact paths, two threads, against their own sampling",
+            ratio(s, "million", "million sampled"),
+            1.5,
+            False,
+        ),
+        Row("a million exact paths, two threads against one", ratio(s, "million one wall", "million wall"), 1.7),
+    ]
