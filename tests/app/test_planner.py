@@ -15,7 +15,7 @@ from app.roof import Roof
 from terrain.errors import CoverageError
 
 PLACES = {roof.name: Roof(roof.latitude_deg, roof.longitude_deg) for roof in DEMO_ROOFS}
-NORTH, WEST, BAY, FOOT = PLACES.values()
+NORTH, WEST, BAY, SHORE, FOOT = PLACES.values()
 
 
 @pytest.fixture(scope="module")
@@ -33,7 +33,7 @@ def cell(answer, multiplex, chain):
 def test_document_has_the_shape_of_the_interface(ask):
     answer = ask(now="roof-yagi")
     assert set(answer) == {
-        "roof", "multiplexes", "emissions", "chains", "verdicts", "assumptions", "cautions", "sources",
+        "roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources",
     }  # fmt: skip
     emission = answer["emissions"][0]
     assert {"id", "transmitter", "multiplex", "channel", "frequency_mhz", "system", "mode", "erp_kw", "polarisation",
@@ -52,8 +52,9 @@ def test_document_has_the_shape_of_the_interface(ask):
     json.dumps(answer, allow_nan=False)
 
 
-def test_worth_it_and_not_worth_it_both_occur(ask):
-    assert ask(NORTH, now="roof-yagi")["verdicts"][0]["answer"] == "worth it"
+def test_all_three_answers_occur(ask):
+    assert ask(NORTH, now="loft-dipole")["verdicts"][0]["answer"] == "worth it"
+    assert ask(SHORE, now="roof-yagi")["verdicts"][0]["answer"] == "measure first"
     assert {verdict["answer"] for verdict in ask(WEST, now="roof-yagi")["verdicts"]} == {"not worth it"}
 
 
