@@ -1,7 +1,29 @@
 """Paths of one rooftop and of a million roofs: the production code against pycraf, plain C, our numpy and itself.
 
-Cover and zones are on: the relief has sea, bare-ground rasters have no cover to estimate, and every path goes
-through the same functions as an answer of the server.
+Every path goes through the same functions as an answer of the server, zones and water on. The relief is declared as
+bare ground: under surface models finer than 35 m the plain form answers, as bare ground is estimated there first.
+
+Medians of 7 rounds on 2 virtual Xeon processors (Sapphire Rapids, 2 MiB L2 each), shared with six other busy programs,
+2026-12-01; 200 paths of 2697 points, 91 % of them meet the sea; microseconds a path: whole 58, its sampling kernel 40:
+
+    against pycraf's diffraction on given profiles, warm   1.6 (goal 8)    missed
+    the same, caches flushed                               1.1 (goal 3)    missed
+    against pycraf's profiles and diffraction              137 (goal 60)
+    against our numpy                                      119 (goal 15)
+    sampling against plain C                               1.1 (goal 0.7)
+    whole against its geodesics and sampling               1.24 (goal 1.5)
+    two threads against one                                0.99 (goal 1.7) missed: no processor was free
+    12 frequencies against 1                               1.11 (goal 1.4)
+    both methods, 3 times, 200 × 6 emissions               0.41 (goal 5)
+    fresh map against decoding ten tiles                   0.03 (goal 0.05)
+    a million paths against their sampling                 1.57 (goal 1.5) missed; one round, after one with 0.90
+
+What holds the first two: every point of a path that runs north or south lies on a memory line of its own, and these
+lines come from a third-level cache or memory that the other programs fill; plain C takes as long. On one path that
+stays in the second-level cache the whole takes 8 ns a point, sampling 5.4. Tried without gain: huge pages, asking for
+the next path's lines ahead, corners kept as 16-bit numbers until they are blended. With gain: maxima that become vector
+instructions, water looked up only in stretches that touch 0 m, zones by stretches of land (6 to 3 ns a point).
+Not tried: samples in blocks of one memory line, which halves the lines a path touches.
 """
 
 from __future__ import annotations
