@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 
+from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.margins import Air, turn
+from app.margins import turn
 from app.roof import Roof
 
 ROUNDS = 2  # each aerial is turned so often with the others held

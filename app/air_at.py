@@ -6,10 +6,10 @@ from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
+from app.air import Air, air_of
 from app.assumptions import Assumptions
 from app.fields import EmissionField, Found, fields_at
 from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
-from app.margins import Air, air_of
 from app.request import AssessRequest
 from app.roof import Roof
 from app.transmitters.store import Store

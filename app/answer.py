@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 
+from app.air import SAME_MAST_KM, Air
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade, not_too_much
@@ -14,7 +15,7 @@ from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
 from app.ledger import Books, books_of, ledger
-from app.margins import SAME_MAST_KM, Air, FloatArray, Turned
+from app.margins import FloatArray, Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest

@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 
+from app.air import Air
 from app.chain.base import called
 from app.chain.kinds import MastTube
 from app.chain.parts import Chain, Splitter, Tap
@@ -15,7 +16,7 @@ from app.chain.wind import CAUTION, Mast, Mounted, check_mast
 from app.chain.windows import ADJACENT_DB, SPREAD_DB, adjacent_step_db, level_window, spread_db
 from app.chance import GRADES, grade
 from app.errors import ChainError
-from app.margins import Air, Turned
+from app.margins import Turned
 from app.roof import Roof
 from app.verdict import HAVE, Outcome
 

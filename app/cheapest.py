@@ -16,6 +16,7 @@ from typing import Any
 
 import numpy as np
 
+from app.air import Air
 from app.air_at import air_at
 from app.assumptions import Assumptions
 from app.chain.document import chain_to_document
@@ -34,7 +35,7 @@ from app.chain.parts import (
 from app.chain.powering import as_powered
 from app.chain_file import stored_parts
 from app.errors import ChainError, RequestError
-from app.margins import Air, Turned, multiplex_chances, turn
+from app.margins import Turned, multiplex_chances, turn
 from app.request import AssessRequest
 from app.site import site_of
 from app.transmitters.store import Store

@@ -2,7 +2,7 @@
 
 One profile per transmitter, one digest per antenna height, then every emission and time percentage of
 all transmitters in one call of each method. P.1812 is used where it holds, P.1546 elsewhere; the
-location terms of both Recommendations are left out, the spread of app/margins.py stands for them.
+location terms of both Recommendations are left out, the spread of app/margin_errors.py stands for them.
 """
 
 from __future__ import annotations

@@ -8,10 +8,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from app.air import Air
 from app.assumptions import Assumptions
 from app.disturbance import STATES, Company, Effect, State
 from app.fields import EmissionField
-from app.margins import Air, Turned
+from app.margins import Turned
 from app.outlet_ledger import Book, Step, book_of
 from app.request import AssessRequest
 

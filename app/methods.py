@@ -1,7 +1,7 @@
 """Both published methods on the same paths, with the terms by which they differ.
 
 P.1812 follows the profile of its path; P.1546 takes from it an effective height, an angle and lengths. Both stand
-at 50 % of locations: the spread of app/margins.py takes the place of their location terms.
+at 50 % of locations: the spread of app/margin_errors.py takes the place of their location terms.
 """
 
 from __future__ import annotations

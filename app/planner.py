@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from app.aiming import aimed
+from app.air import Air
 from app.air_at import air_at
 from app.answer import answer_document
 from app.assumptions import Assumptions
@@ -17,7 +18,7 @@ from app.chain.windows import DEFAULT_STANDARD
 from app.chain_notes import chain_notes, with_notes
 from app.chance import Knowledge
 from app.errors import RequestError
-from app.margins import Air, Turned, multiplex_chances, turn
+from app.margins import Turned, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
 from app.roof_readings import Place, evidence_at, what_can_be_read

@@ -8,6 +8,7 @@ from pathlib import Path
 
 import numpy as np
 
+from app.air import Air, air_of
 from app.air_at import Heard
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
@@ -16,7 +17,7 @@ from app.errors import NotStoredError, ReadingError
 from app.evidence import Evidence, weigh
 from app.fields import EmissionField, fields_at
 from app.interferers import interferers_at
-from app.margins import Air, Turned, air_of, turn
+from app.margins import Turned, turn
 from app.reading_value import Readable
 from app.readings import AT_THE_AERIAL, INSTRUMENTS, Reading, reading_from_document
 from app.request import NOTHING, AssessRequest

@@ -10,11 +10,11 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.special import ndtr
 
+from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import Loadings
 from app.conditioning import SURELY_WRONG, Bound, Joint, Plain, Site
-from app.margins import Air
 from app.readings import Reading
 from app.vantage import Vantage, neighbours_chain, only
 

@@ -15,11 +15,12 @@ from typing import Any
 import numpy as np
 
 from app.aiming import aimed
+from app.air import Air
 from app.air_at import air_at
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, Chain, Combiner, Part, Switch
 from app.chain.powering import as_powered
-from app.margins import Air, Turned, multiplex_chances, turn
+from app.margins import Turned, multiplex_chances, turn
 from app.planner import chains_of
 from app.request import AssessRequest
 from app.site import site_of

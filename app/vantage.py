@@ -11,12 +11,13 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain, Feeder, Outlet, Receiver
 from app.chance import Cells, Knowledge, Loadings
 from app.disturbance import disturbed, ear_of, effect_of
 from app.link_budget import receive
-from app.margins import Air, wanted_errors
+from app.margin_errors import wanted_errors
 from app.readings import AT_THE_AERIAL, Size
 from app.roof import Roof
 

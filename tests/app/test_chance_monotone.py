@@ -7,13 +7,14 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from app.air import air_of
 from app.assumptions import Assumptions
 from app.chain.parts import Feeder, Outlet
 from app.chance import exceedance
 from app.demo.scenario import DEMO_ROOFS
 from app.fields import fields_at
 from app.interferers import interferers_at
-from app.margins import air_of, expected_count, turn
+from app.margins import expected_count, turn
 from app.roof import Roof
 from app.stored_chains import stored_chain
 

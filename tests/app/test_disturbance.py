@@ -6,12 +6,13 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from app.air import air_of
 from app.assumptions import Assumptions
 from app.chain.catalogue import demo_chains
 from app.disturbance import company_of
 from app.fields import EmissionField, PathFacts
 from app.interferers import Interferer
-from app.margins import air_of, turn
+from app.margins import turn
 from app.roof import Roof
 from app.transmitters.model import Emission, Transmitter
 from propagation import p1546

@@ -10,11 +10,12 @@ from dataclasses import replace
 
 import numpy as np
 
+from app.air import air_of
 from app.assumptions import Assumptions
 from app.chain.catalogue import demo_chains
 from app.fields import EmissionField, PathFacts
 from app.interferers import Interferer
-from app.margins import air_of, multiplex_chances, turn
+from app.margins import multiplex_chances, turn
 from app.roof import Roof
 from app.transmitters.model import Emission, Transmitter
 

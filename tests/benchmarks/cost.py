@@ -15,11 +15,12 @@ from typing import Any
 
 sys.path.insert(0, str(Path(__file__).parents[2]))
 
+from app.air import air_of
 from app.assumptions import Assumptions
 from app.demo.scenario import DEMO_ROOFS
 from app.fields import fields_at
 from app.interferers import interferers_at
-from app.margins import air_of, multiplex_chances, turn
+from app.margins import multiplex_chances, turn
 from app.planner import assess
 from app.readings import Reading
 from app.request import AssessRequest
