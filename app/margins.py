@@ -26,6 +26,14 @@ BEARINGS = np.arange(360.0)
 
 
 @dataclass(frozen=True, slots=True)
+class Swept:
+    """Every emission for each whole degree of pointing, in one polarisation."""
+
+    chance: FloatArray  # (360, e)
+    lost_db: FloatArray  # (360, e) what interference takes off C/N, in the time state that decides
+
+
+@dataclass(frozen=True, slots=True)
 class Turned:
     """One chain turned one way: what it receives, and how surely."""
 
@@ -40,7 +48,7 @@ class Turned:
     cells: Cells
     chance: FloatArray  # (e,)
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
-    sweep_chance: FloatArray  # (360, e) chance of each emission for each whole degree, likewise
+    sweep: Swept  # each emission for each whole degree, likewise
 
     @property
     def margin_db(self) -> FloatArray:
@@ -99,16 +107,16 @@ def turn(
     `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
     Ties go to the direction nearest to the bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray, FloatArray] | None = None
+    best: tuple[float, float, AerialPolarisation, FloatArray, Swept] | None = None
     for polarisation in _polarisations(chain):
-        chances = _sweep(chain, polarisation, air, roof, assumptions, known)
-        counts = _expected_by_degree(chances, air, counted)
+        swept = _sweep(chain, polarisation, air, roof, assumptions, known)
+        counts = _expected_by_degree(swept.chance, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts, chances)
+            best = (count, pointing_deg, polarisation, counts, swept)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts, chances = best
+    _, pointing_deg, polarisation, counts, swept = best
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     alone, alone_faded = (
         receive(
@@ -151,7 +159,7 @@ def turn(
         cells,
         chance,
         counts,
-        chances,
+        swept,
     )
 
 
@@ -197,13 +205,14 @@ def _sweep(
     roof: Roof,
     assumptions: Assumptions,
     known: Knowledge | None,
-) -> FloatArray:
-    """Chance of each emission for each whole degree. (360, e)"""
+) -> Swept:
+    """Chance of each emission, and what interference takes, for each whole degree."""
     turned = BEARINGS[:, None]
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     disturbers = air_disturbers(air, assumptions)
     rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
-    margin, moved = np.full((len(BEARINGS), len(air.fields)), np.inf), np.zeros((len(BEARINGS), len(air.fields)))
+    shape = (len(BEARINGS), len(air.fields))
+    margin, moved, lost = np.full(shape, np.inf), np.zeros(shape), np.zeros(shape)
     fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
     for state, field in fields:
         alone = receive(
@@ -219,14 +228,16 @@ def _sweep(
         effect = effect_of(ear, alone, left, state)
         reception = disturbed(alone, effect)
         slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
-        moved = np.where(reception.margin_db < margin, slope * spread, moved)
+        decides = reception.margin_db < margin
+        moved = np.where(decides, slope * spread, moved)
+        lost = np.where(decides, effect.cn_db - reception.cn_db, lost)
         margin = np.minimum(margin, reception.margin_db)
     path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
     enough = exceedance(margin + fixed.mean_db, sigma_db)
-    return not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
+    return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db)), lost)
 
 
 def _expected_by_degree(chances: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:

@@ -1,7 +1,8 @@
 """What turning, raising or doubling the aerial would change.
 
-Pointing: the chance of every multiplex for each whole degree, chain by chain. Height: the same question at 2 to
-25 m. Two aerials: one against two alike through a combiner and through a switch, each turned its best way.
+Pointing: the chance of every multiplex for each whole degree, chain by chain, and what interference takes there.
+Height: the same question at 2 to 25 m. Two aerials: one against two alike through a combiner and through a switch,
+each turned its best way.
 """
 
 from __future__ import annotations
@@ -65,16 +66,26 @@ def sweep_document(
 
 
 def pointing_sweep(turned: Turned, air: Air, multiplexes: Sequence[str]) -> dict[str, Any]:
-    """Chance of each multiplex for each whole degree, in the polarisation that is best; alternatives independent."""
+    """Chance of each multiplex and what interference costs it, for each whole degree; alternatives independent.
+
+    Both in the polarisation that is best. The cost is the fall from C/N to C/(N + I) of the emission most likely
+    received in that direction, in the time state that decides. [dB]
+    """
     acting = air.company.acting
     columns = {
         name: [e for e, owner in enumerate(air.multiplex_of) if owner == name and acting[e]] for name in multiplexes
     }
-    chance = {name: 1 - np.prod(1 - turned.sweep_chance[:, columns[name]], axis=1) for name in multiplexes}
+    alone = {name: turned.sweep.chance[:, columns[name]] for name in multiplexes}
+    chance = {name: 1 - np.prod(1 - one, axis=1) for name, one in alone.items()}
+    lost_db = {
+        name: np.take_along_axis(turned.sweep.lost_db[:, columns[name]], one.argmax(axis=1)[:, None], axis=1)[:, 0]
+        for name, one in alone.items()
+    }
     return {
         "polarisation": turned.polarisation,
         "best_deg": turned.pointing_deg,
         "chance_by_degree": {name: np.round(one, 3).tolist() for name, one in chance.items()},
+        "interference_db_by_degree": {name: np.round(one, 2).tolist() for name, one in lost_db.items()},
     }
 
 

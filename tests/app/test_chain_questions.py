@@ -145,6 +145,29 @@ def test_chance_is_there_for_each_whole_degree_and_meets_the_answer(sweeps, demo
                 assert by_degree[round(cell["pointing_deg"]) % 360] == pytest.approx(cell["chance"], abs=0.01)
 
 
+def test_sweep_tells_what_turning_does_to_interference(demo_world):
+    """Below the backbone a mast on the channel of a multiplex holds it back: what it costs meets the ledger's C/N."""
+    roof = Roof(44.102, -37.3254)
+    request = AssessRequest(roof, chains=["roof-yagi"])
+    sweep = sweep_document(request, demo_world.store, demo_world.ground, ())["pointing"]["roof-yagi"]
+    answer = assess(request, demo_world.store, demo_world.ground)
+    lost = sweep["interference_db_by_degree"]
+    assert all(len(one) == 360 and min(one) >= 0 for one in lost.values())
+    held = [
+        (row["id"], row["chains"]["roof-yagi"])
+        for row in answer["multiplexes"]
+        if row["chains"]["roof-yagi"]["held_back_by"]["limit"] == "interference"
+    ]
+    assert held
+    for name, cell in held:
+        emission = next(row for row in answer["emissions"] if row["id"] == cell["emission"])
+        ledger = emission["chains"]["roof-yagi"]["outlets"][0]["ledger"]
+        decides = ledger[-1]["state"]
+        taken = sum(step["value_db"] for step in ledger if step["state"] == decides and ("interfer" in step["step"]))
+        assert lost[name][round(cell["pointing_deg"]) % 360] == pytest.approx(-taken, abs=0.03)
+        assert max(lost[name]) - min(lost[name]) > 3
+
+
 def test_higher_aerials_receive_more_here(sweeps):
     assert [row["aerial_agl_m"] for row in sweeps["height"]] == [2, 10, 25]
     counts = [row["chains"]["roof-yagi"]["expected_count"] for row in sweeps["height"]]
