@@ -9,7 +9,8 @@ from pathlib import Path
 from app.air import Air, air_of
 from app.assumptions import Assumptions
 from app.fields import EmissionField, Found, fields_at
-from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
+from app.interferers import SEA_REACH_KM, interferers_at
+from app.mobile import MOBILE
 from app.request import AssessRequest
 from app.roof import Roof
 from app.transmitters.store import Store

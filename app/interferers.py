@@ -35,7 +35,6 @@ from terrain.mosaic import Ground
 
 FloatArray = NDArray[np.float64]
 
-MOBILE = "mobile"  # system of a block of a mobile network: never wanted, it only disturbs
 LAND_REACH_KM, SEA_REACH_KM = 250.0, 500.0
 NEAREST_KM = 0.05  # an interferer nearer than this counts as standing there
 OVER_GROUND_MASTS = 40  # the strongest so many are reckoned over the ground; ours, for speed

@@ -1,4 +1,4 @@
-"""Mobile networks beside the television band, as they load an amplifier."""
+"""Mobile networks beside the television band: their blocks, and those that assumptions put at a roof."""
 
 from __future__ import annotations
 
@@ -8,10 +8,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.errors import ModeError
 from app.tables import rows
 
 FloatArray = NDArray[np.float64]
 
+MOBILE = "mobile"  # system of an emission of a mobile network: never wanted, it only disturbs
 LEAST_FIELD_DBUV_M = 1.0  # below: no block there
 
 
@@ -25,8 +27,29 @@ class MobileBlocks:
 
 def mobile_blocks(assumptions: Assumptions) -> MobileBlocks:
     """Blocks whose field was given by the assumptions `mobile_…_dbuv_m`; usually none."""
-    table = rows("mobile_blocks")
+    table = [row for row in rows("mobile_blocks") if row["assumption"]]
     centre = np.array([(float(row["low_mhz"]) + float(row["high_mhz"])) / 2 for row in table])
     field = np.array([assumptions.value(row["assumption"]) for row in table])
     there = field >= LEAST_FIELD_DBUV_M
     return MobileBlocks(centre[there], field[there])
+
+
+def block_mhz(name: str) -> tuple[float, float]:
+    """Centre and width of a block by its name [MHz], such as "europe-700-downlink".
+
+    Raises
+    ------
+    ModeError
+        No such block; the message lists them.
+    """
+    table = rows("mobile_blocks")
+    for row in table:
+        if row["id"] == name.strip().casefold():
+            low, high = float(row["low_mhz"]), float(row["high_mhz"])
+            return (low + high) / 2, high - low
+    listed = ", ".join(row["id"] for row in table)
+    raise ModeError(
+        f'block "{name}" is not known: use one of {listed}, or frequency_mhz with bandwidth_mhz',
+        field="channel",
+        allowed=listed,
+    )

@@ -7,12 +7,14 @@ from typing import cast
 
 from app.channels import OFFSET_MHZ, centre_mhz, channel_of
 from app.errors import ModeError
+from app.mobile import MOBILE, block_mhz
 from app.network import symbol_of
 from app.systems import mode_of
 from app.transmitters.cells import Cells
 from app.transmitters.model import Emission, Polarisation
 
 LOWEST_MHZ, HIGHEST_MHZ = 45.0, 1000.0  # broadcasting bands I to V with their neighbours
+NARROWEST_MHZ, WIDEST_MHZ, WIDEST_MOBILE_MHZ = 0.1, 8.0, 100.0
 MOST_ERP_KW = 5000.0
 LOWEST_ANTENNA_M, HIGHEST_ANTENNA_M = 1.0, 700.0
 LOWEST_GROUND_M, HIGHEST_GROUND_M = -450.0, 6000.0
@@ -47,7 +49,7 @@ def draft_of(cells: Cells) -> Draft | None:
     ground_amsl_m = None
     if cells.text("ground_amsl_m"):
         ground_amsl_m = cells.number("ground_amsl_m", LOWEST_GROUND_M, HIGHEST_GROUND_M, "m", example="120")
-    tuned = _tuned(cells)
+    tuned = _mobile_tuned(cells) if _is_mobile(cells) else _tuned(cells)
     mode = _mode(cells, tuned)
     power = _erp(cells)
     polarisation = cells.word("polarisation", _POLARISATIONS)
@@ -124,7 +126,7 @@ def _tuned(cells: Cells) -> _Tuned | None:
     frequency = _frequency(cells) if cells.text("frequency_mhz") else None
     width = None
     if cells.text("bandwidth_mhz"):
-        width = cells.number("bandwidth_mhz", 6, 8, "MHz", example="8")
+        width = cells.number("bandwidth_mhz", NARROWEST_MHZ, WIDEST_MHZ, "MHz", example="8")
     if len(cells.refused) > faults:
         return None
     if channel and not raster:
@@ -155,9 +157,36 @@ def _tuned(cells: Cells) -> _Tuned | None:
             )
             return None
     if width is None:
-        cells.refuse("bandwidth_mhz", "write the width of the channel, 6, 7 or 8 MHz, or its raster")
+        cells.refuse("bandwidth_mhz", "write the width of the channel, such as 8 MHz, or its raster")
         return None
     return _Tuned(channel, cast(float, frequency), width, flags)
+
+
+def _is_mobile(cells: Cells) -> bool:
+    return cells.text("system").casefold() == MOBILE
+
+
+def _mobile_tuned(cells: Cells) -> _Tuned | None:
+    """Centre and width of a mobile network's row: the name of its block as channel, or both in figures."""
+    faults = len(cells.refused)
+    channel = cells.text("channel")
+    if cells.text("raster"):
+        cells.refuse("raster", "blocks of mobile networks have no raster: leave it empty")
+    if channel:
+        try:
+            centre, width = block_mhz(channel)
+        except ModeError as error:
+            cells.note("channel", error.message)
+            return None
+        for column, value in (("frequency_mhz", centre), ("bandwidth_mhz", width)):
+            if cells.text(column) and cells.parsed(cells.text(column)) != value:
+                cells.refuse(column, f"block {channel} has {value:g} MHz there: correct it, or empty it or the channel")
+        return None if len(cells.refused) > faults else _Tuned(channel.casefold(), centre, width, ())
+    frequency = _frequency(cells)
+    wide = cells.number("bandwidth_mhz", NARROWEST_MHZ, WIDEST_MOBILE_MHZ, "MHz", example="10")
+    if frequency is None or wide is None or len(cells.refused) > faults:
+        return None
+    return _Tuned("", frequency, wide, ())
 
 
 def _frequency(cells: Cells) -> float | None:
@@ -170,7 +199,11 @@ def _frequency(cells: Cells) -> float | None:
 
 
 def _mode(cells: Cells, tuned: _Tuned | None) -> tuple[str, str] | None:
-    """System and mode as the tables write them."""
+    """System and mode as the tables write them; a mobile network has no mode."""
+    if _is_mobile(cells):
+        if cells.text("mode"):
+            cells.refuse("mode", "a mobile network only disturbs: leave the mode empty")
+        return MOBILE, ""
     try:
         mode = mode_of(cells.text("system"), cells.text("mode"))
         if tuned is not None:

@@ -49,9 +49,9 @@ class Emission:
     multiplex_id: str
     channel: str  # as the raster names it, "47"; empty if only a frequency is known
     frequency_mhz: float  # centre
-    bandwidth_mhz: float  # of the channel: 6, 7 or 8
-    system: str  # a key of app.systems
-    mode: str  # a mode of that system
+    bandwidth_mhz: float  # of the channel
+    system: str  # a key of app.systems, or "mobile": a network that only disturbs
+    mode: str  # a mode of that system; empty for a mobile network
     erp_kw: float  # maximum, half-wave dipole reference
     polarisation: Polarisation
     antenna_agl_m: float

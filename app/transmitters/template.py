@@ -8,7 +8,7 @@
 | multiplex | yes | name of what is sent; the same name is the same content |
 | channel, raster | or frequency_mhz | channel and the name of its channel raster |
 | frequency_mhz, bandwidth_mhz | or channel | centre and width; with both, they must agree |
-| system, mode | yes | as in the tables of modes |
+| system, mode | yes | as in the tables of modes; "mobile" with an empty mode: a mobile network, which only disturbs |
 | erp_kw | yes | maximum, relative to a half-wave dipole; "<=10" where only a limit is known |
 | polarisation | yes | horizontal, vertical, mixed (or H, V, M) |
 | antenna_agl_m | yes | centre of the antenna above the ground |
@@ -18,6 +18,8 @@
 | guard | no | carriers and guard interval, "8K 1/4"; empty: the usual one of the system, with a flag |
 | static_delay_us | no | delay against the other masts of its single-frequency network; empty: 0, with a flag |
 
+A mobile network's row needs no raster: its channel is the name of a block (`app/data/mobile_blocks.csv`), or empty
+beside frequency_mhz and bandwidth_mhz.
 A pattern's attenuations stand every 10° from true north clockwise, separated by spaces.
 Separator comma, semicolon or tab; with semicolons or tabs decimals may be written with a comma.
 """

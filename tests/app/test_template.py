@@ -8,6 +8,7 @@ from datetime import date
 import pytest
 
 from app.errors import TransmitterFileError
+from app.systems import systems
 from app.transmitters import csv_text, template
 from app.transmitters.model import Multiplex
 from app.transmitters.rows import Source
@@ -28,6 +29,10 @@ ROW = {
     "antenna_agl_m": "150",
     "pattern_db": "round",
 }
+
+
+PLAIN = {"channel": "", "raster": "", "frequency_mhz": "682"}
+MOBILE = {"system": "mobile", "mode": "", "raster": "", "channel": "europe-700-downlink"}
 
 
 def text_of(*changes, separator=",", columns=COLUMNS):
@@ -82,6 +87,33 @@ def test_channel_47_of_the_european_raster_is_682_mhz(read):
     """European 8 MHz UHF raster (GE06 Agreement): centre 306 + 8 n MHz, so channel 47 is at 682 MHz."""
     (emission,) = read(text_of({})).emissions
     assert (emission.channel, emission.frequency_mhz, emission.bandwidth_mhz) == ("47", 682.0, 8.0)
+
+
+def test_narrow_channels_take_the_widths_of_their_systems(read):
+    """DAB 1.712 and 1.536 MHz, T2-Lite 1.7 MHz, FM 0.2 MHz: the widths of `app/data/noise_bandwidths.csv`."""
+    named = {system.name: system.modes[0].name for system in systems()}
+    rows = [
+        PLAIN | {"frequency_mhz": f"{200 + 5 * n}", "system": system, "mode": named[system], "bandwidth_mhz": width}
+        for n, (system, width) in enumerate(
+            [("DAB", "1.712"), ("DAB", "1.536"), ("DAB+", "1.712"), ("DVB-T2-Lite", "1.7"), ("FM", "0.2")]
+        )
+    ]
+    result = read(text_of(*rows))
+    assert not result.refused
+    assert [one.bandwidth_mhz for one in result.emissions] == [1.712, 1.536, 1.712, 1.7, 0.2]
+
+
+def test_mobile_networks_are_blocks_by_name_or_by_frequency_and_width(read):
+    """EU 700 downlink 758 to 788 MHz, ECC/DEC/(15)01, and US 600 617 to 652 MHz (MH, from memory)."""
+    by_frequency = MOBILE | {"channel": "", "frequency_mhz": "763", "bandwidth_mhz": "10"}
+    result = read(text_of(MOBILE, by_frequency, MOBILE | {"channel": "America-600-downlink"}))
+    assert not result.refused
+    told = [(one.system, one.mode, one.channel, one.frequency_mhz, one.bandwidth_mhz) for one in result.emissions]
+    assert told == [
+        ("mobile", "", "europe-700-downlink", 773.0, 30.0),
+        ("mobile", "", "", 763.0, 10.0),
+        ("mobile", "", "america-600-downlink", 634.5, 35.0),
+    ]
 
 
 def test_a_stated_frequency_wins_over_the_channels_centre(read):
@@ -206,6 +238,13 @@ def test_lines_are_counted_as_an_editor_counts(read):
         ({"frequency_mhz": "682000000"}, "frequency_mhz", "is it in Hz? 682000000 Hz is 682 MHz"),
         ({"frequency_mhz": "12"}, "frequency_mhz", "use 45 to 1000 MHz"),
         ({"bandwidth_mhz": "7"}, "bandwidth_mhz", "channels of europe-uhf-8 have 8 MHz"),
+        ({"bandwidth_mhz": "30"}, "bandwidth_mhz", "use 0.1 to 8 MHz"),
+        (PLAIN | {"bandwidth_mhz": "5"}, "bandwidth_mhz", "DVB-T2 has no channels of 5 MHz in the table: use 8, 7, 6"),
+        (MOBILE | {"channel": "700"}, "channel", 'block "700" is not known: use one of europe-700-uplink, '),
+        (MOBILE | {"bandwidth_mhz": "10"}, "bandwidth_mhz", "block europe-700-downlink has 30 MHz there"),
+        (MOBILE | {"mode": "256-QAM 2/3"}, "mode", "leave the mode empty"),
+        (MOBILE | {"raster": "europe-uhf-8"}, "raster", "have no raster: leave it empty"),
+        (MOBILE | {"channel": "", "frequency_mhz": "763"}, "bandwidth_mhz", "write a number such as 10"),
         ({"system": "DVB-T9"}, "system", 'system "DVB-T9" is not known: use DVB-T'),
         ({"system": ""}, "system", "is not known"),
         ({"mode": "maximum"}, "mode", 'DVB-T2 has no mode "maximum": use one of'),
