@@ -12,6 +12,7 @@ from app.disturbance import Company, company_of
 from app.fields import EmissionField
 from app.interferers import Interferer
 from app.link_budget import Signals
+from app.loads import Beside, that_load
 from app.systems import mode_of
 from terrain.geodesy import distance_and_bearing
 
@@ -30,6 +31,7 @@ class Air:
     used_dbuv_m: FloatArray  # (e,) median
     fade_db: FloatArray  # (e,)
     company: Company  # what disturbs them, and what acts together
+    beside: Beside  # what loads amplifiers without being wanted
     company_masts: tuple[str, ...]  # (i,) named as masts are
     company_bands: tuple[str, ...]  # (i,)
     path_sd_db: FloatArray  # (e,)
@@ -64,6 +66,7 @@ def air_of(fields: Sequence[EmissionField], interferers: Sequence[Interferer]) -
         used_dbuv_m=np.array([field.used_dbuv_m for field in kept]),
         fade_db=np.array([field.fade_db for field in kept]),
         company=company_of(kept, interferers),
+        beside=_beside(interferers[len(kept) :]),
         company_masts=_named_masts(kept, interferers),
         company_bands=tuple(_band(one.emission.frequency_mhz) for one in interferers),
         path_sd_db=np.array([field.path.sd_db for field in kept if field.path]),
@@ -113,6 +116,19 @@ def _named_masts(wanted: Sequence[EmissionField], interferers: Sequence[Interfer
         near = int(np.argmin(apart_km))
         names[mast.id] = heads[near] if apart_km[near] < SAME_MAST_KM else mast.id
     return tuple(names[one.transmitter.id] for one in interferers)
+
+
+def _beside(others: Sequence[Interferer]) -> Beside:
+    """Those of the others that load an amplifier."""
+    field = np.array([one.field_dbuv_m for one in others], dtype=float)
+    frequency = np.array([one.emission.frequency_mhz for one in others], dtype=float)
+    rows = np.flatnonzero(that_load(field, frequency)).tolist()
+    return Beside(
+        frequency[rows],
+        field[rows],
+        np.array([others[i].bearing_deg for i in rows]),
+        tuple(others[i].emission.polarisation for i in rows),
+    )
 
 
 def _band(frequency_mhz: float) -> str:

@@ -4,7 +4,8 @@ All that overlap a wanted channel or stand beside it, within 250 km, or within 5
 the path is sea. Two rungs keep the question fast: a bound (Rec. ITU-R P.1546-6 without terrain, the antenna
 as high over the sea as it can be) leaves out what all together stays far below the noise of a large aerial;
 the strongest masts that remain are reckoned over the ground like wanted ones, the others, and those whose
-path lacks ground, by P.1546 without terrain, which is said.
+path lacks ground, by P.1546 without terrain, which is said. What is strong enough to load an amplifier is kept
+whatever its channel.
 """
 
 from __future__ import annotations
@@ -22,6 +23,7 @@ from app.errors import ModeError
 from app.fields import EmissionField, Found, fields_at
 from app.interference import Spectra, occupied_mhz, pairs_between
 from app.levels import level_dbuv
+from app.loads import LARGE_AERIAL_DBD, that_load
 from app.request import Method
 from app.roof import Roof
 from app.systems import mode_of
@@ -38,9 +40,10 @@ FloatArray = NDArray[np.float64]
 LAND_REACH_KM, SEA_REACH_KM = 250.0, 500.0
 NEAREST_KM = 0.05  # an interferer nearer than this counts as standing there
 OVER_GROUND_MASTS = 40  # the strongest so many are reckoned over the ground; ours, for speed
+ONLY_LOADS_DB = -60.0  # ranks what disturbs no channel but loads amplifiers among the masts
 SEA_POINTS = 32  # looked at along a path to tell how much of it is sea
 LEFT_OUT_DB = -15.0  # all that is left out together, against the noise of a large aerial: 0.14 dB at most
-LARGE_AERIAL_DBD, QUIET_SET_DB = 14.0, 3.0
+QUIET_SET_DB = 3.0
 ROUGH_SD_DB = 8.0  # of a path without terrain, before the factor for one method alone
 
 
@@ -83,7 +86,10 @@ def interferers_at(
     if not wanted or not far:
         return own
     weight = _closeness(wanted, far)
-    near = np.flatnonzero(weight.max(axis=1) > -np.inf)
+    at_most = field_strength_dbuv_m(
+        np.maximum(np.array([row[2] for row in far]), NEAREST_KM), _erp_towards_roof_kw(roof, far)
+    )
+    near = np.flatnonzero((weight.max(axis=1) > -np.inf) | _load(at_most, far))
     far, weight = [far[i] for i in near], weight[near]
     if not far:
         return own
@@ -92,11 +98,12 @@ def interferers_at(
     in_reach = (distance_km <= LAND_REACH_KM) | ((distance_km <= SEA_REACH_KM) & (sea >= 0.5))
     times = np.array([50.0, min(50.0, 100.0 - availability_percent)])
     bound = _without_terrain(roof, far, sea, times, _highest_m(far, ground))
-    kept = np.flatnonzero(in_reach & _matters(wanted, bound.max(axis=0), weight))
+    kept = np.flatnonzero(in_reach & (_matters(wanted, bound.max(axis=0), weight) | _load(bound.max(axis=0), far)))
     if not kept.size:
         return own
     rows, sea = [far[i] for i in kept], sea[kept]
-    strongest = _strongest_masts(rows, (bound.max(axis=0)[kept][:, None] + weight[kept]).max(axis=1))
+    counts = np.maximum(weight[kept].max(axis=1), ONLY_LOADS_DB)
+    strongest = _strongest_masts(rows, bound.max(axis=0)[kept] + counts)
     asked = [row for row in rows if row[1].id in strongest]
     answered = fields_at(roof, asked, ground, assumptions, availability_percent, method, refractivity_maps)
     over_ground = {field.emission.id: _of_field(field) for field in answered if field.path is not None}
@@ -223,6 +230,11 @@ def _matters(wanted: Sequence[EmissionField], bound_dbuv_m: FloatArray, weight: 
     needed = np.zeros(power.shape, dtype=bool)
     np.put_along_axis(needed, order, summed > 1, axis=0)
     return np.asarray(needed.any(axis=1))
+
+
+def _load(field_dbuv_m: FloatArray, far: Sequence[Found]) -> NDArray[np.bool_]:
+    """Whether an interferer loads an amplifier, whatever its channel. (far,)"""
+    return that_load(field_dbuv_m, np.array([row[0].frequency_mhz for row in far]))
 
 
 def _strongest_masts(rows: Sequence[Found], strength: FloatArray) -> set[str]:

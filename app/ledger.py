@@ -64,6 +64,7 @@ def books_of(turned: Turned, air: Air, request: AssessRequest, assumptions: Assu
             assumptions,
             request.roof.surroundings,
             load_dbuv_m=air.used_dbuv_m,
+            beside=air.beside,
         )
         for state, field in fields.items()
     }

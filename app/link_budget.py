@@ -16,9 +16,10 @@ from app.assumptions import Assumptions
 from app.at_aerial import AtAerial, at_aerial
 from app.chain import overload
 from app.chain.flow import Flow, OutletFlow, flow, settings
-from app.chain.parts import Aerial, Chain
+from app.chain.parts import Chain
 from app.errors import RequestError
 from app.levels import level_dbuv
+from app.loads import NOTHING_BESIDE, Beside, with_loads
 from app.mobile import mobile_blocks
 from propagation.noise import man_made_fam_db, noise_power_dbm
 from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
@@ -122,6 +123,7 @@ def receive(
     assumptions: Assumptions,
     surroundings: str = "open",
     load_dbuv_m: ArrayLike | None = None,
+    beside: Beside = NOTHING_BESIDE,
 ) -> Reception:
     """What a chain makes of every emission.
 
@@ -136,6 +138,8 @@ def receive(
     load_dbuv_m : array (…, e)
         Field that loads amplifiers and set, if it is another than the wanted one's: what fades does not
         unload them. None: the same.
+    beside : Beside
+        What loads them too, without being among the signals.
 
     References
     ----------
@@ -152,6 +156,7 @@ def receive(
         assumptions,
         outside_db,
         load_dbuv_m,
+        beside,
     )
 
 
@@ -164,9 +169,10 @@ def receive_with_noise(
     assumptions: Assumptions,
     external_fam_db: ArrayLike,
     load_dbuv_m: ArrayLike | None = None,
+    beside: Beside = NOTHING_BESIDE,
 ) -> Reception:
     """Return the same as `receive`, for a stated noise from outside over 290 K [dB], (e,) or scalar."""
-    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m)
+    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m, beside)
     outside = np.maximum(ratio_from_db(external_fam_db), 1) - 1
     best: Reception | None = None
     for setting in settings(chain):
@@ -184,7 +190,7 @@ class Heard:
 
     airs: tuple[AtAerial, ...]  # (a,)
     level_dbuv: dict[str, FloatArray]  # id of an aerial: (…, e)
-    load_dbuv: dict[str, FloatArray]  # id of an aerial: (…, f), the emissions first, then mobile blocks
+    load_dbuv: dict[str, FloatArray]  # id of an aerial: (…, f), the emissions first, then what else loads it
     load_frequency_mhz: FloatArray  # (f,)
 
 
@@ -196,10 +202,11 @@ def hear(
     polarisation: str,
     assumptions: Assumptions,
     load_dbuv_m: ArrayLike | None = None,
+    beside: Beside = NOTHING_BESIDE,
 ) -> Heard:
     """Levels that every aerial of a chain gives; arguments as those of `receive`."""
     blocks = mobile_blocks(assumptions)
-    frequency = np.concatenate([signals.frequency_mhz, blocks.frequency_mhz])
+    frequency = np.concatenate([signals.frequency_mhz, beside.frequency_mhz, blocks.frequency_mhz])
     level: dict[str, FloatArray] = {}
     load: dict[str, FloatArray] = {}
     airs: list[AtAerial] = []
@@ -218,20 +225,8 @@ def hear(
             if load_dbuv_m is None
             else level_dbuv(load_dbuv_m, air.gain_dbd, signals.frequency_mhz) - air.loss_db
         )
-        load[aerial.id] = _with_blocks(loaded, aerial, blocks.frequency_mhz, blocks.field_dbuv_m, assumptions)
+        load[aerial.id] = with_loads(loaded, aerial, pointing, rods, beside, blocks, assumptions)
     return Heard(tuple(airs), level, load, frequency)
-
-
-def _with_blocks(
-    level: FloatArray, aerial: Aerial, frequency_mhz: FloatArray, field_dbuv_m: FloatArray, assumptions: Assumptions
-) -> FloatArray:
-    """Append mobile blocks, which may come from anywhere, so from where the aerial points."""
-    if not frequency_mhz.size:
-        return level
-    nowhere = np.zeros(frequency_mhz.shape)
-    air = at_aerial(aerial, frequency_mhz, nowhere, ("mixed",) * nowhere.size, 0.0, "horizontal", assumptions)
-    added = level_dbuv(field_dbuv_m, air.gain_dbd, frequency_mhz) - air.covering_loss_db
-    return np.concatenate([level, np.broadcast_to(added, (*level.shape[:-1], added.size))], axis=-1)
 
 
 def summed_dbuv(levels: Mapping[str, FloatArray], gain: Mapping[str, FloatArray]) -> FloatArray:

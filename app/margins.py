@@ -128,6 +128,7 @@ def turn(
             assumptions,
             roof.surroundings,
             load_dbuv_m=air.used_dbuv_m,
+            beside=air.beside,
         )
         for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
     )
@@ -224,6 +225,7 @@ def _sweep(
             assumptions,
             roof.surroundings,
             load_dbuv_m=air.used_dbuv_m,
+            beside=air.beside,
         )
         effect = effect_of(ear, alone, left, state)
         reception = disturbed(alone, effect)

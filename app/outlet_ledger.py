@@ -24,6 +24,7 @@ from app.link_budget import (
     set_noise_figure_db,
     summed_dbuv,
 )
+from app.loads import NOTHING_BESIDE, Beside
 from propagation.noise import man_made_fam_db, noise_power_dbm
 from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
 
@@ -227,10 +228,11 @@ def book_of(
     assumptions: Assumptions,
     surroundings: str = "open",
     load_dbuv_m: ArrayLike | None = None,
+    beside: Beside = NOTHING_BESIDE,
 ) -> Book:
     """Gather what the ledgers of one chain need; arguments as those of `receive`, fields (e,) or scalar."""
     known = np.broadcast_to(np.asarray(field_dbuv_m, dtype=float), signals.frequency_mhz.shape)
-    heard = hear(chain, signals, known, pointing_deg, polarisation, assumptions, load_dbuv_m)
+    heard = hear(chain, signals, known, pointing_deg, polarisation, assumptions, load_dbuv_m, beside)
     fam_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
     outside = np.maximum(ratio_from_db(fam_db), 1) - 1
     runs = []
