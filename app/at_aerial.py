@@ -12,7 +12,7 @@ from app.assumptions import Assumptions
 from app.chain import aerial as response
 from app.chain.match import mismatch_loss_db
 from app.chain.parts import Aerial
-from app.chain.room import entry_loss
+from app.chain.room import entry_loss, room_loss_db
 from app.chain.stacking import Stack, stacked_gain_db, stacked_loss_db
 from app.levels import level_dbuv
 
@@ -87,16 +87,21 @@ def _covering_db(aerial: Aerial, frequency_mhz: FloatArray, assumptions: Assumpt
     return np.zeros(frequency_mhz.shape)
 
 
-def room_sd_db(aerial: Aerial, frequency_mhz: FloatArray) -> FloatArray:
-    """Spread of the entry loss round an aerial in a room [dB], (e,); 0 elsewhere.
+def room_error_db(
+    aerial: Aerial, frequency_mhz: FloatArray, deviates: FloatArray
+) -> tuple[FloatArray, FloatArray | None]:
+    """Spread of the entry loss round an aerial in a room [dB], (e,), and what it adds to a margin, (d, e) [dB].
 
-    Half the distance between the losses not reached and exceeded in 16 of 100 rooms (Rec. ITU-R P.2109-2), taken
-    as the standard deviation of a normal about the median: its long tail of very lossy rooms is cut short by that.
+    The second is that of the distribution (Rec. ITU-R P.2109-2) at normal deviates (d,), lossy rooms at the lower
+    end. The first, for where only a normal can be taken, is half the distance between the losses not reached and
+    exceeded in 16 of 100 rooms. Elsewhere 0 and None.
     """
     if aerial.place != "room" or not frequency_mhz.size:
-        return np.zeros(frequency_mhz.shape)
+        return np.zeros(frequency_mhz.shape), None
     loss = entry_loss(frequency_mhz, aerial.building)
-    return (loss.high_db - loss.low_db) / 2
+    return (loss.high_db - loss.low_db) / 2, loss.median_db - room_loss_db(
+        frequency_mhz, -deviates[:, np.newaxis], aerial.building
+    )
 
 
 def _mismatch_db(aerial: Aerial, frequency_mhz: FloatArray) -> FloatArray:

@@ -11,10 +11,12 @@ Between masts the path error has in common sqrt(rho) times a stationary field ov
 correlation exp(-|difference of bearing| / scale), so that two masts correlate by
 rho * exp(-|difference| / scale), the shorter way round.
 
-A single cell has the closed form Phi(median / sigma). Counts, alternatives and differences are taken
-over quasi-random draws: every key has its own stratified sample of the normal (a Latin hypercube,
-McKay, Beckman and Conover 1979, Technometrics 21), shuffled by a hash of the key, so adding an
-emission leaves all other draws as they were. Its cost beside the field: measured in tests/benchmarks.
+An error that is no normal (the walls round an aerial in a room) is mapped from one: z is replaced by a curve of z.
+
+A single cell has the closed form Phi(median / sigma), or its mean over that curve. Counts, alternatives
+and differences are taken over quasi-random draws: every key has its own stratified sample of the
+normal (a Latin hypercube, McKay, Beckman and Conover 1979, Technometrics 21), shuffled by a hash of the key, so
+adding an emission leaves all other draws as they were. Its cost beside the field: measured in tests/benchmarks.
 
 Readings replace the prior of the normals by a posterior (app/conditioning.py): Cells that carry one draw from it.
 """
@@ -34,6 +36,8 @@ from scipy.special import ndtr, ndtri
 FloatArray = NDArray[np.float64]
 
 DRAWS = 4096
+DEVIATES = np.linspace(-4, 4, 33)  # of the normal that an error which is none itself is mapped from
+_LIKELY = np.exp(-(DEVIATES**2) / 2) / np.exp(-(DEVIATES**2) / 2).sum()
 SEED = "gainworth-1"
 
 Grade = Literal["secure", "likely", "open", "doubtful"]
@@ -56,6 +60,7 @@ class ErrorPart:
 
     keys: tuple[str, ...]  # (e,) the name of the normal that moves each emission
     sd_db: FloatArray  # (e,) 0 where it does not apply; below 0 where the error lowers the margin as it rises
+    curve_db: FloatArray | None = None  # (d, e) what an error that is no normal adds at each of DEVIATES
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,7 +133,12 @@ class Cells:
         if self.known is not None and not self.known.is_normal:
             chance: FloatArray = (self.draws() >= 0).mean(axis=0)
             return chance
-        return exceedance(self.mean_db, self.sigma_db)
+        return exceedance_through(self.mean_db, self.sigma_db, self.curved)
+
+    @property
+    def curved(self) -> ErrorPart | None:
+        """The part that is no normal; None once readings have made every error part of one normal."""
+        return None if self.known else next((part for part in self.parts if part.curve_db is not None), None)
 
     def loadings(self) -> Loadings:
         """Every named normal of these margins; the field over bearing by its white noise at whole degrees."""
@@ -161,9 +171,12 @@ class Cells:
         for e, (mast, bearing) in enumerate(zip(self.path.masts, self.path.bearing_deg, strict=True)):
             along = bearing_field(float(bearing), self.path.scale_deg)
             margins[:, e] += self.path.sd_db[e] * (common * along + own * normals(f"path:{mast}"))
+        curved = self.curved
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] != 0:  # below 0: what disturbs lowers the margin as it rises
+                if part is curved and part.curve_db is not None:
+                    margins[:, e] += np.interp(normals(key), DEVIATES, part.curve_db[:, e])
+                elif part.sd_db[e] != 0:  # below 0: what disturbs lowers the margin as it rises
                     margins[:, e] += part.sd_db[e] * normals(key)
         return margins if self.known is None else self.known.applied(margins, self.loadings())
 
@@ -174,6 +187,17 @@ def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
         score = np.where(sigma_db > 0, median_db / sigma_db, np.where(median_db >= 0, np.inf, -np.inf))
     result: FloatArray = ndtr(score)
     return result
+
+
+def exceedance_through(median_db: FloatArray, sigma_db: FloatArray, curved: ErrorPart | None) -> FloatArray:
+    """Return the same where one part of the spread (…, e) is no normal: the mean over what that part may be."""
+    if curved is None or curved.curve_db is None:
+        return exceedance(median_db, sigma_db)
+    rest_db = np.sqrt(np.maximum(sigma_db**2 - curved.sd_db**2, 0))
+    chances = (
+        share * exceedance(median_db + moved, rest_db) for share, moved in zip(_LIKELY, curved.curve_db, strict=True)
+    )
+    return sum(chances, np.zeros(np.shape(median_db)))
 
 
 def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: FloatArray) -> FloatArray:

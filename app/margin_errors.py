@@ -7,9 +7,9 @@ from numpy.typing import NDArray
 
 from app.air import Air
 from app.assumptions import Assumptions
-from app.at_aerial import room_sd_db
+from app.at_aerial import room_error_db
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import ErrorPart, PathError
+from app.chance import DEVIATES, ErrorPart, PathError
 from app.disturbance_errors import Disturbers, Moved, disturbers_of
 from app.link_budget import Reception
 
@@ -71,7 +71,8 @@ def parts_of(
             sd_db = np.maximum(sd_db - moved.band_off_db, 0.0)
         if kind == "fade":
             sd_db = np.where(state_b, 0.0, sd_db)
-        own.append(ErrorPart(keys, sd_db))
+        curve_db = None if part.curve_db is None else moved.leader_share * part.curve_db[:, moved.leader]
+        own.append(ErrorPart(keys, sd_db, curve_db))
     return (*own, rejection, *moved.parts)
 
 
@@ -104,7 +105,7 @@ def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> 
             assumptions.value("aerial_gain_sd_db" if aerial.measured else "aerial_own_build_sd_db"),
         ),
         same("feeder:" + "+".join(chain.part_ids_of_feeders), assumptions.value("feeder_sd_db")),
-        ErrorPart(("room",) * len(ids), room_sd_db(aerial, air.signals.frequency_mhz)),
+        ErrorPart(("room",) * len(ids), *room_error_db(aerial, air.signals.frequency_mhz, DEVIATES)),
     )
 
 

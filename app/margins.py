@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
-from app.chance import Cells, Knowledge, capped, exceedance, not_too_much, received
+from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received
 from app.disturbance import Company, Effect, State, disturbed, ear_of, effect_of
 from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread
 from app.link_budget import Reception, is_overload, receive
@@ -238,7 +238,7 @@ def _sweep(
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
-    enough = exceedance(margin + fixed.mean_db, sigma_db)
+    enough = exceedance_through(margin + fixed.mean_db, sigma_db, fixed.curved)
     return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db)), lost)
 
 
