@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -11,11 +12,13 @@ from app.air import SAME_MAST_KM, Air
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade, not_too_much
+from app.disturbance import State
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
-from app.ledger import Books, books_of, ledger
+from app.ledger import Books, books_of, ledger, to_the_field
 from app.margins import FloatArray, Turned
+from app.outlet_ledger import Step
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest
@@ -53,7 +56,7 @@ def answer_document(
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
-    spreads = {key: (one.cells.sigma_db, one.cells.mean_db - one.cells.median_db) for key, one in turned.items()}
+    spreads = {key: _spread(one) for key, one in turned.items()}
     books = {key: books_of(one, air, request, assumptions) for key, one in turned.items()}
     return {
         "roof": {
@@ -79,9 +82,25 @@ def answer_document(
         "verdicts": [_verdict(verdict) for verdict in verdicts],
         "readings": readings_document(evidence),
         "assumptions": assumptions.document(),
-        "cautions": [*_cautions(request, site, store, fields, air), *CAUTIONS],
+        "cautions": [*_cautions(request, site, store, fields, air, chains), *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
     }
+
+
+@dataclass(frozen=True, slots=True)
+class Spread:
+    """Errors and chances of one chain turned one way, reckoned once for all its outlets."""
+
+    sigma_db: FloatArray  # (e,)
+    read_db: FloatArray  # (e,) by how much readings moved the margin
+    chance: FloatArray  # (e,) that the margin is at least 0
+    loudest_sd_db: float
+
+
+def _spread(turned: Turned) -> Spread:
+    cells, sigma_db = turned.cells, turned.cells.sigma_db
+    loudest_sd_db = float(turned.median.of_loudest(sigma_db)[0])
+    return Spread(sigma_db, cells.mean_db - cells.median_db, cells.chance, loudest_sd_db)
 
 
 def _multiplex_cell(name: str, m: int, outcome: Outcome, turned: Turned, air: Air) -> dict[str, Any]:
@@ -102,12 +121,13 @@ def _emission(
     fields: Sequence[EmissionField],
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
-    spreads: Mapping[str, tuple[FloatArray, FloatArray]],
+    spreads: Mapping[str, Spread],
     air: Air,
     books: Mapping[str, Books],
 ) -> dict[str, Any]:
     emission, path = field.emission, field.path
     e = place.get(emission.id)
+    before: dict[State, list[Step]] = {} if e is None else to_the_field(field, request.availability_percent)
     return {
         "id": emission.id,
         "transmitter": field.transmitter.id,
@@ -156,28 +176,31 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, spreads[name], e, field, air, books[name]) for name, one in turned.items()},
+        else {name: _cell(one, spreads[name], e, field, air, books[name], before) for name, one in turned.items()},
     }
 
 
 def _cell(
-    request: AssessRequest,
     turned: Turned,
-    spread: tuple[FloatArray, FloatArray],
+    spread: Spread,
     e: int,
     field: EmissionField,
     air: Air,
     books: Books,
+    before: Mapping[State, Sequence[Step]],
 ) -> dict[str, Any]:
-    sigma_db, read_db = (float(one[e]) for one in spread)  # the second: by how much readings moved the margin
+    sigma_db, read_db = float(spread.sigma_db[e]), float(spread.read_db[e])
     limit = _limit(turned, e)
-    loudest_sd_db = turned.median.of_loudest(turned.cells.sigma_db)[0]
+    loudest_sd_db = np.array(spread.loudest_sd_db)
     reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
     for number, (outlet, median) in enumerate(zip(reception.outlets, turned.median.outlets, strict=True)):
         margin_db = float(outlet.margin_db[e]) + read_db
         headroom_db = float(median.headroom_db[e])
-        enough = _outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)
+        at_worst = float(outlet.margin_db[e]) == float(turned.margin_db[e])
+        enough = float(spread.chance[e])
+        if not at_worst:  # better off than the outlet that decides
+            enough = max(enough, float(exceedance(np.array(margin_db), np.array(sigma_db))))
         outlets.append(
             {
                 "name": outlet.name,
@@ -190,7 +213,7 @@ def _cell(
                 "chance": _probability(float(not_too_much(np.array(enough), np.array(headroom_db), loudest_sd_db))),
                 "held_back_by": _limit(turned, e, number),
                 "ledger": [
-                    *ledger(request, turned, e, field, air, books, outlet.name),
+                    *ledger(turned, e, field, air, books, outlet.name, before),
                     *_ledger_of_readings(turned, e, read_db, margin_db),
                 ],
             }
@@ -205,14 +228,6 @@ def _cell(
         "held_back_by": limit,
         "outlets": outlets,
     }
-
-
-def _outlet_chance(turned: Turned, e: int, unread_db: float, margin_db: float, sigma_db: float) -> float:
-    """Chance at one outlet: that of the chain where it decides, in closed form where it is better off."""
-    decides = float(turned.cells.chance[e])
-    if unread_db == float(turned.margin_db[e]):
-        return decides
-    return max(decides, float(exceedance(np.array(margin_db), np.array(sigma_db))))
 
 
 def _ledger_of_readings(turned: Turned, e: int, read_db: float, margin_db: float) -> list[dict[str, Any]]:
@@ -308,7 +323,9 @@ def _disturbed_by(e: int, air: Air) -> list[str]:
     return [f"{one.transmitter.name} at {one.bearing_deg:.0f}° uses this channel too" for one in ones[:SHOWN_NAMES]]
 
 
-def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air) -> list[str]:
+def _cautions(
+    request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air, chains: Sequence[Chain]
+) -> list[str]:
     cautions = list(site.cautions)
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
@@ -333,6 +350,12 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             "Take one import out with `gainworth transmitters remove SOURCE`."
         )
     cautions += air.company.cautions
+    double = [chain.name for chain in chains if len(chain.aerials) > 1]
+    if double and air.company.pairs.disturber.size:
+        cautions.append(
+            f"Interference through {', '.join(double)} is reckoned with the pattern and pointing of the first aerial, "
+            "also for what another aerial receives."
+        )
     rough = sorted({one.transmitter.name for one in air.company.interferers if not one.over_ground})
     if rough:
         names = ", ".join(rough[:SHOWN_NAMES]) + (

@@ -10,7 +10,7 @@ behind the aerial it does to both.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 import numpy as np
@@ -192,6 +192,7 @@ class Effect:
     useful: FloatArray  # (…, e) useful share of each member's own power; 1 outside networks
     stray: FloatArray  # (…, e) power of each member that disturbs its own network; 0 outside networks
     cn_db: FloatArray  # (…, e) C/N at the deciding outlet with the network's gain, before interference
+    told: dict[int, tuple[NDArray[np.intp], FloatArray]] = field(default_factory=dict)  # contributions, once reckoned
 
     @property
     def i_over_n(self) -> FloatArray:
@@ -200,6 +201,11 @@ class Effect:
 
     def contributions(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
         """Interferers of one wanted emission and their power over its carrier (linear), strongest first. (k,)"""
+        if e not in self.told:
+            self.told[e] = self._contributions(company, e)
+        return self.told[e]
+
+    def _contributions(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
         weights = company.weights[self.state]
         row = slice(weights.indptr[e], weights.indptr[e + 1])
         who = weights.indices[row]
@@ -283,8 +289,8 @@ def _window(ear: Ear) -> network.Window:
 def _networks(wanted: Sequence[EmissionField]) -> tuple[list[Network], list[str]]:
     """Networks among the wanted emissions: one content, one frequency, one mode, several masts."""
     groups: dict[tuple[str, float, float], list[int]] = {}
-    for e, field in enumerate(wanted):
-        key = (field.emission.multiplex_id, round(field.emission.frequency_mhz, 3), field.emission.bandwidth_mhz)
+    for e, sent in enumerate(wanted):
+        key = (sent.emission.multiplex_id, round(sent.emission.frequency_mhz, 3), sent.emission.bandwidth_mhz)
         groups.setdefault(key, []).append(e)
     networks: list[Network] = []
     cautions: list[str] = []

@@ -13,7 +13,7 @@ ratios decides; a pair without a row takes the row of any pair, and says so.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cache
 
 import numpy as np
@@ -48,6 +48,7 @@ class Pairs:
     tropospheric_db: FloatArray  # the same for what rises for a small share of the time
     rule: tuple[str, ...]  # where the ratio is from, for people
     shape: tuple[int, int]  # disturbers, wanted
+    told: dict[int, dict[int, str]] = field(default_factory=dict)  # rules by wanted and disturber, once looked up
 
     def weights(self, tropospheric: bool) -> csr_array:
         """Factor by which each disturber's power counts, (wanted, disturbers), sparse."""
@@ -58,6 +59,12 @@ class Pairs:
         """Return the entries that disturb one wanted emission."""
         first, end = np.searchsorted(self.wanted, [e, e + 1])
         return range(int(first), int(end))
+
+    def rule_of(self, i: int, e: int) -> str | None:
+        """Where the ratio of one pair is from; None: the one does not disturb the other."""
+        if e not in self.told:
+            self.told[e] = {int(self.disturber[k]): self.rule[k] for k in reversed(self.of_wanted(e))}
+        return self.told[e].get(i)
 
 
 @dataclass(frozen=True, slots=True)

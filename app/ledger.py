@@ -18,37 +18,47 @@ from app.request import AssessRequest
 
 METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
 NEEDED = "C/N that the mode needs"  # the step of the link budget before which interference counts
+Line = tuple[str, float, str]  # step, value in dB, source
 Books = Mapping[State, Book]  # of one chain, by time state
 NAMED = 3  # interferers with a line of their own
 
 
 def ledger(
-    request: AssessRequest,
     turned: Turned,
     e: int,
     field: EmissionField,
     air: Air,
     books: Books,
     outlet: str,
+    before: Mapping[State, Sequence[Step]],
 ) -> list[dict[str, Any]]:
-    """Steps of one emission to one outlet, the state that decides last; each state ends with its margin."""
+    """Steps of one emission to one outlet, the state that decides last; each state ends with its margin.
+
+    `before` is `to_the_field` of the emission, the same for all chains and outlets.
+    """
     rows: list[dict[str, Any]] = []
-    behind: list[Step] = []
+    behind: list[Line] = []
     states = sorted(STATES, key=lambda one: one == turned.state(e))
     for state in states:
-        faded_db = field.fade_db if state == "a" else 0.0
-        before = _to_the_field(field, request.availability_percent, faded_db, state)
         if not behind or not _alike(turned, e, field.fade_db):
-            behind = books[state].steps(e, outlet)[1:]  # the first is the field, which the steps before end with
+            behind = books[state].values(e, outlet)[1:]  # the first is the field, which the steps before end with
         reception = turned.raised if state == "b" else turned.faded
-        place = [one.name for one in reception.outlets].index(outlet)
-        at = next(k for k, step in enumerate(behind) if step.step == NEEDED)
-        cn_db = before[-1].total + sum(step.value_db for step in behind[:at])
-        change_db = float(reception.outlets[place].cn_db[e]) - cn_db
-        lines = [(step.step, step.value_db, step.source) for step in behind]
-        lines[at:at] = _company_lines(turned.effects[state], air.company, e, state, change_db)
-        rows += [_row(step, state) for step in (*before, *_summed(lines, before[-1].total))]
+        place = next(one for one in reception.outlets if one.name == outlet)
+        at = next(k for k, line in enumerate(behind) if line[0] == NEEDED)
+        total = before[state][-1].total
+        change_db = float(place.cn_db[e]) - total - sum(line[1] for line in behind[:at])
+        company = _company_lines(turned.effects[state], air.company, e, state, change_db)
+        rows += [_row(step.step, step.value_db, step.total, step.source, state) for step in before[state]]
+        for name, value_db, source in (*behind[:at], *company, *behind[at:]):
+            total += value_db
+            rows.append(_row(name, value_db, total, source, state))
     return rows
+
+
+def to_the_field(field: EmissionField, availability_percent: int) -> dict[State, list[Step]]:
+    """Steps from the radiated power to the field at the aerial, in both time states."""
+    faded: dict[State, float] = {"a": field.fade_db, "b": 0.0}
+    return {state: _to_the_field(field, availability_percent, faded_db, state) for state, faded_db in faded.items()}
 
 
 def books_of(turned: Turned, air: Air, request: AssessRequest, assumptions: Assumptions) -> Books:
@@ -76,12 +86,12 @@ def _alike(turned: Turned, e: int, fade_db: float) -> bool:
     return bool(abs(alone["b"] - alone["a"] - fade_db) < 1e-9)
 
 
-def _row(step: Step, state: State) -> dict[str, Any]:
+def _row(step: str, value_db: float, total: float, source: str, state: State) -> dict[str, Any]:
     return {
-        "step": step.step,
-        "value_db": round(step.value_db, 2) + 0.0,
-        "total": round(step.total, 2) + 0.0,
-        "source": step.source,
+        "step": step,
+        "value_db": round(value_db, 2) + 0.0,
+        "total": round(total, 2) + 0.0,
+        "source": source,
         "state": state,
     }
 
@@ -186,9 +196,7 @@ def _named(company: Company, i: int) -> str:
 
 
 def _rule(company: Company, i: int, e: int, state: State) -> str:
-    pairs = company.pairs
-    found = [pairs.rule[k] for k in pairs.of_wanted(e) if pairs.disturber[k] == i]
-    rule = found[0] if found else "arrives outside the guard interval of its own network"
+    rule = company.pairs.rule_of(i, e) or "arrives outside the guard interval of its own network"
     time = "risen" if state == "b" else "at its median"
     ground = (
         "" if company.interferers[i].over_ground else "; no ground on its path: Rec. ITU-R P.1546-6 without terrain"

@@ -70,7 +70,7 @@ class Turned:
         place = self.median if outlet is None else self.median.outlets[outlet]
         if is_overload(place)[e]:
             return HeldBack("overload", state, None, None)
-        if float(effect.i_over_n[e]) > 1:
+        if float(effect.i_over_c[e] * 10 ** (effect.cn_db[e] / 10)) > 1:
             return HeldBack("interference", state, *effect.strongest(self.company, e))
         by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
         return HeldBack("time" if by_time else "noise", state, None, None)

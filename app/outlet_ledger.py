@@ -63,6 +63,15 @@ class Book:
 
         `outlet` None: the one with the least margin of those that count.
         """
+        steps: list[Step] = []
+        total = 0.0
+        for name, value_db, source in self.values(index, outlet):
+            total += value_db
+            steps.append(Step(name, value_db, total, source))
+        return steps
+
+    def values(self, index: int, outlet: str | None = None) -> list[tuple[str, float, str]]:
+        """Return the same steps without their totals: name, value in dB, source."""
         number, run, reached = self._best(index)
         names = [one.name for one in reached]
         if outlet is None:
@@ -82,13 +91,7 @@ class Book:
             ("C/N that the mode needs", -self.signals.required_cn_db[index : index + 1], needed),
             ("reserve", np.array([-self.assumptions.value("reserve_db")]), "assumption reserve_db"),
         ]
-        steps: list[Step] = []
-        total = 0.0
-        for name, value, source in lines:
-            value_db = float(value.reshape(-1)[0]) + 0.0  # no negative zero
-            total += value_db
-            steps.append(Step(name, value_db, total, source))
-        return steps
+        return [(name, float(value.flat[0]) + 0.0, source) for name, value, source in lines]  # no negative zero
 
     def _best(self, index: int) -> tuple[int, Flow, tuple[AtOutlet, ...]]:
         """Return the setting of the switches that serves an emission best."""

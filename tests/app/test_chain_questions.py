@@ -7,7 +7,7 @@ from fastapi.testclient import TestClient
 from typer.testing import CliRunner
 
 from app.chain.document import chain_from_document, chain_to_document
-from app.chain.parts import MastheadAmplifier, PowerInserter
+from app.chain.parts import Combiner, MastheadAmplifier, PowerInserter
 from app.chain_file import import_text
 from app.cheapest import Wish, cheapest_document, pareto
 from app.cli import main
@@ -179,6 +179,16 @@ def test_second_aerial_is_told_in_a_sentence(sweeps):
     assert {"one", "combiner", "switch", "best", "sentence"} == set(both)
     assert len(both["switch"]["pointings_deg"]) == 2
     assert both["switch"]["expected_count"] >= both["one"]["expected_count"] - 0.6
+
+
+def test_answer_says_how_interference_is_reckoned_with_two_aerials(demo_world):
+    one = stored_chain(demo_world.store, "roof-yagi")
+    two = doubled(one, Combiner(id="joint", name="Combiner"))
+    cautions = [
+        assess(AssessRequest(NORTH, chains=[chain]), demo_world.store, demo_world.ground)["cautions"]
+        for chain in (one, two)
+    ]
+    assert ["first aerial" in " ".join(words) for words in cautions] == [False, True]
 
 
 def test_doubled_chain_is_a_chain_that_documents_carry(demo_world):
