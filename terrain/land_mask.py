@@ -44,10 +44,33 @@ def is_sea(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> NDArray[np.bool
 
 def has_land(south: float, west: float, north: float, east: float) -> bool:
     """Whether any cell of a box [deg] is land; its east may lie beyond 180."""
-    rows = np.arange(np.floor((90 - north) * CELLS_PER_DEGREE), np.ceil((90 - south) * CELLS_PER_DEGREE)) + 0.5
-    columns = np.arange(np.floor(west * CELLS_PER_DEGREE), np.ceil(east * CELLS_PER_DEGREE)) + 0.5
-    lat, lon = np.meshgrid(90 - rows / CELLS_PER_DEGREE, columns / CELLS_PER_DEGREE, indexing="ij")
-    return bool(is_land(np.clip(lat, -90, 90), lon).any())
+    first, last = (int(np.floor((90 - side) * CELLS_PER_DEGREE)) for side in (north, south))
+    row = np.arange(max(0, first), min(ROWS - 1, last) + 1, dtype=np.int64) * COLUMNS
+    start = int(np.floor((west + 180) * CELLS_PER_DEGREE)) % COLUMNS
+    end = start + int(np.ceil((east - west) * CELLS_PER_DEGREE))
+    spans = [(start, min(end, COLUMNS - 1))] + ([(0, end - COLUMNS)] if end >= COLUMNS else [])
+    for left, right in spans:
+        begins = np.searchsorted(_turns(), row)
+        at_left, at_right = (np.searchsorted(_turns(), row + column, side="right") for column in (left, right))
+        # Land at the left side, or a shore on the way to the right one.
+        if ((at_left - begins) % 2 == 1).any() or (at_right > at_left).any():
+            return True
+    return False
+
+
+def near_sea(latitude_deg: ArrayLike, longitude_deg: ArrayLike, within_km: float = 5.0) -> NDArray[np.bool_]:
+    """Whether the sea lies at positions or, in one of eight directions, `within_km` from them."""
+    lat, lon = np.broadcast_arrays(np.asarray(latitude_deg, dtype=float), np.asarray(longitude_deg, dtype=float))
+    near = is_sea(lat, lon)
+    bearing = np.arange(8) * np.pi / 4
+    for share in (0.5, 1.0):
+        north = share * within_km / 111.2 * np.cos(bearing)
+        east = share * within_km / 111.2 * np.sin(bearing)
+        for n, e in zip(north, east, strict=True):
+            with np.errstate(invalid="ignore"):
+                beside = lat + n, lon + e / np.maximum(0.02, np.cos(np.deg2rad(lat)))
+            near = near | is_sea(*beside)
+    return np.asarray(near)
 
 
 @cache

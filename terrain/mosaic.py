@@ -73,7 +73,7 @@ class Ground:
         """
         cache = ArrayCache(cache_dir)
         layers, refused, seen = [], [], set()
-        for path in _files(paths):
+        for path in raster_files(paths):
             try:
                 raster = open_raster(path)
             except RasterError as error:
@@ -333,12 +333,16 @@ class _Answer:
     bridged: NDArray[np.bool_]  # (n,) across a small void
 
 
-def _files(paths: Sequence[Path]) -> list[Path]:
-    """Files as named, and in folders those that are named like rasters, at any depth."""
+def raster_files(paths: Sequence[Path], suffixes: tuple[str, ...] = SUFFIXES) -> list[Path]:
+    """Files as named, and in folders those that are named like rasters, at any depth.
+
+    Folders whose name begins with a dot are passed over: what is still coming in lies there.
+    """
     files: list[Path] = []
     for path in paths:
         if path.is_dir():
-            files += sorted(p for p in path.rglob("*") if p.name.lower().endswith(SUFFIXES) and p.is_file())
+            found = (p for p in path.rglob("*") if p.name.lower().endswith(suffixes) and p.is_file())
+            files += sorted(p for p in found if not any(part[0] == "." for part in p.relative_to(path).parts[:-1]))
         else:
             files.append(path)
     return list(dict.fromkeys(files))

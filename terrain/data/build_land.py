@@ -27,7 +27,8 @@ def polygons(topology: dict[str, Any]) -> list[dict[str, Any]]:
 
     def ring(numbers: list[int]) -> list[list[float]]:
         parts = [arcs[n] if n >= 0 else arcs[~n][::-1] for n in numbers]
-        return np.vstack([parts[0], *(part[1:] for part in parts[1:])]).tolist()
+        joined: list[list[float]] = np.vstack([parts[0], *(part[1:] for part in parts[1:])]).tolist()
+        return joined
 
     (geometry,) = topology["objects"]["land"]["geometries"]
     rings = [[ring(numbers) for numbers in one] for one in geometry["arcs"]]
@@ -36,6 +37,7 @@ def polygons(topology: dict[str, Any]) -> list[dict[str, Any]]:
 
 
 def main(source: Path) -> None:
+    """Write land.npz."""
     shapes = polygons(json.loads(source.read_text()))
     counts, columns = [], []
     for first in range(0, ROWS, STRIP):
