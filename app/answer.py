@@ -246,7 +246,7 @@ def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[di
         f"fade that {availability_percent} % of the time stays above",
         -field.fade_db,
         f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90; "
-        f"where this emission disturbs, it rises by {field.enhancement_db:.1f} dB instead",
+        f"where this emission disturbs, it rises by {field.enhancement_db:.2f} dB instead",
     )
     return rows
 
@@ -257,8 +257,8 @@ def _method_source(field: EmissionField) -> str:
     if field.difference_db is None:
         return f"{source}: {field.method_reason}"
     return (
-        f"{source}; P.1812 {field.p1812_dbuv_m:.1f}, P.1546 {field.p1546_dbuv_m:.1f} dB(µV/m), "
-        f"difference {field.difference_db:+.1f} dB"
+        f"{source}; P.1812 {field.p1812_dbuv_m:.2f}, P.1546 {field.p1546_dbuv_m:.2f} dB(µV/m), "
+        f"difference {field.difference_db:+.2f} dB"
     )
 
 

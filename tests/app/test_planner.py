@@ -225,3 +225,15 @@ def stored_chain_of_nothing():
     from app.chain.document import chain_from_document
 
     return chain_from_document({"name": "empty", "parts": []})
+
+
+def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
+    for emission in ask(now="roof-yagi")["emissions"]:
+        field = emission["field"]
+        ledger = emission["chains"]["roof-yagi"]["outlets"][0]["ledger"]
+        ground = next(row for row in ledger if row["step"].startswith("ground and atmosphere"))
+        fade = next(row for row in ledger if row["step"].startswith("fade"))
+        assert f"P.1812 {field['p1812_dbuv_m']:.2f}, P.1546 {field['p1546_dbuv_m']:.2f}" in ground["source"]
+        assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
+        assert fade["value_db"] == -field["fade_db"]
+        assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]
