@@ -23,8 +23,8 @@ from rasterio.windows import Window
 from terrain import raster
 from terrain.cache import ArrayCache
 from terrain.errors import RasterError
+from terrain.files import Refused, raster_files
 from terrain.grid import Grid
-from terrain.mosaic import Refused, raster_files
 
 FloatArray = NDArray[np.float64]
 CodeArray = NDArray[np.uint8]

@@ -12,6 +12,8 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from terrain.grid import Grid
+
 CELLS_PER_DEGREE = 120  # 30 arc-seconds
 ROWS, COLUMNS = 180 * CELLS_PER_DEGREE, 360 * CELLS_PER_DEGREE
 
@@ -71,6 +73,15 @@ def near_sea(latitude_deg: ArrayLike, longitude_deg: ArrayLike, within_km: float
                 beside = lat + n, lon + e / np.maximum(0.02, np.cos(np.deg2rad(lat)))
             near = near | is_sea(*beside)
     return np.asarray(near)
+
+
+def shore_of_grid(grid: Grid, top: int, left: int, rows: int, columns: int, within_km: float) -> NDArray[np.bool_]:
+    """`near_sea` for a window (rows, columns) of a raster's samples, looked up about every 0.5 km."""
+    step = max(1, int(500 / grid.spacing_m))
+    row, column = np.arange(0, rows, step), np.arange(0, columns, step)
+    lat, lon = grid.position(*np.meshgrid(row + float(top), column + float(left), indexing="ij"))
+    near = near_sea(lat, lon, within_km)
+    return near.repeat(step, axis=0).repeat(step, axis=1)[:rows, :columns]
 
 
 @cache

@@ -14,8 +14,10 @@ from terrain.bilinear import ROUNDING, bilinear
 from terrain.blocks import COARSE, Blocks
 from terrain.cache import ArrayCache
 from terrain.errors import RasterError
+from terrain.files import Refused, raster_files
 from terrain.grid import Grid
-from terrain.raster import SUFFIXES, Raster, open_raster
+from terrain.overlay import Overlay
+from terrain.raster import Raster, open_raster
 
 FloatArray = NDArray[np.float64]
 
@@ -38,14 +40,6 @@ class RasterInfo:
 
 
 @dataclass(frozen=True, slots=True)
-class Refused:
-    """A file that is no part of the ground, and what to do about it."""
-
-    path: Path
-    message: str
-
-
-@dataclass(frozen=True, slots=True)
 class _Layer:
     raster: Raster
     blocks: Blocks
@@ -60,16 +54,18 @@ class Ground:
     across the seam take their corners from both; at an outer edge the last sample holds for half a cell.
     """
 
-    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused]) -> None:
+    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused], overlay: Overlay | None = None) -> None:
         self._layers = tuple(layers)
         self.refused = tuple(refused)
+        self.overlay = overlay
 
     @classmethod
-    def open(cls, paths: Sequence[Path], cache_dir: Path) -> Ground:
+    def open(cls, paths: Sequence[Path], cache_dir: Path, overlay: Overlay | None = None) -> Ground:
         """Ground of files and of the rasters in folders; what cannot be used stands in `refused`.
 
         In a folder, files with other names than rasters have are passed over; a file named itself is
         always tried. Decoded samples are kept in `cache_dir`, or in a temporary folder if that is read-only.
+        With an overlay, what no raster knows is sea where the coastline says so, and land cover has its say.
         """
         cache = ArrayCache(cache_dir)
         layers, refused, seen = [], [], set()
@@ -82,9 +78,9 @@ class Ground:
             identity = (raster.content, raster.grid.transform, raster.crs)
             if identity not in seen:
                 seen.add(identity)
-                layers.append(_Layer(raster, Blocks(raster, cache)))
+                layers.append(_Layer(raster, Blocks(raster, cache, coast=overlay is not None)))
         layers.sort(key=lambda layer: (round(layer.raster.grid.spacing_m, 1), layer.raster.name))
-        return cls(layers, refused)
+        return cls(layers, refused, overlay)
 
     @property
     def rasters(self) -> tuple[RasterInfo, ...]:
@@ -114,6 +110,8 @@ class Ground:
         for layer in self._layers:
             raster = layer.raster
             digest.update(f"{raster.content} {raster.kind} {raster.crs} {tuple(raster.grid.transform)}\n".encode())
+        if self.overlay is not None:
+            digest.update(self.overlay.version.encode())
         return digest.hexdigest()[:12]
 
     def survey(self) -> Ground:
@@ -125,7 +123,7 @@ class Ground:
                 layers.append(layer)
             except RasterError as error:
                 refused.append(Refused(layer.raster.path, str(error)))
-        return Ground(layers, refused)
+        return Ground(layers, refused, self.overlay)
 
     def elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> FloatArray:
         """Height above sea level [m], bilinear between samples; NaN where no raster has a value.
@@ -134,7 +132,8 @@ class Ground:
         Raises RasterError for a damaged file and CacheError if decoded samples cannot be kept.
         """
         lat, lon = _positions(latitude_deg, longitude_deg)
-        return self._answer(lat.ravel(), lon.ravel()).height_m.reshape(lat.shape)
+        height_m = self._answer(lat.ravel(), lon.ravel()).height_m.reshape(lat.shape)
+        return height_m if self.overlay is None else self.overlay.filled(lat, lon, height_m)
 
     def spacing_m(self, latitude_deg: float, longitude_deg: float) -> float:
         """Spacing of the raster that answers at a position [m]; NaN where none does."""
@@ -152,17 +151,20 @@ class Ground:
 
         The raster that answers for the elevation decides; a missing sample is not water.
         """
-        lat, lon = _positions(latitude_deg, longitude_deg)
-        return self._water(self._answer(lat.ravel(), lon.ravel()), lat.ravel(), lon.ravel()).reshape(lat.shape)
+        return self.elevation_and_water(latitude_deg, longitude_deg)[1]
 
     def elevation_and_water(
         self, latitude_deg: ArrayLike, longitude_deg: ArrayLike
     ) -> tuple[FloatArray, NDArray[np.bool_]]:
         """`elevation_m` and `is_water` of the same positions for little more than one of them."""
         lat, lon = _positions(latitude_deg, longitude_deg)
-        answer = self._answer(lat.ravel(), lon.ravel())
-        water = self._water(answer, lat.ravel(), lon.ravel())
-        return answer.height_m.reshape(lat.shape), water.reshape(lat.shape)
+        flat_lat, flat_lon = lat.ravel(), lon.ravel()
+        answer = self._answer(flat_lat, flat_lon)
+        height_m, water = answer.height_m, self._water(answer, flat_lat, flat_lon)
+        if self.overlay is not None:
+            water = self.overlay.sea(flat_lat, flat_lon, height_m, water)
+            height_m = self.overlay.filled(flat_lat, flat_lon, height_m)
+        return height_m.reshape(lat.shape), water.reshape(lat.shape)
 
     def mean_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
         """Mean heights [m] of cells of at most `cell_m` that hold the positions, for wide views.
@@ -331,21 +333,6 @@ class _Answer:
     height_m: FloatArray  # (n,) NaN where missing
     layer: NDArray[np.intp]  # (n,) which raster answered, -1 for none
     bridged: NDArray[np.bool_]  # (n,) across a small void
-
-
-def raster_files(paths: Sequence[Path], suffixes: tuple[str, ...] = SUFFIXES) -> list[Path]:
-    """Files as named, and in folders those that are named like rasters, at any depth.
-
-    Folders whose name begins with a dot are passed over: what is still coming in lies there.
-    """
-    files: list[Path] = []
-    for path in paths:
-        if path.is_dir():
-            found = (p for p in path.rglob("*") if p.name.lower().endswith(suffixes) and p.is_file())
-            files += sorted(p for p in found if not any(part[0] == "." for part in p.relative_to(path).parts[:-1]))
-        else:
-            files.append(path)
-    return list(dict.fromkeys(files))
 
 
 def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[FloatArray, FloatArray]:
