@@ -25,9 +25,11 @@ main = typer.Typer(
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
 terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
+cover = typer.Typer(help="Land-cover maps.", no_args_is_help=True)
 chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
+main.add_typer(cover, name="cover")
 main.add_typer(chains, name="chains")
 
 Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
@@ -55,6 +57,16 @@ def _pair(text: str, what: str, example: str) -> tuple[float, float]:
     except ValueError:
         raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
     return first, second
+
+
+def _place(text: str) -> tuple[float, float]:
+    """A position in any usual writing; what looks swapped is asked on the way."""
+    from app.position import parse_position
+
+    position = parse_position(text)
+    if position.question is not None:
+        typer.echo(f"Caution: {position.question}", err=True)
+    return position.latitude_deg, position.longitude_deg
 
 
 @main.command()
@@ -131,7 +143,7 @@ def assess(
     from app.world import open_world
 
     with _mendable():
-        latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+        latitude_deg, longitude_deg = _place(at)
         settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
@@ -166,8 +178,8 @@ def path(
         world = open_world()
         document = path_document(
             world.ground,
-            *_pair(start, "--from", "44.5,-37.2"),
-            *_pair(end, "--to", "44.3,-37.3"),
+            *_place(start),
+            *_place(end),
             frequency,
             *_pair(heights, "--heights", "150,10"),
             polarisation,
@@ -233,6 +245,7 @@ def add_rasters(
     paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="Raster files.")],
     crs: Annotated[str | None, typer.Option(help="Coordinate system of rasters that do not say, as EPSG:N.")] = None,
     kind: Annotated[str | None, typer.Option(help="surface, radar-surface or bare.")] = None,
+    unit: Annotated[str | None, typer.Option(help="Unit of heights that do not say: m, ft or us survey foot.")] = None,
     as_json: Json = False,
 ) -> None:
     """Copy elevation rasters into the data folder, checked first."""
@@ -240,7 +253,7 @@ def add_rasters(
     from app.lists import table
 
     with _mendable():
-        rows = [add_raster(one, crs, kind) for one in paths]
+        rows = [add_raster(one, crs, kind, unit) for one in paths]
     _show(rows, as_json, lambda: table(rows, "nothing was added"))
 
 
@@ -253,6 +266,79 @@ def list_rasters(as_json: Json = False) -> None:
     with _mendable():
         rows = raster_rows(open_world().ground)
     _show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
+
+
+At = Annotated[str, typer.Option(metavar="POSITION", help="Middle of the circle, in any usual writing.")]
+Reach = Annotated[float, typer.Option(metavar="KM", help="Radius of the circle.")]
+Source = Annotated[str | None, typer.Option(help="Id of the source; default: the first of its kind.")]
+DryRun = Annotated[bool, typer.Option("--dry-run", help="Say how much it would be; fetch nothing.")]
+
+
+@terrain.command("get")
+def get_tiles(
+    at: At, reach: Reach = 150.0, source: Source = None, dry_run: DryRun = False, as_json: Json = False
+) -> None:
+    """Fetch the open elevation tiles round a place; started again, it goes on where it was."""
+    _get("elevation", at, reach, source, dry_run, as_json)
+
+
+@cover.command("get")
+def get_cover(
+    at: At, reach: Reach = 50.0, source: Source = None, dry_run: DryRun = False, as_json: Json = False
+) -> None:
+    """Fetch the open land-cover tiles round a place."""
+    _get("cover", at, reach, source, dry_run, as_json)
+
+
+def _get(holds: str, at: str, reach: float, source: str | None, dry_run: bool, as_json: bool) -> None:
+    from app.open_tiles import fetch_plan, outcome_document, plan, plan_document
+
+    with _mendable():
+        planned = plan(holds, *_place(at), reach, source)
+        if dry_run:
+            document = plan_document(planned)
+            _show(document, as_json, lambda: str(document["text"]))
+            return
+        typer.echo(planned.said_first(), err=as_json)
+        on_screen = sys.stderr.isatty()
+        progress = fetch_plan(
+            planned, (lambda one: typer.echo(f"\r{one.text}  ", nl=False, err=True)) if on_screen else lambda one: None
+        )
+        if on_screen:
+            typer.echo("", err=True)
+        outcome = outcome_document(planned, progress)
+    _show(outcome, as_json, lambda: str(outcome["summary"]))
+    if any(one["state"] in ("failed", "stopped") for one in outcome["outcomes"]):
+        raise typer.Exit(MENDABLE)
+
+
+@cover.command("add")
+def add_maps(
+    paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="GeoTIFF files of class codes.")],
+    classes: Annotated[str | None, typer.Option(help="Class table: worldcover, corine or nlcd.")] = None,
+    crs: Annotated[str | None, typer.Option(help="Coordinate system of maps that do not say, as EPSG:N.")] = None,
+    as_json: Json = False,
+) -> None:
+    """Copy land-cover maps into the data folder, checked first."""
+    from app.ground_files import add_cover
+    from app.lists import table
+
+    with _mendable():
+        rows = [add_cover(one, classes, crs) for one in paths]
+    _show(rows, as_json, lambda: table(rows, "nothing was added"))
+
+
+@cover.command("list")
+def list_maps(as_json: Json = False) -> None:
+    """List land-cover maps in use and those refused, with the reason."""
+    from app.lists import cover_rows, table
+    from app.paths import cache_dir
+    from app.world import cover_dir
+    from terrain.cover import Cover
+
+    with _mendable():
+        rows = cover_rows(Cover.open([cover_dir()], cache_dir()) if cover_dir().is_dir() else None)
+    _show(rows, as_json, lambda: table(rows, "no land cover: `gainworth cover get` or `gainworth cover add FILE`"))
 
 
 @chains.command("list")

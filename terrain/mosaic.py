@@ -36,7 +36,8 @@ class RasterInfo:
     bounds: tuple[float, float, float, float]  # west, south, east, north [deg]; east above 180 past the meridian
     crs: str
     void_share: float  # of its samples, 0 to 1; NaN until the raster was read whole once (`Ground.survey`)
-    attribution: str  # as the file says, mostly ""
+    attribution: str  # as the file or its source says, else ""
+    unit: str  # of the numbers in the file; heights are in metres everywhere
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,6 +100,7 @@ class Ground:
                     crs=raster.crs,
                     void_share=float("nan") if share is None else share,
                     attribution=raster.attribution,
+                    unit=raster.unit,
                 )
             )
         return tuple(infos)
