@@ -10,6 +10,7 @@ import numpy as np
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
+from app.climate import SEASON
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
 from app.margins import Air, Turned
@@ -57,6 +58,8 @@ def answer_document(
             "aerial_agl_m": request.roof.aerial_agl_m,
             "ground_amsl_m": round(site.ground_amsl_m, 2),
             "surroundings": request.roof.surroundings,
+            "leaves_m": request.roof.leaves_m,
+            "compass": site.compass,
         },
         "multiplexes": [
             {
@@ -238,8 +241,10 @@ def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[di
         field.free_space_dbuv_m - power_db,
         "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
     )
-    modelled = field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m
+    modelled = field.used_dbuv_m + field.leaves_db - field.doubt_db - field.free_space_dbuv_m
     add(f"ground and atmosphere: {field.path.kind}", modelled, _method_source(field))
+    if field.leaves_db:
+        add("leaves before the aerial", -field.leaves_db, "Rec. ITU-R P.833-10, section 2.1, in leaf")
     if field.doubt_db:
         add("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db")
     add(
@@ -327,6 +332,16 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
         cautions.append(
             f"No prediction for {', '.join(without)}: see the reason beside each channel; "
             "they take no part in the verdict."
+        )
+    if any(
+        field.path is not None and (field.path.sea_km > 0 or field.path.kind == "beyond the horizon")
+        for field in fields
+    ):
+        cautions.append(SEASON)
+    warm = [field for field in fields if field.path is not None and field.path.sea_km > 0 and field.sea_is_warm]
+    if warm:
+        cautions.append(
+            f"The sea under {len(warm)} of the channels counts as warm for P.1546 (our choice by latitude and region)."
         )
     shared = [field for field in fields if _shared_channel(field, fields)]
     if shared:

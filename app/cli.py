@@ -130,7 +130,10 @@ def assess(
     reach: Annotated[float, typer.Option(metavar="KM", help="How far to look for transmitters.")] = 150.0,
     method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
     availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.")] = 99,
-    surroundings: Annotated[str, typer.Option(help="open, suburban, urban or trees.")] = "open",
+    surroundings: Annotated[
+        str, typer.Option(help="open, suburban, urban, trees, or mapped: as land cover shows them.")
+    ] = "mapped",
+    leaves: Annotated[float, typer.Option(metavar="M", help="Leaves the signals pass before the aerial.")] = 0.0,
     as_json: Json = False,
 ) -> None:
     """Say what a roof receives with each chain, and whether a better one is worth its price."""
@@ -146,7 +149,7 @@ def assess(
         latitude_deg, longitude_deg = _place(at)
         settings = load_settings(data_dir())
         request = AssessRequest(
-            roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
+            roof=Roof(latitude_deg, longitude_deg, height, surroundings, leaves_m=leaves),  # type: ignore[arg-type]  # Roof checks the word
             chains=tuple(chain) if chain else None,
             now=now,
             wanted=tuple(want) if want else None,

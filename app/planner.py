@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 from typing import Any
@@ -11,8 +12,10 @@ from app.answer import answer_document
 from app.assumptions import Assumptions
 from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
+from app.declination import declination
 from app.errors import RequestError
 from app.fields import fields_at
+from app.mapped import credits_of, with_surroundings
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
 from app.request import NOTHING, AssessRequest
 from app.site import site_of
@@ -37,10 +40,12 @@ def assess(
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = _chains(request, store)
-    site = site_of(request.roof, ground)
-    found = store.emissions_within(
-        request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
-    )
+    roof, told = with_surroundings(request.roof, ground)
+    request = replace(request, roof=roof)
+    day = today or date.today()
+    compass = declination(roof.latitude_deg, roof.longitude_deg, day).text
+    site = replace(site_of(roof, ground, told), compass=compass)
+    found = store.emissions_within(request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, day)
     fields = fields_at(
         request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
     )
@@ -53,9 +58,10 @@ def assess(
     )
     outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
     verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions)
-    return answer_document(
+    document = answer_document(
         request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts
     )
+    return document | {"credits": credits_of(ground)}
 
 
 def stored_chain(store: Store, name: str) -> Chain:

@@ -11,7 +11,7 @@ from app.errors import RequestError
 @pytest.mark.parametrize(
     ("latitude", "longitude", "height_km", "day", "published_deg"),
     [
-        # WMM2025 test values (NOAA NCEI, WMM2025_TestValues.txt), from memory of the published table: 2025.0, sea level.
+        # WMM2025 test values (NOAA NCEI, WMM2025_TestValues.txt), from memory: 2025.0, sea level.
         (80.0, 0.0, 0.0, date(2025, 1, 1), 1.28),
         (0.0, 120.0, 0.0, date(2025, 1, 1), -0.16),
         (-80.0, 240.0, 0.0, date(2025, 1, 1), 68.78),
