@@ -13,7 +13,7 @@ from app.chance import GRADES, exceedance, grade
 from app.climate import SEASON
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
-from app.margins import Air, Turned
+from app.margins import SAME_MAST_KM, Air, Turned
 from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
@@ -343,6 +343,12 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
         cautions.append(
             f"The sea under {len(warm)} of the channels counts as warm for P.1546 (our choice by latitude and region)."
         )
+    twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
+    if twice:
+        cautions.append(
+            f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
+            "Take one import out with `gainworth transmitters remove SOURCE`."
+        )
     shared = [field for field in fields if _shared_channel(field, fields)]
     if shared:
         channels = ", ".join(
@@ -352,6 +358,20 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted."
         )
     return cautions
+
+
+def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
+    """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
+    mine = field.emission
+    return [
+        f"{field.transmitter.name} in {field.transmitter.source} and {other.transmitter.name} in {other.transmitter.source}"
+        for other in fields
+        if other.transmitter.source > field.transmitter.source
+        and other.emission.system == mine.system
+        and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
+        and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
+        and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM
+    ]
 
 
 def _shared_channel(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:

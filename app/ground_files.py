@@ -11,6 +11,7 @@ from app.errors import StoreError
 from app.world import cover_dir, terrain_dir
 from terrain.cover import declare_cover, open_cover_raster
 from terrain.errors import RasterError
+from terrain.mosaic import Ground
 from terrain.raster import declare, open_raster
 
 
@@ -22,6 +23,7 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit
     if not path.is_file():
         raise RasterError(f"{path} is no file: name an elevation raster such as a GeoTIFF or an .hgt tile")
     target = terrain_dir() / path.name
+    replaces = target.exists()
     try:
         terrain_dir().mkdir(parents=True, exist_ok=True)
         with tempfile.TemporaryDirectory(dir=terrain_dir(), prefix=".adding-") as folder:
@@ -32,6 +34,7 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit
                 if crs or kind or unit:
                     declare(copy, crs=crs, kind=kind, unit=unit)
                 info = open_raster(copy)
+                _check_heights(copy)
             except RasterError as error:
                 raise type(error)(str(error).replace(str(copy), str(path))) from error
             for one in sorted(Path(folder).iterdir()):
@@ -43,6 +46,7 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit
         "kind": info.kind,
         "spacing_m": round(info.grid.spacing_m, 1),
         "heights_in": info.unit,
+        "note": "replaces the one of that name" if replaces else "",
         "stored": str(target),
     }
 
@@ -74,6 +78,27 @@ def add_cover(path: Path, classes: str | None = None, crs: str | None = None) ->
         "spacing_m": round(info.grid.spacing_m, 1),
         "stored": str(target),
     }
+
+
+def remove_raster(name: str) -> dict[str, Any]:
+    """Take one raster, and what lies beside it, out of the data folder."""
+    path = terrain_dir() / name
+    if Path(name).name != name or not path.is_file():
+        stored = sorted(one.name for one in terrain_dir().glob("*.*")) if terrain_dir().is_dir() else []
+        raise RasterError(f'no raster "{name}" is stored: {", ".join(stored) or "the folder is empty"}')
+    for one in (path, *_companions(path)):
+        one.unlink()
+    return {"file": name, "note": "taken out"}
+
+
+def _check_heights(path: Path) -> None:
+    """Refuse a raster whose samples are all missing."""
+    with tempfile.TemporaryDirectory() as cache:
+        surveyed = Ground.open([path], Path(cache)).survey()
+        if surveyed.refused:
+            raise RasterError(surveyed.refused[0].message)
+        if surveyed.rasters[0].void_share == 1:
+            raise RasterError(f"{path.name} holds no height at all: every sample is missing or impossible")
 
 
 def _companions(path: Path) -> list[Path]:

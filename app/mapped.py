@@ -41,5 +41,7 @@ def with_surroundings(roof: Roof, ground: Ground) -> tuple[Roof, str]:
 def credits_of(ground: Ground) -> list[str]:
     """Credits that the licences of the rasters in use ask for, each once."""
     cover = ground.overlay.cover if ground.overlay is not None else None
-    used = [*ground.rasters, *(cover.rasters if cover is not None else ())]
-    return sorted({one.attribution for one in used if one.attribution})
+    credits = {one.attribution for one in ground.rasters}
+    if cover is not None:
+        credits |= {one.attribution for one in cover.rasters}
+    return sorted(credits - {""})

@@ -39,7 +39,7 @@ def site_of(roof: Roof, ground: Ground, told: str = "") -> Site:
     """
     height_m = bare_ground_m(ground, roof.latitude_deg, roof.longitude_deg).item()
     if not np.isfinite(height_m):
-        raise CoverageError(missing_ground(roof.latitude_deg, roof.longitude_deg))
+        raise CoverageError(missing_ground(ground, roof.latitude_deg, roof.longitude_deg))
     cautions = (told,) if told else ()
     if not bool(ground.is_water(roof.latitude_deg, roof.longitude_deg)):
         return Site(height_m, cautions)
@@ -56,14 +56,23 @@ def site_of(roof: Roof, ground: Ground, told: str = "") -> Site:
     )
 
 
-def missing_ground(latitude_deg: float, longitude_deg: float) -> str:
-    """Say that there is no elevation at a place, and which one-degree tile would bring it."""
+def missing_ground(ground: Ground, latitude_deg: float, longitude_deg: float) -> str:
+    """Say that there is no elevation at a place, and what would bring it."""
+    at = place(latitude_deg, longitude_deg)
+    inside = [
+        raster.name
+        for raster in ground.rasters
+        if raster.bounds[1] <= latitude_deg <= raster.bounds[3]
+        and (raster.bounds[0] <= longitude_deg <= raster.bounds[2] or longitude_deg + 360 <= raster.bounds[2])
+    ]
+    if inside:
+        return (
+            f"no elevation at {at}: {', '.join(inside)} has a hole there; "
+            "add a raster without it, with `gainworth terrain add FILE`"
+        )
     south, west = int(np.floor(latitude_deg)), int(np.floor(longitude_deg))
     tile = f"{'N' if south >= 0 else 'S'}{abs(south):02d}{'E' if west >= 0 else 'W'}{abs(west):03d}"
-    return (
-        f"no elevation at {place(latitude_deg, longitude_deg)}: "
-        f"fetch tiles with `gainworth terrain get`, or add a raster such as {tile} with `gainworth terrain add FILE`"
-    )
+    return f"no elevation at {at}: fetch tiles with `gainworth terrain get`, or add a raster such as tile {tile}, with `gainworth terrain add FILE`"
 
 
 def place(latitude_deg: float, longitude_deg: float) -> str:

@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 
-from app.errors import RequestError, StoreError
+from app.errors import NotStoredError, RequestError, StoreError
 from app.transmitters import documents
 from app.transmitters.database import Database
 from app.transmitters.documents import Document
@@ -179,6 +179,24 @@ class Store:
             changed=tuple(sorted(key for key in new.keys() & before.keys() if new[key] != before[key])),
             gone=tuple(sorted(before.keys() - new.keys())),
         )
+
+    def delete_source(self, source: str) -> int:
+        """Take a source out with all that belongs to it; return how many emissions went.
+
+        Raises
+        ------
+        NotStoredError
+            There is no such source.
+        """
+        with self._database.transaction(write=True) as connection:
+            known = [row[0] for row in connection.execute("SELECT id FROM source ORDER BY id")]
+            if source not in known:
+                raise NotStoredError(
+                    f'there is no source "{source}": stored are {", ".join(known) or "none"}', field="source"
+                )
+            (count,) = connection.execute("SELECT count(*) FROM emission WHERE source = ?", [source]).fetchone()
+            connection.execute("DELETE FROM source WHERE id = ?", [source])
+            return int(count)
 
     # Roofs and chains: {"id", "name", "created", "updated", …}
 
