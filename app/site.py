@@ -72,7 +72,10 @@ def missing_ground(ground: Ground, latitude_deg: float, longitude_deg: float) ->
         )
     south, west = int(np.floor(latitude_deg)), int(np.floor(longitude_deg))
     tile = f"{'N' if south >= 0 else 'S'}{abs(south):02d}{'E' if west >= 0 else 'W'}{abs(west):03d}"
-    return f"no elevation at {at}: fetch tiles with `gainworth terrain get`, or add a raster such as tile {tile}, with `gainworth terrain add FILE`"
+    return (
+        f"no elevation at {at}: fetch tiles with `gainworth terrain get`, "
+        f"or add a raster that covers it, such as tile {tile}, with `gainworth terrain add FILE`"
+    )
 
 
 def place(latitude_deg: float, longitude_deg: float) -> str:

@@ -40,6 +40,10 @@ class Tile:
         """Where it is kept."""
         return folder / self.source.id / self.source.file_name(self.corner)
 
+    def part(self, folder: Path) -> Path:
+        """Where it grows."""
+        return folder / _INCOMING / self.source.id / f"{self.source.file_name(self.corner)}.part"
+
     @property
     def has_land(self) -> bool:
         """Whether the land mask has any land in it, or within 2 km of it."""
@@ -142,6 +146,8 @@ def download(
     progress.outcomes += [Outcome(tile.corner.tile, "there", source=tile.source.id) for tile in plan.there]
     progress.done = len(plan.there)
     _check_room(plan)
+    for tile in plan.there:
+        forget(tile.part(plan.folder))  # left by an end just after the move
 
     def one(tile: Tile) -> DownloadError | None:
         def more(received: int) -> None:
@@ -223,8 +229,7 @@ def _bring_from(
 ) -> int:
     """Fetch, check and move one tile; returns its length in bytes."""
     target = tile.path(folder)
-    incoming = folder / _INCOMING / tile.source.id
-    part = incoming / f"{target.name}.part"
+    part = tile.part(folder)
     last = 0
 
     def received(done: int, total: int | None) -> None:

@@ -256,6 +256,9 @@ class Ground:
                 answer.height_m[which] = height
                 answer.layer[which] = np.where(known, number, -1)
                 answer.bridged[which] = known & bridged
+        open_still = np.nonzero((answer.layer < 0) & ~reached & np.isfinite(lat + lon))[0]
+        if open_still.size:
+            answer.height_m[open_still], answer.layer[open_still] = self._gaps(lat[open_still], lon[open_still])
 
     def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer, bool]]:
         """Layers whose bounding box meets that of the positions, their numbers, and if it holds them all."""
@@ -285,8 +288,32 @@ class Ground:
             height[half_out] = self._across_edge(layer, row[half_out], column[half_out], bridged)
         return height
 
-    def _across_edge(self, layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:
-        """Heights in the outermost half cells, whose outer corners belong to the neighbours."""
+    def _gaps(self, lat: FloatArray, lon: FloatArray, deep: bool = True) -> tuple[FloatArray, NDArray[np.intp]]:
+        """Heights in the strip that unequal pixels leave between two tiles, and the layers that answer.
+
+        The outermost cell of a tile is whole there: up to a neighbour's samples, which must be known.
+        """
+        height, answering = np.full(lat.size, np.nan), np.full(lat.size, -1)
+        for number, layer in enumerate(self._layers):
+            grid = layer.raster.grid
+            cell = max((grid.north_deg - grid.south_deg) / grid.rows, (grid.east_deg - grid.west_deg) / grid.columns)
+            if not grid.meets(lat.min() - cell, lon.min() - cell, lat.max() + cell, lon.max() + cell):
+                continue
+            row, column = grid.index(lat, lon)
+            beside = np.isnan(height) & (row > -1) & (row < grid.rows) & (column > -1) & (column < grid.columns)
+            beside &= ~_surrounded(grid, row, column)
+            if beside.any():
+                height[beside] = self._across_edge(layer, row[beside], column[beside], False, whole=True, deep=deep)
+                answering[beside & np.isfinite(height)] = number
+        return height, answering
+
+    def _across_edge(
+        self, layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool, whole: bool = False, deep: bool = True
+    ) -> FloatArray:
+        """Heights in the outermost half cells, whose outer corners belong to the neighbours.
+
+        With `whole`, in all of the outermost cells, NaN where no neighbour knows a corner.
+        """
         grid = layer.raster.grid
         top, left = np.floor(row).astype(np.intp), np.floor(column).astype(np.intp)
         corners = np.empty((4, row.size))
@@ -295,15 +322,20 @@ class Ground:
             own_r, own_c = np.clip(r, 0, grid.rows - 1), np.clip(c, 0, grid.columns - 1)
             corners[corner] = layer.blocks.samples(own_r, own_c, bridged)
             # At the ground's outer edge the sample beside stands for the one that nobody has.
-            for beside_r, beside_c in ((r, own_c), (own_r, c), (r, c)):
+            for beside_r, beside_c in ((r, c),) if whole else ((r, own_c), (own_r, c), (r, c)):
                 foreign = (beside_r != own_r) | (beside_c != own_c)
                 place = grid.position(beside_r[foreign].astype(float), beside_c[foreign].astype(float))
-                neighbour = self._neighbour(*place)
-                corners[corner, foreign] = np.where(np.isfinite(neighbour), neighbour, corners[corner, foreign])
+                neighbour = self._neighbour(*place, deep)
+                if not whole:
+                    neighbour = np.where(np.isfinite(neighbour), neighbour, corners[corner, foreign])
+                corners[corner, foreign] = neighbour
         return bilinear(corners, row - top, column - left)
 
-    def _neighbour(self, lat: FloatArray, lon: FloatArray) -> FloatArray:
-        """Heights from the first raster whose samples surround a position, NaN where none does."""
+    def _neighbour(self, lat: FloatArray, lon: FloatArray, deep: bool) -> FloatArray:
+        """Heights from the first raster whose samples surround a position, NaN where none does.
+
+        With `deep`, also between the samples of two: where tiles of unequal pixels meet at a corner.
+        """
         height = np.full(lat.size, np.nan)
         for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
@@ -314,6 +346,9 @@ class Ground:
             row, column = grid.index(lat[open_still], lon[open_still])
             inside = _surrounded(grid, row, column)
             height[open_still[inside]] = _within(layer, row[inside], column[inside], bridged=False)
+        open_still = np.nonzero(np.isnan(height) & np.isfinite(lat + lon))[0]
+        if deep and open_still.size:
+            height[open_still] = self._gaps(lat[open_still], lon[open_still], deep=False)[0]
         return height
 
     def _water(self, answer: _Answer, lat: FloatArray, lon: FloatArray) -> NDArray[np.bool_]:
