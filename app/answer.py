@@ -12,7 +12,8 @@ from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
 from app.climate import SEASON
 from app.fields import EmissionField
-from app.link_budget import ledger_steps
+from app.interference import SPECTRAL
+from app.ledger import ledger
 from app.margins import SAME_MAST_KM, Air, Turned
 from app.request import AssessRequest
 from app.site import Site
@@ -28,11 +29,8 @@ CAUTIONS = (
     "An amplifier's supply is mains equipment: leave its circuit to a licensed person.",
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
-METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
-NOT_YET = (
-    "Interference from other transmitters is not counted yet: a chance can be lower than shown.",
-    "Overload by strong signals is not counted yet.",
-)
+SHOWN_NAMES = 5
+NOT_YET = ("Overload by strong signals is not counted yet.",)
 
 
 def answer_document(
@@ -76,7 +74,7 @@ def answer_document(
         },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
         "assumptions": assumptions.document(),
-        "cautions": [*_cautions(request, site, store, fields), *NOT_YET, *CAUTIONS],
+        "cautions": [*_cautions(request, site, store, fields, air), *NOT_YET, *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
     }
 
@@ -123,7 +121,7 @@ def _emission(
         "valid_to": emission.valid_to.isoformat() if emission.valid_to else None,
         "flags": list(emission.flags),
         "reason": field.reason,
-        "cautions": _shared_channel(field, fields),
+        "cautions": [] if e is None else _disturbed_by(e, air),
         "path": None
         if path is None
         else {
@@ -161,21 +159,10 @@ def _cell(
 ) -> dict[str, Any]:
     sigma_db = float(turned.cells.sigma_db[e])
     limit = _limit(turned, e)
-    before = _ledger_to_field(field, request.availability_percent)
+    reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
-    for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
+    for outlet, median in zip(reception.outlets, turned.median.outlets, strict=True):
         margin_db = float(outlet.margin_db[e])
-        steps = ledger_steps(
-            turned.chain,
-            air.signals,
-            e,
-            field.used_dbuv_m - field.fade_db,
-            turned.pointing_deg,
-            turned.polarisation,
-            assumptions,
-            request.roof.surroundings,
-            outlet.name,
-        )
         outlets.append(
             {
                 "name": outlet.name,
@@ -187,23 +174,11 @@ def _cell(
                 "headroom_db": None,
                 "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
                 "held_back_by": limit,
-                "ledger": [
-                    *before,
-                    *(
-                        {
-                            "step": step.step,
-                            "value_db": round(step.value_db, 2),
-                            "total": round(step.total, 2),
-                            "source": step.source,
-                            "state": "a",
-                        }
-                        for step in steps[1:]  # the first is the field, which the steps before end with
-                    ),
-                ],
+                "ledger": ledger(request, turned, e, field, air, assumptions, outlet.name),
             }
         )
     return {
-        "margin_db": round(float(turned.faded.margin_db[e]), 2),
+        "margin_db": round(float(turned.margin_db[e]), 2),
         "sigma_db": round(sigma_db, 2),
         "chance": _probability(turned.chance[e]),
         "held_back_by": limit,
@@ -211,64 +186,17 @@ def _cell(
     }
 
 
-def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[dict[str, Any]]:
-    """Steps from the radiated power to the field at the aerial, faded to the availability."""
-    power_db = 10 * float(np.log10(field.erp_kw))
-    total = power_db
-    rows: list[dict[str, Any]] = []
-
-    def add(step: str, value_db: float, source: str) -> None:
-        nonlocal total
-        total = value_db if not rows else total + value_db
-        rows.append(
-            {
-                "step": step,
-                "value_db": round(value_db, 2),
-                "total": round(total, 2),
-                "source": source,
-                "state": "a",
-            }
-        )
-
-    assert field.path is not None  # only emissions with an answer have a ledger
-    add(
-        f"radiated power towards the roof, {field.erp_kw:.3g} kW ERP",
-        power_db,
-        f"register: {field.transmitter.source}",
-    )
-    add(
-        f"free space over {field.distance_km:.1f} km",
-        field.free_space_dbuv_m - power_db,
-        "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
-    )
-    modelled = field.used_dbuv_m + field.leaves_db - field.doubt_db - field.free_space_dbuv_m
-    add(f"ground and atmosphere: {field.path.kind}", modelled, _method_source(field))
-    if field.leaves_db:
-        add("leaves before the aerial", -field.leaves_db, "Rec. ITU-R P.833-10, section 2.1, in leaf")
-    if field.doubt_db:
-        add("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db")
-    add(
-        f"fade that {availability_percent} % of the time stays above",
-        -field.fade_db,
-        f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90; "
-        f"where this emission disturbs, it rises by {field.enhancement_db:.2f} dB instead",
-    )
-    return rows
-
-
-def _method_source(field: EmissionField) -> str:
-    """Name the method of a field, what the other one says, and why this one."""
-    source = METHOD_SOURCES[str(field.method)]
-    if field.difference_db is None:
-        return f"{source}: {field.method_reason}"
-    return (
-        f"{source}; P.1812 {field.p1812_dbuv_m:.2f}, P.1546 {field.p1546_dbuv_m:.2f} dB(µV/m), "
-        f"difference {field.difference_db:+.2f} dB"
-    )
-
-
 def _limit(turned: Turned, e: int) -> dict[str, Any]:
-    return {"limit": turned.limit(e), "state": "a", "emission": None, "bearing_deg": None, "next_db": None}
+    held = turned.held_back(e)
+    by = None if held.by is None else turned.company.interferers[held.by]
+    return {
+        "limit": held.limit,
+        "state": held.state,
+        "emission": None if by is None else by.emission.id,
+        "transmitter_name": None if by is None else by.transmitter.name,
+        "bearing_deg": None if by is None else round(by.bearing_deg, 2),
+        "next_db": _rounded(held.next_db),
+    }
 
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
@@ -315,7 +243,14 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
     }
 
 
-def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField]) -> list[str]:
+def _disturbed_by(e: int, air: Air) -> list[str]:
+    """Other masts on the same or an overlapping channel."""
+    pairs = air.company.pairs
+    ones = [air.company.interferers[pairs.disturber[k]] for k in pairs.of_wanted(e) if pairs.rule[k] == SPECTRAL]
+    return [f"{one.transmitter.name} at {one.bearing_deg:.0f}° uses this channel too" for one in ones[:SHOWN_NAMES]]
+
+
+def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air) -> list[str]:
     cautions = list(site.cautions)
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
@@ -349,14 +284,13 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
             "Take one import out with `gainworth transmitters remove SOURCE`."
         )
-    shared = [field for field in fields if _shared_channel(field, fields)]
-    if shared:
-        channels = ", ".join(
-            sorted({field.emission.channel or f"{field.emission.frequency_mhz:g} MHz" for field in shared})
+    cautions += air.company.cautions
+    rough = sorted({one.transmitter.name for one in air.company.interferers if not one.over_ground})
+    if rough:
+        names = ", ".join(rough[:SHOWN_NAMES]) + (
+            f" and {len(rough) - SHOWN_NAMES} more" if len(rough) > SHOWN_NAMES else ""
         )
-        cautions.append(
-            f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted."
-        )
+        cautions.append(f"Interference from {names} is reckoned without the ground on its way.")
     return cautions
 
 
@@ -364,25 +298,14 @@ def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> lis
     """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
     mine = field.emission
     return [
-        f"{field.transmitter.name} in {field.transmitter.source} and {other.transmitter.name} in {other.transmitter.source}"
+        f"{field.transmitter.name} in {field.transmitter.source} and "
+        f"{other.transmitter.name} in {other.transmitter.source}"
         for other in fields
         if other.transmitter.source > field.transmitter.source
         and other.emission.system == mine.system
         and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
         and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
         and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM
-    ]
-
-
-def _shared_channel(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
-    """Other multiplexes on an overlapping channel, which will disturb this one."""
-    mine = field.emission
-    return [
-        f"{other.transmitter.name} at {other.bearing_deg:.0f}° uses this channel too: interference not yet counted"
-        for other in fields
-        if other.emission.multiplex_id != mine.multiplex_id
-        and abs(other.emission.frequency_mhz - mine.frequency_mhz)
-        < (other.emission.bandwidth_mhz + mine.bandwidth_mhz) / 2 - 1e-6
     ]
 
 

@@ -146,6 +146,35 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
         "fade to 90 % as a share of that to 99 %",
         "ratio of the normal quantiles 1.28 / 2.33",
     ),
+    # single-frequency networks and interferers
+    Assumption(
+        "sfn_window",
+        1.0,
+        "-",
+        1,
+        2,
+        "receiver's window: 1 starts at the first signal above the threshold, 2 at the strongest",
+        "EBU Tech 3348 and BPN 066, from memory",
+    ),
+    Assumption(
+        "sfn_threshold_db",
+        10.0,
+        "dB",
+        3,
+        25,
+        "how far below the strongest a first signal may be to start the window",
+        "EBU Tech 3348: 10 to 15 dB, from memory",
+    ),
+    Assumption(
+        "sfn_echo_range_db",
+        10.0,
+        "dB",
+        1,
+        30,
+        "difference of echo and signal over which the rise of the required C/N for equal ones fades",
+        OURS,
+    ),
+    Assumption("enhancement_sd_share", 0.4, "-", 0, 1, "spread of an interferer's rise as a share of it", OURS),
     # the decision
     Assumption(
         "worth_per_multiplex",

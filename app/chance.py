@@ -53,7 +53,7 @@ class ErrorPart:
     """One kind of error over all emissions of one chain: which normal moves each, and by how much."""
 
     keys: tuple[str, ...]  # (e,) the name of the normal that moves each emission
-    sd_db: FloatArray  # (e,) 0 where it does not apply
+    sd_db: FloatArray  # (e,) 0 where it does not apply; below 0 where the error lowers the margin as it rises
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,7 +96,7 @@ class Cells:
             margins[:, e] += self.path.sd_db[e] * (common * along + own * normals(f"path:{mast}"))
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] > 0:
+                if part.sd_db[e] != 0:  # below 0: what disturbs lowers the margin as it rises
                     margins[:, e] += part.sd_db[e] * normals(key)
         return margins
 

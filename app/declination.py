@@ -75,3 +75,11 @@ def declination(latitude_deg: float, longitude_deg: float, day: date, height_m: 
         day=day,
         caution=caution,
     )
+
+
+def compass_text(latitude_deg: float, longitude_deg: float, day: date) -> str:
+    """Say where a compass points, or that no model holds on that day."""
+    try:
+        return declination(latitude_deg, longitude_deg, day).text
+    except RequestError as error:
+        return str(error)

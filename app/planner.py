@@ -12,9 +12,10 @@ from app.answer import answer_document
 from app.assumptions import Assumptions
 from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
-from app.declination import declination
+from app.declination import compass_text
 from app.errors import RequestError
 from app.fields import fields_at
+from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
 from app.mapped import credits_of, with_surroundings
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
 from app.request import NOTHING, AssessRequest
@@ -43,13 +44,26 @@ def assess(
     roof, told = with_surroundings(request.roof, ground)
     request = replace(request, roof=roof)
     day = today or date.today()
-    compass = declination(roof.latitude_deg, roof.longitude_deg, day).text
+    compass = compass_text(roof.latitude_deg, roof.longitude_deg, day)
     site = replace(site_of(roof, ground, told), compass=compass)
-    found = store.emissions_within(request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, day)
+    on_the_air = store.emissions_within(roof.latitude_deg, roof.longitude_deg, SEA_REACH_KM, day)
+    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
     fields = fields_at(
         request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
     )
-    air = air_of(fields)
+    air = air_of(
+        fields,
+        interferers_at(
+            request.roof,
+            fields,
+            on_the_air,
+            ground,
+            assumptions,
+            request.availability_percent,
+            request.method,
+            refractivity_maps,
+        ),
+    )
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]

@@ -30,6 +30,14 @@ SECURE = 0.95
 COUNTS_FROM, COUNTS_TO = 0.05, 0.95  # wanted unless chosen: possible somewhere, not secure everywhere
 SAME_CHANCE = 0.02  # chances this close are the same to a person
 
+# What helps against a limit and what does not.
+HELP = {
+    "noise": "gain helps",
+    "time": "gain helps on bad nights",
+    "interference": "directivity, not gain, cures it, and an amplifier does not",
+    "overload": "less gain helps, an amplifier harms",
+}
+
 
 @dataclass(frozen=True, slots=True)
 class Outcome:
@@ -153,7 +161,10 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
         return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
-    held = "; ".join(f"{limit} holds back {count} of {len(missing)}" for limit, count in limits.most_common())
+    held = "; ".join(
+        f"{limit} holds back {count} of {len(missing)}, {HELP.get(limit, 'see the ledger')}"
+        for limit, count in limits.most_common()
+    )
     if baseline.chain is None:
         held = f"nothing is up today for {len(missing)} wanted"
     if not cured:

@@ -70,4 +70,8 @@ MIGRATIONS: tuple[tuple[str, ...], ...] = (
             PRIMARY KEY (kind, id)
         )""",
     ),
+    (
+        "ALTER TABLE emission ADD COLUMN guard TEXT NOT NULL DEFAULT ''",
+        "ALTER TABLE emission ADD COLUMN static_delay_us REAL",
+    ),
 )

@@ -5,6 +5,12 @@ import { numberText, signedText } from './units.js';
 
 const SVG = 'http://www.w3.org/2000/svg';
 
+/** What the two time states say; the margin is the lower one. @type {Record<string, string>} */
+const STATES = {
+  a: 'the signal on a bad night, interferers as they usually are',
+  b: 'the signal as it usually is, interferers on the night that carries them far',
+};
+
 /** @param {HTMLElement} element */
 export function createLedger(element) {
   const title = /** @type {HTMLElement} */ (element.querySelector('h2'));
@@ -19,12 +25,18 @@ export function createLedger(element) {
     if (outlets.length === 0) return;
     const outlet = outlets.reduce((least, one) => (one.margin_db < least.margin_db ? one : least));
     title.textContent = `${cell.multiplex.name} from the mast to ${outlet.name}, through ${titleOf(state, cell.chain)}`;
-    const totals = [0, ...outlet.ledger.map((step) => step.total)];
-    const scale = { low: Math.min(...totals), high: Math.max(...totals) };
+    const decides = outlet.held_back_by?.state;
+    const steps = outlet.ledger.filter((step) => !decides || step.state === decides);
+    const others = outlet.ledger.filter((step) => decides && step.state !== decides);
+    const scale = { low: Math.min(0, ...outlet.ledger.map((step) => step.total)), high: Math.max(...outlet.ledger.map((step) => step.total)) };
     body.style.setProperty('--zero', `${placed(0, scale)}%`);
-    body.replaceChildren(...outlet.ledger.map((step, place) => line(step, totals[place], scale)));
-    body.append(line({ step: 'margin', value_db: null, total: outlet.margin_db, source: '' }, 0, scale));
+    body.replaceChildren(...steps.map((step, place) => line(step, place ? steps[place - 1].total : 0, scale)));
+    body.append(line({ step: 'margin', value_db: null, total: outlet.margin_db, source: STATES[decides] ?? '' }, 0, scale));
     body.lastElementChild?.classList.add('result');
+    if (others.length) {
+      const other = others[others.length - 1];
+      body.append(line({ step: 'margin in the other state', value_db: null, total: other.total, source: STATES[other.state] }, 0, scale));
+    }
   }
 
   /** @param {any} step @param {number} from total before the step @param {{low: number, high: number}} scale */

@@ -323,3 +323,29 @@ def test_a_source_can_be_taken_out_and_the_demo_comes_back(store):
     assert len(store.emissions()) == shown
     with pytest.raises(NotStoredError, match='no source "own": stored are demo'):
         store.delete_source("own")
+
+
+def test_guard_interval_and_delay_come_back_as_stored(tmp_path):
+    store = Store.open(tmp_path)
+    mast = Transmitter("m", "Mast", 44.0, -37.0, None, "s")
+    sent = [
+        Emission(
+            f"e{k}",
+            "m",
+            "x",
+            "",
+            650.0 + 8 * k,
+            8,
+            "DVB-T2",
+            "256-QAM 2/3",
+            1,
+            "horizontal",
+            50,
+            guard=guard,
+            static_delay_us=late,
+        )
+        for k, (guard, late) in enumerate((("32K 1/8", 7.5), ("", None)))
+    ]
+    store.replace_source(Source("s", "s"), [mast], sent, [Multiplex("x", "X")])
+    assert store.emissions() == sent
+    assert [one for one, *_ in store.emissions_within(44.0, -37.0, 10)] == sent
