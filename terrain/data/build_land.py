@@ -13,6 +13,7 @@ from typing import Any
 
 import numpy as np
 from affine import Affine
+from numpy.typing import NDArray
 from rasterio.features import rasterize
 
 CELLS_PER_DEGREE = 120
@@ -25,15 +26,33 @@ def polygons(topology: dict[str, Any]) -> list[dict[str, Any]]:
     scale, origin = topology["transform"]["scale"], topology["transform"]["translate"]
     arcs = [np.cumsum(arc, axis=0) * scale + origin for arc in topology["arcs"]]
 
-    def ring(numbers: list[int]) -> list[list[float]]:
+    def ring(numbers: list[int]) -> NDArray[np.float64]:
         parts = [arcs[n] if n >= 0 else arcs[~n][::-1] for n in numbers]
-        joined: list[list[float]] = np.vstack([parts[0], *(part[1:] for part in parts[1:])]).tolist()
-        return joined
+        return whole_turn(np.vstack([parts[0], *(part[1:] for part in parts[1:])]))
 
     (geometry,) = topology["objects"]["land"]["geometries"]
-    rings = [[ring(numbers) for numbers in one] for one in geometry["arcs"]]
-    # Quantising left some islets with fewer corners than an area needs.
-    return [{"type": "Polygon", "coordinates": one} for one in rings if len(one[0]) >= 4]
+    shapes = []
+    for numbers in geometry["arcs"]:
+        outer, *holes = (ring(one) for one in numbers)
+        if len(outer) < 4:
+            continue  # quantising left some islets with fewer corners than an area needs
+        middle = outer[:, 0].mean()
+        holes = [hole - [360 * round((hole[:, 0].mean() - middle) / 360), 0] for hole in holes]
+        for turn in (-360, 0, 360):
+            if outer[:, 0].min() + turn < 180 and outer[:, 0].max() + turn > -180:
+                rings = [np.add(one, [turn, 0]).tolist() for one in (outer, *holes)]
+                shapes.append({"type": "Polygon", "coordinates": rings})
+    return shapes
+
+
+def whole_turn(ring: NDArray[np.float64]) -> NDArray[np.float64]:
+    """The source joins land across the 180th meridian: longitudes go on there; round a pole the ring goes over it."""
+    lon = np.unwrap(ring[:, 0], period=360)
+    ring = np.column_stack([lon, ring[:, 1]])
+    if abs(lon[-1] - lon[0]) > 180:
+        pole = 90.0 if ring[:, 1].mean() > 0 else -90.0
+        ring = np.vstack([ring, [lon[-1], pole], [lon[0], pole], ring[:1]])
+    return ring
 
 
 def main(source: Path) -> None:
