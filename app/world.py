@@ -52,7 +52,8 @@ def open_ground(invented: bool) -> Ground:
     if invented:
         return Ground.open([*folders, ensure_demo_relief(cache_dir() / "demo")], cache_dir())
     cover = Cover.open([cover_dir()], cache_dir()) if cover_dir().is_dir() else None
-    return Ground.open(folders, cache_dir(), Overlay(cover if cover is not None and cover.rasters else None))
+    overlay = Overlay(cover if cover is not None and cover.rasters else None)
+    return Ground.open(folders, cache_dir(), overlay, 1e9 * load_settings(data_dir()).cache_limit_gb)
 
 
 def open_world() -> World:

@@ -12,7 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from terrain.bilinear import ROUNDING, bilinear
 from terrain.blocks import COARSE, Blocks
-from terrain.cache import ArrayCache
+from terrain.cache import LIMIT_BYTES, ArrayCache
 from terrain.errors import RasterError
 from terrain.files import Refused, raster_files
 from terrain.grid import Grid
@@ -61,14 +61,20 @@ class Ground:
         self.overlay = overlay
 
     @classmethod
-    def open(cls, paths: Sequence[Path], cache_dir: Path, overlay: Overlay | None = None) -> Ground:
+    def open(
+        cls,
+        paths: Sequence[Path],
+        cache_dir: Path,
+        overlay: Overlay | None = None,
+        cache_limit_bytes: float = LIMIT_BYTES,
+    ) -> Ground:
         """Ground of files and of the rasters in folders; what cannot be used stands in `refused`.
 
         In a folder, files with other names than rasters have are passed over; a file named itself is
         always tried. Decoded samples are kept in `cache_dir`, or in a temporary folder if that is read-only.
         With an overlay, what no raster knows is sea where the coastline says so, and land cover has its say.
         """
-        cache = ArrayCache(cache_dir)
+        cache = ArrayCache(cache_dir, cache_limit_bytes)
         layers, refused, seen = [], [], set()
         for path in raster_files(paths):
             try:
