@@ -11,10 +11,13 @@ from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
 from app.climate import SEASON
+from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
 from app.ledger import ledger
-from app.margins import SAME_MAST_KM, Air, Turned
+from app.margins import SAME_MAST_KM, Air, FloatArray, Turned
+from app.reading_value import MeasureNext
+from app.readings_document import readings_document
 from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
@@ -29,6 +32,7 @@ CAUTIONS = (
     "An amplifier's supply is mains equipment: leave its circuit to a licensed person.",
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
+QUANTILE_95 = 1.6449  # of the standard normal
 SHOWN_NAMES = 5
 NOT_YET = ("Overload by strong signals is not counted yet.",)
 
@@ -45,10 +49,12 @@ def answer_document(
     turned: Mapping[str, Turned],
     outcomes: Mapping[str, Outcome],
     verdicts: Sequence[Verdict],
+    evidence: Evidence,
 ) -> dict[str, Any]:
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
+    spreads = {key: (one.cells.sigma_db, one.cells.mean_db - one.cells.median_db) for key, one in turned.items()}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -68,11 +74,12 @@ def answer_document(
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, air, assumptions) for field in fields],
+        "emissions": [_emission(request, field, fields, place, turned, spreads, air, assumptions) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
+        "readings": readings_document(evidence),
         "assumptions": assumptions.document(),
         "cautions": [*_cautions(request, site, store, fields, air), *NOT_YET, *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
@@ -97,6 +104,7 @@ def _emission(
     fields: Sequence[EmissionField],
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
+    spreads: Mapping[str, tuple[FloatArray, FloatArray]],
     air: Air,
     assumptions: Assumptions,
 ) -> dict[str, Any]:
@@ -150,19 +158,25 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, e, field, air, assumptions) for name, one in turned.items()},
+        else {name: _cell(request, one, spreads[name], e, field, air, assumptions) for name, one in turned.items()},
     }
 
 
 def _cell(
-    request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, assumptions: Assumptions
+    request: AssessRequest,
+    turned: Turned,
+    spread: tuple[FloatArray, FloatArray],
+    e: int,
+    field: EmissionField,
+    air: Air,
+    assumptions: Assumptions,
 ) -> dict[str, Any]:
-    sigma_db = float(turned.cells.sigma_db[e])
+    sigma_db, read_db = (float(one[e]) for one in spread)  # the second: by how much readings moved the margin
     limit = _limit(turned, e)
     reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
     for outlet, median in zip(reception.outlets, turned.median.outlets, strict=True):
-        margin_db = float(outlet.margin_db[e])
+        margin_db = float(outlet.margin_db[e]) + read_db
         outlets.append(
             {
                 "name": outlet.name,
@@ -172,18 +186,47 @@ def _cell(
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),
                 "headroom_db": None,
-                "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
+                "chance": _probability(_outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)),
                 "held_back_by": limit,
-                "ledger": ledger(request, turned, e, field, air, assumptions, outlet.name),
+                "ledger": [
+                    *ledger(request, turned, e, field, air, assumptions, outlet.name),
+                    *_ledger_of_readings(turned, e, read_db, margin_db),
+                ],
             }
         )
+    margin_db = float(turned.margin_db[e]) + read_db
     return {
-        "margin_db": round(float(turned.margin_db[e]), 2),
+        "margin_db": round(margin_db, 2),
+        "margin_p05_db": round(margin_db - QUANTILE_95 * sigma_db, 2),
+        "margin_p95_db": round(margin_db + QUANTILE_95 * sigma_db, 2),
         "sigma_db": round(sigma_db, 2),
         "chance": _probability(turned.chance[e]),
         "held_back_by": limit,
         "outlets": outlets,
     }
+
+
+def _outlet_chance(turned: Turned, e: int, unread_db: float, margin_db: float, sigma_db: float) -> float:
+    """Chance at one outlet: that of the chain where it decides, in closed form where it is better off."""
+    decides = float(turned.chance[e])
+    if unread_db == float(turned.margin_db[e]):
+        return decides
+    return max(decides, float(exceedance(np.array(margin_db), np.array(sigma_db))))
+
+
+def _ledger_of_readings(turned: Turned, e: int, read_db: float, margin_db: float) -> list[dict[str, Any]]:
+    """The step by which readings of this roof moved the margin; none without readings."""
+    if turned.cells.known is None:
+        return []
+    return [
+        {
+            "step": "readings of this roof",
+            "value_db": round(read_db, 2),
+            "total": round(margin_db, 2),
+            "source": "conditioning of the error model on the readings listed",
+            "state": turned.state(e),
+        }
+    ]
 
 
 def _limit(turned: Turned, e: int) -> dict[str, Any]:
@@ -230,6 +273,7 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "expected_worth": _rounded(verdict.expected_worth),
         "chance_of_gain": _probability(verdict.chance_of_gain),
         "expected_extra": round(verdict.expected_extra, 3),
+        "expected_extra_error": round(verdict.expected_extra_error, 4),
         "price_difference": _rounded(verdict.price_difference),
         "price_per_extra": _rounded(verdict.price_per_extra),
         "break_even_price": round(verdict.break_even_price, 2),
@@ -237,9 +281,22 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "lost": list(verdict.lost),
         "now_secure": list(verdict.now_secure),
         "cheapest_equal": verdict.cheapest_equal,
-        "measure_next": None,
+        "measure_next": None if verdict.measure_next is None else _measure_next(verdict.measure_next),
         "wanted": list(verdict.wanted),
         "reason": verdict.reason,
+    }
+
+
+def _measure_next(one: MeasureNext) -> dict[str, Any]:
+    return {
+        "emission": one.emission,
+        "bearing_deg": round(one.bearing_deg, 2),
+        "value": round(one.value, 2),
+        "expected_dbuv": round(one.expected_dbuv, 1),
+        "tipping": [
+            {"from_dbuv": part.from_dbuv, "to_dbuv": part.to_dbuv, "answer": part.answer, "why": part.why}
+            for part in one.tipping
+        ],
     }
 
 

@@ -28,6 +28,11 @@ def _table(*rows: Assumption) -> dict[str, Assumption]:
 
 OURS = "our choice, not measured by us"
 
+MEASURED = (
+    "our choice; published errors of such predictions at roof height, from memory: mean within 3 dB, "
+    "standard deviation 6 to 9 dB at best"
+)
+
 ASSUMPTIONS: dict[str, Assumption] = _table(
     # round the roof
     Assumption(
@@ -69,10 +74,10 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
     ),
     # errors, one normal each (standard deviations)
     Assumption("roof_sd_db", 2.0, "dB", 0, 15, "what one roof does to all signals alike", OURS),
-    Assumption("path_clear_sd_db", 3.0, "dB", 0, 20, "clear by 0.6 of the first Fresnel zone or more", OURS),
-    Assumption("path_grazing_sd_db", 5.0, "dB", 0, 20, "ray touching the ground", OURS),
-    Assumption("path_obstructed_sd_db", 7.0, "dB", 0, 20, "ground one Fresnel radius into the line", OURS),
-    Assumption("path_beyond_horizon_sd_db", 8.0, "dB", 0, 20, "beyond the horizon of the smooth Earth", OURS),
+    Assumption("path_clear_sd_db", 3.0, "dB", 0, 20, "clear by 0.6 of the first Fresnel zone or more", MEASURED),
+    Assumption("path_grazing_sd_db", 5.0, "dB", 0, 20, "ray touching the ground", MEASURED),
+    Assumption("path_obstructed_sd_db", 7.0, "dB", 0, 20, "ground one Fresnel radius into the line", MEASURED),
+    Assumption("path_beyond_horizon_sd_db", 8.0, "dB", 0, 20, "beyond the horizon of the smooth Earth", MEASURED),
     Assumption(
         "path_bearing_correlation",
         0.5,
@@ -104,6 +109,22 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
     Assumption("feeder_sd_db", 1.0, "dB", 0, 10, "feeder and joints", OURS),
     Assumption("erp_unknown_sd_db", 4.0, "dB", 0, 15, "power or pattern not stated by the register", OURS),
     Assumption("erp_unknown_mean_db", -3.0, "dB", -20, 0, "wanted power where only the maximum is stated", OURS),
+    # readings
+    Assumption("position_sd_db", 1.5, "dB", 0, 10, "field a step away from where the aerial stands", OURS),
+    Assumption("sensitivity_sd_db", 1.5, "dB", 0, 10, "a set against the C/N its mode is planned with", OURS),
+    Assumption(
+        "breaks_up_db", 1.5, "dB", 0.2, 10, "breaking up: within so much of what the mode needs; perfect: above", OURS
+    ),
+    Assumption("seen_softness_db", 1.0, "dB", 0.1, 10, "words such as perfect mean more to one than to another", OURS),
+    Assumption("count_sd", 0.7, "multiplexes", 0.1, 5, "people count programmes, or forget one", OURS),
+    Assumption("order_softness_db", 3.0, "dB", 0.1, 20, "bars and per cent of a set, compared within a list", OURS),
+    Assumption("order_wrong_share", 0.1, "-", 0, 0.5, "pairs of a set's list that stand in the wrong order", OURS),
+    Assumption("neighbour_softness_db", 6.0, "dB", 0.1, 20, "another roof, another aerial, seen from below", OURS),
+    Assumption(
+        "neighbour_wrong_share", 0.3, "-", 0, 0.5, "an aerial up there may be unused or feed something else", OURS
+    ),
+    Assumption("other_height_sd_db", 2.0, "dB", 0, 10, "a reading at another height than the aerial's", OURS),
+    Assumption("joint_fault_sd_db", 6.0, "dB", 1, 20, "a run read at two of its points, whatever its state", OURS),
     # the loft and the cross-polar answer
     Assumption(
         "loft_covering_db",

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import Cells, ErrorPart, PathError, exceedance, received
+from app.chance import Cells, ErrorPart, Knowledge, PathError, exceedance, received
 from app.disturbance import Company, Effect, State, company_of, disturbed, ear_of, effect_of
 from app.disturbance_errors import Disturbers, Moved, disturbers_of, moved_by, rejection_sd_db, slope_and_spread
 from app.fields import EmissionField
@@ -24,7 +24,8 @@ FloatArray = NDArray[np.float64]
 
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
-TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+TIE_COUNT = 0.02  # expected multiplexes: directions closer than this are as good
+HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
 
@@ -137,15 +138,22 @@ def air_of(fields: Sequence[EmissionField], interferers: Sequence[Interferer]) -
     )
 
 
-def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions: Assumptions) -> Turned:
+def turn(
+    chain: Chain,
+    air: Air,
+    roof: Roof,
+    counted: Sequence[str],
+    assumptions: Assumptions,
+    known: Knowledge | None = None,
+) -> Turned:
     """Turn a chain to where it was said to point, else to the whole degree with the largest expected count.
 
-    `counted` are the multiplexes that count for the choice. Ties go to the direction nearest to the
-    bearing of the strongest emission.
+    `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
+    Ties go to the direction nearest to the bearing of the strongest emission.
     """
     best: tuple[float, float, AerialPolarisation, FloatArray] | None = None
     for polarisation in _polarisations(chain):
-        counts = _sweep(chain, polarisation, air, roof, counted, assumptions)
+        counts = _sweep(chain, polarisation, air, roof, counted, assumptions, known)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
@@ -170,6 +178,7 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
         np.where(state_b, raised.margin_db, faded.margin_db),
         _path_error(air, assumptions, moved),
         _parts(chain, polarisation, air, faded, assumptions, state_b, moved),
+        known,
     )
     return Turned(
         chain, pointing_deg, polarisation, faded, raised, median, air.company, effects, cells, cells.chance, counts
@@ -216,6 +225,7 @@ def _sweep(
     roof: Roof,
     counted: Sequence[str],
     assumptions: Assumptions,
+    known: Knowledge | None,
 ) -> FloatArray:
     turned = BEARINGS[:, None]
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
@@ -230,20 +240,27 @@ def _sweep(
         slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
         moved = np.where(reception.margin_db < margin, slope * spread, moved)
         margin = np.minimum(margin, reception.margin_db)
-    fixed = air.path_sd_db**2 + sum(
-        (part.sd_db**2 for part in _parts_of_any_pointing(chain, air, assumptions)),
-        np.zeros_like(air.path_sd_db),
-    )
+    path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
+    fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    chance = exceedance(margin, np.sqrt(fixed + turned_away**2 + moved**2))
+    chance = exceedance(margin + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2))
+    # What no direction brings does not sway the choice of one, however much of it there is.
+    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
+    counted = [one for one in counted if one in within_reach]
     return expected_count(chance, air.multiplex_of, counted, air.company.acting)
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
-    strongest = float(air.signals.bearing_deg[int(np.argmax(air.used_dbuv_m))])
+    """Return the whole degree with the largest count; of those as good, the one on the strongest mast.
+
+    Where no mast stands in a direction as good as the best, it is the one nearest to the strongest.
+    """
     as_good = np.flatnonzero(counts >= counts.max() - TIE_COUNT)
-    away = np.abs((as_good - strongest + 180) % 360 - 180)
-    return float(as_good[int(np.argmin(away))])
+    by_strength = air.signals.bearing_deg[np.argsort(-air.used_dbuv_m, kind="stable")]
+    away = np.abs((as_good - by_strength[:, None] + 180) % 360 - 180)  # (e, candidates)
+    on_a_mast = away.min(axis=1) <= 0.5
+    row = int(np.argmax(on_a_mast)) if on_a_mast.any() else 0
+    return float(as_good[int(np.argmin(away[row]))])
 
 
 def _path_error(air: Air, assumptions: Assumptions, moved: Moved) -> PathError:
@@ -346,6 +363,24 @@ def _masts(fields: Sequence[EmissionField]) -> tuple[str, ...]:
         if near is None:
             heads.append(key)
     return tuple(names[field.transmitter.id] for field in fields)
+
+
+def wanted_errors(
+    chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
+) -> tuple[PathError, tuple[ErrorPart, ...]]:
+    """Return the errors of the wanted signals themselves, as a reading of their level meets them."""
+    path = PathError(
+        masts=air.masts,
+        bearing_deg=air.signals.bearing_deg,
+        sd_db=air.path_sd_db,
+        correlation=assumptions.value("path_bearing_correlation"),
+        scale_deg=assumptions.value("path_bearing_scale_deg"),
+    )
+    rejection = ErrorPart(
+        tuple(f"off-axis:{chain.aerial.id}:{field.emission.id}" for field in air.fields),
+        _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
+    )
+    return path, (*_parts_of_any_pointing(chain, air, assumptions), rejection)
 
 
 def _named_masts(wanted: Sequence[EmissionField], interferers: Sequence[Interferer]) -> tuple[str, ...]:

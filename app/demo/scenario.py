@@ -113,6 +113,7 @@ DEMO_ROOFS = (
     _roof("Northern fields", -20, 0, "the far island's multiplexes are missed by a small aerial"),
     _roof("Western plain", -25, -20, "all that can be had is secure already"),
     _roof("Eastern bay", -7, -22, "the strong mast is behind a range; a relay with rods upright fills in"),
+    _roof("North shore", -19, 0, "with the short Yagi up, one reading of the far island settles the answer"),
     _roof("Backbone foot", -10, -22, "a mast on the same channel takes one multiplex away from a small aerial"),
 )
 

@@ -64,6 +64,9 @@ function judgement(verdict, currency) {
       : [{ text: ', ' }, { text: 'not worth it', weight: 'answer' }, { text: ' at any price' }];
   }
   const word = [{ text: ': ' }, { text: verdict.answer, weight: 'answer' }];
+  if (verdict.answer === 'measure first' && verdict.measure_next) {
+    return [...word, { text: `, the signal from ${Math.round(verdict.measure_next.bearing_deg)}°` }];
+  }
   if (verdict.answer === 'worth it' && some) return [...word, { text: `, up to ${limit}` }];
   if (verdict.answer === 'not worth it' && some) return [...word, { text: `, unless it costs less than ${limit}` }];
   return word;

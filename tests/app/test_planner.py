@@ -15,7 +15,7 @@ from app.roof import Roof
 from terrain.errors import CoverageError
 
 PLACES = {roof.name: Roof(roof.latitude_deg, roof.longitude_deg) for roof in DEMO_ROOFS}
-NORTH, WEST, BAY, FOOT = PLACES.values()
+NORTH, WEST, BAY, SHORE, FOOT = PLACES.values()
 
 
 @pytest.fixture(scope="module")
@@ -33,7 +33,8 @@ def cell(answer, multiplex, chain):
 def test_document_has_the_shape_of_the_interface(ask):
     answer = ask(now="roof-yagi")
     assert set(answer) == {
-        "roof", "multiplexes", "emissions", "chains", "verdicts", "assumptions", "cautions", "sources", "credits",
+        "roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources",
+        "credits",
     }  # fmt: skip
     emission = answer["emissions"][0]
     assert {"id", "transmitter", "multiplex", "channel", "frequency_mhz", "system", "mode", "erp_kw", "polarisation",
@@ -52,8 +53,9 @@ def test_document_has_the_shape_of_the_interface(ask):
     json.dumps(answer, allow_nan=False)
 
 
-def test_worth_it_and_not_worth_it_both_occur(ask):
-    assert ask(NORTH, now="roof-yagi")["verdicts"][0]["answer"] == "worth it"
+def test_all_three_answers_occur(ask):
+    assert ask(NORTH, now="loft-dipole")["verdicts"][0]["answer"] == "worth it"
+    assert ask(SHORE, now="roof-yagi")["verdicts"][0]["answer"] == "measure first"
     assert {verdict["answer"] for verdict in ask(WEST, now="roof-yagi")["verdicts"]} == {"not worth it"}
 
 
@@ -245,3 +247,15 @@ def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
         assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
         assert fade["value_db"] == -field["fade_db"]
         assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]
+
+
+def test_an_aerial_is_turned_to_a_mast_where_that_is_as_good(ask):
+    """On a flat maximum a rigger is sent to a mast, not to the middle of nowhere."""
+    answer = ask(WEST)
+    bearings = {round(one["bearing_deg"]) for one in answer["emissions"]}
+    for name, chain in answer["chains"].items():
+        (pointing,) = chain["pointings"]
+        best = max(pointing["expected_by_degree"])
+        at_masts = [pointing["expected_by_degree"][bearing % 360] for bearing in bearings]
+        if max(at_masts) >= best - 0.02:
+            assert round(pointing["pointing_deg"]) in bearings, name
