@@ -2,19 +2,20 @@
 
 from __future__ import annotations
 
-import json
 import socket
 import sys
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
 from pathlib import Path
 from typing import Annotated, Any
 
 import typer
 
-from app.errors import AppError, RequestError
-from propagation.errors import PropagationError
-from terrain.errors import TerrainError
+from app.cli_ground import cover, terrain
+from app.console import WRONG, Json
+from app.console import mendable as _mendable
+from app.console import pair as _pair
+from app.console import place as _place
+from app.console import show as _show
+from app.errors import RequestError
 
 main = typer.Typer(
     name="gainworth",
@@ -24,8 +25,6 @@ main = typer.Typer(
     pretty_exceptions_enable=False,
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
-terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
-cover = typer.Typer(help="Land-cover maps.", no_args_is_help=True)
 chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 readings = typer.Typer(help="What was read at a roof.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
@@ -33,42 +32,6 @@ main.add_typer(terrain, name="terrain")
 main.add_typer(cover, name="cover")
 main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
-
-Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
-WRONG, MENDABLE = 1, 2
-
-
-@contextmanager
-def _mendable() -> Iterator[None]:
-    """Print what the user can mend as one line and leave with 2."""
-    try:
-        yield
-    except (AppError, TerrainError, PropagationError) as error:
-        typer.echo(str(error), err=True)
-        raise typer.Exit(MENDABLE) from error
-
-
-def _show(document: Any, as_json: bool, text: Callable[[], str]) -> None:
-    typer.echo(json.dumps(document, ensure_ascii=False, indent=1) if as_json else text().rstrip("\n"))
-
-
-def _pair(text: str, what: str, example: str) -> tuple[float, float]:
-    """Two numbers with a comma between them."""
-    try:
-        first, second = (float(part) for part in text.split(","))
-    except ValueError:
-        raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
-    return first, second
-
-
-def _place(text: str) -> tuple[float, float]:
-    """A position in any usual writing; what looks swapped is asked on the way."""
-    from app.position import parse_position
-
-    position = parse_position(text)
-    if position.question is not None:
-        typer.echo(f"Caution: {position.question}", err=True)
-    return position.latitude_deg, position.longitude_deg
 
 
 @main.command()
@@ -263,132 +226,6 @@ def list_transmitters(as_json: Json = False) -> None:
     with _mendable():
         rows = emission_rows(open_world().store)
     _show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
-
-
-@terrain.command("add")
-def add_rasters(
-    paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="Raster files.")],
-    crs: Annotated[str | None, typer.Option(help="Coordinate system of rasters that do not say, as EPSG:N.")] = None,
-    kind: Annotated[str | None, typer.Option(help="surface, radar-surface or bare.")] = None,
-    unit: Annotated[str | None, typer.Option(help="Unit of heights that do not say: m, ft or us survey foot.")] = None,
-    as_json: Json = False,
-) -> None:
-    """Copy elevation rasters into the data folder, checked first; good ones are kept, refused ones told.
-
-    A server that runs reads them when it is started again.
-    """
-    from app.ground_files import add_raster
-    from app.lists import table
-
-    rows, refused = [], []
-    for one in paths:
-        try:
-            rows.append(add_raster(one, crs, kind, unit))
-        except (AppError, TerrainError) as error:
-            refused.append(str(error))
-    if rows or as_json:
-        _show(rows, as_json, lambda: table(rows, ""))
-    for message in refused:
-        typer.echo(message, err=True)
-    if refused:
-        raise typer.Exit(MENDABLE)
-
-
-@terrain.command("remove")
-def remove_one_raster(
-    name: Annotated[str, typer.Argument(metavar="FILE", help="Name as `terrain list` shows it.")], as_json: Json = False
-) -> None:
-    """Take a raster out of the data folder."""
-    from app.ground_files import remove_raster
-    from app.lists import table
-
-    with _mendable():
-        row = remove_raster(name)
-    _show(row, as_json, lambda: table([row], ""))
-
-
-@terrain.command("list")
-def list_rasters(as_json: Json = False) -> None:
-    """List rasters in use and those refused, with the reason."""
-    from app.lists import raster_rows, table
-    from app.world import open_world
-
-    with _mendable():
-        rows = raster_rows(open_world().ground)
-    _show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
-
-
-At = Annotated[str, typer.Option(metavar="POSITION", help="Middle of the circle, in any usual writing.")]
-Reach = Annotated[float, typer.Option(metavar="KM", help="Radius of the circle.")]
-Source = Annotated[str | None, typer.Option(help="Id of the source; default: the first of its kind.")]
-DryRun = Annotated[bool, typer.Option("--dry-run", help="Say how much it would be; fetch nothing.")]
-
-
-@terrain.command("get")
-def get_tiles(
-    at: At, reach: Reach = 150.0, source: Source = None, dry_run: DryRun = False, as_json: Json = False
-) -> None:
-    """Fetch the open elevation tiles round a place; started again, it goes on where it was."""
-    _get("elevation", at, reach, source, dry_run, as_json)
-
-
-@cover.command("get")
-def get_cover(
-    at: At, reach: Reach = 50.0, source: Source = None, dry_run: DryRun = False, as_json: Json = False
-) -> None:
-    """Fetch the open land-cover tiles round a place."""
-    _get("cover", at, reach, source, dry_run, as_json)
-
-
-def _get(holds: str, at: str, reach: float, source: str | None, dry_run: bool, as_json: bool) -> None:
-    from app.open_tiles import fetch_plan, outcome_document, plan, plan_document
-
-    with _mendable():
-        planned = plan(holds, *_place(at), reach, source)
-        if dry_run:
-            document = plan_document(planned)
-            _show(document, as_json, lambda: str(document["text"]))
-            return
-        typer.echo(planned.said_first(), err=as_json)
-        on_screen = sys.stderr.isatty()
-        progress = fetch_plan(
-            planned, (lambda one: typer.echo(f"\r{one.text}  ", nl=False, err=True)) if on_screen else lambda one: None
-        )
-        if on_screen:
-            typer.echo("", err=True)
-        outcome = outcome_document(planned, progress)
-    _show(outcome, as_json, lambda: str(outcome["summary"]))
-    if any(one["state"] in ("failed", "stopped") for one in outcome["outcomes"]):
-        raise typer.Exit(MENDABLE)
-
-
-@cover.command("add")
-def add_maps(
-    paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="GeoTIFF files of class codes.")],
-    classes: Annotated[str | None, typer.Option(help="Class table: worldcover, corine or nlcd.")] = None,
-    crs: Annotated[str | None, typer.Option(help="Coordinate system of maps that do not say, as EPSG:N.")] = None,
-    as_json: Json = False,
-) -> None:
-    """Copy land-cover maps into the data folder, checked first."""
-    from app.ground_files import add_cover
-    from app.lists import table
-
-    with _mendable():
-        rows = [add_cover(one, classes, crs) for one in paths]
-    _show(rows, as_json, lambda: table(rows, "nothing was added"))
-
-
-@cover.command("list")
-def list_maps(as_json: Json = False) -> None:
-    """List land-cover maps in use and those refused, with the reason."""
-    from app.lists import cover_rows, table
-    from app.paths import cache_dir
-    from app.world import cover_dir
-    from terrain.cover import Cover
-
-    with _mendable():
-        rows = cover_rows(Cover.open([cover_dir()], cache_dir()) if cover_dir().is_dir() else None)
-    _show(rows, as_json, lambda: table(rows, "no land cover: `gainworth cover get` or `gainworth cover add FILE`"))
 
 
 @chains.command("list")
