@@ -308,7 +308,7 @@ def _disturbed_by(e: int, air: Air) -> list[str]:
 
 
 def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air) -> list[str]:
-    cautions = list(site.cautions)
+    cautions = [*site.cautions, *([site.compass] if site.compass else [])]
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
         cautions.append(
