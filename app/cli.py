@@ -9,12 +9,9 @@ from typing import Annotated, Any
 
 import typer
 
+from app.chains_cli import chains
 from app.cli_ground import cover, terrain
-from app.console import WRONG, Json
-from app.console import mendable as _mendable
-from app.console import pair as _pair
-from app.console import place as _place
-from app.console import show as _show
+from app.cli_tools import Json, mendable, pair, place, show
 from app.errors import RequestError
 
 main = typer.Typer(
@@ -25,13 +22,14 @@ main = typer.Typer(
     pretty_exceptions_enable=False,
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
-chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 readings = typer.Typer(help="What was read at a roof.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
 main.add_typer(cover, name="cover")
 main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
+
+WRONG = 1
 
 
 @main.command()
@@ -49,14 +47,14 @@ def serve(
     from app.web.main import create_app
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         settings = load_settings(data_dir())
         changes = {key: value for key, value in (("host", host), ("port", port)) if value is not None}
         settings = settings.model_copy(update=changes)
         listener = _listener(settings.host, settings.port)
         world = open_world()
     address = f"http://{f'[{settings.host}]' if ':' in settings.host else settings.host}:{listener.getsockname()[1]}/"
-    _show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
+    show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
     sys.stdout.flush()
     if open_page:
         typer.launch(address)
@@ -114,8 +112,8 @@ def assess(
     from app.telling import told
     from app.world import open_world
 
-    with _mendable():
-        latitude_deg, longitude_deg = _place(at)
+    with mendable():
+        latitude_deg, longitude_deg = place(at)
         settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings, leaves_m=leaves),  # type: ignore[arg-type]  # Roof checks the word
@@ -131,7 +129,7 @@ def assess(
         )
         world = open_world()
         document = answer_to(request, world.store, world.ground, refractivity_maps=world.refractivity_maps)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 @main.command()
@@ -147,18 +145,18 @@ def path(
     from app.path_query import path_document, told_path
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         world = open_world()
         document = path_document(
             world.ground,
-            *_place(start),
-            *_place(end),
+            *place(start),
+            *place(end),
             frequency,
-            *_pair(heights, "--heights", "150,10"),
+            *pair(heights, "--heights", "150,10"),
             polarisation,
             world.refractivity_maps,
         )
-    _show(document, as_json, lambda: told_path(document))
+    show(document, as_json, lambda: told_path(document))
 
 
 @main.command()
@@ -171,9 +169,9 @@ def verify(
     """Replay published worked examples; leaves with 1 if a case is off by more than 1e-6 dB."""
     from app.verify import verify as replay
 
-    with _mendable():
+    with mendable():
         report = replay(folder)
-    _show(report.document(), as_json, report.text)
+    show(report.document(), as_json, report.text)
     if report.failed:
         raise typer.Exit(WRONG)
 
@@ -189,9 +187,9 @@ def import_file(
     from app.transmitters.store import Store
     from app.transmitters.template import import_template
 
-    with _mendable():
+    with mendable():
         summary = import_template(file, Store.open(data_dir()), dry_run)
-    _show(summary.document(), as_json, summary.text)
+    show(summary.document(), as_json, summary.text)
 
 
 @transmitters.command("remove")
@@ -203,10 +201,10 @@ def remove_source(
     from app.paths import data_dir
     from app.transmitters.store import Store
 
-    with _mendable():
+    with mendable():
         removed = Store.open(data_dir()).delete_source(source)
     document = {"source": source, "emissions_removed": removed}
-    _show(document, as_json, lambda: f'{removed} emissions of source "{source}" taken out')
+    show(document, as_json, lambda: f'{removed} emissions of source "{source}" taken out')
 
 
 @transmitters.command("template")
@@ -223,20 +221,9 @@ def list_transmitters(as_json: Json = False) -> None:
     from app.lists import emission_rows, table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = emission_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
-
-
-@chains.command("list")
-def list_chains(as_json: Json = False) -> None:
-    """List stored chains with their parts and prices."""
-    from app.lists import chain_rows, table
-    from app.world import open_world
-
-    with _mendable():
-        rows = chain_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no chain is stored"))
+    show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
 
 
 @main.command()
@@ -255,12 +242,12 @@ def compare(
     from app.roof import Roof
     from app.world import open_world
 
-    with _mendable():
-        roofs = [Roof(*_pair(one, "--at", "44.5,-37.2"), height) for one in at]
+    with mendable():
+        roofs = [Roof(*place(one), height) for one in at]
         world = open_world()
         requests = [AssessRequest(roof, chains=tuple(chain) if chain else None, now=now) for roof in roofs]
         document = side_by_side(requests, world.store, world.ground)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 @readings.command("add")
@@ -291,8 +278,8 @@ def add_reading(
     from app.kept_readings import keep, told_kept
     from app.world import open_world
 
-    with _mendable():
-        place = _pair(at, "--at", "44.5,-37.2")
+    with mendable():
+        where = place(at)
         said: dict[str, Any] = {
             "emission": of, "multiplex": of, "value_db": value, "state": state, "chain": chain, "point": point,
             "pointing_deg": pointing, "polarisation": polarisation, "aerial_agl_m": height, "day": day,
@@ -303,8 +290,8 @@ def add_reading(
             said |= {"text": _text_of(file), "complete": complete, "kind": "scan list"}
         else:
             said |= {"kind": kind, "confirmed": confirmed}
-        document = keep(open_world().store, *place, {key: one for key, one in said.items() if one is not None})
-    _show(document, as_json, lambda: told_kept(document))
+        document = keep(open_world().store, *where, {key: one for key, one in said.items() if one is not None})
+    show(document, as_json, lambda: told_kept(document))
 
 
 def _text_of(file: Path | None) -> str:
@@ -323,9 +310,9 @@ def list_readings(as_json: Json = False) -> None:
     from app.lists import table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = reading_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no reading is kept: `gainworth readings add`"))
+    show(rows, as_json, lambda: table(rows, "no reading is kept: `gainworth readings add`"))
 
 
 @readings.command("delete")
@@ -333,7 +320,7 @@ def delete_reading(id: Annotated[str, typer.Argument(metavar="ID", help="As list
     """Forget a reading."""
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         open_world().store.delete_reading(id)
     typer.echo(f"reading {id} is forgotten")
 
@@ -344,10 +331,10 @@ def show_logbook(as_json: Json = False) -> None:
     from app.logbook import logbook, told
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         world = open_world()
         document = logbook(world.store, world.ground)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 if __name__ == "__main__":

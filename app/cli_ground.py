@@ -8,7 +8,7 @@ from typing import Annotated
 
 import typer
 
-from app.console import MENDABLE, Json, mendable, place, show
+from app.cli_tools import MENDABLE, Json, mendable, place, show
 from app.errors import AppError
 from terrain.errors import TerrainError
 

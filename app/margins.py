@@ -9,13 +9,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.at_aerial import room_sd_db
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import Cells, ErrorPart, Knowledge, PathError, exceedance, received
+from app.chance import Cells, ErrorPart, Knowledge, PathError, capped, exceedance, not_too_much, received
 from app.disturbance import Company, Effect, State, company_of, disturbed, ear_of, effect_of
 from app.disturbance_errors import Disturbers, Moved, disturbers_of, moved_by, rejection_sd_db, slope_and_spread
 from app.fields import EmissionField
 from app.interferers import Interferer
-from app.link_budget import Reception, Signals, receive
+from app.link_budget import Reception, Signals, is_overload, receive
 from app.roof import Roof
 from app.systems import mode_of
 from terrain.geodesy import distance_and_bearing
@@ -24,7 +25,7 @@ FloatArray = NDArray[np.float64]
 
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
-TIE_COUNT = 0.02  # expected multiplexes: directions closer than this are as good
+TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
 HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
@@ -66,6 +67,7 @@ class Turned:
     cells: Cells
     chance: FloatArray  # (e,)
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
+    sweep_chance: FloatArray  # (360, e) chance of each emission for each whole degree, likewise
 
     @property
     def margin_db(self) -> FloatArray:
@@ -77,13 +79,16 @@ class Turned:
         return "b" if self.raised.margin_db[e] < self.faded.margin_db[e] else "a"
 
     def limit(self, e: int) -> str:
-        """What holds one emission back: interference where it is more than noise, time where only a fade does it."""
+        """What holds one emission back: too much level, interference above noise, time where only a fade does it."""
         return self.held_back(e).limit
 
-    def held_back(self, e: int) -> HeldBack:
-        """What holds one emission back, in the state that decides."""
+    def held_back(self, e: int, outlet: int | None = None) -> HeldBack:
+        """What holds one emission back, in the state that decides, at one outlet; None: at those that count."""
         state = self.state(e)
         reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
+        place = self.median if outlet is None else self.median.outlets[outlet]
+        if is_overload(place)[e]:
+            return HeldBack("overload", state, None, None)
         if float(effect.i_over_n[e]) > 1:
             return HeldBack("interference", state, *effect.strongest(self.company, e))
         by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
@@ -102,7 +107,7 @@ class Turned:
 class HeldBack:
     """What holds an emission back."""
 
-    limit: str  # "noise", "interference", "time"
+    limit: str  # "noise", "interference", "overload", "time"
     state: State
     by: int | None  # row of the strongest interferer
     next_db: float | None  # how far below it all others together stand; None: there are none
@@ -151,18 +156,28 @@ def turn(
     `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
     Ties go to the direction nearest to the bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray] | None = None
+    best: tuple[float, float, AerialPolarisation, FloatArray, FloatArray] | None = None
     for polarisation in _polarisations(chain):
-        counts = _sweep(chain, polarisation, air, roof, counted, assumptions, known)
+        chances = _sweep(chain, polarisation, air, roof, assumptions, known)
+        counts = _expected_by_degree(chances, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts)
+            best = (count, pointing_deg, polarisation, counts, chances)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts = best
+    _, pointing_deg, polarisation, counts, chances = best
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     alone, alone_faded = (
-        receive(chain, air.signals, field, pointing_deg, polarisation, assumptions, roof.surroundings)
+        receive(
+            chain,
+            air.signals,
+            field,
+            pointing_deg,
+            polarisation,
+            assumptions,
+            roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
         for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
     )
     left = ear.left(pointing_deg)
@@ -180,8 +195,20 @@ def turn(
         _parts(chain, polarisation, air, faded, assumptions, state_b, moved),
         known,
     )
+    chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
     return Turned(
-        chain, pointing_deg, polarisation, faded, raised, median, air.company, effects, cells, cells.chance, counts
+        chain,
+        pointing_deg,
+        polarisation,
+        faded,
+        raised,
+        median,
+        air.company,
+        effects,
+        cells,
+        chance,
+        counts,
+        chances,
     )
 
 
@@ -190,7 +217,9 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
 
     One emission alone has its closed form; alternatives are counted over the joint draws.
     """
-    draws = received(turned.cells.draws(), air.multiplex_of, multiplexes)
+    median = turned.median
+    margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
+    draws = received(margins, air.multiplex_of, multiplexes)
     chance = draws.mean(axis=0)
     for m, name in enumerate(multiplexes):
         alone = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
@@ -223,10 +252,10 @@ def _sweep(
     polarisation: AerialPolarisation,
     air: Air,
     roof: Roof,
-    counted: Sequence[str],
     assumptions: Assumptions,
     known: Knowledge | None,
 ) -> FloatArray:
+    """Chance of each emission for each whole degree. (360, e)"""
     turned = BEARINGS[:, None]
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     disturbers = _disturbers(air, assumptions)
@@ -234,7 +263,16 @@ def _sweep(
     margin, moved = np.full((len(BEARINGS), len(air.fields)), np.inf), np.zeros((len(BEARINGS), len(air.fields)))
     fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
     for state, field in fields:
-        alone = receive(chain, air.signals, field, turned, polarisation, assumptions, roof.surroundings)
+        alone = receive(
+            chain,
+            air.signals,
+            field,
+            turned,
+            polarisation,
+            assumptions,
+            roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
         effect = effect_of(ear, alone, left, state)
         reception = disturbed(alone, effect)
         slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
@@ -243,11 +281,16 @@ def _sweep(
     path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    chance = exceedance(margin + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2))
-    # What no direction brings does not sway the choice of one, however much of it there is.
-    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
+    sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
+    enough = exceedance(margin + fixed.mean_db, sigma_db)
+    return not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
+
+
+def _expected_by_degree(chances: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
+    """Expected multiplexes for each whole degree; what no direction brings does not sway the choice. (360,)"""
+    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chances[:, e].max()) >= HOPELESS_BELOW}
     counted = [one for one in counted if one in within_reach]
-    return expected_count(chance, air.multiplex_of, counted, air.company.acting)
+    return expected_count(chances, air.multiplex_of, counted, air.company.acting)
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
@@ -331,6 +374,7 @@ def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> 
             assumptions.value("aerial_gain_sd_db" if aerial.measured else "aerial_own_build_sd_db"),
         ),
         same("feeder:" + "+".join(chain.part_ids_of_feeders), assumptions.value("feeder_sd_db")),
+        ErrorPart(("room",) * len(ids), room_sd_db(aerial, air.signals.frequency_mhz)),
     )
 
 

@@ -1,4 +1,4 @@
-"""What every command shares: errors that the user can mend, output as text or JSON, positions."""
+"""What all commands share: mendable errors, JSON or text, pairs of numbers, positions."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ from propagation.errors import PropagationError
 from terrain.errors import TerrainError
 
 Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
-WRONG, MENDABLE = 1, 2
+MENDABLE = 2
 
 
 @contextmanager
@@ -28,7 +28,7 @@ def mendable() -> Iterator[None]:
 
 
 def show(document: Any, as_json: bool, text: Callable[[], str]) -> None:
-    """Print a document as JSON, or its text."""
+    """Print a document as JSON, or as the text that a function makes of it."""
     typer.echo(json.dumps(document, ensure_ascii=False, indent=1) if as_json else text().rstrip("\n"))
 
 
