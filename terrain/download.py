@@ -175,7 +175,9 @@ def download(
             stop.set()  # Ctrl-C: the tiles under way end at their next piece and keep what they have
             raise
     if fatal:
-        raise fatal[0]
+        come = {one.tile for one in progress.outcomes if one.state in ("there", "fetched", "at sea")}
+        left_mb = sum(tile.source.typical_mb for tile in plan.tiles if tile.corner.tile not in come and tile.has_land)
+        raise type(fatal[0])(f"{fatal[0]}. About {left_mb:.0f} MB are still to come") from fatal[0]
     progress.outcomes.sort(key=lambda outcome: outcome.tile)
     return progress
 
