@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+from collections.abc import Iterator
 from typing import Any
 
 import numpy as np
@@ -38,7 +39,7 @@ class Blocks:
     def __init__(self, raster: Raster, cache: ArrayCache, coast: bool = False) -> None:
         self._raster = raster
         self._cache = cache
-        self._coast = coast  # whether water counts only near the sea of the coastline
+        self.coast = coast  # whether water counts only near the sea of the coastline
         self._lock = threading.Lock()
         self._down = max(1, -(-(raster.grid.rows - 1) // raster.block_rows))
         self._across = max(1, -(-(raster.grid.columns - 1) // raster.block_columns))
@@ -97,6 +98,26 @@ class Blocks:
             coarse = self._pyramid(block, level, what)
             values[which] = coarse[(row[which] - top) // COARSE[level], (column[which] - left) // COARSE[level]]
         return values
+
+    def parts(self) -> Iterator[tuple[int, int, NDArray[Any], NDArray[Any], NDArray[np.bool_]]]:
+        """Every block: its first row and column, samples as stored, the same with small voids bridged, water."""
+        for down in range(self._down):
+            for across in range(self._across):
+                block = (down, across)
+                samples = self._samples(block)
+                dry = not (self._metres(samples) == 0).any()
+                water = np.zeros(samples.shape, dtype=bool) if dry else self._water(block)
+                yield (
+                    down * self._raster.block_rows,
+                    across * self._raster.block_columns,
+                    samples,
+                    self._bridged(block),
+                    water,
+                )
+
+    def is_void(self, samples: NDArray[Any]) -> NDArray[np.bool_]:
+        """Which stored samples are missing."""
+        return is_void(samples, self._raster.void)
 
     def void_share(self) -> float | None:
         """Share of missing samples, 0 to 1, or None as long as the raster was never read whole."""
@@ -172,12 +193,12 @@ class Blocks:
         return kept
 
     def _water(self, block: tuple[int, int]) -> NDArray[np.bool_]:
-        name = self._named("sea" if self._coast else "water", block)
+        name = self._named("sea" if self.coast else "water", block)
         kept = self._cache.load(name)
         if kept is None:
             zero = self._metres(self._samples(block)) == 0
             water = flat_zero_areas(zero, self._raster.grid.spacing_m)
-            if self._coast and water.any():
+            if self.coast and water.any():
                 top, left = block[0] * self._raster.block_rows, block[1] * self._raster.block_columns
                 rows, columns = water.shape
                 water &= shore_of_grid(self._raster.grid, top, left, rows, columns, SHORE_KM)

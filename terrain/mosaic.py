@@ -5,19 +5,21 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from terrain.bilinear import ROUNDING, bilinear
+from terrain.bilinear import bilinear
 from terrain.blocks import COARSE, Blocks
 from terrain.cache import LIMIT_BYTES, ArrayCache
 from terrain.errors import RasterError
 from terrain.files import Refused, raster_files
-from terrain.grid import Grid
+from terrain.layer import Layer, surrounded, within
 from terrain.overlay import Overlay
 from terrain.raster import Raster, open_raster
+from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
 
@@ -40,12 +42,6 @@ class RasterInfo:
     unit: str  # of the numbers in the file; heights are in metres everywhere
 
 
-@dataclass(frozen=True, slots=True)
-class _Layer:
-    raster: Raster
-    blocks: Blocks
-
-
 class Ground:
     """Elevation and water at any position, from every raster that was given.
 
@@ -55,9 +51,12 @@ class Ground:
     across the seam take their corners from both; at an outer edge the last sample holds for half a cell.
     """
 
-    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused], overlay: Overlay | None = None) -> None:
+    def __init__(
+        self, layers: Sequence[Layer], refused: Sequence[Refused], cache: ArrayCache, overlay: Overlay | None = None
+    ) -> None:
         self._layers = tuple(layers)
         self.refused = tuple(refused)
+        self._cache = cache
         self.overlay = overlay
 
     @classmethod
@@ -85,9 +84,9 @@ class Ground:
             identity = (raster.content, raster.grid.transform, raster.crs)
             if identity not in seen:
                 seen.add(identity)
-                layers.append(_Layer(raster, Blocks(raster, cache, coast=overlay is not None)))
+                layers.append(Layer(raster, Blocks(raster, cache, coast=overlay is not None)))
         layers.sort(key=lambda layer: (round(layer.raster.grid.spacing_m, 1), layer.raster.name))
-        return cls(layers, refused, overlay)
+        return cls(layers, refused, cache, overlay)
 
     @property
     def rasters(self) -> tuple[RasterInfo, ...]:
@@ -111,7 +110,7 @@ class Ground:
             )
         return tuple(infos)
 
-    @property
+    @cached_property
     def version(self) -> str:
         """Short hash that changes with any raster, its place or its kind."""
         digest = hashlib.sha256()
@@ -122,6 +121,16 @@ class Ground:
             digest.update(self.overlay.version.encode())
         return digest.hexdigest()[:12]
 
+    def sheets(self, wanted: Callable[[Raster], bool] = lambda _: True) -> list[Sheet]:
+        """The wanted rasters laid together as far as one array can hold them (sheet.py), decoded the first time.
+
+        None with land cover, which sheets do not know.
+        Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
+        """
+        if self.overlay is not None and self.overlay.cover is not None:
+            return []
+        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
+
     def survey(self) -> Ground:
         """Read every raster whole, once: void shares are known, and damaged files join `refused`."""
         layers, refused = [], list(self.refused)
@@ -131,7 +140,7 @@ class Ground:
                 layers.append(layer)
             except RasterError as error:
                 refused.append(Refused(layer.raster.path, str(error)))
-        return Ground(layers, refused, self.overlay)
+        return Ground(layers, refused, self._cache, self.overlay)
 
     def elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> FloatArray:
         """Height above sea level [m], bilinear between samples; NaN where no raster has a value.
@@ -266,7 +275,7 @@ class Ground:
         if open_still.size:
             answer.height_m[open_still], answer.layer[open_still] = self._gaps(lat[open_still], lon[open_still])
 
-    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer, bool]]:
+    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, Layer, bool]]:
         """Layers whose bounding box meets that of the positions, their numbers, and if it holds them all."""
         south, north = np.fmin.reduce(lat, initial=90.0), np.fmax.reduce(lat, initial=-90.0)
         west, east = np.fmin.reduce(lon, initial=540.0), np.fmax.reduce(lon, initial=-540.0)
@@ -279,15 +288,15 @@ class Ground:
             if layer.raster.grid.meets(*box)
         ]
 
-    def _interpolate(self, layer: _Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
+    def _interpolate(self, layer: Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
         """Bilinear heights of one raster, NaN outside its outer pixel edges and at voids."""
         grid = layer.raster.grid
         row, column = grid.index(lat, lon)
-        inside = _surrounded(grid, row, column)
+        inside = surrounded(grid, row, column)
         if inside.all():
-            return _within(layer, row, column, bridged)
+            return within(layer, row, column, bridged)
         height = np.full(lat.size, np.nan)
-        height[inside] = _within(layer, row[inside], column[inside], bridged)
+        height[inside] = within(layer, row[inside], column[inside], bridged)
         half_out = ~inside & (row >= -0.5) & (row <= grid.rows - 0.5)
         half_out &= (column >= -0.5) & (column <= grid.columns - 0.5)
         if half_out.any():
@@ -307,14 +316,14 @@ class Ground:
                 continue
             row, column = grid.index(lat, lon)
             beside = np.isnan(height) & (row > -1) & (row < grid.rows) & (column > -1) & (column < grid.columns)
-            beside &= ~_surrounded(grid, row, column)
+            beside &= ~surrounded(grid, row, column)
             if beside.any():
                 height[beside] = self._across_edge(layer, row[beside], column[beside], False, whole=True, deep=deep)
                 answering[beside & np.isfinite(height)] = number
         return height, answering
 
     def _across_edge(
-        self, layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool, whole: bool = False, deep: bool = True
+        self, layer: Layer, row: FloatArray, column: FloatArray, bridged: bool, whole: bool = False, deep: bool = True
     ) -> FloatArray:
         """Heights in the outermost half cells, whose outer corners belong to the neighbours.
 
@@ -350,8 +359,8 @@ class Ground:
             if open_still.size == 0:
                 continue
             row, column = grid.index(lat[open_still], lon[open_still])
-            inside = _surrounded(grid, row, column)
-            height[open_still[inside]] = _within(layer, row[inside], column[inside], bridged=False)
+            inside = surrounded(grid, row, column)
+            height[open_still[inside]] = within(layer, row[inside], column[inside], bridged=False)
         open_still = np.nonzero(np.isnan(height) & np.isfinite(lat + lon))[0]
         if deep and open_still.size:
             height[open_still] = self._gaps(lat[open_still], lon[open_still], deep=False)[0]
@@ -386,18 +395,3 @@ def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[Float
     )
     lat, lon = np.broadcast_arrays(lat, lon)
     return lat, lon
-
-
-def _surrounded(grid: Grid, row: FloatArray, column: FloatArray) -> NDArray[np.bool_]:
-    """Whether positions lie between samples of a raster, rounding errors allowed for."""
-    inside: NDArray[np.bool_] = (row >= -ROUNDING) & (row <= grid.rows - 1 + ROUNDING)
-    inside &= (column >= -ROUNDING) & (column <= grid.columns - 1 + ROUNDING)
-    return inside
-
-
-def _within(layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:
-    """Bilinear heights at positions between samples of one raster."""
-    grid = layer.raster.grid
-    top = np.clip(row.astype(np.intp), 0, grid.rows - 2)
-    left = np.clip(column.astype(np.intp), 0, grid.columns - 2)
-    return bilinear(layer.blocks.cells(top, left, bridged), row - top, column - left)

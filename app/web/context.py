@@ -10,6 +10,7 @@ import anyio
 import anyio.to_thread
 from fastapi import Depends, Request
 
+from app.fast_paths import is_ready, warm_up_in_background
 from app.open_tiles import Downloads
 from app.settings import Settings
 from app.transmitters.store import Store
@@ -36,7 +37,9 @@ class Context:
 
     def open_ground_anew(self) -> None:
         """Take up what lies in the data folder now; answers under way keep the ground they began with."""
-        self.ground = open_ground(is_demo(self.store))
+        before, self.ground = self.ground, open_ground(is_demo(self.store))
+        if is_ready(before):
+            warm_up_in_background(self.ground)
 
     async def compute(self, function: Callable[P, T], *args: P.args, **kwargs: P.kwargs) -> T:
         """Run a long function in a thread, at most `settings.workers` at once."""
