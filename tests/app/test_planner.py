@@ -6,7 +6,7 @@ from dataclasses import replace
 
 import pytest
 
-from app.answer import CAUTIONS
+from app.cautions import CAUTIONS
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import ChainError, NotStoredError, RequestError, RoofError
 from app.planner import assess, stored_chain

@@ -1,0 +1,91 @@
+"""What stands beside an answer: dangers of the work, what is missing, what was reckoned roughly."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from app.air import SAME_MAST_KM, Air
+from app.chain.parts import Chain
+from app.climate import SEASON
+from app.fields import EmissionField
+from app.request import AssessRequest
+from app.site import Site
+from app.transmitters.store import Store
+
+CAUTIONS = (
+    "Roofs, ladders and masts can kill: never alone, never in wind, ice or thunder; "
+    "local codes and licensed practice decide.",
+    "Keep mast, aerial and ladder farther from overhead lines than they could fall.",
+    "Earth the mast and bond the feeder's screen as the local code asks; an earthed mast is no lightning protection.",
+    "An amplifier's supply is mains equipment: leave its circuit to a licensed person.",
+    "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
+)
+SHOWN_NAMES = 5
+
+
+def cautions_at(
+    request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air, chains: Sequence[Chain]
+) -> list[str]:
+    """What an answer must be read with, of this roof and request."""
+    cautions = [*site.cautions, *([site.compass] if site.compass else [])]
+    if not fields:
+        nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
+        cautions.append(
+            f"Nothing is on the air within {request.reach_km:g} km: "
+            + (
+                f"the nearest transmitter is {nearest[0].name}, {nearest[1]:.0f} km away."
+                if nearest
+                else "no transmitter is stored; import some first."
+            )
+        )
+    without = sorted({field.transmitter.name for field in fields if field.path is None})
+    if without:
+        cautions.append(
+            f"No prediction for {', '.join(without)}: see the reason beside each channel; "
+            "they take no part in the verdict."
+        )
+    if any(
+        field.path is not None and (field.path.sea_km > 0 or field.path.kind == "beyond the horizon")
+        for field in fields
+    ):
+        cautions.append(SEASON)
+    warm = [field for field in fields if field.path is not None and field.path.sea_km > 0 and field.sea_is_warm]
+    if warm:
+        cautions.append(
+            f"The sea under {len(warm)} of the channels counts as warm for P.1546 (our choice by latitude and region)."
+        )
+    twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
+    if twice:
+        cautions.append(
+            f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
+            "Take one import out with `gainworth transmitters remove SOURCE`."
+        )
+    cautions += air.company.cautions
+    double = [chain.name for chain in chains if len(chain.aerials) > 1]
+    if double and air.company.pairs.disturber.size:
+        cautions.append(
+            f"Interference through {', '.join(double)} is reckoned with the pattern and pointing of the first aerial, "
+            "also for what another aerial receives."
+        )
+    rough = sorted({one.transmitter.name for one in air.company.interferers if not one.over_ground})
+    if rough:
+        names = ", ".join(rough[:SHOWN_NAMES]) + (
+            f" and {len(rough) - SHOWN_NAMES} more" if len(rough) > SHOWN_NAMES else ""
+        )
+        cautions.append(f"Interference from {names} is reckoned without the ground on its way.")
+    return cautions
+
+
+def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
+    """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
+    mine = field.emission
+    return [
+        f"{field.transmitter.name} in {field.transmitter.source} and "
+        f"{other.transmitter.name} in {other.transmitter.source}"
+        for other in fields
+        if other.transmitter.source > field.transmitter.source
+        and other.emission.system == mine.system
+        and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
+        and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
+        and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM
+    ]
