@@ -10,9 +10,12 @@ import numpy as np
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
+from app.evidence import Evidence
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
 from app.margins import Air, Turned
+from app.reading_value import MeasureNext
+from app.readings_document import readings_document
 from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
@@ -27,6 +30,7 @@ CAUTIONS = (
     "An amplifier's supply is mains equipment: leave its circuit to a licensed person.",
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
+QUANTILE_95 = 1.6449  # of the standard normal
 METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
 NOT_YET = (
     "Interference from other transmitters is not counted yet: a chance can be lower than shown.",
@@ -46,6 +50,7 @@ def answer_document(
     turned: Mapping[str, Turned],
     outcomes: Mapping[str, Outcome],
     verdicts: Sequence[Verdict],
+    evidence: Evidence,
 ) -> dict[str, Any]:
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
@@ -72,6 +77,7 @@ def answer_document(
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
+        "readings": readings_document(evidence),
         "assumptions": assumptions.document(),
         "cautions": [*_cautions(request, site, store, fields), *NOT_YET, *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
@@ -157,11 +163,12 @@ def _cell(
     request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, assumptions: Assumptions
 ) -> dict[str, Any]:
     sigma_db = float(turned.cells.sigma_db[e])
+    read_db = float(turned.cells.mean_db[e] - turned.cells.median_db[e])  # what readings moved it by
     limit = _limit(turned, e)
     before = _ledger_to_field(field, request.availability_percent)
     outlets = []
     for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
-        margin_db = float(outlet.margin_db[e])
+        margin_db = float(outlet.margin_db[e]) + read_db
         steps = ledger_steps(
             turned.chain,
             air.signals,
@@ -196,16 +203,34 @@ def _cell(
                         }
                         for step in steps[1:]  # the first is the field, which the steps before end with
                     ),
+                    *_ledger_of_readings(turned, read_db, margin_db),
                 ],
             }
         )
     return {
-        "margin_db": round(float(turned.faded.margin_db[e]), 2),
+        "margin_db": round(float(turned.faded.margin_db[e]) + read_db, 2),
+        "margin_p05_db": round(float(turned.faded.margin_db[e]) + read_db - QUANTILE_95 * sigma_db, 2),
+        "margin_p95_db": round(float(turned.faded.margin_db[e]) + read_db + QUANTILE_95 * sigma_db, 2),
         "sigma_db": round(sigma_db, 2),
         "chance": _probability(turned.chance[e]),
         "held_back_by": limit,
         "outlets": outlets,
     }
+
+
+def _ledger_of_readings(turned: Turned, read_db: float, margin_db: float) -> list[dict[str, Any]]:
+    """The step by which readings of this roof moved the margin; none without readings."""
+    if turned.cells.known is None:
+        return []
+    return [
+        {
+            "step": "readings of this roof",
+            "value_db": round(read_db, 2),
+            "total": round(margin_db, 2),
+            "source": "conditioning of the error model on the readings listed",
+            "state": "a",
+        }
+    ]
 
 
 def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[dict[str, Any]]:
@@ -297,6 +322,7 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "expected_worth": _rounded(verdict.expected_worth),
         "chance_of_gain": _probability(verdict.chance_of_gain),
         "expected_extra": round(verdict.expected_extra, 3),
+        "expected_extra_error": round(verdict.expected_extra_error, 4),
         "price_difference": _rounded(verdict.price_difference),
         "price_per_extra": _rounded(verdict.price_per_extra),
         "break_even_price": round(verdict.break_even_price, 2),
@@ -304,9 +330,22 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "lost": list(verdict.lost),
         "now_secure": list(verdict.now_secure),
         "cheapest_equal": verdict.cheapest_equal,
-        "measure_next": None,
+        "measure_next": None if verdict.measure_next is None else _measure_next(verdict.measure_next),
         "wanted": list(verdict.wanted),
         "reason": verdict.reason,
+    }
+
+
+def _measure_next(one: MeasureNext) -> dict[str, Any]:
+    return {
+        "emission": one.emission,
+        "bearing_deg": round(one.bearing_deg, 2),
+        "value": round(one.value, 2),
+        "expected_dbuv": round(one.expected_dbuv, 1),
+        "tipping": [
+            {"from_dbuv": part.from_dbuv, "to_dbuv": part.to_dbuv, "answer": part.answer, "why": part.why}
+            for part in one.tipping
+        ],
     }
 
 

@@ -104,6 +104,21 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
     Assumption("feeder_sd_db", 1.0, "dB", 0, 10, "feeder and joints", OURS),
     Assumption("erp_unknown_sd_db", 4.0, "dB", 0, 15, "power or pattern not stated by the register", OURS),
     Assumption("erp_unknown_mean_db", -3.0, "dB", -20, 0, "wanted power where only the maximum is stated", OURS),
+    # readings
+    Assumption("position_sd_db", 1.5, "dB", 0, 10, "field a step away from where the aerial stands", OURS),
+    Assumption("sensitivity_sd_db", 1.5, "dB", 0, 10, "a set against the C/N its mode is planned with", OURS),
+    Assumption(
+        "breaks_up_db", 1.5, "dB", 0.2, 10, "breaking up: within so much of what the mode needs; perfect: above", OURS
+    ),
+    Assumption("seen_softness_db", 1.0, "dB", 0.1, 10, "words such as perfect mean more to one than to another", OURS),
+    Assumption("order_softness_db", 3.0, "dB", 0.1, 20, "bars and per cent of a set, compared within a list", OURS),
+    Assumption("order_wrong_share", 0.1, "-", 0, 0.5, "pairs of a set's list that stand in the wrong order", OURS),
+    Assumption("neighbour_softness_db", 6.0, "dB", 0.1, 20, "another roof, another aerial, seen from below", OURS),
+    Assumption(
+        "neighbour_wrong_share", 0.3, "-", 0, 0.5, "an aerial up there may be unused or feed something else", OURS
+    ),
+    Assumption("other_height_sd_db", 2.0, "dB", 0, 10, "a reading at another height than the aerial's", OURS),
+    Assumption("joint_fault_sd_db", 6.0, "dB", 1, 20, "a run read at two of its points, whatever its state", OURS),
     # the loft and the cross-polar answer
     Assumption(
         "loft_covering_db",

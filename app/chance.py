@@ -14,7 +14,9 @@ rho * exp(-|difference| / scale), the shorter way round.
 A single cell has the closed form Phi(median / sigma). Counts, alternatives and differences are taken
 over quasi-random draws: every key has its own stratified sample of the normal (a Latin hypercube,
 McKay, Beckman and Conover 1979, Technometrics 21), shuffled by a hash of the key, so adding an
-emission leaves all other draws as they were.
+emission leaves all other draws as they were. Its cost beside the field: measured in tests/benchmarks.
+
+Readings replace the prior of the normals by a posterior (app/conditioning.py): Cells that carry one draw from it.
 """
 
 from __future__ import annotations
@@ -23,7 +25,7 @@ import hashlib
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import Literal
+from typing import Literal, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -68,23 +70,88 @@ class PathError:
 
 
 @dataclass(frozen=True, slots=True)
+class Loadings:
+    """By how much each named normal moves each of some quantities."""
+
+    keys: tuple[str, ...]  # (k,) different names
+    db: FloatArray  # (e, k)
+
+    def over(self, keys: Sequence[str]) -> FloatArray:
+        """The same for another list of names, 0 where a name is not among ours. (e, len(keys))"""
+        place = {key: k for k, key in enumerate(self.keys)}
+        found = [(column, place[key]) for column, key in enumerate(keys) if key in place]
+        result = np.zeros((len(self.db), len(keys)))
+        if found:
+            result[:, [column for column, _ in found]] = self.db[:, [k for _, k in found]]
+        return result
+
+
+class Knowledge(Protocol):
+    """What is known of the normals beyond their names."""
+
+    @property
+    def is_normal(self) -> bool:
+        """Whether the normals are still jointly normal, so that closed forms hold."""
+
+    def moments(self, loadings: Loadings) -> tuple[FloatArray, FloatArray]:
+        """Shift of the mean [dB] and variance [dB²] of each quantity. (e,), (e,)"""
+
+    def applied(self, draws_db: FloatArray, loadings: Loadings) -> FloatArray:
+        """Prior samples of each quantity turned into samples under what is known. (DRAWS, e)"""
+
+
+@dataclass(frozen=True, slots=True)
 class Cells:
     """Margins of all emissions through one chain, with everything that may move them."""
 
     median_db: FloatArray  # (e,) margin
     path: PathError
     parts: tuple[ErrorPart, ...]
+    known: Knowledge | None = None  # None: nothing read, the normals are as they are named
 
     @property
     def sigma_db(self) -> FloatArray:
         """Standard deviation of each margin. (e,)"""
+        if self.known is not None:
+            return np.sqrt(self.known.moments(self.loadings())[1])
         variance = self.path.sd_db**2 + sum((part.sd_db**2 for part in self.parts), np.zeros_like(self.median_db))
         return np.sqrt(variance)
 
     @property
+    def mean_db(self) -> FloatArray:
+        """Mean of each margin; the median as computed unless readings moved it. (e,)"""
+        return self.median_db if self.known is None else self.median_db + self.known.moments(self.loadings())[0]
+
+    @property
     def chance(self) -> FloatArray:
-        """Probability that each margin is at least 0, in closed form. (e,)"""
-        return exceedance(self.median_db, self.sigma_db)
+        """Probability that each margin is at least 0: in closed form, or over the draws once bounds were read. (e,)"""
+        if self.known is not None and not self.known.is_normal:
+            chance: FloatArray = (self.draws() >= 0).mean(axis=0)
+            return chance
+        return exceedance(self.mean_db, self.sigma_db)
+
+    def loadings(self) -> Loadings:
+        """Every named normal of these margins; the field over bearing by its white noise at whole degrees."""
+        columns: dict[str, FloatArray] = {}
+        count = len(self.median_db)
+
+        def add(key: str, e: int, db: float) -> None:
+            columns.setdefault(key, np.zeros(count))[e] += db
+
+        common = np.sqrt(self.path.correlation)
+        own = np.sqrt(1 - self.path.correlation)
+        for e, mast in enumerate(self.path.masts):
+            add(f"path:{mast}", e, float(self.path.sd_db[e] * own))
+        for part in self.parts:
+            for e, key in enumerate(part.keys):
+                if part.sd_db[e] > 0:
+                    add(key, e, float(part.sd_db[e]))
+        rows = np.stack([_bearing_row(float(one), self.path.scale_deg) for one in self.path.bearing_deg])
+        over_bearing = common * self.path.sd_db[:, None] * rows
+        return Loadings(
+            (*columns, *(f"bearing:{degree}" for degree in range(360))),
+            np.hstack([np.stack(list(columns.values()), axis=1), over_bearing]),
+        )
 
     def draws(self) -> FloatArray:
         """Return joint samples of the margins. (DRAWS, e)"""
@@ -98,7 +165,7 @@ class Cells:
             for e, key in enumerate(part.keys):
                 if part.sd_db[e] > 0:
                     margins[:, e] += part.sd_db[e] * normals(key)
-        return margins
+        return margins if self.known is None else self.known.applied(margins, self.loadings())
 
 
 def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
@@ -135,9 +202,12 @@ def bearing_field(bearing_deg: float, scale_deg: float) -> FloatArray:
     A stationary normal field on the circle with the correlation exp(-|difference| / scale): the symmetric
     square root of its circulant covariance times white noise keyed by whole degrees.
     """
-    row = _bearing_root(scale_deg)[(np.arange(360) - round(bearing_deg)) % 360]
-    field: FloatArray = row @ _bearing_noise()
+    field: FloatArray = _bearing_row(bearing_deg, scale_deg) @ _bearing_noise()
     return field
+
+
+def _bearing_row(bearing_deg: float, scale_deg: float) -> FloatArray:
+    return _bearing_root(scale_deg)[(np.arange(360) - round(bearing_deg)) % 360]
 
 
 @lru_cache(maxsize=8)

@@ -26,9 +26,11 @@ main = typer.Typer(
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
 terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
 chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
+readings = typer.Typer(help="What was read at a roof.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
 main.add_typer(chains, name="chains")
+main.add_typer(readings, name="readings")
 
 Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
 WRONG, MENDABLE = 1, 2
@@ -119,6 +121,10 @@ def assess(
     method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
     availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.")] = 99,
     surroundings: Annotated[str, typer.Option(help="open, suburban, urban or trees.")] = "open",
+    cost: Annotated[float | None, typer.Option(metavar="C", help="What taking a reading costs.")] = None,
+    without_readings: Annotated[
+        bool, typer.Option("--without-readings", help="Leave the stored readings of this roof out.")
+    ] = False,
     as_json: Json = False,
 ) -> None:
     """Say what a roof receives with each chain, and whether a better one is worth its price."""
@@ -139,7 +145,8 @@ def assess(
             now=now,
             wanted=tuple(want) if want else None,
             worth_per_multiplex=settings.worth_per_multiplex if worth is None else worth,
-            reading_cost=settings.reading_cost,
+            reading_cost=settings.reading_cost if cost is None else cost,
+            stored_readings=not without_readings,
             availability_percent=availability,
             reach_km=reach,
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word
@@ -264,6 +271,116 @@ def list_chains(as_json: Json = False) -> None:
     with _mendable():
         rows = chain_rows(open_world().store)
     _show(rows, as_json, lambda: table(rows, "no chain is stored"))
+
+
+@main.command()
+def compare(
+    at: Annotated[list[str], typer.Option(metavar="LAT,LON", help="A roof; may be repeated for several.")],
+    chain: Annotated[
+        list[str] | None, typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored.")
+    ] = None,
+    now: Annotated[str | None, typer.Option(metavar="NAME|nothing", help="What is up now.")] = None,
+    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")] = 10.0,
+    as_json: Json = False,
+) -> None:
+    """Set roofs side by side with the same chains, at 50, 90 and 99 % of time, and count the answers that change."""
+    from app.compare import side_by_side, told
+    from app.request import AssessRequest
+    from app.roof import Roof
+    from app.world import open_world
+
+    with _mendable():
+        roofs = [Roof(*_pair(one, "--at", "44.5,-37.2"), height) for one in at]
+        world = open_world()
+        requests = [AssessRequest(roof, chains=tuple(chain) if chain else None, now=now) for roof in roofs]
+        document = side_by_side(requests, world.store, world.ground)
+    _show(document, as_json, lambda: told(document))
+
+
+@readings.command("add")
+def add_reading(
+    at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
+    kind: Annotated[str, typer.Option(help="level, cn, mer, seen, order, neighbour or scan-list.")] = "level",
+    of: Annotated[str | None, typer.Option(metavar="CHANNEL|MULTIPLEX", help="What was read.")] = None,
+    value: Annotated[float | None, typer.Option(metavar="DB", help="Level in dB(µV), C/N or MER in dB.")] = None,
+    state: Annotated[str | None, typer.Option(help="perfect, breaks up or not found.")] = None,
+    file: Annotated[
+        Path | None, typer.Option(metavar="FILE", help="Text of a scan list; - reads what is piped in.")
+    ] = None,
+    complete: Annotated[bool, typer.Option("--complete", help="The scan list is all that the set found.")] = False,
+    chain: Annotated[str | None, typer.Option(metavar="NAME", help="Through which chain.")] = None,
+    point: Annotated[str | None, typer.Option(help="Outlet, or aerial for its terminals.")] = None,
+    pointing: Annotated[float | None, typer.Option(metavar="DEG", help="True bearing of the aerial.")] = None,
+    polarisation: Annotated[str | None, typer.Option(help="horizontal or vertical.")] = None,
+    height: Annotated[float | None, typer.Option(metavar="M", help="Aerial above the ground.")] = None,
+    day: Annotated[str | None, typer.Option(metavar="DATE", help="Year first: 2026-10-31.")] = None,
+    instrument: Annotated[str | None, typer.Option(help="meter, analyser, stick or set.")] = None,
+    spread: Annotated[float | None, typer.Option(metavar="DB", help="Standard deviation, if known.")] = None,
+    works: Annotated[bool | None, typer.Option("--works/--fails", help="Whether a neighbour's aerial works.")] = None,
+    confirmed: Annotated[bool, typer.Option("--confirmed", help="Looked at twice: counts however surprising.")] = False,
+    as_json: Json = False,
+) -> None:
+    """Keep a reading of a roof, or all that a set's scan list says; every later answer for this roof counts it."""
+    from app.kept_readings import keep, told_kept
+    from app.world import open_world
+
+    with _mendable():
+        place = _pair(at, "--at", "44.5,-37.2")
+        said: dict[str, Any] = {
+            "emission": of, "multiplex": of, "value_db": value, "state": state, "chain": chain, "point": point,
+            "pointing_deg": pointing, "polarisation": polarisation, "aerial_agl_m": height, "day": day,
+            "instrument": instrument, "sd_db": spread, "works": works,
+        }  # fmt: skip
+        if kind == "scan-list":
+            said = {key: said[key] for key in ("chain", "point", "pointing_deg", "polarisation", "day")}
+            said |= {"text": _text_of(file), "complete": complete, "kind": "scan list"}
+        else:
+            said |= {"kind": kind, "confirmed": confirmed}
+        document = keep(open_world().store, *place, {key: one for key, one in said.items() if one is not None})
+    _show(document, as_json, lambda: told_kept(document))
+
+
+def _text_of(file: Path | None) -> str:
+    if file is None:
+        raise RequestError("a scan list needs --file FILE: save what the set shows as text, one channel a line")
+    try:
+        return sys.stdin.read() if str(file) == "-" else file.read_text("utf-8", "replace")
+    except OSError as error:
+        raise RequestError(f"{file} cannot be read ({error.strerror}): name a text file") from error
+
+
+@readings.command("list")
+def list_readings(as_json: Json = False) -> None:
+    """List kept readings."""
+    from app.kept_readings import reading_rows
+    from app.lists import table
+    from app.world import open_world
+
+    with _mendable():
+        rows = reading_rows(open_world().store)
+    _show(rows, as_json, lambda: table(rows, "no reading is kept: `gainworth readings add`"))
+
+
+@readings.command("delete")
+def delete_reading(id: Annotated[str, typer.Argument(metavar="ID", help="As listed.")]) -> None:
+    """Forget a reading."""
+    from app.world import open_world
+
+    with _mendable():
+        open_world().store.delete_reading(id)
+    typer.echo(f"reading {id} is forgotten")
+
+
+@readings.command("logbook")
+def show_logbook(as_json: Json = False) -> None:
+    """Compare every kept figure with its prediction: our own track record."""
+    from app.logbook import logbook, told
+    from app.world import open_world
+
+    with _mendable():
+        world = open_world()
+        document = logbook(world.store, world.ground)
+    _show(document, as_json, lambda: told(document))
 
 
 if __name__ == "__main__":

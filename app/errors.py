@@ -5,6 +5,7 @@ AppError
 │   └── RoofError                        the place: out of range, at sea, no ground
 ├── TransmitterFileError (ValueError)    a register or template file
 ├── ChainError (ValueError)              a chain or a part of it
+├── ReadingError (ValueError)            a reading that nobody can have taken
 ├── NotStoredError (LookupError)         a name or id that the store does not hold
 ├── StoreError (OSError)                 the data folder or its database
 └── ModeError (ValueError)                an unknown system, mode or channel raster
@@ -38,6 +39,10 @@ class TransmitterFileError(AppError, ValueError):
 
 class ChainError(AppError, ValueError):
     """A chain or one of its parts is not possible as described."""
+
+
+class ReadingError(AppError, ValueError):
+    """A reading that nobody can have taken, or that does not say what it is of."""
 
 
 class NotStoredError(AppError, LookupError):

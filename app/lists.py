@@ -55,7 +55,7 @@ def raster_rows(ground: Ground) -> list[dict[str, Any]]:
 
 def chain_rows(store: Store) -> list[dict[str, Any]]:
     """One row per stored chain."""
-    from app.planner import stored_chain
+    from app.stored_chains import stored_chain
 
     rows = []
     for document in store.list_chains():

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import Cells, ErrorPart, PathError, exceedance, received
+from app.chance import Cells, ErrorPart, Knowledge, PathError, exceedance, received
 from app.fields import EmissionField
 from app.link_budget import Reception, Signals, receive
 from app.roof import Roof
@@ -22,6 +22,7 @@ FloatArray = NDArray[np.float64]
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
 TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
 
@@ -97,15 +98,22 @@ def air_of(fields: Sequence[EmissionField]) -> Air:
     )
 
 
-def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions: Assumptions) -> Turned:
+def turn(
+    chain: Chain,
+    air: Air,
+    roof: Roof,
+    counted: Sequence[str],
+    assumptions: Assumptions,
+    known: Knowledge | None = None,
+) -> Turned:
     """Turn a chain to where it was said to point, else to the whole degree with the largest expected count.
 
-    `counted` are the multiplexes that count for the choice. Ties go to the direction nearest to the
-    bearing of the strongest emission.
+    `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
+    Ties go to the direction nearest to the bearing of the strongest emission.
     """
     best: tuple[float, float, AerialPolarisation, FloatArray] | None = None
     for polarisation in _polarisations(chain):
-        counts = _sweep(chain, polarisation, air, roof, counted, assumptions)
+        counts = _sweep(chain, polarisation, air, roof, counted, assumptions, known)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
@@ -122,7 +130,8 @@ def turn(chain: Chain, air: Air, roof: Roof, counted: Sequence[str], assumptions
         roof.surroundings,
     )
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
-    cells = Cells(faded.margin_db, _path_error(air, assumptions), _parts(chain, polarisation, air, faded, assumptions))
+    parts = error_parts(chain, polarisation, air, faded, assumptions)
+    cells = Cells(faded.margin_db, path_error(air, assumptions), parts, known)
     return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts)
 
 
@@ -161,6 +170,7 @@ def _sweep(
     roof: Roof,
     counted: Sequence[str],
     assumptions: Assumptions,
+    known: Knowledge | None,
 ) -> FloatArray:
     reception = receive(
         chain,
@@ -171,13 +181,13 @@ def _sweep(
         assumptions,
         roof.surroundings,
     )
-    fixed = air.path_sd_db**2 + sum(
-        (part.sd_db**2 for part in _parts_of_any_pointing(chain, air, assumptions)),
-        np.zeros_like(air.path_sd_db),
-    )
+    nowhere = np.zeros_like(air.path_sd_db)
+    fixed = Cells(nowhere, path_error(air, assumptions), _parts_of_any_pointing(chain, air, assumptions), known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    chance = exceedance(reception.margin_db, np.sqrt(fixed + turned_away**2))
-    return expected_count(chance, air.multiplex_of, counted)
+    chance = exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
+    # What no direction brings does not sway the choice of one, however much of it there is.
+    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
+    return expected_count(chance, air.multiplex_of, [one for one in counted if one in within_reach])
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
@@ -187,7 +197,8 @@ def _best_bearing(counts: FloatArray, air: Air) -> float:
     return float(as_good[int(np.argmin(away))])
 
 
-def _path_error(air: Air, assumptions: Assumptions) -> PathError:
+def path_error(air: Air, assumptions: Assumptions) -> PathError:
+    """Return the errors of the paths of all emissions."""
     return PathError(
         masts=air.masts,
         bearing_deg=air.signals.bearing_deg,
@@ -197,9 +208,10 @@ def _path_error(air: Air, assumptions: Assumptions) -> PathError:
     )
 
 
-def _parts(
+def error_parts(
     chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
 ) -> tuple[ErrorPart, ...]:
+    """Return every error beside the paths' for one chain turned one way."""
     ids = [field.emission.id for field in air.fields]
     rejection = ErrorPart(
         tuple(f"off-axis:{chain.aerial.id}:{name}" for name in ids),

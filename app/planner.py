@@ -9,13 +9,15 @@ from typing import Any
 
 from app.answer import answer_document
 from app.assumptions import Assumptions
-from app.chain.document import CHAIN_KEYS, chain_from_document
 from app.chain.parts import Chain
 from app.errors import RequestError
 from app.fields import fields_at
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
+from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
+from app.roof_readings import Place, evidence_at, what_can_be_read
 from app.site import site_of
+from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multiplexes
 from terrain.mosaic import Ground
@@ -51,17 +53,17 @@ def assess(
     turned = (
         {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
     )
+    place = Place(request, store, ground, found, fields, air, turned, assumptions)
+    evidence = evidence_at(place)
+    known = evidence.posterior
+    if known is not None:
+        turned = {chain.name: turn(chain, air, request.roof, counted, assumptions, known) for chain in chains}
     outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
-    verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions)
+    readables = what_can_be_read(place, turned, known)
+    verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions, readables)
     return answer_document(
-        request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts
+        request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts, evidence
     )
-
-
-def stored_chain(store: Store, name: str) -> Chain:
-    """Return a stored chain by name or id; NotStoredError if there is none."""
-    document = store.get_chain(name)
-    return chain_from_document({key: value for key, value in document.items() if key in CHAIN_KEYS})
 
 
 def _chains(request: AssessRequest, store: Store) -> list[Chain]:
@@ -120,6 +122,7 @@ def _verdicts(
     multiplexes: Sequence[str],
     chosen: Sequence[str],
     assumptions: Assumptions,
+    readables: Sequence[Readable],
 ) -> list[Verdict]:
     """Return the verdict on every candidate, best first."""
     if not outcomes:
@@ -143,6 +146,8 @@ def _verdicts(
                 wanted,
                 assumptions.value("worth_per_multiplex"),
                 baseline_is_up=request.now is not None,
+                readables=readables,
+                reading_cost=assumptions.value("reading_cost"),
             )
             for candidate in in_question
             if candidate is not baseline

@@ -10,6 +10,7 @@ from typing import Literal
 
 from app.chain.parts import Chain
 from app.errors import RequestError
+from app.readings import Reading
 from app.roof import Roof
 
 Method = Literal["p1812", "p1546", "both"]
@@ -32,6 +33,8 @@ class AssessRequest:
     availability_percent: int = 99
     reach_km: float = 150.0
     method: Method = "both"
+    readings: tuple[Reading, ...] = ()  # beside those stored for this roof
+    stored_readings: bool = True  # whether those count too
     assumptions: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
 
     def __post_init__(self) -> None:

@@ -3,9 +3,11 @@
 With N the number of wanted multiplexes received (random under the joint model), v the worth of one more
 and the price difference of the candidate over the baseline,
 
-    U = v * (N candidate - N baseline) - price difference        worth it if E(U) > 0.
+    U = v * (N candidate - N baseline) - price difference
 
-Without a price there is no answer, only the break-even price v * E(N candidate - N baseline).
+and W the value of the best reading that could be taken first (app/reading_value.py), c what taking it costs:
+*measure first* if W > c, else *worth it* if E(U) > 0, else *not worth it*. Without a price there is no answer,
+only the break-even price v * E(N candidate - N baseline).
 """
 
 from __future__ import annotations
@@ -20,6 +22,7 @@ from numpy.typing import NDArray
 
 from app.chain.parts import Chain
 from app.chance import DRAWS
+from app.reading_value import MeasureNext, Readable, most_valuable
 
 Answer = Literal["worth it", "not worth it", "measure first"]
 BoolArray = NDArray[np.bool_]
@@ -29,6 +32,14 @@ HAVE = 0.70  # and reach, or have had, this
 SECURE = 0.95
 COUNTS_FROM, COUNTS_TO = 0.05, 0.95  # wanted unless chosen: possible somewhere, not secure everywhere
 SAME_CHANCE = 0.02  # chances this close are the same to a person
+
+# What helps against a limit and what does not.
+HELP = {
+    "noise": "gain helps",
+    "time": "gain helps on bad nights",
+    "interference": "directivity helps, an amplifier does not",
+    "overload": "less gain helps, an amplifier harms",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,6 +68,7 @@ class Verdict:
     expected_worth: float | None
     chance_of_gain: float
     expected_extra: float
+    expected_extra_error: float  # standard error of the samples
     price_difference: float | None
     price_per_extra: float | None
     break_even_price: float
@@ -64,6 +76,7 @@ class Verdict:
     lost: tuple[str, ...]
     now_secure: tuple[str, ...]
     cheapest_equal: str | None
+    measure_next: MeasureNext | None  # the reading that is worth most
     wanted: tuple[str, ...]
     reason: str
 
@@ -103,14 +116,30 @@ def compare(
     wanted: Sequence[str],
     worth_per_multiplex: float,
     baseline_is_up: bool,
+    readables: Sequence[Readable] = (),
+    reading_cost: float = 0.0,
 ) -> Verdict:
-    """Return the verdict on one candidate; `others` are all chains in question, for the cheapest equal one."""
+    """Return the verdict on one candidate.
+
+    `others` are all chains in question, for the cheapest equal one; `readables` what could be read first.
+    """
     counted = [multiplexes.index(name) for name in wanted]
-    extra = candidate.received[:, counted].sum(axis=1) - baseline.received[:, counted].sum(axis=1)
+    has_before = baseline.received[:, counted].sum(axis=1)
+    has_after = candidate.received[:, counted].sum(axis=1)
+    extra = has_after - has_before
     expected_extra = float(extra.mean())
     price = price_difference(candidate.chain, baseline.chain, baseline_is_up)
     worth = None if price is None else worth_per_multiplex * expected_extra - price
-    answer: Answer | None = None if worth is None else "worth it" if worth > 0 else "not worth it"
+    measure = (
+        None
+        if price is None
+        else most_valuable(readables, worth_per_multiplex * extra - price, has_before * 1.0, has_after * 1.0)
+    )
+    answer: Answer | None = None
+    if worth is not None:
+        answer = "worth it" if worth > 0 else "not worth it"
+        if measure is not None and measure.value > reading_cost:
+            answer = "measure first"
     before, after = baseline.chance, candidate.chance
     return Verdict(
         baseline=baseline.name,
@@ -119,6 +148,7 @@ def compare(
         expected_worth=worth,
         chance_of_gain=float((extra > 0).mean()),
         expected_extra=expected_extra,
+        expected_extra_error=float(extra.std() / np.sqrt(DRAWS)),
         price_difference=price,
         price_per_extra=None if price is None or expected_extra <= 0 else price / expected_extra,
         break_even_price=worth_per_multiplex * expected_extra,
@@ -126,6 +156,7 @@ def compare(
         lost=_named(multiplexes, (before - after > GAIN_STEP) & (before >= HAVE)),
         now_secure=_named(multiplexes, (after >= SECURE) & (before < SECURE)),
         cheapest_equal=_cheapest_equal(candidate, others, counted, baseline, baseline_is_up),
+        measure_next=measure,
         wanted=tuple(wanted),
         reason=reason(candidate, baseline, multiplexes, wanted),
     )
@@ -153,7 +184,10 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
         return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
-    held = "; ".join(f"{limit} holds back {count} of {len(missing)}" for limit, count in limits.most_common())
+    held = "; ".join(
+        f"{limit} holds back {count} of {len(missing)}, {HELP.get(limit, 'see the ledger')}"
+        for limit, count in limits.most_common()
+    )
     if baseline.chain is None:
         held = f"nothing is up today for {len(missing)} wanted"
     if not cured:

@@ -70,4 +70,16 @@ MIGRATIONS: tuple[tuple[str, ...], ...] = (
             PRIMARY KEY (kind, id)
         )""",
     ),
+    (
+        """CREATE TABLE reading (
+            number INTEGER PRIMARY KEY,
+            id TEXT NOT NULL UNIQUE,
+            latitude_deg REAL NOT NULL,
+            longitude_deg REAL NOT NULL,
+            body TEXT NOT NULL,          -- JSON
+            created TEXT NOT NULL,
+            updated TEXT NOT NULL
+        )""",
+        "CREATE INDEX reading_place ON reading (latitude_deg, longitude_deg)",
+    ),
 )

@@ -12,7 +12,7 @@ from typing import Any
 import numpy as np
 
 from app.errors import RequestError, StoreError
-from app.transmitters import documents
+from app.transmitters import documents, readings
 from app.transmitters.database import Database
 from app.transmitters.documents import Document
 from app.transmitters.model import Emission, Multiplex, Transmitter
@@ -221,6 +221,33 @@ class Store:
         """Remove one chain by id or by name; NotStoredError if there is none."""
         with self._database.transaction(write=True) as connection:
             documents.remove(connection, "chain", chain)
+
+    # Readings: {"id", "latitude_deg", "longitude_deg", "reading", "created", "updated"}
+
+    def list_readings(self) -> list[Document]:
+        """Every stored reading, oldest first."""
+        with self._database.transaction() as connection:
+            return readings.listed(connection)
+
+    def readings_near(self, latitude_deg: float, longitude_deg: float) -> list[Document]:
+        """Readings of one roof: those within 30 m of a position, oldest first."""
+        with self._database.transaction() as connection:
+            return readings.near(connection, latitude_deg, longitude_deg)
+
+    def get_reading(self, reading_id: str) -> Document:
+        """One reading by id; NotStoredError if there is none."""
+        with self._database.transaction() as connection:
+            return readings.one(connection, reading_id)
+
+    def put_reading(self, document: Mapping[str, Any]) -> Document:
+        """Store a reading with its position under its "id", or as a new one without; return it as stored."""
+        with self._database.transaction(write=True) as connection:
+            return readings.put(connection, document)
+
+    def delete_reading(self, reading_id: str) -> None:
+        """Remove one reading; NotStoredError if there is none."""
+        with self._database.transaction(write=True) as connection:
+            readings.remove(connection, reading_id)
 
 
 def _boxes(latitude_deg: float, longitude_deg: float, reach_km: float) -> list[tuple[float, float, float, float]]:

@@ -16,11 +16,14 @@ from pydantic_core import PydanticCustomError
 
 from app.chain.document import chain_from_document
 from app.errors import AppError
+from app.kept_readings import readings_of_documents
 from app.request import AssessRequest
 from app.roof import Obstacle, Roof, Surroundings
+from app.transmitters.store import Store
 
 DEEPEST = 12  # of lists and objects inside one another
 LONGEST_NAME = 200
+MOST_READINGS = 5000
 
 
 class Strict(BaseModel):
@@ -58,6 +61,7 @@ def _plain_json(value: dict[str, Any]) -> dict[str, Any]:
     return value
 
 
+ReadingDocument = Annotated[dict[str, Any], AfterValidator(_plain_json)]
 ChainDocument = Annotated[dict[str, Any], AfterValidator(_plain_json)]
 Name = Annotated[str, Field(min_length=1, max_length=LONGEST_NAME)]
 
@@ -99,7 +103,8 @@ class AssessIn(Strict):
     chains: list[Name | ChainDocument] | None = Field(None, max_length=50)
     now: Name | None = None
     wanted: list[Name] | None = Field(None, max_length=1000)
-    readings: list[dict[str, Any]] = Field([], max_length=0, description="not taken into account yet: leave it empty")
+    readings: list[ReadingDocument] = Field([], max_length=MOST_READINGS)
+    stored_readings: bool = True
     worth_per_multiplex: float | None = None
     reading_cost: float | None = None
     availability_percent: Literal[50, 90, 99] = 99
@@ -107,15 +112,19 @@ class AssessIn(Strict):
     method: Literal["p1812", "p1546", "both"] = "both"
     assumptions: dict[str, float] = {}
 
-    def request(self, worth_per_multiplex: float | None, reading_cost: float | None) -> AssessRequest:
+    def request(self, worth_per_multiplex: float | None, reading_cost: float | None, store: Store) -> AssessRequest:
         """Return the question that the planner answers; the arguments stand in for what was not said."""
+        roof = self.roof.roof()
+        readings, _ = readings_of_documents(list(self.readings), store, roof.latitude_deg, roof.longitude_deg)
         chains = (
             None
             if self.chains is None
             else tuple(one if isinstance(one, str) else chain_from_document(one) for one in self.chains)
         )
         return AssessRequest(
-            roof=self.roof.roof(),
+            roof=roof,
+            readings=tuple(readings),
+            stored_readings=self.stored_readings,
             chains=chains,
             now=self.now,
             wanted=None if self.wanted is None else tuple(self.wanted),
@@ -126,6 +135,14 @@ class AssessIn(Strict):
             method=self.method,
             assumptions=self.assumptions,
         )
+
+
+class ReadingIn(Strict):
+    """A reading, or a pasted scan list, and where it was taken."""
+
+    latitude_deg: float
+    longitude_deg: float
+    reading: ReadingDocument
 
 
 class SavedRoofIn(Strict):

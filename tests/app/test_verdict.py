@@ -117,5 +117,6 @@ def test_reason_counts_what_holds_back():
     found = verdict(outcome(LARGE, 0.9, 0.9, 0.1), small)
     assert (
         found.reason
-        == "Noise holds back 2 of 3; time holds back 1 of 3; High-gain roof aerial brings 2 of them to a likely chance."
+        == "Noise holds back 2 of 3, gain helps; time holds back 1 of 3, gain helps on bad nights; "
+        "High-gain roof aerial brings 2 of them to a likely chance."
     )

@@ -19,7 +19,7 @@ router = APIRouter(prefix="/api", tags=["answers"])
 @router.post("/assess", summary="Which multiplexes will this roof receive, and is a better chain worth it?")
 async def assess_roof(question: AssessIn, context: ContextDep) -> JSONResponse:
     """Answer one roof: every multiplex, emission, chain and verdict, with assumptions and cautions."""
-    request = question.request(context.settings.worth_per_multiplex, context.settings.reading_cost)
+    request = question.request(context.settings.worth_per_multiplex, context.settings.reading_cost, context.store)
     return JSONResponse(
         await context.compute(
             assess,
