@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from datetime import date
 from typing import Any
 
 import numpy as np
@@ -10,6 +11,7 @@ import numpy as np
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade
+from app.declination import declination_at, declination_document
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.link_budget import ledger_steps
@@ -20,6 +22,7 @@ from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
 from app.transmitters.store import Store
+from app.turning import turning_document
 from app.verdict import HAVE, Outcome, Verdict
 
 CAUTIONS = (
@@ -62,6 +65,11 @@ def answer_document(
             "aerial_agl_m": request.roof.aerial_agl_m,
             "ground_amsl_m": round(site.ground_amsl_m, 2),
             "surroundings": request.roof.surroundings,
+            "declination": declination_document(
+                declination_at(
+                    request.roof.latitude_deg, request.roof.longitude_deg, site.ground_amsl_m, date.today()
+                )
+            ),
         },
         "multiplexes": [
             {
@@ -311,6 +319,7 @@ def _pointing(turned: Turned, outcome: Outcome, air: Air) -> dict[str, Any]:
         "polarisation": turned.polarisation,
         "multiplexes": [name for name, chance in zip(multiplexes, outcome.chance, strict=True) if chance >= HAVE],
         "expected_by_degree": [round(float(count), 3) for count in turned.sweep_count],
+        **turning_document(turned, air, multiplexes),
     }
 
 

@@ -57,6 +57,7 @@ class Turned:
     cells: Cells
     chance: FloatArray  # (e,)
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
+    sweep_chance: FloatArray  # (360, e) chance of each emission for each whole degree, likewise
 
     def limit(self, e: int) -> str:
         """What holds one emission back: time where only the fade takes it below what it needs, else noise."""
@@ -111,15 +112,16 @@ def turn(
     `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
     Ties go to the direction nearest to the bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray] | None = None
+    best: tuple[float, float, AerialPolarisation, FloatArray, FloatArray] | None = None
     for polarisation in _polarisations(chain):
-        counts = _sweep(chain, polarisation, air, roof, counted, assumptions, known)
+        chances = _sweep(chain, polarisation, air, roof, assumptions, known)
+        counts = _counts(chances, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts)
+            best = (count, pointing_deg, polarisation, counts, chances)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts = best
+    _, pointing_deg, polarisation, counts, chances = best
     faded = receive(
         chain,
         air.signals,
@@ -132,7 +134,7 @@ def turn(
     median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
     parts = error_parts(chain, polarisation, air, faded, assumptions)
     cells = Cells(faded.margin_db, path_error(air, assumptions), parts, known)
-    return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts)
+    return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts, chances)
 
 
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
@@ -168,10 +170,10 @@ def _sweep(
     polarisation: AerialPolarisation,
     air: Air,
     roof: Roof,
-    counted: Sequence[str],
     assumptions: Assumptions,
     known: Knowledge | None,
 ) -> FloatArray:
+    """Chance of each emission for each whole degree. (360, e)"""
     reception = receive(
         chain,
         air.signals,
@@ -184,8 +186,14 @@ def _sweep(
     nowhere = np.zeros_like(air.path_sd_db)
     fixed = Cells(nowhere, path_error(air, assumptions), _parts_of_any_pointing(chain, air, assumptions), known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    chance = exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
-    # What no direction brings does not sway the choice of one, however much of it there is.
+    return exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
+
+
+def _counts(chance: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
+    """Expected multiplexes for each whole degree (360,) from the chances of emissions (360, e).
+
+    What no direction brings does not sway the choice of one, however much of it there is.
+    """
     within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
     return expected_count(chance, air.multiplex_of, [one for one in counted if one in within_reach])
 

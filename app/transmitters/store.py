@@ -11,7 +11,7 @@ from typing import Any
 
 import numpy as np
 
-from app.errors import RequestError, StoreError
+from app.errors import NotStoredError, RequestError, StoreError
 from app.transmitters import documents, readings
 from app.transmitters.database import Database
 from app.transmitters.documents import Document
@@ -121,6 +121,23 @@ class Store:
                 f"WHERE {_SHOWN} ORDER BY e.id"
             )
             return [emission_of(row) for row in rows]
+
+    def switch_emission(self, emission_id: str, on: bool) -> Emission:
+        """Keep an emission on the air or leave it out; NotStoredError if there is none.
+
+        A new import of its source says anew what is on.
+        """
+        with self._database.transaction(write=True) as connection:
+            connection.execute("UPDATE emission SET is_on = ? WHERE id = ?", [int(on), emission_id])
+            row = connection.execute(
+                f"SELECT {EMISSION} FROM emission e JOIN transmitter t ON t.number = e.transmitter WHERE e.id = ?",
+                [emission_id],
+            ).fetchone()
+        if row is None:
+            raise NotStoredError(
+                f'there is no emission "{emission_id}": /api/emissions lists them', field="id", allowed="a listed id"
+            )
+        return emission_of(row)
 
     def multiplexes(self) -> dict[str, Multiplex]:
         """Every multiplex in use, by id."""

@@ -146,13 +146,34 @@ class ReadingIn(Strict):
 
 
 class SavedRoofIn(Strict):
-    """A roof kept under a name, with what the page was showing for it."""
+    """A roof kept under a name, with what the page was asking for it."""
 
     name: Name
     roof: RoofIn
     now: Name | None = None
     idea: Name | None = None
+    second: Name | None = None
     note: str = Field("", max_length=4000)
+    landmark: str = Field("", max_length=200)
+    chains: list[Name | ChainDocument] | None = Field(None, max_length=50)
+    readings: list[ReadingDocument] = Field([], max_length=MOST_READINGS)
+    worth_per_multiplex: float | None = None
+    reading_cost: float | None = None
+    availability_percent: Literal[50, 90, 99] = 99
+    reach_km: float = 150.0
+    method: Literal["p1812", "p1546", "both"] = "both"
+    assumptions: dict[str, float] = {}
+
+    def question(self) -> AssessIn:
+        """Return the question that the page asked."""
+        asked = {key: value for key, value in self if key in AssessIn.model_fields}
+        return AssessIn(**asked)
+
+
+class SwitchIn(Strict):
+    """Whether an emission counts."""
+
+    on: bool
 
 
 @contextmanager

@@ -1,0 +1,45 @@
+"""What turning a chain's aerial would change: the pattern round its axis, and chances for each whole degree."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.chain.aerial import pattern_loss_db
+from app.chain.parts import Aerial, AerialPolarisation
+from app.margins import Air, Turned
+
+LEAST_PERCENT = 0.5  # a multiplex that never reaches it in any direction is left out
+
+
+def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> dict[str, Any]:
+    """Return the loss round the aerial's axis and the chances of every multiplex, in whole percent, by degree.
+
+    The chances are those of the polarisation chosen, of alternatives as if independent; a multiplex that no
+    direction brings is left out.
+    """
+    return {
+        "pattern_loss_db_by_degree": _pattern(turned.chain.aerial, turned.polarisation),
+        "chance_percent_by_degree": {
+            name: np.rint(percent).astype(int).tolist()
+            for name in multiplexes
+            if (percent := 100 * _any_of(turned.sweep_chance[:, [owner == name for owner in air.multiplex_of]])).max()
+            >= LEAST_PERCENT
+        },
+    }
+
+
+def _any_of(chance: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Chance that at least one of independent alternatives is received. (360, e) -> (360,)"""
+    missed: NDArray[np.float64] = np.prod(1 - chance, axis=1)
+    return 1 - missed
+
+
+def _pattern(aerial: Aerial, polarisation: AerialPolarisation) -> list[float]:
+    """Loss at 0 to 359 degrees off the axis."""
+    off_axis = np.abs((np.arange(360.0) + 180) % 360 - 180)
+    loss: list[float] = np.round(pattern_loss_db(aerial, off_axis, polarisation), 1).tolist()
+    return loss
