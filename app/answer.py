@@ -173,7 +173,8 @@ def _cell(
     sigma_db = float(turned.cells.sigma_db[e])
     read_db = float(turned.cells.mean_db[e] - turned.cells.median_db[e])  # what readings moved it by
     limit = _limit(turned, e)
-    before = _ledger_to_field(field, request.availability_percent)
+    told = request.ledgers is None or field.emission.id in request.ledgers
+    before = _ledger_to_field(field, request.availability_percent) if told else []
     outlets = []
     for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
         margin_db = float(outlet.margin_db[e]) + read_db
@@ -199,7 +200,9 @@ def _cell(
                 "headroom_db": None,
                 "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
                 "held_back_by": limit,
-                "ledger": [
+                "ledger": []
+                if not told
+                else [
                     *before,
                     *(
                         {

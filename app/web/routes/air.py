@@ -9,6 +9,7 @@ from typing import Annotated, Any
 from fastapi import APIRouter, Path, Query
 
 from app.assumptions import Assumptions
+from app.chain.tables import CABLES
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import RequestError
 from app.request import LONGEST_REACH_KM
@@ -66,6 +67,12 @@ def multiplexes(context: ContextDep) -> dict[str, list[dict[str, Any]]]:
 def assumptions() -> dict[str, list[dict[str, object]]]:
     """List the values that hold unless a question changes them."""
     return {"assumptions": Assumptions().document()}
+
+
+@router.get("/cables", summary="Classes of cable that a feeder can be of")
+def cables() -> dict[str, list[str]]:
+    """List the classes by name."""
+    return {"cables": list(CABLES)}
 
 
 @router.get("/health", summary="What this server knows")
