@@ -31,10 +31,14 @@ def sheet_rows(answer: dict[str, Any], chain: str, mer_limit_db: float) -> list[
                     "multiplex": multiplex["name"],
                     "channel": channel,
                     "level": f"{level:.0f} ({level - spread_db:.0f} to {level + spread_db:.0f})",
-                    "mer": f"{max(0.0, low):.0f} to {max(0.0, high):.0f}",
+                    "mer": _span(max(0.0, low), max(0.0, high)),
                 }
             )
     return sorted(rows, key=lambda row: row["outlet"])
+
+
+def _span(low: float, high: float) -> str:
+    return f"{high:.0f}" if round(low) == round(high) else f"{low:.0f} to {high:.0f}"
 
 
 def expected_mer_db(cn_db: float, limit_db: float) -> float:

@@ -74,6 +74,7 @@ export function createChanges(element, { choose }) {
   }
 
   /** The rows were made anew: the focus stays where it was. */
+  /** @param {any} was */
   function refocus({ multiplex, name }) {
     const buttons = [...element.querySelectorAll('button')];
     buttons.find((one) => one.dataset.multiplex === multiplex && one.dataset.name === name)?.focus();

@@ -76,5 +76,5 @@ export function refill(parent, ...children) {
   const active = /** @type {HTMLElement|null} */ (document.activeElement);
   const key = active && parent.contains(active) ? active.dataset.key : undefined;
   parent.replaceChildren(...children);
-  if (key) [...parent.querySelectorAll('[data-key]')].find((one) => /** @type {any} */ (one).dataset.key === key)?.focus?.();
+  if (key) /** @type {HTMLElement[]} */ ([...parent.querySelectorAll('[data-key]')]).find((one) => one.dataset.key === key)?.focus();
 }

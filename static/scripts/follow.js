@@ -10,6 +10,8 @@ import { chainsAsked, columns, NOTHING, question, shownCell } from './state.js';
  */
 export function createFollow(api, store) {
   const had = { path: '', skyline: '', heights: '', steps: '' };
+  /** Answers at which a question failed: it is not put again before there is another. @type {Record<string, any>} */
+  const failed = {};
   const asks = {
     path: latest((signal, query) => api.read('/api/path', query, signal)),
     skyline: latest((signal, query) => api.read('/api/skyline', query, signal)),
@@ -19,7 +21,8 @@ export function createFollow(api, store) {
 
   /** @param {'path'|'skyline'|'heights'|'steps'} what @param {string} of @param {any} query @param {(found: any) => any} made */
   async function fetch(what, of, query, made) {
-    if (had[what] === of) return;
+    const { answer } = store.get();
+    if (had[what] === of || failed[what] === answer) return;
     had[what] = of;
     if (what === 'skyline' || what === 'heights') store.set({ [what]: null });
     try {
@@ -27,6 +30,7 @@ export function createFollow(api, store) {
       if (found) store.set({ [what]: made(found) });
     } catch (error) {
       if (had[what] === of) had[what] = '';
+      failed[what] = answer;
       store.set({ trouble: { message: error.message, field: null } });
     }
   }

@@ -35,7 +35,7 @@ export function createLedger(element) {
     full.hidden = outlets.length === 0;
     empty.hidden = outlets.length > 0;
     empty.textContent = cell ? 'Adding up every step …' : 'Place the roof first: every gain and loss is listed here then.';
-    if (outlets.length === 0) return;
+    if (!cell || outlets.length === 0) return;
     const least = outlets.reduce((low, one) => (one.margin_db < low.margin_db ? one : low));
     const outlet = outlets.find((one) => one.name === outletName) ?? least;
     outletChoice.closest('.field').hidden = outlets.length < 2;

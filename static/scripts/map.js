@@ -27,6 +27,7 @@ import { bearingText, distanceText } from './units.js';
 const SVG = 'http://www.w3.org/2000/svg';
 const SIDE = 42; // px between the map and the outer line, left and right; as in map.css
 const RIM = 30; // the same, above and below
+const GRASP = 16; // px round the roof in which a press takes hold of it
 const STEP = 10; // px a press of an arrow key moves the crosshair
 
 /** @param {string} file */
@@ -86,6 +87,9 @@ export function createMap(element, { place }) {
   let crosshair = null;
   /** @type {import('./state.js').State} */
   let state;
+  /** @type {{x: number, y: number, moved: boolean}|null} where the roof is being dragged */
+  let dragged = null;
+  let dropped = false;
   let shown = '';
 
   async function open() {
@@ -113,14 +117,14 @@ export function createMap(element, { place }) {
 
   /** The emission of the shown path: its mast is the far end. */
   function mast() {
-    return shownCell(state)?.emission ?? null;
+    return cell?.emission ?? null;
   }
 
   function look() {
     const { roof } = state;
     const far = mast();
     const now = JSON.stringify([roof, far?.transmitter]);
-    if (!adapter || !roof || now === shown) return;
+    if (!adapter || !roof || dragged || now === shown) return;
     shown = now;
     const ends = far ? [roof, far] : [roof];
     const inside = ends.every((end) => {
@@ -152,7 +156,8 @@ export function createMap(element, { place }) {
     const size = { width: view.clientWidth, height: view.clientHeight };
     overlay.setAttribute('viewBox', `${-SIDE} ${-RIM} ${size.width + 2 * SIDE} ${size.height + 2 * RIM}`);
     if (adapter && state.roof) {
-      const roof = adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
+      const roof = dragged ?? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
+      drawPins();
       drawPath(roof);
       drawFrame(size, roof);
       add('path', { d: `M${roof.x} ${roof.y - 11}l11 18h-22Z`, class: 'roof' });
@@ -161,6 +166,15 @@ export function createMap(element, { place }) {
     if (crosshair) {
       const { x, y } = crosshair;
       add('path', { d: `M${x} 0V${y - 8}M${x} ${y + 8}V${size.height}M0 ${y}H${x - 8}M${x + 8} ${y}H${size.width}`, class: 'crosshair' });
+    }
+  }
+
+  function drawPins() {
+    for (const pin of state.pins) {
+      const at = adapter?.project(pin.where.latitude_deg, pin.where.longitude_deg);
+      if (!at || at.x < 0 || at.y < 0 || at.x > view.clientWidth || at.y > view.clientHeight) continue;
+      add('path', { d: `M${at.x} ${at.y - 9}l9 15h-18Z`, class: 'roof pinned' });
+      add('text', { x: at.x, y: at.y - 13, 'text-anchor': 'middle', class: 'label pin-name' }, pin.name.slice(0, 12));
     }
   }
 
@@ -185,7 +199,7 @@ export function createMap(element, { place }) {
       const tick = tickAt(size, roof, bearing);
       if (tick) add('path', { d: outward(tick, bearing % 90 === 0 ? 9 : bearing % 30 === 0 ? 7 : 4), class: 'graduation' });
     }
-    const chosen = shownCell(state)?.emission.transmitter;
+    const chosen = cell?.emission.transmitter;
     const ticks = bearings().map((one) => ({ ...tickAt(size, roof, one.bearing), ...one, chosen: one.id === chosen }));
     const seen = ticks.filter((tick) => tick.side);
     const withLabel = labelled(seen, 30);
@@ -217,11 +231,11 @@ export function createMap(element, { place }) {
   }
 
   function list() {
-    const chosen = shownCell(state)?.emission.transmitter;
+    const chosen = cell?.emission.transmitter;
     masts?.replaceChildren(...bearings().map((one) => {
       const item = document.createElement('li');
       const figure = Object.assign(document.createElement('b'), { textContent: bearingText(one.bearing) });
-      item.append(figure, ` ${one.name}, ${distanceText(one.distance)}`);
+      item.append(figure, ` ${one.name}, ${distanceText(one.distance, state.units)}`);
       if (one.id === chosen) item.className = 'chosen';
       return item;
     }));
@@ -272,6 +286,49 @@ export function createMap(element, { place }) {
     crosshair = kept;
   }
 
+  /** A press on the roof takes hold of it; the chances follow while it is dragged. */
+  function grasp(event) {
+    const at = point(event);
+    const roof = state?.roof && adapter?.project(state.roof.latitude_deg, state.roof.longitude_deg);
+    if (!roof || Math.hypot(roof.x - at.x, roof.y - at.y) > GRASP) return;
+    event.stopPropagation();
+    event.preventDefault();
+    dragged = { ...at, moved: false };
+    view.setPointerCapture(event.pointerId);
+  }
+
+  function drag(event) {
+    if (!dragged || !adapter) return;
+    event.stopPropagation();
+    const at = point(event);
+    dragged = { ...at, moved: dragged.moved || Math.hypot(at.x - dragged.x, at.y - dragged.y) > 1 };
+    draw();
+    if (dragged.moved && !state.asking) place(adapter.unproject(at.x, at.y));
+  }
+
+  function release(event) {
+    if (!dragged || !adapter) return;
+    event.stopPropagation();
+    const { x, y, moved } = dragged;
+    dragged = null;
+    dropped = moved;
+    if (moved) place(adapter.unproject(x, y));
+    draw();
+  }
+
+  /** @param {PointerEvent} event */
+  function point(event) {
+    const frame = view.getBoundingClientRect();
+    return { x: Math.min(frame.width, Math.max(0, event.clientX - frame.left)), y: Math.min(frame.height, Math.max(0, event.clientY - frame.top)) };
+  }
+
+  view.addEventListener('pointerdown', grasp, true);
+  view.addEventListener('mousedown', (event) => { if (dragged) event.stopPropagation(); }, true);
+  view.addEventListener('touchstart', (event) => { if (dragged) event.stopPropagation(); }, true);
+  view.addEventListener('pointermove', drag, true);
+  view.addEventListener('pointerup', release, true);
+  view.addEventListener('pointercancel', () => { dragged = null; draw(); }, true);
+  view.addEventListener('click', (event) => { if (dropped) event.stopPropagation(); dropped = false; }, true);
   view.addEventListener('keydown', onKey);
   view.addEventListener('focus', () => adapter?.wheel(true));
   view.addEventListener('blur', () => {
@@ -283,9 +340,13 @@ export function createMap(element, { place }) {
   element.querySelector('[name=out]')?.addEventListener('click', () => adapter?.zoom(-1));
   new ResizeObserver(() => draw()).observe(view);
 
+  /** @type {any} what is shown, found once for each state */
+  let cell = null;
+
   /** @param {import('./state.js').State} next */
   function update(next) {
     state = next;
+    cell = shownCell(state);
     const settled = state.answer || (state.health && !state.asking && state.chains);
     if (settled && !opening) void open();
     look();

@@ -26,7 +26,7 @@ export function createSkyline(element, { aim }) {
   const body = part(element, '.body');
   /** @type {import('./state.js').State} */
   let state;
-  /** @type {Box|any} */
+  /** @type {import('./horizon.js').Box|null} */
   let box;
   let chain = '';
   let degree = 0;
@@ -53,6 +53,7 @@ export function createSkyline(element, { aim }) {
   /** @param {PointerEvent} event */
   function at(event) {
     const frame = slider.getBoundingClientRect();
+    if (!box) return degree;
     const inside = Math.min(box.right, Math.max(box.left, event.clientX - frame.left));
     return Math.round((360 * (inside - box.left)) / (box.right - box.left));
   }
@@ -188,6 +189,7 @@ export function createSkyline(element, { aim }) {
 
   /** @param {any[]} masts */
   function names(masts) {
+    if (!box) return;
     const texts = masts.map((one) => `${one.name} ${distanceText(one.distance_km, state.units)}${one.stands === 'behind' ? ', behind' : ''}`);
     const found = places(masts.map((one, place) => ({ x: one.x, width: 7.1 * texts[place].length })), NAME_ROWS, box.left, box.right);
     masts.forEach((one, place) => {
