@@ -20,7 +20,7 @@ export function createFollow(api, store) {
   };
 
   /** @param {'path'|'skyline'|'heights'|'steps'} what @param {string} of @param {any} query @param {(found: any) => any} made */
-  async function fetch(what, of, query, made) {
+  async function once(what, of, query, made) {
     const { answer } = store.get();
     if (had[what] === of || failed[what] === answer) return;
     had[what] = of;
@@ -41,10 +41,10 @@ export function createFollow(api, store) {
     const { latitude_deg, longitude_deg, aerial_agl_m } = answer.roof;
     const place = JSON.stringify([latitude_deg, longitude_deg, aerial_agl_m]);
     const cell = shownCell(state);
-    if (sheet === 'skyline' && columns(state).length) void fetch('skyline', place, { latitude_deg, longitude_deg, aerial_agl_m }, (found) => found);
+    if (sheet === 'skyline' && columns(state).length) void once('skyline', place, { latitude_deg, longitude_deg, aerial_agl_m }, (found) => found);
     if (sheet === 'path' && cell) {
       const { emission } = cell;
-      void fetch('path', JSON.stringify([emission.id, place]), {
+      void once('path', JSON.stringify([emission.id, place]), {
         from_latitude_deg: emission.latitude_deg,
         from_longitude_deg: emission.longitude_deg,
         to_latitude_deg: latitude_deg,
@@ -55,7 +55,7 @@ export function createFollow(api, store) {
       }, (document) => ({ emission: emission.id, document }));
     }
     if (sheet === 'ledger' && cell) {
-      void fetch('steps', JSON.stringify([cell.emission.id, question(state, aerial_agl_m)]), { ...question(state, aerial_agl_m), ledgers: [cell.emission.id] }, (found) => ({
+      void once('steps', JSON.stringify([cell.emission.id, question(state, aerial_agl_m)]), { ...question(state, aerial_agl_m), ledgers: [cell.emission.id] }, (found) => ({
         answer, emission: cell.emission.id, chains: found.emissions.find((one) => one.id === cell.emission.id)?.chains ?? {},
       }));
     }
@@ -64,7 +64,7 @@ export function createFollow(api, store) {
       const chains = chainsAsked(state).filter((one) => names.includes(one.name ?? one));
       const { worth_per_multiplex, reading_cost, readings, now, ...asked } = question(state, aerial_agl_m);
       const { aerial_agl_m: _, ...rest } = asked.roof;
-      void fetch('heights', JSON.stringify([{ ...asked, roof: rest }, chains]), { ...asked, chains, roof: asked.roof }, (found) => ({ rows: found.height }));
+      void once('heights', JSON.stringify([{ ...asked, roof: rest }, chains]), { ...asked, chains, roof: asked.roof }, (found) => ({ rows: found.height }));
     }
   };
 }

@@ -44,7 +44,8 @@ def test_pure_modules_know_neither_page_nor_network():
 
 
 def test_every_file_of_the_page_is_used():
-    pages = "".join(page.read_text() for page in PAGES)
+    report = STATIC.parent / "app" / "report" / "page.py"
+    pages = "".join(page.read_text() for page in (*PAGES, report))
     scripts = "".join(path.read_text() for path in SCRIPTS)
     for path in STYLES:
         assert f"/static/styles/{path.name}" in pages
