@@ -14,8 +14,9 @@ from app.chance import GRADES, exceedance, grade
 from app.declination import declination_at, declination_document
 from app.evidence import Evidence
 from app.fields import EmissionField
-from app.link_budget import ledger_steps
-from app.margins import Air, Turned
+from app.interference import SPECTRAL
+from app.ledger import ledger
+from app.margins import Air, FloatArray, Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest
@@ -34,11 +35,8 @@ CAUTIONS = (
     "A prediction is not a guarantee: it is a chance, and the roof has the last word.",
 )
 QUANTILE_95 = 1.6449  # of the standard normal
-METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
-NOT_YET = (
-    "Interference from other transmitters is not counted yet: a chance can be lower than shown.",
-    "Overload by strong signals is not counted yet.",
-)
+SHOWN_NAMES = 5
+NOT_YET = ("Overload by strong signals is not counted yet.",)
 
 
 def answer_document(
@@ -58,6 +56,7 @@ def answer_document(
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
+    spreads = {key: (one.cells.sigma_db, one.cells.mean_db - one.cells.median_db) for key, one in turned.items()}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -80,14 +79,14 @@ def answer_document(
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, air, assumptions) for field in fields],
+        "emissions": [_emission(request, field, fields, place, turned, spreads, air, assumptions) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
         "readings": readings_document(evidence),
         "assumptions": assumptions.document(),
-        "cautions": [*_cautions(request, site, store, fields), *NOT_YET, *CAUTIONS],
+        "cautions": [*_cautions(request, site, store, fields, air), *NOT_YET, *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
     }
 
@@ -110,6 +109,7 @@ def _emission(
     fields: Sequence[EmissionField],
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
+    spreads: Mapping[str, tuple[FloatArray, FloatArray]],
     air: Air,
     assumptions: Assumptions,
 ) -> dict[str, Any]:
@@ -134,7 +134,7 @@ def _emission(
         "valid_to": emission.valid_to.isoformat() if emission.valid_to else None,
         "flags": list(emission.flags),
         "reason": field.reason,
-        "cautions": _shared_channel(field, fields),
+        "cautions": [] if e is None else _disturbed_by(e, air),
         "path": None
         if path is None
         else {
@@ -163,32 +163,26 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, e, field, air, assumptions) for name, one in turned.items()},
+        else {name: _cell(request, one, spreads[name], e, field, air, assumptions) for name, one in turned.items()},
     }
 
 
 def _cell(
-    request: AssessRequest, turned: Turned, e: int, field: EmissionField, air: Air, assumptions: Assumptions
+    request: AssessRequest,
+    turned: Turned,
+    spread: tuple[FloatArray, FloatArray],
+    e: int,
+    field: EmissionField,
+    air: Air,
+    assumptions: Assumptions,
 ) -> dict[str, Any]:
-    sigma_db = float(turned.cells.sigma_db[e])
-    read_db = float(turned.cells.mean_db[e] - turned.cells.median_db[e])  # what readings moved it by
+    sigma_db, read_db = (float(one[e]) for one in spread)  # the second: by how much readings moved the margin
     limit = _limit(turned, e)
     told = request.ledgers is None or field.emission.id in request.ledgers
-    before = _ledger_to_field(field, request.availability_percent) if told else []
+    reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
-    for outlet, median in zip(turned.faded.outlets, turned.median.outlets, strict=True):
+    for outlet, median in zip(reception.outlets, turned.median.outlets, strict=True):
         margin_db = float(outlet.margin_db[e]) + read_db
-        steps = ledger_steps(
-            turned.chain,
-            air.signals,
-            e,
-            field.used_dbuv_m - field.fade_db,
-            turned.pointing_deg,
-            turned.polarisation,
-            assumptions,
-            request.roof.surroundings,
-            outlet.name,
-        )
         outlets.append(
             {
                 "name": outlet.name,
@@ -198,30 +192,21 @@ def _cell(
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),
                 "headroom_db": None,
-                "chance": _probability(float(exceedance(np.array(margin_db), np.array(sigma_db)))),
+                "chance": _probability(_outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)),
                 "held_back_by": limit,
                 "ledger": []
                 if not told
                 else [
-                    *before,
-                    *(
-                        {
-                            "step": step.step,
-                            "value_db": round(step.value_db, 2),
-                            "total": round(step.total, 2),
-                            "source": step.source,
-                            "state": "a",
-                        }
-                        for step in steps[1:]  # the first is the field, which the steps before end with
-                    ),
-                    *_ledger_of_readings(turned, read_db, margin_db),
+                    *ledger(request, turned, e, field, air, assumptions, outlet.name),
+                    *_ledger_of_readings(turned, e, read_db, margin_db),
                 ],
             }
         )
+    margin_db = float(turned.margin_db[e]) + read_db
     return {
-        "margin_db": round(float(turned.faded.margin_db[e]) + read_db, 2),
-        "margin_p05_db": round(float(turned.faded.margin_db[e]) + read_db - QUANTILE_95 * sigma_db, 2),
-        "margin_p95_db": round(float(turned.faded.margin_db[e]) + read_db + QUANTILE_95 * sigma_db, 2),
+        "margin_db": round(margin_db, 2),
+        "margin_p05_db": round(margin_db - QUANTILE_95 * sigma_db, 2),
+        "margin_p95_db": round(margin_db + QUANTILE_95 * sigma_db, 2),
         "sigma_db": round(sigma_db, 2),
         "chance": _probability(turned.chance[e]),
         "held_back_by": limit,
@@ -229,7 +214,15 @@ def _cell(
     }
 
 
-def _ledger_of_readings(turned: Turned, read_db: float, margin_db: float) -> list[dict[str, Any]]:
+def _outlet_chance(turned: Turned, e: int, unread_db: float, margin_db: float, sigma_db: float) -> float:
+    """Chance at one outlet: that of the chain where it decides, in closed form where it is better off."""
+    decides = float(turned.chance[e])
+    if unread_db == float(turned.margin_db[e]):
+        return decides
+    return max(decides, float(exceedance(np.array(margin_db), np.array(sigma_db))))
+
+
+def _ledger_of_readings(turned: Turned, e: int, read_db: float, margin_db: float) -> list[dict[str, Any]]:
     """The step by which readings of this roof moved the margin; none without readings."""
     if turned.cells.known is None:
         return []
@@ -239,67 +232,22 @@ def _ledger_of_readings(turned: Turned, read_db: float, margin_db: float) -> lis
             "value_db": round(read_db, 2),
             "total": round(margin_db, 2),
             "source": "conditioning of the error model on the readings listed",
-            "state": "a",
+            "state": turned.state(e),
         }
     ]
 
 
-def _ledger_to_field(field: EmissionField, availability_percent: int) -> list[dict[str, Any]]:
-    """Steps from the radiated power to the field at the aerial, faded to the availability."""
-    power_db = 10 * float(np.log10(field.erp_kw))
-    total = power_db
-    rows: list[dict[str, Any]] = []
-
-    def add(step: str, value_db: float, source: str) -> None:
-        nonlocal total
-        total = value_db if not rows else total + value_db
-        rows.append(
-            {
-                "step": step,
-                "value_db": round(value_db, 2),
-                "total": round(total, 2),
-                "source": source,
-                "state": "a",
-            }
-        )
-
-    assert field.path is not None  # only emissions with an answer have a ledger
-    add(
-        f"radiated power towards the roof, {field.erp_kw:.3g} kW ERP",
-        power_db,
-        f"register: {field.transmitter.source}",
-    )
-    add(
-        f"free space over {field.distance_km:.1f} km",
-        field.free_space_dbuv_m - power_db,
-        "Rec. ITU-R P.525, from 1 kW ERP to dB(µV/m)",
-    )
-    modelled = field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m
-    add(f"ground and atmosphere: {field.path.kind}", modelled, _method_source(field))
-    if field.doubt_db:
-        add("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db")
-    add(
-        f"fade that {availability_percent} % of the time stays above",
-        -field.fade_db,
-        f"{METHOD_SOURCES[str(field.method)]} and 1 %; assumptions least_fade_99_db, sea_fade_99_db, fade_share_90; "
-        f"where this emission disturbs, it rises by {field.enhancement_db:.1f} dB instead",
-    )
-    return rows
-
-
-def _method_source(field: EmissionField) -> str:
-    """Name the method of a field, what the other one says, and why this one."""
-    source = METHOD_SOURCES[str(field.method)]
-    if field.difference_db is None:
-        return f"{source}: {field.method_reason}"
-    return (
-        f"{source}; P.1812 {field.p1812_dbuv_m:.1f}, P.1546 {field.p1546_dbuv_m:.1f} dB(µV/m), "
-        f"difference {field.difference_db:+.1f} dB"
-    )
-
-
 def _limit(turned: Turned, e: int) -> dict[str, Any]:
-    return {"limit": turned.limit(e), "state": "a", "emission": None, "bearing_deg": None, "next_db": None}
+    held = turned.held_back(e)
+    by = None if held.by is None else turned.company.interferers[held.by]
+    return {
+        "limit": held.limit,
+        "state": held.state,
+        "emission": None if by is None else by.emission.id,
+        "transmitter_name": None if by is None else by.transmitter.name,
+        "bearing_deg": None if by is None else round(by.bearing_deg, 2),
+        "next_db": _rounded(held.next_db),
+    }
 
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
@@ -361,7 +309,14 @@ def _measure_next(one: MeasureNext) -> dict[str, Any]:
     }
 
 
-def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField]) -> list[str]:
+def _disturbed_by(e: int, air: Air) -> list[str]:
+    """Other masts on the same or an overlapping channel."""
+    pairs = air.company.pairs
+    ones = [air.company.interferers[pairs.disturber[k]] for k in pairs.of_wanted(e) if pairs.rule[k] == SPECTRAL]
+    return [f"{one.transmitter.name} at {one.bearing_deg:.0f}° uses this channel too" for one in ones[:SHOWN_NAMES]]
+
+
+def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air) -> list[str]:
     cautions = list(site.cautions)
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
@@ -379,27 +334,14 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"No prediction for {', '.join(without)}: see the reason beside each channel; "
             "they take no part in the verdict."
         )
-    shared = [field for field in fields if _shared_channel(field, fields)]
-    if shared:
-        channels = ", ".join(
-            sorted({field.emission.channel or f"{field.emission.frequency_mhz:g} MHz" for field in shared})
+    cautions += air.company.cautions
+    rough = sorted({one.transmitter.name for one in air.company.interferers if not one.over_ground})
+    if rough:
+        names = ", ".join(rough[:SHOWN_NAMES]) + (
+            f" and {len(rough) - SHOWN_NAMES} more" if len(rough) > SHOWN_NAMES else ""
         )
-        cautions.append(
-            f"More than one transmitter in reach uses channel {channels}: interference between them is not yet counted."
-        )
+        cautions.append(f"Interference from {names} is reckoned without the ground on its way.")
     return cautions
-
-
-def _shared_channel(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
-    """Other multiplexes on an overlapping channel, which will disturb this one."""
-    mine = field.emission
-    return [
-        f"{other.transmitter.name} at {other.bearing_deg:.0f}° uses this channel too: interference not yet counted"
-        for other in fields
-        if other.emission.multiplex_id != mine.multiplex_id
-        and abs(other.emission.frequency_mhz - mine.frequency_mhz)
-        < (other.emission.bandwidth_mhz + mine.bandwidth_mhz) / 2 - 1e-6
-    ]
 
 
 def _register(source: Any) -> dict[str, str]:

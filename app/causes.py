@@ -18,7 +18,7 @@ def candidates(reading: Reading, looked: Vantage, emission: str | None, differen
         Reading less prediction; None: a word instead of a figure, judged by its direction.
     """
     if difference_db is None:
-        poor = reading.state in ("not found", "breaks up") or reading.works is False
+        poor = reading.state in ("not found", "breaks up") or reading.works is False or reading.count is not None
         difference_db = -20.0 if poor else 20.0
     causes = _below(looked) if difference_db < 0 else _above()
     order = sorted(

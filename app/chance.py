@@ -55,7 +55,7 @@ class ErrorPart:
     """One kind of error over all emissions of one chain: which normal moves each, and by how much."""
 
     keys: tuple[str, ...]  # (e,) the name of the normal that moves each emission
-    sd_db: FloatArray  # (e,) 0 where it does not apply
+    sd_db: FloatArray  # (e,) 0 where it does not apply; below 0 where the error lowers the margin as it rises
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,7 +144,7 @@ class Cells:
             add(f"path:{mast}", e, float(self.path.sd_db[e] * own))
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] > 0:
+                if part.sd_db[e] != 0:
                     add(key, e, float(part.sd_db[e]))
         rows = np.stack([_bearing_row(float(one), self.path.scale_deg) for one in self.path.bearing_deg])
         over_bearing = common * self.path.sd_db[:, None] * rows
@@ -163,14 +163,14 @@ class Cells:
             margins[:, e] += self.path.sd_db[e] * (common * along + own * normals(f"path:{mast}"))
         for part in self.parts:
             for e, key in enumerate(part.keys):
-                if part.sd_db[e] > 0:
+                if part.sd_db[e] != 0:  # below 0: what disturbs lowers the margin as it rises
                     margins[:, e] += part.sd_db[e] * normals(key)
         return margins if self.known is None else self.known.applied(margins, self.loadings())
 
 
 def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
     """Probability that a normal of this median and spread is at least 0; a spread of 0 decides by sign."""
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         score = np.where(sigma_db > 0, median_db / sigma_db, np.where(median_db >= 0, np.inf, -np.inf))
     result: FloatArray = ndtr(score)
     return result

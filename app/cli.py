@@ -300,7 +300,7 @@ def compare(
 @readings.command("add")
 def add_reading(
     at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
-    kind: Annotated[str, typer.Option(help="level, cn, mer, seen, order, neighbour or scan-list.")] = "level",
+    kind: Annotated[str, typer.Option(help="level, cn, mer, seen, count, order, neighbour or scan-list.")] = "level",
     of: Annotated[str | None, typer.Option(metavar="CHANNEL|MULTIPLEX", help="What was read.")] = None,
     value: Annotated[float | None, typer.Option(metavar="DB", help="Level in dB(µV), C/N or MER in dB.")] = None,
     state: Annotated[str | None, typer.Option(help="perfect, breaks up or not found.")] = None,
@@ -308,6 +308,7 @@ def add_reading(
         Path | None, typer.Option(metavar="FILE", help="Text of a scan list; - reads what is piped in.")
     ] = None,
     complete: Annotated[bool, typer.Option("--complete", help="The scan list is all that the set found.")] = False,
+    count: Annotated[int | None, typer.Option(metavar="N", help="How many multiplexes are received today.")] = None,
     chain: Annotated[str | None, typer.Option(metavar="NAME", help="Through which chain.")] = None,
     point: Annotated[str | None, typer.Option(help="Outlet, or aerial for its terminals.")] = None,
     pointing: Annotated[float | None, typer.Option(metavar="DEG", help="True bearing of the aerial.")] = None,
@@ -329,7 +330,7 @@ def add_reading(
         said: dict[str, Any] = {
             "emission": of, "multiplex": of, "value_db": value, "state": state, "chain": chain, "point": point,
             "pointing_deg": pointing, "polarisation": polarisation, "aerial_agl_m": height, "day": day,
-            "instrument": instrument, "sd_db": spread, "works": works,
+            "instrument": instrument, "count": count, "sd_db": spread, "works": works,
         }  # fmt: skip
         if kind == "scan-list":
             said = {key: said[key] for key in ("chain", "point", "pointing_deg", "polarisation", "day")}

@@ -74,7 +74,7 @@ class Joint:
 
     rows: tuple[int, ...]
     log_likelihood: Callable[[FloatArray], FloatArray]  # (DRAWS, rows) -> (DRAWS,)
-    stand_in: Bound  # stands for it among the moment-matched ones, near enough to propose samples
+    stand_in: Bound | None = None  # stands for it among the moment-matched ones, near enough to propose samples
 
 
 Site = Plain | Bound
@@ -98,7 +98,7 @@ class Posterior:
         """Shift of the mean [dB] and variance [dB²] of each quantity (e,), (e,); moment-matched with bounds."""
         ours = loadings.over(self.keys)
         prior = (loadings.db**2).sum(axis=1) - (ours**2).sum(axis=1)
-        spread = prior + np.einsum("ek,kl,el->e", ours, self.covariance, ours)
+        spread = prior + ((ours @ self.covariance) * ours).sum(axis=1)
         return ours @ self.mean, np.maximum(spread, 0.0)
 
     def applied(self, draws_db: FloatArray, loadings: Loadings) -> FloatArray:
@@ -153,7 +153,7 @@ def condition(
     """
     prior_sd = np.array([(wide or {}).get(key, 1.0) for key in loadings.keys])
     scaled = loadings.db * prior_sd
-    proposing = [*sites, *(one.stand_in for one in joint)]
+    proposing = [*sites, *(one.stand_in for one in joint if one.stand_in)]
     matched = match(scaled @ scaled.T, proposing)
     gain = prior_sd[:, None] * scaled.T  # S A'  (k, f)
     mean = gain @ matched.lean
@@ -171,7 +171,7 @@ def condition(
 
     picked, share = None, 1.0
     bounds = [s for s, site in enumerate(proposing) if isinstance(site, Bound)]
-    if bounds:
+    if bounds or joint:
         f = before + moved @ (scaled @ scaled.T)
         log_weight = np.zeros(DRAWS)
         for s in bounds:
@@ -189,7 +189,7 @@ def condition(
         if share >= LEAST_SHARE:
             steps = (np.arange(DRAWS) + 0.5) / DRAWS
             picked = np.minimum(np.searchsorted(np.cumsum(weight), steps), DRAWS - 1)
-    return Posterior(loadings.keys, mean, covariance, gain, moved, prior_sd - 1, picked, not bounds, share)
+    return Posterior(loadings.keys, mean, covariance, gain, moved, prior_sd - 1, picked, not (bounds or joint), share)
 
 
 def match(prior_covariance: FloatArray, sites: Sequence[Site]) -> Matched:

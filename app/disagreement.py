@@ -56,7 +56,8 @@ def _p1546_is_lower(terms: Terms) -> str:
         if terms.line_of_sight
         else "no loss by diffraction"
     )
-    height = f" for an antenna {terms.effective_height_m:.0f} m over the mean ground"
+    side = "over" if terms.effective_height_m >= 0 else "below"
+    height = f" for an antenna {abs(terms.effective_height_m):.0f} m {side} the mean ground"
     causes = {
         # the ground as a whole, which P.1812 pays for by diffraction
         f"its curves{height} take {terms.curves_db:.0f} dB off free space{sight}": terms.curves_db

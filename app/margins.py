@@ -11,7 +11,10 @@ from numpy.typing import NDArray
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain
 from app.chance import Cells, ErrorPart, Knowledge, PathError, exceedance, received
+from app.disturbance import Company, Effect, State, company_of, disturbed, ear_of, effect_of
+from app.disturbance_errors import Disturbers, Moved, disturbers_of, moved_by, rejection_sd_db, slope_and_spread
 from app.fields import EmissionField
+from app.interferers import Interferer
 from app.link_budget import Reception, Signals, receive
 from app.roof import Roof
 from app.systems import mode_of
@@ -34,6 +37,9 @@ class Air:
     signals: Signals
     used_dbuv_m: FloatArray  # (e,) median
     fade_db: FloatArray  # (e,)
+    company: Company  # what disturbs them, and what acts together
+    company_masts: tuple[str, ...]  # (i,) named as masts are
+    company_bands: tuple[str, ...]  # (i,)
     path_sd_db: FloatArray  # (e,)
     masts: tuple[str, ...]  # (e,) transmitters within 1 km share one name
     bands: tuple[str, ...]  # (e,)
@@ -52,16 +58,37 @@ class Turned:
     chain: Chain
     pointing_deg: float
     polarisation: AerialPolarisation
-    faded: Reception  # time state (a): the wanted signal at its availability
-    median: Reception  # without the fade
+    faded: Reception  # time state (a): the wanted signal at its availability, interferers at their medians
+    raised: Reception  # time state (b): the wanted signal at its median, interferers risen
+    median: Reception  # all at their medians
+    company: Company
+    effects: dict[State, Effect]
     cells: Cells
     chance: FloatArray  # (e,)
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
     sweep_chance: FloatArray  # (360, e) chance of each emission for each whole degree, likewise
 
+    @property
+    def margin_db(self) -> FloatArray:
+        """Margin at the deciding outlet after the worse of the two time states. (e,)"""
+        return np.minimum(self.faded.margin_db, self.raised.margin_db)
+
+    def state(self, e: int) -> State:
+        """Time state that decides for one emission."""
+        return "b" if self.raised.margin_db[e] < self.faded.margin_db[e] else "a"
+
     def limit(self, e: int) -> str:
-        """What holds one emission back: time where only the fade takes it below what it needs, else noise."""
-        return "time" if self.median.margin_db[e] >= 0 > self.faded.margin_db[e] else "noise"
+        """What holds one emission back: interference where it is more than noise, time where only a fade does it."""
+        return self.held_back(e).limit
+
+    def held_back(self, e: int) -> HeldBack:
+        """What holds one emission back, in the state that decides."""
+        state = self.state(e)
+        reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
+        if float(effect.i_over_n[e]) > 1:
+            return HeldBack("interference", state, *effect.strongest(self.company, e))
+        by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
+        return HeldBack("time" if by_time else "noise", state, None, None)
 
     def held_back_by(self, air: Air, multiplexes: Sequence[str]) -> tuple[str, ...]:
         """What holds back the best emission of each multiplex. (m,)"""
@@ -72,8 +99,18 @@ class Turned:
         return tuple(self.limit(e) for e in best)
 
 
-def air_of(fields: Sequence[EmissionField]) -> Air:
-    """Gather the emissions that have an answer."""
+@dataclass(frozen=True, slots=True)
+class HeldBack:
+    """What holds an emission back."""
+
+    limit: str  # "noise", "interference", "time"
+    state: State
+    by: int | None  # row of the strongest interferer
+    next_db: float | None  # how far below it all others together stand; None: there are none
+
+
+def air_of(fields: Sequence[EmissionField], interferers: Sequence[Interferer]) -> Air:
+    """Gather the emissions that have an answer, and what disturbs them: those themselves first, in their order."""
     kept = tuple(field for field in fields if field.path is not None)
     modes = [mode_of(field.emission.system, field.emission.mode) for field in kept]
     signals = Signals(
@@ -92,9 +129,12 @@ def air_of(fields: Sequence[EmissionField]) -> Air:
         signals=signals,
         used_dbuv_m=np.array([field.used_dbuv_m for field in kept]),
         fade_db=np.array([field.fade_db for field in kept]),
+        company=company_of(kept, interferers),
+        company_masts=_named_masts(kept, interferers),
+        company_bands=tuple(_band(one.emission.frequency_mhz) for one in interferers),
         path_sd_db=np.array([field.path.sd_db for field in kept if field.path]),
         masts=_masts(kept),
-        bands=tuple(str(int(np.searchsorted(BAND_EDGES_MHZ, field.emission.frequency_mhz))) for field in kept),
+        bands=tuple(_band(field.emission.frequency_mhz) for field in kept),
         doubtful_erp=np.array([field.erp_is_doubtful for field in kept], dtype=bool),
     )
 
@@ -122,19 +162,40 @@ def turn(
             best = (count, pointing_deg, polarisation, counts, chances)
     assert best is not None  # there is always a polarisation
     _, pointing_deg, polarisation, counts, chances = best
-    faded = receive(
+    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+    alone, alone_faded = (
+        receive(chain, air.signals, field, pointing_deg, polarisation, assumptions, roof.surroundings)
+        for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
+    )
+    left = ear.left(pointing_deg)
+    effects: dict[State, Effect] = {
+        "a": effect_of(ear, alone_faded, left, "a"),
+        "b": effect_of(ear, alone, left, "b"),
+    }
+    faded, raised = disturbed(alone_faded, effects["a"]), disturbed(alone, effects["b"])
+    median = disturbed(alone, effect_of(ear, alone, left, "a"))
+    state_b = raised.margin_db < faded.margin_db
+    moved = moved_by(ear, effects, state_b, _disturbers(air, assumptions), pointing_deg)
+    cells = Cells(
+        np.where(state_b, raised.margin_db, faded.margin_db),
+        _path_error(air, assumptions, moved),
+        _parts(chain, polarisation, air, faded, assumptions, state_b, moved),
+        known,
+    )
+    return Turned(
         chain,
-        air.signals,
-        air.used_dbuv_m - air.fade_db,
         pointing_deg,
         polarisation,
-        assumptions,
-        roof.surroundings,
+        faded,
+        raised,
+        median,
+        air.company,
+        effects,
+        cells,
+        cells.chance,
+        counts,
+        chances,
     )
-    median = receive(chain, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
-    parts = error_parts(chain, polarisation, air, faded, assumptions)
-    cells = Cells(faded.margin_db, path_error(air, assumptions), parts, known)
-    return Turned(chain, pointing_deg, polarisation, faded, median, cells, cells.chance, counts, chances)
 
 
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
@@ -151,11 +212,16 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
     return draws, chance
 
 
-def expected_count(chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str]) -> FloatArray:
-    """Expected multiplexes from chances of emissions (..., e), alternatives taken as independent. (...)"""
+def expected_count(
+    chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str], acting: NDArray[np.bool_] | None = None
+) -> FloatArray:
+    """Expected multiplexes from chances of emissions (..., e), alternatives taken as independent. (...)
+
+    `acting` leaves out members of a network that act through another one.
+    """
     total = np.zeros(chance.shape[:-1])
     for name in counted:
-        owned = [e for e, owner in enumerate(multiplex_of) if owner == name]
+        owned = [e for e, owner in enumerate(multiplex_of) if owner == name and (acting is None or acting[e])]
         total += 1 - np.prod(1 - chance[..., owned], axis=-1)
     return total
 
@@ -173,20 +239,23 @@ def _sweep(
     assumptions: Assumptions,
     known: Knowledge | None,
 ) -> FloatArray:
-    """Chance of each emission for each whole degree. (360, e)"""
-    reception = receive(
-        chain,
-        air.signals,
-        air.used_dbuv_m - air.fade_db,
-        BEARINGS[:, None],
-        polarisation,
-        assumptions,
-        roof.surroundings,
-    )
-    nowhere = np.zeros_like(air.path_sd_db)
-    fixed = Cells(nowhere, path_error(air, assumptions), _parts_of_any_pointing(chain, air, assumptions), known)
+    turned = BEARINGS[:, None]
+    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+    disturbers = _disturbers(air, assumptions)
+    rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
+    margin, moved = np.full((len(BEARINGS), len(air.fields)), np.inf), np.zeros((len(BEARINGS), len(air.fields)))
+    fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
+    for state, field in fields:
+        alone = receive(chain, air.signals, field, turned, polarisation, assumptions, roof.surroundings)
+        effect = effect_of(ear, alone, left, state)
+        reception = disturbed(alone, effect)
+        slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
+        moved = np.where(reception.margin_db < margin, slope * spread, moved)
+        margin = np.minimum(margin, reception.margin_db)
+    path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
+    fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    return exceedance(reception.margin_db + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2))
+    return exceedance(margin + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2))
 
 
 def _counts(chance: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
@@ -195,7 +264,8 @@ def _counts(chance: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
     What no direction brings does not sway the choice of one, however much of it there is.
     """
     within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
-    return expected_count(chance, air.multiplex_of, [one for one in counted if one in within_reach])
+    counted = [one for one in counted if one in within_reach]
+    return expected_count(chance, air.multiplex_of, counted, air.company.acting)
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
@@ -205,27 +275,48 @@ def _best_bearing(counts: FloatArray, air: Air) -> float:
     return float(as_good[int(np.argmin(away))])
 
 
-def path_error(air: Air, assumptions: Assumptions) -> PathError:
-    """Return the errors of the paths of all emissions."""
+def _path_error(air: Air, assumptions: Assumptions, moved: Moved) -> PathError:
+    """Errors of the paths; a network's margin carries its strongest member's."""
+    sd_db = moved.leader_share * air.path_sd_db[moved.leader] - moved.path_off_db
     return PathError(
-        masts=air.masts,
-        bearing_deg=air.signals.bearing_deg,
-        sd_db=air.path_sd_db,
+        masts=tuple(air.masts[e] for e in moved.leader),
+        bearing_deg=air.signals.bearing_deg[moved.leader],
+        sd_db=np.maximum(sd_db, 0.0),
         correlation=assumptions.value("path_bearing_correlation"),
         scale_deg=assumptions.value("path_bearing_scale_deg"),
     )
 
 
-def error_parts(
-    chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
+def _disturbers(air: Air, assumptions: Assumptions) -> Disturbers:
+    return disturbers_of(air.company, air.company_masts, air.company_bands, assumptions)
+
+
+def _parts(
+    chain: Chain,
+    polarisation: AerialPolarisation,
+    air: Air,
+    reception: Reception,
+    assumptions: Assumptions,
+    state_b: NDArray[np.bool_],
+    moved: Moved,
 ) -> tuple[ErrorPart, ...]:
-    """Return every error beside the paths' for one chain turned one way."""
-    ids = [field.emission.id for field in air.fields]
+    """Errors of one chain turned one way, each margin in the state that decides it."""
+    ids = [air.fields[e].emission.id for e in moved.leader]
     rejection = ErrorPart(
         tuple(f"off-axis:{chain.aerial.id}:{name}" for name in ids),
-        _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
+        moved.leader_share * _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)[moved.leader],
     )
-    return (*_parts_of_any_pointing(chain, air, assumptions), rejection)
+    own = []
+    for part in _parts_of_any_pointing(chain, air, assumptions):
+        keys, sd_db = tuple(part.keys[e] for e in moved.leader), part.sd_db[moved.leader]
+        kind = keys[0].split(":")[0] if keys else ""
+        sd_db = sd_db * moved.common if kind in ("roof", "aerial", "feeder") else sd_db * moved.leader_share
+        if kind == "band":
+            sd_db = np.maximum(sd_db - moved.band_off_db, 0.0)
+        if kind == "fade":
+            sd_db = np.where(state_b, 0.0, sd_db)
+        own.append(ErrorPart(keys, sd_db))
+    return (*own, rejection, *moved.parts)
 
 
 def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> tuple[ErrorPart, ...]:
@@ -284,3 +375,45 @@ def _masts(fields: Sequence[EmissionField]) -> tuple[str, ...]:
         if near is None:
             heads.append(key)
     return tuple(names[field.transmitter.id] for field in fields)
+
+
+def wanted_errors(
+    chain: Chain, polarisation: AerialPolarisation, air: Air, reception: Reception, assumptions: Assumptions
+) -> tuple[PathError, tuple[ErrorPart, ...]]:
+    """Return the errors of the wanted signals themselves, as a reading of their level meets them."""
+    path = PathError(
+        masts=air.masts,
+        bearing_deg=air.signals.bearing_deg,
+        sd_db=air.path_sd_db,
+        correlation=assumptions.value("path_bearing_correlation"),
+        scale_deg=assumptions.value("path_bearing_scale_deg"),
+    )
+    rejection = ErrorPart(
+        tuple(f"off-axis:{chain.aerial.id}:{field.emission.id}" for field in air.fields),
+        _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
+    )
+    return path, (*_parts_of_any_pointing(chain, air, assumptions), rejection)
+
+
+def _named_masts(wanted: Sequence[EmissionField], interferers: Sequence[Interferer]) -> tuple[str, ...]:
+    """Name of the mast of each interferer: that of a wanted one within 1 km, else its own."""
+    names = dict(zip((field.transmitter.id for field in wanted), _masts(wanted), strict=True))
+    heads = sorted(set(names.values()))
+    places = {field.transmitter.id: field.transmitter for field in wanted}
+    for one in interferers:
+        mast = one.transmitter
+        if mast.id in names:
+            continue
+        apart_km, _ = distance_and_bearing(
+            mast.latitude_deg,
+            mast.longitude_deg,
+            np.array([places[head].latitude_deg for head in heads]),
+            np.array([places[head].longitude_deg for head in heads]),
+        )
+        near = int(np.argmin(apart_km))
+        names[mast.id] = heads[near] if apart_km[near] < SAME_MAST_KM else mast.id
+    return tuple(names[one.transmitter.id] for one in interferers)
+
+
+def _band(frequency_mhz: float) -> str:
+    return str(int(np.searchsorted(BAND_EDGES_MHZ, frequency_mhz)))

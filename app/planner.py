@@ -12,6 +12,7 @@ from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.errors import RequestError
 from app.fields import fields_at
+from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
 from app.margins import Air, Turned, air_of, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
@@ -40,20 +41,26 @@ def assess(
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = _chains(request, store)
     site = site_of(request.roof, ground)
-    found = store.emissions_within(
-        request.roof.latitude_deg, request.roof.longitude_deg, request.reach_km, today or date.today()
+    on_the_air = store.emissions_within(
+        request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
     )
+    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
     fields = fields_at(
         request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
     )
-    air = air_of(fields)
+    air = air_of(
+        fields,
+        interferers_at(
+            request.roof, fields, on_the_air, ground, assumptions, request.availability_percent, request.method
+        ),
+    )
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]
     turned = (
         {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
     )
-    place = Place(request, store, ground, found, fields, air, turned, assumptions)
+    place = Place(request, store, ground, found, on_the_air, fields, air, turned, assumptions, refractivity_maps)
     evidence = evidence_at(place)
     known = evidence.posterior
     if known is not None:

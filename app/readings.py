@@ -1,9 +1,9 @@
 """What is known of a roof: one reading each, checked, with the uncertainty its instrument deserves.
 
 Kinds: "level" dB(µV) across 75 ohms, "cn" dB, "mer" dB (saturates at its instrument's limit), "seen" (perfect,
-breaks up, not found), "order" (of strength or quality within one list of a set; the figures themselves mean
-nothing), "neighbour" (an aerial nearby, which says little). Scan lists become "seen" and "order" readings in
-app/scan_list.py.
+breaks up, not found), "count" (today I get 3), "order" (of strength or quality within one list of a set; the figures
+themselves mean nothing), "neighbour" (an aerial nearby, which says little). Scan lists become "seen" and "order"
+readings in app/scan_list.py.
 """
 
 from __future__ import annotations
@@ -16,7 +16,7 @@ from typing import Any, Literal, get_args
 
 from app.errors import ReadingError
 
-Kind = Literal["level", "cn", "mer", "seen", "order", "neighbour"]
+Kind = Literal["level", "cn", "mer", "seen", "count", "order", "neighbour"]
 State = Literal["perfect", "breaks up", "not found"]
 Size = Literal["small", "medium", "large"]
 KINDS: tuple[Kind, ...] = get_args(Kind)
@@ -60,6 +60,7 @@ class Reading:
     multiplex: str | None = None  # id or name; any of its emissions
     value_db: float | None = None
     state: State | None = None
+    count: int | None = None  # multiplexes that are received
     stronger: tuple[str, ...] = ()  # order: emissions or multiplexes, strongest first
     day: date | None = None
     chain: str | None = None  # name; default what is up now, else the first
@@ -97,7 +98,13 @@ class Reading:
                     f"{self._what} has no state: use {', '.join(STATES)}", field="state", allowed=", ".join(STATES)
                 )
             _word("state", self.state, STATES)
-        if self.kind == "order":
+        if self.kind == "count":
+            if self.count is None:
+                raise ReadingError(
+                    "the count is missing: say in `count` how many multiplexes are received", field="count"
+                )
+            _number("count", self.count, 0, 1000, "multiplexes")
+        elif self.kind == "order":
             if len(self.stronger) < 2:
                 raise ReadingError(
                     "an order needs at least two channels: list them in `stronger`, strongest first", field="stronger"
@@ -158,6 +165,8 @@ def reading_from_document(document: Mapping[str, Any]) -> Reading:
             raise ReadingError(f"{key} is {value!r:.60}: write it as text", field=key, allowed="text")
         if key in _NUMBERS and (isinstance(value, bool) or not isinstance(value, int | float)):
             raise ReadingError(f"{key} is {value!r:.60}: write a number", field=key, allowed="a number")
+        if key == "count" and (isinstance(value, bool) or not isinstance(value, int)):
+            raise ReadingError(f"count is {value!r:.60}: write a whole number", field=key, allowed="a whole number")
         if key in ("works", "confirmed") and not isinstance(value, bool):
             raise ReadingError(f"{key} is {value!r:.60}: use true or false", field=key, allowed="true or false")
     if "stronger" in values:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from pathlib import Path
 
 import numpy as np
 
@@ -11,12 +12,15 @@ from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
 from app.chance import Knowledge
 from app.errors import NotStoredError, ReadingError
-from app.evidence import QUANTILE_99, Evidence, Situation, weigh
+from app.evidence import Evidence, weigh
 from app.fields import EmissionField, Found, fields_at
+from app.interferers import interferers_at
 from app.margins import Air, Turned, air_of, turn
 from app.reading_value import Readable
 from app.readings import AT_THE_AERIAL, INSTRUMENTS, Reading, reading_from_document
 from app.request import NOTHING, AssessRequest
+from app.roof import Roof
+from app.statements import QUANTILE_99, Situation
 from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from app.vantage import Vantage, measuring_chain, vantage
@@ -36,10 +40,12 @@ class Place:
     store: Store
     ground: Ground
     found: Sequence[Found]
+    on_the_air: Sequence[Found]  # what disturbs among it
     fields: Sequence[EmissionField]
     air: Air
     turned: Mapping[str, Turned]  # before any reading
     assumptions: Assumptions
+    refractivity_maps: Path | None = None
     _airs: dict[float, Air] = field(default_factory=dict)
     _vantages: dict[tuple[str, float, str, str, float], Vantage] = field(default_factory=dict)
 
@@ -48,13 +54,13 @@ class Place:
         now = self.request.now
         return now if now not in (None, NOTHING) else next(iter(self.turned), None)
 
-    def look(self, reading: Reading, point: str | None) -> tuple[Vantage, Air]:
+    def look(self, reading: Reading) -> tuple[Vantage, Air]:
         """Return how one was looking when a reading was taken; LookupError if that cannot be said."""
         name = reading.chain or self.default_chain()
         if name is None:
             raise LookupError("no chain to read through: name one")
         one = self.turned.get(name) or self._turned(name)
-        point = (point or reading.point) or ""
+        point = reading.point or ""
         if point not in ("", AT_THE_AERIAL, *one.chain.outlet_names):
             names = ", ".join((AT_THE_AERIAL, *one.chain.outlet_names))
             raise LookupError(f'chain "{name}" has no point "{point}": use one of {names}; kept, not used')
@@ -86,6 +92,18 @@ class Place:
             )
         return self._vantages[key], air
 
+    def fields_on(self, roof: Roof, availability_percent: int) -> list[EmissionField]:
+        """Return all fields again for another height or share of time."""
+        return fields_at(
+            roof,
+            self.found,
+            self.ground,
+            self.assumptions,
+            availability_percent,
+            self.request.method,
+            self.refractivity_maps,
+        )
+
     def _air_at(self, height_m: float) -> Air:
         height_m = round(height_m / HEIGHT_STEP_M) * HEIGHT_STEP_M
         if abs(height_m - self.request.roof.aerial_agl_m) <= SAME_HEIGHT_M:
@@ -94,10 +112,10 @@ class Place:
             if len(self._airs) >= MOST_HEIGHTS:
                 raise LookupError(f"readings at more than {MOST_HEIGHTS} heights: this one is kept, not used")
             roof = replace(self.request.roof, aerial_agl_m=max(1.0, height_m))
-            request = self.request
-            self._airs[height_m] = air_of(
-                fields_at(roof, self.found, self.ground, self.assumptions, request.availability_percent, request.method)
-            )
+            share, method = self.request.availability_percent, self.request.method
+            fields = self.fields_on(roof, share)
+            disturbers = interferers_at(roof, fields, self.on_the_air, self.ground, self.assumptions, share, method)
+            self._airs[height_m] = air_of(fields, disturbers)
         return self._airs[height_m]
 
     def _turned(self, name: str) -> Turned:
@@ -173,8 +191,7 @@ def _weather(place: Place) -> tuple[dict[str, float], dict[str, float]]:
     """Fade to 99 % and enhancement of 1 % of time by emission [dB], whatever availability is asked for."""
     fields = place.fields
     if place.request.availability_percent != 99:
-        request = place.request
-        fields = fields_at(request.roof, place.found, place.ground, place.assumptions, 99, request.method)
+        fields = place.fields_on(place.request.roof, 99)
     return (
         {one.emission.id: one.fade_db for one in fields},
         {one.emission.id: one.enhancement_db for one in fields},

@@ -54,6 +54,9 @@ def _lines(answer: Mapping[str, Any]) -> Iterator[str]:
         yield sentence(answer, verdict)
     if verdicts:
         yield f"Why: {verdicts[0]['reason']}"
+        if verdicts[0]["answer"] == "measure first":
+            yield measure_line(answer, verdicts[0])
+    yield from reading_lines(answer)
     yield ""
     names = list(chains) if not verdicts else [verdicts[0]["baseline"], *(v["candidate"] for v in verdicts)]
     yield from _table(answer, [name for name in names if name in chains])
@@ -83,6 +86,35 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
     cost = "its price is not known" if price is None else f"for {price:.0f} {currency}"
     word = verdict["answer"] or "no answer without a price"
     return f"{today} {candidate} {adds} {cost}: {word}, break-even {limit:.0f} {currency}."
+
+
+def measure_line(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
+    """Say which reading to take and what each outcome means."""
+    first = verdict["measure_next"]
+    emission = next(one for one in answer["emissions"] if one["id"] == first["emission"])
+    parts = []
+    for part in first["tipping"]:
+        low, high = part["from_dbuv"], part["to_dbuv"]
+        span = f"above {low}" if high is None else f"below {high}" if low is None else f"{low} to {high}"
+        parts.append(f"{span} {part['answer']} ({part['why']})")
+    currency = answer["chains"][verdict["candidate"]]["currency"]
+    where = f"channel {emission['channel']} from {first['bearing_deg']:.0f}°"
+    levels = ", ".join(parts) or "any level"
+    return f"Measure first: {where}, in dB(µV): {levels}; worth {first['value']:.0f} {currency}."
+
+
+def reading_lines(answer: Mapping[str, Any]) -> Iterator[str]:
+    """Say what the readings of this roof did, and which wait."""
+    readings = answer["readings"]
+    if not readings["items"]:
+        return
+    yield f"{readings['used']} of {len(readings['items'])} readings of this roof are counted."
+    yield from readings["findings"]
+    for item in readings["items"]:
+        if not item["used"]:
+            causes = f" It may be: {item['candidates'][0]}." if item["candidates"] else ""
+            what = item.get("emission") or item.get("multiplex") or item["kind"]
+            yield f"Reading of {what}: {item['reason']}.{causes}"
 
 
 def _table(answer: Mapping[str, Any], names: Sequence[str]) -> Iterator[str]:

@@ -6,11 +6,10 @@ from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from app.chain.aerial import pattern_loss_db
 from app.chain.parts import Aerial, AerialPolarisation
-from app.margins import Air, Turned
+from app.margins import Air, Turned, expected_count
 
 LEAST_PERCENT = 0.5  # a multiplex that never reaches it in any direction is left out
 
@@ -26,16 +25,10 @@ def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> di
         "chance_percent_by_degree": {
             name: np.rint(percent).astype(int).tolist()
             for name in multiplexes
-            if (percent := 100 * _any_of(turned.sweep_chance[:, [owner == name for owner in air.multiplex_of]])).max()
+            if (percent := 100 * expected_count(turned.sweep_chance, air.multiplex_of, [name], air.company.acting)).max()
             >= LEAST_PERCENT
         },
     }
-
-
-def _any_of(chance: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Chance that at least one of independent alternatives is received. (360, e) -> (360,)"""
-    missed: NDArray[np.float64] = np.prod(1 - chance, axis=1)
-    return 1 - missed
 
 
 def _pattern(aerial: Aerial, polarisation: AerialPolarisation) -> list[float]:

@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, AerialPolarisation, Chain, Feeder, Outlet, Receiver
 from app.chance import Cells, Knowledge, Loadings
+from app.disturbance import disturbed, ear_of, effect_of
 from app.link_budget import receive
-from app.margins import Air, error_parts, path_error
+from app.margins import Air, wanted_errors
 from app.readings import AT_THE_AERIAL, Size
 from app.roof import Roof
 
@@ -64,15 +65,18 @@ def vantage(
     """Predict every emission as a reading there would show it."""
     seen = at_the_aerial(chain) if point == AT_THE_AERIAL else chain
     got = receive(seen, air.signals, air.used_dbuv_m, pointing_deg, polarisation, assumptions, roof.surroundings)
+    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+    got = disturbed(got, effect_of(ear, got, ear.left(pointing_deg), "a"))
     shown = next((outlet for outlet in got.outlets if outlet.name == point), got)
+    path, errors = wanted_errors(chain, polarisation, air, got, assumptions)
     parts = tuple(
         part
-        for part in error_parts(chain, polarisation, air, got, assumptions)
+        for part in errors
         if not part.keys[0].startswith(STATES_OF_TIME)
         and not (point == AT_THE_AERIAL and part.keys[0].startswith("feeder:"))
     )
     margin_db = shown.cn_db - air.signals.required_cn_db
-    cells = Cells(margin_db, path_error(air, assumptions), parts, known)
+    cells = Cells(margin_db, path, parts, known)
     levels = shown.level_dbuv
     return Vantage(chain, pointing_deg, polarisation, point, levels, shown.cn_db, margin_db, cells, cells.loadings())
 

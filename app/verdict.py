@@ -37,7 +37,7 @@ SAME_CHANCE = 0.02  # chances this close are the same to a person
 HELP = {
     "noise": "gain helps",
     "time": "gain helps on bad nights",
-    "interference": "directivity helps, an amplifier does not",
+    "interference": "directivity, not gain, cures it, and an amplifier does not",
     "overload": "less gain helps, an amplifier harms",
 }
 

@@ -1,4 +1,4 @@
-"""The demo: an invented island, its masts and three roofs on which the answers differ.
+"""The demo: an invented island, its masts and four roofs on which the answers differ.
 
 Every name, place and figure here is made up. The masts stand in their own source, which the store leaves
 out as soon as real transmitters are imported.
@@ -40,6 +40,7 @@ class _Mast:
     system: str
     mode: str
     channels: tuple[tuple[str, str], ...]  # channel and multiplex
+    attenuation_db: tuple[float, ...] = ()  # evenly spaced from north, clockwise; empty: round
 
 
 MULTIPLEXES = (
@@ -63,9 +64,9 @@ _MASTS = (
     # Across the strait: weak enough for a small aerial to miss it.
     _Mast("far-island", "Far Island", (32, 33), 80, "horizontal", 2.5, *_T2,
           (("39", "strait-1"), ("42", "strait-2"), ("45", "strait-3"), ("48", "strait-4"))),
-    # South of the backbone, on a channel of the far island.
-    _Mast("southern-spur", "Southern Spur", (-25.3, -33.4), 50, "horizontal", 1, "DVB-T", "64-QAM 2/3",
-          (("45", "spur-1"),)),
+    # South of the backbone, on a channel of the far island: it disturbs what arrives from there.
+    _Mast("southern-spur", "Southern Spur", (-25.3, -33.4), 100, "horizontal", 20, "DVB-T", "64-QAM 2/3",
+          (("45", "spur-1"),), (12, 5, 0, 0, 0, 0, 0, 0, 0, 0, 4, 10)),
 )  # fmt: skip
 
 
@@ -91,6 +92,7 @@ def emissions() -> tuple[Emission, ...]:
             erp_kw=mast.erp_kw,
             polarisation=mast.polarisation,
             antenna_agl_m=mast.antenna_agl_m,
+            pattern_attenuation_db=mast.attenuation_db,
         )
         for mast in _MASTS
         for channel, multiplex in mast.channels
@@ -111,6 +113,8 @@ DEMO_ROOFS = (
     _roof("Northern fields", -20, 0, "the far island's multiplexes are missed by a small aerial"),
     _roof("Western plain", -25, -20, "all that can be had is secure already"),
     _roof("Eastern bay", -7, -22, "the strong mast is behind a range; a relay with rods upright fills in"),
+    _roof("North shore", -19, 0, "with the short Yagi up, one reading of the far island settles the answer"),
+    _roof("Backbone foot", -10, -22, "a mast on the same channel takes one multiplex away from a small aerial"),
 )
 
 

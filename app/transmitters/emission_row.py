@@ -7,6 +7,7 @@ from typing import cast
 
 from app.channels import OFFSET_MHZ, centre_mhz, channel_of
 from app.errors import ModeError
+from app.network import symbol_of
 from app.systems import mode_of
 from app.transmitters.cells import Cells
 from app.transmitters.model import Emission, Polarisation
@@ -15,6 +16,7 @@ LOWEST_MHZ, HIGHEST_MHZ = 45.0, 1000.0  # broadcasting bands I to V with their n
 MOST_ERP_KW = 5000.0
 LOWEST_ANTENNA_M, HIGHEST_ANTENNA_M = 1.0, 700.0
 LOWEST_GROUND_M, HIGHEST_GROUND_M = -450.0, 6000.0
+MOST_DELAY_US = 5000.0  # longer than any symbol
 PATTERN_STEPS, DEEPEST_PATTERN_DB = 36, 60.0
 
 _POLARISATIONS = {
@@ -58,6 +60,10 @@ def draft_of(cells: Cells) -> Draft | None:
     if valid_from and valid_to and valid_to < valid_from:
         cells.refuse("valid_to", f"use a day not before valid_from, {valid_from}")
     is_on = cells.word("on", _ON)
+    guard = _guard(cells, mode, tuned)
+    delay_us = None
+    if cells.text("static_delay_us"):
+        delay_us = cells.number("static_delay_us", -MOST_DELAY_US, MOST_DELAY_US, "µs", example="12.5")
     if position is None:
         return None
     if (
@@ -82,6 +88,8 @@ def draft_of(cells: Cells) -> Draft | None:
         valid_to=valid_to,
         flags=(*tuned.flags, *power[1], *pattern[1]),
         on=is_on == "yes",
+        guard=guard,
+        static_delay_us=delay_us,
     )
     return Draft(cells.row.line, *position, transmitter, ground_amsl_m, multiplex, emission)
 
@@ -171,6 +179,18 @@ def _mode(cells: Cells, tuned: _Tuned | None) -> tuple[str, str] | None:
         cells.note(error.field or "mode", error.message)
         return None
     return mode.system, mode.name
+
+
+def _guard(cells: Cells, mode: tuple[str, str] | None, tuned: _Tuned | None) -> str:
+    """Guard interval as the tables of multi-carrier systems write it; empty where it is not stated."""
+    text = " ".join(cells.text("guard").upper().split())
+    if text and mode is not None and tuned is not None:
+        try:
+            if symbol_of(mode[0], tuned.bandwidth_mhz, text) is None:
+                cells.refuse("guard", f"{mode[0]} is no multi-carrier system: leave it empty")
+        except ModeError as error:
+            cells.note("guard", error.message)
+    return text
 
 
 def _erp(cells: Cells) -> tuple[float, tuple[str, ...]] | None:

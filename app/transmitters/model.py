@@ -60,6 +60,8 @@ class Emission:
     valid_to: date | None = None
     flags: tuple[str, ...] = ()  # what was assumed on import, e.g. "erp-unknown", "pattern-unknown"
     on: bool = True  # off: kept but left out
+    guard: str = ""  # carriers and guard interval of a multi-carrier mode, "8K 1/4"; empty: not stated
+    static_delay_us: float | None = None  # against the other members of its network; None: not stated
 
     def attenuation_db(self, bearing_deg: float) -> float:
         """Attenuation below the maximum towards a bearing, linear in dB between the stated directions."""

@@ -13,8 +13,10 @@ from app.transmitters.model import Emission, Multiplex, Polarisation, Transmitte
 
 EMISSION = (
     "e.id, t.id, e.multiplex, e.channel, e.frequency_mhz, e.bandwidth_mhz, e.system, e.mode, e.erp_kw, "
-    "e.polarisation, e.antenna_agl_m, e.pattern_cdb, e.valid_from, e.valid_to, e.flags, e.is_on"
+    "e.polarisation, e.antenna_agl_m, e.pattern_cdb, e.valid_from, e.valid_to, e.flags, e.is_on, "
+    "e.guard, e.static_delay_us"
 )
+EMISSION_COLUMNS = EMISSION.count(",") + 1
 TRANSMITTER = "t.id, t.name, t.latitude_deg, t.longitude_deg, t.ground_amsl_m, t.source"
 
 
@@ -66,7 +68,7 @@ def write_source(
     )
     connection.executemany(
         "INSERT INTO emission VALUES (?, ?, (SELECT number FROM transmitter WHERE id = ? AND source = ?), "
-        "?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)",
+        "?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?, ?)",
         (_emission_row(sent, source.id) for sent in emissions),
     )
 
@@ -92,6 +94,8 @@ def _emission_row(emission: Emission, source_id: str) -> tuple[object, ...]:
         emission.valid_to.isoformat() if emission.valid_to else None,
         " ".join(emission.flags),
         int(emission.on),
+        emission.guard,
+        emission.static_delay_us,
     )
 
 
@@ -99,7 +103,7 @@ def emission_of(row: tuple[Any, ...]) -> Emission:
     """Emission of a row with the columns of EMISSION."""
     (
         key, transmitter, multiplex, channel, frequency, bandwidth, system, mode, erp,
-        polarisation, height, pattern, valid_from, valid_to, flags, is_on,
+        polarisation, height, pattern, valid_from, valid_to, flags, is_on, guard, delay,
     ) = row  # fmt: skip
     return Emission(
         id=key,
@@ -118,4 +122,6 @@ def emission_of(row: tuple[Any, ...]) -> Emission:
         valid_to=date.fromisoformat(valid_to) if valid_to else None,
         flags=tuple(flags.split()),
         on=bool(is_on),
+        guard=guard,
+        static_delay_us=delay,
     )

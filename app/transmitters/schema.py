@@ -71,6 +71,10 @@ MIGRATIONS: tuple[tuple[str, ...], ...] = (
         )""",
     ),
     (
+        "ALTER TABLE emission ADD COLUMN guard TEXT NOT NULL DEFAULT ''",
+        "ALTER TABLE emission ADD COLUMN static_delay_us REAL",
+    ),
+    (
         """CREATE TABLE reading (
             number INTEGER PRIMARY KEY,
             id TEXT NOT NULL UNIQUE,

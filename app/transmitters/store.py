@@ -16,7 +16,7 @@ from app.transmitters import documents, readings
 from app.transmitters.database import Database
 from app.transmitters.documents import Document
 from app.transmitters.model import Emission, Multiplex, Transmitter
-from app.transmitters.rows import EMISSION, TRANSMITTER, Source, emission_of, write_source
+from app.transmitters.rows import EMISSION, EMISSION_COLUMNS, TRANSMITTER, Source, emission_of, write_source
 from terrain.geodesy import distance_and_bearing
 
 DEMO_SOURCE = "demo"  # left out as soon as there is any other source
@@ -85,7 +85,7 @@ class Store:
             ).fetchall()
         if not rows:
             return []
-        transmitters = {row[16]: Transmitter(*row[16:]) for row in rows}
+        transmitters = {row[EMISSION_COLUMNS]: Transmitter(*row[EMISSION_COLUMNS:]) for row in rows}
         masts = list(transmitters.values())
         distance_km, bearing_deg = distance_and_bearing(
             latitude_deg,
@@ -94,7 +94,10 @@ class Store:
             np.array([mast.longitude_deg for mast in masts]),
         )
         away = {mast.id: (float(d), float(b)) for mast, d, b in zip(masts, distance_km, bearing_deg, strict=True)}
-        found = [(emission_of(row[:16]), transmitters[row[16]], *away[row[16]]) for row in rows]
+        found = [
+            (emission_of(row[:EMISSION_COLUMNS]), transmitters[row[EMISSION_COLUMNS]], *away[row[EMISSION_COLUMNS]])
+            for row in rows
+        ]
         return sorted(
             (f for f in found if f[2] <= reach_km), key=lambda f: (f[2], f[1].id, f[0].frequency_mhz, f[0].id)
         )

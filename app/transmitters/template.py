@@ -15,6 +15,8 @@
 | pattern_db | no | "round", "unknown", or 36 attenuations [dB]; empty: taken as round, with a flag |
 | valid_from, valid_to | no | first and last day on the air |
 | on | no | yes or no; empty: yes |
+| guard | no | carriers and guard interval, "8K 1/4"; empty: the usual one of the system, with a flag |
+| static_delay_us | no | delay against the other masts of its single-frequency network; empty: 0, with a flag |
 
 A pattern's attenuations stand every 10° from true north clockwise, separated by spaces.
 Separator comma, semicolon or tab; with semicolons or tabs decimals may be written with a comma.
@@ -45,7 +47,7 @@ NEEDED = (
 COLUMNS = (
     "transmitter", "latitude_deg", "longitude_deg", "ground_amsl_m", "multiplex", "channel", "raster",
     "frequency_mhz", "bandwidth_mhz", "system", "mode", "erp_kw", "polarisation", "antenna_agl_m",
-    "pattern_db", "valid_from", "valid_to", "on",
+    "pattern_db", "valid_from", "valid_to", "on", "guard", "static_delay_us",
 )  # fmt: skip
 
 MOST_ROWS = 500_000
@@ -189,9 +191,9 @@ def template_example() -> str:
     to_the_south = "9 9 8 7 6 5 4 3 2 1 0 0 0 0 0 0 0 0 0 0 0 0 0 0 0 0 0 1 2 3 4 5 6 7 8 9"
     rows = (
         ",".join(COLUMNS),
-        f"Mast One,44.412,-36.905,182,{first},20,horizontal,150,round,,,yes",
-        f"Mast One,44.412,-36.905,182,{second},<=20,horizontal,150,{to_the_south},2026-03-01,,yes",
-        f"Mast Two,44.287,-37.148,,{first.replace('41', '28')},0.2,V,30,,,2030-12-31,",
+        f"Mast One,44.412,-36.905,182,{first},20,horizontal,150,round,,,yes,32K 1/8,0",
+        f"Mast One,44.412,-36.905,182,{second},<=20,horizontal,150,{to_the_south},2026-03-01,,yes,,",
+        f"Mast Two,44.287,-37.148,,{first.replace('41', '28')},0.2,V,30,,,2030-12-31,,,",
     )
     return "\n".join(rows) + "\n"
 

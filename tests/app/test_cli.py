@@ -37,7 +37,8 @@ def own(tmp_path, monkeypatch):
 
 def test_assess_begins_with_the_decision(run):
     told = run("assess", "--at", NORTH, "--now", "roof-yagi").stdout
-    assert "worth it" in told.splitlines()[2]
+    assert "measure first" in told.splitlines()[2]
+    assert "Measure first: channel " in told
     assert "On the roof" in told
     assert "local codes" in told
 

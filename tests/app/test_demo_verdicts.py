@@ -1,10 +1,12 @@
 """What the demo is there to show: aerials that are worth it on one roof and not on another."""
 
+from dataclasses import replace
+
 import pytest
 
 from app.demo.relief import ensure_demo_relief
 from app.demo.scenario import DEMO_ROOFS, ensure_demo
-from app.planner import assess
+from app.planner import assess, stored_chain
 from app.request import AssessRequest
 from app.roof import Roof
 from app.transmitters.store import Store
@@ -75,4 +77,52 @@ def test_in_the_eastern_bay_the_relay_stands_in_for_the_strong_mast(answers):
 
 def test_two_masts_on_one_channel_are_told(answers):
     for answer in answers.values():
-        assert any("channel 45" in caution for caution in answer["cautions"])
+        (shared,) = (one for one in answer["emissions"] if one["id"] == "far-island-45")
+        assert any("Southern Spur" in caution for caution in shared["cautions"])
+
+
+def test_at_the_backbone_foot_directivity_brings_back_what_the_channel_s_other_mast_takes(answers):
+    """Southern Spur stands nearly behind an aerial turned to the far island, and 20 times as strong.
+
+    On the free channels the small aerial's margins are above 0; on the shared one they are below, and the
+    aerial that rejects more to the back lifts it by more than its gain lifts the others.
+    """
+    emissions = {one["id"]: one["chains"] for one in answers["Backbone foot"]["emissions"]}
+    shared, free = emissions["far-island-45"], emissions["far-island-42"]
+    held = shared["roof-yagi"]["held_back_by"]
+    assert (held["limit"], held["emission"], held["state"]) == ("interference", "southern-spur-45", "b")
+    assert held["bearing_deg"] == pytest.approx(233.7, abs=1.0)  # from the map: 15.3 km west, 11.4 km south
+    assert shared["roof-yagi"]["margin_db"] < 0 < free["roof-yagi"]["margin_db"]
+    gain_alone = free["high-gain"]["margin_db"] - free["roof-yagi"]["margin_db"]
+    directivity = shared["high-gain"]["margin_db"] - shared["roof-yagi"]["margin_db"]
+    assert shared["high-gain"]["margin_db"] > 3
+    assert directivity > gain_alone + 1
+    # The amplifier lifts the free channels by far more than the shared one.
+    amplified = shared["high-gain-masthead"]["margin_db"] - shared["high-gain"]["margin_db"]
+    assert amplified < 3 < free["high-gain-masthead"]["margin_db"] - free["high-gain"]["margin_db"]
+
+
+def test_verdict_says_that_directivity_cures_interference_and_an_amplifier_does_not(tmp_path):
+    store = Store.open(tmp_path / "data")
+    ensure_demo(store)
+    ground = Ground.open([ensure_demo_relief(tmp_path / "relief")], tmp_path / "cache")
+    place = next(one for one in DEMO_ROOFS if one.name == "Backbone foot")
+    small = stored_chain(store, "roof-yagi")
+    amplifier = next(part for part in stored_chain(store, "high-gain-masthead").parts if part.kind.startswith("masth"))
+    amplified = replace(small, name="amplified", parts=(small.parts[0], amplifier, *small.parts[1:]))
+    answer = assess(
+        AssessRequest(
+            Roof(place.latitude_deg, place.longitude_deg),
+            chains=(small, amplified, "high-gain"),
+            now="roof-yagi",
+            wanted=("strait-3",),
+        ),
+        store,
+        ground,
+    )
+    reason = verdict(answer, "high-gain")["reason"]
+    assert reason.startswith(
+        "Interference holds back 1 of 1, directivity, not gain, cures it, and an amplifier does not"
+    )
+    shared = next(one for one in answer["emissions"] if one["id"] == "far-island-45")["chains"]
+    assert shared["amplified"]["margin_db"] < 1.5 < 3 < shared["high-gain"]["margin_db"]

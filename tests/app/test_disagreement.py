@@ -23,6 +23,7 @@ def terms(**given):
             "antenna stands, where P.1812 finds the line to the antenna clear.",
         ),
         ({"curves_db": 34.0, "diffraction_db": 4.0, "effective_height_m": 12.0}, "antenna 12 m over the mean ground"),
+        ({"curves_db": 80.0, "diffraction_db": 51.0, "effective_height_m": -612.0}, "612 m below the mean ground"),
         ({"surroundings_db": 17.0, "diffraction_db": 1.0}, "for the height of the aerial among what stands round it"),
         ({"near_edge_db": 24.0, "surroundings_db": 8.0}, "takes 24 dB for what stands round the roof, where P.1546"),
         ({"curves_db": 50.0, "diffraction_db": 70.0, "brought_back_db": 45.0}, "layers in the air bring back 45 dB"),

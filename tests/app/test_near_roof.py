@@ -9,7 +9,7 @@ import pytest
 from app.assumptions import Assumptions
 from app.errors import RoofError
 from app.methods import fields_of_methods
-from app.paths_to_roof import path_over
+from app.paths_to_roof import path_over, to_coast_km
 from app.roof import Obstacle, Roof
 from propagation.digest import stacked_digests
 from terrain.geodesy import points_along
@@ -149,3 +149,11 @@ def test_an_impossible_obstacle_is_refused_by_its_place(field, value):
     with pytest.raises(RoofError, match=f"obstacles.1.{field} .* is not possible: use") as caught:
         Roof(*SOUTH, obstacles=(HOUSE, replace(HOUSE, **{field: value})))
     assert caught.value.field == f"obstacles.1.{field}"
+
+
+def test_distance_to_the_coast_counts_land_along_the_path():
+    """Rec. ITU-R P.1812-7, table of inputs: over land from each end, 0 at sea, 500 km where there is none."""
+    distance_km, zone = np.array([0.0, 2, 5, 9]), np.array([3, 3, 1, 1], dtype=np.int8)
+    assert to_coast_km(distance_km, zone) == 5
+    assert to_coast_km(9 - distance_km[::-1], zone[::-1]) == 0
+    assert to_coast_km(distance_km, np.full(4, 4, dtype=np.int8)) == 500

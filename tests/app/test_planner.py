@@ -15,7 +15,7 @@ from app.roof import Roof
 from terrain.errors import CoverageError
 
 PLACES = {roof.name: Roof(roof.latitude_deg, roof.longitude_deg) for roof in DEMO_ROOFS}
-NORTH, WEST, BAY = PLACES.values()
+NORTH, WEST, BAY, SHORE, FOOT = PLACES.values()
 
 
 @pytest.fixture(scope="module")
@@ -33,7 +33,7 @@ def cell(answer, multiplex, chain):
 def test_document_has_the_shape_of_the_interface(ask):
     answer = ask(now="roof-yagi")
     assert set(answer) == {
-        "roof", "multiplexes", "emissions", "chains", "verdicts", "assumptions", "cautions", "sources",
+        "roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources",
     }  # fmt: skip
     emission = answer["emissions"][0]
     assert {"id", "transmitter", "multiplex", "channel", "frequency_mhz", "system", "mode", "erp_kw", "polarisation",
@@ -52,8 +52,9 @@ def test_document_has_the_shape_of_the_interface(ask):
     json.dumps(answer, allow_nan=False)
 
 
-def test_worth_it_and_not_worth_it_both_occur(ask):
-    assert ask(NORTH, now="roof-yagi")["verdicts"][0]["answer"] == "worth it"
+def test_all_three_answers_occur(ask):
+    assert ask(NORTH, now="loft-dipole")["verdicts"][0]["answer"] == "worth it"
+    assert ask(SHORE, now="roof-yagi")["verdicts"][0]["answer"] == "measure first"
     assert {verdict["answer"] for verdict in ask(WEST, now="roof-yagi")["verdicts"]} == {"not worth it"}
 
 
@@ -66,7 +67,11 @@ def test_every_ledger_runs_from_the_radiated_power_to_the_margin(ask):
                 assert steps[0]["step"].startswith("radiated power")
                 assert steps[-1]["total"] == pytest.approx(outlet["margin_db"], abs=0.02)
                 assert all(step["source"] for step in steps)
-                assert sum(step["value_db"] for step in steps) == pytest.approx(outlet["margin_db"], abs=0.2)
+                assert steps[-1]["state"] == outlet["held_back_by"]["state"]
+                for state in "ab":
+                    one = [step for step in steps if step["state"] == state]
+                    assert sum(step["value_db"] for step in one) == pytest.approx(one[-1]["total"], abs=0.2)
+                    assert one[-1]["total"] >= outlet["margin_db"] - 0.02
                 ledgers += 1
     assert ledgers >= 40
 
@@ -146,9 +151,13 @@ def test_nothing_in_reach_is_an_answer_that_names_the_nearest(ask):
     assert any("the nearest transmitter is" in caution for caution in answer["cautions"])
 
 
-def test_shared_channel_is_said_to_be_not_counted_yet(ask):
+def test_shared_channel_is_said_and_counted(ask):
     answer = ask(NORTH)
-    assert any("interference between them is not yet counted" in caution for caution in answer["cautions"])
+    disturbed = next(one for one in answer["emissions"] if one["id"] == "far-island-45")
+    assert any("Southern Spur" in caution for caution in disturbed["cautions"])
+    clear = next(one for one in answer["emissions"] if one["id"] == "far-island-42")
+    assert disturbed["chains"]["roof-yagi"]["margin_db"] < clear["chains"]["roof-yagi"]["margin_db"]
+    assert not any("not counted" in caution and "nterference" in caution for caution in answer["cautions"])
 
 
 def test_usual_cautions_are_always_there(ask):
@@ -225,3 +234,15 @@ def stored_chain_of_nothing():
     from app.chain.document import chain_from_document
 
     return chain_from_document({"name": "empty", "parts": []})
+
+
+def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
+    for emission in ask(now="roof-yagi")["emissions"]:
+        field = emission["field"]
+        ledger = emission["chains"]["roof-yagi"]["outlets"][0]["ledger"]
+        ground = next(row for row in ledger if row["step"].startswith("ground and atmosphere"))
+        fade = next(row for row in ledger if row["step"].startswith("fade"))
+        assert f"P.1812 {field['p1812_dbuv_m']:.2f}, P.1546 {field['p1546_dbuv_m']:.2f}" in ground["source"]
+        assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
+        assert fade["value_db"] == -field["fade_db"]
+        assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]

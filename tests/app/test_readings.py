@@ -6,8 +6,8 @@ from datetime import date
 import pytest
 
 from app.errors import ReadingError
-from app.evidence import _cn_of_mer
 from app.readings import KINDS, Reading, reading_from_document, reading_to_document
+from app.statements import cn_of_mer
 
 
 def test_a_reading_survives_the_way_there_and_back():
@@ -36,6 +36,9 @@ def test_a_reading_survives_the_way_there_and_back():
         ({"kind": "seen", "emission": "48"}, "has no state: use perfect, breaks up, not found"),
         ({"kind": "seen", "emission": "48", "state": "lovely"}, "use perfect, breaks up, not found"),
         ({"kind": "seen", "emission": "48", "state": "perfect", "day": "31.10.2026"}, "write it as 2026-10-31"),
+        ({"kind": "count"}, "say in `count` how many"),
+        ({"kind": "count", "count": -1}, "use 0 to 1000"),
+        ({"kind": "count", "count": 2.5}, "write a whole number"),
         ({"kind": "order", "stronger": ["48"]}, "at least two"),
         ({"kind": "order", "stronger": "48"}, "list channels, strongest first"),
         ({"kind": "neighbour", "works": True}, "needs pointing_deg"),
@@ -53,14 +56,14 @@ def test_what_nobody_can_have_read_is_refused_with_what_is_allowed(document, mes
 
 def test_mer_and_instrument_noise_add_as_powers():
     """A signal of 30 dB on an instrument of 30 dB shows 30 − 3.01 = 26.99 dB."""
-    cn, factor, at_limit = _cn_of_mer(30 - 10 * math.log10(2), 30.0)
+    cn, factor, at_limit = cn_of_mer(30 - 10 * math.log10(2), 30.0)
     assert (cn, at_limit) == (pytest.approx(30.0), False)
     assert factor == pytest.approx(2.0)  # d(C/N)/d(MER) = 1 / (1 − 1/2)
 
 
 @pytest.mark.parametrize("mer_db", [35.2, 36.0, 41.0])
 def test_mer_near_its_limit_is_only_a_lower_bound(mer_db):
-    assert _cn_of_mer(mer_db, 36.0) == (mer_db, 1.0, True)
+    assert cn_of_mer(mer_db, 36.0) == (mer_db, 1.0, True)
 
 
 def test_every_kind_is_named_once():

@@ -110,7 +110,7 @@ def test_interference_that_directivity_helps_is_worth_it():
     limits = ("interference",) * 2
     found = decide(Side("now", (-10, -10), limits=limits), Side("narrow", (10, 10), "long", 40))
     assert found.answer == "worth it"
-    assert "directivity helps, an amplifier does not" in found.reason
+    assert "directivity, not gain, cures it, and an amplifier does not" in found.reason
 
 
 def test_interference_that_an_amplifier_cannot_help_is_not():

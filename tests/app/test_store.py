@@ -295,3 +295,29 @@ def test_documents_come_in_the_order_in_which_they_were_made(store):
         store.put_chain({"id": name, "name": name})
     store.put_chain({"id": "short", "name": "zz"})  # a change keeps the place
     assert [chain["id"] for chain in store.list_chains()] == ["short", "long", "another"]
+
+
+def test_guard_interval_and_delay_come_back_as_stored(tmp_path):
+    store = Store.open(tmp_path)
+    mast = Transmitter("m", "Mast", 44.0, -37.0, None, "s")
+    sent = [
+        Emission(
+            f"e{k}",
+            "m",
+            "x",
+            "",
+            650.0 + 8 * k,
+            8,
+            "DVB-T2",
+            "256-QAM 2/3",
+            1,
+            "horizontal",
+            50,
+            guard=guard,
+            static_delay_us=late,
+        )
+        for k, (guard, late) in enumerate((("32K 1/8", 7.5), ("", None)))
+    ]
+    store.replace_source(Source("s", "s"), [mast], sent, [Multiplex("x", "X")])
+    assert store.emissions() == sent
+    assert [one for one, *_ in store.emissions_within(44.0, -37.0, 10)] == sent

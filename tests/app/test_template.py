@@ -250,7 +250,7 @@ def test_an_open_quote_spoils_its_own_line_only(read):
 def test_a_comma_inside_quotes_is_part_of_the_name_and_outside_is_a_cell_too_many(read):
     assert read(text_of({"transmitter": "Mast, old"})).transmitters[0].name == "Mast, old"
     text = text_of({"transmitter": "Mast, old"}).replace('"', "")
-    assert "the row has 19 cells and the header 18" in only_refusal(read(text)).message
+    assert "the row has 21 cells and the header 20" in only_refusal(read(text)).message
 
 
 def test_a_last_line_cut_short_is_refused(read):
@@ -488,3 +488,23 @@ def test_thousands_of_rows_are_read_in_moments(read):
     ]
     result = read(text_of(*changes))
     assert (len(result.transmitters), result.rows_refused) == (2_000, 0)
+
+
+# Single-frequency networks
+
+
+def test_guard_interval_and_delay_are_kept_as_the_tables_write_them(read):
+    (one,) = read(text_of({"guard": "32k  1/8", "static_delay_us": "-12.5"})).emissions
+    assert (one.guard, one.static_delay_us) == ("32K 1/8", -12.5)
+    (other,) = read(text_of({})).emissions
+    assert (other.guard, other.static_delay_us) == ("", None)
+
+
+def test_guard_interval_that_the_system_has_not_lists_those_it_has(read):
+    message = only_refusal(read(text_of({"guard": "8K 1/3"}))).message
+    assert 'DVB-T2 has no guard interval "8K 1/3"' in message
+    assert "32K 1/128 1/32" in message
+
+
+def test_delay_of_hours_is_refused(read):
+    assert "use -5000 to 5000 µs" in only_refusal(read(text_of({"static_delay_us": "3600000000"}))).message

@@ -14,7 +14,7 @@ from app.web.main import create_app
 
 NORTH = DEMO_ROOFS[0]
 ROOF = {"latitude_deg": NORTH.latitude_deg, "longitude_deg": NORTH.longitude_deg}
-PARTS = {"roof", "multiplexes", "emissions", "chains", "verdicts", "assumptions", "cautions", "sources"}
+PARTS = {"roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources"}
 
 
 @pytest.fixture(scope="module")
@@ -122,7 +122,10 @@ def test_a_wrong_roof_is_refused_at_its_field(client, change, field, words):
         ({"assumptions": {"reserve_db": "3"}}, "assumptions.reserve_db", "a number, not in quotes"),
         ({"wanted": ["no such multiplex"]}, "wanted", "no such multiplex"),
         ({"wanted": []}, "wanted", "at least one"),
-        ({"readings": [{"level_dbuv": 50}]}, "readings", "at most 0"),
+        ({"readings": [{"level_dbuv": 50}]}, "readings.0.level_dbuv", "is not known of a reading"),
+        ({"readings": [{"kind": "level", "emission": "48", "value_db": 300}]}, "readings.0.value_db", "-20 to 130"),
+        ({"readings": [{"kind": "scan list", "text": ""}]}, "readings.0.text", "is empty"),
+        ({"readings": {}}, "readings", "a list"),
         ({"roof": None}, "roof", "an object"),
         ({"roofs": []}, "roofs", "roof, chains, now"),
     ],

@@ -6,6 +6,7 @@ import logging
 import pytest
 from starlette.testclient import TestClient
 
+from app.demo.scenario import DEMO_ROOFS
 from app.settings import Settings
 from app.transmitters.store import Store
 from app.web.assets import ASSETS
@@ -132,7 +133,7 @@ def test_health_tells_ground_sources_and_the_demos_roofs(client, demo_world):
     assert health["status"] == "ok"
     assert len(health["ground"]["rasters"]) == len(demo_world.ground.rasters) > 0
     assert [source["id"] for source in health["sources"]] == ["demo"]
-    assert len(health["demo_roofs"]) == 3
+    assert len(health["demo_roofs"]) == len(DEMO_ROOFS)
 
 
 def test_lists_are_those_of_the_store(client, demo_world):

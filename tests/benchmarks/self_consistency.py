@@ -11,10 +11,11 @@ import sys
 import time
 from pathlib import Path
 
-sys.path[:0] = [str(Path(__file__).parent), str(Path(__file__).parents[2])]
+sys.path.insert(0, str(Path(__file__).parents[2]))
+sys.path.insert(0, str(Path(__file__).parent))
 
 import numpy as np
-from worlds import RoofCase, Tally, consistency, earnings, level_of, low_mast, Read, roof_case, scaled, world
+from worlds import Read, RoofCase, Tally, consistency, earnings, level_of, low_mast, roof_case, scaled, world
 
 from app.logbook import learnt_scale
 
@@ -26,7 +27,7 @@ TOO_SMALL = 0.7
 def told(name: str, tally: Tally) -> list[str]:
     lines = [f"{name}: 90 % intervals hold {tally.coverage():.1%}, Brier score {tally.brier():.4f}"]
     lines += [
-        f"  {n:7d} chances around {p:.3f}: happened {y:.3f}, off by {100 * (y - p):+.1f} points, standard error {100 * s:.1f}"
+        f"  {n:7d} chances around {p:.3f}: happened {y:.3f}, {100 * (y - p):+.1f} points, standard error {100 * s:.1f}"
         for n, p, y, s in tally.deciles()
     ]
     return lines
@@ -66,9 +67,8 @@ def main() -> None:
     z = surprises(cases, 1 / TOO_SMALL, SEED + 3)
     for count in (4, 5, 10, 50):
         scale = learnt_scale(z[:count])
-        print(
-            f"  scale learnt from {count} readings: {'none' if scale is None else f'{scale:.2f}'} (true {1 / TOO_SMALL:.2f})"
-        )
+        words = "none" if scale is None else f"{scale:.2f}"
+        print(f"  scale learnt from {count} readings: {words} (true {1 / TOO_SMALL:.2f})")
     learnt = learnt_scale(z)
     assert learnt is not None
     rng, inside = np.random.default_rng(SEED + 4), []

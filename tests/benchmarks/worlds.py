@@ -16,8 +16,8 @@ from numpy.typing import NDArray
 
 from app.chance import Cells, ErrorPart, Loadings, PathError, received
 from app.conditioning import Bound, Joint, Plain, Posterior, Site, condition
-from app.evidence import best_of
 from app.reading_value import Readable, expected_after, most_valuable
+from app.statements import best_of
 
 FloatArray = NDArray[np.float64]
 

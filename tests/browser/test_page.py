@@ -16,7 +16,7 @@ from app.demo.scenario import DEMO_ROOFS
 
 pytestmark = pytest.mark.browser
 
-NORTH, WEST, EAST = DEMO_ROOFS
+NORTH, WEST, EAST, *_ = DEMO_ROOFS
 RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"]
 SENTENCE = re.compile(r"^(Today .+ of \d+\.|Nothing is up today\.) .+(worth it|measure first|at any price).*\.$")
 

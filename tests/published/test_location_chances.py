@@ -18,7 +18,8 @@ TABLE = Path(__file__).parents[1] / "data" / "itu" / "planning_chains" / "worked
 ROWS = [row for row in csv.DictReader(TABLE.read_text(encoding="utf-8").splitlines()) if row["flag"] in ("MH", "D")]
 INPUTS = (
     "frequency_mhz", "noise_bandwidth_mhz", "noise_figure_db", "required_cn_db", "gain_dbd", "feeder_loss_db",
-    "location_percent", "location_sd_db", "entry_loss_sd_db", "man_made_allowance_db", "height_loss_db", "entry_loss_db",
+    "location_percent", "location_sd_db", "entry_loss_sd_db", "man_made_allowance_db", "height_loss_db",
+    "entry_loss_db",
 )  # fmt: skip
 
 

@@ -1,0 +1,205 @@
+"""How errors of interferers and network members move a margin.
+
+The margin is not linear in the errors of what disturbs it. It is replaced by a chord: if interference and
+noise stand at r = I/N and the interference as a whole has the spread s,
+
+    slope = (D(+s) - D(-s)) / 2 s,     D(x) = 10 log(1 + r 10^(x/10)),
+
+rises from 0 (noise alone) to 1 (interference alone), and an error of an interferer that makes the share q
+of I moves the margin by -slope q. s is the root of the sum of (q_i s_i)^2. The chord keeps more of a rare
+strong rise than the tangent does and stays a normal, keyed by the same names as the errors of wanted
+emissions: what disturbs one and is wanted elsewhere moves both. Errors that wanted and interferer have in
+common cancel as far as the slope goes: what moves all signals alike counts with the share of noise in N + I,
+and an interferer on the wanted emission's own mast takes its path and band errors off again. Between other
+masts the correlation over bearing is left out. Members of a network carry their shares of the useful power.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.assumptions import Assumptions
+from app.chain import aerial as response
+from app.chance import ErrorPart
+from app.disturbance import Company, Ear, Effect, State
+from app.interference import degradation_db, nuisance_power
+
+FloatArray = NDArray[np.float64]
+
+STRONGEST = 3  # interferers with keys of their own for each wanted emission; the others share one
+NAMED_FROM_DB = 0.3  # those that move a margin by less share it too
+
+
+@dataclass(frozen=True, slots=True)
+class Disturbers:
+    """Spreads of all interferers through one chain, (i,) each, with the names they are keyed by."""
+
+    ids: tuple[str, ...]
+    masts: tuple[str, ...]
+    bands: tuple[str, ...]
+    path_db: FloatArray
+    band_db: float
+    emission_db: float
+    erp_db: FloatArray
+    enhancement_db: FloatArray
+
+    def spread_db(self, state: State, rejection_db: FloatArray) -> FloatArray:
+        """Spread of each, (…, i), with that of the rejection off the axis (…, i)."""
+        fixed = self.path_db**2 + self.band_db**2 + self.emission_db**2 + self.erp_db**2
+        risen = self.enhancement_db**2 if state == "b" else 0.0
+        return np.sqrt(fixed + risen + rejection_db**2)
+
+
+def disturbers_of(
+    company: Company, masts: tuple[str, ...], bands: tuple[str, ...], assumptions: Assumptions
+) -> Disturbers:
+    """Gather the spreads of all interferers, whose masts and bands are named as those of wanted ones."""
+    ones = company.interferers
+    return Disturbers(
+        tuple(one.emission.id for one in ones),
+        masts,
+        bands,
+        np.array([one.path_sd_db for one in ones]),
+        assumptions.value("band_sd_db"),
+        assumptions.value("emission_sd_db"),
+        np.where([one.doubtful_erp for one in ones], assumptions.value("erp_unknown_sd_db"), 0.0),
+        assumptions.value("enhancement_sd_share") * np.array([one.enhancement_db for one in ones]),
+    )
+
+
+def rejection_sd_db(ear: Ear, pointing_deg: FloatArray | float) -> FloatArray:
+    """Spread of the rejection of each interferer, (…, i): off the axis, and cross-polar."""
+    ones = ear.company.interferers
+    off_axis = response.off_axis_deg(np.array([one.bearing_deg for one in ones]), pointing_deg)
+    beyond = np.where(off_axis > ear.chain.aerial.beamwidth_deg / 2, ear.assumptions.value("off_axis_sd_db"), 0.0)
+    crossed = np.array([one.emission.polarisation not in (ear.polarisation, "mixed") for one in ones], dtype=bool)
+    return np.asarray(np.where(crossed, np.maximum(beyond, ear.assumptions.value("cross_polar_sd_db")), beyond))
+
+
+def slope_and_spread(ear: Ear, effect: Effect, spread_db: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Slope of each margin over the interference as a whole, and that one's spread [dB], (…, e) both.
+
+    `spread_db` (…, i) is that of each interferer.
+    """
+    if not ear.company.pairs.disturber.size:
+        return np.zeros(effect.i_over_c.shape), np.zeros(effect.i_over_c.shape)
+    weights = ear.company.weights[effect.state]
+    squares = weights.copy()
+    squares.data = squares.data**2
+    moving = nuisance_power((effect.powers * spread_db) ** 2, squares)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        spread = np.where(moving > 0, np.sqrt(moving) / (effect.i_over_c * effect.carrier), 0.0)
+    step = np.maximum(spread, 1e-3)
+    ratio = 10 ** (step / 10)
+    rise = degradation_db(effect.cn_db, effect.i_over_c * ratio) - degradation_db(effect.cn_db, effect.i_over_c / ratio)
+    return rise / (2 * step), spread
+
+
+@dataclass(frozen=True, slots=True)
+class Moved:
+    """What the company's errors do to the margins of one chain turned one way. (e,) arrays."""
+
+    parts: tuple[ErrorPart, ...]
+    leader: NDArray[np.intp]  # whose errors a margin mainly carries: itself, or the network's strongest
+    leader_share: FloatArray  # of the carrier
+    path_off_db: FloatArray  # taken off the path error: interferers on the same mast
+    band_off_db: FloatArray
+    common: FloatArray  # factor on what moves all signals alike
+
+
+def moved_by(
+    ear: Ear,
+    effects: dict[State, Effect],
+    state_b: NDArray[np.bool_],
+    disturbers: Disturbers,
+    pointing_deg: float,
+) -> Moved:
+    """Parts of the errors for one pointing, each margin in the state that decides it."""
+    company, count = ear.company, len(state_b)
+    rejection = rejection_sd_db(ear, pointing_deg)
+    leader, leader_share, second = _network_shares(company, effects, state_b)
+    path_off, band_off, common = np.zeros(count), np.zeros(count), np.ones(count)
+    ranks = [_Rank(count) for _ in range(STRONGEST)]
+    rest = np.zeros(count)
+    for state in ("a", "b"):
+        effect, spread = effects[state], disturbers.spread_db(state, rejection)
+        slope, _ = slope_and_spread(ear, effect, spread)
+        alike = 1 / (1 + effect.i_over_n)
+        weights = company.weights[state]
+        for e in np.flatnonzero(state_b == (state == "b")):
+            common[e] = alike[e]
+            row = slice(weights.indptr[e], weights.indptr[e + 1])
+            who = weights.indices[row]
+            if not who.size:
+                continue
+            share = slope[e] * weights.data[row] * effect.powers[who] / (effect.i_over_c[e] * effect.carrier[e])
+            order = np.argsort(-share * spread[who])
+            named = [k for k in order[:STRONGEST].tolist() if share[k] * spread[who[k]] >= NAMED_FROM_DB]
+            for place, k in enumerate(named):
+                i, moves = int(who[k]), float(share[k])
+                same_mast = disturbers.masts[i] == disturbers.masts[leader[e]]
+                if same_mast:
+                    path_off[e] += moves * disturbers.path_db[i]
+                    band_off[e] += moves * disturbers.band_db
+                ranks[place].put(int(e), i, moves, disturbers, float(rejection[i]), state, same_mast)
+            left = order[len(named) :]
+            rest[e] = float(np.sqrt(np.sum((share[left] * spread[who[left]]) ** 2)))
+    ids = disturbers.ids
+    parts = [part for rank in ranks for part in rank.parts(ear.chain.aerial.id, disturbers)]
+    parts.append(ErrorPart(tuple(f"interference:{ids[e]}" for e in range(count)), rest))
+    parts += [
+        ErrorPart(tuple(f"path:{disturbers.masts[i]}" for i in who), share * disturbers.path_db[who])
+        for who, share in second
+    ]
+    return Moved(tuple(parts), leader, leader_share, path_off, band_off, common)
+
+
+class _Rank:
+    """The interferers of one rank, one for each wanted emission, as parts of the error."""
+
+    def __init__(self, count: int) -> None:
+        self.who = np.zeros(count, dtype=int)
+        self.sd_db = {name: np.zeros(count) for name in ("path", "band", "emission", "erp", "enhancement", "off-axis")}
+
+    def put(
+        self, e: int, i: int, moves: float, ones: Disturbers, rejection_db: float, state: State, same_mast: bool
+    ) -> None:
+        self.who[e] = i
+        # Signs: an interferer above its median lowers the margin.
+        self.sd_db["path"][e] = 0.0 if same_mast else -moves * ones.path_db[i]
+        self.sd_db["band"][e] = 0.0 if same_mast else -moves * ones.band_db
+        self.sd_db["emission"][e] = -moves * ones.emission_db
+        self.sd_db["erp"][e] = -moves * ones.erp_db[i]
+        self.sd_db["enhancement"][e] = -moves * ones.enhancement_db[i] if state == "b" else 0.0
+        self.sd_db["off-axis"][e] = -moves * rejection_db
+
+    def parts(self, aerial_id: str, ones: Disturbers) -> list[ErrorPart]:
+        keys = {
+            "path": [f"path:{ones.masts[i]}" for i in self.who],
+            "band": [f"band:{ones.masts[i]}:{ones.bands[i]}" for i in self.who],
+            "emission": [f"emission:{ones.ids[i]}" for i in self.who],
+            "erp": [f"erp:{ones.ids[i]}" for i in self.who],
+            "enhancement": [f"enhancement:{ones.masts[i]}" for i in self.who],
+            "off-axis": [f"off-axis:{aerial_id}:{ones.ids[i]}" for i in self.who],
+        }
+        return [ErrorPart(tuple(keys[name]), sd) for name, sd in self.sd_db.items() if sd.any()]
+
+
+def _network_shares(
+    company: Company, effects: dict[State, Effect], state_b: NDArray[np.bool_]
+) -> tuple[NDArray[np.intp], FloatArray, list[tuple[NDArray[np.intp], FloatArray]]]:
+    """Leader and its share of the carrier for each margin, and the second member with its share."""
+    count = len(state_b)
+    leader, share = np.arange(count), np.ones(count)
+    second, second_share = np.arange(count), np.zeros(count)
+    for one in company.networks:
+        effect = effects["b" if state_b[one.members[0]] else "a"]
+        # carrier / gain is a member's own power; with its useful share it is what the member brings
+        brings = effect.useful[one.members] * 10 ** (-effect.gain_db[one.members] / 10)
+        order = np.argsort(-brings)
+        leader[one.members], share[one.members] = one.members[order[0]], brings[order[0]]
+        second[one.members], second_share[one.members] = one.members[order[1]], brings[order[1]]
+    return leader, share, [(second, second_share)] if company.networks else []
