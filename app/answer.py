@@ -16,7 +16,7 @@ from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
 from app.ledger import ledger
-from app.margins import Air, FloatArray, Turned
+from app.margins import SAME_MAST_KM, Air, FloatArray, Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest
@@ -65,9 +65,7 @@ def answer_document(
             "ground_amsl_m": round(site.ground_amsl_m, 2),
             "surroundings": request.roof.surroundings,
             "declination": declination_document(
-                declination_at(
-                    request.roof.latitude_deg, request.roof.longitude_deg, site.ground_amsl_m, date.today()
-                )
+                declination_at(request.roof.latitude_deg, request.roof.longitude_deg, site.ground_amsl_m, date.today())
             ),
         },
         "multiplexes": [
@@ -334,6 +332,12 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
             f"No prediction for {', '.join(without)}: see the reason beside each channel; "
             "they take no part in the verdict."
         )
+    twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
+    if twice:
+        cautions.append(
+            f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
+            "Take one import out with `gainworth transmitters remove SOURCE`."
+        )
     cautions += air.company.cautions
     rough = sorted({one.transmitter.name for one in air.company.interferers if not one.over_ground})
     if rough:
@@ -342,6 +346,21 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
         )
         cautions.append(f"Interference from {names} is reckoned without the ground on its way.")
     return cautions
+
+
+def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
+    """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
+    mine = field.emission
+    return [
+        f"{field.transmitter.name} in {field.transmitter.source} and "
+        f"{other.transmitter.name} in {other.transmitter.source}"
+        for other in fields
+        if other.transmitter.source > field.transmitter.source
+        and other.emission.system == mine.system
+        and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
+        and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
+        and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM
+    ]
 
 
 def _register(source: Any) -> dict[str, str]:

@@ -216,6 +216,21 @@ def import_file(
     _show(summary.document(), as_json, summary.text)
 
 
+@transmitters.command("remove")
+def remove_source(
+    source: Annotated[str, typer.Argument(metavar="SOURCE", help="Source as `transmitters list` shows it.")],
+    as_json: Json = False,
+) -> None:
+    """Take everything out that one import brought; the demo comes back when nothing else is stored."""
+    from app.paths import data_dir
+    from app.transmitters.store import Store
+
+    with _mendable():
+        removed = Store.open(data_dir()).delete_source(source)
+    document = {"source": source, "emissions_removed": removed}
+    _show(document, as_json, lambda: f'{removed} emissions of source "{source}" taken out')
+
+
 @transmitters.command("template")
 def print_template() -> None:
     """Print an example of the CSV template, to fill in."""
@@ -242,13 +257,38 @@ def add_rasters(
     kind: Annotated[str | None, typer.Option(help="surface, radar-surface or bare.")] = None,
     as_json: Json = False,
 ) -> None:
-    """Copy elevation rasters into the data folder, checked first."""
+    """Copy elevation rasters into the data folder, checked first; good ones are kept, refused ones told.
+
+    A server that runs reads them when it is started again.
+    """
     from app.ground_files import add_raster
     from app.lists import table
 
+    rows, refused = [], []
+    for one in paths:
+        try:
+            rows.append(add_raster(one, crs, kind))
+        except (AppError, TerrainError) as error:
+            refused.append(str(error))
+    if rows or as_json:
+        _show(rows, as_json, lambda: table(rows, ""))
+    for message in refused:
+        typer.echo(message, err=True)
+    if refused:
+        raise typer.Exit(MENDABLE)
+
+
+@terrain.command("remove")
+def remove_one_raster(
+    name: Annotated[str, typer.Argument(metavar="FILE", help="Name as `terrain list` shows it.")], as_json: Json = False
+) -> None:
+    """Take a raster out of the data folder."""
+    from app.ground_files import remove_raster
+    from app.lists import table
+
     with _mendable():
-        rows = [add_raster(one, crs, kind) for one in paths]
-    _show(rows, as_json, lambda: table(rows, "nothing was added"))
+        row = remove_raster(name)
+    _show(row, as_json, lambda: table([row], ""))
 
 
 @terrain.command("list")

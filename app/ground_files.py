@@ -10,6 +10,7 @@ from typing import Any
 from app.errors import StoreError
 from app.world import terrain_dir
 from terrain.errors import RasterError
+from terrain.mosaic import Ground
 from terrain.raster import declare, open_raster
 
 
@@ -21,6 +22,7 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
     if not path.is_file():
         raise RasterError(f"{path} is no file: name an elevation raster such as a GeoTIFF or an .hgt tile")
     target = terrain_dir() / path.name
+    replaces = target.exists()
     try:
         terrain_dir().mkdir(parents=True, exist_ok=True)
         with tempfile.TemporaryDirectory(dir=terrain_dir(), prefix=".adding-") as folder:
@@ -31,6 +33,7 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
                 if crs or kind:
                     declare(copy, crs=crs, kind=kind)
                 info = open_raster(copy)
+                _check_heights(copy)
             except RasterError as error:
                 raise type(error)(str(error).replace(str(copy), str(path))) from error
             for one in sorted(Path(folder).iterdir()):
@@ -41,8 +44,30 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
         "file": path.name,
         "kind": info.kind,
         "spacing_m": round(info.grid.spacing_m, 1),
+        "note": "replaces the one of that name" if replaces else "",
         "stored": str(target),
     }
+
+
+def remove_raster(name: str) -> dict[str, Any]:
+    """Take one raster, and what lies beside it, out of the data folder."""
+    path = terrain_dir() / name
+    if Path(name).name != name or not path.is_file():
+        stored = sorted(one.name for one in terrain_dir().glob("*.*")) if terrain_dir().is_dir() else []
+        raise RasterError(f'no raster "{name}" is stored: {", ".join(stored) or "the folder is empty"}')
+    for one in (path, *_companions(path)):
+        one.unlink()
+    return {"file": name, "note": "taken out"}
+
+
+def _check_heights(path: Path) -> None:
+    """Refuse a raster whose samples are all missing."""
+    with tempfile.TemporaryDirectory() as cache:
+        surveyed = Ground.open([path], Path(cache)).survey()
+        if surveyed.refused:
+            raise RasterError(surveyed.refused[0].message)
+        if surveyed.rasters[0].void_share == 1:
+            raise RasterError(f"{path.name} holds no height at all: every sample is missing or impossible")
 
 
 def _companions(path: Path) -> list[Path]:

@@ -13,7 +13,6 @@ ratios decides; a pair without a row takes the row of any pair, and says so.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cache
 
@@ -148,11 +147,6 @@ def nuisance_power(power: FloatArray, weights: csr_array) -> FloatArray:
     return np.asarray(total.T).reshape(*lead, weights.shape[0])
 
 
-def nuisance_dbuv(level_dbuv: FloatArray, ratio_db: FloatArray, required_cn_db: float) -> float:
-    """Nuisance sum of some disturbers (i,) with their protection ratios (i,), for one wanted emission [dB(µV)]."""
-    return float(10 * np.log10(np.sum(10 ** ((level_dbuv + ratio_db - required_cn_db) / 10))))
-
-
 def degradation_db(cn_db: FloatArray, i_over_c: FloatArray) -> FloatArray:
     """Fall from C/N to C/(N + I) [dB], elementwise, for the interference over the carrier (linear)."""
     return np.asarray(10 * np.log10(1 + i_over_c * 10 ** (cn_db / 10)))
@@ -160,15 +154,14 @@ def degradation_db(cn_db: FloatArray, i_over_c: FloatArray) -> FloatArray:
 
 def occupied_mhz(system: str, channel_mhz: float, noise_bandwidth_mhz: float) -> float:
     """Width that a signal fills [MHz]: the noise bandwidth, unless the table knows better."""
-    for row in rows_of_widths():
+    for row in _widths():
         if row["system"] == system and float(row["channel_bandwidth_mhz"]) == channel_mhz:
             return float(row["occupied_mhz"])
     return noise_bandwidth_mhz
 
 
 @cache
-def rows_of_widths() -> list[dict[str, str]]:
-    """Rows of the table of occupied widths."""
+def _widths() -> list[dict[str, str]]:
     return rows("occupied_bandwidths")
 
 
@@ -201,8 +194,3 @@ def _table(wanted: str, interferer: str) -> tuple[_Ratio, ...]:
 @cache
 def _by_mhz(wanted: str, interferer: str) -> bool:
     return any(row.unit == "MHz" for row in _table(wanted, interferer))
-
-
-def systems_with_ratios() -> Sequence[str]:
-    """Systems that the table names as wanted."""
-    return sorted({row.wanted for row in _ratios()} - {"*"})

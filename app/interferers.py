@@ -9,9 +9,10 @@ path lacks ground, by P.1546 without terrain, which is said.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import cache
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
@@ -67,6 +68,7 @@ def interferers_at(
     assumptions: Assumptions,
     availability_percent: int,
     method: Method = "both",
+    refractivity_maps: Path | None = None,
 ) -> list[Interferer]:
     """Return what may disturb the wanted emissions with an answer: those themselves first, in their order.
 
@@ -95,8 +97,11 @@ def interferers_at(
     if not kept.size:
         return own
     rows, sea = [far[i] for i in kept], sea[kept]
-    strength = (bound.max(axis=0)[kept][:, None] + weight[kept]).max(axis=1)
-    return own + _reckoned(roof, rows, sea, strength, times, ground, assumptions, availability_percent, method)
+    strongest = _strongest_masts(rows, (bound.max(axis=0)[kept][:, None] + weight[kept]).max(axis=1))
+    asked = [row for row in rows if row[1].id in strongest]
+    answered = fields_at(roof, asked, ground, assumptions, availability_percent, method, refractivity_maps)
+    over_ground = {field.emission.id: _of_field(field) for field in answered if field.path is not None}
+    return own + _reckoned(roof, rows, sea, times, ground, assumptions, over_ground)
 
 
 def spectra_of(emissions: Sequence[Emission]) -> Spectra:
@@ -221,34 +226,30 @@ def _matters(wanted: Sequence[EmissionField], bound_dbuv_m: FloatArray, weight: 
     return np.asarray(needed.any(axis=1))
 
 
+def _strongest_masts(rows: Sequence[Found], strength: FloatArray) -> set[str]:
+    strongest: dict[str, float] = {}
+    for row, value in zip(rows, strength.tolist(), strict=True):
+        strongest[row[1].id] = max(value, strongest.get(row[1].id, -np.inf))
+    return set(sorted(strongest, key=lambda key: -strongest[key])[:OVER_GROUND_MASTS])
+
+
 def _reckoned(
     roof: Roof,
     rows: Sequence[Found],
     sea: FloatArray,
-    strength: FloatArray,
     times: FloatArray,
     ground: Ground,
     assumptions: Assumptions,
-    availability_percent: int,
-    method: Method,
+    over_ground: Mapping[str, Interferer],
 ) -> list[Interferer]:
-    strongest: dict[str, float] = {}
-    for row, value in zip(rows, strength.tolist(), strict=True):
-        strongest[row[1].id] = max(value, strongest.get(row[1].id, -np.inf))
-    chosen = set(sorted(strongest, key=lambda key: -strongest[key])[:OVER_GROUND_MASTS])
-    asked = [row for row in rows if row[1].id in chosen]
-    answered = {
-        field.emission.id: _of_field(field)
-        for field in fields_at(roof, asked, ground, assumptions, availability_percent, method)
-        if field.path is not None
-    }
+    """Return the interferers, those that have no answer over the ground by P.1546 without terrain."""
     roof_m = float(ground.elevation_m(roof.latitude_deg, roof.longitude_deg))
     over_roof_m = np.maximum(_mast_ground_m(rows, ground, 0.0) - np.nan_to_num(roof_m), 0)
     antenna_m = np.array([row[0].antenna_agl_m for row in rows])
     median, raised = _without_terrain(roof, rows, sea, times, antenna_m + over_roof_m)
     sd_db = ROUGH_SD_DB * assumptions.value("single_method_factor")
     return [
-        answered.get(
+        over_ground.get(
             row[0].id,
             Interferer(
                 row[0],

@@ -16,7 +16,7 @@ def emission_rows(store: Store) -> list[dict[str, Any]]:
     return [
         {
             "transmitter": masts[one.transmitter_id].name,
-            "multiplex": names[one.multiplex_id].name,
+            "multiplex": names[one.multiplex_id].name if one.multiplex_id in names else one.multiplex_id,
             "channel": one.channel,
             "frequency_mhz": one.frequency_mhz,
             "system": one.system,

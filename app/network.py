@@ -54,7 +54,7 @@ def symbol_of(system: str, channel_mhz: float, guard: str = "") -> Symbol | None
     ModeError
         The system has no such carriers or guard interval; the message lists them.
     """
-    table = [row for row in rows_of_symbols() if row["system"] == system]
+    table = [row for row in _symbols() if row["system"] == system]
     if not table:
         return None
     usual = next(row for row in table if row["usual"])
@@ -128,8 +128,7 @@ def rise_at_0_db(system: str, mode: str) -> float:
 
 
 @cache
-def rows_of_symbols() -> list[dict[str, str]]:
-    """Rows of the table of intervals."""
+def _symbols() -> list[dict[str, str]]:
     return rows("ofdm")
 
 

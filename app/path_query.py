@@ -72,7 +72,7 @@ def path_document(
     gaps = np.flatnonzero(np.isnan(profile.ground_amsl_m))
     if gaps.size:
         first = int(gaps[0])
-        gap = missing_ground(float(profile.latitude_deg[first]), float(profile.longitude_deg[first]))
+        gap = missing_ground(ground, float(profile.latitude_deg[first]), float(profile.longitude_deg[first]))
         raise CoverageError(
             f"{profile.missing_share:.0%} of the path has no elevation, the first gap "
             f"{profile.distance_km[first]:.1f} km from its start: {gap}"

@@ -19,6 +19,7 @@ from propagation.errors import ProfileError, RangeError
 from propagation.p1812 import PathTerms
 from propagation.refraction import effective_earth_radius_km
 from propagation.refractivity import refractivity
+from terrain.geodesy import distance_and_bearing
 from terrain.mosaic import Ground
 from terrain.profile import Profile, sample_profile
 from terrain.water import SEA
@@ -135,9 +136,10 @@ def path_over(
 
 
 def _profile(roof: Roof, mast: Transmitter, ground: Ground) -> Profile | str:
+    away_km, _ = distance_and_bearing(mast.latitude_deg, mast.longitude_deg, roof.latitude_deg, roof.longitude_deg)
+    if away_km < NEAREST_KM:
+        return f"the mast stands {1e3 * float(away_km):.0f} m away: too near for any prediction"
     profile = sample_profile(ground, mast.latitude_deg, mast.longitude_deg, roof.latitude_deg, roof.longitude_deg)
-    if profile.distance_km[-1] < NEAREST_KM:
-        return f"the mast stands {profile.distance_km[-1] * 1e3:.0f} m away: too near for any prediction"
     if profile.missing_share > 0:
         return f"{max(profile.missing_share, 0.01):.0%} of the path has no elevation: add the missing tiles"
     return profile

@@ -51,7 +51,14 @@ def assess(
     air = air_of(
         fields,
         interferers_at(
-            request.roof, fields, on_the_air, ground, assumptions, request.availability_percent, request.method
+            request.roof,
+            fields,
+            on_the_air,
+            ground,
+            assumptions,
+            request.availability_percent,
+            request.method,
+            refractivity_maps,
         ),
     )
     multiplexes = sorted(set(air.multiplex_of))

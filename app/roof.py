@@ -59,6 +59,15 @@ class Roof:
             check(f"{place}.width_m", one.width_m, 0.5, FARTHEST_OBSTACLE_M, "m across")
 
 
+WORDS = {
+    "latitude_deg": "latitude",
+    "longitude_deg": "longitude",
+    "aerial_agl_m": "height of the aerial",
+    "antenna_agl_m": "height of the antenna",
+    "frequency_mhz": "frequency",
+}
+
+
 def check(
     name: str,
     value: float,
@@ -70,7 +79,7 @@ def check(
     """Raise an error of that kind unless value is a number from lowest to highest."""
     if not (math.isfinite(value) and lowest <= value <= highest):
         raise kind(
-            f"{name} {value:g} is not possible: use {lowest:g} to {highest:g} {unit}",
+            f"{WORDS.get(name, name)} {value:g} is not possible: use {lowest:g} to {highest:g} {unit}",
             field=name,
             allowed=f"{lowest:g} to {highest:g}",
         )

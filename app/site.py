@@ -38,7 +38,7 @@ def site_of(roof: Roof, ground: Ground) -> Site:
     """
     height_m = bare_ground_m(ground, roof.latitude_deg, roof.longitude_deg).item()
     if not np.isfinite(height_m):
-        raise CoverageError(missing_ground(roof.latitude_deg, roof.longitude_deg))
+        raise CoverageError(missing_ground(ground, roof.latitude_deg, roof.longitude_deg))
     if not bool(ground.is_water(roof.latitude_deg, roof.longitude_deg)):
         return Site(height_m, ())
     shore_m = _distance_to_land_m(roof, ground)
@@ -52,14 +52,23 @@ def site_of(roof: Roof, ground: Ground) -> Site:
     return Site(height_m, (f"The roof stands on water, about {shore_m:.0f} m from land: check the position.",))
 
 
-def missing_ground(latitude_deg: float, longitude_deg: float) -> str:
-    """Say that there is no elevation at a place, and which one-degree tile would bring it."""
+def missing_ground(ground: Ground, latitude_deg: float, longitude_deg: float) -> str:
+    """Say that there is no elevation at a place, and what would bring it."""
+    at = place(latitude_deg, longitude_deg)
+    inside = [
+        raster.name
+        for raster in ground.rasters
+        if raster.bounds[1] <= latitude_deg <= raster.bounds[3]
+        and (raster.bounds[0] <= longitude_deg <= raster.bounds[2] or longitude_deg + 360 <= raster.bounds[2])
+    ]
+    if inside:
+        return (
+            f"no elevation at {at}: {', '.join(inside)} has a hole there; "
+            "add a raster without it, with `gainworth terrain add FILE`"
+        )
     south, west = int(np.floor(latitude_deg)), int(np.floor(longitude_deg))
     tile = f"{'N' if south >= 0 else 'S'}{abs(south):02d}{'E' if west >= 0 else 'W'}{abs(west):03d}"
-    return (
-        f"no elevation at {place(latitude_deg, longitude_deg)}: "
-        f"add a raster that covers it, such as tile {tile}, with `gainworth terrain add FILE`"
-    )
+    return f"no elevation at {at}: add a raster that covers it, such as tile {tile}, with `gainworth terrain add FILE`"
 
 
 def place(latitude_deg: float, longitude_deg: float) -> str:

@@ -61,6 +61,11 @@ def _lines(answer: Mapping[str, Any]) -> Iterator[str]:
     names = list(chains) if not verdicts else [verdicts[0]["baseline"], *(v["candidate"] for v in verdicts)]
     yield from _table(answer, [name for name in names if name in chains])
     yield from _roof_lines(answer, verdicts)
+    unanswered = [one for one in answer["emissions"] if one["reason"]]
+    if unanswered:
+        yield ""
+        for one in unanswered:
+            yield f"No prediction for {one['transmitter_name']}, channel {one['channel']}: {one['reason']}"
     yield ""
     yield from (f"- {caution}" for caution in answer["cautions"])
 

@@ -25,7 +25,9 @@ def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> di
         "chance_percent_by_degree": {
             name: np.rint(percent).astype(int).tolist()
             for name in multiplexes
-            if (percent := 100 * expected_count(turned.sweep_chance, air.multiplex_of, [name], air.company.acting)).max()
+            if (
+                percent := 100 * expected_count(turned.sweep_chance, air.multiplex_of, [name], air.company.acting)
+            ).max()
             >= LEAST_PERCENT
         },
     }

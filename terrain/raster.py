@@ -257,7 +257,13 @@ def _check_bands(path: Path, file: Any) -> None:
 
 def _crs(path: Path, file: Any, declared: str | None) -> CRS:
     if declared is not None:
-        return CRS.from_user_input(declared)
+        stated = CRS.from_user_input(declared)
+        if file.crs and not CRS.from_wkt(file.crs.to_wkt()).equals(stated, ignore_axis_order=True):
+            raise RasterError(
+                f"{path.name} says itself that it lies in {crs_text(CRS.from_wkt(file.crs.to_wkt()))}: "
+                f"leave out --crs {declared}, or write the right one into the file"
+            )
+        return stated
     if not file.crs:
         raise UnplacedRasterError(
             f"{path.name} does not say in which coordinate system it lies. Declare it: "

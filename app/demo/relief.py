@@ -15,8 +15,8 @@ import numpy as np
 import rasterio
 from numpy.typing import NDArray
 
-from terrain.errors import CacheError
-from terrain.raster import declare
+from terrain.errors import CacheError, RasterError
+from terrain.raster import declare, open_raster
 
 Array = NDArray[np.float32]
 
@@ -93,7 +93,7 @@ def ensure_demo_relief(folder: Path) -> Path:
     """
     path = folder / FILE_NAME
     declared = folder / f"{FILE_NAME}.gainworth.toml"
-    if path.is_file() and declared.is_file():
+    if path.is_file() and declared.is_file() and _is_whole(path):
         return path
     try:
         folder.mkdir(parents=True, exist_ok=True)
@@ -108,6 +108,15 @@ def ensure_demo_relief(folder: Path) -> Path:
             "set GAINWORTH_CACHE_DIR to a folder that you may write"
         ) from error
     return path
+
+
+def _is_whole(path: Path) -> bool:
+    """Whether a relief made earlier can still be read to its end."""
+    try:
+        open_raster(path)
+    except RasterError:
+        return False
+    return True
 
 
 _MIDDLE = ((WEST_DEG + EAST_DEG) / 2, (SOUTH_DEG + NORTH_DEG) / 2)

@@ -75,7 +75,7 @@ def _names(answer: Document, verdict: Document | None, saved: Mapping[str, Any])
         return list(answer["chains"])[:1]
     second = saved.get("second")
     shown = [verdict["baseline"], verdict["candidate"]]
-    return shown + [second] if second in answer["chains"] and second not in shown else shown
+    return [*shown, second] if second in answer["chains"] and second not in shown else shown
 
 
 def _title(answer: Document, name: str) -> str:
@@ -123,7 +123,9 @@ def _measure(answer: Document, verdict: Document | None) -> Document | None:
     tips = []
     for tip in one["tipping"]:
         low, high = tip["from_dbuv"], tip["to_dbuv"]
-        span = f"below {high:.0f}" if low is None else f"above {low:.0f}" if high is None else f"{low:.0f} to {high:.0f}"
+        span = (
+            f"below {high:.0f}" if low is None else f"above {low:.0f}" if high is None else f"{low:.0f} to {high:.0f}"
+        )
         tips.append(f"{span} dB(µV): {tip['answer'] or 'no answer'}")
     return {
         "what": f"{_channel(emission)} from {emission['transmitter_name']} at {one['bearing_deg']:03.0f}°",
@@ -199,7 +201,7 @@ def _price(answer: Document, name: str, verdict: Document | None) -> str:
     if chain["price"] is None:
         return "the price of a part is not known"
     words = f"together {_money(chain['price'], chain['currency'])}"
-    difference = verdict and verdict["price_difference"]
+    difference = verdict["price_difference"] if verdict else None
     return words if difference is None else f"{words}; to pay {_money(difference, chain['currency'])}"
 
 
@@ -256,5 +258,3 @@ def _emission(answer: Document, ident: str) -> Document:
 
 def _channel(emission: Mapping[str, Any]) -> str:
     return f"channel {emission['channel']}" if emission["channel"] else f"{emission['frequency_mhz']:g} MHz"
-
-

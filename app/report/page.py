@@ -61,11 +61,18 @@ def _body(content: Mapping[str, Any], pdf_address: str) -> Iterable[str]:
     yield '<section class="commissioning"><h2>Commissioning sheet</h2>'
     yield f"<p>{escape(content['name'])}, {escape(content['chain'])}</p>"
     heads = ["Outlet", "Multiplex", "Channel", "Level expected, dB(µV)", "MER expected, dB", "Level read", "MER read"]
-    rows = [[*(row[key] for key in ("outlet", "multiplex", "channel", "level", "mer")), "", ""] for row in content["commissioning"]]
+    rows = [
+        [*(row[key] for key in ("outlet", "multiplex", "channel", "level", "mer")), "", ""]
+        for row in content["commissioning"]
+    ]
     yield _table(heads, rows, "blank")
     yield "<p class='signed'><span>Date</span><span>Name</span></p></section>"
     yield "<h2>What it rests on</h2>" + _list(content["settings"])
-    yield "<details open><summary>Every value that was chosen</summary>" + _list(content["assumptions"], "small") + "</details>"
+    yield (
+        "<details open><summary>Every value that was chosen</summary>"
+        + _list(content["assumptions"], "small")
+        + "</details>"
+    )
     yield "<h2>Sources</h2>" + _list(content["sources"], "small")
 
 
@@ -76,7 +83,10 @@ def _list(items: Sequence[str], kind: str = "") -> str:
 def _table(heads: Sequence[str], rows: Sequence[Sequence[str]], kind: str = "") -> str:
     head = "".join(f'<th scope="col">{escape(one)}</th>' for one in heads)
     body = "".join(
-        "<tr>" + f'<th scope="row">{escape(row[0])}</th>' + "".join(f"<td>{escape(one)}</td>" for one in row[1:]) + "</tr>"
+        "<tr>"
+        + f'<th scope="row">{escape(row[0])}</th>'
+        + "".join(f"<td>{escape(one)}</td>" for one in row[1:])
+        + "</tr>"
         for row in rows
     )
     return (

@@ -9,7 +9,7 @@ from collections.abc import Mapping
 from datetime import UTC, datetime
 from typing import Any, Literal, cast
 
-from app.errors import NotStoredError, RequestError
+from app.errors import NotStoredError, RequestError, StoreError
 
 Document = dict[str, Any]
 Kind = Literal["roof", "chain"]
@@ -86,13 +86,13 @@ def remove(connection: sqlite3.Connection, kind: Kind, key: str) -> None:
 
 def _document(row: tuple[str, ...]) -> Document:
     key, name, body, created, updated = row
-    return {
-        "id": key,
-        "name": name,
-        **cast(Document, json.loads(body)),
-        "created": created,
-        "updated": updated,
-    }
+    try:
+        held = json.loads(body)
+    except ValueError as error:
+        held = error
+    if not isinstance(held, dict):
+        raise StoreError(f'the stored document "{name}" is damaged: restore a backup, or remove the row "{key}"')
+    return {"id": key, "name": name, **cast(Document, held), "created": created, "updated": updated}
 
 
 def _name(kind: Kind, value: object) -> str:

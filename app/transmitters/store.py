@@ -200,6 +200,24 @@ class Store:
             gone=tuple(sorted(before.keys() - new.keys())),
         )
 
+    def delete_source(self, source: str) -> int:
+        """Take a source out with all that belongs to it; return how many emissions went.
+
+        Raises
+        ------
+        NotStoredError
+            There is no such source.
+        """
+        with self._database.transaction(write=True) as connection:
+            known = [row[0] for row in connection.execute("SELECT id FROM source ORDER BY id")]
+            if source not in known:
+                raise NotStoredError(
+                    f'there is no source "{source}": stored are {", ".join(known) or "none"}', field="source"
+                )
+            (count,) = connection.execute("SELECT count(*) FROM emission WHERE source = ?", [source]).fetchone()
+            connection.execute("DELETE FROM source WHERE id = ?", [source])
+            return int(count)
+
     # Roofs and chains: {"id", "name", "created", "updated", …}
 
     def list_roofs(self) -> list[Document]:

@@ -53,7 +53,7 @@ COLUMNS = (
 MOST_ROWS = 500_000
 MOST_REFUSED_SHARE = 0.2  # a re-import that refuses more does not replace what is stored; our choice
 _SAME_MAST_DEG = 0.001  # two rows of one mast may differ by this much, about 100 m
-_EXAMPLES_SHOWN = 3
+_REFUSALS_SHOWN = 200
 
 
 @dataclass(frozen=True, slots=True)
@@ -167,17 +167,18 @@ def import_template(path: Path, store: Store, dry_run: bool = False) -> ImportSu
         new ones are refused. Nothing is written then.
     """
     result = read_template(path)
-    told = "; ".join(str(refusal) for refusal in result.refused[:_EXAMPLES_SHOWN])
+    told = "\n".join(str(refusal) for refusal in result.refused[:_REFUSALS_SHOWN])
     if not result.emissions:
         raise TransmitterFileError(
-            f"{path.name} has no usable row ({result.rows_read} read): " + (told or "add rows under the header")
+            f"{path.name} has no usable row ({result.rows_read} read): "
+            + (f"mend these; nothing was changed\n{told}" if told else "add rows under the header")
         )
     stored = any(source.id == result.source for source in store.sources())
     if stored and result.rows_refused > MOST_REFUSED_SHARE * result.rows_read:
         raise TransmitterFileError(
             f"{path.name}: {result.rows_refused} of {result.rows_read} rows are refused, too many to replace "
             f'what is stored from source "{result.source}": mend the file, or give it another name; '
-            f"nothing was changed ({told})"
+            f"nothing was changed\n{told}"
         )
     source = Source(result.source, path.name, rows_refused=result.rows_refused)
     changes = store.replace_source(source, result.transmitters, result.emissions, result.multiplexes, dry_run=dry_run)

@@ -111,7 +111,9 @@ class AssessIn(Strict):
     reach_km: float = 150.0
     method: Literal["p1812", "p1546", "both"] = "both"
     assumptions: dict[str, float] = {}
-    ledgers: list[Name] | None = Field(None, max_length=1000, description="emissions whose ledgers are wanted; null: all")
+    ledgers: list[Name] | None = Field(
+        None, max_length=1000, description="emissions whose ledgers are wanted; null: all"
+    )
 
     def request(self, worth_per_multiplex: float | None, reading_cost: float | None, store: Store) -> AssessRequest:
         """Return the question that the planner answers; the arguments stand in for what was not said."""

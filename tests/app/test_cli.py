@@ -142,3 +142,45 @@ def test_data_folder_that_cannot_be_made_is_said(own, monkeypatch):
     result = CliRunner().invoke(main, ["chains", "list"])
     assert result.exit_code == 2
     assert "set GAINWORTH_DATA_DIR to a folder you may write" in result.stderr
+
+
+def test_what_was_added_can_be_taken_out(own):
+    def run(*words):
+        return CliRunner().invoke(main, list(words))
+
+    grid = own / "hills.asc"
+    grid.write_text("ncols 3\nnrows 3\nxllcorner 10\nyllcorner 50\ncellsize 0.001\n" + "100 110 120\n" * 3)
+    empty = own / "empty.tif"
+    empty.write_text("")
+    both = run("terrain", "add", str(empty), str(grid), "--crs", "EPSG:4326")
+    assert both.exit_code == 2
+    assert "hills.asc" in both.stdout
+    assert "empty.tif is empty" in both.stderr
+    assert run("terrain", "remove", "hills.asc").exit_code == 0
+    assert run("terrain", "remove", "hills.asc").exit_code == 2
+    file = own / "mine.csv"
+    file.write_text(run("transmitters", "template").stdout)
+    run("transmitters", "import", str(file))
+    assert run("transmitters", "remove", "mine").exit_code == 0
+    assert json.loads(run("transmitters", "list", "--json").stdout)[0]["source"] == "demo"
+
+
+def test_raster_without_any_height_is_refused(own):
+    grid = own / "void.asc"
+    grid.write_text(
+        "ncols 3\nnrows 3\nxllcorner 10\nyllcorner 50\ncellsize 0.001\nNODATA_value -9999\n" + "-9999 -9999 -9999\n" * 3
+    )
+    result = CliRunner().invoke(main, ["terrain", "add", str(grid), "--crs", "EPSG:4326"])
+    assert result.exit_code == 2
+    assert "holds no height at all" in result.stderr
+
+
+def test_roof_at_a_mast_still_hears_the_others(run):
+    mast = json.loads(run("transmitters", "list", "--json").stdout)[0]
+    at = f"{mast['latitude_deg']},{mast['longitude_deg']}"
+    answer = json.loads(run("assess", "--at", at, "--json").stdout)
+    near = [one for one in answer["emissions"] if one["reason"]]
+    assert near
+    assert all("too near for any prediction" in one["reason"] for one in near)
+    assert len(answer["emissions"]) > len(near)
+    assert "too near for any prediction" in run("assess", "--at", at).stdout

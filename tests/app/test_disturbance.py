@@ -19,7 +19,7 @@ from terrain.geodesy import destination
 
 ROOF = Roof(44.3, -37.45)
 LOFT, SHORT, LONG, AMPLIFIED = demo_chains()
-PATH = PathFacts("", "clear", True, 1.0, 0.0, 100.0, 0.0, 40.0, 0.0, 3.0)
+PATH = PathFacts("", "clear", True, 1.0, 0.0, 100.0, 0.0, 40.0, 0.0, ("bare",), 3.0)
 WANTED = ("a", 20.0, 55.0)
 
 
@@ -44,7 +44,8 @@ def received_field(one, bearing_deg, field_dbuv_m, km=40.0, fade_db=2.0, enhance
     latitude, longitude = destination(ROOF.latitude_deg, ROOF.longitude_deg, bearing_deg, km)
     mast = Transmitter(one.transmitter_id, one.transmitter_id, float(latitude), float(longitude), None, "test")
     return EmissionField(
-        one, mast, km, bearing_deg, 1.0, 90.0, None, PATH, field_dbuv_m, field_dbuv_m, field_dbuv_m, "p1812",
+        one, mast, km, bearing_deg, 1.0, 90.0,
+        path=PATH, p1546_dbuv_m=field_dbuv_m, p1812_dbuv_m=field_dbuv_m, used_dbuv_m=field_dbuv_m, method="p1812",
         fade_db=fade_db, enhancement_db=enhancement_db,
     )  # fmt: skip
 

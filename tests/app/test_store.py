@@ -1,5 +1,6 @@
 """The store: what is in reach, replacing a source, documents."""
 
+import sqlite3
 import threading
 from datetime import date
 
@@ -7,6 +8,7 @@ import numpy as np
 import pytest
 from pyproj import Geod
 
+from app.demo.scenario import ensure_demo
 from app.errors import NotStoredError, RequestError, StoreError
 from app.transmitters.model import Emission, Multiplex, Transmitter
 from app.transmitters.rows import Source
@@ -295,6 +297,32 @@ def test_documents_come_in_the_order_in_which_they_were_made(store):
         store.put_chain({"id": name, "name": name})
     store.put_chain({"id": "short", "name": "zz"})  # a change keeps the place
     assert [chain["id"] for chain in store.list_chains()] == ["short", "long", "another"]
+
+
+def test_damaged_rows_are_told_not_raised_as_faults(store):
+    """What another program did to the file is the user's to mend: a message, no traceback."""
+    ensure_demo(store)
+    with sqlite3.connect(store.path) as connection:
+        connection.execute("UPDATE document SET body = '{' WHERE kind = 'chain'")
+        connection.execute("UPDATE emission SET valid_from = 'soon'")
+    with pytest.raises(StoreError, match="is damaged: restore a backup"):
+        store.list_chains()
+    with pytest.raises(StoreError, match=r"is damaged .*: import its file again"):
+        store.emissions()
+
+
+def test_a_source_can_be_taken_out_and_the_demo_comes_back(store):
+    ensure_demo(store)
+    shown = len(store.emissions())
+    mast = Transmitter("own:mast", "Mast", 10.0, 20.0, None, "own")
+    mux = Multiplex("own-1", "Own One")
+    emission = Emission("own:1", mast.id, mux.id, "30", 546.0, 8.0, "DVB-T2", "256-QAM 2/3", 1.0, "horizontal", 50.0)
+    store.replace_source(Source("own", "own.csv"), [mast], [emission], [mux])
+    assert len(store.emissions()) == 1
+    assert store.delete_source("own") == 1
+    assert len(store.emissions()) == shown
+    with pytest.raises(NotStoredError, match='no source "own": stored are demo'):
+        store.delete_source("own")
 
 
 def test_guard_interval_and_delay_come_back_as_stored(tmp_path):

@@ -18,7 +18,7 @@ from app.margins import air_of, multiplex_chances, turn
 from app.roof import Roof
 from app.transmitters.model import Emission, Transmitter
 
-PATH = PathFacts("", "clear", True, 1.0, 0.0, 100.0, 0.0, 40.0, 0.0, 5.0)
+PATH = PathFacts("", "clear", True, 1.0, 0.0, 100.0, 0.0, 40.0, 0.0, ("bare",), 5.0)
 
 
 def field(k: int, km: float, level_dbuv_m: float, rng: np.random.Generator) -> EmissionField:
@@ -41,7 +41,8 @@ def field(k: int, km: float, level_dbuv_m: float, rng: np.random.Generator) -> E
     site = Transmitter(f"m{mast}", f"m{mast}", 44 + float(where[0]), -37 + float(where[1]), None, "bench")
     bearing = float(np.degrees(np.arctan2(where[1], where[0])) % 360)
     return EmissionField(
-        made, site, km, bearing, 1.0, 90.0, None, PATH, level_dbuv_m, level_dbuv_m, level_dbuv_m, "p1812",
+        made, site, km, bearing, 1.0, 90.0,
+        path=PATH, p1546_dbuv_m=level_dbuv_m, p1812_dbuv_m=level_dbuv_m, used_dbuv_m=level_dbuv_m, method="p1812",
         fade_db=3.0, enhancement_db=10.0,
     )  # fmt: skip
 

@@ -7,7 +7,7 @@ import pytest
 
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial
-from app.interference import Spectra, degradation_db, nuisance_dbuv, nuisance_power, pairs_between, spectral_share
+from app.interference import Pairs, Spectra, degradation_db, nuisance_power, pairs_between, spectral_share
 from app.rejection import rejection_db
 
 # Wide enough a beam and strong enough a back that BT.419 alone decides at 30° and at 140°.
@@ -18,6 +18,14 @@ AERIAL = Aerial(
 
 def sum_db(*levels):
     return 10 * math.log10(sum(10 ** (level / 10) for level in levels))
+
+
+def nuisance_dbuv(levels_dbuv, ratios_db, required_cn_db):
+    """Sum for one wanted emission by the function that every margin goes through."""
+    count = len(levels_dbuv)
+    relative = ratios_db - required_cn_db
+    pairs = Pairs(np.arange(count), np.zeros(count, dtype=int), relative, relative, ("",) * count, (count, 1))
+    return 10 * math.log10(nuisance_power(10 ** (levels_dbuv / 10), pairs.weights(tropospheric=False))[0])
 
 
 def test_two_equal_powers_add_up_to_3_01_db():

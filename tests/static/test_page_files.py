@@ -38,7 +38,19 @@ def test_names_enter_the_page_as_text():
 
 
 def test_pure_modules_know_neither_page_nor_network():
-    for name in ("state", "units", "sentence", "drawing", "bearings", "openapi", "latest", "horizon", "history", "air_list", "part_fields"):
+    for name in (
+        "state",
+        "units",
+        "sentence",
+        "drawing",
+        "bearings",
+        "openapi",
+        "latest",
+        "horizon",
+        "history",
+        "air_list",
+        "part_fields",
+    ):
         text = (STATIC / "scripts" / f"{name}.js").read_text()
         assert not re.search(r"\b(document\.(get|query|create)|window\.|localStorage|fetch\()", text), name
 
