@@ -10,12 +10,6 @@ export const STATES = {
   b: 'the signal as it usually is, the others on a night that carries them far',
 };
 
-/** What the two time states say; the margin is the lower one. @type {Record<string, string>} */
-const STATES = {
-  a: 'the signal on a bad night, interferers as they usually are',
-  b: 'the signal as it usually is, interferers on the night that carries them far',
-};
-
 /** @param {HTMLElement} element */
 export function createLedger(element) {
   const title = part(element, 'h3');

@@ -21,13 +21,13 @@
  */
 
 import { labelled, tickAt } from './bearings.js';
+import { createDrag } from './map_drag.js';
 import { shownCell } from './state.js';
 import { bearingText, distanceText } from './units.js';
 
 const SVG = 'http://www.w3.org/2000/svg';
 const SIDE = 42; // px between the map and the outer line, left and right; as in map.css
 const RIM = 30; // the same, above and below
-const GRASP = 16; // px round the roof in which a press takes hold of it
 const STEP = 10; // px a press of an arrow key moves the crosshair
 
 /** @param {string} file */
@@ -87,9 +87,6 @@ export function createMap(element, { place }) {
   let crosshair = null;
   /** @type {import('./state.js').State} */
   let state;
-  /** @type {{x: number, y: number, moved: boolean}|null} where the roof is being dragged */
-  let dragged = null;
-  let dropped = false;
   let shown = '';
 
   async function open() {
@@ -124,7 +121,7 @@ export function createMap(element, { place }) {
     const { roof } = state;
     const far = mast();
     const now = JSON.stringify([roof, far?.transmitter]);
-    if (!adapter || !roof || dragged || now === shown) return;
+    if (!adapter || !roof || drag.at || now === shown) return;
     shown = now;
     const ends = far ? [roof, far] : [roof];
     const inside = ends.every((end) => {
@@ -156,7 +153,7 @@ export function createMap(element, { place }) {
     const size = { width: view.clientWidth, height: view.clientHeight };
     overlay.setAttribute('viewBox', `${-SIDE} ${-RIM} ${size.width + 2 * SIDE} ${size.height + 2 * RIM}`);
     if (adapter && state.roof) {
-      const roof = dragged ?? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
+      const roof = drag.at ?? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
       drawPins();
       drawPath(roof);
       drawFrame(size, roof);
@@ -286,49 +283,12 @@ export function createMap(element, { place }) {
     crosshair = kept;
   }
 
-  /** A press on the roof takes hold of it; the chances follow while it is dragged. */
-  function grasp(event) {
-    const at = point(event);
-    const roof = state?.roof && adapter?.project(state.roof.latitude_deg, state.roof.longitude_deg);
-    if (!roof || Math.hypot(roof.x - at.x, roof.y - at.y) > GRASP) return;
-    event.stopPropagation();
-    event.preventDefault();
-    dragged = { ...at, moved: false };
-    view.setPointerCapture(event.pointerId);
-  }
-
-  function drag(event) {
-    if (!dragged || !adapter) return;
-    event.stopPropagation();
-    const at = point(event);
-    dragged = { ...at, moved: dragged.moved || Math.hypot(at.x - dragged.x, at.y - dragged.y) > 1 };
-    draw();
-    if (dragged.moved && !state.asking) place(adapter.unproject(at.x, at.y));
-  }
-
-  function release(event) {
-    if (!dragged || !adapter) return;
-    event.stopPropagation();
-    const { x, y, moved } = dragged;
-    dragged = null;
-    dropped = moved;
-    if (moved) place(adapter.unproject(x, y));
-    draw();
-  }
-
-  /** @param {PointerEvent} event */
-  function point(event) {
-    const frame = view.getBoundingClientRect();
-    return { x: Math.min(frame.width, Math.max(0, event.clientX - frame.left)), y: Math.min(frame.height, Math.max(0, event.clientY - frame.top)) };
-  }
-
-  view.addEventListener('pointerdown', grasp, true);
-  view.addEventListener('mousedown', (event) => { if (dragged) event.stopPropagation(); }, true);
-  view.addEventListener('touchstart', (event) => { if (dragged) event.stopPropagation(); }, true);
-  view.addEventListener('pointermove', drag, true);
-  view.addEventListener('pointerup', release, true);
-  view.addEventListener('pointercancel', () => { dragged = null; draw(); }, true);
-  view.addEventListener('click', (event) => { if (dropped) event.stopPropagation(); dropped = false; }, true);
+  const drag = createDrag(view, {
+    roof: () => (state?.roof && adapter ? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg) : null),
+    busy: () => state.asking,
+    draw,
+    drop: ({ x, y }) => adapter && place(adapter.unproject(x, y)),
+  });
   view.addEventListener('keydown', onKey);
   view.addEventListener('focus', () => adapter?.wheel(true));
   view.addEventListener('blur', () => {
