@@ -24,7 +24,7 @@ FloatArray = NDArray[np.float64]
 
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
-TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+TIE_COUNT = 0.02  # expected multiplexes: directions closer than this are as good
 HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
@@ -269,10 +269,16 @@ def _counts(chance: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
-    strongest = float(air.signals.bearing_deg[int(np.argmax(air.used_dbuv_m))])
+    """Return the whole degree with the largest count; of those as good, the one on the strongest mast.
+
+    Where no mast stands in a direction as good as the best, it is the one nearest to the strongest.
+    """
     as_good = np.flatnonzero(counts >= counts.max() - TIE_COUNT)
-    away = np.abs((as_good - strongest + 180) % 360 - 180)
-    return float(as_good[int(np.argmin(away))])
+    by_strength = air.signals.bearing_deg[np.argsort(-air.used_dbuv_m, kind="stable")]
+    away = np.abs((as_good - by_strength[:, None] + 180) % 360 - 180)  # (e, candidates)
+    on_a_mast = away.min(axis=1) <= 0.5
+    row = int(np.argmax(on_a_mast)) if on_a_mast.any() else 0
+    return float(as_good[int(np.argmin(away[row]))])
 
 
 def _path_error(air: Air, assumptions: Assumptions, moved: Moved) -> PathError:

@@ -8,12 +8,17 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+import hypothesis
 import pytest
 
 if TYPE_CHECKING:
     from app.world import World
 
 BROWSERS = ("chromium", "chromium-browser", "google-chrome")
+# Speed is measured in benchmarks, not in tests; the same examples every time.
+hypothesis.settings.register_profile("steady", deadline=None, derandomize=True)
+hypothesis.settings.load_profile("steady")
+
 MUST_RUN = os.environ.get("GAINWORTH_TEST_ALL") == "1"
 
 

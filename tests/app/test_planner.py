@@ -246,3 +246,15 @@ def test_ledger_names_both_methods_their_difference_and_what_time_does(ask):
         assert f"difference {field['difference_db']:+.2f} dB" in ground["source"]
         assert fade["value_db"] == -field["fade_db"]
         assert f"rises by {field['enhancement_db']:.2f} dB" in fade["source"]
+
+
+def test_an_aerial_is_turned_to_a_mast_where_that_is_as_good(ask):
+    """On a flat maximum a rigger is sent to a mast, not to the middle of nowhere."""
+    answer = ask(WEST)
+    bearings = {round(one["bearing_deg"]) for one in answer["emissions"]}
+    for name, chain in answer["chains"].items():
+        (pointing,) = chain["pointings"]
+        best = max(pointing["expected_by_degree"])
+        at_masts = [pointing["expected_by_degree"][bearing % 360] for bearing in bearings]
+        if max(at_masts) >= best - 0.02:
+            assert round(pointing["pointing_deg"]) in bearings, name
