@@ -63,7 +63,7 @@ export function createChains(element, { edit, drop, keep, remove, block }) {
     const mine = state.trouble?.field?.includes('parts') || state.trouble?.message.includes('chain') ? (state.trouble?.message ?? '') : '';
     problem.textContent = mine;
     controls();
-    const structure = JSON.stringify([chosen, chain.parts.map((one) => [one.kind, one.id]), Boolean(state.cables?.length)]);
+    const structure = JSON.stringify([chosen, chain.parts.map((one) => [one.kind, one.id])]);
     if (structure !== drawn) {
       drawn = structure;
       draw();

@@ -225,8 +225,8 @@ function remembered() {
 async function start() {
   store.set(/** @type {any} */ (remembered()));
   try {
-    const [{ chains }, health] = await Promise.all([api.read('/api/chains'), api.read('/api/health')]);
-    store.set({ chains, health });
+    const [{ chains }, health, { cables }] = await Promise.all(['chains', 'health', 'cables'].map((one) => api.read(`/api/${one}`)));
+    store.set({ chains, health, cables });
     const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
     const { now, idea, second } = store.get();
     store.set({ now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null });
@@ -242,8 +242,8 @@ async function start() {
 /** What only sheets need, after the answer. */
 async function later() {
   try {
-    const [{ assumptions }, { cables }] = await Promise.all([api.read('/api/assumptions'), api.read('/api/cables'), actions.roofsAgain()]);
-    store.set({ values: assumptions, cables });
+    const [{ assumptions }] = await Promise.all([api.read('/api/assumptions'), actions.roofsAgain()]);
+    store.set({ values: assumptions });
     if (store.get().pins.length) await actions.comparePins();
   } catch (error) {
     store.set({ trouble: { message: error.message, field: null } });
