@@ -10,12 +10,12 @@ import numpy as np
 
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
-from app.chance import GRADES, exceedance, grade
+from app.chance import GRADES, exceedance, grade, not_too_much
 from app.declination import declination_at, declination_document
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
-from app.ledger import ledger
+from app.ledger import Books, books_of, ledger
 from app.margins import SAME_MAST_KM, Air, FloatArray, Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
@@ -36,7 +36,6 @@ CAUTIONS = (
 )
 QUANTILE_95 = 1.6449  # of the standard normal
 SHOWN_NAMES = 5
-NOT_YET = ("Overload by strong signals is not counted yet.",)
 
 
 def answer_document(
@@ -57,6 +56,7 @@ def answer_document(
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
     spreads = {key: (one.cells.sigma_db, one.cells.mean_db - one.cells.median_db) for key, one in turned.items()}
+    books = {key: books_of(one, air, request, assumptions) for key, one in turned.items()}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -77,14 +77,14 @@ def answer_document(
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, spreads, air, assumptions) for field in fields],
+        "emissions": [_emission(request, field, fields, place, turned, spreads, air, books) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
         "verdicts": [_verdict(verdict) for verdict in verdicts],
         "readings": readings_document(evidence),
         "assumptions": assumptions.document(),
-        "cautions": [*_cautions(request, site, store, fields, air), *NOT_YET, *CAUTIONS],
+        "cautions": [*_cautions(request, site, store, fields, air), *CAUTIONS],
         "sources": [*SOURCES, *(_register(source) for source in store.sources())],
     }
 
@@ -109,7 +109,7 @@ def _emission(
     turned: Mapping[str, Turned],
     spreads: Mapping[str, tuple[FloatArray, FloatArray]],
     air: Air,
-    assumptions: Assumptions,
+    books: Mapping[str, Books],
 ) -> dict[str, Any]:
     emission, path = field.emission, field.path
     e = place.get(emission.id)
@@ -161,7 +161,7 @@ def _emission(
         },
         "chains": {}
         if e is None
-        else {name: _cell(request, one, spreads[name], e, field, air, assumptions) for name, one in turned.items()},
+        else {name: _cell(request, one, spreads[name], e, field, air, books[name]) for name, one in turned.items()},
     }
 
 
@@ -172,15 +172,18 @@ def _cell(
     e: int,
     field: EmissionField,
     air: Air,
-    assumptions: Assumptions,
+    books: Books,
 ) -> dict[str, Any]:
     sigma_db, read_db = (float(one[e]) for one in spread)  # the second: by how much readings moved the margin
     limit = _limit(turned, e)
     told = request.ledgers is None or field.emission.id in request.ledgers
+    loudest_sd_db = turned.median.of_loudest(turned.cells.sigma_db)[0]
     reception = turned.raised if turned.state(e) == "b" else turned.faded
     outlets = []
-    for outlet, median in zip(reception.outlets, turned.median.outlets, strict=True):
+    for number, (outlet, median) in enumerate(zip(reception.outlets, turned.median.outlets, strict=True)):
         margin_db = float(outlet.margin_db[e]) + read_db
+        headroom_db = float(median.headroom_db[e])
+        enough = _outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)
         outlets.append(
             {
                 "name": outlet.name,
@@ -189,13 +192,13 @@ def _cell(
                 "cn_db": round(float(outlet.cn_db[e]), 2),
                 "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
                 "margin_db": round(margin_db, 2),
-                "headroom_db": None,
-                "chance": _probability(_outlet_chance(turned, e, float(outlet.margin_db[e]), margin_db, sigma_db)),
-                "held_back_by": limit,
+                "headroom_db": round(headroom_db, 2),
+                "chance": _probability(float(not_too_much(np.array(enough), np.array(headroom_db), loudest_sd_db))),
+                "held_back_by": _limit(turned, e, number),
                 "ledger": []
                 if not told
                 else [
-                    *ledger(request, turned, e, field, air, assumptions, outlet.name),
+                    *ledger(request, turned, e, field, air, books, outlet.name),
                     *_ledger_of_readings(turned, e, read_db, margin_db),
                 ],
             }
@@ -214,7 +217,7 @@ def _cell(
 
 def _outlet_chance(turned: Turned, e: int, unread_db: float, margin_db: float, sigma_db: float) -> float:
     """Chance at one outlet: that of the chain where it decides, in closed form where it is better off."""
-    decides = float(turned.chance[e])
+    decides = float(turned.cells.chance[e])
     if unread_db == float(turned.margin_db[e]):
         return decides
     return max(decides, float(exceedance(np.array(margin_db), np.array(sigma_db))))
@@ -235,8 +238,8 @@ def _ledger_of_readings(turned: Turned, e: int, read_db: float, margin_db: float
     ]
 
 
-def _limit(turned: Turned, e: int) -> dict[str, Any]:
-    held = turned.held_back(e)
+def _limit(turned: Turned, e: int, outlet: int | None = None) -> dict[str, Any]:
+    held = turned.held_back(e, outlet)
     by = None if held.by is None else turned.company.interferers[held.by]
     return {
         "limit": held.limit,

@@ -72,6 +72,24 @@ ASSUMPTIONS: dict[str, Assumption] = _table(
         "ageing, weather and leaves between two visits",
         "common practice, no source",
     ),
+    Assumption(
+        "set_most_total_dbuv",
+        100.75,
+        "dB(µV)",
+        60,
+        130,
+        "all signals together at the set, −8 dBm; above it the set's input is overloaded",
+        "ATSC A/74, several strong signals, from memory",
+    ),
+    Assumption(
+        "mobile_600_dbuv_m", 0.0, "dB(µV/m)", 0, 150, "field of mobile downlinks at 617 to 652 MHz; 0: none", OURS
+    ),
+    Assumption(
+        "mobile_700_dbuv_m", 0.0, "dB(µV/m)", 0, 150, "field of mobile downlinks at 758 to 788 MHz; 0: none", OURS
+    ),
+    Assumption(
+        "mobile_800_dbuv_m", 0.0, "dB(µV/m)", 0, 150, "field of mobile downlinks at 791 to 821 MHz; 0: none", OURS
+    ),
     # errors, one normal each (standard deviations)
     Assumption("roof_sd_db", 2.0, "dB", 0, 15, "what one roof does to all signals alike", OURS),
     Assumption("path_clear_sd_db", 3.0, "dB", 0, 20, "clear by 0.6 of the first Fresnel zone or more", MEASURED),

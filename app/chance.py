@@ -176,6 +176,21 @@ def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
     return result
 
 
+def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: FloatArray) -> FloatArray:
+    """Chance of enough signal less that of too much; the loudest emission's error eats up the headroom of all."""
+    result: FloatArray = np.maximum(chance - exceedance(-headroom_db, loudest_sd_db), 0)
+    return result
+
+
+def capped(draws_db: FloatArray, median_db: FloatArray, headroom_db: FloatArray, loudest: int) -> FloatArray:
+    """Draws of margins (DRAWS, e), below 0 also where the loudest one's draw exceeds its median by the headroom."""
+    if not len(median_db):
+        return draws_db
+    louder = draws_db[:, loudest, np.newaxis] - median_db[loudest]
+    result: FloatArray = np.minimum(draws_db, headroom_db - louder)
+    return result
+
+
 def received(draws_db: FloatArray, multiplex_of: Sequence[str], multiplexes: Sequence[str]) -> NDArray[np.bool_]:
     """Whether at least one emission of each multiplex is receivable, draw by draw. (DRAWS, m)"""
     good = draws_db >= 0

@@ -2,18 +2,16 @@
 
 from __future__ import annotations
 
-import json
 import socket
 import sys
-from collections.abc import Callable, Iterator
-from contextlib import contextmanager
 from pathlib import Path
 from typing import Annotated, Any
 
 import typer
 
+from app.chains_cli import chains
+from app.cli_tools import MENDABLE, Json, mendable, pair, show
 from app.errors import AppError, RequestError
-from propagation.errors import PropagationError
 from terrain.errors import TerrainError
 
 main = typer.Typer(
@@ -25,38 +23,13 @@ main = typer.Typer(
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
 terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
-chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 readings = typer.Typer(help="What was read at a roof.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
 main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
 
-Json = Annotated[bool, typer.Option("--json", help="Print one JSON document instead of text.")]
-WRONG, MENDABLE = 1, 2
-
-
-@contextmanager
-def _mendable() -> Iterator[None]:
-    """Print what the user can mend as one line and leave with 2."""
-    try:
-        yield
-    except (AppError, TerrainError, PropagationError) as error:
-        typer.echo(str(error), err=True)
-        raise typer.Exit(MENDABLE) from error
-
-
-def _show(document: Any, as_json: bool, text: Callable[[], str]) -> None:
-    typer.echo(json.dumps(document, ensure_ascii=False, indent=1) if as_json else text().rstrip("\n"))
-
-
-def _pair(text: str, what: str, example: str) -> tuple[float, float]:
-    """Two numbers with a comma between them."""
-    try:
-        first, second = (float(part) for part in text.split(","))
-    except ValueError:
-        raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
-    return first, second
+WRONG = 1
 
 
 @main.command()
@@ -74,14 +47,14 @@ def serve(
     from app.web.main import create_app
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         settings = load_settings(data_dir())
         changes = {key: value for key, value in (("host", host), ("port", port)) if value is not None}
         settings = settings.model_copy(update=changes)
         listener = _listener(settings.host, settings.port)
         world = open_world()
     address = f"http://{f'[{settings.host}]' if ':' in settings.host else settings.host}:{listener.getsockname()[1]}/"
-    _show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
+    show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
     sys.stdout.flush()
     if open_page:
         typer.launch(address)
@@ -136,8 +109,8 @@ def assess(
     from app.telling import told
     from app.world import open_world
 
-    with _mendable():
-        latitude_deg, longitude_deg = _pair(at, "--at", "44.5,-37.2")
+    with mendable():
+        latitude_deg, longitude_deg = pair(at, "--at", "44.5,-37.2")
         settings = load_settings(data_dir())
         request = AssessRequest(
             roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
@@ -153,7 +126,7 @@ def assess(
         )
         world = open_world()
         document = answer_to(request, world.store, world.ground, refractivity_maps=world.refractivity_maps)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 @main.command()
@@ -169,18 +142,18 @@ def path(
     from app.path_query import path_document, told_path
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         world = open_world()
         document = path_document(
             world.ground,
-            *_pair(start, "--from", "44.5,-37.2"),
-            *_pair(end, "--to", "44.3,-37.3"),
+            *pair(start, "--from", "44.5,-37.2"),
+            *pair(end, "--to", "44.3,-37.3"),
             frequency,
-            *_pair(heights, "--heights", "150,10"),
+            *pair(heights, "--heights", "150,10"),
             polarisation,
             world.refractivity_maps,
         )
-    _show(document, as_json, lambda: told_path(document))
+    show(document, as_json, lambda: told_path(document))
 
 
 @main.command()
@@ -193,9 +166,9 @@ def verify(
     """Replay published worked examples; leaves with 1 if a case is off by more than 1e-6 dB."""
     from app.verify import verify as replay
 
-    with _mendable():
+    with mendable():
         report = replay(folder)
-    _show(report.document(), as_json, report.text)
+    show(report.document(), as_json, report.text)
     if report.failed:
         raise typer.Exit(WRONG)
 
@@ -211,9 +184,9 @@ def import_file(
     from app.transmitters.store import Store
     from app.transmitters.template import import_template
 
-    with _mendable():
+    with mendable():
         summary = import_template(file, Store.open(data_dir()), dry_run)
-    _show(summary.document(), as_json, summary.text)
+    show(summary.document(), as_json, summary.text)
 
 
 @transmitters.command("remove")
@@ -225,10 +198,10 @@ def remove_source(
     from app.paths import data_dir
     from app.transmitters.store import Store
 
-    with _mendable():
+    with mendable():
         removed = Store.open(data_dir()).delete_source(source)
     document = {"source": source, "emissions_removed": removed}
-    _show(document, as_json, lambda: f'{removed} emissions of source "{source}" taken out')
+    show(document, as_json, lambda: f'{removed} emissions of source "{source}" taken out')
 
 
 @transmitters.command("template")
@@ -245,9 +218,9 @@ def list_transmitters(as_json: Json = False) -> None:
     from app.lists import emission_rows, table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = emission_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
+    show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
 
 
 @terrain.command("add")
@@ -271,7 +244,7 @@ def add_rasters(
         except (AppError, TerrainError) as error:
             refused.append(str(error))
     if rows or as_json:
-        _show(rows, as_json, lambda: table(rows, ""))
+        show(rows, as_json, lambda: table(rows, ""))
     for message in refused:
         typer.echo(message, err=True)
     if refused:
@@ -286,9 +259,9 @@ def remove_one_raster(
     from app.ground_files import remove_raster
     from app.lists import table
 
-    with _mendable():
+    with mendable():
         row = remove_raster(name)
-    _show(row, as_json, lambda: table([row], ""))
+    show(row, as_json, lambda: table([row], ""))
 
 
 @terrain.command("list")
@@ -297,20 +270,9 @@ def list_rasters(as_json: Json = False) -> None:
     from app.lists import raster_rows, table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = raster_rows(open_world().ground)
-    _show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
-
-
-@chains.command("list")
-def list_chains(as_json: Json = False) -> None:
-    """List stored chains with their parts and prices."""
-    from app.lists import chain_rows, table
-    from app.world import open_world
-
-    with _mendable():
-        rows = chain_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no chain is stored"))
+    show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
 
 
 @main.command()
@@ -329,12 +291,12 @@ def compare(
     from app.roof import Roof
     from app.world import open_world
 
-    with _mendable():
-        roofs = [Roof(*_pair(one, "--at", "44.5,-37.2"), height) for one in at]
+    with mendable():
+        roofs = [Roof(*pair(one, "--at", "44.5,-37.2"), height) for one in at]
         world = open_world()
         requests = [AssessRequest(roof, chains=tuple(chain) if chain else None, now=now) for roof in roofs]
         document = side_by_side(requests, world.store, world.ground)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 @readings.command("add")
@@ -365,8 +327,8 @@ def add_reading(
     from app.kept_readings import keep, told_kept
     from app.world import open_world
 
-    with _mendable():
-        place = _pair(at, "--at", "44.5,-37.2")
+    with mendable():
+        place = pair(at, "--at", "44.5,-37.2")
         said: dict[str, Any] = {
             "emission": of, "multiplex": of, "value_db": value, "state": state, "chain": chain, "point": point,
             "pointing_deg": pointing, "polarisation": polarisation, "aerial_agl_m": height, "day": day,
@@ -378,7 +340,7 @@ def add_reading(
         else:
             said |= {"kind": kind, "confirmed": confirmed}
         document = keep(open_world().store, *place, {key: one for key, one in said.items() if one is not None})
-    _show(document, as_json, lambda: told_kept(document))
+    show(document, as_json, lambda: told_kept(document))
 
 
 def _text_of(file: Path | None) -> str:
@@ -397,9 +359,9 @@ def list_readings(as_json: Json = False) -> None:
     from app.lists import table
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         rows = reading_rows(open_world().store)
-    _show(rows, as_json, lambda: table(rows, "no reading is kept: `gainworth readings add`"))
+    show(rows, as_json, lambda: table(rows, "no reading is kept: `gainworth readings add`"))
 
 
 @readings.command("delete")
@@ -407,7 +369,7 @@ def delete_reading(id: Annotated[str, typer.Argument(metavar="ID", help="As list
     """Forget a reading."""
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         open_world().store.delete_reading(id)
     typer.echo(f"reading {id} is forgotten")
 
@@ -418,10 +380,10 @@ def show_logbook(as_json: Json = False) -> None:
     from app.logbook import logbook, told
     from app.world import open_world
 
-    with _mendable():
+    with mendable():
         world = open_world()
         document = logbook(world.store, world.ground)
-    _show(document, as_json, lambda: told(document))
+    show(document, as_json, lambda: told(document))
 
 
 if __name__ == "__main__":

@@ -2,20 +2,22 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
 from app.disturbance import STATES, Company, Effect, State
 from app.fields import EmissionField
-from app.link_budget import Step, ledger_steps
 from app.margins import Air, Turned
+from app.outlet_ledger import Book, Step, book_of
 from app.request import AssessRequest
 
 METHOD_SOURCES = {"p1812": "Rec. ITU-R P.1812-7, 50 % of time", "p1546": "Rec. ITU-R P.1546-6, 50 % of time"}
 NEEDED = "C/N that the mode needs"  # the step of the link budget before which interference counts
+Books = Mapping[State, Book]  # of one chain, by time state
 NAMED = 3  # interferers with a line of their own
 
 
@@ -25,7 +27,7 @@ def ledger(
     e: int,
     field: EmissionField,
     air: Air,
-    assumptions: Assumptions,
+    books: Books,
     outlet: str,
 ) -> list[dict[str, Any]]:
     """Steps of one emission to one outlet, the state that decides last; each state ends with its margin."""
@@ -36,17 +38,7 @@ def ledger(
         faded_db = field.fade_db if state == "a" else 0.0
         before = _to_the_field(field, request.availability_percent, faded_db, state)
         if not behind or not _alike(turned, e, field.fade_db):
-            behind = ledger_steps(
-                turned.chain,
-                air.signals,
-                e,
-                field.used_dbuv_m - faded_db,
-                turned.pointing_deg,
-                turned.polarisation,
-                assumptions,
-                request.roof.surroundings,
-                outlet,
-            )[1:]  # the first is the field, which the steps before end with
+            behind = books[state].steps(e, outlet)[1:]  # the first is the field, which the steps before end with
         reception = turned.raised if state == "b" else turned.faded
         place = [one.name for one in reception.outlets].index(outlet)
         at = next(k for k, step in enumerate(behind) if step.step == NEEDED)
@@ -56,6 +48,24 @@ def ledger(
         lines[at:at] = _company_lines(turned.effects[state], air.company, e, state, change_db)
         rows += [_row(step, state) for step in (*before, *_summed(lines, before[-1].total))]
     return rows
+
+
+def books_of(turned: Turned, air: Air, request: AssessRequest, assumptions: Assumptions) -> Books:
+    """Gather what the ledgers of one chain are written from, in both time states."""
+    fields: dict[State, NDArray[np.float64]] = {"a": air.used_dbuv_m - air.fade_db, "b": air.used_dbuv_m}
+    return {
+        state: book_of(
+            turned.chain,
+            air.signals,
+            field,
+            turned.pointing_deg,
+            turned.polarisation,
+            assumptions,
+            request.roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
+        for state, field in fields.items()
+    }
 
 
 def _alike(turned: Turned, e: int, fade_db: float) -> bool:

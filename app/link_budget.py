@@ -1,23 +1,26 @@
-"""From the field at the aerial to level, noise, C/N and margin at every outlet.
+"""From the field at the aerial to level, noise, C/N, margin and headroom at every outlet.
 
-Levels are across 75 ohms, matched. Noise is reckoned at the aerial's terminals: external noise enters
-there, the chain's own noise is referred there by the cascade rule, and both then pass the chain's gain.
+Levels are across 75 ohms, matched. Noise from outside enters at the aerials' terminals, the chain adds its own,
+amplifiers add the third-order products of everything that loads them.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from app.assumptions import Assumptions
-from app.chain import aerial as response
-from app.chain.cascade import Stage, cascade_noise_factor, stages, total_gain_db
-from app.chain.parts import Chain, MastheadAmplifier
+from app.at_aerial import AtAerial, at_aerial
+from app.chain import overload
+from app.chain.flow import Flow, OutletFlow, flow, settings
+from app.chain.parts import Aerial, Chain
 from app.errors import RequestError
 from app.levels import level_dbuv
-from propagation.noise import man_made_fam_db, noise_power_dbm, system_noise_factor
+from app.mobile import mobile_blocks
+from propagation.noise import man_made_fam_db, noise_power_dbm
 from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
 
 FloatArray = NDArray[np.float64]
@@ -60,9 +63,11 @@ class AtOutlet:
 
     name: str
     level_dbuv: FloatArray  # (…, e)
-    noise_dbuv: FloatArray  # (e,) with the noise of the set behind it
-    cn_db: FloatArray  # (…, e)
+    noise_dbuv: FloatArray  # (…, e) with the noise of the set behind it
+    intermodulation_dbuv: FloatArray  # (…, e) amplifiers' products in the channel; −inf for none
+    cn_db: FloatArray  # (…, e) over noise and products
     margin_db: FloatArray  # (…, e) above required C/N and reserve
+    headroom_db: FloatArray  # (…, e) how much more of everything the amplifiers on the way and the set stand
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,22 +76,41 @@ class Reception:
 
     level_dbuv: FloatArray  # (…, e)
     noise_dbuv: FloatArray  # (…, e)
+    intermodulation_dbuv: FloatArray  # (…, e)
     cn_db: FloatArray  # (…, e)
     margin_db: FloatArray  # (…, e)
-    off_axis_deg: FloatArray  # (…, e)
-    pattern_loss_db: FloatArray  # (…, e)
+    headroom_db: FloatArray  # (…, e) the least over the outlets that count
+    off_axis_deg: FloatArray  # (…, e) of the aerial that serves it
+    pattern_loss_db: FloatArray  # (…, e) likewise
+    serving_aerial: NDArray[np.intp]  # (…, e) index into chain.aerials: the one that gives it most
     deciding_outlet: NDArray[np.intp]  # (…, e) index into outlets: the one with the least margin
     outlets: tuple[AtOutlet, ...]
 
+    @property
+    def loudest(self) -> NDArray[np.intp]:
+        """Row of the emission with the highest level, 0 if there is none. (…)"""
+        if not self.level_dbuv.shape[-1]:
+            return np.zeros(self.level_dbuv.shape[:-1], dtype=np.intp)
+        return np.asarray(np.argmax(np.nan_to_num(self.level_dbuv, nan=-np.inf), axis=-1))
 
-@dataclass(frozen=True, slots=True)
-class Step:
-    """One line of the ledger."""
+    def of_loudest(self, values: FloatArray) -> FloatArray:
+        """Value of the loudest emission, from values (…, e). (…, 1)"""
+        if not self.level_dbuv.shape[-1]:
+            return values
+        return np.asarray(
+            np.take_along_axis(
+                np.broadcast_to(values, self.level_dbuv.shape), np.asarray(self.loudest)[..., np.newaxis], axis=-1
+            )
+        )
 
-    step: str
-    value_db: float
-    total: float  # dB(µV/m) up to the field, dB(µV) as a level, then dB of C/N and margin
-    source: str
+
+def is_overload(place: Reception | AtOutlet) -> NDArray[np.bool_]:
+    """Whether too much level holds an emission back sooner than too little, there. (…, e)"""
+    return (place.headroom_db < place.margin_db) | (place.intermodulation_dbuv > place.noise_dbuv)
+
+
+# what a reception takes from the outlet with the least margin
+DECIDED = ("level_dbuv", "noise_dbuv", "intermodulation_dbuv", "cn_db", "margin_db")
 
 
 def receive(
@@ -97,6 +121,7 @@ def receive(
     polarisation: str,
     assumptions: Assumptions,
     surroundings: str = "open",
+    load_dbuv_m: ArrayLike | None = None,
 ) -> Reception:
     """What a chain makes of every emission.
 
@@ -105,9 +130,12 @@ def receive(
     field_dbuv_m : array (…, e)
         Field at the aerial; NaN where it is not known, which stays NaN. [dB(µV/m)]
     pointing_deg : array (…, 1) or scalar
-        True bearing of the aerial's axis.
+        True bearing of the first aerial's axis, and of others that do not say their own.
     polarisation : "horizontal" or "vertical"
-        How the aerial is mounted.
+        How the aerial is mounted; another aerial that says its own is mounted that way.
+    load_dbuv_m : array (…, e)
+        Field that loads amplifiers and set, if it is another than the wanted one's: what fades does not
+        unload them. None: the same.
 
     References
     ----------
@@ -115,7 +143,16 @@ def receive(
     noise factor is fext + frx − 1 with every term referred to the aerial's terminals.
     """
     outside_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
-    return receive_with_noise(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, outside_db)
+    return receive_with_noise(
+        chain,
+        signals,
+        field_dbuv_m,
+        pointing_deg,
+        polarisation,
+        assumptions,
+        outside_db,
+        load_dbuv_m,
+    )
 
 
 def receive_with_noise(
@@ -126,213 +163,238 @@ def receive_with_noise(
     polarisation: str,
     assumptions: Assumptions,
     external_fam_db: ArrayLike,
+    load_dbuv_m: ArrayLike | None = None,
 ) -> Reception:
     """Return the same as `receive`, for a stated noise from outside over 290 K [dB], (e,) or scalar."""
-    air = _air(chain, signals, pointing_deg, polarisation, assumptions)
-    at_aerial = level_dbuv(field_dbuv_m, air.gain_dbd, signals.frequency_mhz) - air.loss_db
-    required = signals.required_cn_db + assumptions.value("reserve_db")
-    outlets = []
-    for name in chain.outlet_names:
-        row = stages(chain.run_to(name), signals.frequency_mhz)
-        gain = total_gain_db(row, signals.frequency_mhz.size)
-        level = at_aerial + gain
-        own = chain_noise_factor(row, set_noise_figure_db(chain, signals))
-        at_terminals_dbm = noise_power_dbm(signals.bandwidth_mhz, system_noise_factor(external_fam_db, own))
-        noise = dbuv_from_dbm(at_terminals_dbm) + gain
-        outlets.append(AtOutlet(name, level, noise, level - noise, level - noise - required))
-    margins = np.stack([outlet.margin_db for outlet in outlets])
-    worst = np.argmin(np.where(np.isnan(margins), np.inf, margins), axis=0)
+    heard = hear(chain, signals, field_dbuv_m, pointing_deg, polarisation, assumptions, load_dbuv_m)
+    outside = np.maximum(ratio_from_db(external_fam_db), 1) - 1
+    best: Reception | None = None
+    for setting in settings(chain):
+        run = flow(chain, heard.load_frequency_mhz, setting)
+        outlets = outlets_of(chain, signals, heard, run, outside, assumptions)
+        one = _decided(chain, heard, run, outlets)
+        best = one if best is None else _better(best, one)
+    assert best is not None  # there is always a setting
+    return best
 
-    def decide(values: list[FloatArray]) -> FloatArray:
+
+@dataclass(frozen=True, slots=True)
+class Heard:
+    """Levels at the terminals of every aerial."""
+
+    airs: tuple[AtAerial, ...]  # (a,)
+    level_dbuv: dict[str, FloatArray]  # id of an aerial: (…, e)
+    load_dbuv: dict[str, FloatArray]  # id of an aerial: (…, f), the emissions first, then mobile blocks
+    load_frequency_mhz: FloatArray  # (f,)
+
+
+def hear(
+    chain: Chain,
+    signals: Signals,
+    field_dbuv_m: ArrayLike,
+    pointing_deg: ArrayLike,
+    polarisation: str,
+    assumptions: Assumptions,
+    load_dbuv_m: ArrayLike | None = None,
+) -> Heard:
+    """Levels that every aerial of a chain gives; arguments as those of `receive`."""
+    blocks = mobile_blocks(assumptions)
+    frequency = np.concatenate([signals.frequency_mhz, blocks.frequency_mhz])
+    level: dict[str, FloatArray] = {}
+    load: dict[str, FloatArray] = {}
+    airs: list[AtAerial] = []
+    for number, aerial in enumerate(chain.aerials):
+        pointing, rods = pointing_deg, polarisation
+        if number:
+            pointing = pointing_deg if aerial.pointing_deg is None else aerial.pointing_deg
+            rods = aerial.polarisation or polarisation
+        air = at_aerial(
+            aerial, signals.frequency_mhz, signals.bearing_deg, signals.polarisation, pointing, rods, assumptions
+        )
+        airs.append(air)
+        level[aerial.id] = level_dbuv(field_dbuv_m, air.gain_dbd, signals.frequency_mhz) - air.loss_db
+        loaded = (
+            level[aerial.id]
+            if load_dbuv_m is None
+            else level_dbuv(load_dbuv_m, air.gain_dbd, signals.frequency_mhz) - air.loss_db
+        )
+        load[aerial.id] = _with_blocks(loaded, aerial, blocks.frequency_mhz, blocks.field_dbuv_m, assumptions)
+    return Heard(tuple(airs), level, load, frequency)
+
+
+def _with_blocks(
+    level: FloatArray, aerial: Aerial, frequency_mhz: FloatArray, field_dbuv_m: FloatArray, assumptions: Assumptions
+) -> FloatArray:
+    """Append mobile blocks, which may come from anywhere, so from where the aerial points."""
+    if not frequency_mhz.size:
+        return level
+    nowhere = np.zeros(frequency_mhz.shape)
+    air = at_aerial(aerial, frequency_mhz, nowhere, ("mixed",) * nowhere.size, 0.0, "horizontal", assumptions)
+    added = level_dbuv(field_dbuv_m, air.gain_dbd, frequency_mhz) - air.covering_loss_db
+    return np.concatenate([level, np.broadcast_to(added, (*level.shape[:-1], added.size))], axis=-1)
+
+
+def summed_dbuv(levels: Mapping[str, FloatArray], gain: Mapping[str, FloatArray]) -> FloatArray:
+    """Level where the aerials' signals meet, powers added [dB(µV)]; gains are power ratios by aerial."""
+    with np.errstate(divide="ignore"):
+        through = [
+            level + db_from_ratio(gain[name][: level.shape[-1]]) for name, level in levels.items() if name in gain
+        ]
+        if len(through) == 1:
+            return through[0]
+        return db_from_ratio(sum((ratio_from_db(one) for one in through), np.zeros_like(through[0])))
+
+
+def outlets_of(
+    chain: Chain,
+    signals: Signals,
+    heard: Heard,
+    run: Flow,
+    outside: FloatArray,
+    assumptions: Assumptions,
+) -> list[AtOutlet]:
+    """Return what stands at every outlet, for one setting of the switches.
+
+    `outside` is the noise from outside beyond 290 K as a factor over k T0, (e,) or scalar.
+    """
+    count = signals.frequency_mhz.size
+    power = {name: np.nan_to_num(ratio_from_db(level)) for name, level in heard.load_dbuv.items()}
+    products: dict[str, FloatArray] = {}  # of each amplifier at its output, (…, e) as power
+    headroom: dict[str, FloatArray] = {}  # (…)
+    for name, place in run.amplifiers.items():
+        out = summed_dbuv(heard.load_dbuv, place.gain)
+        rated = run.rated_dbuv[name]
+        below = overload.carrier_to_intermodulation_db(out, rated)
+        products[name] = np.nan_to_num(ratio_from_db((out - below)[..., :count]))
+        headroom[name] = overload.headroom_db(out, rated)
+    return [
+        _at_outlet(chain, signals, heard, one, power, products, headroom, outside, assumptions) for one in run.outlets
+    ]
+
+
+def _at_outlet(
+    chain: Chain,
+    signals: Signals,
+    heard: Heard,
+    one: OutletFlow,
+    power: Mapping[str, FloatArray],
+    products: Mapping[str, FloatArray],
+    headroom: Mapping[str, FloatArray],
+    outside: FloatArray,
+    assumptions: Assumptions,
+) -> AtOutlet:
+    count = signals.frequency_mhz.size
+    level = summed_dbuv(heard.level_dbuv, one.at.gain)
+    noise = dbuv_from_dbm(noise_power_dbm(signals.bandwidth_mhz, noise_factor_at(chain, signals, one, outside)))
+    disturbing = sum(
+        (products[name] * one.at.gain[name][:count] for name in products if name in one.at.gain),
+        np.zeros(count),
+    )
+    with np.errstate(divide="ignore"):
+        intermodulation = db_from_ratio(disturbing)
+    cn = level - (noise if not products else db_from_ratio(ratio_from_db(noise) + disturbing))
+    total = sum((power[name] @ (gain * one.lead_gain) for name, gain in one.at.gain.items() if name in power), 0.0)
+    with np.errstate(divide="ignore"):
+        spare = most_total_dbuv(chain, one.name, assumptions) - db_from_ratio(total)
+    for name, left in headroom.items():
+        if name in one.at.gain and one.at.gain[name].any():
+            spare = np.minimum(spare, left)
+    required = signals.required_cn_db + assumptions.value("reserve_db")
+    return AtOutlet(
+        name=one.name,
+        level_dbuv=level,
+        noise_dbuv=noise,
+        intermodulation_dbuv=np.broadcast_to(intermodulation, level.shape),
+        cn_db=cn,
+        margin_db=cn - required,
+        headroom_db=np.broadcast_to(np.asarray(spare)[..., np.newaxis], level.shape),
+    )
+
+
+def noise_factor_at(chain: Chain, signals: Signals, one: OutletFlow, outside: FloatArray) -> FloatArray:
+    """Noise over k T0 at an outlet, with that of fly lead and set referred to it [-], (e,)."""
+    count = signals.frequency_mhz.size
+    lead, added = one.lead_gain[:count], one.lead_noise[:count]
+    heard = sum(
+        (gain[:count] for name, gain in one.at.gain.items() if any(name == aerial.id for aerial in chain.aerials)),
+        np.zeros(count),
+    )
+    figure = ratio_from_db(set_noise_figure_db(chain, signals, one.name))
+    factor: FloatArray = one.at.noise[:count] + heard * outside + (added + figure - 1) / lead
+    return factor
+
+
+def set_noise_figure_db(chain: Chain, signals: Signals, outlet: str) -> FloatArray:
+    """Noise figure of the set [dB], (e,): as stated for the part, else the planning value of the system."""
+    stated = chain.tree.sets[outlet].noise_figure_db
+    planned = signals.receiver_noise_figure_db
+    return planned if stated is None else np.full_like(planned, stated)
+
+
+def most_total_dbuv(chain: Chain, outlet: str, assumptions: Assumptions) -> float:
+    """Level of everything together that the set behind an outlet stands [dB(µV)]."""
+    stated = chain.tree.sets[outlet].most_total_dbuv
+    return assumptions.value("set_most_total_dbuv") if stated is None else stated
+
+
+def _decided(chain: Chain, heard: Heard, run: Flow, outlets: Sequence[AtOutlet]) -> Reception:
+    """Take the outlets that count together: the least margin, the least headroom."""
+    counting = [i for i, outlet in enumerate(outlets) if outlet.name in chain.deciding_outlets]
+    first = outlets[counting[0]]
+    worst = np.full(first.margin_db.shape, counting[0], dtype=np.intp)
+    kept = {key: np.array(np.broadcast_to(getattr(first, key), worst.shape)) for key in DECIDED}
+    for i in counting[1:]:
+        with np.errstate(invalid="ignore"):
+            lower = outlets[i].margin_db < kept["margin_db"]
+        if lower.any():
+            worst[lower] = i
+            for key, values in kept.items():
+                np.copyto(values, getattr(outlets[i], key), where=lower)
+    gain = run.outlets[counting[0]].at.gain
+    with np.errstate(divide="ignore"):
+        strength = [
+            np.broadcast_to(level + db_from_ratio(gain[name][: level.shape[-1]]), worst.shape)
+            if name in gain
+            else np.full(worst.shape, -np.inf)
+            for name, level in heard.level_dbuv.items()
+        ]
+    serving = (
+        np.zeros(worst.shape, dtype=np.intp)
+        if len(strength) == 1
+        else np.argmax(np.nan_to_num(np.stack(strength), nan=-np.inf), axis=0)
+    )
+
+    def of_serving(values: Sequence[FloatArray]) -> FloatArray:
+        if len(values) == 1:
+            return np.broadcast_to(values[0], worst.shape)
         stacked = np.stack([np.broadcast_to(value, worst.shape) for value in values])
-        return np.asarray(np.take_along_axis(stacked, worst[np.newaxis], axis=0)[0])
+        return np.asarray(np.take_along_axis(stacked, serving[np.newaxis], axis=0)[0])
 
     return Reception(
-        level_dbuv=decide([outlet.level_dbuv for outlet in outlets]),
-        noise_dbuv=decide([outlet.noise_dbuv for outlet in outlets]),
-        cn_db=decide([outlet.cn_db for outlet in outlets]),
-        margin_db=decide([outlet.margin_db for outlet in outlets]),
-        off_axis_deg=np.broadcast_to(air.off_axis_deg, worst.shape),
-        pattern_loss_db=np.broadcast_to(air.pattern_loss_db, worst.shape),
+        **kept,
+        headroom_db=np.min(np.stack([outlets[i].headroom_db for i in counting]), axis=0),
+        off_axis_deg=of_serving([air.off_axis_deg for air in heard.airs]),
+        pattern_loss_db=of_serving([air.pattern_loss_db for air in heard.airs]),
+        serving_aerial=serving,
         deciding_outlet=worst,
         outlets=tuple(outlets),
     )
 
 
-def set_noise_figure_db(chain: Chain, signals: Signals) -> FloatArray:
-    """Noise figure of the set [dB], (e,): as stated for the part, else the planning value of the system."""
-    stated = chain.receiver.noise_figure_db
-    planned = signals.receiver_noise_figure_db
-    return planned if stated is None else np.full_like(planned, stated)
+def _better(one: Reception, other: Reception) -> Reception:
+    """Take each emission from the setting of the switches that serves it better."""
+    with np.errstate(invalid="ignore"):
+        takes = np.minimum(other.margin_db, other.headroom_db) > np.minimum(one.margin_db, one.headroom_db)
 
+    def mixed(first: Reception | AtOutlet, second: Reception | AtOutlet) -> dict[str, NDArray[np.generic]]:
+        return {
+            field.name: np.where(takes, getattr(second, field.name), getattr(first, field.name))
+            for field in fields(first)
+            if field.name not in ("name", "outlets")
+        }
 
-def chain_noise_factor(row: list[Stage], set_noise_figure_db: FloatArray) -> FloatArray:
-    """Noise factor of a run of parts and the set behind it, at the aerial's terminals [-], (e,)."""
-    return cascade_noise_factor(
-        [*(stage.gain_db for stage in row), np.zeros_like(set_noise_figure_db)],
-        [*(stage.noise_figure_db for stage in row), set_noise_figure_db],
+    outlets = tuple(
+        AtOutlet(name=first.name, **mixed(first, second))  # type: ignore[arg-type]  # float arrays stay float arrays
+        for first, second in zip(one.outlets, other.outlets, strict=True)
     )
-
-
-@dataclass(frozen=True, slots=True)
-class _Air:
-    """What aerial and place make of the field, before the first part."""
-
-    gain_dbd: FloatArray  # (e,)
-    covering_loss_db: float
-    off_axis_deg: FloatArray  # (…, e)
-    pattern_loss_db: FloatArray  # (…, e)
-    polarisation_loss_db: FloatArray  # (…, e) what it adds to the pattern's
-
-    @property
-    def loss_db(self) -> FloatArray:
-        return self.covering_loss_db + self.pattern_loss_db + self.polarisation_loss_db
-
-
-def _air(chain: Chain, signals: Signals, pointing_deg: ArrayLike, polarisation: str, assumptions: Assumptions) -> _Air:
-    aerial = chain.aerial
-    off_axis = response.off_axis_deg(signals.bearing_deg, pointing_deg)
-    pattern = response.pattern_loss_db(aerial, off_axis, polarisation, assumptions.value("dipole_null_db"))
-    cross_db = assumptions.value("cross_polar_db")
-    on_axis = np.array(
-        [response.polarisation_loss_db(polarisation, emitted, cross_db) for emitted in signals.polarisation]
-    )
-    mixed = np.array([emitted == "mixed" for emitted in signals.polarisation], dtype=bool)
-    # Rec. ITU-R BT.419-3, Note 3: pattern and cross-polar rejection do not add up, the larger one holds.
-    # A mixed emission loses its other half in every direction.
-    added = np.where(mixed, on_axis, np.maximum(on_axis - pattern, 0))
-    return _Air(
-        response.gain_dbd(aerial, signals.frequency_mhz, assumptions.value("aerial_out_of_range_db_per_octave")),
-        assumptions.value("loft_covering_db") if aerial.place == "loft" else 0.0,
-        off_axis,
-        pattern,
-        added,
-    )
-
-
-def ledger_steps(
-    chain: Chain,
-    signals: Signals,
-    index: int,
-    field_dbuv_m: ArrayLike,
-    pointing_deg: float,
-    polarisation: str,
-    assumptions: Assumptions,
-    surroundings: str = "open",
-    outlet: str | None = None,
-) -> list[Step]:
-    """Every gain and loss of one emission, from the field at the aerial to the margin.
-
-    Each step's total is the one before plus its value; the last total is the margin of `receive`.
-
-    Parameters
-    ----------
-    index : int
-        Row of the emission in `signals`.
-    field_dbuv_m : array (e,) or scalar
-        Field at the aerial. [dB(µV/m)]
-    outlet : str or None
-        Name of the outlet; None: the deciding one.
-    """
-    signals = _row(signals, index)
-    field = np.atleast_1d(np.asarray(field_dbuv_m, dtype=float))
-    field = field[index : index + 1] if field.size > 1 else field
-    if outlet is None:
-        got = receive(chain, signals, field, pointing_deg, polarisation, assumptions, surroundings)
-        outlet = chain.outlet_names[int(got.deciding_outlet[0])]
-    air = _air(chain, signals, pointing_deg, polarisation, assumptions)
-    row = stages(chain.run_to(outlet), signals.frequency_mhz)
-    lines = [
-        ("field at the aerial", field, "field of the path"),
-        *_air_lines(chain, signals, air, polarisation),
-        *((stage.part.name, stage.gain_db, stage.source) for stage in row),
-        *_noise_lines(chain, signals, row, surroundings),
-        (
-            "C/N that the mode needs",
-            -signals.required_cn_db,
-            "".join(signals.mode_source) or "planning value of the mode",
-        ),
-        ("reserve", -assumptions.value("reserve_db"), "assumption reserve_db"),
-    ]
-    steps: list[Step] = []
-    total = 0.0
-    for name, value, source in lines:
-        value_db = float(np.asarray(value).reshape(-1)[0]) + 0.0  # no negative zero
-        total += value_db
-        steps.append(Step(name, value_db, total, source))
-    return steps
-
-
-Line = tuple[str, FloatArray | float, str]
-
-
-def _air_lines(chain: Chain, signals: Signals, air: _Air, polarisation: str) -> list[Line]:
-    aerial = chain.aerial
-    dipole_level = level_dbuv(0, 0, signals.frequency_mhz)
-    stated = "stated gain" if aerial.measured else "gain of an own build, not measured"
-    if not response.in_range(aerial, signals.frequency_mhz).all():
-        stated += " beyond its frequencies: assumption aerial_out_of_range_db_per_octave"
-    pattern = {
-        "class": f"{aerial.beamwidth_deg:g}° beamwidth, {aerial.front_to_back_db:g} dB front to back",
-        "dipole": "round, rods upright" if polarisation == "vertical" else "figure of eight, assumption dipole_null_db",
-    }[aerial.pattern]
-    emitted = signals.polarisation[0]
-    turned = {
-        True: "one plane of a mixed emission, half its power",
-        False: f"{emitted} emission, {polarisation} aerial; assumption cross_polar_db, less the pattern",
-    }[emitted == "mixed"]
-    lines: list[Line] = [
-        (
-            "level of a half-wave dipole",
-            dipole_level,
-            f"33.68 − 20 log f at {signals.frequency_mhz[0]:g} MHz, 75 ohms matched",
-        ),
-        (f"gain of {aerial.name}", air.gain_dbd, stated),
-        ("off the axis", -air.pattern_loss_db, f"{float(air.off_axis_deg.flat[0]):.0f}° off; {pattern}"),
-    ]
-    if emitted != polarisation:
-        lines.append(("polarisation", -air.polarisation_loss_db, turned))
-    if aerial.place == "loft":
-        lines.insert(0, ("roof covering", -air.covering_loss_db, "assumption loft_covering_db"))
-    return lines
-
-
-def _noise_lines(chain: Chain, signals: Signals, row: list[Stage], surroundings: str) -> list[Line]:
-    """Noise at the outlet, split by where it comes from; each line is 0 or a loss of C/N."""
-    gain = ratio_from_db(total_gain_db(row, 1))
-    set_figure_db = set_noise_figure_db(chain, signals)
-    fam_db = man_made_fam_db(signals.frequency_mhz, ENVIRONMENTS[surroundings])
-    own = chain_noise_factor(row, set_figure_db)
-    bandwidth = signals.bandwidth_mhz[0]
-    stated = chain.receiver.noise_figure_db is not None
-    lines: list[Line] = [
-        (
-            "thermal noise",
-            -dbuv_from_dbm(noise_power_dbm(bandwidth)),
-            f"k T0 B in {bandwidth:g} MHz at 290 K, 75 ohms",
-        ),
-        (
-            f"noise of {chain.receiver.name}",
-            -set_figure_db,
-            "as stated for the part" if stated else "planning noise figure of the system",
-        ),
-    ]
-    if any(isinstance(stage.part, MastheadAmplifier) for stage in row):
-        left = db_from_ratio(gain * own) - set_figure_db
-        lines.append(("noise the amplifier leaves", -left, "cascade rule (Friis 1944), parts at 290 K"))
-    heard = db_from_ratio(system_noise_factor(fam_db, own) / own)
-    lines.append(("noise from outside", -heard, f"Rec. ITU-R P.372, {ENVIRONMENTS[surroundings]}, at least 290 K"))
-    return lines
-
-
-def _row(signals: Signals, index: int) -> Signals:
-    one = slice(index, index + 1)
-    return Signals(
-        signals.frequency_mhz[one],
-        signals.bandwidth_mhz[one],
-        signals.required_cn_db[one],
-        signals.receiver_noise_figure_db[one],
-        signals.bearing_deg[one],
-        signals.polarisation[index : index + 1],
-        signals.mode_source[index : index + 1],
-    )
+    return Reception(outlets=outlets, **mixed(one, other))  # type: ignore[arg-type]

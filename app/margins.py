@@ -9,13 +9,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.at_aerial import room_sd_db
 from app.chain.parts import Aerial, AerialPolarisation, Chain
-from app.chance import Cells, ErrorPart, Knowledge, PathError, exceedance, received
+from app.chance import Cells, ErrorPart, Knowledge, PathError, capped, exceedance, not_too_much, received
 from app.disturbance import Company, Effect, State, company_of, disturbed, ear_of, effect_of
 from app.disturbance_errors import Disturbers, Moved, disturbers_of, moved_by, rejection_sd_db, slope_and_spread
 from app.fields import EmissionField
 from app.interferers import Interferer
-from app.link_budget import Reception, Signals, receive
+from app.link_budget import Reception, Signals, is_overload, receive
 from app.roof import Roof
 from app.systems import mode_of
 from terrain.geodesy import distance_and_bearing
@@ -24,7 +25,7 @@ FloatArray = NDArray[np.float64]
 
 SAME_MAST_KM = 1.0
 BAND_EDGES_MHZ = (300.0, 582.0)  # Bands III, IV and V
-TIE_COUNT = 0.02  # expected multiplexes: directions closer than this are as good
+TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
 HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
@@ -78,13 +79,16 @@ class Turned:
         return "b" if self.raised.margin_db[e] < self.faded.margin_db[e] else "a"
 
     def limit(self, e: int) -> str:
-        """What holds one emission back: interference where it is more than noise, time where only a fade does it."""
+        """What holds one emission back: too much level, interference above noise, time where only a fade does it."""
         return self.held_back(e).limit
 
-    def held_back(self, e: int) -> HeldBack:
-        """What holds one emission back, in the state that decides."""
+    def held_back(self, e: int, outlet: int | None = None) -> HeldBack:
+        """What holds one emission back, in the state that decides, at one outlet; None: at those that count."""
         state = self.state(e)
         reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
+        place = self.median if outlet is None else self.median.outlets[outlet]
+        if is_overload(place)[e]:
+            return HeldBack("overload", state, None, None)
         if float(effect.i_over_n[e]) > 1:
             return HeldBack("interference", state, *effect.strongest(self.company, e))
         by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
@@ -103,7 +107,7 @@ class Turned:
 class HeldBack:
     """What holds an emission back."""
 
-    limit: str  # "noise", "interference", "time"
+    limit: str  # "noise", "interference", "overload", "time"
     state: State
     by: int | None  # row of the strongest interferer
     next_db: float | None  # how far below it all others together stand; None: there are none
@@ -155,7 +159,7 @@ def turn(
     best: tuple[float, float, AerialPolarisation, FloatArray, FloatArray] | None = None
     for polarisation in _polarisations(chain):
         chances = _sweep(chain, polarisation, air, roof, assumptions, known)
-        counts = _counts(chances, air, counted)
+        counts = _expected_by_degree(chances, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
@@ -164,7 +168,16 @@ def turn(
     _, pointing_deg, polarisation, counts, chances = best
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     alone, alone_faded = (
-        receive(chain, air.signals, field, pointing_deg, polarisation, assumptions, roof.surroundings)
+        receive(
+            chain,
+            air.signals,
+            field,
+            pointing_deg,
+            polarisation,
+            assumptions,
+            roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
         for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
     )
     left = ear.left(pointing_deg)
@@ -182,6 +195,7 @@ def turn(
         _parts(chain, polarisation, air, faded, assumptions, state_b, moved),
         known,
     )
+    chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
     return Turned(
         chain,
         pointing_deg,
@@ -192,7 +206,7 @@ def turn(
         air.company,
         effects,
         cells,
-        cells.chance,
+        chance,
         counts,
         chances,
     )
@@ -203,7 +217,9 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
 
     One emission alone has its closed form; alternatives are counted over the joint draws.
     """
-    draws = received(turned.cells.draws(), air.multiplex_of, multiplexes)
+    median = turned.median
+    margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
+    draws = received(margins, air.multiplex_of, multiplexes)
     chance = draws.mean(axis=0)
     for m, name in enumerate(multiplexes):
         alone = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
@@ -239,6 +255,7 @@ def _sweep(
     assumptions: Assumptions,
     known: Knowledge | None,
 ) -> FloatArray:
+    """Chance of each emission for each whole degree. (360, e)"""
     turned = BEARINGS[:, None]
     ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
     disturbers = _disturbers(air, assumptions)
@@ -246,7 +263,16 @@ def _sweep(
     margin, moved = np.full((len(BEARINGS), len(air.fields)), np.inf), np.zeros((len(BEARINGS), len(air.fields)))
     fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
     for state, field in fields:
-        alone = receive(chain, air.signals, field, turned, polarisation, assumptions, roof.surroundings)
+        alone = receive(
+            chain,
+            air.signals,
+            field,
+            turned,
+            polarisation,
+            assumptions,
+            roof.surroundings,
+            load_dbuv_m=air.used_dbuv_m,
+        )
         effect = effect_of(ear, alone, left, state)
         reception = disturbed(alone, effect)
         slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
@@ -255,17 +281,16 @@ def _sweep(
     path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
     turned_away = _rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
-    return exceedance(margin + fixed.mean_db, np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2))
+    sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
+    enough = exceedance(margin + fixed.mean_db, sigma_db)
+    return not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db))
 
 
-def _counts(chance: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
-    """Expected multiplexes for each whole degree (360,) from the chances of emissions (360, e).
-
-    What no direction brings does not sway the choice of one, however much of it there is.
-    """
-    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chance[:, e].max()) >= HOPELESS_BELOW}
+def _expected_by_degree(chances: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:
+    """Expected multiplexes for each whole degree; what no direction brings does not sway the choice. (360,)"""
+    within_reach = {owner for e, owner in enumerate(air.multiplex_of) if float(chances[:, e].max()) >= HOPELESS_BELOW}
     counted = [one for one in counted if one in within_reach]
-    return expected_count(chance, air.multiplex_of, counted, air.company.acting)
+    return expected_count(chances, air.multiplex_of, counted, air.company.acting)
 
 
 def _best_bearing(counts: FloatArray, air: Air) -> float:
@@ -349,6 +374,7 @@ def _parts_of_any_pointing(chain: Chain, air: Air, assumptions: Assumptions) -> 
             assumptions.value("aerial_gain_sd_db" if aerial.measured else "aerial_own_build_sd_db"),
         ),
         same("feeder:" + "+".join(chain.part_ids_of_feeders), assumptions.value("feeder_sd_db")),
+        ErrorPart(("room",) * len(ids), room_sd_db(aerial, air.signals.frequency_mhz)),
     )
 
 

@@ -7,13 +7,17 @@ from datetime import date
 from pathlib import Path
 from typing import Any
 
+from app.aiming import aimed
+from app.air_at import air_at
 from app.answer import answer_document
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
+from app.chain.powering import as_powered
+from app.chain.windows import DEFAULT_STANDARD
+from app.chain_notes import chain_notes, with_notes
+from app.chance import Knowledge
 from app.errors import RequestError
-from app.fields import fields_at
-from app.interferers import MOBILE, SEA_REACH_KM, interferers_at
-from app.margins import Air, Turned, air_of, multiplex_chances, turn
+from app.margins import Air, Turned, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
 from app.roof_readings import Place, evidence_at, what_can_be_read
@@ -39,48 +43,45 @@ def assess(
         The roof, a name or a value is not possible: the message says what is.
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
-    chains = _chains(request, store)
+    chains = chains_of(request, store)
     site = site_of(request.roof, ground)
-    on_the_air = store.emissions_within(
-        request.roof.latitude_deg, request.roof.longitude_deg, SEA_REACH_KM, today or date.today()
-    )
-    found = [row for row in on_the_air if row[2] <= request.reach_km and row[0].system != MOBILE]
-    fields = fields_at(
-        request.roof, found, ground, assumptions, request.availability_percent, request.method, refractivity_maps
-    )
-    air = air_of(
-        fields,
-        interferers_at(
-            request.roof,
-            fields,
-            on_the_air,
-            ground,
-            assumptions,
-            request.availability_percent,
-            request.method,
-            refractivity_maps,
-        ),
-    )
+    heard = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
+    fields, air = heard.fields, heard.air
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)
     counted = [one for one in chosen or multiplexes if one in multiplexes]
-    turned = (
-        {chain.name: turn(chain, air, request.roof, counted, assumptions) for chain in chains} if air.fields else {}
-    )
-    place = Place(request, store, ground, found, on_the_air, fields, air, turned, assumptions, refractivity_maps)
+
+    def turned_best(chain: Chain, known: Knowledge | None) -> Turned:
+        best = aimed(chain, air, request.roof, counted, assumptions)
+        return turn(best, air, request.roof, counted, assumptions, known)
+
+    turned = {chain.name: turned_best(as_powered(chain), None) for chain in chains} if air.fields else {}
+    place = Place(request, store, ground, heard, turned, assumptions, refractivity_maps)
     evidence = evidence_at(place)
     known = evidence.posterior
     if known is not None:
-        turned = {chain.name: turn(chain, air, request.roof, counted, assumptions, known) for chain in chains}
+        turned = {chain.name: turned_best(as_powered(chain), known) for chain in chains}
     outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
     readables = what_can_be_read(place, turned, known)
     verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions, readables)
-    return answer_document(
+    mended = {
+        chain.name: _outcome(turned_best(chain, known), air, multiplexes)
+        for chain in chains
+        if turned and as_powered(chain) != chain
+    }
+    notes = {
+        chain.name: chain_notes(
+            chain, turned.get(chain.name), air, request.roof, mended.get(chain.name), DEFAULT_STANDARD
+        )
+        for chain in chains
+    }
+    document = answer_document(
         request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts, evidence
     )
+    return with_notes(document, notes)
 
 
-def _chains(request: AssessRequest, store: Store) -> list[Chain]:
+def chains_of(request: AssessRequest, store: Store) -> list[Chain]:
     """Return the chains in question, the one that is up now among them."""
     asked: Sequence[str | Chain]
     asked = request.chains if request.chains is not None else [str(one["name"]) for one in store.list_chains()]

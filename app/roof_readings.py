@@ -8,12 +8,13 @@ from pathlib import Path
 
 import numpy as np
 
+from app.air_at import Heard
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
 from app.chance import Knowledge
 from app.errors import NotStoredError, ReadingError
 from app.evidence import Evidence, weigh
-from app.fields import EmissionField, Found, fields_at
+from app.fields import EmissionField, fields_at
 from app.interferers import interferers_at
 from app.margins import Air, Turned, air_of, turn
 from app.reading_value import Readable
@@ -39,10 +40,7 @@ class Place:
     request: AssessRequest
     store: Store
     ground: Ground
-    found: Sequence[Found]
-    on_the_air: Sequence[Found]  # what disturbs among it
-    fields: Sequence[EmissionField]
-    air: Air
+    heard: Heard
     turned: Mapping[str, Turned]  # before any reading
     assumptions: Assumptions
     refractivity_maps: Path | None = None
@@ -96,7 +94,7 @@ class Place:
         """Return all fields again for another height or share of time."""
         return fields_at(
             roof,
-            self.found,
+            self.heard.found,
             self.ground,
             self.assumptions,
             availability_percent,
@@ -107,14 +105,16 @@ class Place:
     def _air_at(self, height_m: float) -> Air:
         height_m = round(height_m / HEIGHT_STEP_M) * HEIGHT_STEP_M
         if abs(height_m - self.request.roof.aerial_agl_m) <= SAME_HEIGHT_M:
-            return self.air
+            return self.heard.air
         if height_m not in self._airs:
             if len(self._airs) >= MOST_HEIGHTS:
                 raise LookupError(f"readings at more than {MOST_HEIGHTS} heights: this one is kept, not used")
             roof = replace(self.request.roof, aerial_agl_m=max(1.0, height_m))
             share, method = self.request.availability_percent, self.request.method
             fields = self.fields_on(roof, share)
-            disturbers = interferers_at(roof, fields, self.on_the_air, self.ground, self.assumptions, share, method)
+            disturbers = interferers_at(
+                roof, fields, self.heard.on_the_air, self.ground, self.assumptions, share, method
+            )
             self._airs[height_m] = air_of(fields, disturbers)
         return self._airs[height_m]
 
@@ -123,7 +123,9 @@ class Place:
             chain = stored_chain(self.store, name)
         except NotStoredError as error:
             raise LookupError(f"{error.message}; kept, not used") from error
-        return turn(chain, self.air, self.request.roof, sorted(set(self.air.multiplex_of)), self.assumptions)
+        return turn(
+            chain, self.heard.air, self.request.roof, sorted(set(self.heard.air.multiplex_of)), self.assumptions
+        )
 
 
 def readings_of(request: AssessRequest, store: Store) -> list[Reading]:
@@ -141,7 +143,7 @@ def evidence_at(place: Place) -> Evidence:
     readings = readings_of(place.request, place.store)
     if not readings:
         return Evidence((), None)
-    if not place.air.fields:
+    if not place.heard.air.fields:
         raise ReadingError(
             "readings cannot be compared: nothing in reach can be predicted here; they are kept", field="readings"
         )
@@ -163,9 +165,9 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
     Through what is up, at the outlet that decides; with nothing up, through a measuring aerial held where the new one
     is going to stand.
     """
-    if not place.air.fields or len(turned) + (place.request.now == NOTHING) < 2:
+    if not place.heard.air.fields or len(turned) + (place.request.now == NOTHING) < 2:
         return []
-    air, roof = place.air, place.request.roof
+    air, roof = place.heard.air, place.request.roof
     value = place.assumptions.value
     if place.request.now == NOTHING:
         planes: tuple[AerialPolarisation, ...] = ("horizontal", "vertical")
@@ -189,7 +191,7 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
 
 def _weather(place: Place) -> tuple[dict[str, float], dict[str, float]]:
     """Fade to 99 % and enhancement of 1 % of time by emission [dB], whatever availability is asked for."""
-    fields = place.fields
+    fields: Sequence[EmissionField] = place.heard.fields
     if place.request.availability_percent != 99:
         fields = place.fields_on(place.request.roof, 99)
     return (

@@ -21,7 +21,9 @@ def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> di
     direction brings is left out.
     """
     return {
-        "pattern_loss_db_by_degree": _pattern(turned.chain.aerial, turned.polarisation),
+        "pattern_loss_db_by_degree": _pattern(
+            turned.chain.aerial, turned.polarisation, float(np.median(air.signals.frequency_mhz))
+        ),
         "chance_percent_by_degree": {
             name: np.rint(percent).astype(int).tolist()
             for name in multiplexes
@@ -33,8 +35,10 @@ def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> di
     }
 
 
-def _pattern(aerial: Aerial, polarisation: AerialPolarisation) -> list[float]:
-    """Loss at 0 to 359 degrees off the axis."""
+def _pattern(aerial: Aerial, polarisation: AerialPolarisation, frequency_mhz: float) -> list[float]:
+    """Loss at 0 to 359 degrees off the axis, at the middle of what is on the air."""
     off_axis = np.abs((np.arange(360.0) + 180) % 360 - 180)
-    loss: list[float] = np.round(pattern_loss_db(aerial, off_axis, polarisation), 1).tolist()
+    loss: list[float] = np.round(
+        pattern_loss_db(aerial, off_axis, polarisation, frequency_mhz=frequency_mhz), 1
+    ).tolist()
     return loss

@@ -10,9 +10,13 @@ from typing import TYPE_CHECKING
 
 import hypothesis
 import pytest
+from hypothesis import settings
 
 if TYPE_CHECKING:
     from app.world import World
+
+settings.register_profile("gainworth", deadline=None)  # how fast a busy machine is decides no test
+settings.load_profile("gainworth")
 
 BROWSERS = ("chromium", "chromium-browser", "google-chrome")
 # Speed is measured in benchmarks, not in tests; the same examples every time.

@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from app.assumptions import ASSUMPTIONS
-from app.chain.parts import Aerial
+from app.chain.parts import Aerial, AerialPolarisation
+from app.chain.pattern import MeasuredPattern
 
 HALF_POWER = 10**-0.3  # the 3 dB that define a beamwidth
 
@@ -41,11 +42,17 @@ def off_axis_deg(bearing_deg: ArrayLike, pointing_deg: ArrayLike) -> NDArray[np.
     return np.asarray(np.abs((difference + 180) % 360 - 180))
 
 
+def clockwise_deg(bearing_deg: ArrayLike, pointing_deg: ArrayLike) -> NDArray[np.float64]:
+    """Angle of a bearing clockwise from the aerial's axis, 0 to 360 [deg]; broadcasts."""
+    return np.asarray((np.asarray(bearing_deg, dtype=float) - np.asarray(pointing_deg, dtype=float)) % 360)
+
+
 def pattern_loss_db(
     aerial: Aerial,
     off_axis_deg: ArrayLike,
     polarisation: str = "horizontal",
     null_db: float = ASSUMPTIONS["dipole_null_db"].value,
+    frequency_mhz: ArrayLike | None = None,
 ) -> NDArray[np.float64]:
     """Loss against the aerial's axis [dB, 0 or more], elementwise over the angle off the axis [deg].
 
@@ -54,11 +61,17 @@ def pattern_loss_db(
     Pattern "dipole" is a figure of eight, cos(x)^2, with nulls no deeper than `null_db`. With its rods
     upright (`polarisation` "vertical") a dipole is round.
 
+    Pattern "measured" has two sides, so angles count clockwise, and cuts by frequency [MHz]; None: the middle of
+    the gain table.
+
     References
     ----------
     The half-wave dipole's figure of eight is taken as the cosine of the short dipole (antenna texts; 90
     instead of 78 degrees between the half-power points).
     """
+    if aerial.pattern == "measured":
+        f = np.mean([pair[0] for pair in aerial.gain_dbd]) if frequency_mhz is None else frequency_mhz
+        return measured_pattern(aerial).loss_db(off_axis_deg, f, mounted(polarisation))
     if aerial.pattern == "class":
         return class_pattern_loss_db(off_axis_deg, aerial.beamwidth_deg, aerial.front_to_back_db)
     x = np.radians(np.asarray(off_axis_deg, dtype=float))
@@ -66,6 +79,16 @@ def pattern_loss_db(
         return np.zeros_like(x)
     loss: NDArray[np.float64] = -10 * np.log10(np.maximum(np.cos(x) ** 2, 10 ** (-null_db / 10)))
     return loss + 0.0  # no negative zero on the axis
+
+
+def measured_pattern(aerial: Aerial) -> MeasuredPattern:
+    """Measured pattern of an aerial that has one."""
+    return MeasuredPattern(f'aerial "{aerial.name}"', aerial.cuts)
+
+
+def mounted(polarisation: str) -> AerialPolarisation:
+    """Say how the rods stand."""
+    return "vertical" if polarisation == "vertical" else "horizontal"
 
 
 def class_pattern_loss_db(

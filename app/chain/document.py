@@ -8,10 +8,15 @@
     already_up = false
     pointing_deg = 118                  # left out: looked for
     polarisation = "horizontal"         # left out: looked for
+    deciding_outlet = "Living room"     # left out: every outlet counts
     [[parts]]
     kind = "aerial"
     id = "roof-aerial"
     gain_dbd = [[470, 6], [694, 10]]    # pairs of MHz and dBd
+    …
+    [[parts]]
+    kind = "feeder"
+    after = "roof-aerial"               # left out: fed by the part before; a list at a combiner or switch
     …
 
 A value that is not known is left out (TOML) or null (JSON).
@@ -23,13 +28,53 @@ from collections.abc import Mapping, Sequence
 from dataclasses import MISSING, fields
 from typing import Any
 
-from app.chain.parts import Aerial, Chain, Feeder, MastheadAmplifier, Outlet, Part, Receiver, Splitter
+from app.chain.parts import (
+    AERIAL_POLARISATIONS,
+    Aerial,
+    Attenuator,
+    Chain,
+    Combiner,
+    Equaliser,
+    Feeder,
+    Filter,
+    FlyLead,
+    LaunchAmplifier,
+    MastheadAmplifier,
+    MastTube,
+    Outlet,
+    Part,
+    PowerInserter,
+    Receiver,
+    Splitter,
+    Switch,
+    Tap,
+)
+from app.chain.pattern import Cut, checked_cut
 from app.errors import ChainError
 
 KINDS: dict[str, type[Part]] = {
-    kind.kind: kind for kind in (Aerial, MastheadAmplifier, Feeder, Splitter, Outlet, Receiver)
+    kind.kind: kind
+    for kind in (
+        Aerial,
+        Filter,
+        MastheadAmplifier,
+        Feeder,
+        PowerInserter,
+        LaunchAmplifier,
+        Attenuator,
+        Equaliser,
+        Combiner,
+        Switch,
+        Splitter,
+        Tap,
+        Outlet,
+        FlyLead,
+        Receiver,
+        MastTube,
+    )
 }
-CHAIN_KEYS = tuple(field.name for field in fields(Chain))
+CHAIN_KEYS = tuple(field.name for field in fields(Chain) if field.init)
+ALWAYS_WRITTEN = ("price", "pattern", "place", "measured")  # even if they are as usual
 
 
 def chain_from_document(document: object) -> Chain:
@@ -55,14 +100,73 @@ def chain_from_document(document: object) -> Chain:
 def chain_to_document(chain: Chain) -> dict[str, Any]:
     """Return the document of a chain; what is not known is left out, so that TOML can carry it."""
     frame = {key: getattr(chain, key) for key in CHAIN_KEYS if key != "parts"}
-    return {**_without_none(frame), "parts": [_part_document(part) for part in chain.parts]}
+    if not chain.deciding_outlet:
+        del frame["deciding_outlet"]
+    return {**_without_none(frame), "parts": [part_to_document(part) for part in chain.parts]}
 
 
-def _part_document(part: Part) -> dict[str, Any]:
-    values = {field.name: getattr(part, field.name) for field in fields(part)}
-    if isinstance(part, Aerial):
-        values["gain_dbd"] = [list(pair) for pair in part.gain_dbd]
+def part_from_document(document: object) -> Part:
+    """Part described by a document outside a chain, as the list of parts with prices holds it.
+
+    Raises
+    ------
+    ChainError
+        What came, what is allowed and what to do.
+    """
+    return _part(document, 0)
+
+
+def part_to_document(part: Part) -> dict[str, Any]:
+    """Return the document of a part; what is as usual or not known is left out."""
+    values: dict[str, Any] = {}
+    for field in fields(part):
+        value = getattr(part, field.name)
+        if value == field.default and field.name not in ALWAYS_WRITTEN:
+            continue
+        if field.name == "after":
+            values["after"] = value[0] if len(value) == 1 else list(value)
+        elif field.name == "cuts":
+            values["cuts"] = [cut_to_document(cut) for cut in value]
+        elif isinstance(value, tuple):
+            values[field.name] = [list(pair) for pair in value]
+        else:
+            values[field.name] = value
     return {"kind": part.kind, **_without_none(values)}
+
+
+def cut_to_document(cut: Cut) -> dict[str, Any]:
+    """Return the document of one cut of a measured pattern."""
+    points = [list(pair) for pair in zip(cut.angle_deg, cut.loss_db, strict=True)]
+    known = {key: getattr(cut, key) for key in ("frequency_mhz", "polarisation", "emission")}
+    return {**_without_none(known), "points": points}
+
+
+def _cuts(value: object, what: str, place: str) -> tuple[Cut, ...]:
+    """Cuts of a measured pattern: tables with points and, where they hold for one only, frequency and polarisation."""
+    cuts = []
+    for number, one in enumerate(value if isinstance(value, list | tuple) else (value,)):
+        here = f"{place}[{number}]"
+        if not isinstance(one, Mapping):
+            raise ChainError(f"{what} holds {_came(one)}: use tables with points = [[degrees, loss_db], …]", field=here)
+        _known_keys(one, ("points", "frequency_mhz", "polarisation", "emission"), what, f"{here}.")
+        points = _pairs(one.get("points"), f"{what}: points", f"{here}.points")
+        frequency = one.get("frequency_mhz")
+        planes = [one.get(key) for key in ("polarisation", "emission")]
+        for plane in planes:
+            if plane not in (None, *AERIAL_POLARISATIONS):
+                listed = ", ".join(AERIAL_POLARISATIONS)
+                raise ChainError(f"{what}: {_came(plane)} is no polarisation: use {listed}", field=here, allowed=listed)
+        cuts.append(
+            checked_cut(
+                what,
+                [pair[0] for pair in points],
+                [pair[1] for pair in points],
+                frequency_mhz=None if frequency is None else _read("float", frequency, what, f"{here}.frequency_mhz"),
+                polarisation=planes[0],
+                emission=planes[1],
+            )
+        )
+    return tuple(cuts)
 
 
 def _without_none(values: Mapping[str, Any]) -> dict[str, Any]:
@@ -110,7 +214,7 @@ def _values(
 ) -> dict[str, Any]:
     values: dict[str, Any] = {}
     for field in fields(kind):
-        if field.name in skip:
+        if field.name in skip or not field.init:
             continue
         value = document.get(field.name)
         if value is not None:
@@ -122,7 +226,11 @@ def _values(
 
 def _read(wanted: str, value: object, what: str, place: str) -> Any:
     """Value as a field of that annotated type takes it."""
-    if wanted.startswith("tuple"):
+    if wanted == "tuple[Cut, ...]":
+        return _cuts(value, what, place)
+    if wanted == "tuple[str, ...]":
+        return _ids(value, what, place)
+    if wanted.startswith(("tuple", "Table")):
         return _pairs(value, what, place)
     if wanted.startswith("float") and isinstance(value, int | float) and not isinstance(value, bool):
         return float(value)
@@ -136,12 +244,19 @@ def _read(wanted: str, value: object, what: str, place: str) -> Any:
     raise ChainError(f"{what} is {_came(value)}: use {allowed}", field=place, allowed=allowed)
 
 
+def _ids(value: object, what: str, place: str) -> tuple[str, ...]:
+    ids = (value,) if isinstance(value, str) else value
+    if not isinstance(ids, list | tuple) or not all(isinstance(one, str) for one in ids):
+        raise ChainError(f"{what} is {_came(value)}: use the id of a part, or a list of ids", field=place)
+    return tuple(ids)
+
+
 def _pairs(value: object, what: str, place: str) -> tuple[tuple[float, float], ...]:
     pairs: list[tuple[float, float]] = []
     for pair in value if isinstance(value, list | tuple) else (value,):
         if not (isinstance(pair, list | tuple) and len(pair) == 2):
             raise ChainError(
-                f"{what} holds {_came(pair)}: use a list of pairs such as [[470, 6], [694, 10]], MHz and dBd",
+                f"{what} holds {_came(pair)}: use a list of pairs such as [[470, 6], [694, 10]]",
                 field=place,
             )
         pairs.append((_read("float", pair[0], what, place), _read("float", pair[1], what, place)))

@@ -39,10 +39,15 @@ def power_sum_dbuv(level_dbuv: ArrayLike, axis: int = -1) -> FloatArray:
 
 
 def mean_level_dbuv(level_dbuv: ArrayLike, axis: int = -1) -> FloatArray:
-    """Level of the mean power [dB(µV)] along an axis, of the rows that are known; −inf if none is."""
-    known = np.sum(~np.isnan(np.asarray(level_dbuv, dtype=float)), axis=axis)
+    """Mean in-band level [dB(µV)] along an axis; −inf if none is known.
+
+    The mean weighs each power by itself, Σ p² / Σ p: for equal levels it is their level, and any number of weak
+    emissions from far away does not pull it down.
+    """
+    power = np.nan_to_num(ratio_from_db(level_dbuv))
     with np.errstate(divide="ignore", invalid="ignore"):
-        return np.where(known > 0, power_sum_dbuv(level_dbuv, axis) - 10 * np.log10(known), -np.inf)
+        mean = db_from_ratio(np.sum(power**2, axis=axis) / np.sum(power, axis=axis))
+    return np.where(np.isnan(mean), -np.inf, mean)
 
 
 def output_intercept_dbuv(rated_output_dbuv: ArrayLike) -> FloatArray:

@@ -17,6 +17,7 @@ class Cable:
     b_db: float
     flag: str  # how the figure is known
     source: str
+    loop_ohm_per_km: float  # direct current, there and back
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,6 +38,7 @@ CABLES: dict[str, Cable] = {
         float(row["b_db_per_100m"]),
         row["flag"],
         row["source"],
+        float(row["loop_ohm_per_km"]),
     )
     for row in rows("cables")
 }

@@ -73,7 +73,7 @@ def _names(answer: Document, verdict: Document | None, saved: Mapping[str, Any])
     """Chains in columns: up now, idea 1, idea 2."""
     if verdict is None:
         return list(answer["chains"])[:1]
-    second = saved.get("second")
+    second = str(saved.get("second") or "")
     shown = [verdict["baseline"], verdict["candidate"]]
     return [*shown, second] if second in answer["chains"] and second not in shown else shown
 

@@ -1,4 +1,4 @@
-"""Roofs and chains as JSON documents: {"id", "name", "created", "updated", and whatever they hold}."""
+"""Roofs, chains and priced parts as JSON documents: {"id", "name", "created", "updated", and whatever they hold}."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ from typing import Any, Literal, cast
 from app.errors import NotStoredError, RequestError, StoreError
 
 Document = dict[str, Any]
-Kind = Literal["roof", "chain"]
+Kind = Literal["roof", "chain", "part"]
 
 _SELECT = "SELECT id, name, body, created, updated FROM document"
 _OURS = ("id", "name", "created", "updated")

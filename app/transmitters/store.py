@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import sqlite3
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
@@ -286,6 +286,36 @@ class Store:
         """Remove one reading; NotStoredError if there is none."""
         with self._database.transaction(write=True) as connection:
             readings.remove(connection, reading_id)
+
+    # Parts and whole files
+
+    def list_parts(self) -> list[Document]:
+        """Every stored part with its price, oldest first."""
+        with self._database.transaction() as connection:
+            return documents.listed(connection, "part")
+
+    def get_part(self, part: str) -> Document:
+        """One part by id; NotStoredError if there is none."""
+        with self._database.transaction() as connection:
+            return documents.one(connection, "part", part)
+
+    def put_part(self, document: Mapping[str, Any]) -> Document:
+        """Store a part under its "id"; return it as stored."""
+        with self._database.transaction(write=True) as connection:
+            return documents.put(connection, "part", document)
+
+    def delete_part(self, part: str) -> None:
+        """Remove one part; NotStoredError if there is none."""
+        with self._database.transaction(write=True) as connection:
+            documents.remove(connection, "part", part)
+
+    def put_chains_and_parts(self, chains: Sequence[Mapping[str, Any]], parts: Sequence[Mapping[str, Any]]) -> None:
+        """Store many at once: all of them, or none if one cannot be stored."""
+        with self._database.transaction(write=True) as connection:
+            for chain in chains:
+                documents.put(connection, "chain", chain)
+            for part in parts:
+                documents.put(connection, "part", part)
 
 
 def _boxes(latitude_deg: float, longitude_deg: float, reach_km: float) -> list[tuple[float, float, float, float]]:

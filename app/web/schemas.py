@@ -14,11 +14,15 @@ from typing import Annotated, Any, Literal
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, ValidationInfo, model_validator
 from pydantic_core import PydanticCustomError
 
+from app.block_query import BlockQuestion
 from app.chain.document import chain_from_document
+from app.chain.windows import DEFAULT_STANDARD
+from app.cheapest import Wish
 from app.errors import AppError
 from app.kept_readings import readings_of_documents
 from app.request import AssessRequest
 from app.roof import Obstacle, Roof, Surroundings
+from app.sweeps import HEIGHTS_M
 from app.transmitters.store import Store
 
 DEEPEST = 12  # of lists and objects inside one another
@@ -147,6 +151,70 @@ class ReadingIn(Strict):
     latitude_deg: float
     longitude_deg: float
     reading: ReadingDocument
+
+
+class AtRoofIn(Strict):
+    """A roof and what is asked of its chains."""
+
+    roof: RoofIn
+    chains: list[Name | ChainDocument] | None = Field(None, max_length=20)
+    wanted: list[Name] | None = Field(None, max_length=1000)
+    availability_percent: Literal[50, 90, 99] = 99
+    reach_km: float = 150.0
+    method: Literal["p1812", "p1546", "both"] = "both"
+    assumptions: dict[str, float] = {}
+
+    def assess_request(self) -> AssessRequest:
+        """Return the question as `assess` takes it."""
+        return AssessRequest(
+            roof=self.roof.roof(),
+            chains=None
+            if self.chains is None
+            else tuple(one if isinstance(one, str) else chain_from_document(one) for one in self.chains),
+            wanted=None if self.wanted is None else tuple(self.wanted),
+            availability_percent=self.availability_percent,
+            reach_km=self.reach_km,
+            method=self.method,
+            assumptions=self.assumptions,
+        )
+
+
+class SweepIn(AtRoofIn):
+    """What turning, raising or doubling the aerial would change."""
+
+    heights_m: list[float] = Field(list(HEIGHTS_M), max_length=25)
+
+
+class CheapestIn(AtRoofIn):
+    """The cheapest chain that does."""
+
+    outlets: int = 1
+    feeder_m: float = 15.0
+    labour_price: float = 0.0
+    visit_price: float = 0.0
+    currency: Name = "EUR"
+
+    def wish(self) -> Wish:
+        """Return what the chain has to be."""
+        return Wish(self.outlets, self.feeder_m, self.labour_price, self.visit_price, self.currency)
+
+
+class BlockIn(AtRoofIn):
+    """A block of flats from four answers; the aerial by its id among stored parts and chains."""
+
+    outlets: int
+    layout: Literal["star", "riser"]
+    longest_m: float
+    shortest_m: float
+    aerial: Name
+    standard: Name = DEFAULT_STANDARD
+    name: Name = "block"
+
+    def question(self) -> BlockQuestion:
+        """Return the four answers."""
+        return BlockQuestion(
+            self.outlets, self.layout, self.longest_m, self.shortest_m, self.aerial, self.standard, self.name
+        )
 
 
 class SavedRoofIn(Strict):

@@ -95,7 +95,7 @@ def changed(index=None, **changes):
         (changed(pointing_deg=True), r"pointing_deg is True: use a number", "pointing_deg"),
         (
             changed(1, kind="rope"),
-            r'part "downlead" is of kind "rope": use one of aerial, masthead-amp',
+            r'part "downlead" is of kind "rope": use one of aerial, filter, masthead-amp',
             "parts[1].kind",
         ),
         (

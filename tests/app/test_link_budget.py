@@ -10,7 +10,8 @@ from app.assumptions import Assumptions
 from app.chain.catalogue import demo_chains
 from app.chain.parts import Aerial, Chain, Feeder, MastheadAmplifier, Outlet, Receiver, Splitter
 from app.errors import RequestError
-from app.link_budget import Signals, ledger_steps, receive
+from app.link_budget import Signals, receive
+from app.outlet_ledger import ledger_steps
 from propagation.noise import man_made_fam_db
 
 DEFAULTS = Assumptions()

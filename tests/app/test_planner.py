@@ -76,11 +76,17 @@ def test_every_ledger_runs_from_the_radiated_power_to_the_margin(ask):
     assert ledgers >= 40
 
 
-def test_chance_of_one_emission_is_the_normal_of_its_margin(ask):
-    for emission in ask(now="roof-yagi")["emissions"]:
-        for chain in emission["chains"].values():
-            expected = 0.5 * math.erfc(-chain["margin_db"] / chain["sigma_db"] / math.sqrt(2))
-            assert chain["chance"] == pytest.approx(expected, abs=2e-3)
+def test_chance_of_one_emission_is_the_normal_of_its_margin_less_too_much_level(ask):
+    """Enough by its own margin; too much by the headroom, which the loudest emission's error eats up."""
+    emissions = ask(now="roof-yagi")["emissions"]
+    for name in ("loft-dipole", "roof-yagi", "high-gain", "high-gain-masthead"):
+        cells = [emission["chains"][name] for emission in emissions if emission["chains"]]
+        loudest = max(cells, key=lambda cell: cell["outlets"][0]["level_median_dbuv"])
+        for cell in cells:
+            enough = 0.5 * math.erfc(-cell["margin_db"] / cell["sigma_db"] / math.sqrt(2))
+            headroom_db = min(outlet["headroom_db"] for outlet in cell["outlets"])
+            too_much = 0.5 * math.erfc(headroom_db / loudest["sigma_db"] / math.sqrt(2))
+            assert cell["chance"] == pytest.approx(max(enough - too_much, 0), abs=2e-3)
 
 
 def test_multiplex_on_two_masts_has_at_least_the_better_ones_chance(ask):
@@ -256,5 +262,5 @@ def test_an_aerial_is_turned_to_a_mast_where_that_is_as_good(ask):
         (pointing,) = chain["pointings"]
         best = max(pointing["expected_by_degree"])
         at_masts = [pointing["expected_by_degree"][bearing % 360] for bearing in bearings]
-        if max(at_masts) >= best - 0.02:
+        if max(at_masts) >= best - 0.004:
             assert round(pointing["pointing_deg"]) in bearings, name

@@ -218,7 +218,9 @@ def test_no_fault_of_accessibility(watched, browser, browser_without_webgl, sche
     for show in (start, answered):
         show(page)
         settled(page)
-        page.locator(".changes details, details.seen").evaluate_all("all => { for (const one of all) one.open = true; }")
+        page.locator(".changes details, details.seen").evaluate_all(
+            "all => { for (const one of all) one.open = true; }"
+        )
         found = Axe().run(page, options={"runOnly": RULES}).response["violations"]
         assert [(fault["id"], fault["nodes"][0]["html"][:150]) for fault in found] == []
 

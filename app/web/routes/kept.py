@@ -1,4 +1,4 @@
-"""What the user keeps: roofs and chains."""
+"""What the user keeps: roofs, chains, and parts with prices."""
 
 from __future__ import annotations
 
@@ -6,7 +6,7 @@ from typing import Annotated, Any
 
 from fastapi import APIRouter, Path, Response
 
-from app.chain.document import chain_from_document, chain_to_document
+from app.chain.document import chain_from_document, chain_to_document, part_from_document, part_to_document
 from app.web.context import ContextDep
 from app.web.schemas import ChainDocument, SavedRoofIn
 
@@ -79,6 +79,42 @@ def forget_chain(id: Id, context: ContextDep) -> Response:
     """Remove one kept chain."""
     context.store.delete_chain(id)
     return Response(status_code=204)
+
+
+@router.get("/parts", summary="Kept parts with prices")
+def parts(context: ContextDep) -> dict[str, list[Document]]:
+    """List every kept part."""
+    return {"parts": context.store.list_parts()}
+
+
+@router.post("/parts", status_code=201, summary="Keep a part")
+def keep_part(part: ChainDocument, context: ContextDep) -> Document:
+    """Keep a part under its id, once it has been read as one."""
+    return context.store.put_part(_read_part(part))
+
+
+@router.get("/parts/{id}", summary="One kept part")
+def part(id: Id, context: ContextDep) -> Document:
+    """Return one kept part."""
+    return context.store.get_part(id)
+
+
+@router.put("/parts/{id}", summary="Change a kept part")
+def change_part(id: Id, part: ChainDocument, context: ContextDep) -> Document:
+    """Put a part in the place of a kept one, once it has been read as one."""
+    kept = context.store.get_part(id)
+    return context.store.put_part(_read_part({**part, "id": kept["id"]}))
+
+
+@router.delete("/parts/{id}", status_code=204, summary="Forget a part")
+def forget_part(id: Id, context: ContextDep) -> Response:
+    """Remove one kept part."""
+    context.store.delete_part(id)
+    return Response(status_code=204)
+
+
+def _read_part(part: Document) -> Document:
+    return part_to_document(part_from_document({key: part[key] for key in part if key not in ("created", "updated")}))
 
 
 def _checked(saved: SavedRoofIn) -> Document:

@@ -1,0 +1,52 @@
+"""Answers about chains in plain text, for a terminal."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from app.lists import table
+
+
+def told_sweep(document: Mapping[str, Any]) -> str:
+    """Return the three sweeps as text: heights as a table, then pointings, then a second aerial."""
+    lines = []
+    rows = [
+        {"height m": row["aerial_agl_m"], **{name: one["expected_count"] for name, one in row["chains"].items()}}
+        for row in document["height"]
+    ]
+    if rows:
+        lines += ["expected multiplexes by height", table(rows, ""), ""]
+    for name, one in document["pointing"].items():
+        lines.append(f"{name}: best turned to {one['best_deg']:.0f}° true, rods {one['polarisation']}")
+    lines.append("")
+    lines += [f"{name}: {one['sentence']}" for name, one in document["two_aerials"].items()]
+    return "\n".join(lines)
+
+
+def told_cheapest(document: Mapping[str, Any]) -> str:
+    """Return the Pareto front as text, cheapest first."""
+    lines = [f"{document['tried']} chains tried"]
+    for row in document["front"]:
+        price = f"{row['price']:g} {document['currency']}"
+        lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['name']}")
+        lines.append(f"  {row['reason']}")
+    if document["left_out"]:
+        lines.append(f"left out for want of a price: {', '.join(document['left_out'])}")
+    return "\n".join(lines)
+
+
+def told_block(document: Mapping[str, Any]) -> str:
+    """Return the proposal for a block as text: parts, levels, what is still to do."""
+    parts = [
+        {
+            "part": part["name"],
+            "kind": part["kind"],
+            "after": part.get("after", ""),
+            "gain or loss dB": part.get("gain_db", part.get("tap_loss_db", part.get("loss_db", ""))),
+            "length m": part.get("length_m", ""),
+        }
+        for part in document["chain"]["parts"]
+    ]
+    findings = document["findings"] or [f"every channel inside the window of {document['standard']} at every outlet"]
+    return "\n".join([table(parts, ""), "", table(document["outlets"], ""), "", *(f"- {one}" for one in findings)])
