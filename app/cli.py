@@ -42,6 +42,7 @@ def serve(
     """Serve the page and the API until stopped; print the address."""
     import uvicorn
 
+    from app.fast_paths import warm_up_in_background
     from app.paths import data_dir
     from app.settings import load_settings
     from app.web.main import create_app
@@ -53,6 +54,7 @@ def serve(
         settings = settings.model_copy(update=changes)
         listener = _listener(settings.host, settings.port)
         world = open_world()
+    warm_up_in_background(world.ground)
     address = f"http://{f'[{settings.host}]' if ':' in settings.host else settings.host}:{listener.getsockname()[1]}/"
     show({"address": address}, as_json, lambda: f"Gainworth listens at {address} (stop with Ctrl-C)")
     sys.stdout.flush()

@@ -169,7 +169,7 @@ def _answered(
             diffraction_loss_db=float(diffraction.loss_db[e] + both.near_edge_db[e]),
             land_km=float(digest.land_km[e]),
             sea_km=float(digest.sea_km[e]),
-            ground_kinds=paths[e].profile.kinds,
+            ground_kinds=paths[e].kinds,
             sd_db=float(sd[e]),
         )
         answers.append(

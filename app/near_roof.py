@@ -8,6 +8,7 @@ Bullington's construction adds that for further edges, which a house before the 
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -55,6 +56,33 @@ def flattened_surface_m(profile: Profile) -> FloatArray:
     return surface
 
 
+def standing_towards(roof: Roof, bearing_deg: float, assumptions: Assumptions) -> list[tuple[Standing, float, float]]:
+    """Return what stands near the roof in a direction: what, its distance [km], its height above the ground [m]."""
+    standing: list[tuple[Standing, float, float]] = [
+        ("obstacle", one.distance_m / 1e3, one.height_agl_m)
+        for one in roof.obstacles
+        if one.stands_towards(bearing_deg)
+    ]
+    cover_m = surroundings_height_m(roof, assumptions)
+    if cover_m > 0:
+        standing.append(("surroundings", SURROUNDINGS_KM, cover_m))
+    return standing
+
+
+def edge_into_ray(
+    what: Standing, at_km: float, height_m: float, aerial_agl_m: float, source_km: float, source_slope: float
+) -> Edge:
+    """Return what stands at a distance as an edge into the ray from its source: that one's distance and slope [m/km].
+
+    References
+    ----------
+    Rec. ITU-R P.526-16, section 4.1, eq. (26).
+    """
+    into_ray_m = height_m - aerial_agl_m - source_slope * at_km
+    legs = 0.002 * source_km / (at_km * (source_km - at_km))
+    return Edge(what, at_km, height_m, into_ray_m, into_ray_m * float(np.sqrt(legs)))
+
+
 def edges_near_roof(
     profile: Profile,
     surface_amsl_m: FloatArray,
@@ -66,37 +94,29 @@ def edges_near_roof(
     """Return what stands near the roof towards the mast, worst first.
 
     The ray comes from the antenna, or from the horizon where the surface hides the antenna.
-
-    References
-    ----------
-    Rec. ITU-R P.526-16, section 4.1, eq. (26).
     """
     _, bearing = distance_and_bearing(
         profile.latitude_deg[-1], profile.longitude_deg[-1], profile.latitude_deg[0], profile.longitude_deg[0]
     )
-    standing: list[tuple[Standing, float, float]] = [
-        ("obstacle", one.distance_m / 1e3, one.height_agl_m)
-        for one in roof.obstacles
-        if one.stands_towards(float(bearing))
-    ]
-    cover_m = surroundings_height_m(roof, assumptions)
-    if cover_m > 0:
-        standing.append(("surroundings", SURROUNDINGS_KM, cover_m))
-
     away_km = profile.distance_km[-1] - profile.distance_km[:-1]
     heights = surface_amsl_m[:-1].copy()
     heights[0] += antenna_agl_m
     aerial_amsl_m = float(profile.bare_amsl_m[-1]) + roof.aerial_agl_m
     slope = (heights - aerial_amsl_m) / away_km - 500 * away_km / effective_earth_radius_km  # m per km
     edges = []
-    for what, at_km, height_m in standing:
+    for what, at_km, height_m in standing_towards(roof, float(bearing), assumptions):
         beyond = np.flatnonzero(away_km > at_km)
         if beyond.size == 0:
             continue  # the mast stands nearer than the obstacle
         source = int(beyond[np.argmax(slope[beyond])])
-        into_ray_m = height_m - roof.aerial_agl_m - float(slope[source]) * at_km
-        legs = 0.002 * float(away_km[source]) / (at_km * float(away_km[source] - at_km))
-        edges.append(Edge(what, at_km, height_m, into_ray_m, into_ray_m * float(np.sqrt(legs))))
+        edges.append(
+            edge_into_ray(what, at_km, height_m, roof.aerial_agl_m, float(away_km[source]), float(slope[source]))
+        )
+    return worst_first(edges)
+
+
+def worst_first(edges: Sequence[Edge]) -> tuple[Edge, ...]:
+    """Edges in the order of what they cost."""
     return tuple(sorted(edges, key=lambda edge: -edge.size))
 
 

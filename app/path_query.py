@@ -14,7 +14,7 @@ from app.assumptions import Assumptions
 from app.disagreement import apart_reason
 from app.errors import RequestError
 from app.methods import fields_of_methods
-from app.paths_to_roof import Path, path_over
+from app.paths_to_roof import DrawnPath, Path, path_over
 from app.roof import Roof, check
 from app.sentences import path_kind, path_sentence
 from app.site import missing_ground
@@ -183,7 +183,7 @@ def _p1812_terms(path: Path, frequency_mhz: float, polarisation: str) -> dict[st
     return {"time_percent": list(TIMES_PERCENT), **terms}
 
 
-def _drawing(path: Path, frequency_mhz: float, antenna_agl_m: float, aerial_agl_m: float) -> dict[str, Any]:
+def _drawing(path: DrawnPath, frequency_mhz: float, antenna_agl_m: float, aerial_agl_m: float) -> dict[str, Any]:
     """Points for a drawing: the highest ground of each of up to 400 stretches, so that no ridge is lost."""
     x, ground = path.profile.distance_km, path.surface_amsl_m
     inner = np.array_split(np.arange(1, len(x) - 1), min(DRAWN_POINTS, max(1, len(x) - 2)))

@@ -4,13 +4,22 @@ from __future__ import annotations
 
 import pathlib
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
-from app.near_roof import Edge, edges_near_roof, flattened_surface_m
+from app.fast_paths import Line, fast_digests, is_ready
+from app.kept_paths import KeptPaths
+from app.near_roof import (
+    Edge,
+    edge_into_ray,
+    edges_near_roof,
+    flattened_surface_m,
+    standing_towards,
+    worst_first,
+)
 from app.roof import Roof
 from app.transmitters.model import Transmitter
 from propagation import p1812
@@ -42,8 +51,7 @@ class PathKey:
 class Path:
     """One path without any frequency."""
 
-    profile: Profile
-    surface_amsl_m: FloatArray  # (n,) what a ray meets, flattened near the roof; equal to the bare ground at both ends
+    kinds: tuple[str, ...]  # of the rasters under it
     antenna_agl_m: float
     aerial_agl_m: float
     digest: PathDigest
@@ -64,6 +72,14 @@ class Path:
         return min(over_ground, float(self.edges[0].clearance_ratio(frequency_mhz))) if self.edges else over_ground
 
 
+@dataclass(frozen=True, slots=True)
+class DrawnPath(Path):
+    """A path with its profile."""
+
+    profile: Profile
+    surface_amsl_m: FloatArray  # (n,) what a ray meets, flattened near the roof; equal to the bare ground at both ends
+
+
 def paths_to_roof(
     roof: Roof,
     keys: Sequence[PathKey],
@@ -71,9 +87,84 @@ def paths_to_roof(
     assumptions: Assumptions,
     refractivity_maps: pathlib.Path | None = None,
 ) -> dict[PathKey, Path | str]:
-    """Return the path of each key, or the reason why there is none."""
+    """Return the path of each key, or the reason why there is none.
+
+    What was asked for before is kept; of the rest, the fast form answers what it can.
+    """
+    kept = KeptPaths.of(ground, roof, assumptions, refractivity_maps)
+    paths: dict[PathKey, Path | str] = {key: path for key in keys if (path := kept.get(key)) is not None}
+    missing = [key for key in dict.fromkeys(keys) if key not in paths]
+    paths |= _fast_paths(roof, missing, ground, assumptions, refractivity_maps)
+    slow = [key for key in missing if key not in paths]
+    for key, path in drawn_paths_to_roof(roof, slow, ground, assumptions, refractivity_maps).items():
+        paths[key] = path if isinstance(path, str) else without_profile(path)
+    kept.keep({key: paths[key] for key in missing})
+    return paths
+
+
+def _fast_paths(
+    roof: Roof,
+    keys: Sequence[PathKey],
+    ground: Ground,
+    assumptions: Assumptions,
+    refractivity_maps: pathlib.Path | None,
+) -> dict[PathKey, Path | str]:
+    """Return the paths that the compiled form holds, once it is ready."""
+    if not keys or not is_ready(ground):
+        return {}
+    _, bearings = distance_and_bearing(
+        roof.latitude_deg,
+        roof.longitude_deg,
+        np.array([key.transmitter.latitude_deg for key in keys]),
+        np.array([key.transmitter.longitude_deg for key in keys]),
+    )
+    standing = [standing_towards(roof, bearing, assumptions) for bearing in bearings.tolist()]
+    lines = [
+        Line(
+            key.transmitter.latitude_deg,
+            key.transmitter.longitude_deg,
+            key.antenna_agl_m,
+            tuple(at_km for _, at_km, _ in near),
+        )
+        for key, near in zip(keys, standing, strict=True)
+    ]
+    return {
+        keys[one.line]: Path(
+            kinds=(one.kind,),
+            antenna_agl_m=keys[one.line].antenna_agl_m,
+            aerial_agl_m=roof.aerial_agl_m,
+            digest=one.digest,
+            terms=one.terms,
+            p1812_refusal="",
+            delta_n_per_km=one.delta_n_per_km,
+            n0=one.n0,
+            edges=worst_first(
+                [
+                    edge_into_ray(what, at_km, height_m, roof.aerial_agl_m, source_km, slope)
+                    for (what, at_km, height_m), (source_km, slope) in zip(standing[one.line], one.sources, strict=True)
+                    if source_km > 0
+                ]
+            ),
+        )
+        for one in fast_digests(roof, lines, ground, refractivity_maps)
+    }
+
+
+def without_profile(path: DrawnPath) -> Path:
+    """Return the path alone, which takes a fiftieth of the memory."""
+    return Path(**{field.name: getattr(path, field.name) for field in fields(Path)})
+
+
+def drawn_paths_to_roof(
+    roof: Roof,
+    keys: Sequence[PathKey],
+    ground: Ground,
+    assumptions: Assumptions,
+    refractivity_maps: pathlib.Path | None = None,
+) -> dict[PathKey, DrawnPath | str]:
+    """Return the path of each key with its profile, or the reason why there is none."""
     profiles: dict[str, Profile | str] = {}
-    paths: dict[PathKey, Path | str] = {}
+    paths: dict[PathKey, DrawnPath | str] = {}
     for key in keys:
         if key in paths:
             continue
@@ -95,7 +186,7 @@ def path_over(
     roof: Roof,
     assumptions: Assumptions,
     refractivity_maps: pathlib.Path | None = None,
-) -> Path | str:
+) -> DrawnPath | str:
     """Digest one profile for one antenna height, or say why neither method can."""
     middle = len(profile.distance_km) // 2
     delta_n_per_km, n0 = (
@@ -121,7 +212,8 @@ def path_over(
         terms = _p1812_terms(profile, surface_amsl_m, antenna_agl_m, roof, delta_n_per_km)
     except RangeError as error:
         refusal = str(error)  # P.1546 answers alone
-    return Path(
+    return DrawnPath(
+        kinds=profile.kinds,
         profile=profile,
         surface_amsl_m=surface_amsl_m,
         antenna_agl_m=antenna_agl_m,

@@ -10,7 +10,7 @@ import numpy as np
 
 from app.assumptions import Assumptions
 from app.errors import RequestError
-from app.paths_to_roof import Path, PathKey, paths_to_roof
+from app.paths_to_roof import DrawnPath, PathKey, drawn_paths_to_roof
 from app.roof import Roof, check
 from app.site import site_of
 from app.transmitters.model import Transmitter
@@ -83,7 +83,7 @@ def _masts(
         antenna_agl_m = emission.antenna_agl_m if known is None else max(known[1], emission.antenna_agl_m)
         highest[mast.id] = mast, antenna_agl_m, distance_km, bearing_deg
     keys = {name: PathKey(mast, antenna_agl_m) for name, (mast, antenna_agl_m, _, _) in highest.items()}
-    paths = paths_to_roof(roof, list(keys.values()), ground, Assumptions(), refractivity_maps)
+    paths = drawn_paths_to_roof(roof, list(keys.values()), ground, Assumptions(), refractivity_maps)
     rows = []
     for name, (mast, antenna_agl_m, distance_km, bearing_deg) in highest.items():
         path = paths[keys[name]]
@@ -97,12 +97,12 @@ def _masts(
                 "bearing_deg": round(bearing_deg, 2),
                 "antenna_agl_m": antenna_agl_m,
             }
-            | (_against_horizon(path) if isinstance(path, Path) else {"stands": None, "reason": path})
+            | (_against_horizon(path) if isinstance(path, DrawnPath) else {"stands": None, "reason": path})
         )
     return sorted(rows, key=lambda row: float(row["distance_km"]))
 
 
-def _against_horizon(path: Path) -> dict[str, Any]:
+def _against_horizon(path: DrawnPath) -> dict[str, Any]:
     """Angles of the antenna and of the highest ground before it, seen from the aerial."""
     digest, profile = path.digest, path.profile
     radius_km, length_km = float(digest.effective_earth_radius_km), float(digest.path_length_km)

@@ -83,13 +83,27 @@ def bullington_edge(
     ground = heights + bulge_per_km2[..., None] * (x * to_rx)
 
     steepest = ((ground - a[..., None]) / x).max(axis=-1)  # eq. (13)
-    direct = (b - a) / d  # eq. (14)
-    sees = steepest < direct
-
     ray = (a[..., None] * to_rx + b[..., None] * x) / d[..., None]
     clear = ((ground - ray) * np.sqrt(0.002 * d[..., None] / (x * to_rx))).max(axis=-1)  # eq. (15)
-
     steepest_back = ((ground - b[..., None]) / to_rx).max(axis=-1)  # eq. (17)
+    return bullington_edge_of_rays(steepest, steepest_back, clear, d, a, b)
+
+
+def bullington_edge_of_rays(
+    steepest: FloatArray,
+    steepest_back: FloatArray,
+    clear: FloatArray,
+    path_length_km: FloatArray,
+    tx_amsl_m: FloatArray,
+    rx_amsl_m: FloatArray,
+) -> FloatArray:
+    """Bullington's edge [m^0.5] from the highest slopes seen from both ends and the largest nu in between.
+
+    Elementwise. Slopes of the profile with the Earth's bulge, eqs. (13) and (17) [m/km]; `clear` is eq. (15) without
+    its wavelength [m^0.5]. References as `bullington_edge`, eqs. (14)-(20).
+    """
+    d, a, b = path_length_km, tx_amsl_m, rx_amsl_m
+    sees = steepest < (b - a) / d  # eq. (14)
     slopes = np.where(sees, 1.0, steepest + steepest_back)
     point = np.where(sees, d / 2, (b - a + steepest_back * d) / slopes)  # eq. (18)
     rise = a + steepest * point - (a * (d - point) + b * point) / d
@@ -181,16 +195,39 @@ def smooth_earth(
     x, inner = x[..., 1:-1], ground[..., 1:-1]
     to_rx = d[..., None] - x
     above = inner - (a[..., None] * to_rx + b[..., None] * x) / d[..., None]
-    highest = above.max(axis=-1)
-    from_tx, from_rx = (above / x).max(axis=-1), (above / to_rx).max(axis=-1)  # eq. (89)
-    obstructed = highest > 0
+    return smooth_earth_of_fit(
+        tx_fit,
+        rx_fit,
+        above.max(axis=-1),
+        (above / x).max(axis=-1),
+        (above / to_rx).max(axis=-1),
+        ground[..., 0],
+        ground[..., -1],
+    )
+
+
+def smooth_earth_of_fit(
+    tx_fit_amsl_m: FloatArray,
+    rx_fit_amsl_m: FloatArray,
+    highest_m: FloatArray,
+    from_tx: FloatArray,
+    from_rx: FloatArray,
+    tx_ground_amsl_m: FloatArray,
+    rx_ground_amsl_m: FloatArray,
+) -> SmoothEarth:
+    """Smooth Earth from the fitted line and the ground's height over the line between both antennas.
+
+    Elementwise: the highest point over it [m] and its slopes as seen from both ends [m/km], eq. (89).
+    References as `smooth_earth`, eqs. (90) and (91).
+    """
+    obstructed = highest_m > 0
     share = from_tx / np.where(obstructed, from_tx + from_rx, 1.0)
-    lowered = np.where(obstructed, highest, 0.0)
+    lowered = np.where(obstructed, highest_m, 0.0)
     return SmoothEarth(
-        tx_fit_amsl_m=tx_fit,
-        rx_fit_amsl_m=rx_fit,
-        tx_amsl_m=np.minimum(tx_fit - lowered * share, ground[..., 0]),  # eqs. (90), (91)
-        rx_amsl_m=np.minimum(rx_fit - lowered * (1 - share), ground[..., -1]),
+        tx_fit_amsl_m=tx_fit_amsl_m,
+        rx_fit_amsl_m=rx_fit_amsl_m,
+        tx_amsl_m=np.minimum(tx_fit_amsl_m - lowered * share, tx_ground_amsl_m),
+        rx_amsl_m=np.minimum(rx_fit_amsl_m - lowered * (1 - share), rx_ground_amsl_m),
     )
 
 

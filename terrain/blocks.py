@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+from collections.abc import Iterator
 from typing import Any
 
 import numpy as np
@@ -91,6 +92,26 @@ class Blocks:
             coarse = self._pyramid(block, level, what)
             values[which] = coarse[(row[which] - top) // COARSE[level], (column[which] - left) // COARSE[level]]
         return values
+
+    def parts(self) -> Iterator[tuple[int, int, NDArray[Any], NDArray[Any], NDArray[np.bool_]]]:
+        """Every block: its first row and column, samples as stored, the same with small voids bridged, water."""
+        for down in range(self._down):
+            for across in range(self._across):
+                block = (down, across)
+                samples = self._samples(block)
+                dry = not (self._metres(samples) == 0).any()
+                water = np.zeros(samples.shape, dtype=bool) if dry else self._water(block)
+                yield (
+                    down * self._raster.block_rows,
+                    across * self._raster.block_columns,
+                    samples,
+                    self._bridged(block),
+                    water,
+                )
+
+    def is_void(self, samples: NDArray[Any]) -> NDArray[np.bool_]:
+        """Which stored samples are missing."""
+        return is_void(samples, self._raster.void)
 
     def void_share(self) -> float | None:
         """Share of missing samples, 0 to 1, or None as long as the raster was never read whole."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import TypeVar
 
 import numpy as np
 from affine import Affine
@@ -14,6 +15,7 @@ from terrain.errors import RasterError
 from terrain.geodesy import distance_and_bearing
 
 FloatArray = NDArray[np.float64]
+Number = TypeVar("Number", float, FloatArray)
 
 _WGS84 = CRS.from_epsg(4326)
 
@@ -66,6 +68,21 @@ class Grid:
         sides_km, _ = distance_and_bearing(lat[0], lon[0], lat[1:], lon[1:])
         return replace(grid, spacing_m=1e3 * float(np.sqrt(sides_km.prod())))
 
+    def shifted(self, rows: int, columns: int, transform: Affine) -> Grid:
+        """Grid of the same coordinate system with another corner and size; it may reach over a pole by a few rows."""
+        west, south, east, north = _bounds(rows, columns, transform, self.to_crs)
+        turns = self.turns_deg
+        return replace(
+            self,
+            rows=rows,
+            columns=columns,
+            transform=transform,
+            west_deg=west - turns,
+            south_deg=south,
+            east_deg=east - turns,
+            north_deg=north,
+        )
+
     def index(self, lat: FloatArray, lon: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Row and column (fractional) of positions [deg]; NaN or outside the raster where it does not reach."""
         if self.to_crs is None:
@@ -77,12 +94,12 @@ class Grid:
         else:
             x, y = (np.asarray(value) for value in self.to_crs.transform(lon, lat))
         with np.errstate(invalid="ignore"):
-            column, row = _apply(~self.transform, x, y)
+            column, row = apply(~self.transform, x, y)
         return row - 0.5, column - 0.5
 
     def position(self, row: FloatArray, column: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Latitude and longitude [deg] of rows and columns, fractional or outside the raster alike."""
-        x, y = _apply(self.transform, column + 0.5, row + 0.5)
+        x, y = apply(self.transform, column + 0.5, row + 0.5)
         if self.to_crs is not None:
             x, y = self.to_crs.transform(x, y, direction="INVERSE")
         lon = (np.asarray(x, dtype=float) + 180.0) % 360.0 - 180.0
@@ -116,7 +133,8 @@ class Grid:
         return 1e-6 if self.to_crs is None else 1e-3 * (self.north_deg - self.south_deg)
 
 
-def _apply(transform: Affine, across: FloatArray, down: FloatArray) -> tuple[FloatArray, FloatArray]:
+def apply(transform: Affine, across: Number, down: Number) -> tuple[Number, Number]:
+    """Turn columns and rows of pixel corners into x, y, or back with the inverse."""
     t = transform
     return t.a * across + t.b * down + t.c, t.d * across + t.e * down + t.f
 
@@ -146,7 +164,7 @@ def _bounds(
 ) -> tuple[float, float, float, float]:
     """West, south, east, north of the pixels' outer edges [deg]; east may exceed 180, never below west."""
     across, down = np.array([0.0, columns, columns, 0.0]), np.array([0.0, 0.0, rows, rows])
-    corner_x, corner_y = _apply(transform, across, down)
+    corner_x, corner_y = apply(transform, across, down)
     box = (corner_x.min(), corner_y.min(), corner_x.max(), corner_y.max())
     if to_crs is None:
         return float(box[0]), float(box[1]), float(box[2]), float(box[3])

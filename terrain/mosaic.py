@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from pathlib import Path
 
 import numpy as np
@@ -16,6 +17,7 @@ from terrain.cache import ArrayCache
 from terrain.errors import RasterError
 from terrain.grid import Grid
 from terrain.raster import SUFFIXES, Raster, open_raster
+from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
 
@@ -60,9 +62,10 @@ class Ground:
     across the seam take their corners from both; at an outer edge the last sample holds for half a cell.
     """
 
-    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused]) -> None:
+    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused], cache: ArrayCache) -> None:
         self._layers = tuple(layers)
         self.refused = tuple(refused)
+        self._cache = cache
 
     @classmethod
     def open(cls, paths: Sequence[Path], cache_dir: Path) -> Ground:
@@ -84,7 +87,7 @@ class Ground:
                 seen.add(identity)
                 layers.append(_Layer(raster, Blocks(raster, cache)))
         layers.sort(key=lambda layer: (round(layer.raster.grid.spacing_m, 1), layer.raster.name))
-        return cls(layers, refused)
+        return cls(layers, refused, cache)
 
     @property
     def rasters(self) -> tuple[RasterInfo, ...]:
@@ -107,7 +110,7 @@ class Ground:
             )
         return tuple(infos)
 
-    @property
+    @cached_property
     def version(self) -> str:
         """Short hash that changes with any raster, its place or its kind."""
         digest = hashlib.sha256()
@@ -115,6 +118,13 @@ class Ground:
             raster = layer.raster
             digest.update(f"{raster.content} {raster.kind} {raster.crs} {tuple(raster.grid.transform)}\n".encode())
         return digest.hexdigest()[:12]
+
+    def sheets(self, wanted: Callable[[Raster], bool] = lambda _: True) -> list[Sheet]:
+        """The wanted rasters laid together as far as one array can hold them (sheet.py), decoded the first time.
+
+        Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
+        """
+        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
 
     def survey(self) -> Ground:
         """Read every raster whole, once: void shares are known, and damaged files join `refused`."""
@@ -125,7 +135,7 @@ class Ground:
                 layers.append(layer)
             except RasterError as error:
                 refused.append(Refused(layer.raster.path, str(error)))
-        return Ground(layers, refused)
+        return Ground(layers, refused, self._cache)
 
     def elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> FloatArray:
         """Height above sea level [m], bilinear between samples; NaN where no raster has a value.

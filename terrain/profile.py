@@ -117,8 +117,8 @@ def _bare_along_m(
     knots = np.unique(np.append(nearest, np.flatnonzero(near)[[0, -1]]))
     bare = bare_ground_m(ground, lat[knots], lon[knots])
     known = np.isfinite(bare)
-    if not known.any():
-        return surface_amsl_m.copy()
+    if not (surface_amsl_m[knots] > bare).any():
+        return surface_amsl_m.copy()  # nothing stands anywhere
     at_km, bare = distance_km[knots[known]], bare[known]
     cover_m = np.interp(distance_km, at_km, surface_amsl_m[knots[known]] - bare)
     by_ground = np.interp(distance_km, at_km, bare)

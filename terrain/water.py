@@ -13,6 +13,10 @@ SMALLEST_WATER_KM2 = 1.0
 # Rec. ITU-R P.1812-7, section 3.2: other water counts as sea where it covers a circle of this diameter.
 LARGE_WATER_KM = 100.0
 
+# Coastal land lies below 100 m. Five millimetres less: on a flat of exactly 100 m the last digit of an
+# interpolation would decide.
+COASTAL_BELOW_M = 99.995
+
 SEA, COASTAL_LAND, INLAND = 1, 3, 4  # the numbers that Rec. ITU-R P.1812 gives to zones
 
 
@@ -57,7 +61,7 @@ def zones(
         np.abs(distance_km - sea_km[np.maximum(after - 1, 0)]),
     )
     with np.errstate(invalid="ignore"):
-        zone[(to_sea_km <= 50) & (ground_amsl_m < 100)] = COASTAL_LAND
+        zone[(to_sea_km <= 50) & (ground_amsl_m < COASTAL_BELOW_M)] = COASTAL_LAND
     zone[water] = SEA
     return zone
 

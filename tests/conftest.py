@@ -9,14 +9,14 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 import hypothesis
+import numpy as np
 import pytest
-from hypothesis import settings
+import rasterio
+from affine import Affine
 
 if TYPE_CHECKING:
     from app.world import World
 
-settings.register_profile("gainworth", deadline=None)  # how fast a busy machine is decides no test
-settings.load_profile("gainworth")
 
 BROWSERS = ("chromium", "chromium-browser", "google-chrome")
 # Speed is measured in benchmarks, not in tests; the same examples every time.
@@ -89,3 +89,31 @@ def chromium_path() -> str:
     path = chromium()
     assert path is not None  # tests that ask for it are marked, and not run without
     return path
+
+
+@pytest.fixture
+def write_raster(tmp_path):
+    """Writes heights (rows, columns) as a GeoTIFF whose upper left pixel corner is at west, north."""
+
+    def write(heights, name="ground.tif", west=8.0, north=47.0, pixel=0.001, crs="EPSG:4326", **options) -> Path:
+        heights = np.asarray(heights)
+        path = tmp_path / "rasters" / name
+        path.parent.mkdir(exist_ok=True)
+        transform = options.pop("transform", Affine(pixel, 0, west, 0, -pixel, north))
+        unit = options.pop("unit", None)
+        profile = {
+            "driver": "GTiff",
+            "height": heights.shape[0],
+            "width": heights.shape[1],
+            "count": 1,
+            "dtype": heights.dtype.name,
+            "crs": crs,
+            "transform": transform,
+        }
+        with rasterio.open(path, "w", **(profile | options)) as file:
+            file.write(heights, 1)
+            if unit:
+                file.units = (unit,)
+        return path
+
+    return write

@@ -59,6 +59,11 @@ __all__ = [
 ]
 
 
+RESERVED_NAME = "nothing"
+MOST_PARTS = 400
+LONGEST_RUN_M = 2000.0
+
+
 @dataclass(frozen=True, slots=True)
 class Chain:
     """Everything from the aerial to the outlets."""
@@ -80,6 +85,17 @@ class Chain:
         object.__setattr__(self, "parts", tuple(self.parts))
         if not self.name.strip():
             raise ChainError("the chain has no name: give it a short one", field="name")
+        if self.name.strip().lower() == RESERVED_NAME:
+            raise ChainError(
+                f'no chain may be called "{self.name}": the word means that no aerial is up; give it another name',
+                field="name",
+            )
+        if len(self.parts) > MOST_PARTS:
+            raise ChainError(
+                f'chain "{self.name}" has {len(self.parts)} parts: use at most {MOST_PARTS}',
+                field="parts",
+                allowed=f"at most {MOST_PARTS}",
+            )
         if not self.currency.strip():
             raise ChainError(f'chain "{self.name}" has no currency: give one such as EUR', field="currency")
         for key in ("labour_price", "visit_price"):
@@ -93,6 +109,21 @@ class Chain:
         object.__setattr__(self, "tree", tree_of(self, self.parts))
         if self.deciding_outlet:
             self._outlet(self.deciding_outlet)
+        self._check_lengths()
+
+    def _check_lengths(self) -> None:
+        """Refuse a run of feeder on whose way nothing is left of a signal."""
+        for name in self.outlet_names:
+            runs = [self.run_to(name, aerial.id) for aerial in self.aerials]
+            for run in runs:
+                length_m = sum(part.length_m for part in run if isinstance(part, Feeder))
+                if length_m > LONGEST_RUN_M:
+                    refuse(
+                        self,
+                        f'has {length_m:g} m of feeder on the way to "{name}"',
+                        f"use at most {LONGEST_RUN_M:g} m",
+                        "parts",
+                    )
 
     @property
     def aerial(self) -> Aerial:

@@ -217,3 +217,17 @@ def test_demo_chains_share_what_one_roof_would_keep():
         for other in demo_chains():
             for part in one.parts:
                 assert all(part == twin for twin in other.parts if twin.id == part.id)
+
+
+def test_chain_without_end_is_refused_before_it_is_kept():
+    feeders = [Feeder(id=f"f{k}", name=f"F{k}", cable="old-solid", length_m=1000) for k in range(20)]
+    with pytest.raises(ChainError, match=r"has 20000 m of feeder on the way to .*: use at most 2000 m"):
+        Chain("long", (AERIAL, *feeders, Outlet(id="o", name="Room"), Receiver(id="r", name="Set")))
+    short = [Feeder(id=f"f{k}", name=f"F{k}", cable="old-solid", length_m=0.1) for k in range(500)]
+    with pytest.raises(ChainError, match="has 503 parts: use at most 400"):
+        Chain("many", (AERIAL, *short, Outlet(id="o", name="Room"), Receiver(id="r", name="Set")))
+
+
+def test_no_chain_takes_the_word_for_no_aerial():
+    with pytest.raises(ChainError, match="the word means that no aerial is up"):
+        Chain("Nothing", (AERIAL, Outlet(id="o", name="Room"), Receiver(id="r", name="Set")))

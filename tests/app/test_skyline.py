@@ -8,7 +8,7 @@ import pytest
 from app.assumptions import Assumptions
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import RequestError, RoofError
-from app.paths_to_roof import Path, PathKey, paths_to_roof
+from app.paths_to_roof import DrawnPath, PathKey, drawn_paths_to_roof
 from app.roof import Roof
 from app.skyline import skyline_document
 from propagation.refraction import effective_earth_radius_km
@@ -36,7 +36,7 @@ def test_masts_stand_above_or_behind_as_their_paths_say(demo_world, seen):
     roof = Roof(NORTH.latitude_deg, NORTH.longitude_deg)
     masts = {mast.id: mast for mast in demo_world.store.transmitters()}
     keys = {row["id"]: PathKey(masts[row["id"]], row["antenna_agl_m"]) for row in seen["transmitters"]}
-    paths = paths_to_roof(roof, list(keys.values()), demo_world.ground, Assumptions())
+    paths = drawn_paths_to_roof(roof, list(keys.values()), demo_world.ground, Assumptions())
     assert {row["stands"] for row in seen["transmitters"]} == {"above", "behind"}
     for row in seen["transmitters"]:
         assert (row["stands"] == "above") == bool(paths[keys[row["id"]]].terms.line_of_sight)
@@ -47,8 +47,8 @@ def test_horizon_is_that_of_p1812_on_the_same_samples(demo_world):
     """Rec. ITU-R P.1812-7, Attachment 1, eqs. (80) to (82): within 0.02 mrad on every hidden path."""
     roof = Roof(NORTH.latitude_deg, NORTH.longitude_deg)
     masts = list(demo_world.store.transmitters())
-    paths = paths_to_roof(roof, [PathKey(mast, 30.0) for mast in masts], demo_world.ground, Assumptions())
-    hidden = [path for path in paths.values() if isinstance(path, Path) and not path.terms.line_of_sight]
+    paths = drawn_paths_to_roof(roof, [PathKey(mast, 30.0) for mast in masts], demo_world.ground, Assumptions())
+    hidden = [path for path in paths.values() if isinstance(path, DrawnPath) and not path.terms.line_of_sight]
     assert len(hidden) >= 2
     for path in hidden:
         away_km = path.profile.distance_km[-1] - path.profile.distance_km[1:-1]

@@ -27,7 +27,8 @@ MASTS, CHANNELS = 30, tuple(str(one) for one in range(21, 31))
 WATCH = """() => {
   const start = performance.now(); window.took = null; performance.clearResourceTimings();
   const seen = new MutationObserver(() => {
-    if (document.documentElement.dataset.asking === 'no') { window.took = performance.now() - start; seen.disconnect(); }
+    if (document.documentElement.dataset.asking !== 'no') return;
+    window.took = performance.now() - start; seen.disconnect();
   });
   seen.observe(document.documentElement, {attributes: true, attributeFilter: ['data-asking']});
 }"""
@@ -38,14 +39,16 @@ SLIDE = """async () => {
   const start = performance.now(); let work = 0;
   for (let i = 0; i < 180; i++) {
     const before = performance.now(), clientX = box.left + box.width * i / 180;
-    slider.dispatchEvent(new PointerEvent('pointermove', {clientX, clientY: box.top + 100, pointerId: 1, bubbles: true}));
+    const where = {clientX, clientY: box.top + 100, pointerId: 1, bubbles: true};
+    slider.dispatchEvent(new PointerEvent('pointermove', where));
     work += performance.now() - before; await new Promise(requestAnimationFrame);
   }
   return [180000 / (performance.now() - start), work / 180];
 }"""
 BYTES = """() => { let map = 0, rest = performance.getEntriesByType('navigation')[0].transferSize;
   for (const one of performance.getEntriesByType('resource')) {
-    if (one.name.includes('/vendor/')) map += one.transferSize; else if (!one.name.includes('/tiles/')) rest += one.transferSize;
+    if (one.name.includes('/vendor/')) map += one.transferSize;
+    else if (!one.name.includes('/tiles/')) rest += one.transferSize;
   }
   return [rest / 1000, map / 1000]; }"""
 
@@ -71,7 +74,10 @@ def crowded(world: World) -> None:
         for c, channel in enumerate(CHANNELS)
     ]
     world.store.replace_source(
-        Source("crowd", "Crowd", "", "invented"), masts, emissions, [Multiplex(f"x{k}", f"Multiplex {k}") for k in range(60)]
+        Source("crowd", "Crowd", "", "invented"),
+        masts,
+        emissions,
+        [Multiplex(f"x{k}", f"Multiplex {k}") for k in range(60)],
     )
 
 
@@ -119,7 +125,9 @@ def main() -> None:
                 page.wait_for_selector("#map[data-idle]")
                 map_s = time.perf_counter() - start
                 rest, vendor = page.evaluate(BYTES)
-                print(f"{name}: decision and table {decision:.2f} s, map {map_s:.2f} s, {rest:.0f} kB + {vendor:.0f} kB map library")
+                print(
+                    f"{name}: decision and table {decision:.2f} s, map {map_s:.2f} s, {rest:.0f} kB + {vendor:.0f} kB map library"
+                )
                 page.wait_for_selector(".skyline .curtain", state="attached")
                 whole, api = clicks(page)
                 print(f"{name}: click to chances {whole:.0f} ms, of which the API {api:.0f} ms")
@@ -134,4 +142,3 @@ def main() -> None:
 
 if __name__ == "__main__":
     main()
-

@@ -1,0 +1,285 @@
+"""Digests of many paths at once, straight from a sheet of samples: the fast form of `path_digest` and `path_terms`.
+
+A compiled pass finds maxima, sums and places on each profile while it lies in the processor's cache (scan.py); the
+formulas that follow are those of the plain form, for all paths together. Agreement with the plain form, and where
+it is least, stands in the tests. Importing this imports numba.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from propagation.constants import EARTH_RADIUS_KM
+from propagation.diffraction import SmoothEarth, bullington_edge_of_rays, smooth_earth_of_fit
+from propagation.digest import PathDigest
+from propagation.p1812.climate import beta0_percent, path_centre_latitude_deg
+from propagation.p1812.path import BETA0_EARTH_RADIUS_KM, NO_COAST_KM, PathTerms
+from propagation.refraction import effective_earth_radius_km
+from propagation.refractivity import refractivity
+from propagation.scan import BACK, ROOT, SCAN
+from propagation.scan_lines import scan_lines
+from propagation.smooth_edge import smooth_rays
+from terrain.kernels import sheet_arrays
+from terrain.lines import lines_over
+from terrain.sheet import Sheet
+
+FloatArray = NDArray[np.float64]
+Each = Callable[[Callable[[slice], None], Iterable[slice]], Any]  # such as `map`, or that of a pool of threads
+
+CHUNK = 4096  # most paths that one thread takes at a time
+
+
+@dataclass(frozen=True, slots=True)
+class Ends:
+    """Paths (p,): where they begin and end, and what stands near their roofs."""
+
+    tx_latitude_deg: FloatArray
+    tx_longitude_deg: FloatArray
+    antenna_agl_m: FloatArray
+    rx_latitude_deg: FloatArray
+    rx_longitude_deg: FloatArray
+    aerial_agl_m: FloatArray
+    first_edge: NDArray[np.int64]  # (p + 1,) into edge_km
+    edge_km: FloatArray  # (e,) distances of what stands near a roof, from the roof
+
+
+@dataclass(frozen=True, slots=True)
+class Digests:
+    """Results (p,) of many paths; nothing is to be read where `known` is false."""
+
+    known: NDArray[np.bool_]  # false: the sheet has a gap under the path
+    digest: PathDigest
+    terms: PathTerms
+    delta_n_per_km: FloatArray
+    n0: FloatArray
+    first_edge: NDArray[np.int64]  # (p + 1,) into the next two
+    source_km: FloatArray  # (e,) where the ray past each edge comes from, from the roof; negative: nothing is farther
+    source_slope: FloatArray  # (e,) from the horizontal at the aerial [m/km]
+
+
+def digests(
+    sheet: Sheet,
+    ends: Ends,
+    spacing_m: float | None = None,
+    maps_folder: Path | None = None,
+    each: Each = map,
+    parts: int = 1,
+) -> Digests:
+    """Digest paths (p,) over a sheet.
+
+    Spacing as for `terrain.profile.sample_profile`, `maps_folder` as for `refractivity`. With `each` the map of a
+    pool of threads, at least `parts` of the paths are scanned at the same time.
+
+    References
+    ----------
+    As `digest.path_digest` and `p1812.path.path_terms`.
+    """
+    paths = ends.tx_latitude_deg.size
+    scans = np.zeros(paths, SCAN)
+    length, points, lapse, n0 = np.zeros(paths), np.zeros(paths, np.int64), np.zeros(paths), np.zeros(paths)
+    sources = np.zeros((2, ends.edge_km.size))
+    arrays = sheet_arrays(sheet)
+
+    def scan(part: slice) -> None:
+        lines = lines_over(
+            sheet,
+            ends.tx_latitude_deg[part],
+            ends.tx_longitude_deg[part],
+            ends.rx_latitude_deg[part],
+            ends.rx_longitude_deg[part],
+            spacing_m,
+        )
+        length[part], points[part] = lines.length_km, lines.points
+        lapse[part], n0[part] = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
+        scan_lines(
+            arrays,
+            lines.first_knot,
+            lines.row,
+            lines.column,
+            lines.length_km,
+            lines.points,
+            500 / effective_earth_radius_km(lapse[part]),
+            ends.antenna_agl_m[part],
+            ends.aerial_agl_m[part],
+            ends.first_edge[part.start : part.stop + 1],
+            ends.edge_km,
+            ROOT,
+            BACK,
+            scans[part],
+            sources,
+        )
+
+    size = max(1, min(CHUNK, -(-paths // parts)))
+    list(each(scan, [slice(first, min(first + size, paths)) for first in range(0, paths, size)]))
+    return _closed(scans, ends, length, points, lapse, n0, sources)
+
+
+@np.errstate(divide="ignore", invalid="ignore")  # of paths that are not known
+def _closed(
+    s: NDArray[Any],
+    ends: Ends,
+    d: FloatArray,
+    points: NDArray[np.int64],
+    lapse: FloatArray,
+    n0: FloatArray,
+    sources: FloatArray,
+) -> Digests:
+    """Every formula after the scan; what follows from a path that is not known is without meaning."""
+    known = s["known"]
+    radius = effective_earth_radius_km(lapse)
+    d = np.where(known, d, 1.0)
+    points = np.where(known, points, 5)
+    a, b = s["tx_ground_amsl_m"] + ends.antenna_agl_m, s["rx_ground_amsl_m"] + ends.aerial_agl_m
+    smooth = smooth_earth_of_fit(
+        s["tx_fit_amsl_m"],
+        s["rx_fit_amsl_m"],
+        s["over_line_m"],
+        s["over_line_from_tx"],
+        s["over_line_from_rx"],
+        s["tx_ground_amsl_m"],
+        s["rx_ground_amsl_m"],
+    )
+    true_earth, beta0 = np.full_like(radius, EARTH_RADIUS_KM), np.full_like(radius, BETA0_EARTH_RADIUS_KM)
+    smooth_edge = {
+        name: _smooth_edge(a - smooth.tx_amsl_m, b - smooth.rx_amsl_m, d, points, r)
+        for name, r in (("median", radius), ("true_earth", true_earth), ("beta0", beta0))
+    }
+    edge = {
+        name: bullington_edge_of_rays(s[f"tx_{name}"], s[f"rx_{name}"], s[f"nu_{name}"], d, a, b)
+        for name in ("median", "true_earth", "beta0")
+    }
+    horizon_rays = _horizon_rays_mrad(s["tx_median"], s["rx_median"], d, a, b, radius)
+    return Digests(
+        known,
+        _digest(s, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
+        _terms(s, ends, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
+        lapse,
+        n0,
+        ends.first_edge,
+        *sources,
+    )
+
+
+def _smooth_edge(
+    tx_over: FloatArray, rx_over: FloatArray, d: FloatArray, points: NDArray[np.int64], radius: FloatArray
+) -> FloatArray:
+    steepest, steepest_back, clear = smooth_rays(tx_over, rx_over, d, points, radius)
+    return bullington_edge_of_rays(steepest, steepest_back, clear, d, tx_over, rx_over)
+
+
+def _horizon_rays_mrad(
+    steepest: FloatArray, steepest_back: FloatArray, d: FloatArray, a: FloatArray, b: FloatArray, radius: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Elevation of both horizon rays, P.1812 eqs. (77)-(82); on a line of sight, of the ray itself. [mrad]"""
+    sinking = 500 * d / radius  # slopes with the bulge count from the chord, eq. (77) from the horizontal
+    direct, direct_back = (b - a) / d, (a - b) / d
+    hidden = steepest > direct
+    return tuple(
+        1000 * np.arctan((np.where(hidden, slope, straight) - sinking) / 1000)
+        for slope, straight in ((steepest, direct), (steepest_back, direct_back))
+    )  # type: ignore[return-value]
+
+
+def _digest(
+    s: NDArray[Any],
+    d: FloatArray,
+    a: FloatArray,
+    b: FloatArray,
+    radius: FloatArray,
+    smooth: SmoothEarth,
+    edge: dict[str, FloatArray],
+    smooth_edge: dict[str, FloatArray],
+    horizon_rays: tuple[FloatArray, FloatArray],
+) -> PathDigest:
+    tx_over, rx_over = a - smooth.tx_amsl_m, b - smooth.rx_amsl_m
+    horizon = np.sqrt(2 * radius) * (np.sqrt(0.001 * tx_over) + np.sqrt(0.001 * rx_over))  # P.1812 eq. (22)
+    worst, into_line = s["worst_km"], s["worst_into_line_m"]
+    clearance = -into_line * np.sqrt(d / np.where(s["known"], worst * (d - worst), 1.0))
+    true_earth_rays = _horizon_rays_mrad(
+        s["tx_true_earth"], s["rx_true_earth"], d, a, b, np.full_like(d, EARTH_RADIUS_KM)
+    )
+    return PathDigest(
+        path_length_km=d,
+        land_km=np.maximum(d - s["sea_km"], 0.0),
+        sea_km=s["sea_km"],
+        tx_ground_amsl_m=s["tx_ground_amsl_m"],
+        rx_ground_amsl_m=s["rx_ground_amsl_m"],
+        h1_source_height_m=a - s["mean_ground_amsl_m"],
+        tx_clearance_angle_deg=np.degrees(np.arctan(s["tx_slope"] / 1000)),
+        rx_clearance_angle_deg=np.degrees(np.arctan(s["rx_slope"] / 1000)),
+        effective_earth_radius_km=radius,
+        line_of_sight=clearance >= 0,
+        clearance=clearance,
+        worst_point_km=worst,
+        obstacle_into_line_m=into_line,
+        tx_over_smooth_earth_m=tx_over,
+        rx_over_smooth_earth_m=rx_over,
+        smooth_horizon_km=horizon,
+        beyond_horizon=d > horizon,
+        actual_edge=edge["median"],
+        smooth_edge=smooth_edge["median"],
+        angular_distance_mrad=1000 * d / radius + horizon_rays[0] + horizon_rays[1],
+        actual_edge_true_earth=edge["true_earth"],
+        smooth_edge_true_earth=smooth_edge["true_earth"],
+        angular_distance_true_earth_mrad=1000 * d / EARTH_RADIUS_KM + true_earth_rays[0] + true_earth_rays[1],
+    )
+
+
+def _terms(
+    s: NDArray[Any],
+    ends: Ends,
+    d: FloatArray,
+    a: FloatArray,
+    b: FloatArray,
+    radius: FloatArray,
+    smooth: SmoothEarth,
+    edge: dict[str, FloatArray],
+    smooth_edge: dict[str, FloatArray],
+    horizon_rays: tuple[FloatArray, FloatArray],
+) -> PathTerms:
+    latitude = path_centre_latitude_deg(
+        ends.tx_latitude_deg, ends.tx_longitude_deg, ends.rx_latitude_deg, ends.rx_longitude_deg, d
+    )
+    tx_base = np.minimum(smooth.tx_fit_amsl_m, s["tx_ground_amsl_m"])  # eq. (92)
+    rx_base = np.minimum(smooth.rx_fit_amsl_m, s["rx_ground_amsl_m"])
+    return PathTerms(
+        path_length_km=d,
+        tx_antenna_amsl_m=a,
+        rx_antenna_amsl_m=b,
+        tx_distance_to_coast_km=np.where(s["tx_coast_km"] < 0, NO_COAST_KM, s["tx_coast_km"]),
+        rx_distance_to_coast_km=np.where(s["rx_coast_km"] < 0, NO_COAST_KM, s["rx_coast_km"]),
+        rx_at_sea=s["rx_at_sea"],
+        fraction_over_sea=np.minimum(s["sea_km"] / d, 1.0),
+        longest_land_km=s["longest_land_km"],
+        longest_inland_km=s["longest_inland_km"],
+        path_centre_latitude_deg=latitude,
+        beta0_percent=beta0_percent(latitude, s["longest_land_km"], s["longest_inland_km"]),
+        median_effective_earth_radius_km=radius,
+        line_of_sight=s["line_of_sight"],
+        tx_horizon_distance_km=s["tx_horizon_km"],
+        rx_horizon_distance_km=s["rx_horizon_km"],
+        tx_horizon_angle_mrad=horizon_rays[0],
+        rx_horizon_angle_mrad=horizon_rays[1],
+        path_angular_distance_mrad=1000 * d / radius + horizon_rays[0] + horizon_rays[1],
+        smooth_earth_tx_uncorrected_amsl_m=smooth.tx_fit_amsl_m,
+        smooth_earth_rx_uncorrected_amsl_m=smooth.rx_fit_amsl_m,
+        smooth_earth_tx_amsl_m=tx_base,
+        smooth_earth_rx_amsl_m=rx_base,
+        smooth_earth_tx_diffraction_amsl_m=smooth.tx_amsl_m,
+        smooth_earth_rx_diffraction_amsl_m=smooth.rx_amsl_m,
+        tx_height_above_smooth_earth_m=a - smooth.tx_amsl_m,
+        rx_height_above_smooth_earth_m=b - smooth.rx_amsl_m,
+        tx_effective_height_ducting_m=a - tx_base,
+        rx_effective_height_ducting_m=b - rx_base,
+        terrain_roughness_m=s["roughness_m"],
+        actual_edge_median=edge["median"],
+        actual_edge_beta0=edge["beta0"],
+        smooth_edge_median=smooth_edge["median"],
+        smooth_edge_beta0=smooth_edge["beta0"],
+    )
