@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 from collections.abc import Mapping
 from pathlib import Path
-from typing import Any
+from typing import Any, Literal
 
 import typst
 
@@ -26,7 +26,7 @@ def report_pdf(content: Mapping[str, Any]) -> bytes:
         return _set(content, [])
 
 
-def _set(content: Mapping[str, Any], standards: list[str]) -> bytes:
+def _set(content: Mapping[str, Any], standards: list[Literal["ua-1"]]) -> bytes:
     inputs = {"content": json.dumps(content)}
     made = typst.compile(str(TEMPLATE), format="pdf", sys_inputs=inputs, pdf_standards=standards)
     assert isinstance(made, bytes)  # one document, not a list of pages

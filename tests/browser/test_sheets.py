@@ -335,6 +335,63 @@ def test_an_obstacle_near_the_roof_is_asked_for(page):
     assert json.loads(asked.value.request.post_data)["roof"]["obstacles"][0]["bearing_deg"] == 57
 
 
+def test_chances_stand_against_height(page):
+    show(page, "elsewhere")
+    expect(page.locator(".elsewhere .rise-line")).to_have_count(2)
+    expect(page.locator(".by-height tbody tr")).to_have_count(11)
+    assert page.locator(".by-height tbody th").all_inner_texts()[-1] == "25\u00a0m"
+
+
+def test_a_block_of_flats_comes_from_four_answers(page):
+    show(page, "chains")
+    page.get_by_label("Aerial", exact=True).select_option("long-yagi")
+    page.get_by_label("Outlets", exact=True).fill("6")
+    with page.expect_response("**/api/block"):
+        page.get_by_role("button", name="Propose a chain").click()
+    expect(page.locator(".sentence")).to_contain_text("Block of 6, star")
+    assert page.locator(".chains .an-outlet").count() == 6
+
+
+def test_the_roof_is_dragged_on_the_map_and_the_chances_follow(page):
+    show(page, "skyline", roof=WEST)
+    page.wait_for_selector("#map[data-idle]")
+    box = page.locator(".overlay .roof-point").bounding_box()
+    before = page.get_by_label("Roof at").input_value()
+    page.mouse.move(box["x"] + 2, box["y"] + 2)
+    page.mouse.down()
+    with page.expect_response("**/api/assess"):
+        page.mouse.move(box["x"] + 14, box["y"] - 3, steps=4)
+    page.mouse.up()
+    still(page)
+    latitude, longitude = map(float, page.get_by_label("Roof at").input_value().split(","))
+    assert page.get_by_label("Roof at").input_value() != before
+    assert latitude > WEST.latitude_deg
+    assert longitude > WEST.longitude_deg
+
+
+def test_five_hundred_channels_with_markup_in_their_names_are_shown_as_text(watched, browser):
+    page = watched.open(browser, viewport={"width": 320, "height": 480})
+
+    def multiplied(route) -> None:
+        answer = route.fetch().json()
+        emission, multiplex = answer["emissions"][0], answer["multiplexes"][0]
+        answer["emissions"] = [emission | {"id": f"e{k}", "transmitter_name": "<img src=x>"} for k in range(500)]
+        cells = {name: cell | {"emission": "e1"} for name, cell in multiplex["chains"].items()}
+        answer["multiplexes"] = [
+            multiplex | {"id": f"m{k}", "name": f"<b>Name</b> {k}", "chains": cells} for k in range(500)
+        ]
+        route.fulfill(body=json.dumps(answer), content_type="application/json")
+
+    page.route("**/api/assess", multiplied)
+    page.goto(link_to(NORTH))
+    page.wait_for_selector(".changes:not([hidden])")
+    assert page.locator("main img").count() == 0
+    assert "<b>Name</b> 0" in page.locator(".changes details").text_content()
+    assert page.evaluate("() => document.documentElement.scrollWidth") <= 320
+    page.set_viewport_size({"width": 3440, "height": 1440})
+    assert page.evaluate("() => document.querySelector('main').clientWidth") < 1300
+
+
 def test_sheets_are_opened_by_arrow_keys(page):
     show(page, "skyline")
     page.get_by_role("tab", name="Skyline").focus()
