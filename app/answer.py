@@ -11,7 +11,8 @@ import numpy as np
 from app.assumptions import Assumptions
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade, not_too_much
-from app.declination import declination_at, declination_document
+from app.climate import SEASON
+from app.declination import compass_document
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
@@ -64,8 +65,10 @@ def answer_document(
             "aerial_agl_m": request.roof.aerial_agl_m,
             "ground_amsl_m": round(site.ground_amsl_m, 2),
             "surroundings": request.roof.surroundings,
-            "declination": declination_document(
-                declination_at(request.roof.latitude_deg, request.roof.longitude_deg, site.ground_amsl_m, date.today())
+            "leaves_m": request.roof.leaves_m,
+            "compass": site.compass,
+            "declination": compass_document(
+                request.roof.latitude_deg, request.roof.longitude_deg, date.today(), site.ground_amsl_m
             ),
         },
         "multiplexes": [
@@ -318,7 +321,7 @@ def _disturbed_by(e: int, air: Air) -> list[str]:
 
 
 def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence[EmissionField], air: Air) -> list[str]:
-    cautions = list(site.cautions)
+    cautions = [*site.cautions, *([site.compass] if site.compass else [])]
     if not fields:
         nearest = store.nearest_transmitter(request.roof.latitude_deg, request.roof.longitude_deg)
         cautions.append(
@@ -334,6 +337,16 @@ def _cautions(request: AssessRequest, site: Site, store: Store, fields: Sequence
         cautions.append(
             f"No prediction for {', '.join(without)}: see the reason beside each channel; "
             "they take no part in the verdict."
+        )
+    if any(
+        field.path is not None and (field.path.sea_km > 0 or field.path.kind == "beyond the horizon")
+        for field in fields
+    ):
+        cautions.append(SEASON)
+    warm = [field for field in fields if field.path is not None and field.path.sea_km > 0 and field.sea_is_warm]
+    if warm:
+        cautions.append(
+            f"The sea under {len(warm)} of the channels counts as warm for P.1546 (our choice by latitude and region)."
         )
     twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
     if twice:

@@ -7,7 +7,7 @@ from typing import Annotated
 
 import typer
 
-from app.cli_tools import Json, mendable, pair, show
+from app.cli_tools import Json, mendable, place, show
 
 chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 
@@ -71,7 +71,7 @@ def sweep(at: At, height: Height = 10.0, names: Names = None, heights: bool = Tr
     from app.world import open_world
 
     with mendable():
-        roof = Roof(*pair(at, "--at", "44.5,-37.2"), height)
+        roof = Roof(*place(at), height)
         world = open_world()
         request = AssessRequest(roof=roof, chains=tuple(names) if names else None)
         document = sweep_document(
@@ -99,7 +99,7 @@ def cheapest(
     from app.world import open_world
 
     with mendable():
-        roof = Roof(*pair(at, "--at", "44.5,-37.2"), height)
+        roof = Roof(*place(at), height)
         world = open_world()
         request = AssessRequest(roof=roof, wanted=tuple(want) if want else None)
         wish = Wish(outlets, feeder, labour, visit)
@@ -131,7 +131,7 @@ def block(
     from app.world import open_world
 
     with mendable():
-        roof = Roof(*pair(at, "--at", "44.5,-37.2"), height)
+        roof = Roof(*place(at), height)
         world = open_world()
         question = BlockQuestion(outlets, layout, longest, shortest, aerial, standard)
         document = block_document(

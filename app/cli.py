@@ -10,9 +10,9 @@ from typing import Annotated, Any
 import typer
 
 from app.chains_cli import chains
-from app.cli_tools import MENDABLE, Json, mendable, pair, show
-from app.errors import AppError, RequestError
-from terrain.errors import TerrainError
+from app.cli_ground import cover, terrain
+from app.cli_tools import Json, mendable, pair, place, show
+from app.errors import RequestError
 
 main = typer.Typer(
     name="gainworth",
@@ -22,10 +22,10 @@ main = typer.Typer(
     pretty_exceptions_enable=False,
 )
 transmitters = typer.Typer(help="What is on the air.", no_args_is_help=True)
-terrain = typer.Typer(help="Elevation rasters.", no_args_is_help=True)
 readings = typer.Typer(help="What was read at a roof.", no_args_is_help=True)
 main.add_typer(transmitters, name="transmitters")
 main.add_typer(terrain, name="terrain")
+main.add_typer(cover, name="cover")
 main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
 
@@ -95,7 +95,10 @@ def assess(
     reach: Annotated[float, typer.Option(metavar="KM", help="How far to look for transmitters.")] = 150.0,
     method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
     availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.")] = 99,
-    surroundings: Annotated[str, typer.Option(help="open, suburban, urban or trees.")] = "open",
+    surroundings: Annotated[
+        str, typer.Option(help="open, suburban, urban, trees, or mapped: as land cover shows them.")
+    ] = "mapped",
+    leaves: Annotated[float, typer.Option(metavar="M", help="Leaves the signals pass before the aerial.")] = 0.0,
     cost: Annotated[float | None, typer.Option(metavar="C", help="What taking a reading costs.")] = None,
     without_readings: Annotated[
         bool, typer.Option("--without-readings", help="Leave the stored readings of this roof out.")
@@ -112,10 +115,10 @@ def assess(
     from app.world import open_world
 
     with mendable():
-        latitude_deg, longitude_deg = pair(at, "--at", "44.5,-37.2")
+        latitude_deg, longitude_deg = place(at)
         settings = load_settings(data_dir())
         request = AssessRequest(
-            roof=Roof(latitude_deg, longitude_deg, height, surroundings),  # type: ignore[arg-type]  # Roof checks the word
+            roof=Roof(latitude_deg, longitude_deg, height, surroundings, leaves_m=leaves),  # type: ignore[arg-type]  # Roof checks the word
             chains=tuple(chain) if chain else None,
             now=now,
             wanted=tuple(want) if want else None,
@@ -148,8 +151,8 @@ def path(
         world = open_world()
         document = path_document(
             world.ground,
-            *pair(start, "--from", "44.5,-37.2"),
-            *pair(end, "--to", "44.3,-37.3"),
+            *place(start),
+            *place(end),
             frequency,
             *pair(heights, "--heights", "150,10"),
             polarisation,
@@ -225,58 +228,6 @@ def list_transmitters(as_json: Json = False) -> None:
     show(rows, as_json, lambda: table(rows, "no transmitter is stored: `gainworth transmitters import FILE`"))
 
 
-@terrain.command("add")
-def add_rasters(
-    paths: Annotated[list[Path], typer.Argument(metavar="PATH…", help="Raster files.")],
-    crs: Annotated[str | None, typer.Option(help="Coordinate system of rasters that do not say, as EPSG:N.")] = None,
-    kind: Annotated[str | None, typer.Option(help="surface, radar-surface or bare.")] = None,
-    as_json: Json = False,
-) -> None:
-    """Copy elevation rasters into the data folder, checked first; good ones are kept, refused ones told.
-
-    A server that runs reads them when it is started again.
-    """
-    from app.ground_files import add_raster
-    from app.lists import table
-
-    rows, refused = [], []
-    for one in paths:
-        try:
-            rows.append(add_raster(one, crs, kind))
-        except (AppError, TerrainError) as error:
-            refused.append(str(error))
-    if rows or as_json:
-        show(rows, as_json, lambda: table(rows, ""))
-    for message in refused:
-        typer.echo(message, err=True)
-    if refused:
-        raise typer.Exit(MENDABLE)
-
-
-@terrain.command("remove")
-def remove_one_raster(
-    name: Annotated[str, typer.Argument(metavar="FILE", help="Name as `terrain list` shows it.")], as_json: Json = False
-) -> None:
-    """Take a raster out of the data folder."""
-    from app.ground_files import remove_raster
-    from app.lists import table
-
-    with mendable():
-        row = remove_raster(name)
-    show(row, as_json, lambda: table([row], ""))
-
-
-@terrain.command("list")
-def list_rasters(as_json: Json = False) -> None:
-    """List rasters in use and those refused, with the reason."""
-    from app.lists import raster_rows, table
-    from app.world import open_world
-
-    with mendable():
-        rows = raster_rows(open_world().ground)
-    show(rows, as_json, lambda: table(rows, "no raster: `gainworth terrain add FILE`"))
-
-
 @main.command()
 def compare(
     at: Annotated[list[str], typer.Option(metavar="LAT,LON", help="A roof; may be repeated for several.")],
@@ -294,7 +245,7 @@ def compare(
     from app.world import open_world
 
     with mendable():
-        roofs = [Roof(*pair(one, "--at", "44.5,-37.2"), height) for one in at]
+        roofs = [Roof(*place(one), height) for one in at]
         world = open_world()
         requests = [AssessRequest(roof, chains=tuple(chain) if chain else None, now=now) for roof in roofs]
         document = side_by_side(requests, world.store, world.ground)
@@ -330,7 +281,7 @@ def add_reading(
     from app.world import open_world
 
     with mendable():
-        place = pair(at, "--at", "44.5,-37.2")
+        where = place(at)
         said: dict[str, Any] = {
             "emission": of, "multiplex": of, "value_db": value, "state": state, "chain": chain, "point": point,
             "pointing_deg": pointing, "polarisation": polarisation, "aerial_agl_m": height, "day": day,
@@ -341,7 +292,7 @@ def add_reading(
             said |= {"text": _text_of(file), "complete": complete, "kind": "scan list"}
         else:
             said |= {"kind": kind, "confirmed": confirmed}
-        document = keep(open_world().store, *place, {key: one for key, one in said.items() if one is not None})
+        document = keep(open_world().store, *where, {key: one for key, one in said.items() if one is not None})
     show(document, as_json, lambda: told_kept(document))
 
 

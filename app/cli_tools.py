@@ -1,4 +1,4 @@
-"""What all commands share: mendable errors, JSON or text, pairs of numbers."""
+"""What all commands share: mendable errors, JSON or text, pairs of numbers, positions."""
 
 from __future__ import annotations
 
@@ -39,3 +39,13 @@ def pair(text: str, what: str, example: str) -> tuple[float, float]:
     except ValueError:
         raise RequestError(f'{what} is "{text}": write two numbers with a comma, such as {example}') from None
     return first, second
+
+
+def place(text: str) -> tuple[float, float]:
+    """A position in any usual writing; what looks swapped is asked on the way."""
+    from app.position import parse_position
+
+    position = parse_position(text)
+    if position.question is not None:
+        typer.echo(f"Caution: {position.question}", err=True)
+    return position.latitude_deg, position.longitude_deg

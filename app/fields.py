@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.assumptions import Assumptions
+from app.climate import sea_is_warm
 from app.disagreement import apart_reason
 from app.methods import fields_of_methods
 from app.paths_to_roof import Path, PathKey, paths_to_roof
@@ -25,6 +26,7 @@ from app.stories import method_reason, story_of, terms_of
 from app.transmitters.model import Emission, Transmitter
 from propagation.digest import stacked_digests
 from propagation.fading import enhancement_db, fade_db, subrefraction_db
+from propagation.foliage import woodland_loss_db
 from propagation.free_space import field_strength_dbuv_m
 from terrain.geodesy import distance_and_bearing
 from terrain.mosaic import Ground
@@ -74,6 +76,8 @@ class EmissionField:
     doubt_db: float = 0.0  # part of used_dbuv_m: power or pattern not stated
     fade_db: float = 0.0
     enhancement_db: float = 0.0
+    sea_is_warm: bool = False  # for P.1546, if the path crosses any
+    leaves_db: float = 0.0  # part of used_dbuv_m: foliage before the aerial
 
     @property
     def erp_is_doubtful(self) -> bool:
@@ -132,8 +136,13 @@ def _answered(
     n0 = np.array([path.n0 for path in paths])
     times = (50.0, 1.0, min(50.0, 100.0 - availability_percent))
 
-    both = fields_of_methods(digest, paths, frequency_mhz, plane, times, erp_kw, with_p1812=method != "p1546")
-    by_p1546, by_p1812 = both.p1546_dbuv_m, both.p1812_dbuv_m
+    middle = [_middle_deg(roof, row[1]) for row in rows]
+    warm_sea = sea_is_warm([lat for lat, _ in middle], [lon for _, lon in middle])
+    both = fields_of_methods(
+        digest, paths, frequency_mhz, plane, times, erp_kw, with_p1812=method != "p1546", warm_sea=warm_sea
+    )
+    leaves_db = woodland_loss_db(frequency_mhz, roof.leaves_m)
+    by_p1546, by_p1812 = both.p1546_dbuv_m - leaves_db, both.p1812_dbuv_m - leaves_db
     holds = ~np.isnan(by_p1812[0])
     at_50, at_1, in_state_b = np.where(holds, by_p1812, by_p1546)
     difference = by_p1812[0] - by_p1546[0]
@@ -191,6 +200,8 @@ def _answered(
                 doubt_db=doubt,
                 fade_db=float(fade[e]),
                 enhancement_db=float(rise[e]),
+                sea_is_warm=bool(warm_sea[e]),
+                leaves_db=float(leaves_db[e]),
             )
         )
     return answers
@@ -215,6 +226,12 @@ def _path_sd_db(
     disagreement = np.clip((apart - value("disagreement_free_db")) / 2, 0, value("disagreement_sd_max_db"))
     both = np.hypot(by_kind, disagreement)
     return np.where(np.isnan(p1812_dbuv_m), by_kind * value("single_method_factor"), both)
+
+
+def _middle_deg(roof: Roof, mast: Transmitter) -> tuple[float, float]:
+    """About the middle of a path: near enough to tell which sea it crosses."""
+    across = (mast.longitude_deg - roof.longitude_deg + 180) % 360 - 180
+    return (roof.latitude_deg + mast.latitude_deg) / 2, (roof.longitude_deg + across / 2 + 180) % 360 - 180
 
 
 def _erp_towards_roof_kw(roof: Roof, found: Sequence[Found]) -> FloatArray:

@@ -8,13 +8,14 @@ from pathlib import Path
 from typing import Any
 
 from app.errors import StoreError
-from app.world import terrain_dir
+from app.world import cover_dir, terrain_dir
+from terrain.cover import declare_cover, open_cover_raster
 from terrain.errors import RasterError
 from terrain.mosaic import Ground
 from terrain.raster import declare, open_raster
 
 
-def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> dict[str, Any]:
+def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit: str | None = None) -> dict[str, Any]:
     """Copy one raster into the data folder under its own name, with what is declared of it.
 
     A file that cannot serve is refused and nothing is copied; one of the same name is replaced whole.
@@ -30,8 +31,8 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
             for one in (path, *_companions(path)):
                 shutil.copyfile(one, Path(folder) / one.name)
             try:
-                if crs or kind:
-                    declare(copy, crs=crs, kind=kind)
+                if crs or kind or unit:
+                    declare(copy, crs=crs, kind=kind, unit=unit)
                 info = open_raster(copy)
                 _check_heights(copy)
             except RasterError as error:
@@ -44,7 +45,37 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None) -> d
         "file": path.name,
         "kind": info.kind,
         "spacing_m": round(info.grid.spacing_m, 1),
+        "heights_in": info.unit,
         "note": "replaces the one of that name" if replaces else "",
+        "stored": str(target),
+    }
+
+
+def add_cover(path: Path, classes: str | None = None, crs: str | None = None) -> dict[str, Any]:
+    """Copy one map of land cover into the data folder, checked first, as `add_raster` does."""
+    if not path.is_file():
+        raise RasterError(f"{path} is no file: name a land-cover map as GeoTIFF")
+    target = cover_dir() / path.name
+    try:
+        cover_dir().mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryDirectory(dir=cover_dir(), prefix=".adding-") as folder:
+            copy = Path(folder) / path.name
+            for one in (path, *_companions(path)):
+                shutil.copyfile(one, Path(folder) / one.name)
+            try:
+                if classes or crs:
+                    declare_cover(copy, classes, crs)
+                info = open_cover_raster(copy)
+            except RasterError as error:
+                raise type(error)(str(error).replace(str(copy), str(path))) from error
+            for one in sorted(Path(folder).iterdir()):
+                one.replace(target.parent / one.name)
+    except OSError as error:
+        raise StoreError(f"{path.name} could not be copied into {cover_dir()} ({error.strerror or error})") from error
+    return {
+        "file": path.name,
+        "classes": info.classes,
+        "spacing_m": round(info.grid.spacing_m, 1),
         "stored": str(target),
     }
 

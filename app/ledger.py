@@ -101,10 +101,12 @@ def _to_the_field(field: EmissionField, availability_percent: int, faded_db: flo
         ),
         (
             f"ground and atmosphere: {field.path.kind}",
-            field.used_dbuv_m - field.doubt_db - field.free_space_dbuv_m,
+            field.used_dbuv_m + field.leaves_db - field.doubt_db - field.free_space_dbuv_m,
             _method_source(field),
         ),
     ]
+    if field.leaves_db:
+        lines.append(("leaves before the aerial", -field.leaves_db, "Rec. ITU-R P.833-10, section 2.1, in leaf"))
     if field.doubt_db:
         lines.append(("power or pattern not stated by the register", field.doubt_db, "assumption erp_unknown_mean_db"))
     if state == "a":

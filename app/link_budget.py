@@ -26,7 +26,7 @@ from propagation.units import db_from_ratio, dbuv_from_dbm, ratio_from_db
 FloatArray = NDArray[np.float64]
 
 # Surroundings of a roof -> environment of Rec. ITU-R P.372, Table 1; the pairing is ours.
-ENVIRONMENTS = {"open": "rural", "suburban": "residential", "urban": "city", "trees": "rural"}
+ENVIRONMENTS = {"open": "rural", "suburban": "residential", "urban": "city", "trees": "rural", "mapped": "rural"}
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from app.transmitters.store import Store
+from terrain.cover import Cover
 from terrain.mosaic import Ground
 
 
@@ -42,13 +43,34 @@ def raster_rows(ground: Ground) -> list[dict[str, Any]]:
             "state": "in use",
             "kind": one.kind,
             "spacing_m": round(one.spacing_m, 1),
-            "note": "",
+            "note": "" if one.unit in ("", "m", "metre", "meter", "metres", "meters") else f"heights in {one.unit}",
         }
         for one in ground.rasters
     ]
     refused = [
         {"file": one.path.name, "state": "refused", "kind": "", "spacing_m": "", "note": one.message}
         for one in ground.refused
+    ]
+    return [*used, *refused]
+
+
+def cover_rows(cover: Cover | None) -> list[dict[str, Any]]:
+    """One row per land-cover map, in use or refused."""
+    if cover is None:
+        return []
+    used = [
+        {
+            "file": one.name,
+            "state": "in use",
+            "classes": one.classes,
+            "spacing_m": round(one.grid.spacing_m, 1),
+            "note": "",
+        }
+        for one in cover.rasters
+    ]
+    refused = [
+        {"file": one.path.name, "state": "refused", "classes": "", "spacing_m": "", "note": one.message}
+        for one in cover.refused
     ]
     return [*used, *refused]
 

@@ -47,14 +47,18 @@ def fields_of_methods(
     times_percent: Sequence[float],
     erp_kw: FloatArray,
     with_p1812: bool = True,
+    warm_sea: NDArray[np.bool_] | None = None,
 ) -> MethodFields:
-    """Return both fields for each time and emission; `digest` stacks those of the paths (e,)."""
+    """Return both fields for each time and emission; `digest` stacks those of the paths (e,).
+
+    `warm_sea` (e,) tells where P.1546 takes its curves for warm sea; None: nowhere.
+    """
     times = np.asarray(times_percent, dtype=float)[:, None]
     near = np.array([path.edges[0].size if path.edges else -np.inf for path in paths])
     near_edge_db = knife_edge_loss_db(near / np.sqrt(wavelength_m(frequency_mhz)))
     # P.1546 has its own way with what surrounds an aerial; only an obstacle entered is an edge to it
     obstacle_db = np.where([path.p1546_surroundings_m > 0 for path in paths], 0.0, near_edge_db)
-    result = _p1546(digest, paths, frequency_mhz, times, erp_kw)
+    result = _p1546(digest, paths, frequency_mhz, times, erp_kw, warm_sea)
     by_p1546 = result.field_dbuv_m - obstacle_db
 
     by_p1812 = np.full_like(by_p1546, np.nan)
@@ -103,6 +107,7 @@ def _p1546(
     frequency_mhz: FloatArray,
     times_percent: FloatArray,
     erp_kw: FloatArray,
+    warm_sea: NDArray[np.bool_] | None,
 ) -> P1546Result:
     cover_m = np.array([path.p1546_surroundings_m for path in paths])
     return p1546.field_strength(
@@ -110,7 +115,8 @@ def _p1546(
         time_percent=times_percent,
         path_length_km=digest.path_length_km,
         land_km=digest.land_km,
-        cold_sea_km=digest.sea_km,
+        cold_sea_km=digest.sea_km if warm_sea is None else np.where(warm_sea, 0.0, digest.sea_km),
+        warm_sea_km=0.0 if warm_sea is None else np.where(warm_sea, digest.sea_km, 0.0),
         h1_source_height_m=digest.h1_source_height_m,
         tx_height_agl_m=np.array([path.antenna_agl_m for path in paths]),
         rx_height_agl_m=np.array([path.aerial_agl_m for path in paths]),

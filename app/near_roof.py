@@ -122,7 +122,7 @@ def worst_first(edges: Sequence[Edge]) -> tuple[Edge, ...]:
 
 def surroundings_height_m(roof: Roof, assumptions: Assumptions) -> float:
     """Height above the ground of the one obstacle that stands for the surroundings; 0 if not above the aerial."""
-    if roof.surroundings == "open":
-        return 0.0
+    if roof.surroundings in ("open", "mapped") or (roof.surroundings == "trees" and roof.leaves_m > 0):
+        return 0.0  # through the leaves, not over the trees
     height_m = assumptions.value(f"cover_{roof.surroundings}_m")
     return height_m if height_m > roof.aerial_agl_m else 0.0

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 from typing import Any
@@ -16,7 +17,9 @@ from app.chain.powering import as_powered
 from app.chain.windows import DEFAULT_STANDARD
 from app.chain_notes import chain_notes, with_notes
 from app.chance import Knowledge
+from app.declination import compass_text
 from app.errors import RequestError
+from app.mapped import credits_of, with_surroundings
 from app.margins import Air, Turned, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
@@ -44,7 +47,10 @@ def assess(
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = chains_of(request, store)
-    site = site_of(request.roof, ground)
+    roof, told = with_surroundings(request.roof, ground)
+    request = replace(request, roof=roof)
+    compass = compass_text(roof.latitude_deg, roof.longitude_deg, today or date.today())
+    site = replace(site_of(roof, ground, told), compass=compass)
     heard = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
     fields, air = heard.fields, heard.air
     multiplexes = sorted(set(air.multiplex_of))
@@ -78,7 +84,7 @@ def assess(
     document = answer_document(
         request, assumptions, site, store, fields, air, multiplexes, chains, turned, outcomes, verdicts, evidence
     )
-    return with_notes(document, notes)
+    return with_notes(document, notes) | {"credits": credits_of(ground)}
 
 
 def chains_of(request: AssessRequest, store: Store) -> list[Chain]:

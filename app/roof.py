@@ -8,10 +8,11 @@ from typing import Literal
 
 from app.errors import RequestError, RoofError
 
-Surroundings = Literal["open", "suburban", "urban", "trees"]
-SURROUNDINGS: tuple[Surroundings, ...] = ("open", "suburban", "urban", "trees")
+Surroundings = Literal["mapped", "open", "suburban", "urban", "trees"]
+SURROUNDINGS: tuple[Surroundings, ...] = ("open", "suburban", "urban", "trees", "mapped")
 
 LOWEST_AERIAL_M, HIGHEST_AERIAL_M = 1.0, 200.0
+DEEPEST_LEAVES_M = 300.0
 FARTHEST_OBSTACLE_M, HIGHEST_OBSTACLE_M = 2000.0, 500.0  # beyond, the elevation rasters show it
 
 
@@ -37,8 +38,9 @@ class Roof:
     latitude_deg: float
     longitude_deg: float
     aerial_agl_m: float = 10.0
-    surroundings: Surroundings = "open"
+    surroundings: Surroundings = "open"  # "mapped": as land cover shows them, open where there is none
     obstacles: tuple[Obstacle, ...] = ()
+    leaves_m: float = 0.0  # of foliage that the signals pass just before the aerial
 
     def __post_init__(self) -> None:
         """Refuse what cannot be a roof, saying what can."""
@@ -51,6 +53,7 @@ class Roof:
                 field="surroundings",
                 allowed=", ".join(SURROUNDINGS),
             )
+        check("leaves_m", self.leaves_m, 0, DEEPEST_LEAVES_M, "m of leaves before the aerial")
         for number, one in enumerate(self.obstacles):
             place = f"obstacles.{number}"
             check(f"{place}.bearing_deg", one.bearing_deg, 0, 360, "degrees from north")

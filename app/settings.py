@@ -26,6 +26,7 @@ class Settings(BaseSettings):
     host: str = Field("127.0.0.1", min_length=1, description="address the server listens on")
     port: int = Field(8790, ge=0, le=65535, description="port it listens on; 0 takes a free one")
     host_names: list[str] = Field([], description="names, besides addresses and localhost, that the page is opened by")
+    cache_limit_gb: float = Field(20.0, ge=1, le=10_000, description="most that decoded rasters may take on disk")
     workers: int = Field(4, ge=1, le=64, description="questions that are computed at once")
     largest_body_kb: int = Field(1024, ge=16, le=65536, description="largest request that is read")
     worth_per_multiplex: float | None = Field(None, ge=0, le=1e6, description="worth of one more wanted multiplex")

@@ -24,10 +24,11 @@ class Site:
 
     ground_amsl_m: float
     cautions: tuple[str, ...]
+    compass: str = ""  # where a compass points there today
 
 
-def site_of(roof: Roof, ground: Ground) -> Site:
-    """Return the ground under a roof.
+def site_of(roof: Roof, ground: Ground, told: str = "") -> Site:
+    """Return the ground under a roof; what was `told` of it before joins its cautions.
 
     Raises
     ------
@@ -39,8 +40,9 @@ def site_of(roof: Roof, ground: Ground) -> Site:
     height_m = bare_ground_m(ground, roof.latitude_deg, roof.longitude_deg).item()
     if not np.isfinite(height_m):
         raise CoverageError(missing_ground(ground, roof.latitude_deg, roof.longitude_deg))
+    cautions = (told,) if told else ()
     if not bool(ground.is_water(roof.latitude_deg, roof.longitude_deg)):
-        return Site(height_m, ())
+        return Site(height_m, cautions)
     shore_m = _distance_to_land_m(roof, ground)
     if shore_m is None:
         raise RoofError(
@@ -49,7 +51,9 @@ def site_of(roof: Roof, ground: Ground) -> Site:
             field="roof",
             allowed=f"land, or water within {FARTHEST_OFFSHORE_M:.0f} m of it",
         )
-    return Site(height_m, (f"The roof stands on water, about {shore_m:.0f} m from land: check the position.",))
+    return Site(
+        height_m, (*cautions, f"The roof stands on water, about {shore_m:.0f} m from land: check the position.")
+    )
 
 
 def missing_ground(ground: Ground, latitude_deg: float, longitude_deg: float) -> str:
@@ -68,7 +72,10 @@ def missing_ground(ground: Ground, latitude_deg: float, longitude_deg: float) ->
         )
     south, west = int(np.floor(latitude_deg)), int(np.floor(longitude_deg))
     tile = f"{'N' if south >= 0 else 'S'}{abs(south):02d}{'E' if west >= 0 else 'W'}{abs(west):03d}"
-    return f"no elevation at {at}: add a raster that covers it, such as tile {tile}, with `gainworth terrain add FILE`"
+    return (
+        f"no elevation at {at}: fetch tiles with `gainworth terrain get`, "
+        f"or add a raster that covers it, such as tile {tile}, with `gainworth terrain add FILE`"
+    )
 
 
 def place(latitude_deg: float, longitude_deg: float) -> str:

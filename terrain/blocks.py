@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from terrain.cache import ArrayCache
+from terrain.land_mask import shore_of_grid
 from terrain.raster import Raster
 from terrain.voids import BRIDGED_SAMPLES, bridge_small_voids, is_void, settle_declared_zeros
 from terrain.water import flat_zero_areas
@@ -19,6 +20,10 @@ IndexArray = NDArray[np.intp]
 
 # Cells of this many samples across are kept as means; all divide a block's side.
 COARSE = (1, 4, 16, 64)
+
+# Water of a raster counts as sea only this near to the sea of the coastline: polders and lakes at 0 m lie
+# farther off. Five times what the coastline is wrong by. Our choice.
+SHORE_KM = 5.0
 
 # Enough that a void which may be bridged is seen whole from each block it reaches into.
 _MARGIN = BRIDGED_SAMPLES + 2
@@ -31,9 +36,10 @@ class Blocks:
     corners of every cell lie in one block.
     """
 
-    def __init__(self, raster: Raster, cache: ArrayCache) -> None:
+    def __init__(self, raster: Raster, cache: ArrayCache, coast: bool = False) -> None:
         self._raster = raster
         self._cache = cache
+        self.coast = coast  # whether water counts only near the sea of the coastline
         self._lock = threading.Lock()
         self._down = max(1, -(-(raster.grid.rows - 1) // raster.block_rows))
         self._across = max(1, -(-(raster.grid.columns - 1) // raster.block_columns))
@@ -187,11 +193,16 @@ class Blocks:
         return kept
 
     def _water(self, block: tuple[int, int]) -> NDArray[np.bool_]:
-        name = self._named("water", block)
+        name = self._named("sea" if self.coast else "water", block)
         kept = self._cache.load(name)
         if kept is None:
             zero = self._metres(self._samples(block)) == 0
-            kept = self._cache.keep(name, flat_zero_areas(zero, self._raster.grid.spacing_m))
+            water = flat_zero_areas(zero, self._raster.grid.spacing_m)
+            if self.coast and water.any():
+                top, left = block[0] * self._raster.block_rows, block[1] * self._raster.block_columns
+                rows, columns = water.shape
+                water &= shore_of_grid(self._raster.grid, top, left, rows, columns, SHORE_KM)
+            kept = self._cache.keep(name, water)
         return kept
 
     def _decode(self, block: tuple[int, int]) -> NDArray[Any]:

@@ -2,6 +2,8 @@
 
 Every array is written under a name of its own and then renamed: readers in other threads and
 processes see a whole array or none. Two that make the same array at once write the same bytes.
+The folder is kept below a limit: what was used longest ago goes first, never what is mapped here or was
+used by anyone within the last hour.
 """
 
 from __future__ import annotations
@@ -11,6 +13,7 @@ import os
 import shutil
 import tempfile
 import threading
+import time
 import uuid
 import weakref
 from collections import OrderedDict
@@ -26,13 +29,22 @@ from terrain.errors import CacheError
 _LAYOUT = "ground-1"
 # Each mapped array holds a file handle; systems commonly allow 1024.
 _MAPPED_AT_ONCE = 256
+# What was read of a mapped array stays in memory as long as it is mapped.
+_MAPPED_BYTES = 768 << 20
+LIMIT_BYTES = 20 * 10**9
+_IN_USE_S = 3600.0
+_TRIM_TO = 0.8  # of the limit, so that not every new array begins anew
 
 
 class ArrayCache:
     """Named arrays in a folder; in a temporary folder where that one cannot be written."""
 
-    def __init__(self, folder: Path) -> None:
+    def __init__(self, folder: Path, limit_bytes: float = LIMIT_BYTES, mapped_bytes: int = _MAPPED_BYTES) -> None:
         self._folders = [folder / _LAYOUT]
+        self._limit_bytes = limit_bytes
+        self._mapped_limit = mapped_bytes
+        self.mapped_bytes = 0
+        self._kept_bytes: float | None = None  # in the folder; None until it was looked through
         self._temporary: Path | None = None
         self._mapped: OrderedDict[str, NDArray[Any]] = OrderedDict()
         self._lock = threading.Lock()
@@ -47,10 +59,9 @@ class ArrayCache:
             with contextlib.suppress(OSError, ValueError, EOFError):
                 # asarray: numpy's memmap class makes every indexing slower.
                 array = np.asarray(np.load(folder / f"{name}.npy", mmap_mode="r", allow_pickle=False))
-                with self._lock:
-                    self._mapped[name] = array
-                    while len(self._mapped) > _MAPPED_AT_ONCE:
-                        self._mapped.popitem(last=False)
+                with contextlib.suppress(OSError):
+                    os.utime(folder / f"{name}.npy")  # used now: trimming takes the oldest
+                self._map(name, array)
                 return array
         return None
 
@@ -66,7 +77,33 @@ class ArrayCache:
                 raise self._unusable(error) from error
             self._write_elsewhere(name, array)
         kept = self.load(name)
+        self._trim(array.nbytes)
         return array if kept is None else kept
+
+    def _map(self, name: str, array: NDArray[Any]) -> None:
+        with self._lock:
+            before = self._mapped.pop(name, None)
+            self.mapped_bytes += array.nbytes - (before.nbytes if before is not None else 0)
+            self._mapped[name] = array
+            while len(self._mapped) > 1 and (
+                len(self._mapped) > _MAPPED_AT_ONCE or self.mapped_bytes > self._mapped_limit
+            ):
+                self.mapped_bytes -= self._mapped.popitem(last=False)[1].nbytes
+
+    def _trim(self, more_bytes: float) -> None:
+        """Remove what was used longest ago once the folder is above its limit, and what older versions kept."""
+        folder = self._folders[0]
+        with self._lock:
+            if self._kept_bytes is not None:
+                self._kept_bytes += more_bytes
+                if self._kept_bytes <= self._limit_bytes:
+                    return
+            in_use = {folder / f"{name}.npy" for name in self._mapped}
+            if self._kept_bytes is None:
+                for old in folder.parent.glob("ground-*"):
+                    if old != folder:
+                        shutil.rmtree(old, ignore_errors=True)
+            self._kept_bytes = _trimmed(folder, self._limit_bytes, in_use)
 
     def _write_elsewhere(self, name: str, array: NDArray[Any]) -> None:
         try:
@@ -96,3 +133,24 @@ class ArrayCache:
             unfinished.replace(target)
         finally:
             unfinished.unlink(missing_ok=True)
+
+
+def _trimmed(folder: Path, limit_bytes: float, in_use: set[Path]) -> float:
+    """Remove the oldest arrays of a folder above its limit; returns how many bytes are left."""
+    found = []
+    for path in folder.rglob("*.npy"):
+        with contextlib.suppress(OSError):
+            stat = path.stat()
+            found.append((stat.st_mtime, stat.st_size, path))
+    total = float(sum(size for _, size, _ in found))
+    if total <= limit_bytes:
+        return total
+    now = time.time()
+    for used, size, path in sorted(found):
+        if total <= _TRIM_TO * limit_bytes or now - used < _IN_USE_S:
+            break
+        if path not in in_use:
+            with contextlib.suppress(OSError):
+                path.unlink()
+                total -= size
+    return total

@@ -5,7 +5,11 @@ TerrainError
 ├── PathError (ValueError)         two places between which there is no path
 ├── RasterError (ValueError)       a raster that cannot be used as it is
 │   └── UnplacedRasterError        a raster without a coordinate system
-└── CacheError (OSError)           the cache folder cannot be used
+├── CacheError (OSError)           the cache folder cannot be used
+├── SourceError (ValueError)       an entry of tile sources that cannot be followed
+└── DownloadError (OSError)        tiles that cannot be fetched or kept
+    ├── OfflineError               no server can be reached
+    └── DiskError                  the disk is full or not writable
 """
 
 
@@ -31,3 +35,19 @@ class UnplacedRasterError(RasterError):
 
 class CacheError(TerrainError, OSError):
     """The cache folder cannot be read or written."""
+
+
+class SourceError(TerrainError, ValueError):
+    """A source of tiles that is not known or whose entry cannot be followed."""
+
+
+class DownloadError(TerrainError, OSError):
+    """Tiles that cannot be fetched or kept: says why and what to do."""
+
+
+class OfflineError(DownloadError):
+    """No connection to a server at all."""
+
+
+class DiskError(DownloadError):
+    """The folder of tiles cannot be written, or the disk is full."""

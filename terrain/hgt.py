@@ -56,19 +56,22 @@ def hgt_header(path: Path) -> tuple[int, Affine]:
 
 def read_hgt(path: Path) -> NDArray[np.int16]:
     """All samples of a tile. Raises RasterError where it is damaged."""
+    side, _ = hgt_header(path)
+    expected = 2 * side * side
     try:
+        # Never more than expected is unpacked: the size that an archive states may be a lie.
         if path.suffix.lower() == ".zip":
-            with zipfile.ZipFile(path) as archive:
-                content = archive.read(_member(path, archive))
+            with zipfile.ZipFile(path) as archive, archive.open(_member(path, archive)) as file:
+                content = file.read(expected + 1)
         elif path.suffix.lower() == ".gz":
             with gzip.open(path) as file:
-                content = file.read()
+                content = file.read(expected + 1)
+                content += file.read(1)  # meets the end, where the sum is checked
         else:
             content = path.read_bytes()
     except (OSError, EOFError, zipfile.BadZipFile, zlib.error, NotImplementedError, RuntimeError) as error:
         raise RasterError(f"{path.name} is damaged or cannot be read: fetch it again or take it out") from error
-    side, _ = hgt_header(path)
-    if len(content) != 2 * side * side:
+    if len(content) != expected:
         raise RasterError(f"{path.name} is damaged: fetch it again or take it out")
     return np.frombuffer(content, dtype=">i2").reshape(side, side).astype(np.int16)
 

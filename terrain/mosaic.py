@@ -11,12 +11,14 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from terrain.bilinear import ROUNDING, bilinear
+from terrain.bilinear import bilinear
 from terrain.blocks import COARSE, Blocks
-from terrain.cache import ArrayCache
+from terrain.cache import LIMIT_BYTES, ArrayCache
 from terrain.errors import RasterError
-from terrain.grid import Grid
-from terrain.raster import SUFFIXES, Raster, open_raster
+from terrain.files import Refused, raster_files
+from terrain.layer import Layer, surrounded, within
+from terrain.overlay import Overlay
+from terrain.raster import Raster, open_raster
 from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
@@ -36,21 +38,8 @@ class RasterInfo:
     bounds: tuple[float, float, float, float]  # west, south, east, north [deg]; east above 180 past the meridian
     crs: str
     void_share: float  # of its samples, 0 to 1; NaN until the raster was read whole once (`Ground.survey`)
-    attribution: str  # as the file says, mostly ""
-
-
-@dataclass(frozen=True, slots=True)
-class Refused:
-    """A file that is no part of the ground, and what to do about it."""
-
-    path: Path
-    message: str
-
-
-@dataclass(frozen=True, slots=True)
-class _Layer:
-    raster: Raster
-    blocks: Blocks
+    attribution: str  # as the file or its source says, else ""
+    unit: str  # of the numbers in the file; heights are in metres everywhere
 
 
 class Ground:
@@ -62,21 +51,31 @@ class Ground:
     across the seam take their corners from both; at an outer edge the last sample holds for half a cell.
     """
 
-    def __init__(self, layers: Sequence[_Layer], refused: Sequence[Refused], cache: ArrayCache) -> None:
+    def __init__(
+        self, layers: Sequence[Layer], refused: Sequence[Refused], cache: ArrayCache, overlay: Overlay | None = None
+    ) -> None:
         self._layers = tuple(layers)
         self.refused = tuple(refused)
         self._cache = cache
+        self.overlay = overlay
 
     @classmethod
-    def open(cls, paths: Sequence[Path], cache_dir: Path) -> Ground:
+    def open(
+        cls,
+        paths: Sequence[Path],
+        cache_dir: Path,
+        overlay: Overlay | None = None,
+        cache_limit_bytes: float = LIMIT_BYTES,
+    ) -> Ground:
         """Ground of files and of the rasters in folders; what cannot be used stands in `refused`.
 
         In a folder, files with other names than rasters have are passed over; a file named itself is
         always tried. Decoded samples are kept in `cache_dir`, or in a temporary folder if that is read-only.
+        With an overlay, what no raster knows is sea where the coastline says so, and land cover has its say.
         """
-        cache = ArrayCache(cache_dir)
+        cache = ArrayCache(cache_dir, cache_limit_bytes)
         layers, refused, seen = [], [], set()
-        for path in _files(paths):
+        for path in raster_files(paths):
             try:
                 raster = open_raster(path)
             except RasterError as error:
@@ -85,9 +84,9 @@ class Ground:
             identity = (raster.content, raster.grid.transform, raster.crs)
             if identity not in seen:
                 seen.add(identity)
-                layers.append(_Layer(raster, Blocks(raster, cache)))
+                layers.append(Layer(raster, Blocks(raster, cache, coast=overlay is not None)))
         layers.sort(key=lambda layer: (round(layer.raster.grid.spacing_m, 1), layer.raster.name))
-        return cls(layers, refused, cache)
+        return cls(layers, refused, cache, overlay)
 
     @property
     def rasters(self) -> tuple[RasterInfo, ...]:
@@ -106,6 +105,7 @@ class Ground:
                     crs=raster.crs,
                     void_share=float("nan") if share is None else share,
                     attribution=raster.attribution,
+                    unit=raster.unit,
                 )
             )
         return tuple(infos)
@@ -117,13 +117,18 @@ class Ground:
         for layer in self._layers:
             raster = layer.raster
             digest.update(f"{raster.content} {raster.kind} {raster.crs} {tuple(raster.grid.transform)}\n".encode())
+        if self.overlay is not None:
+            digest.update(self.overlay.version.encode())
         return digest.hexdigest()[:12]
 
     def sheets(self, wanted: Callable[[Raster], bool] = lambda _: True) -> list[Sheet]:
         """The wanted rasters laid together as far as one array can hold them (sheet.py), decoded the first time.
 
+        None with land cover, which sheets do not know.
         Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
         """
+        if self.overlay is not None and self.overlay.cover is not None:
+            return []
         return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
 
     def survey(self) -> Ground:
@@ -135,7 +140,7 @@ class Ground:
                 layers.append(layer)
             except RasterError as error:
                 refused.append(Refused(layer.raster.path, str(error)))
-        return Ground(layers, refused, self._cache)
+        return Ground(layers, refused, self._cache, self.overlay)
 
     def elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> FloatArray:
         """Height above sea level [m], bilinear between samples; NaN where no raster has a value.
@@ -144,7 +149,8 @@ class Ground:
         Raises RasterError for a damaged file and CacheError if decoded samples cannot be kept.
         """
         lat, lon = _positions(latitude_deg, longitude_deg)
-        return self._answer(lat.ravel(), lon.ravel()).height_m.reshape(lat.shape)
+        height_m = self._answer(lat.ravel(), lon.ravel()).height_m.reshape(lat.shape)
+        return height_m if self.overlay is None else self.overlay.filled(lat, lon, height_m)
 
     def spacing_m(self, latitude_deg: float, longitude_deg: float) -> float:
         """Spacing of the raster that answers at a position [m]; NaN where none does."""
@@ -162,17 +168,20 @@ class Ground:
 
         The raster that answers for the elevation decides; a missing sample is not water.
         """
-        lat, lon = _positions(latitude_deg, longitude_deg)
-        return self._water(self._answer(lat.ravel(), lon.ravel()), lat.ravel(), lon.ravel()).reshape(lat.shape)
+        return self.elevation_and_water(latitude_deg, longitude_deg)[1]
 
     def elevation_and_water(
         self, latitude_deg: ArrayLike, longitude_deg: ArrayLike
     ) -> tuple[FloatArray, NDArray[np.bool_]]:
         """`elevation_m` and `is_water` of the same positions for little more than one of them."""
         lat, lon = _positions(latitude_deg, longitude_deg)
-        answer = self._answer(lat.ravel(), lon.ravel())
-        water = self._water(answer, lat.ravel(), lon.ravel())
-        return answer.height_m.reshape(lat.shape), water.reshape(lat.shape)
+        flat_lat, flat_lon = lat.ravel(), lon.ravel()
+        answer = self._answer(flat_lat, flat_lon)
+        height_m, water = answer.height_m, self._water(answer, flat_lat, flat_lon)
+        if self.overlay is not None:
+            water = self.overlay.sea(flat_lat, flat_lon, height_m, water)
+            height_m = self.overlay.filled(flat_lat, flat_lon, height_m)
+        return height_m.reshape(lat.shape), water.reshape(lat.shape)
 
     def mean_elevation_m(self, latitude_deg: ArrayLike, longitude_deg: ArrayLike, cell_m: float) -> FloatArray:
         """Mean heights [m] of cells of at most `cell_m` that hold the positions, for wide views.
@@ -262,8 +271,11 @@ class Ground:
                 answer.height_m[which] = height
                 answer.layer[which] = np.where(known, number, -1)
                 answer.bridged[which] = known & bridged
+        open_still = np.nonzero((answer.layer < 0) & ~reached & np.isfinite(lat + lon))[0]
+        if open_still.size:
+            answer.height_m[open_still], answer.layer[open_still] = self._gaps(lat[open_still], lon[open_still])
 
-    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, _Layer, bool]]:
+    def _near(self, lat: FloatArray, lon: FloatArray) -> list[tuple[int, Layer, bool]]:
         """Layers whose bounding box meets that of the positions, their numbers, and if it holds them all."""
         south, north = np.fmin.reduce(lat, initial=90.0), np.fmax.reduce(lat, initial=-90.0)
         west, east = np.fmin.reduce(lon, initial=540.0), np.fmax.reduce(lon, initial=-540.0)
@@ -276,23 +288,47 @@ class Ground:
             if layer.raster.grid.meets(*box)
         ]
 
-    def _interpolate(self, layer: _Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
+    def _interpolate(self, layer: Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
         """Bilinear heights of one raster, NaN outside its outer pixel edges and at voids."""
         grid = layer.raster.grid
         row, column = grid.index(lat, lon)
-        inside = _surrounded(grid, row, column)
+        inside = surrounded(grid, row, column)
         if inside.all():
-            return _within(layer, row, column, bridged)
+            return within(layer, row, column, bridged)
         height = np.full(lat.size, np.nan)
-        height[inside] = _within(layer, row[inside], column[inside], bridged)
+        height[inside] = within(layer, row[inside], column[inside], bridged)
         half_out = ~inside & (row >= -0.5) & (row <= grid.rows - 0.5)
         half_out &= (column >= -0.5) & (column <= grid.columns - 0.5)
         if half_out.any():
             height[half_out] = self._across_edge(layer, row[half_out], column[half_out], bridged)
         return height
 
-    def _across_edge(self, layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:
-        """Heights in the outermost half cells, whose outer corners belong to the neighbours."""
+    def _gaps(self, lat: FloatArray, lon: FloatArray, deep: bool = True) -> tuple[FloatArray, NDArray[np.intp]]:
+        """Heights in the strip that unequal pixels leave between two tiles, and the layers that answer.
+
+        The outermost cell of a tile is whole there: up to a neighbour's samples, which must be known.
+        """
+        height, answering = np.full(lat.size, np.nan), np.full(lat.size, -1)
+        for number, layer in enumerate(self._layers):
+            grid = layer.raster.grid
+            cell = max((grid.north_deg - grid.south_deg) / grid.rows, (grid.east_deg - grid.west_deg) / grid.columns)
+            if not grid.meets(lat.min() - cell, lon.min() - cell, lat.max() + cell, lon.max() + cell):
+                continue
+            row, column = grid.index(lat, lon)
+            beside = np.isnan(height) & (row > -1) & (row < grid.rows) & (column > -1) & (column < grid.columns)
+            beside &= ~surrounded(grid, row, column)
+            if beside.any():
+                height[beside] = self._across_edge(layer, row[beside], column[beside], False, whole=True, deep=deep)
+                answering[beside & np.isfinite(height)] = number
+        return height, answering
+
+    def _across_edge(
+        self, layer: Layer, row: FloatArray, column: FloatArray, bridged: bool, whole: bool = False, deep: bool = True
+    ) -> FloatArray:
+        """Heights in the outermost half cells, whose outer corners belong to the neighbours.
+
+        With `whole`, in all of the outermost cells, NaN where no neighbour knows a corner.
+        """
         grid = layer.raster.grid
         top, left = np.floor(row).astype(np.intp), np.floor(column).astype(np.intp)
         corners = np.empty((4, row.size))
@@ -301,15 +337,20 @@ class Ground:
             own_r, own_c = np.clip(r, 0, grid.rows - 1), np.clip(c, 0, grid.columns - 1)
             corners[corner] = layer.blocks.samples(own_r, own_c, bridged)
             # At the ground's outer edge the sample beside stands for the one that nobody has.
-            for beside_r, beside_c in ((r, own_c), (own_r, c), (r, c)):
+            for beside_r, beside_c in ((r, c),) if whole else ((r, own_c), (own_r, c), (r, c)):
                 foreign = (beside_r != own_r) | (beside_c != own_c)
                 place = grid.position(beside_r[foreign].astype(float), beside_c[foreign].astype(float))
-                neighbour = self._neighbour(*place)
-                corners[corner, foreign] = np.where(np.isfinite(neighbour), neighbour, corners[corner, foreign])
+                neighbour = self._neighbour(*place, deep)
+                if not whole:
+                    neighbour = np.where(np.isfinite(neighbour), neighbour, corners[corner, foreign])
+                corners[corner, foreign] = neighbour
         return bilinear(corners, row - top, column - left)
 
-    def _neighbour(self, lat: FloatArray, lon: FloatArray) -> FloatArray:
-        """Heights from the first raster whose samples surround a position, NaN where none does."""
+    def _neighbour(self, lat: FloatArray, lon: FloatArray, deep: bool) -> FloatArray:
+        """Heights from the first raster whose samples surround a position, NaN where none does.
+
+        With `deep`, also between the samples of two: where tiles of unequal pixels meet at a corner.
+        """
         height = np.full(lat.size, np.nan)
         for _, layer, _ in self._near(lat, lon):
             grid = layer.raster.grid
@@ -318,8 +359,11 @@ class Ground:
             if open_still.size == 0:
                 continue
             row, column = grid.index(lat[open_still], lon[open_still])
-            inside = _surrounded(grid, row, column)
-            height[open_still[inside]] = _within(layer, row[inside], column[inside], bridged=False)
+            inside = surrounded(grid, row, column)
+            height[open_still[inside]] = within(layer, row[inside], column[inside], bridged=False)
+        open_still = np.nonzero(np.isnan(height) & np.isfinite(lat + lon))[0]
+        if deep and open_still.size:
+            height[open_still] = self._gaps(lat[open_still], lon[open_still], deep=False)[0]
         return height
 
     def _water(self, answer: _Answer, lat: FloatArray, lon: FloatArray) -> NDArray[np.bool_]:
@@ -343,17 +387,6 @@ class _Answer:
     bridged: NDArray[np.bool_]  # (n,) across a small void
 
 
-def _files(paths: Sequence[Path]) -> list[Path]:
-    """Files as named, and in folders those that are named like rasters, at any depth."""
-    files: list[Path] = []
-    for path in paths:
-        if path.is_dir():
-            files += sorted(p for p in path.rglob("*") if p.name.lower().endswith(SUFFIXES) and p.is_file())
-        else:
-            files.append(path)
-    return list(dict.fromkeys(files))
-
-
 def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[FloatArray, FloatArray]:
     """Positions of a common shape; what is infinite becomes NaN."""
     lat, lon = (np.asarray(value, dtype=float) for value in (latitude_deg, longitude_deg))
@@ -362,18 +395,3 @@ def _positions(latitude_deg: ArrayLike, longitude_deg: ArrayLike) -> tuple[Float
     )
     lat, lon = np.broadcast_arrays(lat, lon)
     return lat, lon
-
-
-def _surrounded(grid: Grid, row: FloatArray, column: FloatArray) -> NDArray[np.bool_]:
-    """Whether positions lie between samples of a raster, rounding errors allowed for."""
-    inside: NDArray[np.bool_] = (row >= -ROUNDING) & (row <= grid.rows - 1 + ROUNDING)
-    inside &= (column >= -ROUNDING) & (column <= grid.columns - 1 + ROUNDING)
-    return inside
-
-
-def _within(layer: _Layer, row: FloatArray, column: FloatArray, bridged: bool) -> FloatArray:
-    """Bilinear heights at positions between samples of one raster."""
-    grid = layer.raster.grid
-    top = np.clip(row.astype(np.intp), 0, grid.rows - 2)
-    left = np.clip(column.astype(np.intp), 0, grid.columns - 2)
-    return bilinear(layer.blocks.cells(top, left, bridged), row - top, column - left)

@@ -12,6 +12,7 @@ from terrain.errors import PathError
 from terrain.geodesy import distance_and_bearing, points_along
 from terrain.ground import bare_ground_m
 from terrain.mosaic import Ground
+from terrain.overlay import with_cover
 from terrain.water import zones
 
 FloatArray = NDArray[np.float64]
@@ -32,7 +33,7 @@ class Profile:
     """Ground under one path, transmitter first, at equal steps along the WGS 84 geodesic."""
 
     distance_km: FloatArray  # (n,) from 0, rising
-    ground_amsl_m: FloatArray  # (n,) as the raster has it, with what stands on it; NaN where none has a height
+    ground_amsl_m: FloatArray  # (n,) as raster and land cover have it, with what stands on it; NaN where missing
     bare_amsl_m: FloatArray  # (n,) bare ground, never above ground_amsl_m (ground.py)
     kinds: tuple[str, ...]  # of the rasters that answered: "bare", "radar-surface", "surface"
     zone: NDArray[np.int8]  # (n,) 1 sea, 3 coastal land, 4 inland (water.py)
@@ -78,22 +79,23 @@ def sample_profile(
     distance_km = np.linspace(0.0, length_km, points)
     lat, lon = points_along(lat1, lon1, lat2, lon2, distance_km)
     height_m, water = ground.elevation_and_water(lat, lon)
+    bare_m = _bare_along_m(ground, distance_km, lat, lon, height_m)
+    rasters = ground.rasters
+    kinds = [rasters[number].kind if number >= 0 else "" for number in ground.answering(lat, lon).tolist()]
+    surface_m = height_m
+    if ground.overlay is not None and ground.overlay.cover is not None:
+        surface_m = with_cover(ground.overlay.cover, lat, lon, height_m, bare_m, kinds)
     return Profile(
         distance_km=distance_km,
-        ground_amsl_m=height_m,
-        bare_amsl_m=_bare_along_m(ground, distance_km, lat, lon, height_m),
-        kinds=_kinds(ground, lat, lon),
+        ground_amsl_m=surface_m,
+        bare_amsl_m=bare_m,
+        kinds=tuple(sorted({kind for kind in kinds if kind})),
         zone=zones(distance_km, height_m, water),
         latitude_deg=lat,
         longitude_deg=lon,
         spacing_m=1e3 * length_km / (points - 1),
         missing_share=float(np.isnan(height_m).mean()),
     )
-
-
-def _kinds(ground: Ground, lat: FloatArray, lon: FloatArray) -> tuple[str, ...]:
-    numbers, rasters = np.unique(ground.answering(lat, lon)), ground.rasters
-    return tuple(sorted({rasters[number].kind for number in numbers.tolist() if number >= 0}))
 
 
 def _bare_along_m(

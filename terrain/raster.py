@@ -1,4 +1,4 @@
-"""Opens one elevation raster of any kind. Only this module touches raster files.
+"""Opens one elevation raster of any kind. Only this module opens raster files.
 
 GeoTIFF in any coordinate system and number type, .hgt (plain, zipped, gzipped), ESRI ASCII grids.
 What a file does not say of itself stands in a sidecar `NAME.gainworth.toml` beside it.
@@ -55,6 +55,7 @@ _FORGOTTEN_VOID = -9999.0
 _CACHED_AS = {"uint8": "int16", "int8": "int16", "int64": "float64", "uint64": "float64"}
 _NUMBERS = ("int16", "uint16", "int32", "uint32", "float32", "float64", *_CACHED_AS)
 _WHOLLY_HASHED_BYTES = 4 << 20
+_LARGEST_BLOCK = 1 << 27  # samples that must be unpacked at once: half a gigabyte of floats
 _WARNINGS = threading.Lock()
 
 
@@ -69,6 +70,7 @@ class Raster:
     dtype: str  # of the samples as `read` gives them
     void: float  # value of a missing sample in `read`; NaN for float samples
     zero_declared_void: bool
+    unit: str  # of the numbers in the file, as it says or as declared
     scale: float  # metres = sample × scale + offset_m
     offset_m: float
     block_rows: int  # a block that the file yields without decoding others in vain
@@ -103,7 +105,7 @@ class Raster:
         return np.asarray(samples)
 
 
-def declare(path: Path, crs: str | None = None, kind: str | None = None) -> Path:
+def declare(path: Path, crs: str | None = None, kind: str | None = None, unit: str | None = None) -> Path:
     """Write down beside a raster what it does not say itself; what is not given stays as it was.
 
     Parameters
@@ -111,23 +113,24 @@ def declare(path: Path, crs: str | None = None, kind: str | None = None) -> Path
     path : the raster.
     crs : its coordinate system, such as "EPSG:4326"; goes before the one in the file.
     kind : "surface" (with houses and trees), "radar-surface" (in between, as SRTM) or "bare".
+    unit : of its heights, such as "m", "ft" or "us survey foot"; goes before the one in the file.
 
     Returns the sidecar's path. Raises RasterError for an unknown coordinate system or kind, a
     missing raster, or a folder that cannot be written.
     """
     if not path.is_file():
         raise RasterError(f"{path} is not a file: give the path of a raster")
-    said = _declared(path)
-    said |= {key: value for key, value in (("crs", crs), ("kind", kind)) if value is not None}
+    said = declared(path)
+    said |= {key: value for key, value in (("crs", crs), ("kind", kind), ("unit", unit)) if value is not None}
     _check_declared(path, said)
-    sidecar = _sidecar(path)
+    beside = sidecar(path)
     try:
-        sidecar.write_text("".join(f"{key} = {json.dumps(value)}\n" for key, value in sorted(said.items())))
+        beside.write_text("".join(f"{key} = {json.dumps(value)}\n" for key, value in sorted(said.items())))
     except OSError as error:
         raise RasterError(
-            f"{sidecar} cannot be written ({error.strerror}): copy {path.name} to a folder you may write"
+            f"{beside} cannot be written ({error.strerror}): copy {path.name} to a folder you may write"
         ) from error
-    return sidecar
+    return beside
 
 
 def open_raster(path: Path) -> Raster:
@@ -140,7 +143,7 @@ def open_raster(path: Path) -> Raster:
     RasterError
         It is no raster, damaged, of a kind we do not read, or no elevation.
     """
-    said = _declared(path)
+    said = declared(path)
     _check_declared(path, said)
     try:
         if not path.is_file() or path.stat().st_size == 0:
@@ -169,21 +172,22 @@ def _hgt_header(path: Path, said: dict[str, str]) -> Raster:
         dtype="int16",
         void=hgt.VOID,
         zero_declared_void=False,
+        unit="m",
         scale=1.0,
         offset_m=0.0,
         block_rows=side,
         block_columns=side,
-        attribution="",
-        content=_content(path, ("hgt", side)),
+        attribution=said.get("attribution", ""),
+        content=content_of(path, ("hgt", side)),
     )
 
 
 def _header(path: Path, said: dict[str, str]) -> Raster:
-    with _open(path) as file:
+    with opened(path) as file:
         _check_bands(path, file)
         crs = _crs(path, file, said.get("crs"))
-        grid = _grid(path, file.height, file.width, _transform(path, file), crs)
-        scale, offset_m = _metres(path, file, crs)
+        grid = placed(path, file, said.get("crs"))
+        unit, scale, offset_m = _metres(path, file, crs, said.get("unit"))
         _check_end(path, file)
         dtype = _CACHED_AS.get(file.dtypes[0], file.dtypes[0])
         striped = file.block_shapes[0][1] == file.width <= 16 * BLOCK_SIDE
@@ -195,17 +199,18 @@ def _header(path: Path, said: dict[str, str]) -> Raster:
             dtype=dtype,
             void=_void(dtype, file.nodata),
             zero_declared_void=file.nodata == 0,
+            unit=unit,
             scale=scale,
             offset_m=offset_m,
             block_rows=max(1, BLOCK_SIDE**2 // file.width // 64) * 64 if striped else BLOCK_SIDE,
             block_columns=file.width if striped else BLOCK_SIDE,
-            attribution=file.tags().get("TIFFTAG_COPYRIGHT", ""),
-            content=_content(path, (file.shape, dtype, file.nodata, scale, offset_m)),
+            attribution=said.get("attribution", file.tags().get("TIFFTAG_COPYRIGHT", "")),
+            content=content_of(path, (file.shape, dtype, file.nodata, scale, offset_m)),
         )
 
 
 @contextmanager
-def _open(path: Path) -> Iterator[Any]:
+def opened(path: Path) -> Iterator[Any]:
     """The open dataset. The driver follows from the name: nothing else is tried."""
     driver = _DRIVERS.get(path.suffix.lower())
     if driver is None:
@@ -224,9 +229,19 @@ def _open(path: Path) -> Iterator[Any]:
         yield file
 
 
+def placed(path: Path, file: Any, crs: str | None) -> Grid:
+    """Where the samples of an open file lie; `crs` goes before its own. Raises RasterError where it does not say."""
+    if np.prod(file.block_shapes[0]) > _LARGEST_BLOCK:
+        raise RasterError(
+            f"{path.name} is stored in pieces of {file.block_shapes[0][0]} × {file.block_shapes[0][1]} samples, too "
+            "large to unpack: write it in tiles of 512, for instance with gdal_translate -co TILED=YES"
+        )
+    return _grid(path, file.height, file.width, _transform(path, file), _crs(path, file, crs))
+
+
 def _window(path: Path, window: Window) -> tuple[NDArray[Any], NDArray[np.bool_]]:
     """Samples as they are stored, and which the file says are missing."""
-    with _open(path) as file:
+    with opened(path) as file:
         try:
             return file.read(1, window=window), file.read_masks(1, window=window) == 0
         except (rasterio.errors.RasterioError, MemoryError) as error:
@@ -278,8 +293,9 @@ def _crs(path: Path, file: Any, declared: str | None) -> CRS:
         ) from error
 
 
-def _command(path: Path, number: str = "NUMBER") -> str:
-    return f"gainworth terrain add {shlex.quote(str(path))} --crs EPSG:{number}"
+def _command(path: Path, number: str | None = "NUMBER") -> str:
+    crs = "" if number is None else f" --crs EPSG:{number}"
+    return f"gainworth terrain add {shlex.quote(str(path))}{crs}"
 
 
 def _transform(path: Path, file: Any) -> Affine:
@@ -292,15 +308,20 @@ def _transform(path: Path, file: Any) -> Affine:
     return transform
 
 
-def _metres(path: Path, file: Any, crs: CRS) -> tuple[float, float]:
-    """Scale and offset from stored numbers to metres, from the band's unit or the vertical system's."""
-    unit = (file.units[0] or "").strip().lower()
+def _metres(path: Path, file: Any, crs: CRS, declared_unit: str | None) -> tuple[str, float, float]:
+    """Unit, scale and offset from stored numbers to metres: as declared, by the band, or by the vertical system."""
+    unit = (declared_unit or file.units[0] or "").strip().lower()
     if not unit and crs.is_compound:
         unit = crs.sub_crs_list[-1].axis_info[0].unit_name.strip().lower()
+    if not unit and not crs.is_geographic and "foot" in crs.axis_info[0].unit_name.lower():
+        raise RasterError(
+            f"{path.name} lies in a coordinate system in feet and does not say whether its heights are, too. "
+            f"Declare it: {_command(path, None)} --unit ft, or --unit m"
+        )
     if unit not in _METRES:
         raise RasterError(f'{path.name} has heights in "{unit}": use metres or feet')
     factor = _METRES[unit]
-    return factor * file.scales[0], factor * file.offsets[0]
+    return unit or "m", factor * file.scales[0], factor * file.offsets[0]
 
 
 def _check_end(path: Path, file: Any) -> None:
@@ -324,7 +345,7 @@ def _void(dtype: str, nodata: float | None) -> float:
     return float(limits.min if limits.min < 0 else limits.max)
 
 
-def _content(path: Path, decoding: tuple[Any, ...]) -> str:
+def content_of(path: Path, decoding: tuple[Any, ...]) -> str:
     """Hash of a file: whole below 4 MiB, else its size, time of change and 16 samples of 64 KiB."""
     size = path.stat().st_size
     digest = hashlib.sha256(repr((size, decoding)).encode())
@@ -339,23 +360,27 @@ def _content(path: Path, decoding: tuple[Any, ...]) -> str:
     return digest.hexdigest()[:24]
 
 
-def _sidecar(path: Path) -> Path:
+def sidecar(path: Path) -> Path:
+    """Where it is written down what a raster does not say itself."""
     return path.with_name(f"{path.name}.gainworth.toml")
 
 
-def _declared(path: Path) -> dict[str, str]:
-    sidecar = _sidecar(path)
+def declared(path: Path) -> dict[str, str]:
+    """What was written down beside a raster. Raises RasterError where that cannot be read."""
+    beside = sidecar(path)
     try:
-        return {key: str(value) for key, value in tomllib.loads(sidecar.read_text()).items()}
+        return {key: str(value) for key, value in tomllib.loads(beside.read_text(encoding="utf-8")).items()}
     except FileNotFoundError:
         return {}
     except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
         raise RasterError(
-            f'{sidecar.name} cannot be read: write lines such as crs = "EPSG:4326", or delete it'
+            f'{beside.name} cannot be read: write lines such as crs = "EPSG:4326", or delete it'
         ) from error
 
 
 def _check_declared(path: Path, said: dict[str, str]) -> None:
+    if said.get("unit", "").strip().lower() not in _METRES:
+        raise RasterError(f'{path.name} is declared to have heights in "{said["unit"]}": use m, ft or us survey foot')
     if said.get("kind", "surface") not in KINDS:
         raise RasterError(f'{path.name} is declared as "{said["kind"]}": use {", ".join(KINDS)}')
     try:

@@ -151,7 +151,7 @@ def _sheet(group: list[int], layers: Sequence[tuple[Raster, Blocks]], cache: Arr
     foreign = [(number, raster.grid) for number, (raster, _) in enumerate(layers) if number not in group]
     dtype = np.dtype("int32" if first.dtype == "uint16" else first.dtype)
     void = float(np.iinfo(dtype).min) if dtype.kind == "i" else -1e30
-    named = hashlib.sha256(repr([(t.raster.content, t.top, t.left) for t in tiles]).encode())
+    named = hashlib.sha256(repr([(t.raster.content, t.blocks.coast, t.top, t.left) for t in tiles]).encode())
     named.update(repr([(tuple(g.transform), g.rows, g.columns, n < group[0]) for n, g in foreign]).encode())
     name = f"sheets/{named.hexdigest()[:24]}"
     samples, water = cache.load(f"{name}-samples"), cache.load(f"{name}-water")

@@ -9,6 +9,7 @@ from typing import Any, Literal
 
 import typst
 
+Standard = Literal["ua-1"]
 TEMPLATE = Path(__file__).parent / "report.typ"
 
 
@@ -26,8 +27,6 @@ def report_pdf(content: Mapping[str, Any]) -> bytes:
         return _set(content, [])
 
 
-def _set(content: Mapping[str, Any], standards: list[Literal["ua-1"]]) -> bytes:
+def _set(content: Mapping[str, Any], standards: list[Standard]) -> bytes:
     inputs = {"content": json.dumps(content)}
-    made = typst.compile(str(TEMPLATE), format="pdf", sys_inputs=inputs, pdf_standards=standards)
-    assert isinstance(made, bytes)  # one document, not a list of pages
-    return made
+    return typst.compile(TEMPLATE, format="pdf", sys_inputs=inputs, pdf_standards=[*standards])

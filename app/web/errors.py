@@ -22,7 +22,15 @@ from app.errors import (
     TransmitterFileError,
 )
 from propagation.errors import ProfileError, PropagationError, RangeError
-from terrain.errors import CacheError, CoverageError, RasterError, TerrainError
+from terrain.errors import (
+    CacheError,
+    CoverageError,
+    DiskError,
+    DownloadError,
+    OfflineError,
+    RasterError,
+    TerrainError,
+)
 
 # From the leaves to the roots: the first class that fits answers.
 STATUS: tuple[tuple[type[Exception], int, str], ...] = (
@@ -38,6 +46,9 @@ STATUS: tuple[tuple[type[Exception], int, str], ...] = (
     (CoverageError, 422, "coverage"),
     (RasterError, 422, "raster"),
     (CacheError, 503, "cache"),
+    (DiskError, 507, "disk"),
+    (OfflineError, 503, "offline"),
+    (DownloadError, 502, "download"),
     (TerrainError, 422, "terrain"),
     (RangeError, 422, "range"),
     (ProfileError, 422, "profile"),

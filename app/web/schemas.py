@@ -85,8 +85,9 @@ class RoofIn(Strict):
     latitude_deg: float = Field(examples=[0.0])
     longitude_deg: float = Field(examples=[0.0])
     aerial_agl_m: float = 10.0
-    surroundings: Surroundings = "open"
+    surroundings: Surroundings = "mapped"
     obstacles: list[ObstacleIn] = Field([], max_length=360)
+    leaves_m: float = 0.0
 
     def roof(self) -> Roof:
         """Return the roof that app works with."""
@@ -96,6 +97,7 @@ class RoofIn(Strict):
                 longitude_deg=self.longitude_deg,
                 aerial_agl_m=self.aerial_agl_m,
                 surroundings=self.surroundings,
+                leaves_m=self.leaves_m,
                 obstacles=tuple(Obstacle(**one.model_dump()) for one in self.obstacles),
             )
 

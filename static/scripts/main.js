@@ -60,7 +60,8 @@ const follow = createFollow(api, store);
 /** Reads what was typed, and asks. */
 async function assess() {
   const { where, height } = store.get();
-  const at = parsePlace(where);
+  const at = await placed(where);
+  if (where !== store.get().where) return;
   if ('problem' in at) return void store.set({ trouble: { message: at.problem, field: 'where' } });
   const up = parseHeight(height, store.get().units);
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
@@ -73,6 +74,22 @@ async function assess() {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
     store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
+  }
+}
+
+/**
+ * Degrees are read here; minutes and seconds, grids and codes by the server.
+ * @param {string} text
+ * @returns {Promise<{place: import('./state.js').Place} | {problem: string}>}
+ */
+async function placed(text) {
+  const at = parsePlace(text);
+  if (!('problem' in at) || !/\d/.test(text) || at.problem.includes('not on Earth')) return at;
+  try {
+    const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
+    return { place: { latitude_deg, longitude_deg } };
+  } catch (error) {
+    return { problem: error.message };
   }
 }
 

@@ -307,7 +307,7 @@ def test_command_line_reads_measured_files(run, tmp_path):
         (("import", "none.toml"), "there is no such file"),
         (("export", "no-such-chain"), 'there is no chain "no-such-chain"'),
         (("block", "--at", AT, "--outlets", "0", "--aerial", "long"), "0 outlets: use 1 to 64"),
-        (("sweep", "--at", "here"), "write two numbers"),
+        (("sweep", "--at", "here"), "cannot be read"),
     ],
 )
 def test_command_line_says_the_mend_and_leaves_with_2(run, words, message):

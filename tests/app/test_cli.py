@@ -52,9 +52,9 @@ def test_assess_json_is_the_document(run):
 @pytest.mark.parametrize(
     ("words", "message"),
     [
-        (("assess", "--at", "here"), 'is "here": write two numbers'),
-        (("assess", "--at", "nan,1"), "use -90 to 90"),
-        (("assess", "--at", "95,1"), "use -90 to 90"),
+        (("assess", "--at", "here"), 'position "here" cannot be read'),
+        (("assess", "--at", "nan,1"), "cannot be read"),
+        (("assess", "--at", "95,1"), "latitude 95 is beyond 90 degrees: is it 1,95"),
         (("assess", "--at", "1,2"), "no elevation at"),
         (("assess", "--at", "44.35,-37.15"), "out on the water"),
         (("assess", "--at", NORTH, "--height", "5000"), "use 1 to 200 m"),

@@ -34,6 +34,7 @@ def test_document_has_the_shape_of_the_interface(ask):
     answer = ask(now="roof-yagi")
     assert set(answer) == {
         "roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources",
+        "credits",
     }  # fmt: skip
     emission = answer["emissions"][0]
     assert {"id", "transmitter", "multiplex", "channel", "frequency_mhz", "system", "mode", "erp_kw", "polarisation",
@@ -216,7 +217,7 @@ def test_impossible_roofs_are_refused_with_what_is_allowed(latitude_deg, longitu
 
 
 def test_roof_outside_all_rasters_names_the_tile(ask):
-    with pytest.raises(CoverageError, match=r"no elevation at 10\.5000 N 20\.5000 W: add .* N10W021"):
+    with pytest.raises(CoverageError, match=r"no elevation at 10\.5000 N 20\.5000 W: fetch tiles .* N10W021"):
         ask(Roof(10.5, -20.5))
 
 

@@ -14,7 +14,18 @@ from app.web.main import create_app
 
 NORTH = DEMO_ROOFS[0]
 ROOF = {"latitude_deg": NORTH.latitude_deg, "longitude_deg": NORTH.longitude_deg}
-PARTS = {"roof", "multiplexes", "emissions", "chains", "verdicts", "readings", "assumptions", "cautions", "sources"}
+PARTS = {
+    "roof",
+    "multiplexes",
+    "emissions",
+    "chains",
+    "verdicts",
+    "readings",
+    "assumptions",
+    "cautions",
+    "sources",
+    "credits",
+}
 
 
 @pytest.fixture(scope="module")

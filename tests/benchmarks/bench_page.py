@@ -126,7 +126,9 @@ def main() -> None:
                 map_s = time.perf_counter() - start
                 rest, vendor = page.evaluate(BYTES)
                 print(
-                    f"{name}: decision and table {decision:.2f} s, map {map_s:.2f} s, {rest:.0f} kB + {vendor:.0f} kB map library"
+                    print(
+                        f"{name}: decision and table {decision:.2f} s, map {map_s:.2f} s, {rest:.0f} + {vendor:.0f} kB"
+                    )
                 )
                 page.wait_for_selector(".skyline .curtain", state="attached")
                 whole, api = clicks(page)

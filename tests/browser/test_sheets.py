@@ -119,7 +119,7 @@ def test_the_roof_line_has_compass_bearing_date_error_and_landmark(page, address
     assert page.locator(".roofline").inner_text().count("°") >= 3
     expect(page.locator(".roofline")).to_contain_text("by compass")
     expect(page.locator(".roofline .compass")).to_have_text(
-        re.compile(r"11\.5° west of true north here on .*give or take 0\.\d° \(World Magnetic Model")
+        re.compile(r"11\.5° west of true north here on .*give or take 0\.\d° \(WMM")
     )
     page.get_by_label("Landmark along the line").fill("left of the chapel")
     assert "left+of+the+chapel" in page.evaluate("() => location.hash")
@@ -333,6 +333,17 @@ def test_an_obstacle_near_the_roof_is_asked_for(page):
         page.get_by_label("Direction").fill("57")
         page.get_by_label("Direction").press("Tab")
     assert json.loads(asked.value.request.post_data)["roof"]["obstacles"][0]["bearing_deg"] == 57
+
+
+def test_a_position_in_degrees_and_minutes_is_read(page):
+    show(page, "path")
+    told = page.locator(".sentence").inner_text()
+    page.get_by_label("Roof at").fill("44° 07' 12\" N, 37° 30' 48\" W")
+    with page.expect_response("**/api/assess") as asked:
+        page.get_by_role("button", name="Work it out").click()
+    roof = json.loads(asked.value.request.post_data)["roof"]
+    assert (roof["latitude_deg"], roof["longitude_deg"]) == pytest.approx((44.12, -37.51333), abs=1e-4)
+    expect(page.locator(".sentence")).not_to_have_text(told)
 
 
 def test_chances_stand_against_height(page):
