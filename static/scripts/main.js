@@ -84,7 +84,8 @@ async function assess() {
  */
 async function placed(text) {
   const at = parsePlace(text);
-  if (!('problem' in at) || !/\d/.test(text) || at.problem.includes('not on Earth')) return at;
+  const otherwise = /\d/.test(text) && /[°'"′″+]|\d\s*[A-Za-z]/.test(text);
+  if (!('problem' in at) || !otherwise || at.problem.includes('not on Earth')) return at;
   try {
     const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
     return { place: { latitude_deg, longitude_deg } };
