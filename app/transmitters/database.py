@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import sqlite3
+import time
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -13,6 +14,7 @@ from app.errors import StoreError
 from app.transmitters.schema import APPLICATION_ID, MIGRATIONS
 
 FILE_NAME = "gainworth.sqlite"
+_RETRY_S = 0.05
 _ELSEWHERE = "or set GAINWORTH_DATA_DIR to another folder"
 _TRY_COPY = "keep a copy of it, then put back an earlier copy or move it away and import again"
 
@@ -95,26 +97,37 @@ class Database:
         return connection
 
     def _create_or_migrate(self) -> None:
-        try:
-            connection = self._connect("rwc")
+        """Make or migrate the file; another process that does the same is waited for."""
+        give_up = time.monotonic() + 2 * self.wait_s
+        while True:
             try:
-                connection.execute("BEGIN")  # one view of the file, whatever others do meanwhile
-                version = _version(connection, self.path)
+                return self._migrated()
+            except sqlite3.OperationalError as error:
+                # Switching to the write-ahead mode answers "locked" at once, whatever patience was asked for.
+                if "locked" not in str(error) or time.monotonic() > give_up:
+                    raise StoreError(_told(error, self.path)) from error
+                time.sleep(_RETRY_S)
+            except sqlite3.Error as error:
+                raise StoreError(_told(error, self.path)) from error
+
+    def _migrated(self) -> None:
+        connection = self._connect("rwc")
+        try:
+            connection.execute("BEGIN")  # one view of the file, whatever others do meanwhile
+            version = _version(connection, self.path)
+            connection.execute("COMMIT")
+            if version < len(MIGRATIONS):
+                connection.execute("PRAGMA journal_mode = WAL")
+                connection.execute("BEGIN IMMEDIATE")
+                # Asked again under the lock: another process may have been quicker.
+                for step in MIGRATIONS[_version(connection, self.path) :]:
+                    for statement in step:
+                        connection.execute(statement)
+                connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+                connection.execute(f"PRAGMA user_version = {len(MIGRATIONS)}")
                 connection.execute("COMMIT")
-                if version < len(MIGRATIONS):
-                    connection.execute("PRAGMA journal_mode = WAL")
-                    connection.execute("BEGIN IMMEDIATE")
-                    # Asked again under the lock: another process may have been quicker.
-                    for step in MIGRATIONS[_version(connection, self.path) :]:
-                        for statement in step:
-                            connection.execute(statement)
-                    connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
-                    connection.execute(f"PRAGMA user_version = {len(MIGRATIONS)}")
-                    connection.execute("COMMIT")
-            finally:
-                connection.close()
-        except sqlite3.Error as error:
-            raise StoreError(_told(error, self.path)) from error
+        finally:
+            connection.close()
 
 
 def _may_write(path: Path) -> bool:

@@ -14,7 +14,7 @@ from typing import Any
 
 import numpy as np
 
-from app import fields, kept_paths, planner
+from app import air_at, fields, kept_paths, planner
 from app.fast_paths import warm_up
 from app.request import AssessRequest
 from app.roof import Roof
@@ -23,7 +23,7 @@ from app.world import open_world
 ROOF = Roof(44.3, -37.4507)
 STAGES = (
     (fields, "paths_to_roof", "paths"),
-    (planner, "fields_at", "fields, with paths"),
+    (air_at, "fields_at", "fields, with paths"),
     (planner, "turn", "chains turned"),
     (planner, "multiplex_chances", "chances"),
     (planner, "_verdicts", "verdicts"),

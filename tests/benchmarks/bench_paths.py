@@ -3,7 +3,7 @@
 Every path goes through the same functions as an answer of the server, zones and water on. The relief is declared as
 bare ground: under surface models finer than 35 m the plain form answers, as bare ground is estimated there first.
 
-Medians of 7 rounds on 2 virtual Xeon processors (Sapphire Rapids, 2 MiB L2 each), shared with six other busy programs,
+Medians of 7 rounds on 2 virtual Xeon processors (Sapphire Rapids, 2 MiB L2 each), shared with other busy programs,
 2026-12-01; 200 paths of 2697 points, 91 % of them meet the sea; microseconds a path: whole 58, its sampling kernel 40:
 
     against pycraf's diffraction on given profiles, warm   1.6 (goal 8)    missed
