@@ -61,7 +61,7 @@ function about(declination) {
   if (!declination) return 'No compass bearing: the place or the day is outside the model of the Earth’s field.';
   const off = `${numberText(Math.abs(declination.declination_deg), 1)}° ${declination.declination_deg < 0 ? 'west' : 'east'}`;
   const day = new Date(`${declination.day}T12:00`).toLocaleDateString();
-  return `A compass points ${off} of true north here on ${day}, give or take ${numberText(declination.error_deg, 1)}° (${declination.model}); steel nearby turns it further. ${declination.caution ?? ''}`.trim();
+  return `A compass points ${off} of true north here on ${day}, give or take ${numberText(2 * declination.error_deg, 1)}° (19 in 20; ${declination.model}); steel nearby turns it further. ${declination.caution ?? ''}`.trim();
 }
 
 /**
