@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from datetime import date
 from typing import Any
 
 import numpy as np
@@ -13,6 +14,7 @@ from app.assumptions import Assumptions
 from app.cautions import CAUTIONS, SHOWN_NAMES, cautions_at
 from app.chain.parts import Chain
 from app.chance import GRADES, exceedance, grade, not_too_much
+from app.declination import compass_document
 from app.disturbance import State
 from app.evidence import Evidence
 from app.fields import EmissionField
@@ -26,6 +28,7 @@ from app.request import AssessRequest
 from app.site import Site
 from app.sources import SOURCES
 from app.transmitters.store import Store
+from app.turning import turning_document
 from app.verdict import HAVE, Outcome, Verdict
 
 QUANTILE_95 = 1.6449  # of the standard normal
@@ -59,6 +62,9 @@ def answer_document(
             "surroundings": request.roof.surroundings,
             "leaves_m": request.roof.leaves_m,
             "compass": site.compass,
+            "declination": compass_document(
+                request.roof.latitude_deg, request.roof.longitude_deg, date.today(), site.ground_amsl_m
+            ),
         },
         "multiplexes": [
             {
@@ -121,7 +127,8 @@ def _emission(
 ) -> dict[str, Any]:
     emission, path = field.emission, field.path
     e = place.get(emission.id)
-    before: dict[State, list[Step]] = {} if e is None else to_the_field(field, request.availability_percent)
+    told = e is not None and (request.ledgers is None or emission.id in request.ledgers)
+    before: dict[State, list[Step]] = to_the_field(field, request.availability_percent) if told else {}
     return {
         "id": emission.id,
         "transmitter": field.transmitter.id,
@@ -206,7 +213,9 @@ def _cell(
                 "headroom_db": round(headroom_db, 2),
                 "chance": _probability(float(not_too_much(np.array(enough), np.array(headroom_db), loudest_sd_db))),
                 "held_back_by": _limit(turned, e, number),
-                "ledger": [
+                "ledger": []
+                if not before
+                else [
                     *ledger(turned, e, field, air, books, outlet.name, before),
                     *_ledger_of_readings(turned, e, read_db, margin_db),
                 ],
@@ -272,6 +281,7 @@ def _pointing(turned: Turned, outcome: Outcome, air: Air) -> dict[str, Any]:
         "polarisation": turned.polarisation,
         "multiplexes": [name for name, chance in zip(multiplexes, outcome.chance, strict=True) if chance >= HAVE],
         "expected_by_degree": [round(float(count), 3) for count in turned.sweep_count],
+        **turning_document(turned, air, multiplexes),
     }
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import date
+from typing import Any
 
 from pygeomag import GeoMag
 
@@ -25,6 +26,7 @@ class Declination:
     model: str
     day: date
     caution: str  # empty where a compass can be relied on
+    useless: bool = False  # so near a magnetic pole that it says nothing
 
     def compass_deg(self, true_deg: float) -> float:
         """What a compass shows for a true bearing, 0 to 360."""
@@ -74,6 +76,7 @@ def declination(latitude_deg: float, longitude_deg: float, day: date, height_m: 
         model=f"WMM{edition}",
         day=day,
         caution=caution,
+        useless=field.h < _USELESS_NT,
     )
 
 
@@ -83,3 +86,20 @@ def compass_text(latitude_deg: float, longitude_deg: float, day: date) -> str:
         return declination(latitude_deg, longitude_deg, day).text
     except RequestError as error:
         return str(error)
+
+
+def compass_document(latitude_deg: float, longitude_deg: float, day: date, height_m: float) -> dict[str, Any] | None:
+    """Return the declination as the answer carries it; None where a compass says nothing, or no model holds."""
+    try:
+        found = declination(latitude_deg, longitude_deg, day, height_m)
+    except RequestError:
+        return None
+    if found.useless:
+        return None
+    return {
+        "declination_deg": round(found.declination_deg, 2),
+        "error_deg": round(found.error_deg, 2),
+        "day": day.isoformat(),
+        "model": found.model,
+        "caution": found.caution,
+    }

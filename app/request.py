@@ -36,6 +36,7 @@ class AssessRequest:
     readings: tuple[Reading, ...] = ()  # beside those stored for this roof
     stored_readings: bool = True  # whether those count too
     assumptions: Mapping[str, float] = field(default_factory=lambda: MappingProxyType({}))
+    ledgers: frozenset[str] | None = None  # emissions whose ledgers are wanted; None: all
 
     def __post_init__(self) -> None:
         """Refuse what cannot be answered, saying what can."""

@@ -6,7 +6,7 @@ out as soon as real transmitters are imported.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from app.chain.catalogue import demo_chains
 from app.chain.document import chain_to_document
@@ -137,6 +137,6 @@ def ensure_demo(store: Store) -> None:
 def _is_current(store: Store) -> bool:
     return (
         set(store.transmitters()) == set(transmitters())
-        and set(store.emissions()) == set(emissions())
+        and {replace(one, on=True) for one in store.emissions()} == set(emissions())
         and set(store.multiplexes().values()) == set(MULTIPLEXES)
     )

@@ -125,6 +125,23 @@ class Store:
             )
             return [emission_of(row) for row in rows]
 
+    def switch_emission(self, emission_id: str, on: bool) -> Emission:
+        """Keep an emission on the air or leave it out; NotStoredError if there is none.
+
+        A new import of its source says anew what is on.
+        """
+        with self._database.transaction(write=True) as connection:
+            connection.execute("UPDATE emission SET is_on = ? WHERE id = ?", [int(on), emission_id])
+            row = connection.execute(
+                f"SELECT {EMISSION} FROM emission e JOIN transmitter t ON t.number = e.transmitter WHERE e.id = ?",
+                [emission_id],
+            ).fetchone()
+        if row is None:
+            raise NotStoredError(
+                f'there is no emission "{emission_id}": /api/emissions lists them', field="id", allowed="a listed id"
+            )
+        return emission_of(row)
+
     def multiplexes(self) -> dict[str, Multiplex]:
         """Every multiplex in use, by id."""
         with self._database.transaction() as connection:

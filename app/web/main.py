@@ -14,7 +14,7 @@ from app.transmitters.store import Store
 from app.web.context import Context
 from app.web.errors import add_error_handlers
 from app.web.guard import Guard
-from app.web.routes import air, assess, kept, pages, places, proposals, readings, tiles
+from app.web.routes import air, assess, kept, pages, places, proposals, readings, report, tiles
 from terrain.mosaic import Ground
 
 
@@ -29,7 +29,7 @@ def create_app(store: Store, ground: Ground, settings: Settings | None = None) -
         redoc_url=None,
     )
     app.state.context = Context(store, ground, settings)
-    for part in (assess, air, proposals, kept, places, readings, tiles, pages):
+    for part in (assess, air, proposals, kept, places, readings, report, tiles, pages):
         app.include_router(part.router)
     app.mount("/static", StaticFiles(directory=static_dir()), name="static")
     add_error_handlers(app)

@@ -117,6 +117,9 @@ class AssessIn(Strict):
     reach_km: float = 150.0
     method: Literal["p1812", "p1546", "both"] = "both"
     assumptions: dict[str, float] = {}
+    ledgers: list[Name] | None = Field(
+        None, max_length=1000, description="emissions whose ledgers are wanted; null: all"
+    )
 
     def request(self, worth_per_multiplex: float | None, reading_cost: float | None, store: Store) -> AssessRequest:
         """Return the question that the planner answers; the arguments stand in for what was not said."""
@@ -140,6 +143,7 @@ class AssessIn(Strict):
             reach_km=self.reach_km,
             method=self.method,
             assumptions=self.assumptions,
+            ledgers=None if self.ledgers is None else frozenset(self.ledgers),
         )
 
 
@@ -216,13 +220,34 @@ class BlockIn(AtRoofIn):
 
 
 class SavedRoofIn(Strict):
-    """A roof kept under a name, with what the page was showing for it."""
+    """A roof kept under a name, with what the page was asking for it."""
 
     name: Name
     roof: RoofIn
     now: Name | None = None
     idea: Name | None = None
+    second: Name | None = None
     note: str = Field("", max_length=4000)
+    landmark: str = Field("", max_length=200)
+    chains: list[Name | ChainDocument] | None = Field(None, max_length=50)
+    readings: list[ReadingDocument] = Field([], max_length=MOST_READINGS)
+    worth_per_multiplex: float | None = None
+    reading_cost: float | None = None
+    availability_percent: Literal[50, 90, 99] = 99
+    reach_km: float = 150.0
+    method: Literal["p1812", "p1546", "both"] = "both"
+    assumptions: dict[str, float] = {}
+
+    def question(self) -> AssessIn:
+        """Return the question that the page asked."""
+        asked = {key: value for key, value in self if key in AssessIn.model_fields}
+        return AssessIn(**asked)
+
+
+class SwitchIn(Strict):
+    """Whether an emission counts."""
+
+    on: bool
 
 
 @contextmanager

@@ -30,6 +30,7 @@ async function ask(path, options, send) {
     if (options.signal?.aborted) throw error;
     throw new ApiError(GONE, { code: 'gone' });
   }
+  if (response.status === 204) return null;
   let body;
   try {
     body = await response.json();
@@ -58,13 +59,22 @@ export function createApi(send = (...args) => fetch(...args)) {
       const asked = query ? `?${new URLSearchParams(Object.entries(query).map(([key, value]) => [key, String(value)]))}` : '';
       return ask(path + asked, { signal }, send);
     },
-    /** @param {unknown} question @param {AbortSignal} [signal] */
-    assess(question, signal) {
-      return ask(
-        '/api/assess',
-        { method: 'POST', headers: { 'Content-Type': 'application/json' }, body: JSON.stringify(question), signal },
-        send,
-      );
+    /** @param {string} path @param {unknown} body @param {AbortSignal} [signal] */
+    post(path, body, signal) {
+      return ask(path, sent('POST', body, signal), send);
+    },
+    /** @param {string} path @param {unknown} body */
+    put(path, body) {
+      return ask(path, sent('PUT', body), send);
+    },
+    /** @param {string} path */
+    remove(path) {
+      return ask(path, { method: 'DELETE' }, send);
     },
   };
+}
+
+/** @param {string} method @param {unknown} body @param {AbortSignal} [signal] @returns {RequestInit} */
+function sent(method, body, signal) {
+  return { method, headers: { 'Content-Type': 'application/json' }, body: JSON.stringify(body), signal };
 }

@@ -1,20 +1,24 @@
-/** The multiplexes that the idea changes; the others folded away. */
+/** The multiplexes that an idea changes, number first; the others folded away. */
 
-import { cellOf, changes, shownCell, titleOf, verdictOf } from './state.js';
+import { make, mark, part } from './dom.js';
+import { cellOf, changes, columns, shownCell, titleOf } from './state.js';
 import { bearingText, chanceText } from './units.js';
+
+const DRAWN = 300; // rows beyond these wait behind a button
 
 /**
  * @param {HTMLElement} element
  * @param {{choose: (change: object) => void}} actions
  */
 export function createChanges(element, { choose }) {
-  const body = /** @type {HTMLElement} */ (element.querySelector('tbody'));
-  const table = /** @type {HTMLElement} */ (element.querySelector('table'));
-  const empty = /** @type {HTMLElement} */ (element.querySelector('.empty'));
-  const folded = /** @type {HTMLElement} */ (element.querySelector('details'));
-  const summary = /** @type {HTMLElement} */ (element.querySelector('summary'));
-  const list = /** @type {HTMLElement} */ (element.querySelector('details ul'));
-  const row = /** @type {HTMLTemplateElement} */ (document.getElementById('change-row'));
+  const head = part(element, 'thead tr');
+  const body = part(element, 'tbody');
+  const table = part(element, 'table');
+  const empty = part(element, '.empty');
+  const folded = part(element, 'details');
+  const summary = part(element, 'summary');
+  const list = part(element, 'details ul');
+  let drawn = '';
 
   element.addEventListener('click', (event) => {
     const button = /** @type {HTMLElement} */ (event.target).closest('button');
@@ -23,61 +27,54 @@ export function createChanges(element, { choose }) {
 
   /** @param {import('./state.js').State} state */
   function update(state) {
-    const verdict = verdictOf(state);
-    element.hidden = !verdict;
-    if (!verdict) return;
-    const names = { now: verdict.baseline, idea: verdict.candidate };
-    for (const title of element.querySelectorAll('thead .chain')) {
-      title.textContent = titleOf(state, names[title.dataset.chain]);
-    }
-    const { changed, same } = changes(state.answer, names.now, names.idea);
+    const shown = columns(state);
+    element.hidden = shown.length === 0;
+    if (shown.length === 0) return;
+    const cell = shownCell(state);
+    const now = JSON.stringify([shown, cell?.multiplex.id, cell?.chain]);
+    if (now === drawn && update.of === state.answer) return;
+    drawn = now;
+    update.of = state.answer;
+    const names = shown.map((one) => one.name);
+    const { changed, same } = changes(state.answer, names[0], ...names.slice(1));
     const focused = document.activeElement?.closest('button')?.dataset;
-    body.replaceChildren(...changed.map((multiplex) => filled(state, multiplex, names)));
+    head.replaceChildren(
+      make('th', { scope: 'col' }, 'Multiplex'),
+      ...shown.map(({ role, name }) => make('th', { scope: 'col' },
+        make('span', { className: 'role', textContent: role }), ' ', make('span', { className: 'chain', textContent: titleOf(state, name) }))),
+    );
+    table.classList.toggle('wide', shown.length > 2);
+    body.replaceChildren(...changed.slice(0, DRAWN).map((multiplex) => line(state, multiplex, names, cell)));
     table.hidden = changed.length === 0;
     empty.hidden = changed.length > 0;
     folded.hidden = same.length === 0;
     summary.textContent = `${same.length} unchanged`;
-    list.replaceChildren(...same.map((multiplex) => unchanged(state, multiplex, names.idea)));
+    list.replaceChildren(...same.slice(0, DRAWN).map((multiplex) => make('li', {},
+      make('span', { className: 'name', textContent: multiplex.name }), ...cells(multiplex, names.slice(1, 2), cell).filter((one) => one.tagName === 'BUTTON'))));
     if (focused?.multiplex) refocus(focused);
   }
+  update.of = null;
 
-  function filled(state, multiplex, names) {
-    const line = /** @type {HTMLElement} */ (row.content.cloneNode(true));
-    line.querySelector('.name').textContent = multiplex.name;
-    line.querySelector('.from').textContent = origin(state, multiplex, names.idea);
-    for (const cell of line.querySelectorAll('.cell')) fillCell(state, cell, multiplex, names[cell.dataset.chain]);
-    return line;
+  function line(state, multiplex, names, cell) {
+    const head = make('th', { scope: 'row' },
+      make('span', { className: 'name', textContent: multiplex.name }),
+      make('span', { className: 'from', textContent: origin(state, multiplex, names[1]) }));
+    return make('tr', {}, head, ...cells(multiplex, names, cell).map((one) => make('td', {}, one)));
   }
 
-  function fillCell(state, button, multiplex, chain) {
-    const cell = cellOf(multiplex, chain);
-    if (!cell) {
-      button.replaceWith(Object.assign(document.createElement('span'), { className: 'nothing', textContent: 'no aerial' }));
-      return;
-    }
-    const shown = shownCell(state);
-    const chosen = shown?.multiplex.id === multiplex.id && shown.chain === chain;
-    button.dataset.multiplex = multiplex.id;
-    button.dataset.name = chain;
-    button.setAttribute('aria-pressed', String(chosen));
-    button.append(chance(cell));
-  }
-
-  function unchanged(state, multiplex, chain) {
-    const item = document.createElement('li');
-    const name = Object.assign(document.createElement('span'), { className: 'name', textContent: multiplex.name });
-    const cell = cellOf(multiplex, chain);
-    if (!cell) {
-      item.append(name);
-      return item;
-    }
-    const button = Object.assign(document.createElement('button'), { type: 'button', className: 'cell' });
-    fillCell(state, button, multiplex, chain);
-    item.append(name, button);
-    return item;
+  function cells(multiplex, names, shown) {
+    return names.map((name) => {
+      const cell = cellOf(multiplex, name);
+      if (!cell) return make('span', { className: 'nothing', textContent: 'no aerial' });
+      const chosen = shown?.multiplex.id === multiplex.id && shown.chain === name;
+      const button = make('button', { type: 'button', className: 'cell', 'aria-pressed': chosen }, chance(cell));
+      Object.assign(button.dataset, { multiplex: multiplex.id, name });
+      return button;
+    });
   }
 
   /** The rows were made anew: the focus stays where it was. */
+  /** @param {any} was */
   function refocus({ multiplex, name }) {
     const buttons = [...element.querySelectorAll('button')];
     buttons.find((one) => one.dataset.multiplex === multiplex && one.dataset.name === name)?.focus();
@@ -85,16 +82,13 @@ export function createChanges(element, { choose }) {
   return { update };
 }
 
-/** @param {any} cell @returns {DocumentFragment} number first, then the word with its mark */
-function chance(cell) {
-  const template = /** @type {HTMLTemplateElement} */ (document.getElementById('chance'));
-  const made = /** @type {DocumentFragment} */ (template.content.cloneNode(true));
-  made.querySelector('.figure').textContent = chanceText(cell.chance);
-  made.querySelector('use').setAttribute('href', `#mark-${cell.grade}`);
-  made.querySelector('.word').textContent = cell.grade;
+/** @param {any} cell @returns {HTMLElement} number first, then the word with its mark */
+export function chance(cell) {
   const limit = ['open', 'doubtful'].includes(cell.grade) ? cell.held_back_by?.limit : null;
-  made.querySelector('.held').textContent = limit ? `held back by ${limit}` : '';
-  return made;
+  return make('span', { className: 'chance' },
+    make('span', { className: 'figure', textContent: chanceText(cell.chance) }),
+    make('span', { className: 'grade' }, mark(cell.grade), make('span', { className: 'word', textContent: cell.grade })),
+    make('span', { className: 'held', textContent: limit ? `held back by ${limit}` : '' }));
 }
 
 /** @param {import('./state.js').State} state @param {any} multiplex @param {string} chain */
@@ -102,5 +96,6 @@ function origin(state, multiplex, chain) {
   const emission = state.answer.emissions.find((one) => one.id === cellOf(multiplex, chain)?.emission);
   if (!emission) return '';
   const channel = emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`;
-  return `${channel} from ${emission.transmitter_name}, ${bearingText(emission.bearing_deg)}`;
+  const closes = emission.valid_to ? `, closes on ${new Date(`${emission.valid_to}T12:00`).toLocaleDateString()}` : '';
+  return `${channel} from ${emission.transmitter_name}, ${bearingText(emission.bearing_deg)}${closes}`;
 }

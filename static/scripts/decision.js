@@ -6,16 +6,18 @@ import { moneyText } from './units.js';
 
 /**
  * @param {HTMLElement} element
- * @param {{place: (place: import('./state.js').Place) => void}} actions
+ * @param {{place: (place: import('./state.js').Place) => void, back: () => void}} actions
  */
-export function createDecision(element, { place }) {
+export function createDecision(element, { place, back }) {
   const told = /** @type {HTMLElement} */ (element.querySelector('.sentence'));
   const reason = /** @type {HTMLElement} */ (element.querySelector('.reason'));
   const terms = /** @type {HTMLElement} */ (element.querySelector('.terms'));
   const trouble = /** @type {HTMLElement} */ (element.querySelector('.trouble'));
   const demo = /** @type {HTMLElement} */ (element.querySelector('.demo'));
   const roofs = /** @type {HTMLElement} */ (element.querySelector('.demo ul'));
+  const undo = /** @type {HTMLElement} */ (element.querySelector('.back'));
   let shown = '';
+  undo.addEventListener('click', back);
 
   /** @param {import('./state.js').State} state */
   function update(state) {
@@ -39,6 +41,7 @@ export function createDecision(element, { place }) {
     terms.textContent = verdict ? counted(state, verdict) : '';
     const text = state.trouble?.message ?? '';
     if (trouble.textContent !== text) trouble.textContent = text;
+    undo.hidden = state.past === 0;
     offer(state);
   }
 

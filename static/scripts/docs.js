@@ -1,6 +1,7 @@
 /** The page over /openapi.json: every address, what it takes, in our own words and under our own policy. */
 
 import { createApi } from './api.js';
+import { part } from './dom.js';
 import { operations } from './openapi.js';
 
 const list = /** @type {HTMLElement} */ (document.getElementById('operations'));
@@ -16,12 +17,12 @@ function element(tag, words, name) {
 /** @param {import('./openapi.js').Operation} one */
 function shown(one) {
   const made = /** @type {DocumentFragment} */ (card.content.cloneNode(true));
-  made.querySelector('h3').append(element('b', one.method), ' ', element('code', one.path));
-  made.querySelector('.title').textContent = one.title;
-  made.querySelector('.words').textContent = one.words;
-  made.querySelector('.scroll').setAttribute('aria-label', `What ${one.method} ${one.path} takes`);
-  made.querySelector('.scroll').hidden = one.rows.length === 0;
-  made.querySelector('tbody').append(...one.rows.map((row) => {
+  part(made, 'h3').append(element('b', one.method), ' ', element('code', one.path));
+  part(made, '.title').textContent = one.title;
+  part(made, '.words').textContent = one.words;
+  part(made, '.scroll').setAttribute('aria-label', `What ${one.method} ${one.path} takes`);
+  part(made, '.scroll').hidden = one.rows.length === 0;
+  part(made, 'tbody').append(...one.rows.map((row) => {
     const line = document.createElement('tr');
     const name = element('th', row.name);
     name.setAttribute('scope', 'row');

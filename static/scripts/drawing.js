@@ -5,6 +5,7 @@
  * @typedef {object} Outline     transmitter first, as the server gives it
  * @property {number[]} distance_km
  * @property {number[]} ground_amsl_m
+ * @property {number[]} [bare_amsl_m]     without houses and trees, where that is known
  * @property {number[]} bulge_m           of the Earth over the chord between the ends
  * @property {number[]} line_amsl_m       straight line from antenna to aerial
  * @property {number[]} first_fresnel_m   radius of the first zone
@@ -23,6 +24,7 @@ export function drawing(outline, box) {
   const points = outline.distance_km.map((km, place) => ({
     km,
     top: outline.ground_amsl_m[place] + outline.bulge_m[place],
+    bare: outline.bare_amsl_m ? outline.bare_amsl_m[place] + outline.bulge_m[place] : null,
     line: outline.line_amsl_m[place],
     radius: outline.first_fresnel_m[place],
     water: outline.water[place],
@@ -45,6 +47,7 @@ export function drawing(outline, box) {
         return `M${upper}L${along([...run].reverse(), (one) => one.line - one.radius)}Z`;
       })
       .join(''),
+    bare: points.some((one) => one.bare !== null && one.top - one.bare > 1) ? `M${along(points, (one) => one.bare ?? one.top)}` : '',
     line: `M${at(mast, mast.line)}L${at(roof, roof.line)}`,
     mast: `M${at(mast, mast.top)}L${at(mast, mast.line)}`,
     aerial: `M${at(roof, roof.top)}L${at(roof, roof.line)}`,

@@ -1,105 +1,224 @@
 /** Starts the page: puts panels on the state, and asks the server when the state calls for it. */
 
+import { createActions } from './actions.js';
 import { createApi } from './api.js';
+import { createAssumptions } from './assumptions.js';
 import { createCautions } from './cautions.js';
+import { createChains } from './chains.js';
 import { createChanges } from './changes.js';
 import { createDecision } from './decision.js';
+import { createFollow } from './follow.js';
+import { createElsewhere } from './elsewhere.js';
+import { createHistory } from './history.js';
 import { latest } from './latest.js';
 import { createLedger } from './ledger.js';
 import { createMap } from './map.js';
 import { createPath } from './path.js';
+import { createReadings } from './readings.js';
 import { createRoofline } from './roofline.js';
-import { chainNow, createStore, decode, encode, initialState, NOTHING, question, shownCell } from './state.js';
-import { parseHeight, parsePlace, placeText } from './units.js';
+import { createRoofs } from './roofs.js';
+import { asOneFile, download } from './save.js';
+import { createSeen } from './seen.js';
+import { createSheets } from './sheets.js';
+import { createSkyline } from './skyline.js';
+import { chainNow, chainsHere, createStore, decode, encode, initialState, NOTHING, question } from './state.js';
+import { createTransmitters } from './transmitters.js';
+import { heightIn, numberText, parseHeight, parsePlace, placeText } from './units.js';
 import { createWhere } from './where.js';
 
 const MEMORY = 'gainworth';
+const UNITS = 'gainworth-units';
 const api = createApi();
 const store = createStore(initialState());
+const past = createHistory();
+const actions = createActions(api, store, assess);
 const byId = (id) => /** @type {any} */ (document.getElementById(id));
 
 const panels = [
   createWhere(byId('where'), { type, submit: assess, choose }),
-  createDecision(byId('decision'), { place }),
+  createSeen(byId('seen'), { choose }),
+  createDecision(byId('decision'), { place, back }),
   createChanges(byId('changes'), { choose }),
-  createRoofline(byId('roofline')),
+  createRoofline(byId('roofline'), { type }),
   createCautions(byId('cautions')),
+  createSheets(byId('sheets'), { open: (sheet) => type({ sheet }) }),
+  createSkyline(byId('skyline'), { aim }),
   createPath(byId('path')),
   createLedger(byId('ledger')),
+  createElsewhere(byId('elsewhere'), { pin: actions.pin, unpin: actions.unpin, go, choose }),
+  createReadings(byId('readings'), { read: actions.read, forget: told(actions.forget), confirm: told(actions.confirm), logbook: actions.logbook }),
+  createChains(byId('chains'), { edit, drop, keep: actions.keepChain, remove: actions.removeChain, block: actions.block }),
+  createRoofs(byId('roofs'), { keep: actions.keepRoof, open, compare: actions.compare, forget: told(actions.forgetRoof), link, file }),
+  createTransmitters(byId('transmitters'), { load: actions.air, turn: actions.switchEmission }),
+  createAssumptions(byId('assumptions'), { choose, units }),
   createMap(byId('map'), { place }),
 ];
 
-const askAssess = latest((signal, body) => api.assess(body, signal));
-const askPath = latest((signal, query) => api.read('/api/path', query, signal));
+const askAssess = latest((signal, body) => api.post('/api/assess', body, signal));
+const follow = createFollow(api, store);
 
 /** Reads what was typed, and asks. */
 async function assess() {
   const { where, height } = store.get();
-  const at = parsePlace(where);
+  const at = await placed(where);
+  if (where !== store.get().where) return;
   if ('problem' in at) return void store.set({ trouble: { message: at.problem, field: 'where' } });
-  const up = parseHeight(height);
+  const up = parseHeight(height, store.get().units);
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
-  remember();
+  remember(true);
   try {
-    const answer = await askAssess(question(store.get(), up.height));
+    const answer = await askAssess({ ...question(store.get(), up.height), ledgers: [] });
     if (answer) store.set({ answer, asking: false });
   } catch (error) {
-    // A refused place has no answer; a server that is gone leaves the last one standing.
-    const answer = error.status >= 400 && error.status < 500 ? null : store.get().answer;
-    store.set({ answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
+    // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
+    const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
+    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
+  }
+}
+
+/**
+ * Degrees are read here; minutes and seconds, grids and codes by the server.
+ * @param {string} text
+ * @returns {Promise<{place: import('./state.js').Place} | {problem: string}>}
+ */
+async function placed(text) {
+  const at = parsePlace(text);
+  const otherwise = /\d/.test(text) && /[°'"′″+]|\d\s*[A-Za-z]/.test(text);
+  if (!('problem' in at) || !otherwise || at.problem.includes('not on Earth')) return at;
+  try {
+    const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
+    return { place: { latitude_deg, longitude_deg } };
+  } catch (error) {
+    return { problem: error.message };
   }
 }
 
 /** @param {Partial<import('./state.js').State>} change what is being typed; kept even if it is never sent */
 function type(change) {
   store.set(change);
-  remember();
+  remember(false);
 }
 
 /** @param {import('./state.js').Place} at a place shown on the map */
 function place(at) {
-  store.set({ where: placeText(at) });
+  store.set({ where: placeText(at), seen: {} });
   void assess();
 }
 
-/** @param {Partial<import('./state.js').State>} change a choice; only another baseline needs a new answer */
+const NEW_ANSWER = ['now', 'around', 'seen', 'obstacles', 'settings', 'assumptions', 'edits'];
+
+/** @param {Partial<import('./state.js').State>} change a choice; some need a new answer */
 function choose(change) {
   store.set(change);
-  remember();
-  if ('now' in change) {
-    if (store.get().idea === change.now) store.set({ idea: null });
-    if (store.get().where) void assess();
-  }
+  const { idea, second, now, where } = store.get();
+  if ('now' in change) store.set({ idea: idea === now ? null : idea, second: second === now ? null : second, seen: {} });
+  if (NEW_ANSWER.some((key) => key in change) && where) void assess();
+  else remember(true);
 }
 
-/** Fetches the drawing of the shown path when it is another one. */
-async function follow(state) {
-  const emission = shownCell(state)?.emission;
-  if (!emission || !state.answer) return;
-  const of = JSON.stringify([emission.id, state.answer.roof]);
-  if (follow.of === of) return;
-  follow.of = of;
+/** @param {any} chain as changed here */
+function edit(chain) {
+  choose({ edits: [...store.get().edits.filter((one) => one.name !== chain.name), chain] });
+}
+
+/** @param {string} name of a chain whose changes are dropped */
+function drop(name) {
+  choose({ edits: store.get().edits.filter((one) => one.name !== name) });
+}
+
+/** Turns the aerial of a chain, or leaves it to be turned the best way. @param {string} name @param {number|null} degree */
+function aim(name, degree) {
+  const found = chainsHere(store.get()).find((one) => one.name === name);
+  if (!found) return;
+  const { id, created, updated, pointing_deg, ...rest } = found;
+  edit(degree === null ? rest : { ...rest, pointing_deg: degree });
+}
+
+/** @param {any} pin a compared place to go to */
+function go(pin) {
+  store.set({ where: placeText(pin.where), height: numberText(heightIn(pin.height, store.get().units), 0) });
+  void assess();
+}
+
+/** Opens a kept roof with everything that was asked for it. @param {any} kept */
+function open(kept) {
+  const { roof } = kept;
+  const kinds = (kept.readings ?? []).filter((one) => one.kind === 'seen' && one.multiplex);
+  const chosen = ['availability_percent', 'method', 'reach_km', 'worth_per_multiplex', 'reading_cost'];
+  const usual = { availability_percent: 99, method: 'both', reach_km: 150, worth_per_multiplex: null, reading_cost: null };
+  store.set({
+    ...initialStateOfARoof(),
+    where: placeText(roof),
+    height: numberText(heightIn(roof.aerial_agl_m, store.get().units), 0),
+    around: roof.surroundings ?? 'open',
+    obstacles: roof.obstacles ?? [],
+    now: kept.now ?? NOTHING, idea: kept.idea ?? null, second: kept.second ?? null, landmark: kept.landmark ?? '',
+    edits: (kept.chains ?? []).filter((one) => typeof one === 'object'),
+    assumptions: kept.assumptions ?? {},
+    seen: Object.fromEntries(kinds.map((one) => [one.multiplex, one.state])),
+    settings: Object.fromEntries(chosen.filter((key) => kept[key] !== undefined && kept[key] !== usual[key]).map((key) => [key, kept[key]])),
+    saved: { id: kept.id, updated: kept.updated },
+  });
+  void assess();
+}
+
+function initialStateOfARoof() {
+  const { cell, seen, landmark, obstacles, edits, settings, assumptions, moved } = initialState();
+  return { cell, seen, landmark, obstacles, edits, settings, assumptions, moved };
+}
+
+/** Takes the last step back. */
+function back() {
+  const before = past.back();
+  if (before === null) return;
+  store.set({ ...decode(before), past: past.steps });
+  keep(before);
+  if (store.get().where) void assess();
+}
+
+/** @param {string} units heights are told in; what is typed changes with them */
+function units(units) {
+  const { height, units: before } = store.get();
+  const up = parseHeight(height, before);
+  store.set({ units: /** @type {any} */ (units), ...('height' in up ? { height: String(Number(heightIn(up.height, /** @type {any} */ (units)).toFixed(1))) } : {}) });
   try {
-    const document = await askPath({
-      from_latitude_deg: emission.latitude_deg,
-      from_longitude_deg: emission.longitude_deg,
-      to_latitude_deg: state.answer.roof.latitude_deg,
-      to_longitude_deg: state.answer.roof.longitude_deg,
-      frequency_mhz: emission.frequency_mhz,
-      antenna_agl_m: emission.antenna_agl_m,
-      aerial_agl_m: state.answer.roof.aerial_agl_m,
-    });
-    if (document) store.set({ path: { emission: emission.id, document } });
-  } catch (error) {
-    store.set({ path: null, trouble: { message: error.message, field: null } });
+    localStorage.setItem(UNITS, units);
+  } catch {
+    // A browser may forbid storage: the choice holds until the page is left.
   }
 }
-follow.of = '';
 
-/** Keeps what was typed and chosen for a link and for the next visit. */
-function remember() {
+async function link() {
+  try {
+    await navigator.clipboard.writeText(location.href);
+    return true;
+  } catch {
+    return false;
+  }
+}
+
+function file() {
+  download(asOneFile(document), `gainworth ${store.get().where.replace(/[^\d.-]+/g, ' ').trim()}.html`);
+}
+
+/** Lets what goes wrong be said. @param {(...args: any[]) => Promise<void>} action */
+function told(action) {
+  return (...args) => action(...args).catch((error) => store.set({ trouble: { message: error.message, field: null } }));
+}
+
+/** Keeps what was typed and chosen for a link and for the next visit. @param {boolean} step whether it can be taken back */
+function remember(step) {
   const kept = encode(store.get());
+  if (step) {
+    past.push(kept);
+    if (store.get().past !== past.steps) store.set({ past: past.steps });
+  }
+  keep(kept);
+}
+
+/** @param {string} kept */
+function keep(kept) {
   history.replaceState(null, '', `#${kept}`);
   try {
     localStorage.setItem(MEMORY, kept);
@@ -109,27 +228,44 @@ function remember() {
 }
 
 function remembered() {
-  if (location.hash.length > 1) return decode(location.hash);
+  if (location.hash.length > 1) {
+    const found = decode(location.hash);
+    const strange = Object.keys(found).length === 0 && /\bv=/.test(location.hash);
+    return strange ? { trouble: { message: 'This link was made by another version of Gainworth and cannot be read: type the position again.', field: null } } : found;
+  }
   try {
-    return decode(localStorage.getItem(MEMORY) ?? '');
+    return { ...decode(localStorage.getItem(MEMORY) ?? ''), units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
   } catch {
     return {};
   }
 }
 
 async function start() {
-  store.set(remembered());
+  store.set(/** @type {any} */ (remembered()));
   try {
-    const [{ chains }, health] = await Promise.all([api.read('/api/chains'), api.read('/api/health')]);
-    const known = (name) => name === NOTHING || chains.some((chain) => chain.name === name);
-    const { now, idea } = store.get();
-    store.set({ chains, health, now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null });
+    const [{ chains }, health, { cables }] = await Promise.all(['chains', 'health', 'cables'].map((one) => api.read(`/api/${one}`)));
+    store.set({ chains, health, cables });
+    const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
+    const { now, idea, second } = store.get();
+    store.set({ now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null });
     showSources(health);
   } catch (error) {
     store.set({ trouble: { message: error.message, field: null } });
   }
   if (store.get().where) await assess();
   document.documentElement.dataset.ready = 'yes';
+  void later();
+}
+
+/** What only sheets need, after the answer. */
+async function later() {
+  try {
+    const [{ assumptions }] = await Promise.all([api.read('/api/assumptions'), actions.roofsAgain()]);
+    store.set({ values: assumptions });
+    if (store.get().pins.length) await actions.comparePins();
+  } catch (error) {
+    store.set({ trouble: { message: error.message, field: null } });
+  }
 }
 
 /** @param {any} health */
@@ -143,7 +279,7 @@ function showSources(health) {
 store.subscribe((state) => {
   for (const panel of panels) panel.update(state);
   document.documentElement.dataset.asking = state.asking ? 'yes' : 'no';
-  void follow(state);
+  follow(state);
 });
 window.addEventListener('hashchange', () => {
   store.set(decode(location.hash));

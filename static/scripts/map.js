@@ -21,6 +21,7 @@
  */
 
 import { labelled, tickAt } from './bearings.js';
+import { createDrag } from './map_drag.js';
 import { shownCell } from './state.js';
 import { bearingText, distanceText } from './units.js';
 
@@ -113,14 +114,14 @@ export function createMap(element, { place }) {
 
   /** The emission of the shown path: its mast is the far end. */
   function mast() {
-    return shownCell(state)?.emission ?? null;
+    return cell?.emission ?? null;
   }
 
   function look() {
     const { roof } = state;
     const far = mast();
     const now = JSON.stringify([roof, far?.transmitter]);
-    if (!adapter || !roof || now === shown) return;
+    if (!adapter || !roof || drag.at || now === shown) return;
     shown = now;
     const ends = far ? [roof, far] : [roof];
     const inside = ends.every((end) => {
@@ -152,7 +153,8 @@ export function createMap(element, { place }) {
     const size = { width: view.clientWidth, height: view.clientHeight };
     overlay.setAttribute('viewBox', `${-SIDE} ${-RIM} ${size.width + 2 * SIDE} ${size.height + 2 * RIM}`);
     if (adapter && state.roof) {
-      const roof = adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
+      const roof = drag.at ?? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg);
+      drawPins();
       drawPath(roof);
       drawFrame(size, roof);
       add('path', { d: `M${roof.x} ${roof.y - 11}l11 18h-22Z`, class: 'roof' });
@@ -161,6 +163,15 @@ export function createMap(element, { place }) {
     if (crosshair) {
       const { x, y } = crosshair;
       add('path', { d: `M${x} 0V${y - 8}M${x} ${y + 8}V${size.height}M0 ${y}H${x - 8}M${x + 8} ${y}H${size.width}`, class: 'crosshair' });
+    }
+  }
+
+  function drawPins() {
+    for (const pin of state.pins) {
+      const at = adapter?.project(pin.where.latitude_deg, pin.where.longitude_deg);
+      if (!at || at.x < 0 || at.y < 0 || at.x > view.clientWidth || at.y > view.clientHeight) continue;
+      add('path', { d: `M${at.x} ${at.y - 9}l9 15h-18Z`, class: 'roof pinned' });
+      add('text', { x: at.x, y: at.y - 13, 'text-anchor': 'middle', class: 'label pin-name' }, pin.name.slice(0, 12));
     }
   }
 
@@ -185,7 +196,7 @@ export function createMap(element, { place }) {
       const tick = tickAt(size, roof, bearing);
       if (tick) add('path', { d: outward(tick, bearing % 90 === 0 ? 9 : bearing % 30 === 0 ? 7 : 4), class: 'graduation' });
     }
-    const chosen = shownCell(state)?.emission.transmitter;
+    const chosen = cell?.emission.transmitter;
     const ticks = bearings().map((one) => ({ ...tickAt(size, roof, one.bearing), ...one, chosen: one.id === chosen }));
     const seen = ticks.filter((tick) => tick.side);
     const withLabel = labelled(seen, 30);
@@ -217,11 +228,11 @@ export function createMap(element, { place }) {
   }
 
   function list() {
-    const chosen = shownCell(state)?.emission.transmitter;
+    const chosen = cell?.emission.transmitter;
     masts?.replaceChildren(...bearings().map((one) => {
       const item = document.createElement('li');
       const figure = Object.assign(document.createElement('b'), { textContent: bearingText(one.bearing) });
-      item.append(figure, ` ${one.name}, ${distanceText(one.distance)}`);
+      item.append(figure, ` ${one.name}, ${distanceText(one.distance, state.units)}`);
       if (one.id === chosen) item.className = 'chosen';
       return item;
     }));
@@ -272,6 +283,12 @@ export function createMap(element, { place }) {
     crosshair = kept;
   }
 
+  const drag = createDrag(view, {
+    roof: () => (state?.roof && adapter ? adapter.project(state.roof.latitude_deg, state.roof.longitude_deg) : null),
+    busy: () => state.asking,
+    draw,
+    drop: ({ x, y }) => adapter && place(adapter.unproject(x, y)),
+  });
   view.addEventListener('keydown', onKey);
   view.addEventListener('focus', () => adapter?.wheel(true));
   view.addEventListener('blur', () => {
@@ -283,9 +300,13 @@ export function createMap(element, { place }) {
   element.querySelector('[name=out]')?.addEventListener('click', () => adapter?.zoom(-1));
   new ResizeObserver(() => draw()).observe(view);
 
+  /** @type {any} what is shown, found once for each state */
+  let cell = null;
+
   /** @param {import('./state.js').State} next */
   function update(next) {
     state = next;
+    cell = shownCell(state);
     const settled = state.answer || (state.health && !state.asking && state.chains);
     if (settled && !opening) void open();
     look();

@@ -1,40 +1,67 @@
 /** The line for whoever turns the aerial. */
 
+import { make, part } from './dom.js';
 import { NOTHING, titleOf, verdictOf } from './state.js';
-import { bearingText, numberText, rodsText } from './units.js';
+import { bearingText, compassBearing, heightText, numberText, rodsText } from './units.js';
 
 const SAME_MAST_DEG = 1;
 
-/** @param {HTMLElement} element */
-export function createRoofline(element) {
-  const list = /** @type {HTMLElement} */ (element.querySelector('ol'));
-  const title = /** @type {HTMLElement} */ (element.querySelector('.chain'));
+/**
+ * @param {HTMLElement} element
+ * @param {{type: (change: object) => void}} actions
+ */
+export function createRoofline(element, { type }) {
+  const list = part(element, 'ol');
+  const title = part(element, '.chain');
+  const compass = part(element, '.compass');
+  const landmark = part(element, 'input');
+  landmark.addEventListener('input', () => type({ landmark: landmark.value }));
 
   /** @param {import('./state.js').State} state */
   function update(state) {
     const verdict = verdictOf(state);
     const name = verdict?.candidate ?? NOTHING;
-    const pointing = state.answer?.chains[name]?.pointings[0];
-    element.hidden = !pointing;
-    if (!pointing) return;
+    const chain = state.answer?.chains[name];
+    element.hidden = !chain?.pointings[0];
+    if (element.hidden) return;
     title.textContent = titleOf(state, name);
-    const level = levelToFind(state.answer, name, pointing.pointing_deg);
-    const rows = [
-      [bearingText(pointing.pointing_deg), 'from true north'],
-      [rodsText(pointing.polarisation), 'as seen from the ground'],
-      [`${numberText(state.answer.roof.aerial_agl_m, 0)}\u00a0m`, 'above the ground'],
-      ...(level ? [[`${numberText(level.median, 0)}\u00a0dB(µV)`, `on ${level.channel} at ${level.outlet}; ${numberText(level.worst, 0)} on a bad night`]] : []),
-    ];
-    list.replaceChildren(...rows.map(([figure, words]) => {
-      const item = document.createElement('li');
-      item.append(
-        Object.assign(document.createElement('b'), { textContent: figure }), ' ',
-        Object.assign(document.createElement('span'), { textContent: words }),
-      );
-      return item;
-    }));
+    if (landmark.value !== state.landmark) landmark.value = state.landmark;
+    list.replaceChildren(...rows(state, name).map(([figure, words]) => make('li', {}, make('b', { textContent: figure }), ' ', make('span', { textContent: words }))));
+    compass.textContent = about(state.answer.roof.declination);
   }
   return { update };
+}
+
+/**
+ * Figures to carry up the ladder, each with what it is.
+ * @param {import('./state.js').State} state @param {string} name of the chain
+ * @returns {string[][]}
+ */
+function rows(state, name) {
+  const { chains, roof } = state.answer;
+  const aerials = chains[name].aerials?.length ? chains[name].aerials : [chains[name].pointings[0]];
+  const level = levelToFind(state.answer, name, chains[name].pointings[0].pointing_deg);
+  const turned = aerials.flatMap((aerial) => {
+    const called = aerials.length > 1 ? `, ${aerial.name}` : '';
+    return [
+      [bearingText(aerial.pointing_deg), `from true north${called}`],
+      ...(roof.declination ? [[bearingText(compassBearing(aerial.pointing_deg, roof.declination)), `by compass${called}`]] : []),
+      [rodsText(aerial.polarisation), `as seen from the ground${called}`],
+    ];
+  });
+  return [
+    ...turned,
+    [heightText(roof.aerial_agl_m, state.units), 'above the ground'],
+    ...(level ? [[`${numberText(level.median, 0)}\u00a0dB(µV)`, `on ${level.channel} at ${level.outlet}; ${numberText(level.worst, 0)} on a bad night`]] : []),
+  ];
+}
+
+/** @param {any} declination */
+function about(declination) {
+  if (!declination) return 'No compass bearing: the place or the day is outside the model of the Earth’s field.';
+  const off = `${numberText(Math.abs(declination.declination_deg), 1)}° ${declination.declination_deg < 0 ? 'west' : 'east'}`;
+  const day = new Date(`${declination.day}T12:00`).toLocaleDateString();
+  return `A compass points ${off} of true north here on ${day}, give or take ${numberText(2 * declination.error_deg, 1)}° (19 in 20; ${declination.model}); steel nearby turns it further. ${declination.caution ?? ''}`.trim();
 }
 
 /**

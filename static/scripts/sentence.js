@@ -1,6 +1,6 @@
 /** The answer as one sentence, from the numbers of the document. Pure: no page, no network. */
 
-import { countText, moneyText } from './units.js';
+import { bearingText, countText, moneyText } from './units.js';
 import { NOTHING } from './state.js';
 
 const NO_CHANGE = 0.05; // multiplexes; less is nothing to a person
@@ -20,7 +20,7 @@ export function sentence(answer, verdict) {
     ...today(answer, verdict, total),
     ...change(verdict, total, answer.chains[verdict.candidate]?.title ?? verdict.candidate),
     ...price(verdict, currency),
-    ...judgement(verdict, currency),
+    ...judgement(verdict, currency, toRead(answer, verdict.measure_next)),
     { text: '.' },
   ];
 }
@@ -30,12 +30,14 @@ export function plain(pieces) {
   return pieces.map((piece) => piece.text).join('');
 }
 
+/** @returns {Piece[]} */
 function today(answer, verdict, total) {
   if (verdict.baseline === NOTHING) return [{ text: 'Nothing is up today. ' }];
   const count = countText(answer.chains[verdict.baseline].expected_count);
   return [{ text: 'Today ' }, { text: count, weight: 'strong' }, { text: ` of ${total}. ` }];
 }
 
+/** @returns {Piece[]} */
 function change(verdict, total, title) {
   const extra = verdict.expected_extra;
   const name = title;
@@ -47,6 +49,7 @@ function change(verdict, total, title) {
   return [{ text: `${name} adds ` }, { text: countText(extra), weight: 'strong' }];
 }
 
+/** @returns {Piece[]} */
 function price(verdict, currency) {
   const difference = verdict.price_difference;
   if (difference === null) return [{ text: '; its price is not known' }];
@@ -55,7 +58,8 @@ function price(verdict, currency) {
   return [{ text: ' for ' }, { text: moneyText(difference, currency), weight: 'strong' }];
 }
 
-function judgement(verdict, currency) {
+/** @returns {Piece[]} */
+function judgement(verdict, currency, reading) {
   const limit = moneyText(Math.max(0, verdict.break_even_price), currency);
   const some = verdict.break_even_price >= 1;
   if (verdict.answer === null) {
@@ -63,11 +67,16 @@ function judgement(verdict, currency) {
       ? [{ text: ', ' }, { text: 'worth it', weight: 'answer' }, { text: ` up to ${limit}` }]
       : [{ text: ', ' }, { text: 'not worth it', weight: 'answer' }, { text: ' at any price' }];
   }
-  const word = [{ text: ': ' }, { text: verdict.answer, weight: 'answer' }];
-  if (verdict.answer === 'measure first' && verdict.measure_next) {
-    return [...word, { text: `, the signal from ${Math.round(verdict.measure_next.bearing_deg)}°` }];
-  }
+  const word = /** @type {Piece[]} */ ([{ text: ': ' }, { text: verdict.answer, weight: 'answer' }]);
+  if (verdict.answer === 'measure first' && reading) return [...word, { text: ` ${reading}` }];
   if (verdict.answer === 'worth it' && some) return [...word, { text: `, up to ${limit}` }];
   if (verdict.answer === 'not worth it' && some) return [...word, { text: `, unless it costs less than ${limit}` }];
   return word;
+}
+
+/** What to read first, in words. @param {any} answer @param {any} next */
+function toRead(answer, next) {
+  const emission = answer.emissions.find((one) => one.id === next?.emission);
+  if (!emission) return '';
+  return `${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(next.bearing_deg)}`;
 }

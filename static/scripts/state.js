@@ -9,6 +9,28 @@
  * @property {Place|null} roof     where the roof is, once it is known
  * @property {string} now          name of the chain that is up, or "nothing"
  * @property {string|null} idea    name of the chain to compare; null: the best one
+ * @property {string|null} second  name of another chain to compare; null: none
+ * @property {string} around       what stands around the roof: open, suburban, urban, trees
+ * @property {Record<string, string>} seen   what works there today, by multiplex: perfect, breaks up, not found
+ * @property {string} landmark     what lies along the line of the aerial, as named by the user
+ * @property {any[]} obstacles     bearing_deg, distance_m, height_agl_m, width_m
+ * @property {any[]} edits         chains as changed here, in place of kept ones of the same name
+ * @property {Record<string, any>} settings     of the question, where not as usual
+ * @property {Record<string, number>} assumptions  values changed from their defaults
+ * @property {{name: string, where: Place, height: number}[]} pins  other places to compare
+ * @property {string} sheet        the sheet that is open behind the answer
+ * @property {import('./units.js').Units} units
+ * @property {any|null} skyline    horizon of the answer's roof
+ * @property {any|null} heights    chances against height
+ * @property {any|null} steps      ledger of the shown cell
+ * @property {any[]} compared      answers at the pinned places
+ * @property {any[]} kept          kept roofs
+ * @property {{id: string, updated: string}|null} saved  the kept roof that is open
+ * @property {string} said         the last thing done, for a line of its own
+ * @property {{name: string, before: number, after: number}[]} moved  what the last reading moved
+ * @property {any[]} [values]      every value that was chosen, before there is an answer
+ * @property {string[]} [cables]   classes of cable
+ * @property {number} past         how many steps can be taken back
  * @property {Cell|null} cell      the cell whose reasons are shown; null: the one that changes most
  * @property {any[]|null} chains   kept chains; null: not yet known
  * @property {any|null} health     what the server knows; null: not yet known
@@ -19,13 +41,18 @@
  */
 
 export const NOTHING = 'nothing';
-const VERSION = '1';
+const VERSION = '2';
+const READABLE = ['1', VERSION]; // links of these versions can be opened
+const MORE = /** @type {const} */ (['second', 'around', 'seen', 'landmark', 'obstacles', 'edits', 'settings', 'assumptions', 'pins']);
 const LEAST_CHANGE = 0.05; // a smaller difference of chance is the same to a person
 
 /** @returns {State} */
 export function initialState() {
   return {
-    where: '', height: '10', roof: null, now: '', idea: null, cell: null,
+    where: '', height: '10', roof: null, now: '', idea: null, second: null, cell: null,
+    around: 'open', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
+    sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
+    said: '', moved: [], past: 0,
     chains: null, health: null, answer: null, path: null, asking: false, trouble: null,
   };
 }
@@ -56,6 +83,7 @@ export function createStore(start) {
 /** @param {State} state @returns {string} what a link or the next visit needs */
 export function encode(state) {
   const kept = new URLSearchParams({ v: VERSION });
+  const usual = initialState();
   if (state.where) kept.set('at', state.where);
   kept.set('height', state.height);
   if (state.now) kept.set('now', state.now);
@@ -64,13 +92,16 @@ export function encode(state) {
     kept.set('multiplex', state.cell.multiplex);
     kept.set('chain', state.cell.chain);
   }
+  if (state.sheet !== usual.sheet) kept.set('sheet', state.sheet);
+  const more = Object.fromEntries(MORE.filter((key) => JSON.stringify(state[key]) !== JSON.stringify(usual[key])).map((key) => [key, state[key]]));
+  if (Object.keys(more).length) kept.set('more', JSON.stringify(more));
   return kept.toString();
 }
 
 /** @param {string} text of encode, or anything else @returns {Partial<State>} what of it can be used */
 export function decode(text) {
   const kept = new URLSearchParams(text.replace(/^#/, ''));
-  if (kept.get('v') !== VERSION) return {};
+  if (!READABLE.includes(kept.get('v') ?? '')) return {};
   const multiplex = kept.get('multiplex');
   const chain = kept.get('chain');
   return {
@@ -79,12 +110,66 @@ export function decode(text) {
     now: kept.get('now') ?? '',
     idea: kept.get('idea'),
     cell: multiplex && chain ? { multiplex, chain } : null,
+    sheet: kept.get('sheet') ?? 'skyline',
+    ...more(kept.get('more')),
   };
 }
 
-/** @param {State} state @param {number} height metres @returns {object} the question for the server */
+/** What a link holds beside the usual, each only if it has the shape it should have. @param {string|null} text */
+function more(text) {
+  const usual = initialState();
+  const start = Object.fromEntries(MORE.map((key) => [key, usual[key]]));
+  let found;
+  try {
+    found = JSON.parse(text ?? '{}');
+  } catch {
+    return start;
+  }
+  const alike = (value, like) => (like === null ? typeof value === 'string' : typeof value === typeof like && Array.isArray(value) === Array.isArray(like) && value !== null);
+  for (const key of MORE) if (found !== null && typeof found === 'object' && alike(found[key], usual[key])) start[key] = found[key];
+  return start;
+}
+
+/**
+ * The question for the server; what is as usual is left out.
+ * @param {State} state @param {number} height metres @returns {any}
+ */
 export function question(state, height) {
-  return { roof: { ...state.roof, aerial_agl_m: height }, now: state.now || NOTHING };
+  const now = state.now || NOTHING;
+  const asked = /** @type {any} */ ({ roof: { ...state.roof, aerial_agl_m: height }, now, ...state.settings });
+  if (state.around !== 'open') asked.roof.surroundings = state.around;
+  if (state.obstacles.length) asked.roof.obstacles = state.obstacles;
+  if (state.edits.length) asked.chains = chainsAsked(state);
+  if (Object.keys(state.assumptions).length) asked.assumptions = state.assumptions;
+  const seen = Object.entries(state.seen);
+  if (seen.length && now !== NOTHING) asked.readings = seen.map(([multiplex, seenAs]) => ({ kind: 'seen', multiplex, state: seenAs, chain: now }));
+  return asked;
+}
+
+/** Names of kept chains, and chains as changed here. @param {State} state @returns {any[]} */
+export function chainsAsked(state) {
+  const kept = (state.chains ?? []).map((one) => one.name);
+  const drafts = new Map(state.edits.map((one) => [one.name, one]));
+  return [...kept.map((name) => drafts.get(name) ?? name), ...state.edits.filter((one) => !kept.includes(one.name))];
+}
+
+/** Every chain as it stands here, kept or changed. @param {State} state @returns {any[]} */
+export function chainsHere(state) {
+  const drafts = new Map(state.edits.map((one) => [one.name, one]));
+  const kept = (state.chains ?? []).map((one) => drafts.get(one.name) ?? one);
+  return [...kept, ...state.edits.filter((one) => !kept.includes(one))];
+}
+
+/** The chains in columns: up now, idea 1, idea 2. @param {State} state @returns {{role: string, name: string}[]} */
+export function columns(state) {
+  const verdict = verdictOf(state);
+  if (!verdict) return [];
+  const second = state.second && state.second !== verdict.candidate && state.second !== verdict.baseline && state.answer.chains[state.second];
+  return [
+    { role: 'up now', name: verdict.baseline },
+    { role: 'idea 1', name: verdict.candidate },
+    ...(second ? [{ role: 'idea 2', name: /** @type {string} */ (state.second) }] : []),
+  ];
 }
 
 /** @param {any[]} chains @returns {string} what is up as far as the kept chains say */
@@ -98,7 +183,7 @@ export function chainNow(chains) {
  */
 export function titleOf(state, name) {
   if (name === NOTHING) return 'nothing';
-  return state.answer?.chains[name]?.title ?? state.chains?.find((one) => one.name === name)?.title ?? name;
+  return state.answer?.chains[name]?.title || chainsHere(state).find((one) => one.name === name)?.title || name;
 }
 
 /** @param {State} state @returns {any|null} the verdict on the shown idea */
@@ -116,17 +201,18 @@ export function cellOf(multiplex, chain) {
 }
 
 /**
- * Splits the multiplexes by whether the idea changes them; the largest change comes first.
- * @param {any} answer @param {string} now @param {string} idea
+ * Splits the multiplexes by whether an idea changes them; the largest change comes first.
+ * @param {any} answer @param {string} now @param {...string} ideas
  * @returns {{changed: any[], same: any[]}}
  */
-export function changes(answer, now, idea) {
-  const difference = (multiplex) => (cellOf(multiplex, idea)?.chance ?? 0) - (cellOf(multiplex, now)?.chance ?? 0);
+export function changes(answer, now, ...ideas) {
+  const chance = (multiplex, name) => cellOf(multiplex, name)?.chance ?? 0;
+  const difference = (multiplex) => Math.max(...ideas.map((idea) => Math.abs(chance(multiplex, idea) - chance(multiplex, now))));
   const moved = (multiplex) =>
-    Math.abs(difference(multiplex)) >= LEAST_CHANGE ||
-    (cellOf(multiplex, now) !== null && cellOf(multiplex, now).grade !== cellOf(multiplex, idea)?.grade);
+    difference(multiplex) >= LEAST_CHANGE ||
+    (cellOf(multiplex, now) !== null && ideas.some((idea) => cellOf(multiplex, now).grade !== cellOf(multiplex, idea)?.grade));
   const changed = answer.multiplexes.filter(moved);
-  changed.sort((a, b) => Math.abs(difference(b)) - Math.abs(difference(a)));
+  changed.sort((a, b) => difference(b) - difference(a));
   return { changed, same: answer.multiplexes.filter((multiplex) => !moved(multiplex)) };
 }
 
@@ -139,10 +225,10 @@ export function shownCell(state) {
   const verdict = verdictOf(state);
   if (!state.answer || !verdict) return null;
   const chosen = state.answer.multiplexes.find((one) => one.id === state.cell?.multiplex);
-  const { changed, same } = changes(state.answer, verdict.baseline, verdict.candidate);
+  const shown = columns(state).map((one) => one.name);
+  const { changed, same } = changes(state.answer, verdict.baseline, ...shown.slice(1));
   const multiplex = chosen ?? changed[0] ?? same[0];
   if (!multiplex) return null;
-  const shown = [verdict.baseline, verdict.candidate];
   const wish = chosen ? state.cell?.chain : verdict.candidate;
   const chain = shown.find((name) => name === wish && cellOf(multiplex, name)) ?? verdict.candidate;
   const emission = state.answer.emissions.find((one) => one.id === cellOf(multiplex, chain)?.emission);

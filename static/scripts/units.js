@@ -1,6 +1,12 @@
 /** Numbers as people read and type them. Pure: no page, no network. */
 
 const MINUS = '\u2212';
+const FEET_PER_M = 1 / 0.3048; // the international foot, exactly
+const MILES_PER_KM = 1 / 1.609344;
+/** @type {Map<number, Intl.NumberFormat>} */
+const formats = new Map();
+
+/** @typedef {'metric'|'imperial'} Units of heights and distances */
 
 /**
  * A chance in words a customer can weigh. Never certain: the ends are told as one in a hundred.
@@ -41,17 +47,22 @@ export function moneyText(value, currency) {
 /**
  * @param {number} value
  * @param {number} digits after the point
- * @returns {string} with a true minus sign; "0", never "-0"
+ * @returns {string} as the reader's locale writes it, with a true minus sign; "0", never "-0"
  */
 export function numberText(value, digits) {
-  const text = Math.abs(value).toFixed(digits);
-  return value < 0 && Number(text) !== 0 ? MINUS + text : text;
+  let format = formats.get(digits);
+  if (!format) {
+    format = new Intl.NumberFormat(undefined, { minimumFractionDigits: digits, maximumFractionDigits: digits, useGrouping: false });
+    formats.set(digits, format);
+  }
+  const text = format.format(Math.abs(value));
+  return value < 0 && Number(Math.abs(value).toFixed(digits)) !== 0 ? MINUS + text : text;
 }
 
 /** @param {number} value decibels, told with its sign @param {number} [digits] @returns {string} */
 export function signedText(value, digits = 1) {
   const text = numberText(value, digits);
-  return text.startsWith(MINUS) || Number(text) === 0 ? text : `+${text}`;
+  return text.startsWith(MINUS) || Number(value.toFixed(digits)) === 0 ? text : `+${text}`;
 }
 
 /** @param {number} bearing degrees @returns {string} whole degrees from north, "008°" */
@@ -60,9 +71,33 @@ export function bearingText(bearing) {
   return `${String(whole).padStart(3, '0')}°`;
 }
 
-/** @param {number} km @returns {string} */
-export function distanceText(km) {
-  return km < 10 ? `${km.toFixed(1)}\u00a0km` : `${Math.round(km)}\u00a0km`;
+/** @param {number} km @param {Units} [units] @returns {string} */
+export function distanceText(km, units = 'metric') {
+  const value = units === 'imperial' ? km * MILES_PER_KM : km;
+  return `${numberText(value, value < 10 ? 1 : 0)}\u00a0${units === 'imperial' ? 'mi' : 'km'}`;
+}
+
+/** @param {number} metres @param {Units} [units] @param {number} [digits] @returns {string} */
+export function heightText(metres, units = 'metric', digits = 0) {
+  return units === 'imperial' ? `${numberText(metres * FEET_PER_M, 0)}\u00a0ft` : `${numberText(metres, digits)}\u00a0m`;
+}
+
+/** @param {number} metres @param {Units} units @returns {number} in the units of heights */
+export function heightIn(metres, units) {
+  return units === 'imperial' ? metres * FEET_PER_M : metres;
+}
+
+/**
+ * A sentence of the server in the reader's units, with no line break between a number and its unit.
+ * @param {string} text @param {Units} [units]
+ */
+export function told(text, units = 'metric') {
+  const converted = text.replace(/(\d+(?:\.\d+)?) (km|m)(?![\w/²])/g, (_, digits, unit) => {
+    const value = Number(digits);
+    if (units === 'metric') return `${numberText(value, digits.includes('.') ? 1 : 0)} ${unit}`;
+    return unit === 'km' ? distanceText(value, units) : heightText(value, units);
+  });
+  return unbroken(converted);
 }
 
 /** @param {string} text @returns {string} with no line break between a number and its unit */
@@ -103,12 +138,25 @@ export function parsePlace(text) {
 }
 
 /**
- * Reads the height of the aerial above the ground.
+ * Reads the height of the aerial above the ground: "10", "10 m", "33 ft".
  * @param {string} text
- * @returns {{height: number} | {problem: string}}
+ * @param {Units} [units] of a bare number
+ * @returns {{height: number} | {problem: string}} metres
  */
-export function parseHeight(text) {
-  const tidy = text.trim().replace(',', '.').replace(/\s*m$/i, '');
-  if (!/^\d+(\.\d+)?$/.test(tidy)) return { problem: 'Write the height in metres, such as 10.' };
-  return { height: Number(tidy) };
+export function parseHeight(text, units = 'metric') {
+  const match = /^(\d+(?:\.\d+)?)\s*(m|ft|')?$/i.exec(text.trim().replace(',', '.'));
+  if (!match) return { problem: units === 'imperial' ? 'Write the height in feet, such as 33.' : 'Write the height in metres, such as 10.' };
+  const feet = match[2] ? match[2].toLowerCase() !== 'm' : units === 'imperial';
+  return { height: feet ? Math.round(Number(match[1]) / FEET_PER_M * 100) / 100 : Number(match[1]) };
+}
+
+/** @param {string} text @returns {number|null} a number as people type it, null where it is none */
+export function parseNumber(text) {
+  const tidy = text.trim().replace(',', '.').replace(MINUS, '-');
+  return /^-?\d+(\.\d+)?$/.test(tidy) ? Number(tidy) : null;
+}
+
+/** @param {number} bearing true @param {{declination_deg: number}|null|undefined} declination @returns {number} by compass */
+export function compassBearing(bearing, declination) {
+  return bearing - (declination?.declination_deg ?? 0);
 }

@@ -1,16 +1,17 @@
-/** The four things that are asked: where, how high, what is up, which idea. */
+/** What is asked first: where, how high, what stands around, what is up, which ideas. */
 
-import { NOTHING, titleOf } from './state.js';
+import { columns, NOTHING, titleOf, chainsHere } from './state.js';
+
+const AROUND = [['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
 
 /**
  * @param {HTMLFormElement} element
  * @param {{type: (change: object) => void, submit: () => void, choose: (change: object) => void}} actions
  */
 export function createWhere(element, { type, submit, choose }) {
-  const place = /** @type {HTMLInputElement} */ (element.elements.namedItem('place'));
-  const height = /** @type {HTMLInputElement} */ (element.elements.namedItem('height'));
-  const now = /** @type {HTMLSelectElement} */ (element.elements.namedItem('now'));
-  const idea = /** @type {HTMLSelectElement} */ (element.elements.namedItem('idea'));
+  const named = (name) => /** @type {any} */ (element.elements.namedItem(name));
+  const [place, height, around, now, idea, second] = ['place', 'height', 'around', 'now', 'idea', 'second'].map(named);
+  const unit = /** @type {HTMLElement} */ (element.querySelector('.field-height .hint'));
 
   element.addEventListener('submit', (event) => {
     event.preventDefault();
@@ -18,27 +19,29 @@ export function createWhere(element, { type, submit, choose }) {
   });
   place.addEventListener('input', () => type({ where: place.value }));
   height.addEventListener('input', () => type({ height: height.value }));
-  for (const field of [place, height]) field.addEventListener('change', submit);
+  for (const one of [place, height]) one.addEventListener('change', submit);
+  around.addEventListener('change', () => choose({ around: around.value }));
   now.addEventListener('change', () => choose({ now: now.value }));
   idea.addEventListener('change', () => choose({ idea: idea.value || null }));
+  second.addEventListener('change', () => choose({ second: second.value || null }));
+  options(around, AROUND, 'open');
 
   /** @param {import('./state.js').State} state */
   function update(state) {
     fill(place, state.where);
     fill(height, state.height);
-    const names = (state.chains ?? []).map((chain) => chain.name);
-    const titled = names.map((name) => [name, titleOf(state, name)]);
+    unit.textContent = state.units === 'imperial' ? 'ft above ground' : 'm above ground';
+    around.value = state.around;
+    const titled = chainsHere(state).map((chain) => [chain.name, titleOf(state, chain.name)]);
     options(now, [[NOTHING, 'nothing yet'], ...titled], state.now);
     const answers = new Map((state.answer?.verdicts ?? []).map((one) => [one.candidate, one.answer]));
+    const judged = titled
+      .filter(([name]) => name !== state.now)
+      .map(([name, title]) => [name, answers.get(name) ? `${title}: ${answers.get(name)}` : title]);
     const best = state.answer?.verdicts[0];
-    options(
-      idea,
-      [
-        ['', best ? `best: ${titleOf(state, best.candidate)}` : 'the best there is'],
-        ...titled.filter(([name]) => name !== state.now).map(([name, title]) => [name, answers.get(name) ? `${title}: ${answers.get(name)}` : title]),
-      ],
-      state.idea ?? '',
-    );
+    options(idea, [['', best ? `best: ${titleOf(state, best.candidate)}` : 'the best there is'], ...judged], state.idea ?? '');
+    const first = columns(state)[1]?.name;
+    options(second, [['', 'none'], ...judged.filter(([name]) => name !== first)], state.second ?? '');
     problem(place, state.trouble, 'where', 'latitude_deg', 'longitude_deg');
     problem(height, state.trouble, 'height', 'aerial_agl_m');
   }
@@ -58,6 +61,7 @@ function options(select, pairs, chosen) {
     select.replaceChildren(...pairs.map(([value, text]) => Object.assign(document.createElement('option'), { value, textContent: text })));
   }
   select.value = chosen;
+  if (select.selectedIndex < 0) select.selectedIndex = 0;
 }
 
 /** @param {HTMLInputElement} field @param {import('./state.js').State['trouble']} trouble @param {string[]} names */

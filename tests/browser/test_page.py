@@ -36,6 +36,10 @@ def answered(page: Page, roof=NORTH, **more: str) -> None:
     page.wait_for_selector(".changes:not([hidden])")
 
 
+def open_sheet(page: Page, name: str) -> None:
+    page.get_by_role("tab", name=name, exact=True).click()
+
+
 def settled(page: Page) -> None:
     page.wait_for_selector("#map[data-idle]")
 
@@ -74,7 +78,7 @@ def test_the_page_and_the_answer_agree(page, address):
     assert verdict["answer"] in sentence(page)
     rows = page.locator(".changes tbody tr")
     assert 0 < rows.count() < len(answer["multiplexes"])
-    assert f"{len(answer['multiplexes']) - rows.count()} unchanged" in page.locator("summary").inner_text()
+    assert f"{len(answer['multiplexes']) - rows.count()} unchanged" in page.locator(".changes summary").inner_text()
     expect(page.locator(".roofline li b").first).to_have_text(re.compile(r"^\d{3}°$"))
 
 
@@ -83,7 +87,7 @@ def test_another_chain_changes_the_sentence_at_once(page):
     before = sentence(page)
     page.get_by_label("Idea 1").select_option("roof-yagi")
     expect(page.locator(".sentence")).not_to_have_text(before)
-    expect(page.locator("thead [data-chain=idea]")).to_have_text("Short roof Yagi")
+    expect(page.locator(".changes thead .chain").nth(1)).to_have_text("Short roof Yagi")
 
 
 def test_another_chain_up_now_asks_again(page):
@@ -95,29 +99,36 @@ def test_another_chain_up_now_asks_again(page):
 
 
 def test_a_cell_opens_its_path_and_ledger(page):
-    answered(page)
+    answered(page, sheet="path")
     expect(page.locator(".drawing .ground-line")).to_have_count(1)
-    page.locator("summary").click()
-    cell = page.locator(".changes details .cell").first
-    cell.click()
+    page.locator(".changes summary").click()
+    page.locator(".changes details .cell").first.click()
     expect(page.locator(".changes details .cell").first).to_have_attribute("aria-pressed", "true")
     name = page.locator(".changes details .name").first.inner_text()
-    expect(page.locator("#path-title")).to_contain_text(name)
-    expect(page.locator("#ledger-title")).to_contain_text(name)
+    expect(page.locator(".path h3")).to_contain_text(name)
     expect(page.locator(".path .told")).to_have_text(re.compile(r"km.*\.$"))
+    open_sheet(page, "Step by step")
+    expect(page.locator("#ledger-title")).to_contain_text(name)
     assert page.locator(".ledger tbody tr").count() > 8
-    assert all(source.strip() for source in page.locator(".ledger tbody tr:not(.result) .source").all_inner_texts())
+    assert all(source.strip() for source in page.locator(".ledger tbody tr .source").all_inner_texts())
 
 
-def test_the_ledger_adds_up_to_the_margin(page):
-    answered(page)
-    values = [float(text.replace("\u2212", "-")) for text in page.locator(".ledger .value").all_inner_texts() if text]
-    margin = float(page.locator(".ledger .result .total").inner_text().replace("\u2212", "-"))
-    assert sum(values) == pytest.approx(margin, abs=0.05 * (len(values) + 1))  # each is rounded to 0.1 dB
+def test_the_ledger_adds_up_to_the_margin_in_both_nights(page):
+    answered(page, sheet="ledger")
+    expect(page.locator(".ledger .held-back")).to_contain_text("What limits it is")
+    margins = []
+    for night in range(2):
+        page.locator(".ledger .states input").nth(night).check()
+        texts = page.locator(".ledger .value").all_inner_texts()
+        values = [float(text.replace("\u2212", "-")) for text in texts if text]
+        margins.append(float(page.locator(".ledger .result .total").inner_text().replace("\u2212", "-")))
+        assert sum(values) == pytest.approx(margins[-1], abs=0.05 * (len(values) + 1))  # each is rounded to 0.1 dB
+    decides = page.locator(".ledger .states label", has_text="which decides").inner_text()
+    assert f"{min(margins):.1f}".replace("-", "\u2212") in decides
 
 
 def test_only_part_of_the_zone_is_filled_and_the_line_is_drawn(page):
-    answered(page)
+    answered(page, sheet="path")
     assert page.locator(".drawing .line").get_attribute("d").startswith("M")
     assert page.locator(".drawing .taken").get_attribute("d").startswith("M")
     assert "into the line" in page.locator(".drawing .said.halo").inner_html()
@@ -147,12 +158,13 @@ def test_the_keyboard_alone_does_everything(page):
     page.keyboard.press("Enter")
     expect(page.locator(".sentence")).to_have_text(SENTENCE)
     page.keyboard.press("Tab")
-    expect(page.get_by_label("Aerial")).to_be_focused()
-    page.keyboard.press("Tab")
+    expect(page.locator("#height")).to_be_focused()
+    for _ in range(2):
+        page.keyboard.press("Tab")
     expect(page.get_by_label("Up now")).to_be_focused()
     with page.expect_response("**/api/assess"):
         page.keyboard.press("ArrowDown")
-    for _ in range(3):
+    while page.evaluate("() => document.activeElement.id") != "map-view":
         page.keyboard.press("Tab")
     expect(page.locator("#map-view")).to_be_focused()
     before = page.get_by_label("Roof at").input_value()
@@ -194,7 +206,7 @@ def test_on_a_phone_the_map_comes_after_the_sentence(watched, browser):
     answered(page)
     tops = [
         page.locator(part).bounding_box()["y"]
-        for part in (".sentence", "#map", ".changes", ".roofline", ".cautions", ".path")
+        for part in (".sentence", "#map", ".changes", ".roofline", ".cautions", ".sheets")
     ]
     assert tops == sorted(tops)
 
@@ -206,7 +218,9 @@ def test_no_fault_of_accessibility(watched, browser, browser_without_webgl, sche
     for show in (start, answered):
         show(page)
         settled(page)
-        page.locator("details").evaluate("one => { one.open = true; }")
+        page.locator(".changes details, details.seen").evaluate_all(
+            "all => { for (const one of all) one.open = true; }"
+        )
         found = Axe().run(page, options={"runOnly": RULES}).response["violations"]
         assert [(fault["id"], fault["nodes"][0]["html"][:150]) for fault in found] == []
 
@@ -265,15 +279,16 @@ def test_the_next_visit_and_a_link_bring_everything_back(page, watched, browser)
 def test_what_was_only_typed_is_there_after_a_reload(page):
     start(page)
     page.get_by_label("Roof at").fill("44.3, ")
-    page.get_by_label("Aerial").fill("7")
+    page.locator("#height").fill("7")
     page.reload()
     expect(page.get_by_label("Roof at")).to_have_value("44.3, ")
-    expect(page.get_by_label("Aerial")).to_have_value("7")
+    expect(page.locator("#height")).to_have_value("7")
 
 
 def test_a_link_of_another_version_starts_empty(page):
     start(page, "#v=99&at=1,2")
     expect(page.locator(".sentence")).to_contain_text("Where is the roof?")
+    expect(page.locator(".trouble")).to_contain_text("another version")
 
 
 def test_two_pages_keep_their_own_roofs(watched, browser):
@@ -295,7 +310,7 @@ def test_two_pages_keep_their_own_roofs(watched, browser):
 def test_what_cannot_be_read_is_said_at_its_field_without_asking(page, place, height, words):
     start(page)
     page.get_by_label("Roof at").fill(place)
-    page.get_by_label("Aerial").fill(height)
+    page.locator("#height").fill(height)
     page.get_by_role("button", name="Work it out").click()
     expect(page.locator(".problem", has_text=words)).to_be_visible()
     expect(page.locator("[aria-invalid=true]")).to_have_count(1)
@@ -313,7 +328,7 @@ def test_what_the_server_refuses_is_said_in_its_words(page, watched, place, heig
     watched.expected = "status of 422"
     answered(page)
     page.get_by_label("Roof at").fill(place)
-    page.get_by_label("Aerial").fill(height)
+    page.locator("#height").fill(height)
     page.get_by_role("button", name="Work it out").click()
     expect(page.locator(".trouble")).to_contain_text(words, ignore_case=True)
     expect(page.locator(".changes")).to_be_hidden()

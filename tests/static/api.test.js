@@ -11,7 +11,7 @@ test('an answer comes back as it was sent', async () => {
 
 test('an error keeps the server’s words and field', async () => {
   const api = createApi(reply(422, { error: { code: 'roof', message: 'latitude 91 is not possible', field: 'roof.latitude_deg', allowed: null } }));
-  await assert.rejects(api.assess({}), { message: 'Latitude 91 is not possible.', code: 'roof', field: 'roof.latitude_deg', status: 422 });
+  await assert.rejects(api.post('/api/assess', {}), { message: 'Latitude 91 is not possible.', code: 'roof', field: 'roof.latitude_deg', status: 422 });
 });
 
 test('a server that is gone is told in plain words', async () => {
@@ -48,4 +48,12 @@ test('an error of an overtaken question is silent, that of the last is heard', a
   const second = ask('second');
   assert.equal(await first, undefined);
   await assert.rejects(second, { message: 'second' });
+});
+
+test('what is kept is sent whole, and what is gone answers nothing', async () => {
+  const sent = [];
+  const api = createApi(async (path, options) => { sent.push([path, options.method, options.body]); return new Response(null, { status: 204 }); });
+  assert.equal(await api.remove('/api/roofs/1'), null);
+  assert.equal(await api.put('/api/roofs/1', { name: 'a' }), null);
+  assert.deepEqual(sent, [['/api/roofs/1', 'DELETE', undefined], ['/api/roofs/1', 'PUT', '{"name":"a"}']]);
 });

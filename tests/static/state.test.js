@@ -1,19 +1,34 @@
 import assert from 'node:assert/strict';
 import test from 'node:test';
 import {
-  chainNow, changes, createStore, decode, encode, initialState, NOTHING, question, shownCell, titleOf, verdictOf,
+  chainNow, chainsAsked, chainsHere, changes, columns, createStore, decode, encode, initialState, NOTHING, question, shownCell, titleOf, verdictOf,
 } from '../../static/scripts/state.js';
 import { sampleAnswer, sampleVerdict } from './sample.js';
 
 const answered = (change = {}) => ({ ...initialState(), answer: sampleAnswer(), now: 'loft', ...change });
 
-test('a link carries what was typed and chosen', () => {
-  const state = { ...initialState(), where: '44.5, -37.2 & #', height: '8', now: 'loft', idea: 'long', cell: { multiplex: 'b', chain: 'long' } };
-  const { where, height, now, idea, cell } = state;
-  assert.deepEqual(decode(`#${encode(state)}`), { where, height, now, idea, cell });
+test('a link carries everything that was typed, ticked and changed', () => {
+  const kept = {
+    where: '44.5, -37.2 & #', height: '8', now: 'loft', idea: 'long', cell: { multiplex: 'b', chain: 'long' }, sheet: 'path',
+    second: 'short', around: 'trees', seen: { a: 'perfect' }, landmark: 'left of the tower', obstacles: [{ bearing_deg: 1 }],
+    edits: [{ name: 'own', parts: [] }], settings: { method: 'p1546' }, assumptions: { reserve_db: 2 }, pins: [{ name: 'A' }],
+  };
+  assert.deepEqual(decode(`#${encode({ ...initialState(), ...kept })}`), kept);
 });
 
-test('a link of another version or from elsewhere is left alone', () => {
+test('a link of the first version still opens', () => {
+  const { where, height, now, seen, edits } = decode('#v=1&at=1%2C2&height=9&now=loft');
+  assert.deepEqual({ where, height, now, seen, edits }, { where: '1,2', height: '9', now: 'loft', seen: {}, edits: [] });
+});
+
+test('what a link holds in another shape is left out', () => {
+  const strange = JSON.stringify({ edits: 'none', seen: [], assumptions: null, second: 7, landmark: 'tower' });
+  const { edits, seen, assumptions, second, landmark } = decode(`#v=2&more=${encodeURIComponent(strange)}`);
+  assert.deepEqual({ edits, seen, assumptions, second, landmark }, { edits: [], seen: {}, assumptions: {}, second: null, landmark: 'tower' });
+  assert.deepEqual(decode('#v=2&more=%7B').edits, []);
+});
+
+test('a link of an unknown version or from elsewhere is left alone', () => {
   for (const text of ['', '#', '#v=0&at=1,2', '#top', '#v=99']) assert.deepEqual(decode(text), {});
 });
 
@@ -77,4 +92,23 @@ test('chains are called by their title', () => {
   assert.equal(titleOf(answered(), 'long'), 'Long aerial');
   assert.equal(titleOf(answered(), NOTHING), 'nothing');
   assert.equal(titleOf(answered(), 'unknown'), 'unknown');
+});
+
+test('changed chains stand in the place of kept ones, new ones after them', () => {
+  const state = { ...initialState(), chains: [{ name: 'a' }, { name: 'b' }], edits: [{ name: 'b', x: 1 }, { name: 'c' }] };
+  assert.deepEqual(chainsAsked(state), ['a', { name: 'b', x: 1 }, { name: 'c' }]);
+  assert.deepEqual(chainsHere(state).map((one) => one.name), ['a', 'b', 'c']);
+});
+
+test('ticks are asked as readings of what is up, and not where nothing is', () => {
+  const state = { ...initialState(), roof: { latitude_deg: 1, longitude_deg: 2 }, now: 'loft', seen: { a: 'breaks up' } };
+  assert.deepEqual(question(state, 10).readings, [{ kind: 'seen', multiplex: 'a', state: 'breaks up', chain: 'loft' }]);
+  assert.equal(question({ ...state, now: NOTHING }, 10).readings, undefined);
+});
+
+test('columns are what is up, the idea, and another where one is chosen', () => {
+  const answer = { ...sampleAnswer(), chains: { ...sampleAnswer().chains, short: { title: 'Short aerial' } } };
+  assert.deepEqual(columns(answered({ answer })).map((one) => one.role), ['up now', 'idea 1']);
+  assert.deepEqual(columns(answered({ answer, second: 'short' })).map((one) => one.name), ['loft', 'long', 'short']);
+  assert.deepEqual(columns(answered({ answer, second: 'long' })).length, 2);
 });

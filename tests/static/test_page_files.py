@@ -38,13 +38,26 @@ def test_names_enter_the_page_as_text():
 
 
 def test_pure_modules_know_neither_page_nor_network():
-    for name in ("state", "units", "sentence", "drawing", "bearings", "openapi", "latest"):
+    for name in (
+        "state",
+        "units",
+        "sentence",
+        "drawing",
+        "bearings",
+        "openapi",
+        "latest",
+        "horizon",
+        "history",
+        "air_list",
+        "part_fields",
+    ):
         text = (STATIC / "scripts" / f"{name}.js").read_text()
         assert not re.search(r"\b(document\.(get|query|create)|window\.|localStorage|fetch\()", text), name
 
 
 def test_every_file_of_the_page_is_used():
-    pages = "".join(page.read_text() for page in PAGES)
+    report = STATIC.parent / "app" / "report" / "page.py"
+    pages = "".join(page.read_text() for page in (*PAGES, report))
     scripts = "".join(path.read_text() for path in SCRIPTS)
     for path in STYLES:
         assert f"/static/styles/{path.name}" in pages

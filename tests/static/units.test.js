@@ -1,7 +1,7 @@
 import assert from 'node:assert/strict';
 import test from 'node:test';
 import {
-  bearingText, chanceText, countText, distanceText, moneyText, numberText, parseHeight, parsePlace, placeText, rodsText, signedText,
+  bearingText, chanceText, compassBearing, countText, distanceText, heightIn, heightText, moneyText, numberText, parseHeight, parseNumber, parsePlace, placeText, rodsText, signedText, told,
 } from '../../static/scripts/units.js';
 
 test('a chance is told in tenths, and never as certain or impossible', () => {
@@ -77,5 +77,29 @@ test('a height is metres, with or without the unit', () => {
 });
 
 test('what is no height says what to write', () => {
-  for (const text of ['', 'ten', '1e2', '10 ft']) assert.match(parseHeight(text).problem, /metres, such as 10/);
+  for (const text of ['', 'ten', '1e2', '10 miles']) assert.match(parseHeight(text).problem, /metres, such as 10/);
+});
+
+test('feet and miles by their exact lengths', () => {
+  assert.equal(heightText(3.048, 'imperial'), '10\u00a0ft'); // 1 ft = 0.3048 m
+  assert.equal(distanceText(16.09344, 'imperial'), '10\u00a0mi'); // 1 mile = 1.609344 km
+  assert.deepEqual(parseHeight('33', 'imperial'), { height: 10.06 });
+  assert.deepEqual(parseHeight('33 ft'), { height: 10.06 });
+  assert.deepEqual(parseHeight('10 m', 'imperial'), { height: 10 });
+  assert.equal(heightIn(3.048, 'imperial').toFixed(6), '10.000000');
+});
+
+test('a sentence of the server is told in the reader’s units, other figures untouched', () => {
+  const words = '61 km, blocked: the ground at 5.1 km stands 26 m into the line, 49 dB(µV/m), 39 N/km.';
+  assert.equal(told(words, 'imperial'), '38\u00a0mi, blocked: the ground at 3.2\u00a0mi stands 85\u00a0ft into the line, 49\u00a0dB(µV/m), 39 N/km.');
+  assert.match(told(words), /^61\u00a0km, blocked: the ground at 5\.1\u00a0km stands 26\u00a0m/);
+});
+
+test('numbers are read with point or comma, and what is none is none', () => {
+  assert.deepEqual(['52', '52,5', '\u22123', 'x', ''].map(parseNumber), [52, 52.5, -3, null, null]);
+});
+
+test('west of true north, a compass reads more', () => {
+  assert.equal(compassBearing(59, { declination_deg: -11.5 }), 70.5);
+  assert.equal(compassBearing(59, null), 59);
 });

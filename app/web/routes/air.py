@@ -6,18 +6,21 @@ import dataclasses
 from importlib import metadata
 from typing import Annotated, Any
 
-from fastapi import APIRouter, Query
+from fastapi import APIRouter, Path, Query
 
 from app.assumptions import Assumptions
+from app.chain.tables import CABLES
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import RequestError
 from app.request import LONGEST_REACH_KM
 from app.transmitters.store import DEMO_SOURCE
 from app.web.assets import ASSETS
 from app.web.context import ContextDep
+from app.web.schemas import SwitchIn
 
 router = APIRouter(prefix="/api", tags=["what is known"])
 
+Id = Annotated[str, Path(min_length=1, max_length=200)]
 Latitude = Annotated[float | None, Query(ge=-90, le=90, allow_inf_nan=False)]
 Longitude = Annotated[float | None, Query(ge=-180, le=180, allow_inf_nan=False)]
 Reach = Annotated[float, Query(ge=1, le=LONGEST_REACH_KM, allow_inf_nan=False)]
@@ -42,6 +45,12 @@ def emissions(
     }
 
 
+@router.put("/emissions/{id}", summary="Keep a channel on the air or leave it out")
+def switch_emission(id: Id, wish: SwitchIn, context: ContextDep) -> dict[str, Any]:
+    """Switch one emission on or off for every answer; its import says anew what is on."""
+    return dataclasses.asdict(context.store.switch_emission(id, wish.on))
+
+
 @router.get("/transmitters", summary="Masts")
 def transmitters(context: ContextDep) -> dict[str, list[dict[str, Any]]]:
     """List every mast in use."""
@@ -58,6 +67,12 @@ def multiplexes(context: ContextDep) -> dict[str, list[dict[str, Any]]]:
 def assumptions() -> dict[str, list[dict[str, object]]]:
     """List the values that hold unless a question changes them."""
     return {"assumptions": Assumptions().document()}
+
+
+@router.get("/cables", summary="Classes of cable that a feeder can be of")
+def cables() -> dict[str, list[str]]:
+    """List the classes by name."""
+    return {"cables": list(CABLES)}
 
 
 @router.get("/health", summary="What this server knows")

@@ -1,0 +1,260 @@
+"""What stands in the report on a roof, from the document of the answer: words and rows, no layout."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from datetime import date
+from typing import Any
+
+from app.chain.document import chain_to_document
+from app.planner import assess
+from app.readings import INSTRUMENTS
+from app.report.commissioning import sheet_rows
+from app.request import NOTHING, AssessRequest
+from app.site import place
+from app.stored_chains import stored_chain
+from app.telling import RODS, chance_words, count_words
+from app.transmitters.store import Store
+from terrain.mosaic import Ground
+
+Document = dict[str, Any]
+LEAST_CHANGE = 0.05
+MOST_PATHS = 12
+KIND_WORDS = {"level": "dB(µV)", "cn": "dB C/N", "mer": "dB MER"}
+
+
+def report_content(saved: Mapping[str, Any], request: AssessRequest, store: Store, ground: Ground) -> Document:
+    """Answer the question of a kept roof and return what its report says."""
+    answer = assess(request, store, ground)
+    verdict = _verdict(answer, saved.get("idea"))
+    names = _names(answer, verdict, saved)
+    chosen = names[-1] if len(names) == 1 else names[1]
+    changed, same = _changes(answer, names)
+    roof = answer["roof"]
+    return {
+        "name": saved["name"],
+        "where": place(roof["latitude_deg"], roof["longitude_deg"]),
+        "aerial_agl_m": roof["aerial_agl_m"],
+        "ground_amsl_m": roof["ground_amsl_m"],
+        "day": date.today().isoformat(),
+        "note": saved.get("note") or "",
+        "decision": _decision(answer, verdict),
+        "reason": verdict["reason"] if verdict else "",
+        "measure": _measure(answer, verdict),
+        "chain": _title(answer, chosen),
+        "roof_line": _roof_line(answer, chosen, str(saved.get("landmark") or "")),
+        "columns": [_title(answer, name) for name in names],
+        "roles": ["up now", "idea 1", "idea 2"][: len(names)],
+        "changed": changed,
+        "same": same,
+        "parts": _parts(request, store, chosen),
+        "price": _price(answer, chosen, verdict),
+        "paths": _paths(answer, chosen),
+        "readings": [_reading(one) for one in answer.get("readings", {}).get("items", [])],
+        "commissioning": sheet_rows(answer, chosen, INSTRUMENTS["meter"].mer_limit_db),
+        "assumptions": [
+            f"{one['id']}: {one['value']:g} {one['unit']} ({one['reason']})" for one in answer["assumptions"]
+        ],
+        "settings": _settings(request),
+        "cautions": answer["cautions"],
+        "sources": [
+            ", ".join(str(one[key]) for key in ("title", "document", "licence") if one.get(key))
+            for one in answer["sources"]
+        ],
+    }
+
+
+def _verdict(answer: Document, idea: object) -> Document | None:
+    verdicts: list[Document] = answer["verdicts"]
+    return next((one for one in verdicts if one["candidate"] == idea), verdicts[0] if verdicts else None)
+
+
+def _names(answer: Document, verdict: Document | None, saved: Mapping[str, Any]) -> list[str]:
+    """Chains in columns: up now, idea 1, idea 2."""
+    if verdict is None:
+        return list(answer["chains"])[:1]
+    second = str(saved.get("second") or "")
+    shown = [verdict["baseline"], verdict["candidate"]]
+    return [*shown, second] if second in answer["chains"] and second not in shown else shown
+
+
+def _title(answer: Document, name: str) -> str:
+    return str(answer["chains"][name]["title"]) if name in answer["chains"] else name
+
+
+def _money(value: float, currency: str) -> str:
+    return f"{value:.0f} {currency}"
+
+
+def _decision(answer: Document, verdict: Document | None) -> str:
+    """Say the verdict in the words of the page."""
+    total = len(answer["multiplexes"])
+    if total == 0:
+        return "Nothing is on the air within reach of this roof."
+    if verdict is None:
+        return "There is one chain only: nothing to compare it with."
+    candidate = answer["chains"][verdict["candidate"]]
+    extra, price = verdict["expected_extra"], verdict["price_difference"]
+    bare = verdict["baseline"] == NOTHING
+    today = (
+        "Nothing is up today."
+        if bare
+        else f"Today {count_words(answer['chains'][verdict['baseline']]['expected_count'])} of {total}."
+    )
+    if abs(extra) < LEAST_CHANGE:
+        change = f"{candidate['title']} adds nothing"
+    elif extra < 0:
+        change = f"{candidate['title']} loses {count_words(-extra)}"
+    else:
+        change = f"{candidate['title']} {'brings' if bare else 'adds'} {count_words(extra)}"
+    cost = "; its price is not known" if price is None else f" for {_money(price, candidate['currency'])}"
+    limit = max(0.0, verdict["break_even_price"])
+    word = verdict["answer"] or "no answer without a price"
+    up_to = f", worth up to {_money(limit, candidate['currency'])}" if limit >= 1 else ""
+    return f"{today} {change}{cost}: {word}{up_to}."
+
+
+def _measure(answer: Document, verdict: Document | None) -> Document | None:
+    """Say which reading would settle it, and what each level would mean."""
+    one = verdict and verdict["measure_next"]
+    if not one:
+        return None
+    emission = _emission(answer, one["emission"])
+    tips = []
+    for tip in one["tipping"]:
+        low, high = tip["from_dbuv"], tip["to_dbuv"]
+        span = (
+            f"below {high:.0f}" if low is None else f"above {low:.0f}" if high is None else f"{low:.0f} to {high:.0f}"
+        )
+        tips.append(f"{span} dB(µV): {tip['answer'] or 'no answer'}")
+    return {
+        "what": f"{_channel(emission)} from {emission['transmitter_name']} at {one['bearing_deg']:03.0f}°",
+        "tips": tips,
+    }
+
+
+def _roof_line(answer: Document, name: str, landmark: str) -> list[list[str]]:
+    """Figures for the rigger, each with what it is."""
+    chain = answer["chains"].get(name)
+    if chain is None or not chain["pointings"]:
+        return []
+    declination = answer["roof"]["declination"]
+    rows = []
+    for aerial in chain.get("aerials") or chain["pointings"]:
+        true = f"{aerial['pointing_deg'] % 360:03.0f}°"
+        rows.append([true, "from true north"])
+        if declination:
+            compass = (aerial["pointing_deg"] - declination["declination_deg"]) % 360
+            error = f"by compass on {declination['day']}, ± {declination['error_deg']:.1f}°"
+            rows.append([f"{compass:03.0f}°", error])
+        rows.append([RODS[aerial["polarisation"]], "seen from the ground"])
+    rows.append([f"{answer['roof']['aerial_agl_m']:g} m", "above the ground"])
+    if landmark:
+        rows.append([landmark, "along the line"])
+    return rows
+
+
+def _changes(answer: Document, names: Sequence[str]) -> tuple[list[Document], list[str]]:
+    """Rows of the multiplexes that change, largest first, and the others in words."""
+    changed, same = [], []
+    for multiplex in answer["multiplexes"]:
+        cells = [multiplex["chains"].get(name) for name in names]
+        chances = [cell["chance"] if cell else 0.0 for cell in cells]
+        grades = {cell["grade"] if cell else None for cell in cells}
+        words = [f"{chance_words(cell['chance'])} {cell['grade']}" if cell else "no aerial" for cell in cells]
+        if max(chances) - min(chances) >= LEAST_CHANGE or len(grades) > 1:
+            emission = _emission(answer, next(cell["emission"] for cell in reversed(cells) if cell))
+            origin = f"{_channel(emission)} from {emission['transmitter_name']}"
+            changed.append((chances, {"name": multiplex["name"], "from": origin, "cells": words}))
+        else:
+            same.append(f"{multiplex['name']} ({words[-1]})")
+    changed.sort(key=lambda row: -max(abs(one - row[0][0]) for one in row[0]))
+    return [row for _, row in changed], same
+
+
+def _parts(request: AssessRequest, store: Store, name: str) -> list[list[str]]:
+    """Name and price of every part of a chain."""
+    if name == NOTHING:
+        return []
+    given = {chain.name: chain for chain in request.chains or () if not isinstance(chain, str)}
+    document = chain_to_document(given.get(name) or stored_chain(store, name))
+    currency = document["currency"]
+    rows = [
+        [_part_words(part), "" if part.get("price") is None else _money(part["price"], currency)]
+        for part in document["parts"]
+    ]
+    for key, words in (("labour_price", "Labour"), ("visit_price", "Visit")):
+        if document.get(key) is not None:
+            rows.append([words, _money(document[key], currency)])
+    return rows
+
+
+def _part_words(part: Mapping[str, Any]) -> str:
+    length = f", {part['length_m']:g} m of {part['cable']}" if "length_m" in part else ""
+    return f"{part['name']}{length}"
+
+
+def _price(answer: Document, name: str, verdict: Document | None) -> str:
+    chain = answer["chains"].get(name)
+    if chain is None:
+        return ""
+    if chain["price"] is None:
+        return "the price of a part is not known"
+    words = f"together {_money(chain['price'], chain['currency'])}"
+    difference = verdict["price_difference"] if verdict else None
+    return words if difference is None else f"{words}; to pay {_money(difference, chain['currency'])}"
+
+
+def _paths(answer: Document, name: str) -> list[Document]:
+    """One row for each mast that a multiplex is best received from, by bearing."""
+    seen: dict[str, Document] = {}
+    for multiplex in answer["multiplexes"]:
+        cell = multiplex["chains"].get(name)
+        if cell is None:
+            continue
+        emission = _emission(answer, cell["emission"])
+        field = emission["field"]
+        row = seen.setdefault(
+            emission["transmitter"],
+            {
+                "bearing_deg": emission["bearing_deg"],
+                "title": f"{emission['bearing_deg']:03.0f}° {emission['transmitter_name']}, "
+                f"{emission['distance_km']:.0f} km",
+                "sentence": emission["path"]["sentence"] if emission["path"] else str(emission["reason"]),
+                "channels": [],
+            },
+        )
+        by = [
+            f"{words} {field[key]:.0f}"
+            for key, words in (("p1812_dbuv_m", "P.1812"), ("p1546_dbuv_m", "P.1546"))
+            if field[key] is not None
+        ]
+        row["channels"].append(f"{_channel(emission)}: {', '.join(by)} dB(µV/m)")
+    return sorted(seen.values(), key=lambda row: float(row["bearing_deg"]))[:MOST_PATHS]
+
+
+def _reading(one: Mapping[str, Any]) -> str:
+    unit = KIND_WORDS.get(one["kind"], "")
+    value = one.get("state") or (f"{one['value_db']:.1f} {unit}" if "value_db" in one else one["kind"])
+    day = f"{one['day']}: " if one.get("day") else ""
+    used = "" if one["used"] else f" (not used: {one['reason']})"
+    foreseen = "" if one.get("predicted_db") is None else f", foreseen {one['predicted_db']:.1f}"
+    of = one.get("read_of") or one.get("multiplex") or one.get("emission") or ""
+    return f"{day}{of} {value}{foreseen}{used}"
+
+
+def _settings(request: AssessRequest) -> list[str]:
+    lost = {50: "half of the year", 90: "877 hours", 99: "88 hours"}[request.availability_percent]
+    return [
+        f"good enough is {request.availability_percent} % of the time: {lost} lost in an average year",
+        f"transmitters within {request.reach_km:g} km",
+        *(f"changed for this roof: {name} = {value:g}" for name, value in request.assumptions.items()),
+    ]
+
+
+def _emission(answer: Document, ident: str) -> Document:
+    return next(one for one in answer["emissions"] if one["id"] == ident)
+
+
+def _channel(emission: Mapping[str, Any]) -> str:
+    return f"channel {emission['channel']}" if emission["channel"] else f"{emission['frequency_mhz']:g} MHz"

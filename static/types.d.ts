@@ -1,0 +1,3 @@
+/** Libraries that come as plain scripts. */
+declare const L: any;
+declare const maplibregl: any;
