@@ -22,6 +22,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import ndtr
 
 from app.chance import DRAWS, normals
 
@@ -45,6 +46,7 @@ class Readable:
     bearing_deg: float
     level_dbuv: FloatArray  # (DRAWS,) what there is to read
     sd_db: float  # of the reading about it: meter, position, weather
+    least_dbuv: float = -np.inf  # a meter shows no lower level; what it learns there is only that
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,6 +128,10 @@ def expected_after(one: Readable, levels_dbuv: FloatArray, worth: FloatArray) ->
     half_square = ((levels_dbuv[:, None] - (used + first) * width) / one.sd_db) ** 2 / 2
     weight = np.exp(half_square.min(axis=1, keepdims=True) - half_square)
     after: FloatArray = weight @ total[used] / (weight @ count[used])
+    # Below what a meter shows, all that is learnt is that nothing is shown.
+    hidden = ndtr((one.least_dbuv - (used + first) * width) / one.sd_db)
+    if float(hidden @ count[used]) > 0:
+        after[levels_dbuv < one.least_dbuv] = float(hidden @ total[used] / (hidden @ count[used]))
     return after
 
 
@@ -169,6 +175,8 @@ def _why(answer: bool, read: FloatArray, low: float, high: float, has_before: Fl
     before, after = float(has_before[inside].mean()), float(has_after[inside].mean())
     if answer:
         return "the candidate brings them"
+    if np.isinf(low):
+        return "out of reach"  # whatever else of the wanted is there already
     return "works already" if before > after / 2 and before >= 0.5 else "out of reach"
 
 

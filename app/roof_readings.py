@@ -186,7 +186,8 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
         weather = (fade_db[here.emission.id] + enhancement_db[here.emission.id]) / 2 / QUANTILE_99
         parts = (meter.calibration_sd_db, meter.repeat_sd_db, value("position_sd_db"), weather)
         if float((levels[:, e] >= LEAST_READABLE_DBUV).mean()) >= 0.05:
-            readables.append(Readable(here.emission.id, here.bearing_deg, levels[:, e], float(np.linalg.norm(parts))))
+            spread_db = float(np.linalg.norm(parts))
+            readables.append(Readable(here.emission.id, here.bearing_deg, levels[:, e], spread_db, LEAST_READABLE_DBUV))
     return readables
 
 

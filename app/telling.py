@@ -75,11 +75,7 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
     total = len(answer["multiplexes"])
     baseline, candidate = verdict["baseline"], verdict["candidate"]
     currency = answer["chains"][candidate]["currency"]
-    extra, price, limit = (
-        verdict["expected_extra"],
-        verdict["price_difference"],
-        max(0.0, verdict["break_even_price"]),
-    )
+    extra, price, limit = verdict["expected_extra"], verdict["price_difference"], verdict["break_even_price"]
     today = (
         "Nothing is up today."
         if baseline not in answer["chains"]
@@ -90,7 +86,8 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
         adds = "adds nothing"
     cost = "its price is not known" if price is None else f"for {price:.0f} {currency}"
     word = verdict["answer"] or "no answer without a price"
-    return f"{today} {candidate} {adds} {cost}: {word}, break-even {limit:.0f} {currency}."
+    even = f", break-even {limit:.0f} {currency}" if limit >= 0.5 else " at any price"
+    return f"{today} {candidate} {adds} {cost}: {word}{even}."
 
 
 def measure_line(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:

@@ -127,13 +127,15 @@ def compare(
     has_before = baseline.received[:, counted].sum(axis=1)
     has_after = candidate.received[:, counted].sum(axis=1)
     extra = has_after - has_before
-    expected_extra = float(extra.mean())
+    # The expectation is that of the chances; the joint samples are moved by what they miss of it.
+    expected_extra = float((candidate.chance[counted] - baseline.chance[counted]).sum())
+    missed = expected_extra - float(extra.mean())
     price = price_difference(candidate.chain, baseline.chain, baseline_is_up)
     worth = None if price is None else worth_per_multiplex * expected_extra - price
     measure = (
         None
         if price is None
-        else most_valuable(readables, worth_per_multiplex * extra - price, has_before * 1.0, has_after * 1.0)
+        else most_valuable(readables, worth_per_multiplex * (extra + missed) - price, has_before * 1.0, has_after * 1.0)
     )
     answer: Answer | None = None
     if worth is not None:

@@ -119,7 +119,7 @@ def test_the_roof_line_has_compass_bearing_date_error_and_landmark(page, address
     assert page.locator(".roofline").inner_text().count("°") >= 3
     expect(page.locator(".roofline")).to_contain_text("by compass")
     expect(page.locator(".roofline .compass")).to_have_text(
-        re.compile(r"11\.5° west of true north here on .*give or take 0\.\d° \(WMM")
+        re.compile(r"11\.5° west of true north here on .*give or take 0\.\d° \(19 in 20; WMM")
     )
     page.get_by_label("Landmark along the line").fill("left of the chapel")
     assert "left+of+the+chapel" in page.evaluate("() => location.hash")
