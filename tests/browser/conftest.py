@@ -10,6 +10,8 @@ import pytest
 import uvicorn
 from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Playwright, Request, sync_playwright
 
+from app.demo.scenario import ensure_demo
+from app.transmitters.store import Store
 from app.web.main import create_app
 
 FLAGS = [
@@ -26,8 +28,10 @@ NO_WEBGL = ["--disable-webgl", "--disable-webgl2", "--disable-3d-apis"]
 
 
 @pytest.fixture(scope="session")
-def address(demo_world) -> Iterator[str]:
-    config = uvicorn.Config(create_app(demo_world.store, demo_world.ground), port=0, log_level="error")
+def address(demo_world, tmp_path_factory) -> Iterator[str]:
+    store = Store.open(tmp_path_factory.mktemp("page"))  # its own: what the pages keep reaches no other test
+    ensure_demo(store)
+    config = uvicorn.Config(create_app(store, demo_world.ground), port=0, log_level="error")
     server = uvicorn.Server(config)
     thread = threading.Thread(target=server.run, daemon=True)
     thread.start()
