@@ -47,8 +47,9 @@ def chain_cautions(notes: Mapping[str, Mapping[str, Any]]) -> list[str]:
         outside = [row for row in note["levels"] if row["too_strong"]]
         if outside:
             channels = sorted({channel for row in outside for channel in row["too_strong"]})
+            standard = str(outside[0]["standard"]).upper().replace("EN-", "EN ")
             cautions.append(
-                f"{name}: channel {', '.join(channels)} stands above the level window of {outside[0]['standard']} "
+                f"{name}: channel {', '.join(channels)} stands above the level window of {standard} "
                 f"at {', '.join(row['outlet'] for row in outside)}: an attenuator or less gain brings it down."
             )
     return cautions
