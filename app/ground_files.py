@@ -4,15 +4,18 @@ from __future__ import annotations
 
 import shutil
 import tempfile
+from collections.abc import Callable
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from app.errors import StoreError
 from app.world import cover_dir, terrain_dir
-from terrain.cover import declare_cover, open_cover_raster
+from terrain.cover import CoverRaster, declare_cover, open_cover_raster
 from terrain.errors import RasterError
 from terrain.mosaic import Ground
-from terrain.raster import declare, open_raster
+from terrain.raster import Raster, declare, open_raster
+
+T = TypeVar("T")
 
 
 def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit: str | None = None) -> dict[str, Any]:
@@ -22,32 +25,23 @@ def add_raster(path: Path, crs: str | None = None, kind: str | None = None, unit
     """
     if not path.is_file():
         raise RasterError(f"{path} is no file: name an elevation raster such as a GeoTIFF or an .hgt tile")
-    target = terrain_dir() / path.name
-    replaces = target.exists()
-    try:
-        terrain_dir().mkdir(parents=True, exist_ok=True)
-        with tempfile.TemporaryDirectory(dir=terrain_dir(), prefix=".adding-") as folder:
-            copy = Path(folder) / path.name
-            for one in (path, *_companions(path)):
-                shutil.copyfile(one, Path(folder) / one.name)
-            try:
-                if crs or kind or unit:
-                    declare(copy, crs=crs, kind=kind, unit=unit)
-                info = open_raster(copy)
-                _check_heights(copy)
-            except RasterError as error:
-                raise type(error)(str(error).replace(str(copy), str(path))) from error
-            for one in sorted(Path(folder).iterdir()):
-                one.replace(target.parent / one.name)
-    except OSError as error:
-        raise StoreError(f"{path.name} could not be copied into {terrain_dir()} ({error.strerror or error})") from error
+    replaces = (terrain_dir() / path.name).exists()
+
+    def checked(copy: Path) -> Raster:
+        if crs or kind or unit:
+            declare(copy, crs=crs, kind=kind, unit=unit)
+        raster = open_raster(copy)
+        _check_heights(copy)
+        return raster
+
+    info = _kept(path, terrain_dir(), checked)
     return {
         "file": path.name,
         "kind": info.kind,
         "spacing_m": round(info.grid.spacing_m, 1),
         "heights_in": info.unit,
         "note": "replaces the one of that name" if replaces else "",
-        "stored": str(target),
+        "stored": str(terrain_dir() / path.name),
     }
 
 
@@ -55,28 +49,18 @@ def add_cover(path: Path, classes: str | None = None, crs: str | None = None) ->
     """Copy one map of land cover into the data folder, checked first, as `add_raster` does."""
     if not path.is_file():
         raise RasterError(f"{path} is no file: name a land-cover map as GeoTIFF")
-    target = cover_dir() / path.name
-    try:
-        cover_dir().mkdir(parents=True, exist_ok=True)
-        with tempfile.TemporaryDirectory(dir=cover_dir(), prefix=".adding-") as folder:
-            copy = Path(folder) / path.name
-            for one in (path, *_companions(path)):
-                shutil.copyfile(one, Path(folder) / one.name)
-            try:
-                if classes or crs:
-                    declare_cover(copy, classes, crs)
-                info = open_cover_raster(copy)
-            except RasterError as error:
-                raise type(error)(str(error).replace(str(copy), str(path))) from error
-            for one in sorted(Path(folder).iterdir()):
-                one.replace(target.parent / one.name)
-    except OSError as error:
-        raise StoreError(f"{path.name} could not be copied into {cover_dir()} ({error.strerror or error})") from error
+
+    def checked(copy: Path) -> CoverRaster:
+        if classes or crs:
+            declare_cover(copy, classes, crs)
+        return open_cover_raster(copy)
+
+    info = _kept(path, cover_dir(), checked)
     return {
         "file": path.name,
         "classes": info.classes,
         "spacing_m": round(info.grid.spacing_m, 1),
-        "stored": str(target),
+        "stored": str(cover_dir() / path.name),
     }
 
 
@@ -99,6 +83,28 @@ def _check_heights(path: Path) -> None:
             raise RasterError(surveyed.refused[0].message)
         if surveyed.rasters[0].void_share == 1:
             raise RasterError(f"{path.name} holds no height at all: every sample is missing or impossible")
+
+
+def _kept(path: Path, folder: Path, checked: Callable[[Path], T]) -> T:
+    """Copy a file with what lies beside it into a folder, once its copy has passed the check; else nothing.
+
+    The check may write beside the copy, and what it returns is returned. Its refusals name the file as given.
+    """
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryDirectory(dir=folder, prefix=".adding-") as making:
+            copy = Path(making) / path.name
+            for one in (path, *_companions(path)):
+                shutil.copyfile(one, Path(making) / one.name)
+            try:
+                found = checked(copy)
+            except RasterError as error:
+                raise type(error)(str(error).replace(str(copy), str(path))) from error
+            for one in sorted(Path(making).iterdir()):
+                one.replace(folder / one.name)
+    except OSError as error:
+        raise StoreError(f"{path.name} could not be copied into {folder} ({error.strerror or error})") from error
+    return found
 
 
 def _companions(path: Path) -> list[Path]:

@@ -74,7 +74,7 @@ def path_document(
         first = int(gaps[0])
         gap = missing_ground(ground, float(profile.latitude_deg[first]), float(profile.longitude_deg[first]))
         raise CoverageError(
-            f"{profile.missing_share:.0%} of the path has no elevation, the first gap "
+            f"{max(profile.missing_share, 0.01):.0%} of the path has no elevation, the first gap "
             f"{profile.distance_km[first]:.1f} km from its start: {gap}"
         )
     path = path_over(profile, antenna_agl_m, roof, Assumptions(), refractivity_maps)
