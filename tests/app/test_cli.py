@@ -3,6 +3,7 @@
 import json
 import socket
 
+import numpy as np
 import pytest
 from typer.testing import CliRunner
 
@@ -184,3 +185,13 @@ def test_roof_at_a_mast_still_hears_the_others(run):
     assert all("too near for any prediction" in one["reason"] for one in near)
     assert len(answer["emissions"]) > len(near)
     assert "too near for any prediction" in run("assess", "--at", at).stdout
+
+
+def test_a_cover_map_is_added_or_refused_by_the_name_it_was_given(own, write_raster):
+    codes = write_raster(np.array([[10, 10, 50], [10, 80, 50], [10, 10, 50]], dtype="uint8"), name="cover.tif")
+    refused = CliRunner().invoke(main, ["cover", "add", str(codes)])
+    assert refused.exit_code == 2
+    assert "--classes" in refused.stderr
+    assert CliRunner().invoke(main, ["cover", "add", str(codes), "--classes", "worldcover"]).exit_code == 0
+    rows = json.loads(CliRunner().invoke(main, ["cover", "list", "--json"]).stdout)
+    assert rows[0]["file"] == "cover.tif"
