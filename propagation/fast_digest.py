@@ -25,7 +25,7 @@ from propagation.refractivity import refractivity
 from propagation.scan import BACK, ROOT, SCAN
 from propagation.scan_lines import scan_lines
 from propagation.smooth_edge import smooth_rays
-from terrain.kernels import sheet_arrays
+from terrain.kernels import scratch_for, sheet_arrays
 from terrain.lines import lines_over
 from terrain.sheet import Sheet
 
@@ -99,6 +99,7 @@ def digests(
         lapse[part], n0[part] = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
         scan_lines(
             arrays,
+            scratch_for(arrays),
             lines.first_knot,
             lines.row,
             lines.column,

@@ -9,6 +9,7 @@ used by anyone within the last hour.
 from __future__ import annotations
 
 import contextlib
+import math
 import os
 import shutil
 import tempfile
@@ -17,8 +18,10 @@ import time
 import uuid
 import weakref
 from collections import OrderedDict
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, BinaryIO
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,7 +29,7 @@ from numpy.typing import NDArray
 from terrain.errors import CacheError
 
 # Layout of what lies in the folder; a new number where old files would be read wrongly.
-_LAYOUT = "ground-1"
+_LAYOUT = "ground-2"
 # Each mapped array holds a file handle; systems commonly allow 1024.
 _MAPPED_AT_ONCE = 256
 # What was read of a mapped array stays in memory as long as it is mapped.
@@ -34,6 +37,31 @@ _MAPPED_BYTES = 768 << 20
 LIMIT_BYTES = 20 * 10**9
 _IN_USE_S = 3600.0
 _TRIM_TO = 0.8  # of the limit, so that not every new array begins anew
+
+Parts = Callable[[], Iterable[NDArray[Any]]]
+
+
+@dataclass(frozen=True, slots=True)
+class _Array:
+    """An array to be written, in parts along its first axis."""
+
+    shape: tuple[int, ...]
+    dtype: np.dtype[Any]
+    parts: Parts
+
+    @property
+    def nbytes(self) -> int:
+        return math.prod(self.shape) * self.dtype.itemsize
+
+    def write(self, file: BinaryIO) -> None:
+        """Write it in the form of `numpy.save`."""
+        descr = np.lib.format.dtype_to_descr(self.dtype)
+        np.lib.format.write_array_header_1_0(file, {"descr": descr, "fortran_order": False, "shape": self.shape})
+        for part in self.parts():
+            file.write(np.ascontiguousarray(part).data)
+
+    def whole(self) -> NDArray[Any]:
+        return np.concatenate([part.ravel() for part in self.parts()]).reshape(self.shape)
 
 
 class ArrayCache:
@@ -70,6 +98,11 @@ class ArrayCache:
 
         Raises CacheError if neither the folder nor a temporary one can be written.
         """
+        return self.keep_parts(name, array.shape, array.dtype, lambda: (array,))
+
+    def keep_parts(self, name: str, shape: tuple[int, ...], dtype: np.dtype[Any], parts: Parts) -> NDArray[Any]:
+        """As `keep`, of an array that comes in parts one after the other and need not be whole in memory."""
+        array = _Array(shape, dtype, parts)
         try:
             self._write(self._folders[-1], name, array)
         except OSError as error:
@@ -78,7 +111,7 @@ class ArrayCache:
             self._write_elsewhere(name, array)
         kept = self.load(name)
         self._trim(array.nbytes)
-        return array if kept is None else kept
+        return array.whole() if kept is None else kept
 
     def _map(self, name: str, array: NDArray[Any]) -> None:
         with self._lock:
@@ -105,7 +138,7 @@ class ArrayCache:
                         shutil.rmtree(old, ignore_errors=True)
             self._kept_bytes = _trimmed(folder, self._limit_bytes, in_use)
 
-    def _write_elsewhere(self, name: str, array: NDArray[Any]) -> None:
+    def _write_elsewhere(self, name: str, array: _Array) -> None:
         try:
             with self._lock:
                 if self._temporary is None:
@@ -123,13 +156,13 @@ class ArrayCache:
         )
 
     @staticmethod
-    def _write(folder: Path, name: str, array: NDArray[Any]) -> None:
+    def _write(folder: Path, name: str, array: _Array) -> None:
         target = folder / f"{name}.npy"
         target.parent.mkdir(parents=True, exist_ok=True)
         unfinished = target.with_name(f"{target.name}.{os.getpid()}-{uuid.uuid4().hex[:8]}.part")
         try:
             with unfinished.open("wb") as file:
-                np.save(file, array, allow_pickle=False)
+                array.write(file)
             unfinished.replace(target)
         finally:
             unfinished.unlink(missing_ok=True)

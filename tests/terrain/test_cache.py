@@ -31,7 +31,7 @@ def test_what_is_in_use_stays_whatever_the_limit(tmp_path):
         os.utime(path, (0, 0))
     mine.keep("a/5", np.zeros(2000))
     assert [float(array[-1]) for array in arrays] == [0, 1, 2, 3, 4]
-    assert all((tmp_path / "ground-1" / f"a/{number}.npy").is_file() for number in range(6))
+    assert all((tmp_path / "ground-2" / f"a/{number}.npy").is_file() for number in range(6))
 
 
 def test_what_another_process_used_just_now_stays(tmp_path):
@@ -39,7 +39,7 @@ def test_what_another_process_used_just_now_stays(tmp_path):
     other.keep("a/0", np.zeros(2000))
     mine = ArrayCache(tmp_path, limit_bytes=17_000)
     mine.keep("b/0", np.zeros(2000))
-    assert (tmp_path / "ground-1" / "a/0.npy").is_file()
+    assert (tmp_path / "ground-2" / "a/0.npy").is_file()
 
 
 def test_a_cache_of_an_older_version_is_not_read_and_goes(tmp_path):
