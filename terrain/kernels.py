@@ -18,7 +18,9 @@ from terrain.patches import BLOCK, CELLS_ACROSS, CELLS_DOWN, ROOM, WIDTH
 from terrain.sheet import Sheet
 
 KNOTS = 3  # new ones per segment; the fourth is the next segment's first
-STRETCH = 256  # points: positions within one are 32-bit floats from its start, to 0.0001 of a cell
+STRETCH = 512  # points: positions within one are 32-bit floats from its start, to 0.0001 of a cell
+
+_DOWN, _ACROSS, _WIDTH, _BLOCK, _ROOM = (np.uint32(n) for n in (CELLS_DOWN, CELLS_ACROSS, WIDTH, BLOCK, ROOM))
 
 Cubic = tuple[float, float, float, float]
 Whole = int | np.int32
@@ -188,18 +190,21 @@ def _where(rows: Cubic, columns: Cubic, blocks_across: int, points: int, scratch
         whole_r, whole_c = np.floor(r), np.floor(c)
         down[k] = r - whole_r
         right[k] = c - whole_c
-        place[k] = _place(above + np.int32(whole_r), before + np.int32(whole_c), across)
+        place[k] = _place(np.int32(above + np.int32(whole_r)), np.int32(before + np.int32(whole_c)), across)
 
 
 @compiled
 def _place(row: Whole, column: Whole, blocks_across: Whole) -> np.uint32:
-    """Place of a cell's upper left corner: patches.py."""
-    patch_row = row // np.int32(CELLS_DOWN)
-    patch_column = np.int32((np.float32(column) + np.float32(0.5)) * np.float32(1 / CELLS_ACROSS))
-    block = (patch_row // np.int32(BLOCK)) * blocks_across + patch_column // np.int32(BLOCK)
-    patch = (patch_row % np.int32(BLOCK)) * np.int32(BLOCK) + patch_column % np.int32(BLOCK)
-    sample = (row % np.int32(CELLS_DOWN)) * np.int32(WIDTH) + column - patch_column * np.int32(CELLS_ACROSS)
-    return np.uint32((block * np.int32(BLOCK * BLOCK) + patch) * np.int32(ROOM) + sample)
+    """Place of a cell's upper left corner: patches.py.
+
+    Not signed, as whole division is then a shift; and cut to 32 bits, of which a vector holds twice as many.
+    """
+    r, c, across = np.uint32(row), np.uint32(column), np.uint32(blocks_across)
+    fifths = (np.float32(np.int32(column)) + np.float32(0.5)) * np.float32(1 / CELLS_ACROSS)
+    patch_row, patch_column = np.uint32(r // _DOWN), np.uint32(np.int32(fifths))
+    block = np.uint32((patch_row // _BLOCK) * across + patch_column // _BLOCK)
+    patch = np.uint32((block * _BLOCK + patch_row % _BLOCK) * _BLOCK + patch_column % _BLOCK)
+    return np.uint32(patch * _ROOM + (r % _DOWN) * _WIDTH + c - patch_column * _ACROSS)
 
 
 @compiled
