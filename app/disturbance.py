@@ -9,7 +9,7 @@ behind the aerial it does to both.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
@@ -62,14 +62,11 @@ class Company:
     cautions: tuple[str, ...]
     fade_db: FloatArray  # (e,) of the wanted emissions to the availability
     enhancement_db: FloatArray  # (e,)
+    network_of: Mapping[int, Network]  # that a wanted emission is a member of; the others are left out
 
     def rise_db(self, state: State) -> FloatArray:
         """From an emission's level as a wanted one to its level as a disturbing one, in one state. (e,)"""
         return self.fade_db if state == "a" else self.enhancement_db
-
-    def network_of(self, e: int) -> Network | None:
-        """Return the network that a wanted emission is a member of."""
-        return next((one for one in self.networks if e in one.members), None)
 
 
 def company_of(wanted: Sequence[EmissionField], interferers: Sequence[Interferer]) -> Company:
@@ -106,6 +103,7 @@ def company_of(wanted: Sequence[EmissionField], interferers: Sequence[Interferer
         tuple(cautions),
         np.array([one.fade_db for one in wanted]),
         np.array([one.enhancement_db for one in wanted]),
+        {e: one for one in networks for e in one.members.tolist()},
     )
 
 
@@ -192,7 +190,7 @@ class Effect:
     useful: FloatArray  # (…, e) useful share of each member's own power; 1 outside networks
     stray: FloatArray  # (…, e) power of each member that disturbs its own network; 0 outside networks
     cn_db: FloatArray  # (…, e) C/N at the deciding outlet with the network's gain, before interference
-    told: dict[int, tuple[NDArray[np.intp], FloatArray]] = field(default_factory=dict)  # contributions, once reckoned
+    told: dict[int, tuple[int | None, float | None]] = field(default_factory=dict)  # strongest, once reckoned
 
     @property
     def i_over_n(self) -> FloatArray:
@@ -201,28 +199,33 @@ class Effect:
 
     def contributions(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
         """Interferers of one wanted emission and their power over its carrier (linear), strongest first. (k,)"""
-        if e not in self.told:
-            self.told[e] = self._contributions(company, e)
-        return self.told[e]
-
-    def _contributions(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
-        weights = company.weights[self.state]
-        row = slice(weights.indptr[e], weights.indptr[e + 1])
-        who = weights.indices[row]
-        power = weights.data[row] * self.powers[who]
-        mine = company.network_of(e)
-        if mine is not None:
-            who, power = np.append(who, mine.members), np.append(power, self.stray[mine.members])
+        who, power = self._acting_on(company, e)
         order = np.argsort(-power)
         order = order[power[order] > 0]
         return who[order], power[order] / self.carrier[e]
 
+    def _acting_on(self, company: Company, e: int) -> tuple[NDArray[np.intp], FloatArray]:
+        """Interferers of one wanted emission and what they bring into its channel. (k,)"""
+        weights = company.weights[self.state]
+        row = slice(weights.indptr[e], weights.indptr[e + 1])
+        who = weights.indices[row]
+        power = weights.data[row] * self.powers[who]
+        mine = company.network_of.get(e)
+        if mine is not None:
+            who, power = np.append(who, mine.members), np.append(power, self.stray[mine.members])
+        return who, power
+
     def strongest(self, company: Company, e: int) -> tuple[int | None, float | None]:
         """Row of the strongest interferer and how far below it the next one stands [dB]; None: there is none."""
-        who, over_c = self.contributions(company, e)
-        if not who.size:
-            return None, None
-        return int(who[0]), float(10 * np.log10(over_c[0] / over_c[1])) if who.size > 1 else None
+        if e not in self.told:
+            who, power = self._acting_on(company, e)
+            first = int(np.argmax(power)) if power.size and power.max() > 0 else None
+            next_power = 0.0 if first is None else float(np.delete(power, first).max(initial=0.0))
+            self.told[e] = (
+                None if first is None else int(who[first]),
+                None if first is None or next_power == 0 else float(10 * np.log10(power[first] / next_power)),
+            )
+        return self.told[e]
 
 
 def effect_of(ear: Ear, reception: Reception, left: FloatArray, state: State) -> Effect:

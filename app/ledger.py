@@ -158,7 +158,7 @@ def _company_lines(
 ) -> Sequence[tuple[str, float, str]]:
     """What other emissions add to and take from C/N; the values add up to `change_db`, less the echo's rise."""
     lines: list[tuple[str, float, str]] = []
-    network = company.network_of(e)
+    network = company.network_of.get(e)
     if network is not None:
         lines.append(
             (

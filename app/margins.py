@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
-from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received
+from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received, rows_of
 from app.disturbance import Company, Effect, State, disturbed, ear_of, effect_of
 from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread
 from app.link_budget import Reception, is_overload, receive
@@ -46,7 +46,10 @@ class Turned:
     company: Company
     effects: dict[State, Effect]
     cells: Cells
-    chance: FloatArray  # (e,)
+    sigma_db: FloatArray  # (e,) of the cells
+    read_db: FloatArray  # (e,) by how much readings moved the margin
+    enough: FloatArray  # (e,) chance that the margin is at least 0
+    chance: FloatArray  # (e,) likewise, less that of too much level
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
     sweep: Swept  # each emission for each whole degree, likewise
 
@@ -59,29 +62,29 @@ class Turned:
         """Time state that decides for one emission."""
         return "b" if self.raised.margin_db[e] < self.faded.margin_db[e] else "a"
 
-    def limit(self, e: int) -> str:
-        """What holds one emission back: too much level, interference above noise, time where only a fade does it."""
-        return self.held_back(e).limit
+    def held_back(self, outlet: int | None = None) -> list[HeldBack]:
+        """What holds each emission back, in the state that decides, at one outlet; None: at those that count. (e,)
 
-    def held_back(self, e: int, outlet: int | None = None) -> HeldBack:
-        """What holds one emission back, in the state that decides, at one outlet; None: at those that count."""
-        state = self.state(e)
-        reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
-        place = self.median if outlet is None else self.median.outlets[outlet]
-        if is_overload(place)[e]:
-            return HeldBack("overload", state, None, None)
-        if float(effect.i_over_c[e] * 10 ** (effect.cn_db[e] / 10)) > 1:
-            return HeldBack("interference", state, *effect.strongest(self.company, e))
-        by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
-        return HeldBack("time" if by_time else "noise", state, None, None)
+        Too much level, interference above noise, time where only a fade does it, or else noise.
+        """
+        overloaded = is_overload(self.median if outlet is None else self.median.outlets[outlet])
+        disturbed = {state: effect.i_over_n > 1 for state, effect in self.effects.items()}
+        by_time = (self.median.margin_db >= 0) & (self.margin_db < 0)
+        found = []
+        for e in range(len(by_time)):
+            state = self.state(e)
+            if overloaded[e]:
+                found.append(HeldBack("overload", state, None, None))
+            elif disturbed[state][e]:
+                found.append(HeldBack("interference", state, *self.effects[state].strongest(self.company, e)))
+            else:
+                found.append(HeldBack("time" if by_time[e] else "noise", state, None, None))
+        return found
 
     def held_back_by(self, air: Air, multiplexes: Sequence[str]) -> tuple[str, ...]:
         """What holds back the best emission of each multiplex. (m,)"""
-        best = [
-            max((e for e, owner in enumerate(air.multiplex_of) if owner == name), key=lambda e: self.chance[e])
-            for name in multiplexes
-        ]
-        return tuple(self.limit(e) for e in best)
+        rows, held = rows_of(air.multiplex_of), self.held_back()
+        return tuple(held[max(rows[name], key=lambda e: self.chance[e])].limit for name in multiplexes)
 
 
 @dataclass(frozen=True, slots=True)
@@ -147,7 +150,7 @@ def turn(
         parts_of(chain, polarisation, air, faded, assumptions, state_b, moved),
         known,
     )
-    chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
+    sigma_db, enough = cells.sigma_db, cells.chance
     return Turned(
         chain,
         pointing_deg,
@@ -158,7 +161,10 @@ def turn(
         air.company,
         effects,
         cells,
-        chance,
+        sigma_db,
+        cells.mean_db - cells.median_db,
+        enough,
+        not_too_much(enough, median.headroom_db, median.of_loudest(sigma_db)),
         counts,
         swept,
     )
@@ -173,25 +179,35 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
     margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
     draws = received(margins, air.multiplex_of, multiplexes)
     chance = draws.mean(axis=0)
+    rows = rows_of(air.multiplex_of)
     for m, name in enumerate(multiplexes):
-        alone = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
-        if len(alone) == 1:
-            chance[m] = turned.chance[alone[0]]
+        if len(rows[name]) == 1:
+            chance[m] = turned.chance[rows[name][0]]
     return draws, chance
 
 
 def expected_count(
     chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str], acting: NDArray[np.bool_] | None = None
 ) -> FloatArray:
-    """Expected multiplexes from chances of emissions (..., e), alternatives taken as independent. (...)
+    """Expected multiplexes from chances of emissions (..., e). (...)"""
+    each = chance_of_each(chance, multiplex_of, counted, acting)
+    return sum(each.values(), np.zeros(chance.shape[:-1]))
+
+
+def chance_of_each(
+    chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str], acting: NDArray[np.bool_] | None = None
+) -> dict[str, FloatArray]:
+    """Chance of each multiplex (...) from chances of emissions (..., e), alternatives taken as independent.
 
     `acting` leaves out members of a network that act through another one.
     """
-    total = np.zeros(chance.shape[:-1])
+    rows = rows_of(multiplex_of)
+    missed = 1 - chance
+    found: dict[str, FloatArray] = {}
     for name in counted:
-        owned = [e for e, owner in enumerate(multiplex_of) if owner == name and (acting is None or acting[e])]
-        total += 1 - np.prod(1 - chance[..., owned], axis=-1)
-    return total
+        owned = [e for e in rows.get(name, []) if acting is None or acting[e]]
+        found[name] = 1 - np.prod(missed[..., owned], axis=-1)
+    return found
 
 
 def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
