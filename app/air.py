@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from app.disturbance import Company, company_of
+from app.company import Company, company_of
 from app.fields import EmissionField
 from app.interferers import Interferer
 from app.link_budget import Signals

@@ -147,11 +147,9 @@ def spectral_share(apart_mhz: FloatArray, wanted_mhz: FloatArray, disturber_mhz:
     return np.asarray(np.where(overlap > SAME_MHZ, overlap / disturber_mhz, 0.0))
 
 
-def nuisance_power(power: FloatArray, weights: csr_array) -> FloatArray:
+def nuisance_power(power: FloatArray, weights: csr_array | FloatArray) -> FloatArray:
     """Sum of what disturbs each wanted emission, (…, i) and (e, i) to (…, e), linear power."""
-    lead = power.shape[:-1]
-    total = weights @ power.reshape(-1, power.shape[-1]).T
-    return np.asarray(total.T).reshape(*lead, weights.shape[0])
+    return np.asarray(power @ weights.T)
 
 
 def degradation_db(cn_db: FloatArray, i_over_c: FloatArray) -> FloatArray:

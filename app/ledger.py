@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from app.air import Air
 from app.assumptions import Assumptions
-from app.disturbance import STATES, Company, Effect, State
+from app.company import STATES, Company, State
+from app.disturbance import Effect
 from app.fields import EmissionField
 from app.margins import Turned
 from app.outlet_ledger import Book, Step, book_of
@@ -170,7 +171,7 @@ def _company_lines(
             )
         )
     lost_db = change_db - float(effect.gain_db[e])
-    who, over_c = effect.contributions(company, e)
+    who, over_c = effect.contributions(e)
     if who.size:
         shares = over_c / over_c.sum()
         lines += [

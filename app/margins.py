@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,8 +12,9 @@ from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
 from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received, rows_of
-from app.disturbance import Company, Effect, State, disturbed, ear_of, effect_of
-from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread
+from app.company import Company, State
+from app.disturbance import Ear, Effect, disturbed, ear_of, effect_of
+from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread, squares_of
 from app.link_budget import Reception, is_overload, receive
 from app.margin_errors import air_disturbers, parts_of, path_error, wanted_errors, wanted_rejection_sd_db
 from app.roof import Roof
@@ -76,7 +77,7 @@ class Turned:
             if overloaded[e]:
                 found.append(HeldBack("overload", state, None, None))
             elif disturbed[state][e]:
-                found.append(HeldBack("interference", state, *self.effects[state].strongest(self.company, e)))
+                found.append(HeldBack("interference", state, *self.effects[state].strongest(e)))
             else:
                 found.append(HeldBack("time" if by_time[e] else "noise", state, None, None))
         return found
@@ -110,17 +111,17 @@ def turn(
     `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
     Ties go to the direction nearest to the bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray, Swept] | None = None
+    best: tuple[float, float, Ear, AerialPolarisation, FloatArray, Swept] | None = None
     for polarisation in _polarisations(chain):
-        swept = _sweep(chain, polarisation, air, roof, assumptions, known)
+        ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+        swept = _sweep(ear, polarisation, air, roof, assumptions, known)
         counts = _expected_by_degree(swept.chance, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts, swept)
+            best = (count, pointing_deg, ear, polarisation, counts, swept)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts, swept = best
-    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+    _, pointing_deg, ear, polarisation, counts, swept = best
     alone, alone_faded = (
         receive(
             chain,
@@ -216,7 +217,7 @@ def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
 
 
 def _sweep(
-    chain: Chain,
+    ear: Ear,
     polarisation: AerialPolarisation,
     air: Air,
     roof: Roof,
@@ -225,15 +226,14 @@ def _sweep(
 ) -> Swept:
     """Chance of each emission, and what interference takes, for each whole degree."""
     turned = BEARINGS[:, None]
-    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
-    disturbers = air_disturbers(air, assumptions)
+    squares = squares_of(ear, air_disturbers(air, assumptions))
     rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
     shape = (len(BEARINGS), len(air.fields))
     margin, moved, lost = np.full(shape, np.inf), np.zeros(shape), np.zeros(shape)
     fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
     for state, field in fields:
         alone = receive(
-            chain,
+            ear.chain,
             air.signals,
             field,
             turned,
@@ -244,15 +244,15 @@ def _sweep(
             beside=air.beside,
         )
         effect = effect_of(ear, alone, left, state)
-        reception = disturbed(alone, effect)
-        slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
+        reception = disturbed(replace(alone, outlets=()), effect)  # where it decides, not at each outlet
+        slope, spread = slope_and_spread(effect, squares[state], rejection)
         decides = reception.margin_db < margin
         moved = np.where(decides, slope * spread, moved)
         lost = np.where(decides, effect.cn_db - reception.cn_db, lost)
         margin = np.minimum(margin, reception.margin_db)
-    path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
+    path, parts = wanted_errors(ear.chain, polarisation, air, reception, assumptions)
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
-    turned_away = wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
+    turned_away = wanted_rejection_sd_db(ear.chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
     enough = exceedance_through(margin + fixed.mean_db, sigma_db, fixed.curved)
     return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db)), lost)

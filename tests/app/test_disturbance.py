@@ -9,7 +9,7 @@ import pytest
 from app.air import air_of
 from app.assumptions import Assumptions
 from app.chain.catalogue import demo_chains
-from app.disturbance import company_of
+from app.company import company_of
 from app.fields import EmissionField, PathFacts
 from app.interferers import Interferer
 from app.margins import turn
