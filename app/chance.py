@@ -40,6 +40,7 @@ DRAWS = 4096
 DEVIATES = np.linspace(-4, 4, 33)  # of the normal that an error which is none itself is mapped from
 _LIKELY = np.exp(-(DEVIATES**2) / 2) / np.exp(-(DEVIATES**2) / 2).sum()
 SEED = "gainworth-1"
+NEVER_SD = 9.0  # as many standard deviations away: a chance of 1e-19
 
 Grade = Literal["secure", "likely", "open", "doubtful"]
 GRADES: tuple[tuple[float, Grade], ...] = (
@@ -204,6 +205,9 @@ def exceedance_through(median_db: FloatArray, sigma_db: FloatArray, curved: Erro
 
 def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: FloatArray) -> FloatArray:
     """Chance of enough signal less that of too much; the loudest emission's error eats up the headroom of all."""
+    near = np.asarray(headroom_db <= NEVER_SD * loudest_sd_db)
+    if not near.any():
+        return chance
     result: FloatArray = np.maximum(chance - exceedance(-headroom_db, loudest_sd_db), 0)
     return result
 

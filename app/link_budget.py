@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -86,6 +87,19 @@ class Reception:
     serving_aerial: NDArray[np.intp]  # (…, e) index into chain.aerials: the one that gives it most
     deciding_outlet: NDArray[np.intp]  # (…, e) index into outlets: the one with the least margin
     outlets: tuple[AtOutlet, ...]
+
+    def of_field(self, number: int) -> Reception:
+        """Return what one of several fields, stacked in a leading axis, becomes."""
+        shape = self.level_dbuv.shape
+
+        def picked(place: Reception | AtOutlet) -> dict[str, Any]:
+            return {
+                field.name: np.broadcast_to(getattr(place, field.name), shape)[number]
+                for field in fields(place)
+                if field.name not in ("name", "outlets")
+            }
+
+        return Reception(outlets=tuple(AtOutlet(one.name, **picked(one)) for one in self.outlets), **picked(self))
 
     @property
     def loudest(self) -> NDArray[np.intp]:

@@ -12,7 +12,7 @@ from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
 from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received, rows_of
-from app.company import Company, State
+from app.company import STATES, Company, State
 from app.disturbance import Ear, Effect, disturbed, ear_of, effect_of
 from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread, squares_of
 from app.link_budget import Reception, is_overload, receive
@@ -122,20 +122,18 @@ def turn(
             best = (count, pointing_deg, ear, polarisation, counts, swept)
     assert best is not None  # there is always a polarisation
     _, pointing_deg, ear, polarisation, counts, swept = best
-    alone, alone_faded = (
-        receive(
-            chain,
-            air.signals,
-            field,
-            pointing_deg,
-            polarisation,
-            assumptions,
-            roof.surroundings,
-            load_dbuv_m=air.used_dbuv_m,
-            beside=air.beside,
-        )
-        for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
+    stacked = receive(
+        chain,
+        air.signals,
+        np.stack([air.used_dbuv_m, air.used_dbuv_m - air.fade_db]),
+        pointing_deg,
+        polarisation,
+        assumptions,
+        roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
+        beside=air.beside,
     )
+    alone, alone_faded = stacked.of_field(0), stacked.of_field(1)
     left = ear.left(pointing_deg)
     effects: dict[State, Effect] = {
         "a": effect_of(ear, alone_faded, left, "a"),
@@ -230,19 +228,19 @@ def _sweep(
     rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
     shape = (len(BEARINGS), len(air.fields))
     margin, moved, lost = np.full(shape, np.inf), np.zeros(shape), np.zeros(shape)
-    fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
-    for state, field in fields:
-        alone = receive(
-            ear.chain,
-            air.signals,
-            field,
-            turned,
-            polarisation,
-            assumptions,
-            roof.surroundings,
-            load_dbuv_m=air.used_dbuv_m,
-            beside=air.beside,
-        )
+    both = receive(
+        ear.chain,
+        air.signals,
+        np.stack([air.used_dbuv_m - air.fade_db, air.used_dbuv_m])[:, None],
+        turned,
+        polarisation,
+        assumptions,
+        roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
+        beside=air.beside,
+    )
+    for number, state in enumerate(STATES):
+        alone = both.of_field(number)
         effect = effect_of(ear, alone, left, state)
         reception = disturbed(replace(alone, outlets=()), effect)  # where it decides, not at each outlet
         slope, spread = slope_and_spread(effect, squares[state], rejection)
