@@ -25,7 +25,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Literal, Protocol
 
@@ -164,6 +164,25 @@ class Cells:
             (*columns, *(f"bearing:{degree}" for degree in range(360))),
             np.hstack([np.stack(list(columns.values()), axis=1), over_bearing]),
         )
+
+    def of(self, rows: Sequence[int]) -> Cells:
+        """Return some of the margins only, whose draws stay the same."""
+        taken = list(rows)
+        path = replace(
+            self.path,
+            masts=tuple(self.path.masts[e] for e in taken),
+            bearing_deg=self.path.bearing_deg[taken],
+            sd_db=self.path.sd_db[taken],
+        )
+        parts = tuple(
+            ErrorPart(
+                tuple(part.keys[e] for e in taken),
+                part.sd_db[taken],
+                None if part.curve_db is None else part.curve_db[:, taken],
+            )
+            for part in self.parts
+        )
+        return Cells(self.median_db[taken], path, parts, self.known)
 
     def draws(self) -> FloatArray:
         """Return joint samples of the margins. (DRAWS, e)"""

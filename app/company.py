@@ -152,7 +152,11 @@ def _stated_twice(interferers: Sequence[Interferer]) -> set[int]:
 
 
 def _only(pairs: Pairs, kept: NDArray[np.bool_]) -> Pairs:
-    rule = tuple(one for one, keep in zip(pairs.rule, kept.tolist(), strict=True) if keep)
     return Pairs(
-        pairs.disturber[kept], pairs.wanted[kept], pairs.steady_db[kept], pairs.tropospheric_db[kept], rule, pairs.shape
+        pairs.disturber[kept],
+        pairs.wanted[kept],
+        pairs.steady_db[kept],
+        pairs.tropospheric_db[kept],
+        pairs.rule[kept],
+        pairs.shape,
     )

@@ -87,12 +87,8 @@ class Effect:
     useful: FloatArray  # (…, e) useful share of each member's own power; 1 outside networks
     stray: FloatArray  # (…, e) power of each member that disturbs its own network; 0 outside networks
     cn_db: FloatArray  # (…, e) C/N at the deciding outlet with the network's gain, before interference
+    i_over_n: FloatArray  # (…, e) there, linear
     told: dict[int, tuple[int | None, float | None]] = field(default_factory=dict)  # strongest, once reckoned
-
-    @property
-    def i_over_n(self) -> FloatArray:
-        """Interference over noise at the deciding outlet, (…, e), linear."""
-        return np.asarray(self.i_over_c * 10 ** (self.cn_db / 10))
 
     def contributions(self, e: int) -> tuple[NDArray[np.intp], FloatArray]:
         """Interferers of one wanted emission and their power over its carrier (linear), strongest first. (k,)"""
@@ -153,14 +149,16 @@ def effect_of(ear: Ear, reception: Reception, left: FloatArray, state: State) ->
         )[..., np.newaxis]
     with np.errstate(divide="ignore"):
         gain = 10 * np.log10(carrier / own)
-    return Effect(state, ear, left, disturbing / carrier, gain, rise, carrier, useful, stray, reception.cn_db + gain)
+    i_over_c, cn_db = disturbing / carrier, reception.cn_db + gain
+    i_over_n = i_over_c * 10 ** (cn_db / 10)
+    return Effect(state, ear, left, i_over_c, gain, rise, carrier, useful, stray, cn_db, i_over_n)
 
 
 def disturbed(reception: Reception, effect: Effect) -> Reception:
     """Return the reception with C/(N + I) for C/N and the margin that it leaves, at every outlet."""
 
-    def after(place: Reception | AtOutlet) -> FloatArray:
-        carrier_to_noise = place.cn_db + effect.gain_db
+    def after(outlet: AtOutlet) -> FloatArray:
+        carrier_to_noise = outlet.cn_db + effect.gain_db
         return np.asarray(carrier_to_noise - degradation_db(carrier_to_noise, effect.i_over_c))
 
     def left_of_margin(place: Reception | AtOutlet, cn_db: FloatArray) -> FloatArray:
@@ -175,7 +173,7 @@ def disturbed(reception: Reception, effect: Effect) -> Reception:
         )
         for outlet in reception.outlets
     )
-    cn_db = after(reception)
+    cn_db = effect.cn_db - 10 * np.log10(1 + effect.i_over_n)
     return replace(
         reception,
         level_dbuv=reception.level_dbuv + effect.gain_db,

@@ -26,7 +26,7 @@ from app.chain import aerial as response
 from app.chance import ErrorPart
 from app.company import STATES, Company, State
 from app.disturbance import Ear, Effect
-from app.interference import degradation_db, nuisance_power
+from app.interference import nuisance_power
 
 FloatArray = NDArray[np.float64]
 
@@ -111,7 +111,7 @@ def slope_and_spread(effect: Effect, squares: Squares, rejection_db: FloatArray)
         spread = np.where(moving > 0, np.sqrt(moving) / (effect.i_over_c * effect.carrier), 0.0)
     step = np.maximum(spread, 1e-3)
     ratio = 10 ** (step / 10)
-    rise = degradation_db(effect.cn_db, effect.i_over_c * ratio) - degradation_db(effect.cn_db, effect.i_over_c / ratio)
+    rise = 10 * np.log10((1 + effect.i_over_n * ratio) / (1 + effect.i_over_n / ratio))
     return rise / (2 * step), spread
 
 

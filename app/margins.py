@@ -22,6 +22,7 @@ from app.roof import Roof
 FloatArray = NDArray[np.float64]
 
 TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+NEVER = 1e-9  # chance of an emission that none of the draws would show
 HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
@@ -172,16 +173,19 @@ def turn(
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
     """Return draws of what is received (draws, m) and the chance of each multiplex (m,).
 
-    One emission alone has its closed form; alternatives are counted over the joint draws.
+    One emission alone has its closed form; alternatives are counted over the joint draws. What is hopeless is not
+    drawn, but for the loudest emission, whose errors eat up the headroom of all.
     """
-    median = turned.median
-    margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
-    draws = received(margins, air.multiplex_of, multiplexes)
+    median, loudest = turned.median, int(turned.median.loudest)
+    rows = [e for e, chance in enumerate(turned.enough.tolist()) if chance >= NEVER or e == loudest]
+    cells = turned.cells.of(rows)
+    margins = capped(cells.draws(), cells.median_db, median.headroom_db[rows], rows.index(loudest) if rows else 0)
+    draws = received(margins, [air.multiplex_of[e] for e in rows], multiplexes)
     chance = draws.mean(axis=0)
-    rows = rows_of(air.multiplex_of)
+    owned = rows_of(air.multiplex_of)
     for m, name in enumerate(multiplexes):
-        if len(rows[name]) == 1:
-            chance[m] = turned.chance[rows[name][0]]
+        if len(owned[name]) == 1:
+            chance[m] = turned.chance[owned[name][0]]
     return draws, chance
 
 
