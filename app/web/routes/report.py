@@ -40,4 +40,6 @@ async def _content(id: str, context: Context) -> Document:
     settings = context.settings
     asked = saved.question().model_copy(update={"ledgers": []})
     request = asked.request(settings.worth_per_multiplex, settings.reading_cost, context.store)
-    return await context.compute(report_content, kept, request, context.store, context.ground)
+    return await context.compute(
+        report_content, kept, request, context.store, context.ground, settings.refractivity_maps
+    )
