@@ -99,7 +99,12 @@ def add_error_handlers(app: FastAPI) -> None:
     async def http(request: Request, error: Exception) -> JSONResponse:
         assert isinstance(error, HTTPException)
         code, words = PLAIN_HTTP.get(error.status_code, ("http", "the request cannot be answered: {detail}"))
-        message = words.format(path=request.url.path, method=request.method, detail=error.detail)
+        path = request.url.path
+        message = words.format(
+            path=path if len(path) <= 200 else f"{path[:199]}…", method=request.method, detail=error.detail
+        )
+        if error.status_code == 404 and path.endswith("/"):
+            message = f"{message}; it may be meant without the slash at its end"
         response = error_response(error.status_code, code, message)
         response.headers.update(error.headers or {})
         return response
