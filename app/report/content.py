@@ -65,7 +65,7 @@ def report_content(
             f"{one['id']}: {one['value']:g} {one['unit']} ({one['reason']})" for one in answer["assumptions"]
         ],
         "settings": _settings(request),
-        "cautions": answer["cautions"],
+        "cautions": [*_gone(answer, saved), *answer["cautions"]],
         "sources": [
             ", ".join(str(one[key]) for key in ("title", "document", "licence") if one.get(key))
             for one in answer["sources"]
@@ -85,6 +85,18 @@ def _names(answer: Document, verdict: Document | None, saved: Mapping[str, Any])
     second = str(saved.get("second") or "")
     shown = [verdict["baseline"], verdict["candidate"]]
     return [*shown, second] if second in answer["chains"] and second not in shown else shown
+
+
+def _gone(answer: Document, saved: Mapping[str, Any]) -> list[str]:
+    """Say which of the kept ideas is not among the chains any more."""
+    return [
+        f'{words} was "{saved[key]}", which is not among the chains any more: {instead}.'
+        for key, words, instead in (
+            ("idea", "Idea 1", "the best of the others stands in its place"),
+            ("second", "Idea 2", "it is left out"),
+        )
+        if saved.get(key) and saved[key] not in answer["chains"]
+    ]
 
 
 def _title(answer: Document, name: str) -> str:

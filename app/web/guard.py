@@ -42,6 +42,7 @@ HEADERS = {
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
 READING = {"GET", "HEAD", "OPTIONS"}
+MOST_DIGITS = 18  # a whole number that database and floating point can hold
 HALF_LETTER = re.compile(rb"\\u[dD][89a-fA-F]")
 
 
@@ -146,13 +147,17 @@ class _Twice(ValueError):
     """A key stands twice in one object."""
 
 
+class _TooLong(ValueError):
+    """A whole number has more digits than any quantity here."""
+
+
 def _refusal_of_text(body: bytes) -> ASGIApp | None:
     """Refuse JSON in which a key stands twice, or half a letter, which neither database nor answer can carry.
 
     What is no JSON at all is left to the route, which says so.
     """
     try:
-        read = json.loads(body, object_pairs_hook=_each_key_once)
+        read = json.loads(body, object_pairs_hook=_each_key_once, parse_int=_whole)
         if HALF_LETTER.search(body):
             json.dumps(read, ensure_ascii=False).encode()
     except _Twice as error:
@@ -160,12 +165,21 @@ def _refusal_of_text(body: bytes) -> ASGIApp | None:
         return error_response(
             422, "json", f'"{key}" stands twice in one object: keep one of them', key, "each key once"
         )
+    except _TooLong as error:
+        words = f"the request holds a number of {error} digits: use numbers of at most {MOST_DIGITS}"
+        return error_response(422, "json", words, None, f"at most {MOST_DIGITS} digits")
     except UnicodeEncodeError:
         words = "the request holds half a letter (a lone surrogate): send text in UTF-8"
         return error_response(422, "json", words, None, "text in UTF-8")
     except (ValueError, RecursionError):
         return None
     return None
+
+
+def _whole(digits: str) -> int:
+    if len(digits) > MOST_DIGITS:
+        raise _TooLong(len(digits))
+    return int(digits)
 
 
 def _each_key_once(pairs: list[tuple[str, object]]) -> dict[str, object]:

@@ -81,3 +81,50 @@ def test_head_of_what_is_not_there_or_cannot_be_read_says_so_by_its_status(clien
     assert client.head("/nowhere").status_code == 404
     assert client.head("/api/assess").status_code == 405
     assert client.head("/nowhere").content == b""
+
+
+@pytest.mark.parametrize(
+    ("address", "body"),
+    [
+        ("/api/parts", '{"kind": "feeder", "id": "f", "name": "f", "cable": "copper-7mm", "length_m": 1, "price": %s}'),
+        ("/api/readings", '{"latitude_deg": 44, "longitude_deg": -37, "reading": {"kind": "level", "value_db": %s}}'),
+        ("/api/assess", '{"roof": {"latitude_deg": %s, "longitude_deg": -37}}'),
+    ],
+)
+@pytest.mark.parametrize("digits", [400, 5000])
+def test_a_whole_number_of_hundreds_of_digits_is_refused(client, address, body, digits):
+    """Python itself refuses more than 4300 digits, and a number of 400 fits no floating point."""
+    sent = (body % ("9" * digits)).encode()
+    error = error_of(client.post(address, content=sent, headers={"content-type": "application/json"}), 422)
+    assert error["message"] == f"the request holds a number of {digits} digits: use numbers of at most 18"
+
+
+def test_a_reading_of_kind_null_is_told_the_kinds(client):
+    sent = {"latitude_deg": 44, "longitude_deg": -37, "reading": {"kind": None, "count": 3}}
+    assert "the reading has no kind: use level" in error_of(client.post("/api/readings", json=sent), 422)["message"]
+
+
+def test_what_came_is_shown_and_not_thousands_of_letters_of_it(client):
+    part = {"kind": "x" * 100_000, "id": "f", "name": "f"}
+    message = error_of(client.post("/api/parts", json=part), 422)["message"]
+    assert len(message) < 900
+    assert message.startswith('part "f" is of kind "xxx')
+    assert message.endswith("mast")  # what to use stands at the end
+
+
+@pytest.mark.parametrize(
+    ("identity", "told"), [("../x", "leave out the slash"), ("a\x00b", "printable"), ("x" * 130, "120")]
+)
+def test_a_part_whose_id_no_address_can_name_is_refused(client, identity, told):
+    part = {"kind": "feeder", "id": identity, "name": "f", "cable": "copper-7mm", "length_m": 1}
+    assert told in error_of(client.post("/api/parts", json=part), 422)["message"]
+
+
+def test_a_day_that_is_none_is_told_how_to_write_one(client):
+    error = error_of(client.get("/api/declination?latitude_deg=44&longitude_deg=-37&day=tomorrow"), 422)
+    assert error["message"] == 'day is "tomorrow": use a date, year first, such as 2026-10-31'
+
+
+def test_true_is_written_as_in_json(client):
+    sent = {"agreed_to_go_online": False, "latitude_deg": 44, "longitude_deg": -37}
+    assert error_of(client.post("/api/download", json=sent), 422)["allowed"] == "true"
