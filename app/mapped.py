@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from app.request import AssessRequest
 from app.roof import Roof, Surroundings
 from terrain.cover import categories
 from terrain.geodesy import destination
@@ -36,6 +37,12 @@ def with_surroundings(roof: Roof, ground: Ground) -> tuple[Roof, str]:
         replace(roof, surroundings=word),
         f"Surroundings by land cover: {name}, taken as {word}. Say what stands there if that is wrong.",
     )
+
+
+def settled(request: AssessRequest, ground: Ground) -> tuple[AssessRequest, str]:
+    """Put what land cover shows in the place of a request's "mapped" surroundings, and say so."""
+    roof, told = with_surroundings(request.roof, ground)
+    return replace(request, roof=roof), told
 
 
 def credits_of(ground: Ground) -> list[str]:

@@ -151,7 +151,7 @@ function open(kept) {
     ...initialStateOfARoof(),
     where: placeText(roof),
     height: numberText(heightIn(roof.aerial_agl_m, store.get().units), 0),
-    around: roof.surroundings ?? 'open',
+    around: roof.surroundings ?? 'mapped',
     obstacles: roof.obstacles ?? [],
     now: kept.now ?? NOTHING, idea: kept.idea ?? null, second: kept.second ?? null, landmark: kept.landmark ?? '',
     edits: (kept.chains ?? []).filter((one) => typeof one === 'object'),

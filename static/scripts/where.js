@@ -2,7 +2,7 @@
 
 import { columns, NOTHING, titleOf, chainsHere } from './state.js';
 
-const AROUND = [['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
+const AROUND = [['mapped', 'as land cover shows'], ['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
 
 /**
  * @param {HTMLFormElement} element
@@ -24,7 +24,7 @@ export function createWhere(element, { type, submit, choose }) {
   now.addEventListener('change', () => choose({ now: now.value }));
   idea.addEventListener('change', () => choose({ idea: idea.value || null }));
   second.addEventListener('change', () => choose({ second: second.value || null }));
-  options(around, AROUND, 'open');
+  options(around, AROUND, 'mapped');
 
   /** @param {import('./state.js').State} state */
   function update(state) {
