@@ -1,4 +1,4 @@
-"""Surroundings of a roof as land cover shows them."""
+"""What land cover adds: surroundings of a roof, and credits of the maps in use."""
 
 from __future__ import annotations
 
@@ -8,13 +8,14 @@ import numpy as np
 
 from app.request import AssessRequest
 from app.roof import Roof, Surroundings
-from terrain.cover import categories
+from terrain.cover import CoverRaster, categories
 from terrain.geodesy import destination
 from terrain.mosaic import Ground
 
 # The neighbourhood that stands for the surroundings. Our choice: about where a house before the aerial stands.
 _RINGS_M = (15.0, 30.0, 50.0)
 _BEARINGS_DEG = np.arange(0.0, 360.0, 30.0)
+COASTLINE = "Coastline: Natural Earth 1:10m, public domain"
 _WORDS: dict[str, Surroundings] = {"suburban": "suburban", "urban": "urban", "trees": "trees"}
 
 
@@ -47,8 +48,13 @@ def settled(request: AssessRequest, ground: Ground) -> tuple[AssessRequest, str]
 
 def credits_of(ground: Ground) -> list[str]:
     """Credits that the licences of the rasters in use ask for, each once."""
-    cover = ground.overlay.cover if ground.overlay is not None else None
-    credits = {one.attribution for one in ground.rasters}
-    if cover is not None:
-        credits |= {one.attribution for one in cover.rasters}
+    credits = {one.attribution for one in ground.rasters} | {one.attribution for one in cover_in_use(ground)}
+    if ground.overlay is not None:
+        credits.add(COASTLINE)
     return sorted(credits - {""})
+
+
+def cover_in_use(ground: Ground) -> tuple[CoverRaster, ...]:
+    """Maps of land cover that stand over a ground."""
+    cover = ground.overlay.cover if ground.overlay is not None else None
+    return () if cover is None else cover.rasters

@@ -60,7 +60,8 @@ def report_content(saved: Mapping[str, Any], request: AssessRequest, store: Stor
         "sources": [
             ", ".join(str(one[key]) for key in ("title", "document", "licence") if one.get(key))
             for one in answer["sources"]
-        ],
+        ]
+        + list(answer["credits"]),
     }
 
 

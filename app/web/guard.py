@@ -39,7 +39,7 @@ HEADERS = {
     "Referrer-Policy": "no-referrer",
     "Cross-Origin-Resource-Policy": "same-origin",
     "Cross-Origin-Opener-Policy": "same-origin",
-    "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
+    "Permissions-Policy": "camera=(), geolocation=(self), microphone=()",
 }
 READING = {"GET", "HEAD", "OPTIONS"}
 HALF_LETTER = re.compile(rb"\\u[dD][89a-fA-F]")

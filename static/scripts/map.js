@@ -237,10 +237,10 @@ export function createMap(element, { place }) {
       return item;
     }));
     const ground = state.health?.ground;
-    const names = [...new Set((ground?.rasters ?? []).map((raster) => raster.attribution).filter(Boolean))];
+    const names = ground?.credits ?? [];
     const refused = (ground?.refused ?? []).map((one) => `${one.file}: ${one.message}`);
     const demo = state.health?.demo_roofs.length ? 'An invented island: no real place.' : '';
-    if (credit) credit.textContent = [demo, names.length ? `Ground: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
+    if (credit) credit.textContent = [demo, names.length ? `Credits: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
   }
 
   /** @param {KeyboardEvent} event */

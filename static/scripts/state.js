@@ -36,6 +36,7 @@
  * @property {any|null} health     what the server knows; null: not yet known
  * @property {any|null} answer     the document of the last answer
  * @property {any|null} path       the path of the shown cell
+ * @property {{question: string, swapped: Place}|null} doubt  whether latitude and longitude are swapped
  * @property {boolean} asking      a question is on its way
  * @property {{message: string, field: string|null}|null} trouble
  */
@@ -53,7 +54,7 @@ export function initialState() {
     around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
     sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
     said: '', moved: [], past: 0,
-    chains: null, health: null, answer: null, path: null, asking: false, trouble: null,
+    chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null,
   };
 }
 

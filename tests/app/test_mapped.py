@@ -13,6 +13,7 @@ from app.chain_file import import_text
 from app.cheapest import Wish, cheapest_document
 from app.demo.scenario import ensure_demo
 from app.planner import assess
+from app.report.content import report_content
 from app.request import AssessRequest
 from app.roof import Roof
 from app.sweeps import sweep_document
@@ -58,7 +59,7 @@ def town(demo_world, tmp_path_factory):
     profile = {"driver": "GTiff", "width": 100, "height": 100, "count": 1, "dtype": "uint8", "crs": "EPSG:4326"}
     with rasterio.open(path, "w", **profile, transform=Affine(1e-4, 0, -37.5184, 0, -1e-4, 44.125)) as file:
         file.write(np.full((100, 100), 50, dtype="uint8"), 1)
-    Path(f"{path}.gainworth.toml").write_text('classes = "worldcover"\n')
+    Path(f"{path}.gainworth.toml").write_text('classes = "worldcover"\nattribution = "© somebody"\n')
     rasters = [one.path for one in demo_world.ground.rasters]
     return Ground.open(rasters, folder / "cache", Overlay(Cover.open([path], folder / "cache")))
 
@@ -82,3 +83,10 @@ def test_mapped_surroundings_count_as_if_they_had_been_stated(store, town, what)
     mapped, stated, bare = answers(asks[what], town)
     assert mapped == stated
     assert mapped != bare
+
+
+def test_credits_of_ground_cover_and_coastline_stand_in_answer_and_report(store, town):
+    request = AssessRequest(ROOF, chains=("roof-yagi", "loft-dipole"), reach_km=60.0)
+    needed = {"© somebody", "Coastline: Natural Earth 1:10m, public domain"}
+    assert needed <= set(assess(request, store, town)["credits"])
+    assert needed <= set(report_content({"name": "roof"}, request, store, town)["sources"])
