@@ -48,7 +48,7 @@ def settled(request: AssessRequest, ground: Ground) -> tuple[AssessRequest, str]
 
 def credits_of(ground: Ground) -> list[str]:
     """Credits that the licences of the rasters in use ask for, each once."""
-    credits = {one.attribution for one in ground.rasters} | {one.attribution for one in cover_in_use(ground)}
+    credits = {*ground.credits, *(one.attribution for one in cover_in_use(ground))}
     if ground.overlay is not None:
         credits.add(COASTLINE)
     return sorted(credits - {""})
