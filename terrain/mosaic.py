@@ -112,6 +112,11 @@ class Ground:
         return tuple(infos)
 
     @property
+    def decoding_s(self) -> float:
+        """Seconds that this process has spent so far on unpacking samples that were not in the cache."""
+        return sum(layer.blocks.decoding_s for layer in self._layers)
+
+    @property
     def credits(self) -> list[str]:
         """What the rasters or their sources ask to be named, each once."""
         return sorted({layer.raster.attribution for layer in self._layers} - {""})
