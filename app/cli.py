@@ -137,7 +137,9 @@ def assess(
     unpacking_s = world.ground.decoding_s
     if unpacking_s > WORTH_TELLING_S:
         whole_s = time.perf_counter() - start
-        text = f"This answer took {whole_s:.1f} s, {unpacking_s:.1f} s of it to unpack new ground; the next one does not."
+        text = (
+            f"This answer took {whole_s:.1f} s, {unpacking_s:.1f} s of it to unpack new ground; the next one does not."
+        )
         typer.echo(text, err=True)
     show(document, as_json, lambda: told(document))
 

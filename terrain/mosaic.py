@@ -111,6 +111,16 @@ class Ground:
             )
         return tuple(infos)
 
+    @cached_property
+    def kinds(self) -> tuple[str, ...]:
+        """Kind of each raster, in the order of `rasters`."""
+        return tuple(layer.raster.kind for layer in self._layers)
+
+    @cached_property
+    def spacings_m(self) -> tuple[float, ...]:
+        """Spacing of each raster [m], in the order of `rasters`."""
+        return tuple(layer.raster.grid.spacing_m for layer in self._layers)
+
     @property
     def decoding_s(self) -> float:
         """Seconds that this process has spent so far on unpacking samples that were not in the cache."""
