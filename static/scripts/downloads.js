@@ -154,7 +154,7 @@ export function createDownloads(element, api, { again }) {
     timing.textContent = 'Working it out over the new ground …';
     const took = await again();
     timing.textContent = took
-      ? `The first answer over the new ground took ${took.first_s.toFixed(1)} s, as it had to be unpacked; the next one ${took.second_s.toFixed(1)} s.`
+      ? `The first answer over the new ground took ${took.first_s.toFixed(1)} s; the next one ${took.second_s.toFixed(1)} s.`
       : '';
   }
 

@@ -83,6 +83,8 @@ export function createMap(element, { place }) {
   /** @type {MapAdapter|null} */
   let adapter = null;
   let opening = false;
+  /** @type {MapOptions} */
+  let options;
   /** @type {{x: number, y: number}|null} */
   let crosshair = null;
   /** @type {import('./state.js').State} */
@@ -91,17 +93,26 @@ export function createMap(element, { place }) {
 
   async function open() {
     opening = true;
-    adapter = await openAny(view, {
+    options = {
       dark: darkness.matches,
       version: state.health.ground.version,
       keepPixels: navigator.webdriver,
       onMove: draw,
       onIdle: () => { element.dataset.idle = 'yes'; },
       onClick: (latitude, longitude) => place({ latitude_deg: latitude, longitude_deg: longitude }),
-    });
+    };
+    adapter = await openAny(view, options);
     darkness.addEventListener('change', () => adapter?.theme(darkness.matches));
     lookAtGround();
     update(state);
+  }
+
+  /** Draws the relief of ground that has come since the map was opened. */
+  function takeUpGround() {
+    if (!adapter || options.version === state.health.ground.version) return;
+    options.version = state.health.ground.version;
+    adapter.theme(darkness.matches);
+    lookAtGround();
   }
 
   function lookAtGround() {
@@ -309,6 +320,7 @@ export function createMap(element, { place }) {
     cell = shownCell(state);
     const settled = state.answer || (state.health && !state.asking && state.chains);
     if (settled && !opening) void open();
+    takeUpGround();
     look();
     draw();
     list();

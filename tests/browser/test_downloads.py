@@ -24,6 +24,8 @@ from app.world import open_ground
 
 pytestmark = pytest.mark.browser
 
+SOON_MS = 30_000  # a first answer loads libraries
+
 RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"]
 OWN = """
 [hills]
@@ -100,6 +102,8 @@ def agree_and_fetch(panel):
 def test_nothing_leaves_before_the_user_agrees_and_then_the_roof_is_answered(watched, browser, tiles):
     watched.expected = "422"  # the roof without ground
     page = watched.open(browser)
+    drawn = []
+    page.on("request", lambda request: drawn.append(request.url))
     panel = open_panel(page)
     expect(page.locator(".trouble")).to_contain_text("no elevation at 49.5000 N 11.5000 E", ignore_case=True)
     expect(page.locator(".trouble")).to_contain_text("Under “Ground” below the page can fetch them.")
@@ -112,7 +116,8 @@ def test_nothing_leaves_before_the_user_agrees_and_then_the_roof_is_answered(wat
     agree_and_fetch(panel)
     expect(panel.locator(".result")).to_have_text("1 fetched.")
     expect(panel.locator(".timing")).to_have_text(
-        re.compile(r"The first answer over the new ground took \d+\.\d s, .* the next one \d+\.\d s\.")
+        re.compile(r"The first answer over the new ground took \d+\.\d s; the next one \d+\.\d s\."),
+        timeout=SOON_MS,
     )
     expect(page.locator(".trouble")).to_be_empty()
     expect(page.locator(".sentence")).to_contain_text("Nothing is up today.")
@@ -120,6 +125,8 @@ def test_nothing_leaves_before_the_user_agrees_and_then_the_roof_is_answered(wat
     expect(panel.locator(".credits")).to_contain_text("Natural Earth")
     expect(panel.locator(".plan")).to_have_text("1 tile, all of them here already.")
     assert len(tiles.requests) == 1
+    version = page.request.get("/api/health").json()["ground"]["version"]
+    assert any(f"version={version}" in one for one in drawn)  # the map draws the new ground
 
 
 def test_a_stopped_download_is_taken_up_by_a_page_opened_later(watched, browser, tiles):
@@ -133,10 +140,12 @@ def test_a_stopped_download_is_taken_up_by_a_page_opened_later(watched, browser,
     expect(other.get_by_role("progressbar")).to_be_visible()
     other.get_by_role("button", name="Stop").click()
     for one in (panel, other):
-        expect(one.locator(".result")).to_have_text(re.compile("^Stopped. .* stopped.* Fetch them again to go on"))
+        expect(one.locator(".result")).to_have_text(
+            re.compile("^Stopped. .* stopped.* Fetch them again to go on"), timeout=SOON_MS
+        )
     tiles.pause_s = 0.0
     agree_and_fetch(other)
-    expect(other.locator(".timing")).to_contain_text("The first answer")
+    expect(other.locator(".timing")).to_contain_text("The first answer", timeout=SOON_MS)
     expect(other.locator(".result")).to_have_text(re.compile(r"^\d+ fetched(, \d there)?\.$"))
 
 
