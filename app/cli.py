@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import socket
 import sys
+import time
 from pathlib import Path
 from typing import Annotated, Any
 
@@ -30,6 +31,7 @@ main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
 
 WRONG = 1
+WORTH_TELLING_S = 1.0  # of unpacking; less is no wait
 
 
 @main.command()
@@ -136,7 +138,15 @@ def assess(
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word
         )
         world = open_world()
+        start = time.perf_counter()
         document = answer_to(request, world.store, world.ground, refractivity_maps=world.refractivity_maps)
+    unpacking_s = world.ground.decoding_s
+    if unpacking_s > WORTH_TELLING_S:
+        whole_s = time.perf_counter() - start
+        text = (
+            f"This answer took {whole_s:.1f} s, {unpacking_s:.1f} s of it to unpack new ground; the next one does not."
+        )
+        typer.echo(text, err=True)
     show(document, as_json, lambda: told(document))
 
 

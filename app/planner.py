@@ -21,7 +21,7 @@ from app.chain_notes import chain_notes, with_notes
 from app.chance import Knowledge
 from app.declination import compass_text
 from app.errors import RequestError
-from app.mapped import credits_of, with_surroundings
+from app.mapped import credits_of, settled
 from app.margins import Turned, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
@@ -49,8 +49,8 @@ def assess(
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = chains_of(request, store)
-    roof, told = with_surroundings(request.roof, ground)
-    request = replace(request, roof=roof)
+    request, told = settled(request, ground)
+    roof = request.roof
     compass = compass_text(roof.latitude_deg, roof.longitude_deg, today or date.today())
     site = site_of(roof, ground, told)
     heard = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)

@@ -22,6 +22,7 @@ from app.assumptions import Assumptions
 from app.chain.parts import Aerial, Chain, Combiner, Part, Switch
 from app.chain.powering import as_powered
 from app.chance import rows_of
+from app.mapped import settled
 from app.margins import Turned, chance_of_each, multiplex_chances, turn
 from app.planner import chains_of
 from app.request import AssessRequest
@@ -50,6 +51,7 @@ def sweep_document(
     """
     assumptions = Assumptions(request.assumptions)
     chains = chains_of(request, store)
+    request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
     multiplexes = sorted(set(air.multiplex_of))

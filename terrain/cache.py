@@ -2,8 +2,8 @@
 
 Every array is written under a name of its own and then renamed: readers in other threads and
 processes see a whole array or none. Two that make the same array at once write the same bytes.
-The folder is kept below a limit: what was used longest ago goes first, never what is mapped here or was
-used by anyone within the last hour.
+The folder is kept below a limit: what was used longest ago goes first, never what is mapped by any process or
+was used within the last hour.
 """
 
 from __future__ import annotations
@@ -27,6 +27,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from terrain.errors import CacheError
+from terrain.locks import mark_in_use, removed_unless_in_use
 
 # Layout of what lies in the folder; a new number where old files would be read wrongly.
 _LAYOUT = "ground-2"
@@ -85,8 +86,7 @@ class ArrayCache:
                 return self._mapped[name]
         for folder in self._folders:
             with contextlib.suppress(OSError, ValueError, EOFError):
-                # asarray: numpy's memmap class makes every indexing slower.
-                array = np.asarray(np.load(folder / f"{name}.npy", mmap_mode="r", allow_pickle=False))
+                array = _mapped(folder / f"{name}.npy")
                 with contextlib.suppress(OSError):
                     os.utime(folder / f"{name}.npy")  # used now: trimming takes the oldest
                 self._map(name, array)
@@ -131,12 +131,11 @@ class ArrayCache:
                 self._kept_bytes += more_bytes
                 if self._kept_bytes <= self._limit_bytes:
                     return
-            in_use = {folder / f"{name}.npy" for name in self._mapped}
             if self._kept_bytes is None:
                 for old in folder.parent.glob("ground-*"):
                     if old != folder:
                         shutil.rmtree(old, ignore_errors=True)
-            self._kept_bytes = _trimmed(folder, self._limit_bytes, in_use)
+            self._kept_bytes = _trimmed(folder, self._limit_bytes)
 
     def _write_elsewhere(self, name: str, array: _Array) -> None:
         try:
@@ -168,7 +167,20 @@ class ArrayCache:
             unfinished.unlink(missing_ok=True)
 
 
-def _trimmed(folder: Path, limit_bytes: float, in_use: set[Path]) -> float:
+def _mapped(path: Path) -> NDArray[Any]:
+    """Map an array as `np.save` wrote it, marked as in use for as long as the map is."""
+    with path.open("rb") as file:
+        mark_in_use(file)  # the map holds on to the open file, and with it to the mark
+        if np.lib.format.read_magic(file) != (1, 0):
+            raise ValueError(f"{path} is written otherwise")
+        shape, fortran, dtype = np.lib.format.read_array_header_1_0(file)
+        if 0 in shape or fortran or dtype.hasobject:
+            return np.asarray(np.load(path, allow_pickle=False))
+        # asarray: numpy's memmap class makes every indexing slower.
+        return np.asarray(np.memmap(file, dtype, "r", file.tell(), shape))
+
+
+def _trimmed(folder: Path, limit_bytes: float) -> float:
     """Remove the oldest arrays of a folder above its limit; returns how many bytes are left."""
     found = []
     for path in folder.rglob("*.npy"):
@@ -182,8 +194,6 @@ def _trimmed(folder: Path, limit_bytes: float, in_use: set[Path]) -> float:
     for used, size, path in sorted(found):
         if total <= _TRIM_TO * limit_bytes or now - used < _IN_USE_S:
             break
-        if path not in in_use:
-            with contextlib.suppress(OSError):
-                path.unlink()
-                total -= size
+        with contextlib.suppress(OSError):
+            total -= size if removed_unless_in_use(path) else 0
     return total

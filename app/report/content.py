@@ -69,7 +69,8 @@ def report_content(
         "sources": [
             ", ".join(str(one[key]) for key in ("title", "document", "licence") if one.get(key))
             for one in answer["sources"]
-        ],
+        ]
+        + list(answer["credits"]),
     }
 
 

@@ -39,7 +39,7 @@ HEADERS = {
     "Referrer-Policy": "no-referrer",
     "Cross-Origin-Resource-Policy": "same-origin",
     "Cross-Origin-Opener-Policy": "same-origin",
-    "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
+    "Permissions-Policy": "camera=(), geolocation=(self), microphone=()",
 }
 READING = {"GET", "HEAD", "OPTIONS"}
 MOST_DIGITS = 18  # a whole number that database and floating point can hold

@@ -23,7 +23,7 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
   /** @type {import('./state.js').State} */
   let state;
   pinned.addEventListener('click', pin);
-  part(element, '.add-obstacle').addEventListener('click', () => choose({ obstacles: [...state.obstacles, { bearing_deg: 0, distance_m: 30, height_agl_m: 8, width_m: 10 }] }));
+  part(element, '.add-obstacle').addEventListener('click', () => choose({ obstacles: [...state.obstacles, { bearing_deg: 0, distance_m: 30, height_agl_m: 8, width_m: 10, leaves_m: 0 }] }));
   new ResizeObserver(() => { if (state && !element.hidden) draw(); }).observe(body);
 
   /** @param {import('./state.js').State} next */
@@ -106,9 +106,9 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
       const number = parseNumber(value);
       if (number !== null) choose({ obstacles: state.obstacles.map((one, each) => (each === place ? { ...one, [key]: number } : one)) });
     };
-    const boxed = (place, key, label, unit) => field(label, make('input', { type: 'text', inputMode: 'decimal', value: numberText(state.obstacles[place][key], 0), 'data-key': `${place}-${key}`, onchange: (event) => change(place, key, event.target.value) }), unit);
+    const boxed = (place, key, label, unit) => field(label, make('input', { type: 'text', inputMode: 'decimal', value: numberText(state.obstacles[place][key] ?? 0, 0), 'data-key': `${place}-${key}`, onchange: (event) => change(place, key, event.target.value) }), unit);
     refill(near, ...state.obstacles.map((_, place) => make('li', {},
-      boxed(place, 'bearing_deg', 'Direction', '° true'), boxed(place, 'distance_m', 'Away', 'm'), boxed(place, 'height_agl_m', 'Height', 'm'), boxed(place, 'width_m', 'Width', 'm'),
+      boxed(place, 'bearing_deg', 'Direction', '° true'), boxed(place, 'distance_m', 'Away', 'm'), boxed(place, 'height_agl_m', 'Height', 'm'), boxed(place, 'width_m', 'Width', 'm'), boxed(place, 'leaves_m', 'Leaves to pass', 'm, 0: a wall'),
       button('Take it away', () => choose({ obstacles: state.obstacles.filter((_, each) => each !== place) })))));
   }
   return { update };
