@@ -208,6 +208,11 @@ def test_a_roof_is_kept_reported_on_and_forgotten(page, address, watched):
         page.set_viewport_size({"width": width, "height": 800})
         assert page.evaluate("() => document.documentElement.scrollWidth") <= width
     assert violations(page) == []
+    assert page.get_by_role("img").count() == page.locator(".path h3").count() > 0  # a drawing for each path
+    page.emulate_media(media="print", color_scheme="dark")
+    assert page.evaluate("() => getComputedStyle(document.querySelector('h1')).color") == "rgb(0, 0, 0)"
+    assert page.evaluate("() => getComputedStyle(document.querySelector('.said')).fill") == "rgb(0, 0, 0)"
+    page.emulate_media(media="screen", color_scheme="light")
     show(page, "roofs", roof=WEST)
     page.locator(".roofs .list li", has_text="12 Field Lane").get_by_role("button", name="Open").click()
     still(page)
