@@ -106,9 +106,10 @@ def _spread(turned: Turned) -> Spread:
 def _multiplex_cell(name: str, m: int, outcome: Outcome, turned: Turned, air: Air) -> dict[str, Any]:
     owned = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
     best = max(owned, key=lambda e: turned.chance[e])
+    chance = _probability(outcome.chance[m])
     return {
-        "chance": _probability(outcome.chance[m]),
-        "grade": grade(outcome.chance[m]),
+        "chance": chance,
+        "grade": grade(chance),  # of the figure that is shown
         "held_back_by": _limit(turned, best),
         "emission": air.fields[best].emission.id,
         "pointing_deg": turned.pointing_deg,
@@ -263,7 +264,7 @@ def _limit(turned: Turned, e: int, outlet: int | None = None) -> dict[str, Any]:
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
     chances = outcome.chance if outcome else np.zeros(0)
-    counts: dict[str, int] = {word: sum(grade(one) == word for one in chances) for _, word in GRADES}
+    counts: dict[str, int] = {word: sum(grade(_probability(one)) == word for one in chances) for _, word in GRADES}
     return {
         "title": chain.title or chain.name,
         "price": chain.price,

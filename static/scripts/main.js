@@ -23,7 +23,7 @@ import { createSheets } from './sheets.js';
 import { createSkyline } from './skyline.js';
 import { chainNow, chainsHere, createStore, decode, encode, initialState, NOTHING, question } from './state.js';
 import { createTransmitters } from './transmitters.js';
-import { heightIn, numberText, parseHeight, parsePlace, placeText } from './units.js';
+import { heightIn, parseHeight, parsePlace, placeText, plainText } from './units.js';
 import { createWhere } from './where.js';
 
 const MEMORY = 'gainworth';
@@ -35,7 +35,7 @@ const actions = createActions(api, store, assess);
 const byId = (id) => /** @type {any} */ (document.getElementById(id));
 
 const panels = [
-  createWhere(byId('where'), { type, submit: assess, choose }),
+  createWhere(byId('where'), { type, submit, choose }),
   createSeen(byId('seen'), { choose }),
   createDecision(byId('decision'), { place, back }),
   createChanges(byId('changes'), { choose }),
@@ -69,7 +69,7 @@ async function assess() {
   remember(true);
   try {
     const answer = await askAssess({ ...question(store.get(), up.height), ledgers: [] });
-    if (answer) store.set({ answer, asking: false });
+    if (answer) store.set({ answer, asked: { where, height }, asking: false });
   } catch (error) {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
@@ -100,9 +100,14 @@ function type(change) {
   remember(false);
 }
 
+function submit() {
+  store.set({ notes: [] });
+  void assess();
+}
+
 /** @param {import('./state.js').Place} at a place shown on the map */
 function place(at) {
-  store.set({ where: placeText(at), seen: {} });
+  store.set({ where: placeText(at), seen: {}, notes: [] });
   void assess();
 }
 
@@ -110,7 +115,7 @@ const NEW_ANSWER = ['now', 'around', 'seen', 'obstacles', 'settings', 'assumptio
 
 /** @param {Partial<import('./state.js').State>} change a choice; some need a new answer */
 function choose(change) {
-  store.set(change);
+  store.set({ ...change, notes: [] });
   const { idea, second, now, where } = store.get();
   if ('now' in change) store.set({ idea: idea === now ? null : idea, second: second === now ? null : second, seen: {} });
   if (NEW_ANSWER.some((key) => key in change) && where) void assess();
@@ -137,7 +142,7 @@ function aim(name, degree) {
 
 /** @param {any} pin a compared place to go to */
 function go(pin) {
-  store.set({ where: placeText(pin.where), height: numberText(heightIn(pin.height, store.get().units), 0) });
+  store.set({ where: placeText(pin.where), height: plainText(heightIn(pin.height, store.get().units), 2) });
   void assess();
 }
 
@@ -150,7 +155,7 @@ function open(kept) {
   store.set({
     ...initialStateOfARoof(),
     where: placeText(roof),
-    height: numberText(heightIn(roof.aerial_agl_m, store.get().units), 0),
+    height: plainText(heightIn(roof.aerial_agl_m, store.get().units), 2),
     around: roof.surroundings ?? 'open',
     obstacles: roof.obstacles ?? [],
     now: kept.now ?? NOTHING, idea: kept.idea ?? null, second: kept.second ?? null, landmark: kept.landmark ?? '',
@@ -179,9 +184,10 @@ function back() {
 
 /** @param {string} units heights are told in; what is typed changes with them */
 function units(units) {
-  const { height, units: before } = store.get();
+  const { height, units: before, asked } = store.get();
   const up = parseHeight(height, before);
-  store.set({ units: /** @type {any} */ (units), ...('height' in up ? { height: String(Number(heightIn(up.height, /** @type {any} */ (units)).toFixed(1))) } : {}) });
+  const typed = 'height' in up ? plainText(heightIn(up.height, /** @type {any} */ (units)), 1) : height;
+  store.set({ units: /** @type {any} */ (units), height: typed, asked: asked && { where: asked.where, height: asked.height === height ? typed : asked.height } });
   try {
     localStorage.setItem(UNITS, units);
   } catch {
@@ -229,12 +235,18 @@ function keep(kept) {
 
 function remembered() {
   if (location.hash.length > 1) {
-    const found = decode(location.hash);
-    const strange = Object.keys(found).length === 0 && /\bv=/.test(location.hash);
-    return strange ? { trouble: { message: 'This link was made by another version of Gainworth and cannot be read: type the position again.', field: null } } : found;
+    return { ...decode(location.hash), ...chosenUnits() };
   }
   try {
-    return { ...decode(localStorage.getItem(MEMORY) ?? ''), units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
+    return { ...decode(localStorage.getItem(MEMORY) ?? ''), ...chosenUnits() };
+  } catch {
+    return {};
+  }
+}
+
+function chosenUnits() {
+  try {
+    return { units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
   } catch {
     return {};
   }
@@ -246,8 +258,12 @@ async function start() {
     const [{ chains }, health, { cables }] = await Promise.all(['chains', 'health', 'cables'].map((one) => api.read(`/api/${one}`)));
     store.set({ chains, health, cables });
     const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
-    const { now, idea, second } = store.get();
-    store.set({ now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null });
+    const { now, idea, second, notes } = store.get();
+    const unknown = [...new Set([now, idea, second])].filter((name) => name && !known(name));
+    store.set({
+      now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null,
+      notes: [...notes, ...unknown.map((name) => `No chain “${name}” is kept here: ${name === now ? 'look at “Up now”' : 'it is left out'}.`)],
+    });
     showSources(health);
   } catch (error) {
     store.set({ trouble: { message: error.message, field: null } });
