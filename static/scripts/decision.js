@@ -39,7 +39,7 @@ export function createDecision(element, { place, back }) {
     element.classList.toggle('asking', state.asking);
     element.classList.toggle('empty', !state.answer);
     element.setAttribute('aria-busy', String(state.asking));
-    reason.textContent = verdict?.reason ?? '';
+    reason.textContent = verdict?.reason ?? (state.answer || state.asking ? '' : 'The answer compares what is up now with every chain that is kept, and says which of them is worth its price here.');
     terms.textContent = verdict ? counted(state, verdict) : '';
     const text = state.trouble?.message ?? '';
     if (trouble.textContent !== text) trouble.textContent = text;
@@ -69,14 +69,15 @@ export function createDecision(element, { place, back }) {
 
 /** @param {import('./state.js').State} state */
 function inWords(state) {
-  return `aerial at ${heightText(state.answer.roof.aerial_agl_m, state.units, 1)}`;
+  const { aerial_agl_m } = state.answer.roof;
+  return `aerial at ${heightText(aerial_agl_m, state.units, Number.isInteger(aerial_agl_m) ? 0 : 1)}`;
 }
 
 /** @param {import('./state.js').State} state */
 function invitation(state) {
   if (state.asking) return 'Looking along every path to this roof …';
   if (state.chains?.length === 0) return 'No chain is kept yet: import one, then place the roof.';
-  return 'Where is the roof? Type its position, or click it on the map.';
+  return 'Where is the roof? Type its position above, or click it on the map.';
 }
 
 /** @param {import('./state.js').State} state @param {any} verdict */

@@ -10,6 +10,8 @@ import { chainsAsked, columns, NOTHING, question, shownCell } from './state.js';
  */
 export function createFollow(api, store) {
   const had = { path: '', skyline: '', heights: '', steps: '' };
+  /** Answers that ledger and heights were asked for: readings and what is on the air change them, too. @type {Record<string, any>} */
+  const hadAt = {};
   /** Answers at which a question failed: it is not put again before there is another. @type {Record<string, any>} */
   const failed = {};
   const asks = {
@@ -22,9 +24,12 @@ export function createFollow(api, store) {
   /** @param {'path'|'skyline'|'heights'|'steps'} what @param {string} of @param {any} query @param {(found: any) => any} made */
   async function once(what, of, query, made) {
     const { answer } = store.get();
-    if (had[what] === of || failed[what] === answer) return;
+    const another = had[what] !== of;
+    const newer = (what === 'steps' || what === 'heights') && hadAt[what] !== answer;
+    if (!(another || newer) || failed[what] === answer) return;
     had[what] = of;
-    if (what === 'skyline' || what === 'heights') store.set({ [what]: null });
+    hadAt[what] = answer;
+    if (another && (what === 'skyline' || what === 'heights')) store.set({ [what]: null });
     try {
       const found = await asks[what](query);
       if (found) store.set({ [what]: made(found) });

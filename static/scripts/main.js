@@ -252,23 +252,32 @@ function chosenUnits() {
   }
 }
 
+/** Asks what a link or the last visit asked; what it names and is not there is said. */
+async function assessLink() {
+  const { now, idea, second, cell, chains } = store.get();
+  const say = (words) => store.set({ notes: [...store.get().notes, words] });
+  if (chains) {
+    const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
+    const kept = (name) => (name && known(name) ? name : null);
+    store.set({ now: kept(now) ?? chainNow(chains), idea: kept(idea), second: kept(second) });
+    for (const name of new Set([now, idea, second])) if (name && !known(name)) say(`No chain “${name}” is kept here: ${name === now ? 'look at “Up now”' : 'it is left out'}.`);
+  }
+  if (!store.get().where) return;
+  await assess();
+  const { answer } = store.get();
+  if (cell && answer && !answer.multiplexes.some((one) => one.id === cell.multiplex)) say(`No multiplex “${cell.multiplex}” is in reach: the one that changes most is shown.`);
+}
+
 async function start() {
   store.set(/** @type {any} */ (remembered()));
   try {
     const [{ chains }, health, { cables }] = await Promise.all(['chains', 'health', 'cables'].map((one) => api.read(`/api/${one}`)));
     store.set({ chains, health, cables });
-    const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
-    const { now, idea, second, notes } = store.get();
-    const unknown = [...new Set([now, idea, second])].filter((name) => name && !known(name));
-    store.set({
-      now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null,
-      notes: [...notes, ...unknown.map((name) => `No chain “${name}” is kept here: ${name === now ? 'look at “Up now”' : 'it is left out'}.`)],
-    });
     showSources(health);
   } catch (error) {
     store.set({ trouble: { message: error.message, field: null } });
   }
-  if (store.get().where) await assess();
+  await assessLink();
   document.documentElement.dataset.ready = 'yes';
   void later();
 }
@@ -298,8 +307,9 @@ store.subscribe((state) => {
   follow(state);
 });
 window.addEventListener('hashchange', () => {
-  store.set(decode(location.hash));
-  if (store.get().where) void assess();
+  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash) });
+  void assessLink();
+  if (store.get().pins.length) void actions.comparePins();
 });
 for (const panel of panels) panel.update(store.get());
 void start();

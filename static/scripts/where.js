@@ -39,7 +39,7 @@ export function createWhere(element, { type, submit, choose }) {
       .filter(([name]) => name !== state.now)
       .map(([name, title]) => [name, answers.get(name) ? `${title}: ${answers.get(name)}` : title]);
     const best = state.answer?.verdicts[0];
-    options(idea, [['', best ? `${noneIsWorthIt(state.answer) ? 'nearest' : 'best'}: ${titleOf(state, best.candidate)}` : 'the best there is'], ...judged], state.idea ?? '');
+    options(idea, [['', best ? `${noneIsWorthIt(state.answer) ? 'nearest' : 'best'}: ${titleOf(state, best.candidate)}` : 'the best'], ...judged], state.idea ?? '');
     const first = columns(state)[1]?.name;
     options(second, [['', 'none'], ...judged.filter(([name]) => name !== first)], state.second ?? '');
     problem(place, state.trouble, 'where', 'latitude_deg', 'longitude_deg');
