@@ -113,6 +113,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     points();
     shape();
     scan.hidden = state.now === NOTHING;
+    part(element, '.no-scan').hidden = !scan.hidden;
   }
 
   function points() {

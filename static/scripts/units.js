@@ -89,7 +89,7 @@ export function bearingText(bearing) {
 
 /** @param {number} km @param {Units} [units] @returns {string} */
 export function distanceText(km, units = 'metric') {
-  const value = units === 'imperial' ? km * MILES_PER_KM : km;
+  const value = distanceIn(km, units);
   return `${numberText(value, value < 10 ? 1 : 0)}\u00a0${units === 'imperial' ? 'mi' : 'km'}`;
 }
 
@@ -101,6 +101,20 @@ export function heightText(metres, units = 'metric', digits = 0) {
 /** @param {number} metres @param {Units} units @returns {number} in the units of heights */
 export function heightIn(metres, units) {
   return units === 'imperial' ? metres * FEET_PER_M : metres;
+}
+
+/** @param {number} km @param {Units} units @returns {number} in the units of distances */
+export function distanceIn(km, units) {
+  return units === 'imperial' ? km * MILES_PER_KM : km;
+}
+
+/** @param {string} text "150", "150 km", "90 mi" @param {Units} units of a bare number @returns {number|null} kilometres; null where it is no distance */
+export function parseDistance(text, units) {
+  const match = /^(.*?)\s*(km|mi)?$/i.exec(text.trim());
+  const value = parseNumber(match?.[1] ?? '');
+  if (value === null || value < 0) return null;
+  const miles = match?.[2] ? match[2].toLowerCase() === 'mi' : units === 'imperial';
+  return miles ? Math.round(value / MILES_PER_KM * 100) / 100 : value;
 }
 
 /**
@@ -137,7 +151,7 @@ export function placeText(place) {
  * @returns {{place: {latitude_deg: number, longitude_deg: number}} | {problem: string}}
  */
 export function parsePlace(text) {
-  const example = 'write it as latitude, longitude in degrees, such as 12.345, -6.789';
+  const example = 'write it as latitude, longitude in degrees, such as 12.345, -6.789 (degrees and minutes, grid references and Plus Codes are read, too)';
   const tidy = text.trim().replace(/[\u2212\u2013]/g, '-').replace(/°/g, ' ');
   if (!tidy) return { problem: `The position is empty: ${example}.` };
   const number = /(\d),(\d)(?=[^,]*[;\s])/.test(tidy) && !/,\s/.test(tidy) && !/\./.test(tidy)

@@ -9,7 +9,7 @@ import pytest
 from playwright.sync_api import expect
 
 from app.telling import chance_words
-from tests.browser.steps import NORTH, SHEETS, WEST, answered, open_sheet, show, still
+from tests.browser.steps import NORTH, SHEETS, WEST, answered, open_sheet, sentence, show, still
 
 pytestmark = pytest.mark.browser
 
@@ -188,6 +188,18 @@ def test_transmitters_are_searched_filtered_and_switched_off(page):
     expect(page.locator(".transmitters .count")).to_contain_text("Nothing fits")
 
 
+def test_a_value_that_is_no_number_is_said_and_changes_nothing(page):
+    show(page, "assumptions")
+    told = sentence(page)
+    page.get_by_label("One more multiplex is worth").fill("much")
+    page.get_by_label("One more multiplex is worth").press("Tab")
+    expect(page.locator(".assumptions .problem")).to_contain_text("“much” is not a number")
+    page.get_by_label("One more multiplex is worth").fill("")
+    page.get_by_label("One more multiplex is worth").press("Tab")
+    expect(page.locator(".assumptions .problem")).to_have_text("")
+    assert sentence(page) == told
+
+
 def test_an_assumption_is_changed_counted_and_reset(page):
     show(page, "assumptions")
     told = page.locator(".sentence").inner_text()
@@ -211,6 +223,19 @@ def test_feet_and_miles_hold_for_heights_distances_and_sentences(fresh):
     expect(fresh.locator(".where")).to_contain_text("ft above ground")
     expect(fresh.locator(".roofline")).to_contain_text("33\u00a0ft")
     expect(fresh.locator(".masts")).to_contain_text("mi")
+    expect(fresh.get_by_label("Look for transmitters within")).to_have_value("93.21")  # 150 km of 1.609344 km
+    open_sheet(fresh, "Higher or elsewhere")
+    with fresh.expect_response("**/api/assess"):
+        fresh.get_by_role("button", name="Add what stands there").click()
+    away = fresh.get_by_label("Away ft")
+    expect(away).to_have_value("98.4")  # 30 m of 0.3048 m
+    away.fill("far")
+    away.press("Tab")
+    expect(fresh.locator(".elsewhere .problem")).to_contain_text("“far” is not a number")
+    with fresh.expect_response("**/api/assess") as asked:
+        away.fill("100")
+        away.press("Tab")
+    assert json.loads(asked.value.request.post_data)["roof"]["obstacles"][0]["distance_m"] == 30.48
     fresh.get_by_role("tab", name="Path", exact=True).click()
     expect(fresh.locator(".path .told")).to_have_text(re.compile(r"\d\u00a0mi.*\d\u00a0ft"))
 
