@@ -58,7 +58,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     if (!done) return;
     area.value = '';
     const rest = done.scan_list?.not_recognised ?? [];
-    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${one.of}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
+    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${nameOf(one.of)}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
   });
   part(element, '.show-logbook').addEventListener('click', async () => {
     const document = await logbook();
@@ -121,7 +121,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     renew(point, [['', 'the weakest outlet'], ['aerial', 'the aerial'], ...parts.filter((one) => one.kind === 'outlet').map((one) => [one.name, one.name])]);
   }
 
-  const nameOf = (id) => state.answer.multiplexes.find((one) => one.id === id)?.name ?? id;
+  const nameOf = (id) => state.answer?.multiplexes.find((one) => one.id === id)?.name ?? id;
 
   function items() {
     const readings = state.answer.readings;

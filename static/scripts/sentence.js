@@ -96,5 +96,5 @@ function judgement(verdict, currency, reading) {
 function toRead(answer, next) {
   const emission = answer.emissions.find((one) => one.id === next?.emission);
   if (!emission) return '';
-  return `${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(next.bearing_deg)}`;
+  return `the level of ${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(next.bearing_deg)}`;
 }

@@ -23,7 +23,7 @@ def every_sheet(page: Page, width: int) -> None:
         page.locator(f"#tab-{sheet}").click()
         expect(page.locator(f"#{sheet}")).to_be_visible()
         if sheet in READY:
-            page.wait_for_selector(READY[sheet], state="attached")
+            page.wait_for_selector(READY[sheet], state="attached", timeout=60_000)
         assert widest(page) <= width, sheet
     page.locator(".changes details, details.seen").evaluate_all("all => { for (const one of all) one.open = true; }")
     page.locator(".sheet").evaluate_all("all => { for (const one of all) one.hidden = false; }")

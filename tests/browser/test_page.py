@@ -201,3 +201,18 @@ def test_nothing_jumps_while_a_new_answer_is_looked_for(page):
     held[0].continue_()
     still(page)
     assert page.evaluate(tops) == before
+
+
+def test_numbers_are_written_and_read_as_the_locale_has_them(watched, browser):
+    page = watched.open(browser, locale="de-DE")
+    answered(page)
+    expect(page.locator(".roofline .compass")).to_contain_text("11,5° west")
+    for typed in ("12,5", "12.5"):
+        page.locator("#height").fill(typed)
+        with page.expect_request("**/api/assess") as asked:
+            page.locator("#height").press("Enter")
+        assert json.loads(asked.value.post_data)["roof"]["aerial_agl_m"] == 12.5
+        still(page)
+    page.locator("#height").fill("1.250")
+    page.locator("#height").press("Enter")
+    expect(page.locator("#height-problem")).to_contain_text("“1.250” is not a height")

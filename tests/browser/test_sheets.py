@@ -104,6 +104,9 @@ def test_only_part_of_the_zone_is_filled_and_the_line_is_drawn(page):
     assert page.locator(".drawing .line").get_attribute("d").startswith("M")
     assert page.locator(".drawing .taken").get_attribute("d").startswith("M")
     assert "into the line" in page.locator(".drawing .said.halo").inner_html()
+    facts = page.locator(".path .facts").inner_text()
+    assert re.search(r"P\.1546\s+\d+\.\d dB", facts)
+    assert re.search(r"P\.1812\s+\d+\.\d dB", facts)
 
 
 def test_readings_are_entered_move_predictions_and_are_forgotten(page):
@@ -180,12 +183,27 @@ def test_transmitters_are_searched_filtered_and_switched_off(page):
         rows.locator("input").uncheck()
     still(page)
     page.get_by_label("Search", exact=True).fill("")
-    page.get_by_label("Show").select_option("off")
+    page.get_by_label("Show", exact=True).select_option("off")
     expect(rows).to_have_count(1)
     with page.expect_response("**/api/assess"):
         rows.locator("input").check()
     page.get_by_label("Search", exact=True).fill("no such mast")
     expect(page.locator(".transmitters .count")).to_contain_text("Nothing fits")
+
+
+def test_a_channel_that_closes_says_when(page):
+    def closing(route) -> None:
+        answer = route.fetch().json()
+        for emission in answer["emissions"]:
+            emission["valid_to"] = "2031-05-09"
+        route.fulfill(body=json.dumps(answer), content_type="application/json")
+
+    page.route("**/api/assess", closing)
+    page.route("**/api/emissions", closing)
+    show(page, "transmitters")
+    expect(page.locator(".changes .from").first).to_contain_text("closes on May 9, 2031")
+    page.get_by_label("Show", exact=True).select_option("dated")
+    expect(page.locator(".transmitters tbody tr").first).to_contain_text("closes on")
 
 
 def test_a_value_that_is_no_number_is_said_and_changes_nothing(page):
