@@ -9,7 +9,7 @@ import pytest
 from playwright.sync_api import expect
 
 from app.telling import chance_words
-from tests.browser.steps import NORTH, SHEETS, WEST, answered, open_sheet, sentence, show, still
+from tests.browser.steps import NORTH, SHEETS, WEST, answered, open_sheet, sentence, settled, show, still
 
 pytestmark = pytest.mark.browser
 
@@ -258,19 +258,31 @@ def test_feet_and_miles_hold_for_heights_distances_and_sentences(fresh):
     expect(fresh.locator(".path .told")).to_have_text(re.compile(r"\d\u00a0mi.*\d\u00a0ft"))
 
 
-def test_places_stand_side_by_side(page):
+def test_three_places_stand_side_by_side_and_one_is_gone_to(page):
     show(page, "elsewhere")
     page.get_by_role("button", name="Keep this place to compare").click()
     expect(page.locator(".places thead th")).to_have_count(2)
+    settled(page)
+    roof = page.locator(".overlay .roof-point").bounding_box()
+    page.mouse.move(roof["x"] + 2, roof["y"] + 2)
+    page.mouse.down()
+    page.mouse.move(roof["x"] + 4, roof["y"] + 22, steps=4)
+    page.mouse.up()
+    still(page)
+    page.get_by_role("button", name="Keep this place to compare").click()
     page.get_by_label("Roof at").fill(f"{WEST.latitude_deg}, {WEST.longitude_deg}")
     with page.expect_response("**/api/assess"):
         page.get_by_role("button", name="Work it out").click()
     still(page)
-    first, second = page.locator(".places tbody tr").first.locator("td").all_inner_texts()
-    assert first != second
+    expect(page.locator(".places thead th b")).to_have_text(["here", "A", "B"])
+    expect(page.locator(".places")).not_to_contain_text("working it out")
+    here, first, second = page.locator(".places tbody tr").first.locator("td").all_inner_texts()
+    assert here != first
+    assert re.match(r".+ of 8", second)
     page.get_by_role("button", name="Go to A").click()
     expect(page.get_by_label("Roof at")).to_have_value(re.compile(f"^{NORTH.latitude_deg}"))
-    page.get_by_role("button", name="Leave out A").click()
+    for name in "AB":
+        page.get_by_role("button", name=f"Leave out {name}").click()
     expect(page.locator(".places")).to_be_hidden()
 
 
