@@ -10,8 +10,8 @@ import { chainsAsked, columns, NOTHING, question, shownCell } from './state.js';
  */
 export function createFollow(api, store) {
   const had = { path: '', skyline: '', heights: '', steps: '' };
-  /** Answers that ledger and heights were asked for: readings and what is on the air change them, too. @type {Record<string, any>} */
-  const hadAt = {};
+  /** The answer that the ledger was asked for: readings and what is on the air change it, too. @type {any} */
+  let stepsOf = null;
   /** Answers at which a question failed: it is not put again before there is another. @type {Record<string, any>} */
   const failed = {};
   const asks = {
@@ -25,10 +25,10 @@ export function createFollow(api, store) {
   async function once(what, of, query, made) {
     const { answer } = store.get();
     const another = had[what] !== of;
-    const newer = (what === 'steps' || what === 'heights') && hadAt[what] !== answer;
+    const newer = what === 'steps' && stepsOf !== answer;
     if (!(another || newer) || failed[what] === answer) return;
     had[what] = of;
-    hadAt[what] = answer;
+    if (what === 'steps') stepsOf = answer;
     if (another && (what === 'skyline' || what === 'heights')) store.set({ [what]: null });
     try {
       const found = await asks[what](query);
@@ -69,7 +69,8 @@ export function createFollow(api, store) {
       const chains = chainsAsked(state).filter((one) => names.includes(one.name ?? one));
       const { worth_per_multiplex, reading_cost, readings, now, ...asked } = question(state, aerial_agl_m);
       const { aerial_agl_m: _, ...rest } = asked.roof;
-      void once('heights', JSON.stringify([{ ...asked, roof: rest }, chains]), { ...asked, chains, roof: asked.roof }, (found) => ({ rows: found.height }));
+      const kept = (state.chains ?? []).map((one) => one.updated); // and what is on the air: both may change under the same names
+      void once('heights', JSON.stringify([{ ...asked, roof: rest }, chains, kept, answer.emissions.map((one) => one.id)]), { ...asked, chains, roof: asked.roof }, (found) => ({ rows: found.height }));
     }
   };
 }

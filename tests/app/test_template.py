@@ -249,6 +249,9 @@ def test_a_last_line_cut_short_is_refused(read):
     assert only_refusal(read(cut)).line == 3
 
 
+# Files that cannot be used at all
+
+
 def header_without(*left_out):
     return ",".join(column for column in COLUMNS if column not in left_out).encode()
 

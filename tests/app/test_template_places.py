@@ -83,6 +83,3 @@ def test_one_mast_has_one_place_and_one_ground(read):
 def test_a_date_line_mast_may_be_written_from_both_sides(read):
     sides = {"longitude_deg": "180"}, {"longitude_deg": "-180", "channel": "48"}
     assert read(text_of(*sides)).refused == ()
-
-
-# Files that cannot be used at all

@@ -34,7 +34,7 @@ FLAGS = [
     "--disable-component-update",
     "--disable-sync",
 ]
-expect.set_options(timeout=15_000)  # a busy machine is not a fault of the page
+expect.set_options(timeout=45_000)  # a busy machine is not a fault of the page
 WINDOW: ViewportSize = {"width": 1280, "height": 900}
 # What other pages of the context kept is not this one's memory; sessionStorage is a page's own.
 FORGET = """try {
@@ -103,7 +103,7 @@ class Watched:
     def page_in(self, context: BrowserContext) -> Page:
         """Open a page whose console and requests are watched."""
         page = context.new_page()
-        page.set_default_timeout(15_000)
+        page.set_default_timeout(45_000)
         page.on("pageerror", lambda error: self.wrong.append(str(error)))
         page.on("console", self._hear)
         page.on("request", self._see)

@@ -191,19 +191,19 @@ def test_transmitters_are_searched_filtered_and_switched_off(page):
     expect(page.locator(".transmitters .count")).to_contain_text("Nothing fits")
 
 
-def test_a_channel_that_closes_says_when(page):
+def test_a_channel_that_closes_says_when(fresh):
     def closing(route) -> None:
         answer = route.fetch().json()
         for emission in answer["emissions"]:
             emission["valid_to"] = "2031-05-09"
         route.fulfill(body=json.dumps(answer), content_type="application/json")
 
-    page.route("**/api/assess", closing)
-    page.route("**/api/emissions", closing)
-    show(page, "transmitters")
-    expect(page.locator(".changes .from").first).to_contain_text("closes on May 9, 2031")
-    page.get_by_label("Show", exact=True).select_option("dated")
-    expect(page.locator(".transmitters tbody tr").first).to_contain_text("closes on")
+    fresh.route("**/api/assess", closing)
+    fresh.route("**/api/emissions", closing)
+    show(fresh, "transmitters")
+    expect(fresh.locator(".changes .from").first).to_contain_text("closes on May 9, 2031")
+    fresh.get_by_label("Show", exact=True).select_option("dated")
+    expect(fresh.locator(".transmitters tbody tr").first).to_contain_text("closes on")
 
 
 def test_a_value_that_is_no_number_is_said_and_changes_nothing(page):
