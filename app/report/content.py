@@ -13,12 +13,11 @@ from app.report.commissioning import sheet_rows
 from app.request import NOTHING, AssessRequest
 from app.site import place
 from app.stored_chains import stored_chain
-from app.telling import RODS, chance_words, count_words
+from app.telling import LEAST_CHANGE, RODS, chance_words, change_words, count_words, none_is_worth_it
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
 Document = dict[str, Any]
-LEAST_CHANGE = 0.05
 MOST_PATHS = 12
 KIND_WORDS = {"level": "dB(µV)", "cn": "dB C/N", "mer": "dB MER"}
 
@@ -94,19 +93,16 @@ def _decision(answer: Document, verdict: Document | None) -> str:
     if verdict is None:
         return "There is one chain only: nothing to compare it with."
     candidate = answer["chains"][verdict["candidate"]]
-    extra, price = verdict["expected_extra"], verdict["price_difference"]
+    price = verdict["price_difference"]
     bare = verdict["baseline"] == NOTHING
     today = (
         "Nothing is up today."
         if bare
         else f"Today {count_words(answer['chains'][verdict['baseline']]['expected_count'])} of {total}."
     )
-    if abs(extra) < LEAST_CHANGE:
-        change = f"{candidate['title']} adds nothing"
-    elif extra < 0:
-        change = f"{candidate['title']} loses {count_words(-extra)}"
-    else:
-        change = f"{candidate['title']} {'brings' if bare else 'adds'} {count_words(extra)}"
+    if none_is_worth_it(answer["verdicts"]):
+        today += f" None of the {len(answer['verdicts'])} ideas is worth it."
+    change = f"{candidate['title']} {change_words(answer['multiplexes'], verdict)}"
     cost = "; its price is not known" if price is None else f" for {_money(price, candidate['currency'])}"
     limit = max(0.0, verdict["break_even_price"])
     word = verdict["answer"] or "no answer without a price"
