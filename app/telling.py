@@ -44,7 +44,7 @@ def count_words(count: float) -> str:
 def has_moved(before: Mapping[str, Any] | None, after: Mapping[str, Any] | None) -> bool:
     """Whether a person would call two cells of a multiplex different; None: no aerial."""
     step = abs((after["chance"] if after else 0.0) - (before["chance"] if before else 0.0))
-    return step >= LEAST_CHANGE or (before is not None and after is not None and before["grade"] != after["grade"])
+    return step >= LEAST_CHANGE or (before is not None and before["grade"] != (after or {}).get("grade"))
 
 
 def change_words(multiplexes: Sequence[Mapping[str, Any]], verdict: Mapping[str, Any]) -> str:

@@ -13,7 +13,7 @@ from app.report.commissioning import sheet_rows
 from app.request import NOTHING, AssessRequest
 from app.site import place
 from app.stored_chains import stored_chain
-from app.telling import LEAST_CHANGE, RODS, chance_words, change_words, count_words, none_is_worth_it
+from app.telling import RODS, chance_words, change_words, count_words, has_moved, none_is_worth_it
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
@@ -156,9 +156,8 @@ def _changes(answer: Document, names: Sequence[str]) -> tuple[list[Document], li
     for multiplex in answer["multiplexes"]:
         cells = [multiplex["chains"].get(name) for name in names]
         chances = [cell["chance"] if cell else 0.0 for cell in cells]
-        grades = {cell["grade"] if cell else None for cell in cells}
         words = [f"{chance_words(cell['chance'])} {cell['grade']}" if cell else "no aerial" for cell in cells]
-        if max(chances) - min(chances) >= LEAST_CHANGE or len(grades) > 1:
+        if any(has_moved(cells[0], cell) for cell in cells[1:]):
             emission = _emission(answer, next(cell["emission"] for cell in reversed(cells) if cell))
             origin = f"{_channel(emission)} from {emission['transmitter_name']}"
             changed.append((chances, {"name": multiplex["name"], "from": origin, "cells": words}))
