@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from app.disturbance import Company, company_of
+from app.company import Company, company_of
 from app.fields import EmissionField
 from app.interferers import Interferer
 from app.link_budget import Signals
@@ -38,11 +38,7 @@ class Air:
     masts: tuple[str, ...]  # (e,) transmitters within 1 km share one name
     bands: tuple[str, ...]  # (e,)
     doubtful_erp: NDArray[np.bool_]  # (e,)
-
-    @property
-    def multiplex_of(self) -> tuple[str, ...]:
-        """Multiplex of each emission."""
-        return tuple(field.emission.multiplex_id for field in self.fields)
+    multiplex_of: tuple[str, ...]  # (e,)
 
 
 def air_of(fields: Sequence[EmissionField], interferers: Sequence[Interferer]) -> Air:
@@ -73,6 +69,7 @@ def air_of(fields: Sequence[EmissionField], interferers: Sequence[Interferer]) -
         masts=_masts(kept),
         bands=tuple(_band(field.emission.frequency_mhz) for field in kept),
         doubtful_erp=np.array([field.erp_is_doubtful for field in kept], dtype=bool),
+        multiplex_of=tuple(field.emission.multiplex_id for field in kept),
     )
 
 

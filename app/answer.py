@@ -3,25 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from datetime import date
 from typing import Any
 
 import numpy as np
 
 from app.air import Air
+from app.answer_cells import cells_of, ledger_of_readings, probability
 from app.assumptions import Assumptions
 from app.cautions import CAUTIONS, SHOWN_NAMES, cautions_at
 from app.chain.parts import Chain
-from app.chance import GRADES, exceedance, grade, not_too_much
+from app.chance import GRADES, grade, rows_of
 from app.declination import compass_document
-from app.disturbance import State
 from app.evidence import Evidence
 from app.fields import EmissionField
 from app.interference import SPECTRAL
 from app.ledger import Books, books_of, ledger, to_the_field
-from app.margins import FloatArray, Turned
-from app.outlet_ledger import Step
+from app.margins import Turned
 from app.reading_value import MeasureNext
 from app.readings_document import readings_document
 from app.request import AssessRequest
@@ -30,8 +28,6 @@ from app.sources import SOURCES
 from app.transmitters.store import Store
 from app.turning import turning_document
 from app.verdict import HAVE, Outcome, Verdict
-
-QUANTILE_95 = 1.6449  # of the standard normal
 
 
 def answer_document(
@@ -50,9 +46,14 @@ def answer_document(
 ) -> dict[str, Any]:
     """Return the document of the interface; figures that do not exist yet are null, with a caution."""
     names = {key: multiplex.name for key, multiplex in store.multiplexes().items()}
+    rows = rows_of(air.multiplex_of)
+    ids: dict[str, list[str]] = {}
+    for field in fields:
+        ids.setdefault(field.emission.multiplex_id, []).append(field.emission.id)
     place = {field.emission.id: e for e, field in enumerate(air.fields)}
-    spreads = {key: _spread(one) for key, one in turned.items()}
-    books = {key: books_of(one, air, request, assumptions) for key, one in turned.items()}
+    cells = {key: cells_of(one, air) for key, one in turned.items()}
+    with_ledgers = request.ledgers is None or len(request.ledgers) > 0
+    books = {key: books_of(one, air, request, assumptions) for key, one in turned.items() if with_ledgers}
     return {
         "roof": {
             "latitude_deg": request.roof.latitude_deg,
@@ -70,12 +71,15 @@ def answer_document(
             {
                 "id": name,
                 "name": names.get(name, name),
-                "emissions": [f.emission.id for f in fields if f.emission.multiplex_id == name],
-                "chains": {key: _multiplex_cell(name, m, outcomes[key], turned[key], air) for key in turned},
+                "emissions": ids[name],
+                "chains": {
+                    key: _multiplex_cell(rows[name], m, outcomes[key], one, cells[key], air)
+                    for key, one in turned.items()
+                },
             }
             for m, name in enumerate(multiplexes)
         ],
-        "emissions": [_emission(request, field, fields, place, turned, spreads, air, books) for field in fields],
+        "emissions": [_emission(request, field, place, turned, cells, air, books) for field in fields],
         "chains": {
             chain.name: _chain(chain, turned.get(chain.name), outcomes.get(chain.name), air) for chain in chains
         },
@@ -87,30 +91,15 @@ def answer_document(
     }
 
 
-@dataclass(frozen=True, slots=True)
-class Spread:
-    """Errors and chances of one chain turned one way, reckoned once for all its outlets."""
-
-    sigma_db: FloatArray  # (e,)
-    read_db: FloatArray  # (e,) by how much readings moved the margin
-    chance: FloatArray  # (e,) that the margin is at least 0
-    loudest_sd_db: float
-
-
-def _spread(turned: Turned) -> Spread:
-    cells, sigma_db = turned.cells, turned.cells.sigma_db
-    loudest_sd_db = float(turned.median.of_loudest(sigma_db)[0])
-    return Spread(sigma_db, cells.mean_db - cells.median_db, cells.chance, loudest_sd_db)
-
-
-def _multiplex_cell(name: str, m: int, outcome: Outcome, turned: Turned, air: Air) -> dict[str, Any]:
-    owned = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
-    best = max(owned, key=lambda e: turned.chance[e])
-    chance = _probability(outcome.chance[m])
+def _multiplex_cell(
+    rows: Sequence[int], m: int, outcome: Outcome, turned: Turned, cells: Sequence[dict[str, Any]], air: Air
+) -> dict[str, Any]:
+    best = max(rows, key=lambda e: turned.chance[e])
+    chance = probability(outcome.chance[m])
     return {
         "chance": chance,
         "grade": grade(chance),  # of the figure that is shown
-        "held_back_by": _limit(turned, best),
+        "held_back_by": cells[best]["held_back_by"],
         "emission": air.fields[best].emission.id,
         "pointing_deg": turned.pointing_deg,
     }
@@ -119,17 +108,21 @@ def _multiplex_cell(name: str, m: int, outcome: Outcome, turned: Turned, air: Ai
 def _emission(
     request: AssessRequest,
     field: EmissionField,
-    fields: Sequence[EmissionField],
     place: Mapping[str, int],
     turned: Mapping[str, Turned],
-    spreads: Mapping[str, Spread],
+    cells: Mapping[str, Sequence[dict[str, Any]]],
     air: Air,
     books: Mapping[str, Books],
 ) -> dict[str, Any]:
     emission, path = field.emission, field.path
     e = place.get(emission.id)
-    told = e is not None and (request.ledgers is None or emission.id in request.ledgers)
-    before: dict[State, list[Step]] = to_the_field(field, request.availability_percent) if told else {}
+    chains = {} if e is None else {name: cells[name][e] for name in turned}
+    if e is not None and (request.ledgers is None or emission.id in request.ledgers):
+        before = to_the_field(field, request.availability_percent)
+        for name, cell in chains.items():
+            for outlet in cell["outlets"]:
+                outlet["ledger"] = ledger(turned[name], e, field, air, books[name], outlet["name"], before)
+                outlet["ledger"] += ledger_of_readings(turned[name], e, outlet["margin_db"])
     return {
         "id": emission.id,
         "transmitter": field.transmitter.id,
@@ -176,95 +169,13 @@ def _emission(
             "fade_db": None if path is None else round(field.fade_db, 2),
             "enhancement_db": None if path is None else round(field.enhancement_db, 2),
         },
-        "chains": {}
-        if e is None
-        else {name: _cell(one, spreads[name], e, field, air, books[name], before) for name, one in turned.items()},
-    }
-
-
-def _cell(
-    turned: Turned,
-    spread: Spread,
-    e: int,
-    field: EmissionField,
-    air: Air,
-    books: Books,
-    before: Mapping[State, Sequence[Step]],
-) -> dict[str, Any]:
-    sigma_db, read_db = float(spread.sigma_db[e]), float(spread.read_db[e])
-    limit = _limit(turned, e)
-    loudest_sd_db = np.array(spread.loudest_sd_db)
-    reception = turned.raised if turned.state(e) == "b" else turned.faded
-    outlets = []
-    for number, (outlet, median) in enumerate(zip(reception.outlets, turned.median.outlets, strict=True)):
-        margin_db = float(outlet.margin_db[e]) + read_db
-        headroom_db = float(median.headroom_db[e])
-        at_worst = float(outlet.margin_db[e]) == float(turned.margin_db[e])
-        enough = float(spread.chance[e])
-        if not at_worst:  # better off than the outlet that decides
-            enough = max(enough, float(exceedance(np.array(margin_db), np.array(sigma_db))))
-        outlets.append(
-            {
-                "name": outlet.name,
-                "level_dbuv": round(float(outlet.level_dbuv[e]), 2),
-                "level_median_dbuv": round(float(median.level_dbuv[e]), 2),
-                "cn_db": round(float(outlet.cn_db[e]), 2),
-                "required_cn_db": round(float(air.signals.required_cn_db[e]), 2),
-                "margin_db": round(margin_db, 2),
-                "headroom_db": round(headroom_db, 2),
-                "chance": _probability(float(not_too_much(np.array(enough), np.array(headroom_db), loudest_sd_db))),
-                "held_back_by": _limit(turned, e, number),
-                "ledger": []
-                if not before
-                else [
-                    *ledger(turned, e, field, air, books, outlet.name, before),
-                    *_ledger_of_readings(turned, e, read_db, margin_db),
-                ],
-            }
-        )
-    margin_db = float(turned.margin_db[e]) + read_db
-    return {
-        "margin_db": round(margin_db, 2),
-        "margin_p05_db": round(margin_db - QUANTILE_95 * sigma_db, 2),
-        "margin_p95_db": round(margin_db + QUANTILE_95 * sigma_db, 2),
-        "sigma_db": round(sigma_db, 2),
-        "chance": _probability(turned.chance[e]),
-        "held_back_by": limit,
-        "outlets": outlets,
-    }
-
-
-def _ledger_of_readings(turned: Turned, e: int, read_db: float, margin_db: float) -> list[dict[str, Any]]:
-    """The step by which readings of this roof moved the margin; none without readings."""
-    if turned.cells.known is None:
-        return []
-    return [
-        {
-            "step": "readings of this roof",
-            "value_db": round(read_db, 2),
-            "total": round(margin_db, 2),
-            "source": "conditioning of the error model on the readings listed",
-            "state": turned.state(e),
-        }
-    ]
-
-
-def _limit(turned: Turned, e: int, outlet: int | None = None) -> dict[str, Any]:
-    held = turned.held_back(e, outlet)
-    by = None if held.by is None else turned.company.interferers[held.by]
-    return {
-        "limit": held.limit,
-        "state": held.state,
-        "emission": None if by is None else by.emission.id,
-        "transmitter_name": None if by is None else by.transmitter.name,
-        "bearing_deg": None if by is None else round(by.bearing_deg, 2),
-        "next_db": _rounded(held.next_db),
+        "chains": chains,
     }
 
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
     chances = outcome.chance if outcome else np.zeros(0)
-    counts: dict[str, int] = {word: sum(grade(_probability(one)) == word for one in chances) for _, word in GRADES}
+    counts: dict[str, int] = {word: sum(grade(probability(one)) == word for one in chances) for _, word in GRADES}
     return {
         "title": chain.title or chain.name,
         "price": chain.price,
@@ -292,7 +203,7 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "candidate": verdict.candidate,
         "answer": verdict.answer,
         "expected_worth": _rounded(verdict.expected_worth),
-        "chance_of_gain": _probability(verdict.chance_of_gain),
+        "chance_of_gain": probability(verdict.chance_of_gain),
         "expected_extra": round(verdict.expected_extra, 3),
         "expected_extra_error": round(verdict.expected_extra_error, 4),
         "price_difference": _rounded(verdict.price_difference),
@@ -330,10 +241,6 @@ def _disturbed_by(e: int, air: Air) -> list[str]:
 
 def _register(source: Any) -> dict[str, str]:
     return {"id": source.id, "title": source.name, "document": source.attribution, "licence": source.licence}
-
-
-def _probability(value: float) -> float:
-    return round(float(np.clip(value, 0, 1)), 4)
 
 
 def _rounded(value: float | None) -> float | None:

@@ -19,6 +19,7 @@ from app.chain_file import stored_parts
 from app.chain_notes import unused_ports
 from app.errors import ChainError
 from app.link_budget import hear
+from app.mapped import settled
 from app.margins import turn
 from app.request import AssessRequest
 from app.site import site_of
@@ -69,6 +70,7 @@ def block_document(
         aerial,
     )
     assumptions = Assumptions(request.assumptions)
+    request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
     multiplexes = sorted(set(air.multiplex_of))

@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from datetime import date
 
 from app.air import SAME_MAST_KM, Air
 from app.chain.parts import Chain
 from app.climate import SEASON
-from app.fields import EmissionField
+from app.fields import EmissionField, Found
+from app.mobile import MOBILE
 from app.request import AssessRequest
 from app.site import Site
+from app.transmitters.model import Emission
 from app.transmitters.store import Store
 
 CAUTIONS = (
@@ -74,6 +77,36 @@ def cautions_at(
         )
         cautions.append(f"Interference from {names} is reckoned without the ground on its way.")
     return cautions
+
+
+def off_air_notes(request: AssessRequest, store: Store, on_the_air: Sequence[Found], day: date) -> list[str]:
+    """Say which channels in reach closed, or are not yet on the air, and so take no part.
+
+    Nothing is said of one that another row of the same mast, multiplex and frequency has followed.
+    """
+    roof = request.roof
+    present = {_slot(one) for one, *_ in on_the_air}
+    found = [
+        (emission, mast)
+        for emission, mast, *_ in store.off_air_within(roof.latitude_deg, roof.longitude_deg, request.reach_km, day)
+        if emission.system != MOBILE and _slot(emission) not in present
+    ]
+    if not found:
+        return []
+    names = store.multiplexes()
+    told = []
+    for emission, mast in found[:SHOWN_NAMES]:
+        name = names[emission.multiplex_id].name if emission.multiplex_id in names else emission.multiplex_id
+        closed = emission.valid_to is not None and emission.valid_to < day
+        when = f"closed on {emission.valid_to}" if closed else f"not on the air before {emission.valid_from}"
+        on = f"channel {emission.channel}" if emission.channel else f"{emission.frequency_mhz:g} MHz"
+        told.append(f"{name} on {on} from {mast.name} ({when})")
+    more = f" and {len(found) - SHOWN_NAMES} more" if len(found) > SHOWN_NAMES else ""
+    return [f"Not on the air on {day} and left out: {', '.join(told)}{more}."]
+
+
+def _slot(emission: Emission) -> tuple[str, str, float]:
+    return emission.transmitter_id, emission.multiplex_id, emission.frequency_mhz
 
 
 def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:

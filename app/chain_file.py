@@ -151,7 +151,7 @@ def read_text(name: str, text: str) -> tuple[list[Chain], list[Part]]:
     """Chains and parts of a TOML text; `name` is what errors call it."""
     try:
         document = tomllib.loads(text)
-    except tomllib.TOMLDecodeError as error:
+    except (ValueError, RecursionError) as error:  # also numbers and nesting that no parser takes
         raise ChainError(
             f"{name}: is no TOML ({error}): mend that line, or begin with `gainworth chains export`", field="file"
         ) from error

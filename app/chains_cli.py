@@ -7,12 +7,12 @@ from typing import Annotated
 
 import typer
 
-from app.cli_tools import Json, mendable, place, show
+from app.cli_tools import Json, mendable, number, place, show, whole
 
 chains = typer.Typer(help="Aerials with everything behind them.", no_args_is_help=True)
 
 At = Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")]
-Height = Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")]
+Height = Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.", parser=number)]
 Names = Annotated[list[str] | None, typer.Option("--chain", metavar="NAME", help="Chain; may be repeated.")]
 
 
@@ -84,10 +84,10 @@ def sweep(at: At, height: Height = 10.0, names: Names = None, heights: bool = Tr
 def cheapest(
     at: At,
     height: Height = 10.0,
-    outlets: Annotated[int, typer.Option(help="How many outlets.")] = 1,
-    feeder: Annotated[float, typer.Option(metavar="M", help="Length of feeder needed.")] = 15.0,
-    labour: Annotated[float, typer.Option(metavar="PRICE", help="Price of the work.")] = 0.0,
-    visit: Annotated[float, typer.Option(metavar="PRICE", help="Price of the visit.")] = 0.0,
+    outlets: Annotated[int, typer.Option(help="How many outlets.", parser=whole)] = 1,
+    feeder: Annotated[float, typer.Option(metavar="M", help="Length of feeder needed.", parser=number)] = 15.0,
+    labour: Annotated[float, typer.Option(metavar="PRICE", help="Price of the work.", parser=number)] = 0.0,
+    visit: Annotated[float, typer.Option(metavar="PRICE", help="Price of the visit.", parser=number)] = 0.0,
     want: Annotated[list[str] | None, typer.Option(metavar="MULTIPLEX", help="Multiplex that counts.")] = None,
     as_json: Json = False,
 ) -> None:
@@ -112,11 +112,11 @@ def cheapest(
 @chains.command("block")
 def block(
     at: At,
-    outlets: Annotated[int, typer.Option(help="How many outlets.")],
+    outlets: Annotated[int, typer.Option(help="How many outlets.", parser=whole)],
     aerial: Annotated[str, typer.Option(metavar="ID", help="Stored aerial, or the chain that has it.")],
     layout: Annotated[str, typer.Option(help="star or riser.")] = "star",
-    longest: Annotated[float, typer.Option(metavar="M", help="Longest run.")] = 40.0,
-    shortest: Annotated[float, typer.Option(metavar="M", help="Shortest run.")] = 10.0,
+    longest: Annotated[float, typer.Option(metavar="M", help="Longest run.", parser=number)] = 40.0,
+    shortest: Annotated[float, typer.Option(metavar="M", help="Shortest run.", parser=number)] = 10.0,
     standard: Annotated[str, typer.Option(help="Level window, such as en-60728-1.")] = "en-60728-1",
     height: Height = 10.0,
     out: Annotated[Path | None, typer.Option(metavar="FILE", help="Write the chain there as TOML.")] = None,
@@ -149,7 +149,7 @@ def match(
     pad: Annotated[str, typer.Option(help="none, minimum-loss, series-25 or own.")] = "none",
     own_pad: Annotated[Path | None, typer.Option(metavar="FILE.s2p", help="Your pad, port 1 at the analyser.")] = None,
     standard: Annotated[
-        float | None, typer.Option("--ohm", help="Load used in calibration; default as the file says.")
+        float | None, typer.Option("--ohm", help="Load used in calibration; default as the file says.", parser=number)
     ] = None,
     raster: Annotated[str, typer.Option(help="Channel raster.")] = "europe-uhf-8",
     channel: Annotated[list[str] | None, typer.Option(help="Channel; may be repeated.")] = None,

@@ -25,12 +25,13 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Literal, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg.blas import daxpy as add_scaled  # (x, y, a=): y += a x where it stands
 from scipy.special import ndtr, ndtri
 
 FloatArray = NDArray[np.float64]
@@ -39,6 +40,7 @@ DRAWS = 4096
 DEVIATES = np.linspace(-4, 4, 33)  # of the normal that an error which is none itself is mapped from
 _LIKELY = np.exp(-(DEVIATES**2) / 2) / np.exp(-(DEVIATES**2) / 2).sum()
 SEED = "gainworth-1"
+NEVER_SD = 9.0  # as many standard deviations away: a chance of 1e-19
 
 Grade = Literal["secure", "likely", "open", "doubtful"]
 GRADES: tuple[tuple[float, Grade], ...] = (
@@ -163,22 +165,42 @@ class Cells:
             np.hstack([np.stack(list(columns.values()), axis=1), over_bearing]),
         )
 
+    def of(self, rows: Sequence[int]) -> Cells:
+        """Return some of the margins only, whose draws stay the same."""
+        taken = list(rows)
+        path = replace(
+            self.path,
+            masts=tuple(self.path.masts[e] for e in taken),
+            bearing_deg=self.path.bearing_deg[taken],
+            sd_db=self.path.sd_db[taken],
+        )
+        parts = tuple(
+            ErrorPart(
+                tuple(part.keys[e] for e in taken),
+                part.sd_db[taken],
+                None if part.curve_db is None else part.curve_db[:, taken],
+            )
+            for part in self.parts
+        )
+        return Cells(self.median_db[taken], path, parts, self.known)
+
     def draws(self) -> FloatArray:
         """Return joint samples of the margins. (DRAWS, e)"""
-        margins = np.broadcast_to(self.median_db, (DRAWS, len(self.median_db))).copy()
-        common = np.sqrt(self.path.correlation)
-        own = np.sqrt(1 - self.path.correlation)
-        for e, (mast, bearing) in enumerate(zip(self.path.masts, self.path.bearing_deg, strict=True)):
-            along = bearing_field(float(bearing), self.path.scale_deg)
-            margins[:, e] += self.path.sd_db[e] * (common * along + own * normals(f"path:{mast}"))
+        margins = np.repeat(self.median_db[:, np.newaxis], DRAWS, axis=1)  # the draws of one lie together
+        common = np.sqrt(self.path.correlation) * self.path.sd_db
+        own = np.sqrt(1 - self.path.correlation) * self.path.sd_db
+        for e, (mast, bearing_deg) in enumerate(zip(self.path.masts, self.path.bearing_deg.tolist(), strict=True)):
+            add_scaled(bearing_field(round(bearing_deg) % 360, self.path.scale_deg), margins[e], a=common[e])
+            add_scaled(normals(f"path:{mast}"), margins[e], a=own[e])
         curved = self.curved
         for part in self.parts:
-            for e, key in enumerate(part.keys):
-                if part is curved and part.curve_db is not None:
-                    margins[:, e] += np.interp(normals(key), DEVIATES, part.curve_db[:, e])
-                elif part.sd_db[e] != 0:  # below 0: what disturbs lowers the margin as it rises
-                    margins[:, e] += part.sd_db[e] * normals(key)
-        return margins if self.known is None else self.known.applied(margins, self.loadings())
+            if part is curved and part.curve_db is not None:
+                for e, key in enumerate(part.keys):
+                    margins[e] += np.interp(normals(key), DEVIATES, part.curve_db[:, e])
+            else:
+                for e in np.flatnonzero(part.sd_db).tolist():  # below 0: what disturbs lowers the margin as it rises
+                    add_scaled(normals(part.keys[e]), margins[e], a=part.sd_db[e])
+        return margins.T if self.known is None else self.known.applied(margins.T, self.loadings())
 
 
 def exceedance(median_db: FloatArray, sigma_db: FloatArray) -> FloatArray:
@@ -202,6 +224,9 @@ def exceedance_through(median_db: FloatArray, sigma_db: FloatArray, curved: Erro
 
 def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: FloatArray) -> FloatArray:
     """Chance of enough signal less that of too much; the loudest emission's error eats up the headroom of all."""
+    near = np.asarray(headroom_db <= NEVER_SD * loudest_sd_db)
+    if not near.any():
+        return chance
     result: FloatArray = np.maximum(chance - exceedance(-headroom_db, loudest_sd_db), 0)
     return result
 
@@ -210,20 +235,27 @@ def capped(draws_db: FloatArray, median_db: FloatArray, headroom_db: FloatArray,
     """Draws of margins (DRAWS, e), below 0 also where the loudest one's draw exceeds its median by the headroom."""
     if not len(median_db):
         return draws_db
-    louder = draws_db[:, loudest, np.newaxis] - median_db[loudest]
-    result: FloatArray = np.minimum(draws_db, headroom_db - louder)
+    louder = draws_db[:, loudest] - median_db[loudest]
+    result: FloatArray = np.minimum(draws_db.T, headroom_db[:, np.newaxis] - louder).T
     return result
 
 
 def received(draws_db: FloatArray, multiplex_of: Sequence[str], multiplexes: Sequence[str]) -> NDArray[np.bool_]:
     """Whether at least one emission of each multiplex is receivable, draw by draw. (DRAWS, m)"""
-    good = draws_db >= 0
-    columns = {name: [e for e, owner in enumerate(multiplex_of) if owner == name] for name in multiplexes}
-    return (
-        np.stack([good[:, columns[name]].any(axis=1) for name in multiplexes], axis=1)
-        if multiplexes
-        else (np.zeros((len(draws_db), 0), dtype=bool))
-    )
+    good = draws_db.T >= 0  # the draws of one emission lie together
+    rows = rows_of(multiplex_of)
+    found = np.zeros((len(multiplexes), len(draws_db)), dtype=bool)
+    for m, name in enumerate(multiplexes):
+        good[rows.get(name, [])].any(axis=0, out=found[m])
+    return found.T
+
+
+def rows_of(multiplex_of: Sequence[str]) -> dict[str, list[int]]:
+    """Rows of the emissions of each multiplex."""
+    rows: dict[str, list[int]] = {}
+    for e, owner in enumerate(multiplex_of):
+        rows.setdefault(owner, []).append(e)
+    return rows
 
 
 @lru_cache(maxsize=8192)
@@ -235,13 +267,14 @@ def normals(key: str) -> FloatArray:
 
 
 @lru_cache(maxsize=1024)
-def bearing_field(bearing_deg: float, scale_deg: float) -> FloatArray:
-    """Return the common path error towards a bearing, to the whole degree. (DRAWS,)
+def bearing_field(bearing_deg: int, scale_deg: float) -> FloatArray:
+    """Return the common path error towards a bearing in whole degrees. (DRAWS,)
 
     A stationary normal field on the circle with the correlation exp(-|difference| / scale): the symmetric
     square root of its circulant covariance times white noise keyed by whole degrees.
     """
     field: FloatArray = _bearing_row(bearing_deg, scale_deg) @ _bearing_noise()
+    field.flags.writeable = False
     return field
 
 

@@ -35,6 +35,7 @@ from app.chain.parts import (
 from app.chain.powering import as_powered
 from app.chain_file import stored_parts
 from app.errors import ChainError, RequestError
+from app.mapped import settled
 from app.margins import Turned, multiplex_chances, turn
 from app.request import AssessRequest
 from app.site import site_of
@@ -97,6 +98,7 @@ def cheapest_document(
     parts = stored_parts(store)
     chains = list(sensible_chains(parts, wish))
     assumptions = Assumptions(request.assumptions)
+    request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
     multiplexes = sorted(set(air.multiplex_of))

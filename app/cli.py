@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import socket
 import sys
+import time
 from pathlib import Path
 from typing import Annotated, Any
 
@@ -11,7 +12,7 @@ import typer
 
 from app.chains_cli import chains
 from app.cli_ground import cover, terrain
-from app.cli_tools import Json, mendable, pair, place, show
+from app.cli_tools import Json, mendable, number, pair, place, show, whole
 from app.errors import RequestError
 
 main = typer.Typer(
@@ -30,12 +31,13 @@ main.add_typer(chains, name="chains")
 main.add_typer(readings, name="readings")
 
 WRONG = 1
+WORTH_TELLING_S = 1.0  # of unpacking; less is no wait
 
 
 @main.command()
 def serve(
     host: Annotated[str | None, typer.Option(help="Address to listen on.")] = None,
-    port: Annotated[int | None, typer.Option(help="Port to listen on; 0 takes a free one.")] = None,
+    port: Annotated[int | None, typer.Option(help="Port to listen on; 0 takes a free one.", parser=whole)] = None,
     open_page: Annotated[bool, typer.Option("--open", help="Open the page in the browser.")] = False,
     as_json: Json = False,
 ) -> None:
@@ -81,7 +83,7 @@ def _listener(host: str, port: int) -> socket.socket:
 @main.command()
 def assess(
     at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
-    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")] = 10.0,
+    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.", parser=number)] = 10.0,
     chain: Annotated[
         list[str] | None,
         typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored."),
@@ -91,15 +93,21 @@ def assess(
         list[str] | None,
         typer.Option(metavar="MULTIPLEX", help="Wanted multiplex; may be repeated. Default: those that differ."),
     ] = None,
-    worth: Annotated[float | None, typer.Option(metavar="V", help="What one more wanted multiplex is worth.")] = None,
-    reach: Annotated[float, typer.Option(metavar="KM", help="How far to look for transmitters.")] = 150.0,
+    worth: Annotated[
+        float | None, typer.Option(metavar="V", help="What one more wanted multiplex is worth.", parser=number)
+    ] = None,
+    reach: Annotated[
+        float, typer.Option(metavar="KM", help="How far to look for transmitters.", parser=number)
+    ] = 150.0,
     method: Annotated[str, typer.Option(help="p1812, p1546 or both.")] = "both",
-    availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.")] = 99,
+    availability: Annotated[int, typer.Option(help="Share of time: 50, 90 or 99 %.", parser=whole)] = 99,
     surroundings: Annotated[
         str, typer.Option(help="open, suburban, urban, trees, or mapped: as land cover shows them.")
     ] = "mapped",
-    leaves: Annotated[float, typer.Option(metavar="M", help="Leaves the signals pass before the aerial.")] = 0.0,
-    cost: Annotated[float | None, typer.Option(metavar="C", help="What taking a reading costs.")] = None,
+    leaves: Annotated[
+        float, typer.Option(metavar="M", help="Leaves the signals pass before the aerial.", parser=number)
+    ] = 0.0,
+    cost: Annotated[float | None, typer.Option(metavar="C", help="What taking a reading costs.", parser=number)] = None,
     without_readings: Annotated[
         bool, typer.Option("--without-readings", help="Leave the stored readings of this roof out.")
     ] = False,
@@ -130,7 +138,15 @@ def assess(
             method=method,  # type: ignore[arg-type]  # AssessRequest checks the word
         )
         world = open_world()
+        start = time.perf_counter()
         document = answer_to(request, world.store, world.ground, refractivity_maps=world.refractivity_maps)
+    unpacking_s = world.ground.decoding_s
+    if unpacking_s > WORTH_TELLING_S:
+        whole_s = time.perf_counter() - start
+        text = (
+            f"This answer took {whole_s:.1f} s, {unpacking_s:.1f} s of it to unpack new ground; the next one does not."
+        )
+        typer.echo(text, err=True)
     show(document, as_json, lambda: told(document))
 
 
@@ -138,7 +154,7 @@ def assess(
 def path(
     start: Annotated[str, typer.Option("--from", metavar="LAT,LON", help="Position of the transmitter.")],
     end: Annotated[str, typer.Option("--to", metavar="LAT,LON", help="Position of the roof.")],
-    frequency: Annotated[float, typer.Option(metavar="MHZ", help="Centre frequency.")],
+    frequency: Annotated[float, typer.Option(metavar="MHZ", help="Centre frequency.", parser=number)],
     heights: Annotated[str, typer.Option(metavar="TX,RX", help="Antenna and aerial above ground, in m.")] = "100,10",
     polarisation: Annotated[str, typer.Option(help="horizontal or vertical.")] = "horizontal",
     as_json: Json = False,
@@ -235,7 +251,7 @@ def compare(
         list[str] | None, typer.Option(metavar="NAME", help="Chain to compare; may be repeated. Default: all stored.")
     ] = None,
     now: Annotated[str | None, typer.Option(metavar="NAME|nothing", help="What is up now.")] = None,
-    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.")] = 10.0,
+    height: Annotated[float, typer.Option(metavar="M", help="Aerial above the ground.", parser=number)] = 10.0,
     as_json: Json = False,
 ) -> None:
     """Set roofs side by side with the same chains, at 50, 90 and 99 % of time, and count the answers that change."""
@@ -257,21 +273,29 @@ def add_reading(
     at: Annotated[str, typer.Option(metavar="LAT,LON", help="Position of the roof in degrees.")],
     kind: Annotated[str, typer.Option(help="level, cn, mer, seen, count, order, neighbour or scan-list.")] = "level",
     of: Annotated[str | None, typer.Option(metavar="CHANNEL|MULTIPLEX", help="What was read.")] = None,
-    value: Annotated[float | None, typer.Option(metavar="DB", help="Level in dB(µV), C/N or MER in dB.")] = None,
+    value: Annotated[
+        float | None, typer.Option(metavar="DB", help="Level in dB(µV), C/N or MER in dB.", parser=number)
+    ] = None,
     state: Annotated[str | None, typer.Option(help="perfect, breaks up or not found.")] = None,
     file: Annotated[
         Path | None, typer.Option(metavar="FILE", help="Text of a scan list; - reads what is piped in.")
     ] = None,
     complete: Annotated[bool, typer.Option("--complete", help="The scan list is all that the set found.")] = False,
-    count: Annotated[int | None, typer.Option(metavar="N", help="How many multiplexes are received today.")] = None,
+    count: Annotated[
+        int | None, typer.Option(metavar="N", help="How many multiplexes are received today.", parser=whole)
+    ] = None,
     chain: Annotated[str | None, typer.Option(metavar="NAME", help="Through which chain.")] = None,
     point: Annotated[str | None, typer.Option(help="Outlet, or aerial for its terminals.")] = None,
-    pointing: Annotated[float | None, typer.Option(metavar="DEG", help="True bearing of the aerial.")] = None,
+    pointing: Annotated[
+        float | None, typer.Option(metavar="DEG", help="True bearing of the aerial.", parser=number)
+    ] = None,
     polarisation: Annotated[str | None, typer.Option(help="horizontal or vertical.")] = None,
-    height: Annotated[float | None, typer.Option(metavar="M", help="Aerial above the ground.")] = None,
+    height: Annotated[float | None, typer.Option(metavar="M", help="Aerial above the ground.", parser=number)] = None,
     day: Annotated[str | None, typer.Option(metavar="DATE", help="Year first: 2026-10-31.")] = None,
     instrument: Annotated[str | None, typer.Option(help="meter, analyser, stick or set.")] = None,
-    spread: Annotated[float | None, typer.Option(metavar="DB", help="Standard deviation, if known.")] = None,
+    spread: Annotated[
+        float | None, typer.Option(metavar="DB", help="Standard deviation, if known.", parser=number)
+    ] = None,
     works: Annotated[bool | None, typer.Option("--works/--fails", help="Whether a neighbour's aerial works.")] = None,
     confirmed: Annotated[bool, typer.Option("--confirmed", help="Looked at twice: counts however surprising.")] = False,
     as_json: Json = False,

@@ -8,7 +8,7 @@ from typing import Annotated
 
 import typer
 
-from app.cli_tools import MENDABLE, Json, mendable, place, show
+from app.cli_tools import MENDABLE, Json, mendable, number, place, show
 from app.errors import AppError
 from terrain.errors import TerrainError
 
@@ -70,7 +70,7 @@ def list_rasters(as_json: Json = False) -> None:
 
 
 At = Annotated[str, typer.Option(metavar="POSITION", help="Middle of the circle, in any usual writing.")]
-Reach = Annotated[float, typer.Option(metavar="KM", help="Radius of the circle.")]
+Reach = Annotated[float, typer.Option(metavar="KM", help="Radius of the circle.", parser=number)]
 Source = Annotated[str | None, typer.Option(help="Id of the source; default: the first of its kind.")]
 DryRun = Annotated[bool, typer.Option("--dry-run", help="Say how much it would be; fetch nothing.")]
 

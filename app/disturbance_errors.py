@@ -24,8 +24,9 @@ from numpy.typing import NDArray
 from app.assumptions import Assumptions
 from app.chain import aerial as response
 from app.chance import ErrorPart
-from app.disturbance import Company, Ear, Effect, State
-from app.interference import degradation_db, nuisance_power
+from app.company import STATES, Company, State
+from app.disturbance import Ear, Effect
+from app.interference import nuisance_power
 
 FloatArray = NDArray[np.float64]
 
@@ -46,11 +47,10 @@ class Disturbers:
     erp_db: FloatArray
     enhancement_db: FloatArray
 
-    def spread_db(self, state: State, rejection_db: FloatArray) -> FloatArray:
-        """Spread of each, (…, i), with that of the rejection off the axis (…, i)."""
+    def variance_db2(self, state: State) -> FloatArray:
+        """Variance of each for any pointing, (i,): without that of the rejection off the axis [dB²]."""
         fixed = self.path_db**2 + self.band_db**2 + self.emission_db**2 + self.erp_db**2
-        risen = self.enhancement_db**2 if state == "b" else 0.0
-        return np.sqrt(fixed + risen + rejection_db**2)
+        return np.asarray(fixed + self.enhancement_db**2 if state == "b" else fixed)
 
 
 def disturbers_of(
@@ -71,30 +71,47 @@ def disturbers_of(
 
 
 def rejection_sd_db(ear: Ear, pointing_deg: FloatArray | float) -> FloatArray:
-    """Spread of the rejection of each interferer, (…, i): off the axis, and cross-polar."""
-    ones = ear.company.interferers
-    off_axis = response.off_axis_deg(np.array([one.bearing_deg for one in ones]), pointing_deg)
+    """Spread of the rejection of each kind of interferers, (…, k): off the axis, and cross-polar."""
+    kinds = ear.company.kinds
+    off_axis = response.off_axis_deg(kinds.bearing_deg, pointing_deg)
     beyond = np.where(off_axis > ear.chain.aerial.beamwidth_deg / 2, ear.assumptions.value("off_axis_sd_db"), 0.0)
-    crossed = np.array([one.emission.polarisation not in (ear.polarisation, "mixed") for one in ones], dtype=bool)
+    crossed = np.array([one not in (ear.polarisation, "mixed") for one in kinds.polarisation], dtype=bool)
     return np.asarray(np.where(crossed, np.maximum(beyond, ear.assumptions.value("cross_polar_sd_db")), beyond))
 
 
-def slope_and_spread(ear: Ear, effect: Effect, spread_db: FloatArray) -> tuple[FloatArray, FloatArray]:
+@dataclass(frozen=True, slots=True)
+class Squares:
+    """Squares of what each kind of interferers would bring into each wanted channel, in one state. (e, k) each."""
+
+    plain: FloatArray
+    moving: FloatArray  # each times the variance of its interferer for any pointing
+
+
+def squares_of(ear: Ear, disturbers: Disturbers) -> dict[State, Squares]:
+    """Gather what the spread of the interference takes at any pointing."""
+    company = ear.company
+    found: dict[State, Squares] = {}
+    for state in STATES:
+        squares = company.brought(state, ear.on_axis[state]) ** 2
+        moving = squares * disturbers.variance_db2(state)[company.pairs.disturber]
+        found[state] = Squares(company.by_kind(squares), company.by_kind(moving))
+    return found
+
+
+def slope_and_spread(effect: Effect, squares: Squares, rejection_db: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Slope of each margin over the interference as a whole, and that one's spread [dB], (…, e) both.
 
-    `spread_db` (…, i) is that of each interferer.
+    `rejection_db` (…, k) is the spread of the rejection of each kind of interferers.
     """
-    if not ear.company.pairs.disturber.size:
+    if not effect.ear.company.pairs.disturber.size:
         return np.zeros(effect.i_over_c.shape), np.zeros(effect.i_over_c.shape)
-    weights = ear.company.weights[effect.state]
-    squares = weights.copy()
-    squares.data = squares.data**2
-    moving = nuisance_power((effect.powers * spread_db) ** 2, squares)
+    left = effect.left**2
+    moving = nuisance_power(left, squares.moving) + nuisance_power(left * rejection_db**2, squares.plain)
     with np.errstate(invalid="ignore", divide="ignore"):
         spread = np.where(moving > 0, np.sqrt(moving) / (effect.i_over_c * effect.carrier), 0.0)
     step = np.maximum(spread, 1e-3)
     ratio = 10 ** (step / 10)
-    rise = degradation_db(effect.cn_db, effect.i_over_c * ratio) - degradation_db(effect.cn_db, effect.i_over_c / ratio)
+    rise = 10 * np.log10((1 + effect.i_over_n * ratio) / (1 + effect.i_over_n / ratio))
     return rise / (2 * step), spread
 
 
@@ -119,23 +136,22 @@ def moved_by(
 ) -> Moved:
     """Parts of the errors for one pointing, each margin in the state that decides it."""
     company, count = ear.company, len(state_b)
-    rejection = rejection_sd_db(ear, pointing_deg)
+    by_kind, squares = rejection_sd_db(ear, pointing_deg), squares_of(ear, disturbers)
+    rejection = by_kind[company.kinds.of]
     leader, leader_share, second = _network_shares(company, effects, state_b)
     path_off, band_off, common = np.zeros(count), np.zeros(count), np.ones(count)
     ranks = [_Rank(count) for _ in range(STRONGEST)]
     rest = np.zeros(count)
-    for state in ("a", "b"):
-        effect, spread = effects[state], disturbers.spread_db(state, rejection)
-        slope, _ = slope_and_spread(ear, effect, spread)
+    for state in STATES:
+        effect, spread = effects[state], np.sqrt(disturbers.variance_db2(state) + rejection**2)
+        slope, _ = slope_and_spread(effect, squares[state], by_kind)
         alike = 1 / (1 + effect.i_over_n)
-        weights = company.weights[state]
         for e in np.flatnonzero(state_b == (state == "b")):
             common[e] = alike[e]
-            row = slice(weights.indptr[e], weights.indptr[e + 1])
-            who = weights.indices[row]
+            who, power = effect.brought_to(int(e))
             if not who.size:
                 continue
-            share = slope[e] * weights.data[row] * effect.powers[who] / (effect.i_over_c[e] * effect.carrier[e])
+            share = slope[e] * power / (effect.i_over_c[e] * effect.carrier[e])
             order = np.argsort(-share * spread[who])
             named = [k for k in order[:STRONGEST].tolist() if share[k] * spread[who[k]] >= NAMED_FROM_DB]
             for place, k in enumerate(named):

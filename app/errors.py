@@ -14,15 +14,23 @@ Each message says what came, what is allowed and what to do next.
 `field` and `allowed` travel with it for the page.
 """
 
+LONGEST_LINE = 800  # of a message: what came is shown, not a megabyte of it
+
 
 class AppError(Exception):
     """Root of the package; carries what the page needs to point at the field."""
 
     def __init__(self, message: str, *, field: str | None = None, allowed: str | None = None) -> None:
-        super().__init__(message)
-        self.message = message
+        self.message = "\n".join(shortened(line) for line in message.split("\n"))
+        super().__init__(self.message)
         self.field = field
         self.allowed = allowed
+
+
+def shortened(line: str) -> str:
+    """Return a line without its middle if it is too long: it begins with what came and ends with what to do."""
+    half = LONGEST_LINE // 2
+    return line if len(line) <= LONGEST_LINE else f"{line[:half]} … {line[-half:]}"
 
 
 class RequestError(AppError, ValueError):

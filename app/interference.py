@@ -46,7 +46,7 @@ class Pairs:
     wanted: NDArray[np.intp]
     steady_db: FloatArray  # PR - C/N required, for what is there half of the time
     tropospheric_db: FloatArray  # the same for what rises for a small share of the time
-    rule: tuple[str, ...]  # where the ratio is from, for people
+    rule: NDArray[np.object_]  # where the ratio is from, for people
     shape: tuple[int, int]  # disturbers, wanted
     told: dict[int, dict[int, str]] = field(default_factory=dict)  # rules by wanted and disturber, once looked up
 
@@ -128,7 +128,7 @@ def pairs_between(wanted: Spectra, required_cn_db: FloatArray, disturbers: Spect
     kept = np.flatnonzero(np.isfinite(both[0]))
     kept = kept[np.argsort(e[kept], kind="stable")]
     return Pairs(
-        i[kept], e[kept], both[0][kept], both[1][kept], tuple(rule[kept]), (len(disturbers.system), len(wanted.system))
+        i[kept], e[kept], both[0][kept], both[1][kept], rule[kept], (len(disturbers.system), len(wanted.system))
     )
 
 
@@ -147,11 +147,9 @@ def spectral_share(apart_mhz: FloatArray, wanted_mhz: FloatArray, disturber_mhz:
     return np.asarray(np.where(overlap > SAME_MHZ, overlap / disturber_mhz, 0.0))
 
 
-def nuisance_power(power: FloatArray, weights: csr_array) -> FloatArray:
+def nuisance_power(power: FloatArray, weights: csr_array | FloatArray) -> FloatArray:
     """Sum of what disturbs each wanted emission, (…, i) and (e, i) to (…, e), linear power."""
-    lead = power.shape[:-1]
-    total = weights @ power.reshape(-1, power.shape[-1]).T
-    return np.asarray(total.T).reshape(*lead, weights.shape[0])
+    return np.asarray(power @ weights.T)
 
 
 def degradation_db(cn_db: FloatArray, i_over_c: FloatArray) -> FloatArray:

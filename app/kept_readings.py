@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from datetime import date
 from typing import Any
 
@@ -62,7 +62,36 @@ def keep(store: Store, latitude_deg: float, longitude_deg: float, document: Mapp
         )
         for one in readings
     ]
-    return {"readings": stored, "scan_list": scan_document(lists[0]) if lists else None}
+    return {
+        "readings": stored,
+        "scan_list": scan_document(lists[0]) if lists else None,
+        "notes": _notes(readings, store, latitude_deg, longitude_deg),
+    }
+
+
+def _notes(readings: Sequence[Reading], store: Store, latitude_deg: float, longitude_deg: float) -> list[str]:
+    """Say which readings no answer will use as things are: of what is not on the air, or through an unknown chain."""
+    known = {
+        name
+        for one in on_air_at(store, latitude_deg, longitude_deg)
+        for name in (one.emission, one.multiplex, one.name, one.channel)
+        if name
+    }
+    chains = {str(one["name"]) for one in store.list_chains()}
+    notes = []
+    for one in readings:
+        named = [name for name in (one.emission, one.multiplex) if name]
+        if named and not any(name in known for name in named):
+            notes.append(
+                f'"{named[0]:.60}" is no channel or multiplex on the air within {REACH_KM:g} km: kept, and not used '
+                "before it is; `gainworth transmitters list` shows what is stored"
+            )
+        if one.chain and one.chain not in chains:
+            stored = ", ".join(sorted(chains)) or "none"
+            notes.append(
+                f'no chain "{one.chain:.60}" is stored: kept, and used by answers that bring it; stored: {stored}'
+            )
+    return list(dict.fromkeys(notes))
 
 
 def scan_document(scan: ScanList) -> dict[str, Any]:
@@ -91,7 +120,7 @@ def told_kept(document: Mapping[str, Any]) -> str:
     if scan:
         lines += [f"line {one['line']}: {one['of']} {one['state']}" for one in scan["recognised"]]
         lines += [f"line {one['line']} not recognised: {one['text']}" for one in scan["not_recognised"]]
-    return "\n".join(lines)
+    return "\n".join([*lines, *document["notes"]])
 
 
 def reading_rows(store: Store) -> list[dict[str, Any]]:

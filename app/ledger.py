@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from app.air import Air
 from app.assumptions import Assumptions
-from app.disturbance import STATES, Company, Effect, State
+from app.company import STATES, Company, State
+from app.disturbance import Effect
 from app.fields import EmissionField
 from app.margins import Turned
 from app.outlet_ledger import Book, Step, book_of
@@ -158,7 +159,7 @@ def _company_lines(
 ) -> Sequence[tuple[str, float, str]]:
     """What other emissions add to and take from C/N; the values add up to `change_db`, less the echo's rise."""
     lines: list[tuple[str, float, str]] = []
-    network = company.network_of(e)
+    network = company.network_of.get(e)
     if network is not None:
         lines.append(
             (
@@ -170,7 +171,7 @@ def _company_lines(
             )
         )
     lost_db = change_db - float(effect.gain_db[e])
-    who, over_c = effect.contributions(company, e)
+    who, over_c = effect.contributions(e)
     if who.size:
         shares = over_c / over_c.sum()
         lines += [

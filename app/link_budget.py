@@ -8,6 +8,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
+from functools import reduce
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -86,6 +88,19 @@ class Reception:
     serving_aerial: NDArray[np.intp]  # (…, e) index into chain.aerials: the one that gives it most
     deciding_outlet: NDArray[np.intp]  # (…, e) index into outlets: the one with the least margin
     outlets: tuple[AtOutlet, ...]
+
+    def of_field(self, number: int) -> Reception:
+        """Return what one of several fields, stacked in a leading axis, becomes."""
+        shape = self.level_dbuv.shape
+
+        def picked(place: Reception | AtOutlet) -> dict[str, Any]:
+            return {
+                field.name: np.broadcast_to(getattr(place, field.name), shape)[number]
+                for field in fields(place)
+                if field.name not in ("name", "outlets")
+            }
+
+        return Reception(outlets=tuple(AtOutlet(one.name, **picked(one)) for one in self.outlets), **picked(self))
 
     @property
     def loudest(self) -> NDArray[np.intp]:
@@ -337,14 +352,13 @@ def _decided(chain: Chain, heard: Heard, run: Flow, outlets: Sequence[AtOutlet])
     counting = [i for i, outlet in enumerate(outlets) if outlet.name in chain.deciding_outlets]
     first = outlets[counting[0]]
     worst = np.full(first.margin_db.shape, counting[0], dtype=np.intp)
-    kept = {key: np.array(np.broadcast_to(getattr(first, key), worst.shape)) for key in DECIDED}
+    kept = {key: np.broadcast_to(getattr(first, key), worst.shape) for key in DECIDED}
     for i in counting[1:]:
         with np.errstate(invalid="ignore"):
             lower = outlets[i].margin_db < kept["margin_db"]
         if lower.any():
             worst[lower] = i
-            for key, values in kept.items():
-                np.copyto(values, getattr(outlets[i], key), where=lower)
+            kept = {key: np.where(lower, getattr(outlets[i], key), values) for key, values in kept.items()}
     gain = run.outlets[counting[0]].at.gain
     with np.errstate(divide="ignore"):
         strength = [
@@ -367,7 +381,7 @@ def _decided(chain: Chain, heard: Heard, run: Flow, outlets: Sequence[AtOutlet])
 
     return Reception(
         **kept,
-        headroom_db=np.min(np.stack([outlets[i].headroom_db for i in counting]), axis=0),
+        headroom_db=reduce(np.minimum, (outlets[i].headroom_db for i in counting)),
         off_axis_deg=of_serving([air.off_axis_deg for air in heard.airs]),
         pattern_loss_db=of_serving([air.pattern_loss_db for air in heard.airs]),
         serving_aerial=serving,

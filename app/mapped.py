@@ -1,4 +1,4 @@
-"""Surroundings of a roof as land cover shows them."""
+"""What land cover adds: surroundings of a roof, and credits of the maps in use."""
 
 from __future__ import annotations
 
@@ -6,14 +6,16 @@ from dataclasses import replace
 
 import numpy as np
 
+from app.request import AssessRequest
 from app.roof import Roof, Surroundings
-from terrain.cover import categories
+from terrain.cover import CoverRaster, categories
 from terrain.geodesy import destination
 from terrain.mosaic import Ground
 
 # The neighbourhood that stands for the surroundings. Our choice: about where a house before the aerial stands.
 _RINGS_M = (15.0, 30.0, 50.0)
 _BEARINGS_DEG = np.arange(0.0, 360.0, 30.0)
+COASTLINE = "Coastline: Natural Earth 1:10m, public domain"
 _WORDS: dict[str, Surroundings] = {"suburban": "suburban", "urban": "urban", "trees": "trees"}
 
 
@@ -38,10 +40,21 @@ def with_surroundings(roof: Roof, ground: Ground) -> tuple[Roof, str]:
     )
 
 
+def settled(request: AssessRequest, ground: Ground) -> tuple[AssessRequest, str]:
+    """Put what land cover shows in the place of a request's "mapped" surroundings, and say so."""
+    roof, told = with_surroundings(request.roof, ground)
+    return replace(request, roof=roof), told
+
+
 def credits_of(ground: Ground) -> list[str]:
     """Credits that the licences of the rasters in use ask for, each once."""
-    cover = ground.overlay.cover if ground.overlay is not None else None
-    credits = {one.attribution for one in ground.rasters}
-    if cover is not None:
-        credits |= {one.attribution for one in cover.rasters}
+    credits = {*ground.credits, *(one.attribution for one in cover_in_use(ground))}
+    if ground.overlay is not None:
+        credits.add(COASTLINE)
     return sorted(credits - {""})
+
+
+def cover_in_use(ground: Ground) -> tuple[CoverRaster, ...]:
+    """Maps of land cover that stand over a ground."""
+    cover = ground.overlay.cover if ground.overlay is not None else None
+    return () if cover is None else cover.rasters

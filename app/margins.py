@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,9 +11,10 @@ from numpy.typing import NDArray
 from app.air import Air
 from app.assumptions import Assumptions
 from app.chain.parts import AerialPolarisation, Chain
-from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received
-from app.disturbance import Company, Effect, State, disturbed, ear_of, effect_of
-from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread
+from app.chance import Cells, Knowledge, capped, exceedance_through, not_too_much, received, rows_of
+from app.company import STATES, Company, State
+from app.disturbance import Ear, Effect, disturbed, ear_of, effect_of
+from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread, squares_of
 from app.link_budget import Reception, is_overload, receive
 from app.margin_errors import air_disturbers, parts_of, path_error, wanted_errors, wanted_rejection_sd_db
 from app.roof import Roof
@@ -21,6 +22,7 @@ from app.roof import Roof
 FloatArray = NDArray[np.float64]
 
 TIE_COUNT = 0.005  # expected multiplexes: directions closer than this are as good
+NEVER = 1e-9  # chance of an emission that none of the draws would show
 HOPELESS_BELOW = 0.01  # chance of an emission that sways no pointing
 BEARINGS = np.arange(360.0)
 
@@ -46,7 +48,10 @@ class Turned:
     company: Company
     effects: dict[State, Effect]
     cells: Cells
-    chance: FloatArray  # (e,)
+    sigma_db: FloatArray  # (e,) of the cells
+    read_db: FloatArray  # (e,) by how much readings moved the margin
+    enough: FloatArray  # (e,) chance that the margin is at least 0
+    chance: FloatArray  # (e,) likewise, less that of too much level
     sweep_count: FloatArray  # (360,) expected multiplexes for each whole degree, this polarisation
     sweep: Swept  # each emission for each whole degree, likewise
 
@@ -59,29 +64,29 @@ class Turned:
         """Time state that decides for one emission."""
         return "b" if self.raised.margin_db[e] < self.faded.margin_db[e] else "a"
 
-    def limit(self, e: int) -> str:
-        """What holds one emission back: too much level, interference above noise, time where only a fade does it."""
-        return self.held_back(e).limit
+    def held_back(self, outlet: int | None = None) -> list[HeldBack]:
+        """What holds each emission back, in the state that decides, at one outlet; None: at those that count. (e,)
 
-    def held_back(self, e: int, outlet: int | None = None) -> HeldBack:
-        """What holds one emission back, in the state that decides, at one outlet; None: at those that count."""
-        state = self.state(e)
-        reception, effect = (self.raised if state == "b" else self.faded), self.effects[state]
-        place = self.median if outlet is None else self.median.outlets[outlet]
-        if is_overload(place)[e]:
-            return HeldBack("overload", state, None, None)
-        if float(effect.i_over_c[e] * 10 ** (effect.cn_db[e] / 10)) > 1:
-            return HeldBack("interference", state, *effect.strongest(self.company, e))
-        by_time = self.median.margin_db[e] >= 0 > reception.margin_db[e]
-        return HeldBack("time" if by_time else "noise", state, None, None)
+        Too much level, interference above noise, time where only a fade does it, or else noise.
+        """
+        overloaded = is_overload(self.median if outlet is None else self.median.outlets[outlet])
+        disturbed = {state: effect.i_over_n > 1 for state, effect in self.effects.items()}
+        by_time = (self.median.margin_db >= 0) & (self.margin_db < 0)
+        found = []
+        for e in range(len(by_time)):
+            state = self.state(e)
+            if overloaded[e]:
+                found.append(HeldBack("overload", state, None, None))
+            elif disturbed[state][e]:
+                found.append(HeldBack("interference", state, *self.effects[state].strongest(e)))
+            else:
+                found.append(HeldBack("time" if by_time[e] else "noise", state, None, None))
+        return found
 
     def held_back_by(self, air: Air, multiplexes: Sequence[str]) -> tuple[str, ...]:
         """What holds back the best emission of each multiplex. (m,)"""
-        best = [
-            max((e for e, owner in enumerate(air.multiplex_of) if owner == name), key=lambda e: self.chance[e])
-            for name in multiplexes
-        ]
-        return tuple(self.limit(e) for e in best)
+        rows, held = rows_of(air.multiplex_of), self.held_back()
+        return tuple(held[max(rows[name], key=lambda e: self.chance[e])].limit for name in multiplexes)
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,31 +112,29 @@ def turn(
     `counted` are the multiplexes that count for the choice, `known` is what readings say of the errors.
     Ties go to the direction nearest to the bearing of the strongest emission.
     """
-    best: tuple[float, float, AerialPolarisation, FloatArray, Swept] | None = None
+    best: tuple[float, float, Ear, AerialPolarisation, FloatArray, Swept] | None = None
     for polarisation in _polarisations(chain):
-        swept = _sweep(chain, polarisation, air, roof, assumptions, known)
+        ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
+        swept = _sweep(ear, polarisation, air, roof, assumptions, known)
         counts = _expected_by_degree(swept.chance, air, counted)
         pointing_deg = chain.pointing_deg if chain.pointing_deg is not None else _best_bearing(counts, air)
         count = float(counts[round(pointing_deg) % 360])
         if best is None or count > best[0] + 1e-9:
-            best = (count, pointing_deg, polarisation, counts, swept)
+            best = (count, pointing_deg, ear, polarisation, counts, swept)
     assert best is not None  # there is always a polarisation
-    _, pointing_deg, polarisation, counts, swept = best
-    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
-    alone, alone_faded = (
-        receive(
-            chain,
-            air.signals,
-            field,
-            pointing_deg,
-            polarisation,
-            assumptions,
-            roof.surroundings,
-            load_dbuv_m=air.used_dbuv_m,
-            beside=air.beside,
-        )
-        for field in (air.used_dbuv_m, air.used_dbuv_m - air.fade_db)
+    _, pointing_deg, ear, polarisation, counts, swept = best
+    stacked = receive(
+        chain,
+        air.signals,
+        np.stack([air.used_dbuv_m, air.used_dbuv_m - air.fade_db]),
+        pointing_deg,
+        polarisation,
+        assumptions,
+        roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
+        beside=air.beside,
     )
+    alone, alone_faded = stacked.of_field(0), stacked.of_field(1)
     left = ear.left(pointing_deg)
     effects: dict[State, Effect] = {
         "a": effect_of(ear, alone_faded, left, "a"),
@@ -147,7 +150,7 @@ def turn(
         parts_of(chain, polarisation, air, faded, assumptions, state_b, moved),
         known,
     )
-    chance = not_too_much(cells.chance, median.headroom_db, median.of_loudest(cells.sigma_db))
+    sigma_db, enough = cells.sigma_db, cells.chance
     return Turned(
         chain,
         pointing_deg,
@@ -158,7 +161,10 @@ def turn(
         air.company,
         effects,
         cells,
-        chance,
+        sigma_db,
+        cells.mean_db - cells.median_db,
+        enough,
+        not_too_much(enough, median.headroom_db, median.of_loudest(sigma_db)),
         counts,
         swept,
     )
@@ -167,31 +173,44 @@ def turn(
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
     """Return draws of what is received (draws, m) and the chance of each multiplex (m,).
 
-    One emission alone has its closed form; alternatives are counted over the joint draws.
+    One emission alone has its closed form; alternatives are counted over the joint draws. What is hopeless is not
+    drawn, but for the loudest emission, whose errors eat up the headroom of all.
     """
-    median = turned.median
-    margins = capped(turned.cells.draws(), turned.cells.median_db, median.headroom_db, int(median.loudest))
-    draws = received(margins, air.multiplex_of, multiplexes)
+    median, loudest = turned.median, int(turned.median.loudest)
+    rows = [e for e, chance in enumerate(turned.enough.tolist()) if chance >= NEVER or e == loudest]
+    cells = turned.cells.of(rows)
+    margins = capped(cells.draws(), cells.median_db, median.headroom_db[rows], rows.index(loudest) if rows else 0)
+    draws = received(margins, [air.multiplex_of[e] for e in rows], multiplexes)
     chance = draws.mean(axis=0)
+    owned = rows_of(air.multiplex_of)
     for m, name in enumerate(multiplexes):
-        alone = [e for e, owner in enumerate(air.multiplex_of) if owner == name]
-        if len(alone) == 1:
-            chance[m] = turned.chance[alone[0]]
+        if len(owned[name]) == 1:
+            chance[m] = turned.chance[owned[name][0]]
     return draws, chance
 
 
 def expected_count(
     chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str], acting: NDArray[np.bool_] | None = None
 ) -> FloatArray:
-    """Expected multiplexes from chances of emissions (..., e), alternatives taken as independent. (...)
+    """Expected multiplexes from chances of emissions (..., e). (...)"""
+    each = chance_of_each(chance, multiplex_of, counted, acting)
+    return sum(each.values(), np.zeros(chance.shape[:-1]))
+
+
+def chance_of_each(
+    chance: FloatArray, multiplex_of: Sequence[str], counted: Sequence[str], acting: NDArray[np.bool_] | None = None
+) -> dict[str, FloatArray]:
+    """Chance of each multiplex (...) from chances of emissions (..., e), alternatives taken as independent.
 
     `acting` leaves out members of a network that act through another one.
     """
-    total = np.zeros(chance.shape[:-1])
+    rows = rows_of(multiplex_of)
+    missed = 1 - chance
+    found: dict[str, FloatArray] = {}
     for name in counted:
-        owned = [e for e, owner in enumerate(multiplex_of) if owner == name and (acting is None or acting[e])]
-        total += 1 - np.prod(1 - chance[..., owned], axis=-1)
-    return total
+        owned = [e for e in rows.get(name, []) if acting is None or acting[e]]
+        found[name] = 1 - np.prod(missed[..., owned], axis=-1)
+    return found
 
 
 def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
@@ -200,7 +219,7 @@ def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
 
 
 def _sweep(
-    chain: Chain,
+    ear: Ear,
     polarisation: AerialPolarisation,
     air: Air,
     roof: Roof,
@@ -209,34 +228,33 @@ def _sweep(
 ) -> Swept:
     """Chance of each emission, and what interference takes, for each whole degree."""
     turned = BEARINGS[:, None]
-    ear = ear_of(chain, polarisation, air.company, assumptions, roof.surroundings)
-    disturbers = air_disturbers(air, assumptions)
+    squares = squares_of(ear, air_disturbers(air, assumptions))
     rejection, left = rejection_sd_db(ear, turned), ear.left(turned)
     shape = (len(BEARINGS), len(air.fields))
     margin, moved, lost = np.full(shape, np.inf), np.zeros(shape), np.zeros(shape)
-    fields: tuple[tuple[State, FloatArray], ...] = (("a", air.used_dbuv_m - air.fade_db), ("b", air.used_dbuv_m))
-    for state, field in fields:
-        alone = receive(
-            chain,
-            air.signals,
-            field,
-            turned,
-            polarisation,
-            assumptions,
-            roof.surroundings,
-            load_dbuv_m=air.used_dbuv_m,
-            beside=air.beside,
-        )
+    both = receive(
+        ear.chain,
+        air.signals,
+        np.stack([air.used_dbuv_m - air.fade_db, air.used_dbuv_m])[:, None],
+        turned,
+        polarisation,
+        assumptions,
+        roof.surroundings,
+        load_dbuv_m=air.used_dbuv_m,
+        beside=air.beside,
+    )
+    for number, state in enumerate(STATES):
+        alone = both.of_field(number)
         effect = effect_of(ear, alone, left, state)
-        reception = disturbed(alone, effect)
-        slope, spread = slope_and_spread(ear, effect, disturbers.spread_db(state, rejection))
+        reception = disturbed(replace(alone, outlets=()), effect)  # where it decides, not at each outlet
+        slope, spread = slope_and_spread(effect, squares[state], rejection)
         decides = reception.margin_db < margin
         moved = np.where(decides, slope * spread, moved)
         lost = np.where(decides, effect.cn_db - reception.cn_db, lost)
         margin = np.minimum(margin, reception.margin_db)
-    path, parts = wanted_errors(chain, polarisation, air, reception, assumptions)
+    path, parts = wanted_errors(ear.chain, polarisation, air, reception, assumptions)
     fixed = Cells(np.zeros_like(air.path_sd_db), path, parts[:-1], known)
-    turned_away = wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)
+    turned_away = wanted_rejection_sd_db(ear.chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
     enough = exceedance_through(margin + fixed.mean_db, sigma_db, fixed.curved)
     return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db)), lost)

@@ -56,6 +56,9 @@ def fields_of_methods(
     times = np.asarray(times_percent, dtype=float)[:, None]
     near = np.array([path.edges[0].size if path.edges else -np.inf for path in paths])
     near_edge_db = knife_edge_loss_db(near / np.sqrt(wavelength_m(frequency_mhz)))
+    for e, path in enumerate(paths):
+        if any(edge.leaves_m for edge in path.edges):
+            near_edge_db[e] = max(float(edge.loss_db(frequency_mhz[e])) for edge in path.edges)
     # P.1546 has its own way with what surrounds an aerial; only an obstacle entered is an edge to it
     obstacle_db = np.where([path.p1546_surroundings_m > 0 for path in paths], 0.0, near_edge_db)
     result = _p1546(digest, paths, frequency_mhz, times, erp_kw, warm_sea)

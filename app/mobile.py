@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -27,11 +28,10 @@ class MobileBlocks:
 
 def mobile_blocks(assumptions: Assumptions) -> MobileBlocks:
     """Blocks whose field was given by the assumptions `mobile_…_dbuv_m`; usually none."""
-    table = [row for row in rows("mobile_blocks") if row["assumption"]]
-    centre = np.array([(float(row["low_mhz"]) + float(row["high_mhz"])) / 2 for row in table])
-    field = np.array([assumptions.value(row["assumption"]) for row in table])
+    blocks = _assumed_blocks()
+    field = np.array([assumptions.value(name) for name, _ in blocks])
     there = field >= LEAST_FIELD_DBUV_M
-    return MobileBlocks(centre[there], field[there])
+    return MobileBlocks(np.array([centre_mhz for _, centre_mhz in blocks])[there], field[there])
 
 
 def block_mhz(name: str) -> tuple[float, float]:
@@ -52,4 +52,14 @@ def block_mhz(name: str) -> tuple[float, float]:
         f'block "{name}" is not known: use one of {listed}, or frequency_mhz with bandwidth_mhz',
         field="channel",
         allowed=listed,
+    )
+
+
+@cache
+def _assumed_blocks() -> tuple[tuple[str, float], ...]:
+    """Assumption and centre [MHz] of each block that one names."""
+    return tuple(
+        (row["assumption"], (float(row["low_mhz"]) + float(row["high_mhz"])) / 2)
+        for row in rows("mobile_blocks")
+        if row["assumption"]
     )

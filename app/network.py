@@ -86,7 +86,7 @@ def useful_share(delay_us: ArrayLike, symbol: Symbol) -> FloatArray:
 
 
 def window_start(power: FloatArray, arrival_us: FloatArray, window: Window, threshold_db: float) -> NDArray[np.intp]:
-    """Member whose arrival starts the window, (…, m) and (m,) to (…).
+    """Member whose arrival starts the window, (…, m) to (…); arrivals broadcast.
 
     "first above the threshold": the earliest of those within `threshold_db` of the strongest.
     "strongest": the strongest itself, so that everything before it disturbs.
@@ -98,27 +98,43 @@ def window_start(power: FloatArray, arrival_us: FloatArray, window: Window, thre
     return np.asarray(np.argmin(arrivals, axis=-1))
 
 
-def split(power: FloatArray, arrival_us: FloatArray, symbol: Symbol, window: Window, threshold_db: float) -> FloatArray:
-    """Useful share of each member's power, (…, m) for powers (…, m) and arrivals (m,) [µs]."""
+def shares_by_start(arrival_us: FloatArray, symbol: Symbol) -> FloatArray:
+    """Useful share of each member's power, by the member that starts the window, (m, m) for arrivals (m,) [µs]."""
+    return useful_share(arrival_us[np.newaxis, :] - arrival_us[:, np.newaxis], symbol)
+
+
+def split(
+    power: FloatArray, arrival_us: FloatArray, shares: FloatArray, window: Window, threshold_db: float
+) -> FloatArray:
+    """Useful share of each member's power, (…, m).
+
+    Parameters
+    ----------
+    power : array (…, n, m)
+        Of the members of n networks of m members each; without n everywhere: one network.
+    arrival_us : array (n, m)
+        When each arrives. [µs]
+    shares : array (n, m, m)
+        Of `shares_by_start`. [-]
+    """
     start = window_start(power, arrival_us, window, threshold_db)
-    table = useful_share(arrival_us[None, :] - arrival_us[:, None], symbol)  # row: who starts
-    return np.asarray(table[start])
+    return np.asarray(shares[start] if shares.ndim == 2 else shares[np.arange(len(shares)), start])
 
 
 def echo_rise_db(
-    power: FloatArray, arrival_us: FloatArray, bandwidth_mhz: float, rise_at_0_db: float, fades_over_db: float
+    power: FloatArray, arrival_us: FloatArray, bandwidth_mhz: ArrayLike, rise_at_0_db: ArrayLike, fades_over_db: float
 ) -> FloatArray:
-    """Rise of the required C/N by the strongest echo, (…, m) to (…) [dB].
+    """Rise of the required C/N by the strongest echo, (…, n, m) to (…, n) as in `split`, width and rise (n,) [dB].
 
     `rise_at_0_db` for an echo as strong as the signal, falling to 0 over `fades_over_db` (a line of ours
     between two published points). Echoes closer than 1 / bandwidth are one signal to the set.
     """
-    first = np.argmax(power, axis=-1)
-    apart = np.abs(arrival_us - arrival_us[first][..., None])
-    strongest = np.take_along_axis(power, first[..., None], axis=-1)
-    echo = np.where(apart * bandwidth_mhz > 1, power, 0.0).max(axis=-1)
+    first = np.argmax(power, axis=-1)[..., np.newaxis]
+    apart_us = np.abs(arrival_us - np.take_along_axis(np.broadcast_to(arrival_us, power.shape), first, axis=-1))
+    strongest = np.take_along_axis(power, first, axis=-1)[..., 0]
+    echo = np.where(apart_us * np.asarray(bandwidth_mhz)[..., np.newaxis] > 1, power, 0.0).max(axis=-1)
     with np.errstate(divide="ignore"):
-        below_db = -10 * np.log10(echo / strongest[..., 0])
+        below_db = -10 * np.log10(echo / strongest)
     return np.asarray(rise_at_0_db * np.clip(1 - below_db / fades_over_db, 0, 1))
 
 

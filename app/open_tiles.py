@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
 
-from app.errors import RequestError
+from app.errors import AppError, RequestError
 from app.world import cover_dir, own_sources_file, terrain_dir
 from terrain.download import FARTHEST_KM, Plan, Progress, download, plan_circle, summary
 from terrain.errors import TerrainError
@@ -60,11 +60,22 @@ def plan_document(planned: Plan) -> dict[str, Any]:
         "tiles": len(planned.tiles),
         "there": len(planned.there),
         "to_fetch": len(planned.to_fetch),
+        "at_sea": sum(not tile.has_land for tile in planned.to_fetch),
         "expected_mb": round(planned.expected_mb, 1),
+        "hosts": hosts_of(planned),
         "licence": planned.source.licence,
         "attribution": planned.source.attribution,
         "text": planned.said_first(),
     }
+
+
+def hosts_of(planned: Plan) -> list[str]:
+    """Servers that would be asked, those that stand in for a missing tile last."""
+    known = sources()
+    asked = [planned.source]
+    while (instead := known.get(asked[-1].instead or "")) is not None and instead not in asked:
+        asked.append(instead)
+    return list(dict.fromkeys(one.host for one in asked))
 
 
 def outcome_document(planned: Plan, progress: Progress) -> dict[str, Any]:
@@ -114,17 +125,18 @@ class Downloads:
         if self._planned is None or self._progress is None:
             return {"state": "none"}
         running = self._thread is not None and self._thread.is_alive()
-        state = "running" if running else "failed" if self._error else "ended"
+        state = "failed" if self._error else "stopped" if self._stop.is_set() else "ended"
         told = outcome_document(self._planned, self._progress)
-        return told | {"state": state, "done": self._progress.done, "error": self._error}
+        return told | {"state": "running" if running else state, "done": self._progress.done, "error": self._error}
 
     def _run(self, planned: Plan, done: Callable[[], None]) -> None:
         def told(progress: Progress) -> None:
             self._progress = progress
 
         try:
-            self._progress = fetch_plan(planned, told, self._stop)
-        except TerrainError as error:
+            try:
+                self._progress = fetch_plan(planned, told, self._stop)
+            finally:
+                done()  # what has come is ground, however it ended
+        except (AppError, TerrainError) as error:
             self._error = str(error)
-        finally:
-            done()

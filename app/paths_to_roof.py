@@ -124,7 +124,7 @@ def _fast_paths(
             key.transmitter.latitude_deg,
             key.transmitter.longitude_deg,
             key.antenna_agl_m,
-            tuple(at_km for _, at_km, _ in near),
+            tuple(one.from_roof_km for one in near),
         )
         for key, near in zip(keys, standing, strict=True)
     ]
@@ -140,8 +140,8 @@ def _fast_paths(
             n0=one.n0,
             edges=worst_first(
                 [
-                    edge_into_ray(what, at_km, height_m, roof.aerial_agl_m, source_km, slope)
-                    for (what, at_km, height_m), (source_km, slope) in zip(standing[one.line], one.sources, strict=True)
+                    edge_into_ray(near, roof.aerial_agl_m, source_km, slope)
+                    for near, (source_km, slope) in zip(standing[one.line], one.sources, strict=True)
                     if source_km > 0
                 ]
             ),

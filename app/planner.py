@@ -13,6 +13,7 @@ from app.air import Air
 from app.air_at import air_at
 from app.answer import answer_document
 from app.assumptions import Assumptions
+from app.cautions import off_air_notes
 from app.chain.parts import Chain
 from app.chain.powering import as_powered
 from app.chain.windows import DEFAULT_STANDARD
@@ -20,7 +21,7 @@ from app.chain_notes import chain_notes, with_notes
 from app.chance import Knowledge
 from app.declination import compass_text
 from app.errors import RequestError
-from app.mapped import credits_of, with_surroundings
+from app.mapped import credits_of, settled
 from app.margins import Turned, multiplex_chances, turn
 from app.reading_value import Readable
 from app.request import NOTHING, AssessRequest
@@ -48,11 +49,13 @@ def assess(
     """
     assumptions = Assumptions({**request.assumptions, **request.stated_values})
     chains = chains_of(request, store)
-    roof, told = with_surroundings(request.roof, ground)
-    request = replace(request, roof=roof)
+    request, told = settled(request, ground)
+    roof = request.roof
     compass = compass_text(roof.latitude_deg, roof.longitude_deg, today or date.today())
-    site = replace(site_of(roof, ground, told), compass=compass)
+    site = site_of(roof, ground, told)
     heard = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps)
+    off_air = off_air_notes(request, store, heard.on_the_air, today or date.today())
+    site = replace(site, compass=compass, cautions=(*site.cautions, *off_air))
     fields, air = heard.fields, heard.air
     multiplexes = sorted(set(air.multiplex_of))
     chosen = _wanted_ids(request, store)

@@ -87,8 +87,8 @@ def most_valuable(
     """
     if not readables or float(np.ptp(worth)) == 0:
         return None
-    tied = [abs(_correlation(one.level_dbuv, worth)) for one in readables]
-    tried = sorted((k for k in range(len(readables)) if tied[k] > LEAST_CORRELATION), key=lambda k: -tied[k])
+    tied = np.abs(_correlations(np.stack([one.level_dbuv for one in readables]), worth))
+    tried = sorted(np.flatnonzero(tied > LEAST_CORRELATION).tolist(), key=lambda k: -tied[k])
     values = {k: value_of(readables[k], worth) for k in tried[:MOST_TRIED]}
     if not values:
         return None
@@ -180,6 +180,9 @@ def _why(answer: bool, read: FloatArray, low: float, high: float, has_before: Fl
     return "works already" if before > after / 2 and before >= 0.5 else "out of reach"
 
 
-def _correlation(a: FloatArray, b: FloatArray) -> float:
-    spread = float(a.std() * b.std())
-    return 0.0 if spread == 0 else float(((a - a.mean()) * (b - b.mean())).sum() / DRAWS / spread)
+def _correlations(levels: FloatArray, worth: FloatArray) -> FloatArray:
+    """Correlation of each row of levels (r, DRAWS) with the worth (DRAWS,); 0 where a row does not vary. (r,)"""
+    away = worth - worth.mean()
+    spread = levels.std(axis=1) * worth.std()
+    common = levels @ away / DRAWS  # whatever the mean of a row: away has none
+    return np.asarray(np.divide(common, spread, out=np.zeros_like(common), where=spread > 0))

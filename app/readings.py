@@ -157,7 +157,7 @@ def reading_from_document(document: Mapping[str, Any]) -> Reading:
             field=unknown[0],
             allowed=", ".join(READING_KEYS),
         )
-    if "kind" not in document:
+    if document.get("kind") is None:
         raise ReadingError(f"the reading has no kind: use {', '.join(KINDS)}", field="kind", allowed=", ".join(KINDS))
     values: dict[str, Any] = {key: value for key, value in document.items() if value is not None}
     for key, value in values.items():

@@ -24,6 +24,7 @@ class Obstacle:
     distance_m: float
     height_agl_m: float  # above the ground at the roof
     width_m: float
+    leaves_m: float = 0.0  # of foliage on the way through it; 0: it lets nothing through
 
     def stands_towards(self, bearing_deg: float) -> bool:
         """Whether a direction from the roof falls within its width."""
@@ -60,6 +61,7 @@ class Roof:
             check(f"{place}.distance_m", one.distance_m, 1, FARTHEST_OBSTACLE_M, "m from the aerial")
             check(f"{place}.height_agl_m", one.height_agl_m, 0, HIGHEST_OBSTACLE_M, "m above the ground at the roof")
             check(f"{place}.width_m", one.width_m, 0.5, FARTHEST_OBSTACLE_M, "m across")
+            check(f"{place}.leaves_m", one.leaves_m, 0, DEEPEST_LEAVES_M, "m of leaves to pass through")
 
 
 WORDS = {

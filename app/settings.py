@@ -65,7 +65,7 @@ def load_settings(data_dir: Path) -> Settings:
         return _OfFolder()
     except ValidationError as error:
         raise StoreError(_plain(error, path)) from error
-    except (tomllib.TOMLDecodeError, UnicodeDecodeError, OSError) as error:
+    except (tomllib.TOMLDecodeError, UnicodeDecodeError, RecursionError, OSError) as error:
         raise StoreError(f"{path} cannot be read ({error}): mend it or move it away") from error
 
 

@@ -21,7 +21,9 @@ from app.air_at import air_at
 from app.assumptions import Assumptions
 from app.chain.parts import Aerial, Chain, Combiner, Part, Switch
 from app.chain.powering import as_powered
-from app.margins import Turned, multiplex_chances, turn
+from app.chance import rows_of
+from app.mapped import settled
+from app.margins import Turned, chance_of_each, multiplex_chances, turn
 from app.planner import chains_of
 from app.request import AssessRequest
 from app.site import site_of
@@ -49,6 +51,7 @@ def sweep_document(
     """
     assumptions = Assumptions(request.assumptions)
     chains = chains_of(request, store)
+    request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
     multiplexes = sorted(set(air.multiplex_of))
@@ -71,16 +74,13 @@ def pointing_sweep(turned: Turned, air: Air, multiplexes: Sequence[str]) -> dict
     Both in the polarisation that is best. The cost is the fall from C/N to C/(N + I) of the emission most likely
     received in that direction, in the time state that decides. [dB]
     """
-    acting = air.company.acting
-    columns = {
-        name: [e for e, owner in enumerate(air.multiplex_of) if owner == name and acting[e]] for name in multiplexes
-    }
-    alone = {name: turned.sweep.chance[:, columns[name]] for name in multiplexes}
-    chance = {name: 1 - np.prod(1 - one, axis=1) for name, one in alone.items()}
-    lost_db = {
-        name: np.take_along_axis(turned.sweep.lost_db[:, columns[name]], one.argmax(axis=1)[:, None], axis=1)[:, 0]
-        for name, one in alone.items()
-    }
+    acting, rows = air.company.acting, rows_of(air.multiplex_of)
+    chance = chance_of_each(turned.sweep.chance, air.multiplex_of, multiplexes, acting)
+    lost_db = {}
+    for name in multiplexes:
+        owned = [e for e in rows[name] if acting[e]]
+        likeliest = turned.sweep.chance[:, owned].argmax(axis=1)[:, None]
+        lost_db[name] = np.take_along_axis(turned.sweep.lost_db[:, owned], likeliest, axis=1)[:, 0]
     return {
         "polarisation": turned.polarisation,
         "best_deg": turned.pointing_deg,

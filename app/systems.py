@@ -76,6 +76,7 @@ def system_of(text: str) -> System:
     raise ModeError(f'system "{text}" is not known: use {listed}', field="system", allowed=listed)
 
 
+@cache
 def mode_of(system: str, mode: str) -> Mode:
     """Mode by system and name; "256QAM 2/3", "qam256, 2/3" and "256-QAM 2/3" are the same.
 

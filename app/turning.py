@@ -10,7 +10,7 @@ import numpy as np
 from app.air import Air
 from app.chain.aerial import pattern_loss_db
 from app.chain.parts import Aerial, AerialPolarisation
-from app.margins import Turned, expected_count
+from app.margins import Turned, chance_of_each
 
 LEAST_PERCENT = 0.5  # a multiplex that never reaches it in any direction is left out
 
@@ -21,17 +21,15 @@ def turning_document(turned: Turned, air: Air, multiplexes: Sequence[str]) -> di
     The chances are those of the polarisation chosen, of alternatives as if independent; a multiplex that no
     direction brings is left out.
     """
+    each = chance_of_each(turned.sweep.chance, air.multiplex_of, multiplexes, air.company.acting)
     return {
         "pattern_loss_db_by_degree": _pattern(
             turned.chain.aerial, turned.polarisation, float(np.median(air.signals.frequency_mhz))
         ),
         "chance_percent_by_degree": {
-            name: np.rint(percent).astype(int).tolist()
-            for name in multiplexes
-            if (
-                percent := 100 * expected_count(turned.sweep.chance, air.multiplex_of, [name], air.company.acting)
-            ).max()
-            >= LEAST_PERCENT
+            name: np.rint(100 * chance).astype(int).tolist()
+            for name, chance in each.items()
+            if 100 * chance.max() >= LEAST_PERCENT
         },
     }
 

@@ -7,10 +7,10 @@ it is least, stands in the tests. Importing this imports numba.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass, fields
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,12 +25,15 @@ from propagation.refractivity import refractivity
 from propagation.scan import BACK, ROOT, SCAN
 from propagation.scan_lines import scan_lines
 from propagation.smooth_edge import smooth_rays
-from terrain.kernels import sheet_arrays
+from terrain.kernels import SheetArrays, scratch_for, sheet_arrays
 from terrain.lines import lines_over
 from terrain.sheet import Sheet
 
 FloatArray = NDArray[np.float64]
-Each = Callable[[Callable[[slice], None], Iterable[slice]], Any]  # such as `map`, or that of a pool of threads
+Each = Callable[
+    [Callable[[int], "Digests"], Iterable[int]], Iterable["Digests"]
+]  # such as `map`, or that of a pool of threads
+T = TypeVar("T", PathDigest, PathTerms)
 
 CHUNK = 4096  # most paths that one thread takes at a time
 
@@ -47,6 +50,20 @@ class Ends:
     aerial_agl_m: FloatArray
     first_edge: NDArray[np.int64]  # (p + 1,) into edge_km
     edge_km: FloatArray  # (e,) distances of what stands near a roof, from the roof
+
+    def part(self, first: int, stop: int) -> Ends:
+        """Paths from one number to before another."""
+        edges = self.first_edge[first : stop + 1]
+        return Ends(
+            self.tx_latitude_deg[first:stop],
+            self.tx_longitude_deg[first:stop],
+            self.antenna_agl_m[first:stop],
+            self.rx_latitude_deg[first:stop],
+            self.rx_longitude_deg[first:stop],
+            self.aerial_agl_m[first:stop],
+            edges - edges[0],
+            self.edge_km[edges[0] : edges[-1]],
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,48 +98,69 @@ def digests(
     As `digest.path_digest` and `p1812.path.path_terms`.
     """
     paths = ends.tx_latitude_deg.size
-    scans = np.zeros(paths, SCAN)
-    length, points, lapse, n0 = np.zeros(paths), np.zeros(paths, np.int64), np.zeros(paths), np.zeros(paths)
-    sources = np.zeros((2, ends.edge_km.size))
     arrays = sheet_arrays(sheet)
 
-    def scan(part: slice) -> None:
-        lines = lines_over(
-            sheet,
-            ends.tx_latitude_deg[part],
-            ends.tx_longitude_deg[part],
-            ends.rx_latitude_deg[part],
-            ends.rx_longitude_deg[part],
-            spacing_m,
-        )
-        length[part], points[part] = lines.length_km, lines.points
-        lapse[part], n0[part] = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
-        scan_lines(
-            arrays,
-            lines.first_knot,
-            lines.row,
-            lines.column,
-            lines.length_km,
-            lines.points,
-            500 / effective_earth_radius_km(lapse[part]),
-            ends.antenna_agl_m[part],
-            ends.aerial_agl_m[part],
-            ends.first_edge[part.start : part.stop + 1],
-            ends.edge_km,
-            ROOT,
-            BACK,
-            scans[part],
-            sources,
-        )
+    def digested(first: int) -> Digests:
+        return _digests(sheet, arrays, ends.part(first, min(first + size, paths)), spacing_m, maps_folder)
 
     size = max(1, min(CHUNK, -(-paths // parts)))
-    list(each(scan, [slice(first, min(first + size, paths)) for first in range(0, paths, size)]))
-    return _closed(scans, ends, length, points, lapse, n0, sources)
+    batches = list(each(digested, range(0, paths, size)))
+    return batches[0] if len(batches) == 1 else _joined(batches, ends.first_edge)
+
+
+def _digests(
+    sheet: Sheet, arrays: SheetArrays, ends: Ends, spacing_m: float | None, maps_folder: Path | None
+) -> Digests:
+    """Digest one part of the paths, on one thread."""
+    lines = lines_over(
+        sheet, ends.tx_latitude_deg, ends.tx_longitude_deg, ends.rx_latitude_deg, ends.rx_longitude_deg, spacing_m
+    )
+    lapse, n0 = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
+    scans, sources = np.zeros(lines.points.size, SCAN), np.zeros((2, ends.edge_km.size))
+    scan_lines(
+        arrays,
+        scratch_for(arrays),
+        lines.first_knot,
+        lines.row,
+        lines.column,
+        lines.length_km,
+        lines.points,
+        500 / effective_earth_radius_km(lapse),
+        ends.antenna_agl_m,
+        ends.aerial_agl_m,
+        ends.first_edge,
+        ends.edge_km,
+        ROOT,
+        BACK,
+        scans,
+        sources,
+    )
+    columns = {name: np.ascontiguousarray(scans[name]) for name in scans.dtype.names or ()}
+    return _closed(columns, ends, lines.length_km, lines.points, lapse, n0, sources)
+
+
+def _joined(batches: Sequence[Digests], first_edge: NDArray[np.int64]) -> Digests:
+    """Batches as one, in their order."""
+
+    def together(parts: Sequence[T]) -> T:
+        kind = type(parts[0])
+        return kind(**{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(kind)})
+
+    return Digests(
+        known=np.concatenate([batch.known for batch in batches]),
+        digest=together([batch.digest for batch in batches]),
+        terms=together([batch.terms for batch in batches]),
+        delta_n_per_km=np.concatenate([batch.delta_n_per_km for batch in batches]),
+        n0=np.concatenate([batch.n0 for batch in batches]),
+        first_edge=first_edge,
+        source_km=np.concatenate([batch.source_km for batch in batches]),
+        source_slope=np.concatenate([batch.source_slope for batch in batches]),
+    )
 
 
 @np.errstate(divide="ignore", invalid="ignore")  # of paths that are not known
 def _closed(
-    s: NDArray[Any],
+    s: Mapping[str, NDArray[Any]],
     ends: Ends,
     d: FloatArray,
     points: NDArray[np.int64],
@@ -187,7 +225,7 @@ def _horizon_rays_mrad(
 
 
 def _digest(
-    s: NDArray[Any],
+    s: Mapping[str, NDArray[Any]],
     d: FloatArray,
     a: FloatArray,
     b: FloatArray,
@@ -232,7 +270,7 @@ def _digest(
 
 
 def _terms(
-    s: NDArray[Any],
+    s: Mapping[str, NDArray[Any]],
     ends: Ends,
     d: FloatArray,
     a: FloatArray,

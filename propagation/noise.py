@@ -48,6 +48,9 @@ def man_made_fam_db(frequency_mhz: ArrayLike, environment: ArrayLike) -> FloatAr
     f = np.asarray(frequency_mhz, dtype=float)
     if (f < 0.3).any():
         raise RangeError(f"frequency {f.min():g} MHz is outside Rec. ITU-R P.372 Table 1: use 0.3 MHz or more")
+    if isinstance(environment, str) and environment in _MAN_MADE:
+        at_1_mhz, per_decade = _MAN_MADE[environment]
+        return np.asarray(at_1_mhz - per_decade * np.log10(f))
     names = np.asarray(environment)
     unknown = names[~np.isin(names, ENVIRONMENTS)]
     if unknown.size:

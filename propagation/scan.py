@@ -23,12 +23,16 @@ import numpy as np
 from numpy.typing import NDArray
 
 from terrain.compiled import compiled, compiled_as_written, larger
-from terrain.kernels import Scratch, SheetArrays, height_at
+from terrain.kernels import SheetArrays, height_at
 
+FloatArray = NDArray[np.float64]
 Heights = NDArray[np.float32]
 
 MOST_POINTS = 20_001
-_BOTH, _TRANSMITTER, _ROOF = 0, 1, 2
+STRETCH = 128  # points between 1 and n - 2 whose maxima are kept, to find places from them
+MOST_STRETCHES = MOST_POINTS // STRETCH + 1
+_TX, _RX, _NU = 0, 1, 2  # the module's three lines
+_CLOSE_M = 0.01  # more than single precision may be wrong by
 _number = np.arange(MOST_POINTS, dtype=float)
 _number[0] = np.inf  # no point is asked for its distance from itself
 ROOT = (1 / np.sqrt(_number)).astype(np.float32)
@@ -67,7 +71,8 @@ SCAN = np.dtype(
 @compiled
 def scan_profile(
     sheet: SheetArrays,
-    scratch: Scratch,  # as `sample_heights` left it
+    row: FloatArray,  # (k,) of the geodesic's knots
+    column: FloatArray,
     height: Heights,  # (n,) bare ground
     length_km: float,
     antenna_agl_m: float,
@@ -75,6 +80,7 @@ def scan_profile(
     bulges: tuple[float, float, float],  # 500/a per km² at the median, for the true Earth, at beta0
     root: Heights,  # (n,) 1 / root(i)
     back: Heights,  # (n,) 1 / root(j)
+    tops: Heights,  # (MOST_STRETCHES, 12) is left with what `ray_source` needs
     out: NDArray[np.void],  # (1,) of SCAN
 ) -> None:
     """Scan one profile."""
@@ -85,7 +91,17 @@ def scan_profile(
     median = bulges[0] * step**2
 
     _ground(height, length_km, tx_amsl, rx_amsl, out)
-    rays = _rays(height, root, back, tx_amsl, rx_amsl, median, bulges[1] * step**2, bulges[2] * step**2)
+    stretches = (n - 3) // STRETCH + 1
+    for number in range(stretches):
+        first = 1 + number * STRETCH
+        last = min(first + STRETCH, n - 1)
+        tops[number] = _rays(
+            height, root, back, first, last, tx_amsl, rx_amsl, median, bulges[1] * step**2, bulges[2] * step**2
+        )
+    rays = tops[0].copy()
+    for number in range(1, stretches):
+        for ray in range(rays.size):
+            rays[ray] = max(rays[ray], tops[number, ray])
     to_nu = math.sqrt(0.002 * length_km) / step
     out[0].tx_median, out[0].rx_median, out[0].nu_median = (
         rays[0] / step + slope,
@@ -100,15 +116,20 @@ def scan_profile(
 
     # The ray meets the ground where the slope to the highest point exceeds that to the other antenna, eq. (78).
     sees = not rays[0] > 0
-    nearest = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _BOTH, sees, n - 1)
-    first = last = nearest
+    ends = (tx_amsl, rx_amsl, median)
+    nearest = _place(sheet, row, column, height, ends, root, back, tops, _NU, sees, n - 1)
+    first_horizon = last_horizon = nearest
     if not sees:
-        first = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _TRANSMITTER, False, n - 1)
-        last = _place(sheet, scratch, height, tx_amsl, rx_amsl, median, root, back, _ROOF, True, n - 1)
+        first_horizon = _place(sheet, row, column, height, ends, root, back, tops, _TX, False, n - 1)
+        last_horizon = _place(sheet, row, column, height, ends, root, back, tops, _RX, True, n - 1)
     out[0].line_of_sight = sees
-    out[0].tx_horizon_km, out[0].rx_horizon_km = first * step, length_km - last * step
+    out[0].tx_horizon_km, out[0].rx_horizon_km = first_horizon * step, length_km - last_horizon * step
     out[0].roughness_m = _roughness_m(
-        height, min(first, last), max(first, last), out[0].tx_fit_amsl_m, out[0].rx_fit_amsl_m
+        height,
+        min(first_horizon, last_horizon),
+        max(first_horizon, last_horizon),
+        out[0].tx_fit_amsl_m,
+        out[0].rx_fit_amsl_m,
     )
     x = nearest * step
     out[0].worst_km = x
@@ -120,23 +141,28 @@ def _rays(
     height: Heights,
     root: Heights,
     back: Heights,
+    first: int,
+    last: int,
     tx_amsl: float,
     rx_amsl: float,
     bulge_0: float,
     bulge_1: float,
     bulge_2: float,
 ) -> tuple[np.float32, ...]:
-    """Largest of the module's three lines at each of three bulges, then of H, H / i and H / j."""
+    """Largest, from one point to before another, of the module's three lines at three bulges, of H, H / i, H / j."""
     n = height.size
-    inner, inner_root, inner_back = height[1 : n - 1], root[1 : n - 1], back[1 : n - 1]
-    start, rise = np.float32(tx_amsl), np.float32((rx_amsl - tx_amsl) / (n - 1))
+    part, part_root, part_back = height[first:last], root[first:last], back[first:last]
+    rise = np.float32((rx_amsl - tx_amsl) / (n - 1))
+    start = np.float32(tx_amsl + (rx_amsl - tx_amsl) / (n - 1) * first)
     c0, c1, c2 = np.float32(bulge_0), np.float32(bulge_1), np.float32(bulge_2)
+    before, after = np.float32(first), np.float32(n - 1 - first)
     least = np.float32(-3e38)
     tx0 = tx1 = tx2 = rx0 = rx1 = rx2 = nu0 = nu1 = nu2 = over = over_tx = over_rx = least
-    for k in range(n - 2):
-        i, j = np.float32(np.int32(k + 1)), np.float32(np.int32(n - 2 - k))
-        p, q = inner_root[k], inner_back[k]
-        above = inner[k] - (start + rise * i)
+    for k in range(part.size):
+        number = np.float32(np.int32(k))
+        i, j = before + number, after - number
+        p, q = part_root[k], part_back[k]
+        above = part[k] - (start + rise * number)
         from_tx, from_rx, in_nu, bulge_in_nu = above * p * p, above * q * q, above * p * q, i * p * j * q
         over, over_tx, over_rx = larger(over, above), larger(over_tx, from_tx), larger(over_rx, from_rx)
         tx0, rx0 = larger(tx0, from_tx + c0 * j), larger(rx0, from_rx + c0 * i)
@@ -151,53 +177,50 @@ def _rays(
 @compiled
 def _place(
     sheet: SheetArrays,
-    scratch: Scratch,
+    row: FloatArray,
+    column: FloatArray,
     height: Heights,
-    tx_amsl: float,
-    rx_amsl: float,
-    bulge: float,
+    ends: tuple[float, float, float],  # antenna and aerial above sea level, bulge per step²
     root: Heights,
     back: Heights,
-    seen_from: int,
+    tops: Heights,
+    ray: int,
     last: bool,
     stop: int,
 ) -> int:
     """Where one of the module's three lines is largest, from 1 to before `stop`; of equals the first or the last.
 
-    A maximum without its place is several times cheaper: so the best stretch is found first, then the point in it.
+    In double precision: where two points are equal but for a millimetre, the horizon must not jump between them.
+    Single precision has found the stretch; points of it and a few beside are asked if they come close to its maximum.
     """
-    one = back if seen_from == _ROOF else root
-    other = root if seen_from == _TRANSMITTER else back
+    tx_amsl, rx_amsl, bulge = ends
     n = height.size
-    stretch = 64
-    start, rise = np.float32(tx_amsl), np.float32((rx_amsl - tx_amsl) / (n - 1))
-    c = np.float32(bulge)
     best, best_first = np.float32(-3e38), 1
-    for first in range(1, stop, stretch):
-        size = min(stretch, stop - first)
-        part, p, q = height[first : first + size], one[first : first + size], other[first : first + size]
-        top = np.float32(-3e38)
-        for k in range(size):
-            i, j = np.float32(np.int32(first + k)), np.float32(np.int32(n - 1 - first - k))
-            top = larger(top, (part[k] - (start + rise * i) + c * i * j) * p[k] * q[k])
+    for number in range(MOST_STRETCHES):
+        first = 1 + number * STRETCH
+        if first >= stop:
+            break
+        top = tops[number, ray]
+        if stop < min(first + STRETCH, n - 1):
+            top = _rays(height, root, back, first, stop, tx_amsl, rx_amsl, bulge, bulge, bulge)[ray]
         if top > best or (last and top == best):
             best, best_first = top, first
 
-    # In double precision: where two points are equal but for a millimetre, the horizon must not jump between them.
-    # A few points more on both sides, as single precision may have taken the stretch beside the right one.
+    one, other = back if ray == _RX else root, root if ray == _TX else back
     place, largest = best_first, -1e300
-    for number in range(max(1, best_first - 8), min(best_first + stretch + 8, stop)):
-        back_number = n - 1 - number
-        line = tx_amsl + (rx_amsl - tx_amsl) * number / (n - 1)
-        above = height_at(sheet, scratch, number) - line + bulge * number * back_number
-        if seen_from == _TRANSMITTER:
-            value = above / number
-        elif seen_from == _ROOF:
-            value = above / back_number
+    for i in range(max(1, best_first - 8), min(best_first + STRETCH + 8, stop)):
+        bent_line = tx_amsl + (rx_amsl - tx_amsl) * i / (n - 1) - bulge * i * (n - 1 - i)
+        if (height[i] - bent_line + _CLOSE_M) * one[i] * other[i] < best:
+            continue
+        above = height_at(sheet, row, column, n, i) - bent_line
+        if ray == _TX:
+            value = above / i
+        elif ray == _RX:
+            value = above / (n - 1 - i)
         else:
-            value = above / math.sqrt(number * back_number)
+            value = above / math.sqrt(i * (n - 1 - i))
         if value > largest or (last and value == largest):
-            place, largest = number, value
+            place, largest = i, value
     return place
 
 
@@ -292,7 +315,8 @@ def _roughness_m(bare: Heights, first: int, last: int, tx_fit: float, rx_fit: fl
 @compiled
 def ray_source(
     sheet: SheetArrays,
-    scratch: Scratch,
+    row: FloatArray,
+    column: FloatArray,
     surface: Heights,
     beyond_km: float,
     length_km: float,
@@ -301,6 +325,7 @@ def ray_source(
     bulge: float,
     root: Heights,
     back: Heights,
+    tops: Heights,
 ) -> tuple[float, float]:
     """Where the ray comes from that arrives at the aerial, seen past what stands nearer than `beyond_km`.
 
@@ -317,7 +342,8 @@ def ray_source(
     while stop > 1 and (n - stop) * step <= beyond_km:
         stop -= 1
     if stop > 1:
-        i = _place(sheet, scratch, surface, tx_amsl, rx_amsl, bulge * step**2, root, back, _ROOF, False, stop)
+        ends = (tx_amsl, rx_amsl, bulge * step**2)
+        i = _place(sheet, row, column, surface, ends, root, back, tops, _RX, False, stop)
         y = (n - 1 - i) * step
         slope = (surface[i] - rx_amsl) / y - bulge * y
         if slope > steepest:

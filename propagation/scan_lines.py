@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from propagation.constants import EARTH_RADIUS_KM
 from propagation.p1812.path import BETA0_EARTH_RADIUS_KM
-from propagation.scan import MOST_POINTS, ray_source, scan_profile
+from propagation.scan import MOST_POINTS, MOST_STRETCHES, ray_source, scan_profile
 from propagation.scan_zones import all_inland, mark_lakes, zone_lengths
 from terrain.compiled import compiled
 from terrain.kernels import Scratch, SheetArrays, inside, sample_heights
@@ -24,6 +24,7 @@ _BULGE_BETA0 = 500 / BETA0_EARTH_RADIUS_KM
 @compiled
 def scan_lines(
     sheet: SheetArrays,
+    scratch: Scratch,
     first_knot: NDArray[np.int64],  # (p + 1,)
     row: FloatArray,  # (k,)
     column: FloatArray,
@@ -41,21 +42,16 @@ def scan_lines(
 ) -> None:
     """Scan paths one after the other; those over a gap of the sheet stay unknown."""
     most = points.max()
-    scratch = Scratch(
-        np.empty(most, np.int64),
-        np.empty(most, np.float32),
-        np.empty(most, np.float32),
-        np.empty((4, most), np.float32),
-    )
+    tops = np.empty((MOST_STRETCHES, 12), np.float32)
     wet = np.empty(most, np.bool_)
     profile = np.empty(most, np.float32)
     for p in range(points.size):
         n = points[p]
-        knots = slice(first_knot[p], first_knot[p + 1])
-        if n == 0 or not inside(row[knots], column[knots], sheet.rows, sheet.columns):
+        rows, columns = row[first_knot[p] : first_knot[p + 1]], column[first_knot[p] : first_knot[p + 1]]
+        if n == 0 or not inside(rows, columns, sheet.rows, sheet.columns):
             continue
         height = profile[:n]
-        known, any_water = sample_heights(sheet, row[knots], column[knots], scratch, height, wet[:n])
+        known, any_water = sample_heights(sheet, rows, columns, scratch, height, wet[:n])
         if not known:
             continue
         out = scans[p : p + 1]
@@ -69,7 +65,8 @@ def scan_lines(
         out[0].known = True
         scan_profile(
             sheet,
-            scratch,
+            rows,
+            columns,
             height,
             length_km[p],
             antenna_agl_m[p],
@@ -77,12 +74,14 @@ def scan_lines(
             (bulge[p], _BULGE_TRUE_EARTH, _BULGE_BETA0),
             root[:n],
             back[MOST_POINTS - n :],
+            tops,
             out,
         )
         for e in range(first_edge[p], first_edge[p + 1]):
             sources[0, e], sources[1, e] = ray_source(
                 sheet,
-                scratch,
+                rows,
+                columns,
                 height,
                 edge_km[e],
                 length_km[p],
@@ -91,4 +90,5 @@ def scan_lines(
                 bulge[p],
                 root[:n],
                 back[MOST_POINTS - n :],
+                tops,
             )

@@ -8,10 +8,11 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from terrain.compiled import compiled
+from terrain.compiled import compiled, larger
 from terrain.water import COASTAL_BELOW_M, LARGE_WATER_KM
 
 COASTAL_WITHIN_KM = 50.0
+STRETCH = 64  # points passed over at once
 
 
 @compiled
@@ -73,17 +74,16 @@ def zone_lengths(
     while i < n:
         if wet[i]:
             first_water = i if first_water < 0 else first_water
-            last_water = i
-            i += 1
+            i = _next(wet, False, i, n)
+            last_water = i - 1
             continue
         start = i
-        while i < n and not wet[i]:
-            i += 1
+        i = _next(wet, True, i, n)
         stretch = _points(start, i, n)
         land += stretch
         longest_land = max(longest_land, stretch)
-        near_before = start + reach if start > 0 else 0  # coastal is only what lies before this
-        near_after = i - reach if i < n else n  # or from this on
+        near_before = min(start + reach, i) if start > 0 else start  # coastal is only what lies before this
+        near_after = max(i - reach, near_before) if i < n else n  # or from this on
         longest_inland = max(longest_inland, _longest_inland(height_m, start, i, near_before, near_after))
     out[0].sea_km = (n - 1 - land) * step
     out[0].longest_land_km, out[0].longest_inland_km = longest_land * step, longest_inland * step
@@ -92,16 +92,55 @@ def zone_lengths(
 
 
 @compiled
+def _next(wet: NDArray[np.bool_], wanted: bool, first: int, stop: int) -> int:
+    """Number of the next point that is water, or is not; `stop` if there is none. Passes over many at once."""
+    while first < stop:
+        whole = first % STRETCH == 0 and first + STRETCH <= stop
+        if whole and _count(wet[first : first + STRETCH]) == (0 if wanted else STRETCH):
+            first += STRETCH
+            continue
+        if wet[first] == wanted:
+            break
+        first += 1
+    return first
+
+
+@compiled
+def _count(wet: NDArray[np.bool_]) -> int:
+    count = np.int32(0)
+    for k in range(wet.size):
+        count += np.int32(wet[k])
+    return int(count)
+
+
+@compiled
 def _longest_inland(height_m: NDArray[np.float32], start: int, stop: int, near_before: int, near_after: int) -> float:
     """Longest run of a stretch of land that is not coastal, in points."""
     low = np.float32(COASTAL_BELOW_M)
+    n = height_m.size
     longest = 0.0
-    run = start
-    for i in range(start, stop):
-        if height_m[i] < low and (i < near_before or i >= near_after):
-            longest = max(longest, _points(run, i, height_m.size))
+    run = i = start
+    while i < stop:
+        if near_before <= i < near_after:
+            i = near_after
+            continue
+        limit = near_before if i < near_before else stop
+        if i % STRETCH == 0 and i + STRETCH <= limit and _lowest(height_m[i : i + STRETCH]) >= low:
+            i += STRETCH
+            continue
+        if height_m[i] < low:
+            longest = max(longest, _points(run, i, n))
             run = i + 1
-    return max(longest, _points(run, stop, height_m.size))
+        i += 1
+    return max(longest, _points(run, stop, n))
+
+
+@compiled
+def _lowest(height_m: NDArray[np.float32]) -> np.float32:
+    depth = np.float32(-3e38)
+    for k in range(height_m.size):
+        depth = larger(depth, -height_m[k])
+    return -depth
 
 
 @compiled

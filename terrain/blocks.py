@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+import time
 from collections.abc import Iterator
 from typing import Any
 
@@ -41,6 +42,7 @@ class Blocks:
         self._cache = cache
         self.coast = coast  # whether water counts only near the sea of the coastline
         self._lock = threading.Lock()
+        self.decoding_s = 0.0  # spent by this process so far
         self._down = max(1, -(-(raster.grid.rows - 1) // raster.block_rows))
         self._across = max(1, -(-(raster.grid.columns - 1) // raster.block_columns))
 
@@ -173,7 +175,11 @@ class Blocks:
             return kept
         with self._lock:
             kept = self._cache.load(name)
-            return self._decode(block) if kept is None else kept
+            if kept is None:
+                start = time.perf_counter()
+                kept = self._decode(block)
+                self.decoding_s += time.perf_counter() - start
+            return kept
 
     def _bridged(self, block: tuple[int, int]) -> NDArray[Any]:
         samples = self._samples(block)

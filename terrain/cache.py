@@ -2,13 +2,14 @@
 
 Every array is written under a name of its own and then renamed: readers in other threads and
 processes see a whole array or none. Two that make the same array at once write the same bytes.
-The folder is kept below a limit: what was used longest ago goes first, never what is mapped here or was
-used by anyone within the last hour.
+The folder is kept below a limit: what was used longest ago goes first, never what is mapped by any process or
+was used within the last hour.
 """
 
 from __future__ import annotations
 
 import contextlib
+import math
 import os
 import shutil
 import tempfile
@@ -17,16 +18,19 @@ import time
 import uuid
 import weakref
 from collections import OrderedDict
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, BinaryIO
 
 import numpy as np
 from numpy.typing import NDArray
 
 from terrain.errors import CacheError
+from terrain.locks import mark_in_use, removed_unless_in_use
 
 # Layout of what lies in the folder; a new number where old files would be read wrongly.
-_LAYOUT = "ground-1"
+_LAYOUT = "ground-2"
 # Each mapped array holds a file handle; systems commonly allow 1024.
 _MAPPED_AT_ONCE = 256
 # What was read of a mapped array stays in memory as long as it is mapped.
@@ -34,6 +38,31 @@ _MAPPED_BYTES = 768 << 20
 LIMIT_BYTES = 20 * 10**9
 _IN_USE_S = 3600.0
 _TRIM_TO = 0.8  # of the limit, so that not every new array begins anew
+
+Parts = Callable[[], Iterable[NDArray[Any]]]
+
+
+@dataclass(frozen=True, slots=True)
+class _Array:
+    """An array to be written, in parts along its first axis."""
+
+    shape: tuple[int, ...]
+    dtype: np.dtype[Any]
+    parts: Parts
+
+    @property
+    def nbytes(self) -> int:
+        return math.prod(self.shape) * self.dtype.itemsize
+
+    def write(self, file: BinaryIO) -> None:
+        """Write it in the form of `numpy.save`."""
+        descr = np.lib.format.dtype_to_descr(self.dtype)
+        np.lib.format.write_array_header_1_0(file, {"descr": descr, "fortran_order": False, "shape": self.shape})
+        for part in self.parts():
+            file.write(np.ascontiguousarray(part).data)
+
+    def whole(self) -> NDArray[Any]:
+        return np.concatenate([part.ravel() for part in self.parts()]).reshape(self.shape)
 
 
 class ArrayCache:
@@ -57,8 +86,7 @@ class ArrayCache:
                 return self._mapped[name]
         for folder in self._folders:
             with contextlib.suppress(OSError, ValueError, EOFError):
-                # asarray: numpy's memmap class makes every indexing slower.
-                array = np.asarray(np.load(folder / f"{name}.npy", mmap_mode="r", allow_pickle=False))
+                array = _mapped(folder / f"{name}.npy")
                 with contextlib.suppress(OSError):
                     os.utime(folder / f"{name}.npy")  # used now: trimming takes the oldest
                 self._map(name, array)
@@ -70,6 +98,11 @@ class ArrayCache:
 
         Raises CacheError if neither the folder nor a temporary one can be written.
         """
+        return self.keep_parts(name, array.shape, array.dtype, lambda: (array,))
+
+    def keep_parts(self, name: str, shape: tuple[int, ...], dtype: np.dtype[Any], parts: Parts) -> NDArray[Any]:
+        """As `keep`, of an array that comes in parts one after the other and need not be whole in memory."""
+        array = _Array(shape, dtype, parts)
         try:
             self._write(self._folders[-1], name, array)
         except OSError as error:
@@ -78,7 +111,7 @@ class ArrayCache:
             self._write_elsewhere(name, array)
         kept = self.load(name)
         self._trim(array.nbytes)
-        return array if kept is None else kept
+        return array.whole() if kept is None else kept
 
     def _map(self, name: str, array: NDArray[Any]) -> None:
         with self._lock:
@@ -98,14 +131,13 @@ class ArrayCache:
                 self._kept_bytes += more_bytes
                 if self._kept_bytes <= self._limit_bytes:
                     return
-            in_use = {folder / f"{name}.npy" for name in self._mapped}
             if self._kept_bytes is None:
                 for old in folder.parent.glob("ground-*"):
                     if old != folder:
                         shutil.rmtree(old, ignore_errors=True)
-            self._kept_bytes = _trimmed(folder, self._limit_bytes, in_use)
+            self._kept_bytes = _trimmed(folder, self._limit_bytes)
 
-    def _write_elsewhere(self, name: str, array: NDArray[Any]) -> None:
+    def _write_elsewhere(self, name: str, array: _Array) -> None:
         try:
             with self._lock:
                 if self._temporary is None:
@@ -123,19 +155,32 @@ class ArrayCache:
         )
 
     @staticmethod
-    def _write(folder: Path, name: str, array: NDArray[Any]) -> None:
+    def _write(folder: Path, name: str, array: _Array) -> None:
         target = folder / f"{name}.npy"
         target.parent.mkdir(parents=True, exist_ok=True)
         unfinished = target.with_name(f"{target.name}.{os.getpid()}-{uuid.uuid4().hex[:8]}.part")
         try:
             with unfinished.open("wb") as file:
-                np.save(file, array, allow_pickle=False)
+                array.write(file)
             unfinished.replace(target)
         finally:
             unfinished.unlink(missing_ok=True)
 
 
-def _trimmed(folder: Path, limit_bytes: float, in_use: set[Path]) -> float:
+def _mapped(path: Path) -> NDArray[Any]:
+    """Map an array as `np.save` wrote it, marked as in use for as long as the map is."""
+    with path.open("rb") as file:
+        mark_in_use(file)  # the map holds on to the open file, and with it to the mark
+        if np.lib.format.read_magic(file) != (1, 0):
+            raise ValueError(f"{path} is written otherwise")
+        shape, fortran, dtype = np.lib.format.read_array_header_1_0(file)
+        if 0 in shape or fortran or dtype.hasobject:
+            return np.asarray(np.load(path, allow_pickle=False))
+        # asarray: numpy's memmap class makes every indexing slower.
+        return np.asarray(np.memmap(file, dtype, "r", file.tell(), shape))
+
+
+def _trimmed(folder: Path, limit_bytes: float) -> float:
     """Remove the oldest arrays of a folder above its limit; returns how many bytes are left."""
     found = []
     for path in folder.rglob("*.npy"):
@@ -149,8 +194,6 @@ def _trimmed(folder: Path, limit_bytes: float, in_use: set[Path]) -> float:
     for used, size, path in sorted(found):
         if total <= _TRIM_TO * limit_bytes or now - used < _IN_USE_S:
             break
-        if path not in in_use:
-            with contextlib.suppress(OSError):
-                path.unlink()
-                total -= size
+        with contextlib.suppress(OSError):
+            total -= size if removed_unless_in_use(path) else 0
     return total

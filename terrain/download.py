@@ -17,6 +17,7 @@ from terrain.cover import open_cover_raster
 from terrain.errors import DiskError, DownloadError, OfflineError, RasterError
 from terrain.fetch import Absent, Patience, Stopped, disk_error, fetch, forget
 from terrain.land_mask import has_land
+from terrain.locks import alone
 from terrain.raster import BLOCK_SIDE, open_raster
 from terrain.sources import Corner, TileSource, corners_of_circle
 
@@ -224,14 +225,32 @@ def _bring(
     except DownloadError as error:
         fatal = error if isinstance(error, DiskError | OfflineError) else None
         return Outcome(name, "failed", str(error), source=tile.source.id), fatal
+    except OSError as error:
+        full = disk_error(error, folder, 1e6 * tile.source.typical_mb)
+        return Outcome(name, "failed", str(full), source=tile.source.id), full
 
 
 def _bring_from(
     tile: Tile, folder: Path, patience: Patience | None, more: Callable[[int], None], stop: threading.Event
 ) -> int:
     """Fetch, check and move one tile; returns its length in bytes."""
-    target = tile.path(folder)
-    part = tile.part(folder)
+    part, target = tile.part(folder), tile.path(folder)
+    with alone(part.with_name(f"{part.name}.lock"), stop):
+        if stop.is_set():
+            raise Stopped
+        if target.is_file():  # another process was faster
+            return target.stat().st_size
+        return _bring_alone(tile, part, target, patience, more, stop)
+
+
+def _bring_alone(
+    tile: Tile,
+    part: Path,
+    target: Path,
+    patience: Patience | None,
+    more: Callable[[int], None],
+    stop: threading.Event,
+) -> int:
     last = 0
 
     def received(done: int, total: int | None) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import TypeVar
 
@@ -47,9 +48,8 @@ class Grid:
         Raises RasterError where the numbers cannot be a place in that coordinate system.
         """
         horizontal = _horizontal(crs)
-        plain = horizontal.is_geographic and _is_wgs84(horizontal)
         try:
-            to_crs = None if plain else Transformer.from_crs(_WGS84, horizontal, always_xy=True)
+            to_crs = way_to(horizontal)
             bounds = _bounds(rows, columns, transform, to_crs)
         except ProjError as error:
             raise RasterError(f"no way leads from longitude and latitude to {crs_text(crs)}") from error
@@ -107,19 +107,10 @@ class Grid:
 
     def near(self, lat: FloatArray, lon: FloatArray) -> NDArray[np.bool_]:
         """Whether positions lie in the bounding box; a few points too many, never one too few."""
-        slack = self._slack_deg
+        slack = self.slack_deg
         inside: NDArray[np.bool_] = (lat >= self.south_deg - slack) & (lat <= self.north_deg + slack)
         inside &= (lon - self.west_deg + slack) % 360.0 <= self.east_deg - self.west_deg + 2 * slack
         return inside
-
-    def meets(self, south: float, west: float, north: float, east: float) -> bool:
-        """Whether the bounding box shares ground with another one [deg], whose east is not below its west."""
-        slack = self._slack_deg
-        if south > self.north_deg + slack or north < self.south_deg - slack:
-            return False
-        its_west_inside = (west - self.west_deg) % 360.0 <= self.east_deg - self.west_deg + slack
-        own_west_inside = (self.west_deg - west) % 360.0 <= east - west + slack
-        return its_west_inside or own_west_inside
 
     def holds(self, south: float, west: float, north: float, east: float) -> bool:
         """Whether another box lies wholly in the bounding box [deg]."""
@@ -128,15 +119,43 @@ class Grid:
         return (west - self.west_deg) % 360.0 + (east - west) <= self.east_deg - self.west_deg
 
     @property
-    def _slack_deg(self) -> float:
+    def slack_deg(self) -> float:
         """Rounding of positions; for curved edges also what bulges out between the places looked at."""
         return 1e-6 if self.to_crs is None else 1e-3 * (self.north_deg - self.south_deg)
+
+
+class Boxes:
+    """Bounding boxes of many grids, asked at once."""
+
+    def __init__(self, grids: Sequence[Grid]) -> None:
+        rows = [(one.south_deg, one.west_deg, one.north_deg, one.east_deg, one.slack_deg) for one in grids]
+        self._south, self._west, self._north, self._east, self._slack = np.array(rows).reshape(-1, 5).T
+        sides = [((o.north_deg - o.south_deg) / o.rows, (o.east_deg - o.west_deg) / o.columns) for o in grids]
+        self._cell = np.array(sides).reshape(-1, 2).max(axis=1)
+
+    def meeting(self, south: float, west: float, north: float, east: float, cells: float = 0.0) -> list[int]:
+        """Numbers of the grids that share ground with a box [deg], or lie within so many of their cells of it.
+
+        The box's east is not below its west.
+        """
+        wider = cells * self._cell
+        near = (south - wider <= self._north + self._slack) & (north + wider >= self._south - self._slack)
+        width = self._east - self._west + self._slack
+        its_west_inside = (west - wider - self._west) % 360.0 <= width
+        own_west_inside = (self._west - west + wider) % 360.0 <= east - west + 2 * wider + self._slack
+        return [int(number) for number in np.flatnonzero(near & (its_west_inside | own_west_inside))]
 
 
 def apply(transform: Affine, across: Number, down: Number) -> tuple[Number, Number]:
     """Turn columns and rows of pixel corners into x, y, or back with the inverse."""
     t = transform
     return t.a * across + t.b * down + t.c, t.d * across + t.e * down + t.f
+
+
+def way_to(crs: CRS) -> Transformer | None:
+    """From longitude and latitude to x, y; None where they are the same. Raises ProjError where there is no way."""
+    plain = crs.is_geographic and _is_wgs84(crs)
+    return None if plain else Transformer.from_crs(_WGS84, crs, always_xy=True)
 
 
 def crs_text(crs: CRS) -> str:

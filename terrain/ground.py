@@ -46,13 +46,13 @@ def bare_ground_m(ground: Ground, latitude_deg: ArrayLike, longitude_deg: ArrayL
     bare_m = surface_m.copy()
     answering = ground.answering(lat, lon)
     for number in np.unique(answering[answering >= 0]):
-        raster = ground.rasters[number]
-        if raster.kind == "bare" or raster.spacing_m > COARSEST_M:
+        kind, spacing_m = ground.kinds[number], ground.spacings_m[number]
+        if kind == "bare" or spacing_m > COARSEST_M:
             continue
         here = np.nonzero(answering == number)[0]
         # Points in groups, so that their neighbourhoods (hundreds of samples each) stay small.
         for few in np.array_split(here, -(-here.size // 64)):
-            plane_m = _plane_m(ground, lat[few], lon[few], raster.spacing_m)
+            plane_m = _plane_m(ground, lat[few], lon[few], spacing_m)
             bare_m[few] = np.fmin(surface_m[few], plane_m)
     return bare_m.reshape(shape)
 

@@ -7,9 +7,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from terrain.geodesy import destination, distance_and_bearing
+from terrain.geodesy import distance_and_bearing
 from terrain.profile import FEWEST_POINTS, MOST_POINTS
 from terrain.sheet import Sheet
+from terrain.ways import points_on
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.int64]
@@ -49,7 +50,7 @@ def lines_over(
     path = np.repeat(np.arange(paths), np.diff(first))
     number = np.arange(first[-1]) - first[path]
     away = number * (length / (_KNOTS * segments))[path]
-    lat, lon = destination(tx_latitude_deg[path], tx_longitude_deg[path], bearing[path], away)
+    lat, lon = points_on(tx_latitude_deg, tx_longitude_deg, bearing, first, away)
     start, end = first[:-1], first[1:] - 1
     lat[start], lon[start], lat[end], lon[end] = tx_latitude_deg, tx_longitude_deg, rx_latitude_deg, rx_longitude_deg
     row, column = sheet.grid.index(lat, lon)
@@ -61,5 +62,5 @@ def lines_over(
         points = np.clip(np.ceil(1e3 * length / step - 1e-9) + 1, FEWEST_POINTS, MOST_POINTS)
     points = np.where(np.isfinite(step) & (length > 0), points, 0).astype(np.int64)
     middle = length * (points // 2) / np.maximum(points - 1, 1)
-    middle_lat, middle_lon = destination(tx_latitude_deg, tx_longitude_deg, bearing, middle)
+    middle_lat, middle_lon = points_on(tx_latitude_deg, tx_longitude_deg, bearing, np.arange(paths + 1), middle)
     return Lines(length, points, middle_lat, middle_lon, first, row, column)

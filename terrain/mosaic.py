@@ -16,9 +16,11 @@ from terrain.blocks import COARSE, Blocks
 from terrain.cache import LIMIT_BYTES, ArrayCache
 from terrain.errors import RasterError
 from terrain.files import Refused, raster_files
+from terrain.grid import Boxes
+from terrain.headers import open_rasters
 from terrain.layer import Layer, surrounded, within
 from terrain.overlay import Overlay
-from terrain.raster import Raster, open_raster
+from terrain.raster import Raster
 from terrain.sheet import Sheet, sheets_of
 
 FloatArray = NDArray[np.float64]
@@ -55,6 +57,7 @@ class Ground:
         self, layers: Sequence[Layer], refused: Sequence[Refused], cache: ArrayCache, overlay: Overlay | None = None
     ) -> None:
         self._layers = tuple(layers)
+        self._boxes = Boxes([layer.raster.grid for layer in layers])
         self.refused = tuple(refused)
         self._cache = cache
         self.overlay = overlay
@@ -75,11 +78,9 @@ class Ground:
         """
         cache = ArrayCache(cache_dir, cache_limit_bytes)
         layers, refused, seen = [], [], set()
-        for path in raster_files(paths):
-            try:
-                raster = open_raster(path)
-            except RasterError as error:
-                refused.append(Refused(path, str(error)))
+        for raster in open_rasters(raster_files(paths), cache_dir):
+            if isinstance(raster, Refused):
+                refused.append(raster)
                 continue
             identity = (raster.content, raster.grid.transform, raster.crs)
             if identity not in seen:
@@ -109,6 +110,26 @@ class Ground:
                 )
             )
         return tuple(infos)
+
+    @cached_property
+    def kinds(self) -> tuple[str, ...]:
+        """Kind of each raster, in the order of `rasters`."""
+        return tuple(layer.raster.kind for layer in self._layers)
+
+    @cached_property
+    def spacings_m(self) -> tuple[float, ...]:
+        """Spacing of each raster [m], in the order of `rasters`."""
+        return tuple(layer.raster.grid.spacing_m for layer in self._layers)
+
+    @property
+    def decoding_s(self) -> float:
+        """Seconds that this process has spent so far on unpacking samples that were not in the cache."""
+        return sum(layer.blocks.decoding_s for layer in self._layers)
+
+    @property
+    def credits(self) -> list[str]:
+        """What the rasters or their sources ask to be named, each once."""
+        return sorted({layer.raster.attribution for layer in self._layers} - {""})
 
     @cached_property
     def version(self) -> str:
@@ -283,9 +304,8 @@ class Ground:
             return []
         box = (south, west, north, east)
         return [
-            (number, layer, layer.raster.grid.holds(*box))
-            for number, layer in enumerate(self._layers)
-            if layer.raster.grid.meets(*box)
+            (number, self._layers[number], self._layers[number].raster.grid.holds(*box))
+            for number in self._boxes.meeting(*box)
         ]
 
     def _interpolate(self, layer: Layer, lat: FloatArray, lon: FloatArray, bridged: bool) -> FloatArray:
@@ -309,11 +329,9 @@ class Ground:
         The outermost cell of a tile is whole there: up to a neighbour's samples, which must be known.
         """
         height, answering = np.full(lat.size, np.nan), np.full(lat.size, -1)
-        for number, layer in enumerate(self._layers):
+        for number in self._boxes.meeting(lat.min(), lon.min(), lat.max(), lon.max(), cells=1.0):
+            layer = self._layers[number]
             grid = layer.raster.grid
-            cell = max((grid.north_deg - grid.south_deg) / grid.rows, (grid.east_deg - grid.west_deg) / grid.columns)
-            if not grid.meets(lat.min() - cell, lon.min() - cell, lat.max() + cell, lon.max() + cell):
-                continue
             row, column = grid.index(lat, lon)
             beside = np.isnan(height) & (row > -1) & (row < grid.rows) & (column > -1) & (column < grid.columns)
             beside &= ~surrounded(grid, row, column)

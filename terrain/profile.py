@@ -80,8 +80,7 @@ def sample_profile(
     lat, lon = points_along(lat1, lon1, lat2, lon2, distance_km)
     height_m, water = ground.elevation_and_water(lat, lon)
     bare_m = _bare_along_m(ground, distance_km, lat, lon, height_m)
-    rasters = ground.rasters
-    kinds = [rasters[number].kind if number >= 0 else "" for number in ground.answering(lat, lon).tolist()]
+    kinds = [ground.kinds[number] if number >= 0 else "" for number in ground.answering(lat, lon).tolist()]
     surface_m = height_m
     if ground.overlay is not None and ground.overlay.cover is not None:
         surface_m = with_cover(ground.overlay.cover, lat, lon, height_m, bare_m, kinds)

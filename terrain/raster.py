@@ -99,9 +99,11 @@ class Raster:
         if self.zero_declared_void:
             missing &= raw != 0
         lowest, highest = ((limit - self.offset_m) / self.scale for limit in (_LOWEST_M, _HIGHEST_M))
-        missing |= ~((raw >= lowest) & (raw <= highest)) | (raw == _FORGOTTEN_VOID)
-        samples = raw.astype(self.dtype)
-        samples[missing] = self.void
+        if not (max(lowest, _FORGOTTEN_VOID) < raw.min() and raw.max() <= highest):  # no number: not so either
+            missing |= ~((raw >= lowest) & (raw <= highest)) | (raw == _FORGOTTEN_VOID)
+        samples = raw.astype(self.dtype, copy=False)
+        if missing.any():
+            samples[missing] = self.void
         return np.asarray(samples)
 
 
@@ -216,7 +218,7 @@ def opened(path: Path) -> Iterator[Any]:
     if driver is None:
         raise RasterError(f"{path.name} {_UNREADABLE}")
     # GDAL takes a grid for whole numbers from its first lines, and would cut later decimals off.
-    options = {"DATATYPE": "Float32"} if driver == "AAIGrid" else {}
+    options = {"DATATYPE": "Float32"} if driver == "AAIGrid" else {"NUM_THREADS": "ALL_CPUS"}
     try:
         # A file without place makes rasterio warn; we answer that ourselves. The lock is for
         # the list of warning filters, which Python shares between threads.
@@ -243,7 +245,10 @@ def _window(path: Path, window: Window) -> tuple[NDArray[Any], NDArray[np.bool_]
     """Samples as they are stored, and which the file says are missing."""
     with opened(path) as file:
         try:
-            return file.read(1, window=window), file.read_masks(1, window=window) == 0
+            samples = file.read(1, window=window)
+            if file.mask_flag_enums[0] == [rasterio.enums.MaskFlags.all_valid]:
+                return samples, np.zeros(samples.shape, dtype=bool)
+            return samples, file.read_masks(1, window=window) == 0
         except (rasterio.errors.RasterioError, MemoryError) as error:
             raise RasterError(
                 f"{path.name} is damaged or cut short near row {window.row_off}: fetch it again or take it out"

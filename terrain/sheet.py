@@ -1,4 +1,4 @@
-"""Tiles of one lattice as one array in memory-mapped files, for compiled code to walk.
+"""Tiles of one lattice as one array in a memory-mapped file, for compiled code to walk.
 
 A sheet gives the same heights as `Ground.elevation_m` wherever none of the samples it touches is a gap. Gaps are
 all samples where the ground does not follow from this lattice alone: outside the tiles, at larger voids, where a
@@ -20,12 +20,11 @@ from scipy import ndimage
 from terrain.blocks import Blocks
 from terrain.cache import ArrayCache
 from terrain.grid import Grid, apply
+from terrain.patches import BLOCK, MOST_PLACES, ROOM, blocks_of, laid_out
 from terrain.raster import Raster
 
 FloatArray = NDArray[np.float64]
 
-# Flat positions relative to a segment's start are 32-bit numbers; and a file of 4 GiB of 16-bit samples is enough.
-MOST_SAMPLES = 2**31 - 1
 _MOST_EMPTY = 4  # a sheet of scattered tiles may be this many times as large as they are
 _SAME_PLACE = 1e-3  # of a cell
 _RIM = 1  # gaps all round, so that a cell beside the last sample can be fetched
@@ -43,13 +42,13 @@ class Tile:
 
 @dataclass(frozen=True, slots=True)
 class Sheet:
-    """Samples (rows, columns) of tiles with one coordinate system, spacing, number type and kind."""
+    """Samples of tiles with one coordinate system, spacing, number type and kind."""
 
     grid: Grid
     tiles: tuple[Tile, ...]  # in the order in which the ground asks them
-    samples: NDArray[Any]
-    water: NDArray[np.bool_]  # connected flat areas at 0 m
-    void: float  # samples of this value or less are gaps
+    patches: NDArray[Any]  # (down, across, 8, 8, 32), see patches.py
+    gap: float  # samples of this value are gaps, the lowest of all
+    water: float  # those of this one are water at 0 m: connected flat areas; the next lowest
     scale: float  # metres = sample × scale + offset_m
     offset_m: float
     kind: str
@@ -141,7 +140,8 @@ def _sheet(group: list[int], layers: Sequence[tuple[Raster, Blocks]], cache: Arr
     rows = max(box[2] for box in boxes) + _RIM + 1 - top
     columns = max(box[3] for box in boxes) + _RIM + 1 - left
     covered = sum((box[2] - box[0] + 1) * (box[3] - box[1] + 1) for box in boxes)
-    if rows * columns > min(MOST_SAMPLES, _MOST_EMPTY * covered):
+    blocks = blocks_of(rows, columns)
+    if blocks[0] * blocks[1] * BLOCK**2 * ROOM > MOST_PLACES or rows * columns > _MOST_EMPTY * covered:
         return None
     tiles = tuple(Tile(*layers[number], box[0] - top, box[1] - left) for number, box in zip(group, boxes, strict=True))
     t = first.grid.transform
@@ -149,59 +149,60 @@ def _sheet(group: list[int], layers: Sequence[tuple[Raster, Blocks]], cache: Arr
     # The ring may reach beyond a pole or a whole turn, where no raster could stand: only `index` is used of it.
     grid = first.grid.shifted(rows, columns, transform)
     foreign = [(number, raster.grid) for number, (raster, _) in enumerate(layers) if number not in group]
-    dtype = np.dtype("int32" if first.dtype == "uint16" else first.dtype)
-    void = float(np.iinfo(dtype).min) if dtype.kind == "i" else -1e30
+    # Other numbers than these two would each need machine code of their own; a float holds them to the millimetre.
+    dtype = np.dtype("int16" if np.can_cast(first.dtype, "int16") else "float32")
+    gap, water, untouched = (
+        (-32768.0, -32767.0, -32766.0) if dtype.kind == "i" else (-(2.0**102), -(2.0**101), -(2.0**100))
+    )
     named = hashlib.sha256(repr([(t.raster.content, t.blocks.coast, t.top, t.left) for t in tiles]).encode())
     named.update(repr([(tuple(g.transform), g.rows, g.columns, n < group[0]) for n, g in foreign]).encode())
-    name = f"sheets/{named.hexdigest()[:24]}"
-    samples, water = cache.load(f"{name}-samples"), cache.load(f"{name}-water")
-    if samples is None or water is None:
-        made, wet = np.full((rows, columns), void, dtype), np.zeros((rows, columns), bool)
-        _fill(made, wet, void, grid, tiles, [g for _, g in foreign], [g for n, g in foreign if n < group[-1]])
-        samples, water = cache.keep(f"{name}-samples", made), cache.keep(f"{name}-water", wet)
-    return Sheet(grid, tiles, samples, water, void, first.scale, first.offset_m, first.kind)
+    name = f"sheets/{named.hexdigest()[:24]}-patches"
+    patches = cache.load(name)
+    if patches is None:
+        samples = np.full((rows, columns), untouched, dtype)
+        shared = [_window(grid, other, samples.shape) for _, other in foreign]
+        for tile in tiles:
+            _add(tile, samples, shared, gap, water, untouched)
+        samples[samples == untouched] = gap
+        for window, (number, _) in zip(shared, foreign, strict=True):
+            if number < group[-1]:  # finer: it answers there
+                samples[window] = gap
+        patches = cache.keep_parts(name, (*blocks, BLOCK, BLOCK, ROOM), dtype, lambda: laid_out(samples, gap))
+    return Sheet(grid, tiles, patches, gap, water, first.scale, first.offset_m, first.kind)
 
 
-def _fill(
+def _add(
+    tile: Tile,
     samples: NDArray[Any],
-    water: NDArray[np.bool_],
-    void: float,
-    grid: Grid,
-    tiles: Sequence[Tile],
-    foreign: Sequence[Grid],
-    finer: Sequence[Grid],
+    shared: Sequence[tuple[slice, slice]],  # where other rasters answer for a void
+    gap: float,
+    water: float,
+    untouched: float,
 ) -> None:
-    """Write the tiles' samples, then take out what they do not decide alone."""
-    taken, settled = np.zeros(samples.shape, bool), np.ones(samples.shape, bool)
-    shared_ground = np.zeros(samples.shape, bool)  # where other rasters answer for a void
-    for other in foreign:
-        shared_ground[_window(grid, other, samples.shape)] = True
-    for tile in tiles:
-        for row, column, plain, bridged, wet in tile.blocks.parts():
-            place = np.s_[
-                tile.top + row : tile.top + row + plain.shape[0],
-                tile.left + column : tile.left + column + plain.shape[1],
-            ]
-            own_void = tile.blocks.is_void(plain)
-            values = np.where(tile.blocks.is_void(bridged), void, bridged).astype(samples.dtype)
-            edge = np.zeros(plain.shape, bool)
-            edge[[0, -1]], edge[:, [0, -1]] = row == 0, column == 0
-            edge[-1] = row + plain.shape[0] == tile.raster.grid.rows
-            edge[:, -1] = column + plain.shape[1] == tile.raster.grid.columns
-            values[own_void & (shared_ground[place] | edge | _beside(wet))] = void
-            before = taken[place]
-            settled[place] &= ~before | ((samples[place] == values) & (water[place] == wet))
-            samples[place] = np.where(before, samples[place], values)
-            water[place] |= wet
-            taken[place] = True
-    samples[~settled] = void
-    for other in finer:
-        samples[_window(grid, other, samples.shape)] = void
+    """Write a tile's samples into those of its sheet; where one is there already and says otherwise, a gap."""
+    for row, column, plain, bridged, wet in tile.blocks.parts():
+        top, left = tile.top + row, tile.left + column
+        place = np.s_[top : top + plain.shape[0], left : left + plain.shape[1]]
+        values = np.where(tile.blocks.is_void(bridged), gap, bridged).astype(samples.dtype)
+        beside = _beside(wet)
+        beside[[0, -1]] |= np.array([[row == 0], [row + plain.shape[0] == tile.raster.grid.rows]])
+        beside[:, [0, -1]] |= np.array([column == 0, column + plain.shape[1] == tile.raster.grid.columns])
+        for down, across in shared:
+            beside[_less(down, top), _less(across, left)] = True
+        values[tile.blocks.is_void(plain) & beside] = gap
+        values[wet] = water
+        before = samples[place]
+        samples[place] = np.where(before == untouched, values, np.where(before == values, before, gap))
+
+
+def _less(part: slice, start: int) -> slice:
+    """A stretch of rows or columns counted from another one's start."""
+    return slice(max(part.start - start, 0), max(part.stop - start, 0))
 
 
 def _beside(wet: NDArray[np.bool_]) -> NDArray[np.bool_]:
     """Samples next to water: bridged ones there would make land of it, or water of land."""
-    return np.asarray(ndimage.binary_dilation(wet, np.ones((3, 3), bool))) if wet.any() else wet
+    return np.asarray(ndimage.binary_dilation(wet, np.ones((3, 3), bool))) if wet.any() else wet.copy()
 
 
 def _window(grid: Grid, other: Grid, shape: tuple[int, ...]) -> tuple[slice, slice]:

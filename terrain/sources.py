@@ -9,6 +9,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
+from urllib.parse import urlsplit
 
 from terrain.errors import SourceError
 from terrain.raster import KINDS
@@ -62,6 +63,11 @@ class TileSource:
 
     def _refuse(self, what: str, came: object, allowed: str) -> None:
         raise SourceError(f'source "{self.id}": {what} is {came}: use {allowed}')
+
+    @property
+    def host(self) -> str:
+        """Server that is asked."""
+        return urlsplit(self.url).netloc
 
     def file_name(self, corner: Corner) -> str:
         """Name under which a tile is kept: the last part of its address."""

@@ -1,9 +1,12 @@
 """README and DEVELOPERS name every command, address and assumption."""
 
 import re
+import shlex
+import shutil
 from pathlib import Path
 
 import typer
+from typer.testing import CliRunner
 
 from app.assumptions import ASSUMPTIONS
 from app.cli import main
@@ -49,3 +52,21 @@ def test_output_shown_in_the_readme_is_what_the_command_prints(demo_world):
     roof = Roof(44.3, -37.4507)
     printed = told(assess(AssessRequest(roof, now="roof-yagi"), demo_world.store, demo_world.ground))
     assert printed.split("\n- ")[0].rstrip() == shown
+
+
+def test_the_first_ten_minutes_of_the_readme_print_what_it_shows(tmp_path, monkeypatch):
+    """An empty folder, the two pieces of real tiles, the rows as they stand there; cautions are left out."""
+    monkeypatch.setenv("GAINWORTH_DATA_DIR", str(tmp_path / "data"))
+    monkeypatch.setenv("GAINWORTH_CACHE_DIR", str(tmp_path / "cache"))
+    monkeypatch.chdir(tmp_path)
+    for name in ("hills_north.tif", "hills_south.tif"):
+        shutil.copy(ROOT / "tests" / "data" / "nasa" / "srtm" / name, name)
+    Path("mine.csv").write_text(README.split("<!-- mine.csv -->\n```\n")[1].split("```")[0])
+    shown = README.split("<!-- first ten minutes -->\n```\n")[1].split("\n```")[0]
+    lines = []
+    for command in re.findall(r"^\$ gainworth (.*)$", shown, re.MULTILINE):
+        result = CliRunner().invoke(main, shlex.split(command))
+        assert result.exit_code == 0, result.output
+        told_here = result.stdout.replace(str(tmp_path / "data"), "…").split("\n- ")[0].rstrip()
+        lines += [f"$ gainworth {command}", *(line.rstrip() for line in told_here.splitlines())]
+    assert lines == shown.splitlines()

@@ -12,6 +12,7 @@ from app.errors import ChainError
 
 Port = Literal["", "through"]
 PORTS: tuple[Port, ...] = ("", "through")
+LONGEST_WORDS = 120  # of an id or name, as the store takes them
 
 
 class Named(Protocol):
@@ -44,8 +45,12 @@ class Part:
     def __post_init__(self) -> None:
         """Refuse a part without an id or a name, or with an impossible price or supply."""
         for key in ("id", "name"):
-            if not getattr(self, key).strip():
+            value = getattr(self, key)
+            if not value.strip():
                 refuse(self, f"{key} is empty", f"give it a short {key}", key)
+            words(self, key, value)
+        if "/" in self.id:  # it is part of an address
+            refuse(self, f'id is "{self.id}"', "leave out the slash", "id")
         if self.price is not None:
             within(self, "price", self.price, 0, 1e9, "or leave it out if it is not known")
         if self.draws_ma is not None:
@@ -72,6 +77,12 @@ def within(what: Named, key: str, value: float, lowest: float, highest: float, u
             field=key,
             allowed=f"{lowest:g} to {highest:g}",
         )
+
+
+def words(what: Named, key: str, value: str) -> None:
+    """Raise a ChainError unless value can be shown and kept as a name."""
+    if len(value) > LONGEST_WORDS or not value.isprintable():
+        refuse(what, f"{key} is {value!r:.60}", f"use at most {LONGEST_WORDS} printable characters", key)
 
 
 def one_of(what: Named, key: str, value: str, allowed: Collection[str]) -> None:

@@ -232,9 +232,9 @@ def _read(wanted: str, value: object, what: str, place: str) -> Any:
         return _ids(value, what, place)
     if wanted.startswith(("tuple", "Table")):
         return _pairs(value, what, place)
-    if wanted.startswith("float") and isinstance(value, int | float) and not isinstance(value, bool):
-        return float(value)
-    if wanted == "int" and isinstance(value, int) and not isinstance(value, bool):
+    if wanted.startswith("float") and (_is_whole(value) or isinstance(value, float)):
+        return float(value)  # type: ignore[arg-type]  # a number, as just asked
+    if wanted == "int" and _is_whole(value):
         return value
     if wanted == "bool" and isinstance(value, bool):
         return value
@@ -242,6 +242,11 @@ def _read(wanted: str, value: object, what: str, place: str) -> Any:
         return value
     allowed = {"float": "a number", "int": "a whole number", "bool": "true or false"}.get(wanted.split(" ")[0], "text")
     raise ChainError(f"{what} is {_came(value)}: use {allowed}", field=place, allowed=allowed)
+
+
+def _is_whole(value: object) -> bool:
+    """Whether it is a whole number that a file can mean: TOML and JSON write longer ones, too."""
+    return isinstance(value, int) and not isinstance(value, bool) and value.bit_length() < 64
 
 
 def _ids(value: object, what: str, place: str) -> tuple[str, ...]:

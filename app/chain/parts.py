@@ -12,7 +12,7 @@ from collections.abc import Collection, Iterable
 from dataclasses import dataclass, field
 
 from app.chain.aerial_part import AERIAL_POLARISATIONS, Aerial, AerialPolarisation
-from app.chain.base import Part, one_of, refuse, within
+from app.chain.base import Part, one_of, refuse, within, words
 from app.chain.kinds import (
     Amplifier,
     Attenuator,
@@ -98,6 +98,8 @@ class Chain:
             )
         if not self.currency.strip():
             raise ChainError(f'chain "{self.name}" has no currency: give one such as EUR', field="currency")
+        for key in ("name", "title", "currency", "deciding_outlet"):
+            words(self, key, getattr(self, key))
         for key in ("labour_price", "visit_price"):
             value = getattr(self, key)
             if value is not None:

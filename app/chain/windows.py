@@ -47,6 +47,7 @@ def standards() -> dict[str, str]:
     return {window.standard: window.area for window in _windows()}
 
 
+@cache
 def level_window(system: str, mode: str, standard: str = DEFAULT_STANDARD) -> LevelWindow | None:
     """Window of a mode by one standard; None where the standard says nothing of its system.
 

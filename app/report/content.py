@@ -4,12 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from datetime import date
+from pathlib import Path
 from typing import Any
 
 from app.chain.document import chain_to_document
 from app.planner import assess
 from app.readings import INSTRUMENTS
 from app.report.commissioning import sheet_rows
+from app.report.masts import bearing_words, channel_words, masts_that_matter
 from app.request import NOTHING, AssessRequest
 from app.site import place
 from app.stored_chains import stored_chain
@@ -18,17 +20,23 @@ from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
 Document = dict[str, Any]
-MOST_PATHS = 12
 KIND_WORDS = {"level": "dB(µV)", "cn": "dB C/N", "mer": "dB MER"}
 
 
-def report_content(saved: Mapping[str, Any], request: AssessRequest, store: Store, ground: Ground) -> Document:
+def report_content(
+    saved: Mapping[str, Any],
+    request: AssessRequest,
+    store: Store,
+    ground: Ground,
+    refractivity_maps: Path | None = None,
+) -> Document:
     """Answer the question of a kept roof and return what its report says."""
-    answer = assess(request, store, ground)
+    answer = assess(request, store, ground, refractivity_maps=refractivity_maps)
     verdict = _verdict(answer, saved.get("idea"))
     names = _names(answer, verdict, saved)
     chosen = names[-1] if len(names) == 1 else names[1]
     changed, same = _changes(answer, names)
+    paths, left_out = masts_that_matter(answer, chosen, request.roof, ground, refractivity_maps)
     roof = answer["roof"]
     return {
         "name": saved["name"],
@@ -48,18 +56,20 @@ def report_content(saved: Mapping[str, Any], request: AssessRequest, store: Stor
         "same": same,
         "parts": _parts(request, store, chosen),
         "price": _price(answer, chosen, verdict),
-        "paths": _paths(answer, chosen),
+        "paths": paths,
+        "paths_left_out": left_out,
         "readings": [_reading(one) for one in answer.get("readings", {}).get("items", [])],
         "commissioning": sheet_rows(answer, chosen, INSTRUMENTS["meter"].mer_limit_db),
         "assumptions": [
             f"{one['id']}: {one['value']:g} {one['unit']} ({one['reason']})" for one in answer["assumptions"]
         ],
         "settings": _settings(request),
-        "cautions": answer["cautions"],
+        "cautions": [*_gone(answer, saved), *answer["cautions"]],
         "sources": [
             ", ".join(str(one[key]) for key in ("title", "document", "licence") if one.get(key))
             for one in answer["sources"]
-        ],
+        ]
+        + list(answer["credits"]),
     }
 
 
@@ -75,6 +85,18 @@ def _names(answer: Document, verdict: Document | None, saved: Mapping[str, Any])
     second = str(saved.get("second") or "")
     shown = [verdict["baseline"], verdict["candidate"]]
     return [*shown, second] if second in answer["chains"] and second not in shown else shown
+
+
+def _gone(answer: Document, saved: Mapping[str, Any]) -> list[str]:
+    """Say which of the kept ideas is not among the chains any more."""
+    return [
+        f'{words} was "{saved[key]}", which is not among the chains any more: {instead}.'
+        for key, words, instead in (
+            ("idea", "Idea 1", "the best of the others stands in its place"),
+            ("second", "Idea 2", "it is left out"),
+        )
+        if saved.get(key) and saved[key] not in answer["chains"]
+    ]
 
 
 def _title(answer: Document, name: str) -> str:
@@ -124,7 +146,8 @@ def _measure(answer: Document, verdict: Document | None) -> Document | None:
         )
         tips.append(f"{span} dB(µV): {tip['answer'] or 'no answer'}")
     return {
-        "what": f"{_channel(emission)} from {emission['transmitter_name']} at {one['bearing_deg']:03.0f}°",
+        "what": f"{channel_words(emission)} from {emission['transmitter_name']} at {bearing_words(one['bearing_deg'])}",
+        "first": bool(verdict and verdict["answer"] == "measure first"),
         "tips": tips,
     }
 
@@ -137,12 +160,11 @@ def _roof_line(answer: Document, name: str, landmark: str) -> list[list[str]]:
     declination = answer["roof"]["declination"]
     rows = []
     for aerial in chain.get("aerials") or chain["pointings"]:
-        true = f"{aerial['pointing_deg'] % 360:03.0f}°"
-        rows.append([true, "from true north"])
+        rows.append([bearing_words(aerial["pointing_deg"]), "from true north"])
         if declination:
-            compass = (aerial["pointing_deg"] - declination["declination_deg"]) % 360
+            compass = aerial["pointing_deg"] - declination["declination_deg"]
             error = f"by compass on {declination['day']}, ± {declination['error_deg']:.1f}°"
-            rows.append([f"{compass:03.0f}°", error])
+            rows.append([bearing_words(compass), error])
         rows.append([RODS[aerial["polarisation"]], "seen from the ground"])
     rows.append([f"{answer['roof']['aerial_agl_m']:g} m", "above the ground"])
     if landmark:
@@ -159,7 +181,7 @@ def _changes(answer: Document, names: Sequence[str]) -> tuple[list[Document], li
         words = [f"{chance_words(cell['chance'])} {cell['grade']}" if cell else "no aerial" for cell in cells]
         if any(has_moved(cells[0], cell) for cell in cells[1:]):
             emission = _emission(answer, next(cell["emission"] for cell in reversed(cells) if cell))
-            origin = f"{_channel(emission)} from {emission['transmitter_name']}"
+            origin = f"{channel_words(emission)} from {emission['transmitter_name']}"
             changed.append((chances, {"name": multiplex["name"], "from": origin, "cells": words}))
         else:
             same.append(f"{multiplex['name']} ({words[-1]})")
@@ -200,34 +222,6 @@ def _price(answer: Document, name: str, verdict: Document | None) -> str:
     return words if difference is None else f"{words}; to pay {_money(difference, chain['currency'])}"
 
 
-def _paths(answer: Document, name: str) -> list[Document]:
-    """One row for each mast that a multiplex is best received from, by bearing."""
-    seen: dict[str, Document] = {}
-    for multiplex in answer["multiplexes"]:
-        cell = multiplex["chains"].get(name)
-        if cell is None:
-            continue
-        emission = _emission(answer, cell["emission"])
-        field = emission["field"]
-        row = seen.setdefault(
-            emission["transmitter"],
-            {
-                "bearing_deg": emission["bearing_deg"],
-                "title": f"{emission['bearing_deg']:03.0f}° {emission['transmitter_name']}, "
-                f"{emission['distance_km']:.0f} km",
-                "sentence": emission["path"]["sentence"] if emission["path"] else str(emission["reason"]),
-                "channels": [],
-            },
-        )
-        by = [
-            f"{words} {field[key]:.0f}"
-            for key, words in (("p1812_dbuv_m", "P.1812"), ("p1546_dbuv_m", "P.1546"))
-            if field[key] is not None
-        ]
-        row["channels"].append(f"{_channel(emission)}: {', '.join(by)} dB(µV/m)")
-    return sorted(seen.values(), key=lambda row: float(row["bearing_deg"]))[:MOST_PATHS]
-
-
 def _reading(one: Mapping[str, Any]) -> str:
     unit = KIND_WORDS.get(one["kind"], "")
     value = one.get("state") or (f"{one['value_db']:.1f} {unit}" if "value_db" in one else one["kind"])
@@ -249,7 +243,3 @@ def _settings(request: AssessRequest) -> list[str]:
 
 def _emission(answer: Document, ident: str) -> Document:
     return next(one for one in answer["emissions"] if one["id"] == ident)
-
-
-def _channel(emission: Mapping[str, Any]) -> str:
-    return f"channel {emission['channel']}" if emission["channel"] else f"{emission['frequency_mhz']:g} MHz"

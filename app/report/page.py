@@ -6,6 +6,8 @@ from collections.abc import Iterable, Mapping, Sequence
 from html import escape
 from typing import Any
 
+from app.report.drawing import LEGEND
+
 
 def report_html(content: Mapping[str, Any], pdf_address: str) -> str:
     """Return the whole page."""
@@ -38,7 +40,8 @@ def _body(content: Mapping[str, Any], pdf_address: str) -> Iterable[str]:
     if content["note"]:
         yield f"<p>{escape(content['note'])}</p>"
     if content["measure"]:
-        yield f"<p>Read first: <strong>{escape(content['measure']['what'])}</strong></p>"
+        lead = "Read first" if content["measure"]["first"] else "A reading would tell most"
+        yield f"<p>{lead}: <strong>{escape(content['measure']['what'])}</strong></p>"
         yield _list(content["measure"]["tips"])
     if content["roof_line"]:
         yield f"<h2>On the roof: {escape(content['chain'])}</h2><dl class='roof-line'>"
@@ -51,12 +54,16 @@ def _body(content: Mapping[str, Any], pdf_address: str) -> Iterable[str]:
     if content["same"]:
         yield f"<p>{len(content['same'])} unchanged: {escape(', '.join(content['same']))}.</p>"
     if content["parts"]:
-        yield "<h2>Parts and prices</h2>" + _table(["Part", "Price"], content["parts"])
+        yield "<h2>Parts and prices</h2>" + _table(["Part", "Price"], content["parts"], "prices")
         yield f"<p>{escape(content['price'])}</p>"
-    yield "<h2>The paths that matter</h2>"
+    yield "<h2>The paths that matter</h2>" + (f"<p class='small'>{LEGEND}</p>" if content["paths"] else "")
     for row in content["paths"]:
-        yield f"<h3>{escape(row['title'])}</h3><p>{escape(row['sentence'])}</p>"
-        yield f"<p class='small'>{escape('; '.join(row['channels']))}</p>"
+        yield f"<div class='path'><h3>{escape(row['title'])}</h3><p>{escape(row['sentence'])}</p>"
+        if row["picture"]:
+            yield f'<div class="scroll" tabindex="0" role="group" aria-label="drawing">{row["picture"]["svg"]}</div>'
+        yield f"<p class='small'>{escape('; '.join(row['channels']))}</p></div>"
+    if content["paths_left_out"]:
+        yield f"<p>Masts with smaller chances, left out here: {content['paths_left_out']}.</p>"
     yield "<h2>Readings</h2>" + (_list(content["readings"]) if content["readings"] else "<p>None was taken yet.</p>")
     yield '<section class="commissioning"><h2>Commissioning sheet</h2>'
     yield f"<p>{escape(content['name'])}, {escape(content['chain'])}</p>"

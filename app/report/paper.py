@@ -3,13 +3,17 @@
 from __future__ import annotations
 
 import json
+import re
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any, Literal
 
 import typst
 
+from app.report.drawing import LEGEND
+
 Standard = Literal["ua-1"]
+LONG_WORD = re.compile(r"(\S{12})(?=\S)")
 TEMPLATE = Path(__file__).parent / "report.typ"
 
 
@@ -28,5 +32,18 @@ def report_pdf(content: Mapping[str, Any]) -> bytes:
 
 
 def _set(content: Mapping[str, Any], standards: list[Standard]) -> bytes:
-    inputs = {"content": json.dumps(content)}
-    return typst.compile(TEMPLATE, format="pdf", sys_inputs=inputs, pdf_standards=[*standards])
+    return typst.compile(TEMPLATE, format="pdf", sys_inputs=inputs(content), pdf_standards=[*standards])
+
+
+def inputs(content: Mapping[str, Any]) -> dict[str, str]:
+    """Return what the template is given."""
+    return {"content": json.dumps({**_breakable(content), "legend": LEGEND})}
+
+
+def _breakable(value: Any) -> Any:
+    """Let long words break, so that none runs over the margin: a space of no width every 12 letters."""
+    if isinstance(value, str):
+        return value if value.startswith("<svg") else LONG_WORD.sub("\\1\u200b", value)
+    if isinstance(value, Mapping):
+        return {key: _breakable(one) for key, one in value.items()}
+    return [_breakable(one) for one in value] if isinstance(value, list) else value

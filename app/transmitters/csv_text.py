@@ -1,6 +1,7 @@
 """A typed or exported CSV file as rows of text: encoding, separator, quotes and line ends.
 
-One line is one row, so a quote left open spoils its own line and no other.
+A quoted cell may run over some lines if they make one row together; else one line is one row, so a quote left open
+spoils its own line and no other.
 """
 
 from __future__ import annotations
@@ -8,13 +9,14 @@ from __future__ import annotations
 import codecs
 import csv
 import re
-from collections.abc import Collection
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 from app.errors import TransmitterFileError
 
 LARGEST_FILE_MB = 64
+MOST_LINES = 20  # that one row may run over
 _SHOWN_CHARACTERS = 60
 
 
@@ -69,11 +71,32 @@ def read_table(path: Path, known_columns: Collection[str]) -> Table:
             "per channel"
         )
     separator, columns = _header(path, numbered[0][1], known_columns)
+    rows, refused = _rows(numbered[1:], separator, columns)
+    return Table(columns, tuple(rows), tuple(refused), encoding, separator)
+
+
+def _rows(
+    numbered: Sequence[tuple[int, str]], separator: str, columns: tuple[str, ...]
+) -> tuple[list[Row], list[Refusal]]:
+    """Rows of the lines under the header, and the lines that are none."""
     rows, refused = [], []
-    for number, line in numbered[1:]:
-        cells = _cells(line, separator)
+    place, open_until = 0, 0
+    while place < len(numbered):
+        number, line = numbered[place]
+        cells, lines = _cells(line, separator), 1
         if cells is None:
+            cells, lines = _cells_over_lines([one for _, one in numbered[place : place + MOST_LINES]], separator)
+            if cells is not None and len(cells) != len(columns):
+                cells, lines = None, 1
+        # After a quote left open, a line with a lone quote is what closed it: no row of its own.
+        stray = place < open_until and line.count('"') % 2 == 1
+        if cells is None or stray:
             message = "a quote is opened and not closed: close it, or write two quotes for one inside a text"
+            if stray:
+                message = "a quote is closed that was opened in a line above, and both do not make a row: mend both"
+                open_until = 0
+            else:
+                open_until = place + MOST_LINES
             refused.append(Refusal(number, "", line[:_SHOWN_CHARACTERS], message))
         elif len(cells) != len(columns):
             message = (
@@ -83,7 +106,17 @@ def read_table(path: Path, known_columns: Collection[str]) -> Table:
             refused.append(Refusal(number, "", line[:_SHOWN_CHARACTERS], message))
         else:
             rows.append(Row(number, dict(zip(columns, cells, strict=True))))
-    return Table(columns, tuple(rows), tuple(refused), encoding, separator)
+        place += lines
+    return rows, refused
+
+
+def _cells_over_lines(lines: Sequence[str], separator: str) -> tuple[list[str] | None, int]:
+    """Cells of the first lines whose quotes pair together, line breaks as spaces, and how many lines those are."""
+    for count in range(2, len(lines) + 1):
+        cells = _cells("\n".join(lines[:count]), separator)
+        if cells is not None:
+            return [re.sub(r"\s*\n\s*", " ", cell) for cell in cells], count
+    return None, 1
 
 
 def _text(path: Path) -> tuple[str, str]:

@@ -84,15 +84,25 @@ def remove(connection: sqlite3.Connection, kind: Kind, key: str) -> None:
     connection.execute("DELETE FROM document WHERE kind = ? AND id = ?", [kind, found["id"]])
 
 
-def _document(row: tuple[str, ...]) -> Document:
+def _document(row: tuple[Any, ...]) -> Document:
     key, name, body, created, updated = row
-    try:
-        held = json.loads(body)
-    except ValueError as error:
-        held = error
-    if not isinstance(held, dict):
-        raise StoreError(f'the stored document "{name}" is damaged: restore a backup, or remove the row "{key}"')
+    held = read_body(body, f'document "{name}"', key)
+    if not isinstance(held, dict) or not all(isinstance(one, str) for one in (key, name, created, updated)):
+        raise damaged(f'document "{name}"', key)
     return {"id": key, "name": name, **cast(Document, held), "created": created, "updated": updated}
+
+
+def read_body(body: Any, what: str, key: Any) -> object:
+    """Return what a row holds as JSON; StoreError if another program damaged it."""
+    try:
+        return json.loads(body)
+    except (ValueError, TypeError, RecursionError) as error:
+        raise damaged(what, key) from error
+
+
+def damaged(what: str, key: Any) -> StoreError:
+    """Return the error of a row that cannot be read."""
+    return StoreError(f'the stored {what} is damaged: restore a backup, or remove the row "{key}"')
 
 
 def _name(kind: Kind, value: object) -> str:

@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 
 from app.errors import NotStoredError, RequestError
+from app.transmitters.documents import damaged, read_body
 from terrain.geodesy import distance_and_bearing
 
 Document = dict[str, Any]
@@ -78,11 +79,16 @@ def remove(connection: sqlite3.Connection, key: str) -> None:
 
 def _document(row: tuple[Any, ...]) -> Document:
     key, latitude_deg, longitude_deg, body, created, updated = row
+    what = f'reading "{key}"'
+    held = read_body(body, what, key)
+    places = isinstance(latitude_deg, float) and isinstance(longitude_deg, float)
+    if not isinstance(held, dict) or not places or not all(isinstance(one, str) for one in (key, created, updated)):
+        raise damaged(what, key)
     return {
         "id": key,
         "latitude_deg": latitude_deg,
         "longitude_deg": longitude_deg,
-        "reading": json.loads(body),
+        "reading": held,
         "created": created,
         "updated": updated,
     }

@@ -72,6 +72,21 @@ class Store:
         Each with its transmitter, the WGS 84 distance [km] and the true bearing at the given place [deg].
         """
         today = (day or date.today()).isoformat()
+        on_air = "(e.valid_from IS NULL OR e.valid_from <= ?) AND (e.valid_to IS NULL OR e.valid_to >= ?)"
+        return self._within(latitude_deg, longitude_deg, reach_km, on_air, [today, today])
+
+    def off_air_within(
+        self, latitude_deg: float, longitude_deg: float, reach_km: float, day: date | None = None
+    ) -> list[Found]:
+        """Emissions that closed before a day (default today) or open after it, as `emissions_within` gives them."""
+        today = (day or date.today()).isoformat()
+        return self._within(
+            latitude_deg, longitude_deg, reach_km, "(e.valid_from > ? OR e.valid_to < ?)", [today, today]
+        )
+
+    def _within(
+        self, latitude_deg: float, longitude_deg: float, reach_km: float, when: str, values: Sequence[str]
+    ) -> list[Found]:
         boxes = _boxes(latitude_deg, longitude_deg, reach_km)
         inside = " OR ".join(["(north >= ? AND south <= ? AND east >= ? AND west <= ?)"] * len(boxes))
         with self._database.transaction() as connection:
@@ -79,9 +94,8 @@ class Store:
                 f"SELECT {EMISSION}, {TRANSMITTER} FROM transmitter t "
                 "JOIN emission e ON e.transmitter = t.number "
                 f"WHERE t.number IN (SELECT number FROM transmitter_box WHERE {inside}) "
-                f"AND {_SHOWN} AND e.is_on "
-                "AND (e.valid_from IS NULL OR e.valid_from <= ?) AND (e.valid_to IS NULL OR e.valid_to >= ?)",
-                [*(edge for box in boxes for edge in box), today, today],
+                f"AND {_SHOWN} AND e.is_on AND {when}",
+                [*(edge for box in boxes for edge in box), *values],
             ).fetchall()
         if not rows:
             return []

@@ -53,7 +53,7 @@ COLUMNS = (
 )  # fmt: skip
 
 MOST_ROWS = 500_000
-MOST_REFUSED_SHARE = 0.2  # a re-import that refuses more does not replace what is stored; our choice
+MOST_REFUSED_SHARE = 0.2  # a re-import that refuses more and keeps fewer rows does not replace those stored; our choice
 _SAME_MAST_DEG = 0.001  # two rows of one mast may differ by this much, about 100 m
 _REFUSALS_SHOWN = 200
 
@@ -165,8 +165,8 @@ def import_template(path: Path, store: Store, dry_run: bool = False) -> ImportSu
     Raises
     ------
     TransmitterFileError
-        As read_template; also if no row is good, or if rows are stored already and more than a fifth of the
-        new ones are refused. Nothing is written then.
+        As read_template; also if no row is good, or if more than a fifth are refused and fewer are good than are
+        stored from this source. Nothing is written then. The same file twice is kept twice.
     """
     result = read_template(path)
     told = "\n".join(str(refusal) for refusal in result.refused[:_REFUSALS_SHOWN])
@@ -175,11 +175,11 @@ def import_template(path: Path, store: Store, dry_run: bool = False) -> ImportSu
             f"{path.name} has no usable row ({result.rows_read} read): "
             + (f"mend these; nothing was changed\n{told}" if told else "add rows under the header")
         )
-    stored = any(source.id == result.source for source in store.sources())
-    if stored and result.rows_refused > MOST_REFUSED_SHARE * result.rows_read:
+    stored = next((source.rows_kept for source in store.sources() if source.id == result.source), 0)
+    if len(result.emissions) < stored and result.rows_refused > MOST_REFUSED_SHARE * result.rows_read:
         raise TransmitterFileError(
             f"{path.name}: {result.rows_refused} of {result.rows_read} rows are refused, too many to replace "
-            f'what is stored from source "{result.source}": mend the file, or give it another name; '
+            f'the {stored} rows stored from source "{result.source}": mend the file, or give it another name; '
             f"nothing was changed\n{told}"
         )
     source = Source(result.source, path.name, rows_refused=result.rows_refused)

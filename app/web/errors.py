@@ -99,7 +99,12 @@ def add_error_handlers(app: FastAPI) -> None:
     async def http(request: Request, error: Exception) -> JSONResponse:
         assert isinstance(error, HTTPException)
         code, words = PLAIN_HTTP.get(error.status_code, ("http", "the request cannot be answered: {detail}"))
-        message = words.format(path=request.url.path, method=request.method, detail=error.detail)
+        path = request.url.path
+        message = words.format(
+            path=path if len(path) <= 200 else f"{path[:199]}…", method=request.method, detail=error.detail
+        )
+        if error.status_code == 404 and path.endswith("/"):
+            message = f"{message}; it may be meant without the slash at its end"
         response = error_response(error.status_code, code, message)
         response.headers.update(error.headers or {})
         return response
@@ -136,7 +141,7 @@ def plain_words(errors: Sequence[Mapping[str, Any]]) -> tuple[str, str | None, s
 
 def _allowed(kind: str, context: Mapping[str, Any], errors: Sequence[Mapping[str, Any]]) -> str:
     if kind == "literal_error":
-        return str(context["expected"]).replace("'", "")
+        return str(context["expected"]).replace("'", "").replace("True", "true")
     bounds = {"greater_than_equal": "ge", "less_than_equal": "le", "greater_than": "gt", "less_than": "lt"}
     words = {"ge": "at least", "le": "at most", "gt": "more than", "lt": "less than"}
     if kind in bounds:
@@ -147,6 +152,10 @@ def _allowed(kind: str, context: Mapping[str, Any], errors: Sequence[Mapping[str
         return f"at most {context['max_length']}" + (" characters" if kind == "string_too_long" else " of them")
     if kind == "plain_value":
         return str(context["allowed"])
+    if kind.startswith("date_"):
+        return "a date, year first, such as 2026-10-31"
+    if kind.startswith("int_"):  # also one of more digits than a machine's whole number
+        return "a whole number"
     options = [
         WANTED[str(one["type"])] for one in errors if one["loc"][1:2] == errors[0]["loc"][1:2] and one["type"] in WANTED
     ]

@@ -39,9 +39,10 @@ HEADERS = {
     "Referrer-Policy": "no-referrer",
     "Cross-Origin-Resource-Policy": "same-origin",
     "Cross-Origin-Opener-Policy": "same-origin",
-    "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
+    "Permissions-Policy": "camera=(), geolocation=(self), microphone=()",
 }
 READING = {"GET", "HEAD", "OPTIONS"}
+MOST_DIGITS = 18  # a whole number that database and floating point can hold
 HALF_LETTER = re.compile(rb"\\u[dD][89a-fA-F]")
 
 
@@ -59,6 +60,9 @@ class Guard:
             await self.app(scope, receive, send)
             return
         started = False
+        without_body = scope["method"] == "HEAD"
+        if without_body:
+            scope = {**scope, "method": "GET"}  # answered alike, then cut off
 
         async def send_with_headers(message: Message) -> None:
             nonlocal started
@@ -67,6 +71,8 @@ class Guard:
                 headers = MutableHeaders(scope=message)
                 for name, value in HEADERS.items():
                     headers[name] = value
+            elif without_body and message["type"] == "http.response.body":
+                message = {**message, "body": b""}
             await send(message)
 
         headers = Headers(scope=scope)
@@ -77,9 +83,8 @@ class Guard:
             refusal = error_response(
                 413, "too_large", f"the request is too large: send at most {allowed}", None, allowed
             )
-        elif body and not _is_text(body):
-            words = "the request holds half a letter (a lone surrogate): send text in UTF-8"
-            refusal = error_response(422, "json", words, None, "text in UTF-8")
+        elif body:
+            refusal = _refusal_of_text(body)
         if refusal:
             await refusal(scope, receive, send_with_headers)
             return
@@ -138,17 +143,51 @@ async def _read(receive: Receive, headers: Headers, largest: int) -> bytes | Non
     return b"".join(chunks)
 
 
-def _is_text(body: bytes) -> bool:
-    """Whether no escape in the JSON stands for half a letter, which neither database nor answer can carry."""
-    if not HALF_LETTER.search(body):
-        return True
+class _Twice(ValueError):
+    """A key stands twice in one object."""
+
+
+class _TooLong(ValueError):
+    """A whole number has more digits than any quantity here."""
+
+
+def _refusal_of_text(body: bytes) -> ASGIApp | None:
+    """Refuse JSON in which a key stands twice, or half a letter, which neither database nor answer can carry.
+
+    What is no JSON at all is left to the route, which says so.
+    """
     try:
-        json.dumps(json.loads(body), ensure_ascii=False).encode()
+        read = json.loads(body, object_pairs_hook=_each_key_once, parse_int=_whole)
+        if HALF_LETTER.search(body):
+            json.dumps(read, ensure_ascii=False).encode()
+    except _Twice as error:
+        key = str(error)
+        return error_response(
+            422, "json", f'"{key}" stands twice in one object: keep one of them', key, "each key once"
+        )
+    except _TooLong as error:
+        words = f"the request holds a number of {error} digits: use numbers of at most {MOST_DIGITS}"
+        return error_response(422, "json", words, None, f"at most {MOST_DIGITS} digits")
     except UnicodeEncodeError:
-        return False
+        words = "the request holds half a letter (a lone surrogate): send text in UTF-8"
+        return error_response(422, "json", words, None, "text in UTF-8")
     except (ValueError, RecursionError):
-        return True  # no JSON at all: the route says so
-    return True
+        return None
+    return None
+
+
+def _whole(digits: str) -> int:
+    if len(digits) > MOST_DIGITS:
+        raise _TooLong(len(digits))
+    return int(digits)
+
+
+def _each_key_once(pairs: list[tuple[str, object]]) -> dict[str, object]:
+    found = dict(pairs)
+    if len(found) < len(pairs):
+        names = [name for name, _ in pairs]
+        raise _Twice(next(name for name in names if names.count(name) > 1)[:60])
+    return found
 
 
 def _replay(body: bytes, receive: Receive) -> Callable[[], Awaitable[Message]]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from importlib import metadata
 
-from fastapi import FastAPI
+from fastapi import Depends, FastAPI
 from starlette.middleware.gzip import GZipMiddleware
 from starlette.staticfiles import StaticFiles
 
@@ -14,6 +14,7 @@ from app.transmitters.store import Store
 from app.web.context import Context
 from app.web.errors import add_error_handlers
 from app.web.guard import Guard
+from app.web.query import known_query
 from app.web.routes import air, assess, kept, pages, places, proposals, readings, report, tiles
 from terrain.mosaic import Ground
 
@@ -27,6 +28,8 @@ def create_app(store: Store, ground: Ground, settings: Settings | None = None) -
         description="Which television multiplexes a roof will receive, and whether a better aerial is worth it.",
         docs_url=None,
         redoc_url=None,
+        redirect_slashes=False,  # an address with a slash too many is told so, not sent elsewhere
+        dependencies=[Depends(known_query)],
     )
     app.state.context = Context(store, ground, settings)
     for part in (assess, air, proposals, kept, places, readings, report, tiles, pages):

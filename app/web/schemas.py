@@ -77,6 +77,7 @@ class ObstacleIn(Strict):
     distance_m: float
     height_agl_m: float
     width_m: float
+    leaves_m: float = 0.0
 
 
 class RoofIn(Strict):

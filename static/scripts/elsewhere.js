@@ -24,7 +24,7 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
   /** @type {import('./state.js').State} */
   let state;
   pinned.addEventListener('click', pin);
-  part(element, '.add-obstacle').addEventListener('click', () => choose({ obstacles: [...state.obstacles, { bearing_deg: 0, distance_m: 30, height_agl_m: 8, width_m: 10 }] }));
+  part(element, '.add-obstacle').addEventListener('click', () => choose({ obstacles: [...state.obstacles, { bearing_deg: 0, distance_m: 30, height_agl_m: 8, width_m: 10, leaves_m: 0 }] }));
   new ResizeObserver(() => { if (state && !element.hidden) draw(); }).observe(body);
 
   /** @param {import('./state.js').State} next */
@@ -106,7 +106,7 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
     const unit = state.units === 'imperial' ? 'ft' : 'm';
     const [number, length] = [parseNumber, (text) => parseLength(text, state.units)];
     const boxed = (place, key, label, hint, read) => {
-      const value = state.obstacles[place][key];
+      const value = state.obstacles[place][key] ?? 0;
       return field(label, make('input', {
         type: 'text', inputMode: 'decimal', 'data-key': `${place}-${key}`,
         value: plainText(read === length ? heightIn(value, state.units) : value, 1),
@@ -125,6 +125,7 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
     refill(near, ...state.obstacles.map((_, place) => make('li', {},
       boxed(place, 'bearing_deg', 'Direction', '° true', number), boxed(place, 'distance_m', 'Away', unit, length),
       boxed(place, 'height_agl_m', 'Height', unit, length), boxed(place, 'width_m', 'Width', unit, length),
+      boxed(place, 'leaves_m', 'Leaves to pass', `${unit}, 0: a wall`, length),
       button('Take it away', () => choose({ obstacles: state.obstacles.filter((_, each) => each !== place) })))));
   }
   return { update };

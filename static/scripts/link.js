@@ -2,7 +2,7 @@
 
 const SEEN = ['perfect', 'breaks up', 'not found'];
 const AROUND = ['open', 'suburban', 'urban', 'trees', 'mapped'];
-const SHEETS = ['skyline', 'path', 'ledger', 'elsewhere', 'readings', 'chains', 'roofs', 'transmitters', 'assumptions'];
+const SHEETS = ['skyline', 'path', 'ledger', 'elsewhere', 'readings', 'chains', 'roofs', 'transmitters', 'assumptions', 'downloads'];
 const KNOWN = ['v', 'at', 'height', 'now', 'idea', 'multiplex', 'chain', 'sheet', 'more'];
 
 const isText = (value) => typeof value === 'string';

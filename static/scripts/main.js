@@ -7,7 +7,9 @@ import { createCautions } from './cautions.js';
 import { createChains } from './chains.js';
 import { createChanges } from './changes.js';
 import { createDecision } from './decision.js';
+import { createDownloads } from './downloads.js';
 import { createFollow } from './follow.js';
+import { createHere } from './here.js';
 import { createElsewhere } from './elsewhere.js';
 import { createHistory } from './history.js';
 import { latest } from './latest.js';
@@ -35,7 +37,7 @@ const actions = createActions(api, store, assess);
 const byId = (id) => /** @type {any} */ (document.getElementById(id));
 
 const panels = [
-  createWhere(byId('where'), { type, submit, choose }),
+  createWhere(byId('where'), { type, submit, choose, place }),
   createSeen(byId('seen'), { choose }),
   createDecision(byId('decision'), { place, back }),
   createChanges(byId('changes'), { choose }),
@@ -51,8 +53,10 @@ const panels = [
   createRoofs(byId('roofs'), { keep: actions.keepRoof, open, compare: actions.compare, forget: told(actions.forgetRoof), link, file }),
   createTransmitters(byId('transmitters'), { load: actions.air, turn: actions.switchEmission }),
   createAssumptions(byId('assumptions'), { choose, units }),
+  createDownloads(byId('downloads'), api, { again: overNewGround }),
   createMap(byId('map'), { place }),
 ];
+createHere(byId('where'), { place });
 
 const askAssess = latest((signal, body) => api.post('/api/assess', body, signal));
 const follow = createFollow(api, store);
@@ -73,8 +77,32 @@ async function assess() {
   } catch (error) {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
-    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message, field: error.field ?? null } });
+    const help = error.code === 'coverage' ? ' Under “Ground” below the page can fetch them.' : '';
+    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null } });
   }
+}
+
+/** Answers what was typed, and asks about it where latitude and longitude look swapped. */
+async function submit() {
+  const { where } = store.get();
+  store.set({ doubt: null, notes: [] });
+  await assess();
+  const asked = await api.read('/api/position', { text: where.trim() }).catch(() => null);
+  if (!asked?.question || where !== store.get().where) return;
+  store.set({ doubt: { question: asked.question, swapped: { latitude_deg: asked.longitude_deg, longitude_deg: asked.latitude_deg } } });
+}
+
+/** Takes up what was fetched and answers the roof twice. */
+async function overNewGround() {
+  store.set({ health: await api.read('/api/health') });
+  const seconds = [];
+  for (const _ of [1, 2]) {
+    const start = performance.now();
+    await assess();
+    if (store.get().trouble) return null;
+    seconds.push((performance.now() - start) / 1e3);
+  }
+  return { first_s: seconds[0], second_s: seconds[1] };
 }
 
 /**
@@ -84,8 +112,7 @@ async function assess() {
  */
 async function placed(text) {
   const at = parsePlace(text);
-  const otherwise = /\d/.test(text) && /[°'"′″+]|\d\s*[A-Za-z]/.test(text);
-  if (!('problem' in at) || !otherwise || at.problem.includes('not on Earth')) return at;
+  if (!('problem' in at) || !/\d/.test(text)) return at;
   try {
     const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
     return { place: { latitude_deg, longitude_deg } };
@@ -100,14 +127,9 @@ function type(change) {
   remember(false);
 }
 
-function submit() {
-  store.set({ notes: [] });
-  void assess();
-}
-
 /** @param {import('./state.js').Place} at a place shown on the map */
 function place(at) {
-  store.set({ where: placeText(at), seen: {}, notes: [] });
+  store.set({ where: placeText(at), seen: {}, doubt: null, notes: [] });
   void assess();
 }
 
@@ -156,7 +178,7 @@ function open(kept) {
     ...initialStateOfARoof(),
     where: placeText(roof),
     height: plainText(heightIn(roof.aerial_agl_m, store.get().units), 2),
-    around: roof.surroundings ?? 'open',
+    around: roof.surroundings ?? 'mapped',
     obstacles: roof.obstacles ?? [],
     now: kept.now ?? NOTHING, idea: kept.idea ?? null, second: kept.second ?? null, landmark: kept.landmark ?? '',
     edits: (kept.chains ?? []).filter((one) => typeof one === 'object'),

@@ -85,6 +85,8 @@ export function createMap(element, { place }) {
   /** @type {MapAdapter|null} */
   let adapter = null;
   let opening = false;
+  /** @type {MapOptions} */
+  let options;
   /** @type {{x: number, y: number}|null} */
   let crosshair = null;
   /** @type {import('./state.js').State} */
@@ -93,7 +95,7 @@ export function createMap(element, { place }) {
 
   async function open() {
     opening = true;
-    adapter = await openAny(view, {
+    options = {
       dark: darkness.matches,
       version: state.health.ground.version,
       bounds: groundBounds(),
@@ -101,9 +103,19 @@ export function createMap(element, { place }) {
       onMove: draw,
       onIdle: () => { element.dataset.idle = 'yes'; },
       onClick: (latitude, longitude) => place({ latitude_deg: latitude, longitude_deg: longitude }),
-    });
+    };
+    adapter = await openAny(view, options);
     darkness.addEventListener('change', () => adapter?.theme(darkness.matches));
     update(state);
+  }
+
+  /** Draws the relief of ground that has come since the map was opened. */
+  function takeUpGround() {
+    if (!adapter || options.version === state.health.ground.version) return;
+    options.version = state.health.ground.version;
+    adapter.theme(darkness.matches);
+    const bounds = groundBounds();
+    if (bounds) adapter.fit(bounds, 4);
   }
 
   /** What all rasters cover together. */
@@ -246,10 +258,10 @@ export function createMap(element, { place }) {
       return item;
     }));
     const ground = state.health?.ground;
-    const names = [...new Set((ground?.rasters ?? []).map((raster) => raster.attribution).filter(Boolean))];
+    const names = ground?.credits ?? [];
     const refused = (ground?.refused ?? []).map((one) => `${one.file}: ${one.message}`);
     const demo = state.health?.demo_roofs.length ? 'An invented island: no real place.' : '';
-    if (credit) credit.textContent = [demo, names.length ? `Ground: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
+    if (credit) credit.textContent = [demo, names.length ? `Credits: ${names.join('; ')}.` : '', ...refused].filter(Boolean).join(' ');
   }
 
   /** @param {KeyboardEvent} event */
@@ -318,6 +330,7 @@ export function createMap(element, { place }) {
     cell = shownCell(state);
     const settled = state.answer || (state.health && !state.asking && state.chains);
     if (settled && !opening) void open();
+    takeUpGround();
     look();
     draw();
     list();

@@ -10,10 +10,10 @@
  * @property {string} now          name of the chain that is up, or "nothing"
  * @property {string|null} idea    name of the chain to compare; null: the best one
  * @property {string|null} second  name of another chain to compare; null: none
- * @property {string} around       what stands around the roof: open, suburban, urban, trees
+ * @property {string} around       what stands around the roof: mapped, open, suburban, urban, trees
  * @property {Record<string, string>} seen   what works there today, by multiplex: perfect, breaks up, not found
  * @property {string} landmark     what lies along the line of the aerial, as named by the user
- * @property {any[]} obstacles     bearing_deg, distance_m, height_agl_m, width_m
+ * @property {any[]} obstacles     bearing_deg, distance_m, height_agl_m, width_m, leaves_m
  * @property {any[]} edits         chains as changed here, in place of kept ones of the same name
  * @property {Record<string, any>} settings     of the question, where not as usual
  * @property {Record<string, number>} assumptions  values changed from their defaults
@@ -36,6 +36,7 @@
  * @property {any|null} health     what the server knows; null: not yet known
  * @property {any|null} answer     the document of the last answer
  * @property {any|null} path       the path of the shown cell
+ * @property {{question: string, swapped: Place}|null} doubt  whether latitude and longitude are swapped
  * @property {boolean} asking      a question is on its way
  * @property {{message: string, field: string|null}|null} trouble
  * @property {{where: string, height: string}|null} asked   as typed when the last answer came
@@ -53,10 +54,10 @@ export const LEAST_CHANGE = 0.05; // of a chance or a number of multiplexes: les
 export function initialState() {
   return {
     where: '', height: '10', roof: null, now: '', idea: null, second: null, cell: null,
-    around: 'open', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
+    around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
     sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
     said: '', moved: [], past: 0,
-    chains: null, health: null, answer: null, path: null, asking: false, trouble: null, asked: null, notes: [],
+    chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null, asked: null, notes: [],
   };
 }
 
@@ -160,7 +161,7 @@ export function isStale(state) {
 export function question(state, height) {
   const now = state.now || NOTHING;
   const asked = /** @type {any} */ ({ roof: { ...state.roof, aerial_agl_m: height }, now, ...state.settings });
-  if (state.around !== 'open') asked.roof.surroundings = state.around;
+  if (state.around !== 'mapped') asked.roof.surroundings = state.around;
   if (state.obstacles.length) asked.roof.obstacles = state.obstacles;
   if (state.edits.length) asked.chains = chainsAsked(state);
   if (Object.keys(state.assumptions).length) asked.assumptions = state.assumptions;

@@ -1,14 +1,15 @@
 /** What is asked first: where, how high, what stands around, what is up, which ideas. */
 
+import { button, refill } from './dom.js';
 import { columns, noneIsWorthIt, NOTHING, titleOf, chainsHere } from './state.js';
 
-const AROUND = [['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
+const AROUND = [['mapped', 'as mapped'], ['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
 
 /**
  * @param {HTMLFormElement} element
- * @param {{type: (change: object) => void, submit: () => void, choose: (change: object) => void}} actions
+ * @param {{type: (change: object) => void, submit: () => void, choose: (change: object) => void, place: (place: import('./state.js').Place) => void}} actions
  */
-export function createWhere(element, { type, submit, choose }) {
+export function createWhere(element, { type, submit, choose, place: move }) {
   const named = (name) => /** @type {any} */ (element.elements.namedItem(name));
   const [place, height, around, now, idea, second] = ['place', 'height', 'around', 'now', 'idea', 'second'].map(named);
   const unit = /** @type {HTMLElement} */ (element.querySelector('.field-height .hint'));
@@ -24,7 +25,8 @@ export function createWhere(element, { type, submit, choose }) {
   now.addEventListener('change', () => choose({ now: now.value }));
   idea.addEventListener('change', () => choose({ idea: idea.value || null }));
   second.addEventListener('change', () => choose({ second: second.value || null }));
-  options(around, AROUND, 'open');
+  options(around, AROUND, 'mapped');
+  const doubt = /** @type {HTMLElement} */ (element.querySelector('.doubt'));
 
   /** @param {import('./state.js').State} state */
   function update(state) {
@@ -44,9 +46,14 @@ export function createWhere(element, { type, submit, choose }) {
     options(second, [['', 'none'], ...judged.filter(([name]) => name !== first)], state.second ?? '');
     problem(place, state.trouble, 'where', 'latitude_deg', 'longitude_deg');
     problem(height, state.trouble, 'height', 'aerial_agl_m');
+    const { doubt: asked } = state;
+    refill(doubt, ...(asked ? [capital(asked.question), ' ', button('Swap them', () => move(asked.swapped), { 'data-key': 'swap' })] : []));
   }
   return { update };
 }
+
+/** @param {string} text */
+const capital = (text) => text.charAt(0).toUpperCase() + text.slice(1);
 
 /** @param {HTMLInputElement} field @param {string} text */
 function fill(field, text) {

@@ -100,3 +100,20 @@ def test_missing_and_huge_files_are_refused_by_name(store, tmp_path):
         file.truncate(2_000_000_000)  # a hole, takes no room
     with pytest.raises(ChainError, match=r"huge\.toml"):
         import_file(huge, store)
+
+
+@pytest.mark.parametrize(
+    ("text", "told"),
+    [
+        ("a = " + "[" * 5000 + "]" * 5000, "is no TOML"),
+        ("labour_price = " + "9" * 5000, "is no TOML"),
+        (
+            '[[parts]]\nkind = "feeder"\nid = "x"\nname = "x"\ncable = "copper-7mm"\nlength_m = ' + "9" * 400,
+            "use a number",
+        ),
+        ('[[chains]]\nname = "a"\nname = "b"\n', "is no TOML"),
+    ],
+)
+def test_nesting_and_numbers_that_no_parser_takes_are_refused(text, told):
+    with pytest.raises(ChainError, match=told):
+        read_text("mine.toml", text)

@@ -195,3 +195,33 @@ def test_a_cover_map_is_added_or_refused_by_the_name_it_was_given(own, write_ras
     assert CliRunner().invoke(main, ["cover", "add", str(codes), "--classes", "worldcover"]).exit_code == 0
     rows = json.loads(CliRunner().invoke(main, ["cover", "list", "--json"]).stdout)
     assert rows[0]["file"] == "cover.tif"
+
+
+@pytest.mark.parametrize(
+    ("words", "told"),
+    [
+        (["assess", "--at", "44.3,-37.45", "--height", "abc"], '"abc" is not a number: write one such as 10 or 2.5'),
+        (["assess", "--at", "44.3,-37.45", "--reach", "10,5"], "with a point, 10.5"),
+        (["assess", "--at", "44.3,-37.45", "--worth", "nan"], '"nan" is not a number'),
+        (["assess", "--at", "44.3,-37.45", "--leaves", "1_0"], '"1_0" is not a number'),
+        (
+            ["assess", "--at", "44.3,-37.45", "--availability", "99.5"],
+            '"99.5" is not a whole number: write one such as 4',
+        ),
+        (["serve", "--port", "http"], '"http" is not a whole number'),
+        (["chains", "cheapest", "--at", "44.3,-37.45", "--outlets", "two"], '"two" is not a whole number'),
+        (["terrain", "get", "--at", "44.3,-37.45", "--reach", "far"], '"far" is not a number'),
+        (
+            ["path", "--from", "44,-37", "--to", "44,-37.2", "--frequency", "600", "--heights", "1,2,3"],
+            "write two numbers",
+        ),
+        (
+            ["path", "--from", "44,-37", "--to", "44,-37.2", "--frequency", "600", "--heights", "nan,10"],
+            "write two numbers",
+        ),
+    ],
+)
+def test_an_option_that_is_no_number_says_what_came_and_what_to_write(words, told):
+    result = CliRunner().invoke(main, words)
+    assert result.exit_code == 2
+    assert told in " ".join(result.output.replace("│", " ").split())

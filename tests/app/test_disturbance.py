@@ -9,7 +9,7 @@ import pytest
 from app.air import air_of
 from app.assumptions import Assumptions
 from app.chain.catalogue import demo_chains
-from app.disturbance import company_of
+from app.company import company_of
 from app.fields import EmissionField, PathFacts
 from app.interferers import Interferer
 from app.margins import turn
@@ -74,8 +74,8 @@ ALONE = received_field(emission("a"), 20.0, 55.0)
 def test_nothing_beside_an_emission_leaves_its_margin_to_noise():
     one, _ = turned([ALONE])
     assert one.margin_db[0] == pytest.approx(one.faded.margin_db[0])
-    assert one.held_back(0).limit in ("noise", "time")
-    assert one.held_back(0).by is None
+    assert one.held_back()[0].limit in ("noise", "time")
+    assert one.held_back()[0].by is None
 
 
 def test_margin_is_the_lower_of_both_states():
@@ -83,7 +83,7 @@ def test_margin_is_the_lower_of_both_states():
     one, _ = turned([ALONE], [other])
     assert one.state(0) == "b"
     assert one.margin_db[0] == pytest.approx(min(one.faded.margin_db[0], one.raised.margin_db[0]))
-    held = one.held_back(0)
+    held = one.held_back()[0]
     assert (held.limit, held.by, held.next_db) == ("interference", 1, None)
 
 
@@ -99,7 +99,7 @@ def test_next_interferer_is_told_in_decibels():
     others = [
         received_field(emission(*one), 100.0, level, km) for one, level, km in ((("b",), 70.0, 40), (("c",), 60.0, 50))
     ]
-    assert turned([ALONE], others)[0].held_back(0).next_db == pytest.approx(10.0)
+    assert turned([ALONE], others)[0].held_back()[0].next_db == pytest.approx(10.0)
 
 
 @pytest.mark.parametrize("bearing_deg", [20.0, 60.0, 200.0])
@@ -154,7 +154,7 @@ def test_spread_grows_with_interference_and_errors_of_one_mast_cancel():
     assert elsewhere.cells.sigma_db[0] > quiet.cells.sigma_db[0]
     beside = received_field(emission("c", 658.0, transmitter_id="mast-a"), 20.0, 115.0)
     together, _ = turned([ALONE], [replace(beside, transmitter=ALONE.transmitter)])
-    assert together.held_back(0).limit == "interference"
+    assert together.held_back()[0].limit == "interference"
     assert together.cells.path.sd_db[0] < 0.5  # the path moves both alike
 
 
@@ -195,7 +195,7 @@ def test_members_far_apart_in_time_disturb_each_other():
     late = [member("a", 20.0, 60.0, 20.0), member("b", 20.0, 60.0, 140.0)]  # 400 µs, guard 28 µs
     one, air = turned(late)
     assert one.margin_db[0] < 0
-    assert one.held_back(0).limit == "interference"
+    assert one.held_back()[0].limit == "interference"
     assert air.company.pairs.disturber.size == 0  # no pair: it is self-interference
 
 
@@ -206,7 +206,7 @@ def test_network_of_one_member_is_no_network():
 def test_members_with_different_modes_disturb_each_other_and_it_is_said():
     wanted = [member("a", 20.0, 60.0, 40.0), member("b", 20.0, 60.0, 41.0, mode="64-QAM 2/3")]
     one, air = turned(wanted)
-    assert one.held_back(0).limit == "interference"
+    assert one.held_back()[0].limit == "interference"
     assert any("do not send the same mode" in caution for caution in air.company.cautions)
 
 
@@ -226,7 +226,7 @@ def test_same_content_on_one_channel_without_guard_interval_disturbs_itself():
         for name, km in (("a", 40.0), ("b", 41.0))
     ]
     one, air = turned(wanted)
-    assert one.held_back(0).limit == "interference"
+    assert one.held_back()[0].limit == "interference"
     assert any("has no guard interval" in caution for caution in air.company.cautions)
 
 

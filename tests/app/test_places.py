@@ -135,4 +135,4 @@ def test_mapped_surroundings_follow_the_cover_and_say_so(tmp_path):
         "",
     )
     assert "No land cover is known" in with_surroundings(Roof(40, 8.0, surroundings="mapped"), ground)[1]
-    assert credits_of(ground) == ["© somebody"]
+    assert credits_of(ground) == ["Coastline: Natural Earth 1:10m, public domain", "© somebody"]

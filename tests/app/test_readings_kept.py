@@ -202,3 +202,14 @@ def test_hopeless_emissions_on_free_channels_change_no_answer(store, demo_world)
     worst = [c["chance"] for m in after["multiplexes"] if m["id"].startswith("whisper") for c in m["chains"].values()]
     assert max(worst) < 0.01
     assert after["verdicts"] == before["verdicts"]
+
+
+def test_a_reading_of_what_is_not_on_the_air_or_through_an_unknown_chain_is_kept_with_a_note(store):
+    kept = keep(store, NORTH.latitude_deg, NORTH.longitude_deg, LEVEL | {"emission": "99", "chain": "gone"})
+    assert len(store.list_readings()) == 1
+    assert kept["notes"][0].startswith('"99" is no channel or multiplex on the air within 150 km: kept, and not used')
+    assert kept["notes"][1].startswith(
+        'no chain "gone" is stored: kept, and used by answers that bring it; stored: high-'
+    )
+    for known in ({"emission": "48"}, {"emission": "far-island-48"}, {"emission": None, "multiplex": "Range One"}):
+        assert keep(store, NORTH.latitude_deg, NORTH.longitude_deg, LEVEL | known)["notes"] == []

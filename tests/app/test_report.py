@@ -115,6 +115,14 @@ def test_a_roof_keeps_what_was_asked_for_it(client):
     client.delete(f"/api/roofs/{kept['id']}")
 
 
+def test_an_idea_that_is_no_longer_stored_is_named_in_the_report(client):
+    kept = client.post("/api/roofs", json=KEPT | {"idea": "gone", "second": "lost"}).json()
+    page = client.get(f"/report/{kept['id']}").text
+    assert "Idea 1 was &quot;gone&quot;, which is not among the chains any more: the best of the others stands" in page
+    assert "Idea 2 was &quot;lost&quot;, which is not among the chains any more: it is left out." in page
+    client.delete(f"/api/roofs/{kept['id']}")
+
+
 def test_an_emission_that_is_switched_off_takes_no_part(client):
     def received() -> str:
         return json.dumps(client.post("/api/assess", json={"roof": KEPT["roof"]}).json()["emissions"])

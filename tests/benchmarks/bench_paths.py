@@ -50,9 +50,10 @@ from propagation import p1546, p1812
 from propagation.fast_digest import Digests, Ends, digests
 from terrain.compiled import compiled
 from terrain.geodesy import destination
-from terrain.kernels import Scratch, SheetArrays, sample_heights, sheet_arrays
+from terrain.kernels import Scratch, SheetArrays, sample_heights, scratch_for, sheet_arrays
 from terrain.lines import Lines, lines_over
 from terrain.mosaic import Ground
+from terrain.patches import in_rows
 from terrain.profile import sample_profile
 from terrain.sheet import Sheet
 
@@ -91,16 +92,15 @@ def _ends(tx_lat, tx_lon, rx_lat, rx_lon, antenna_agl_m) -> Ends:
 
 @compiled
 def sample_all(
-    sheet: SheetArrays, first_knot: np.ndarray, row: np.ndarray, column: np.ndarray, points: np.ndarray
+    sheet: SheetArrays,
+    scratch: Scratch,
+    first_knot: np.ndarray,
+    row: np.ndarray,
+    column: np.ndarray,
+    points: np.ndarray,
 ) -> int:
     """The sampling stage alone: the first half of `scan_lines`."""
     most = points.max()
-    scratch = Scratch(
-        np.empty(most, np.int64),
-        np.empty(most, np.float32),
-        np.empty(most, np.float32),
-        np.empty((4, most), np.float32),
-    )
     height, wet, known = np.empty(most, np.float32), np.empty(most, np.bool_), 0
     for p in range(points.size):
         knots = slice(first_knot[p], first_knot[p + 1])
@@ -115,7 +115,7 @@ def sampled(sheet: Sheet, arrays: SheetArrays, ends: Ends, parts: int = 1, each:
 
     def part(first: int) -> None:
         lines = _lines(sheet, ends, slice(first, first + size))
-        sample_all(arrays, lines.first_knot, lines.row, lines.column, lines.points)
+        sample_all(arrays, scratch_for(arrays), lines.first_knot, lines.row, lines.column, lines.points)
 
     list(each(part, range(0, ends.tx_latitude_deg.size, size)))
 
@@ -132,10 +132,12 @@ def _lines(sheet: Sheet, ends: Ends, part: slice = slice(None)) -> Lines:
 
 
 def plain_c(folder: Path, sheet: Sheet, lines: Lines) -> Callable[[], object] | None:
-    """Return the sampling loop in C, built here, or None without a compiler."""
+    """Return the sampling loop in C over samples in rows, built here, or None without a compiler."""
     compiler = next(filter(None, map(shutil.which, ("cc", "gcc", "clang"))), None)
-    if compiler is None or sheet.samples.dtype != np.int16:
+    if compiler is None or sheet.patches.dtype != np.int16:
         return None
+    samples = np.ascontiguousarray(in_rows(sheet.patches, sheet.grid.rows, sheet.grid.columns))
+    samples[samples == sheet.water] = 0
     library = folder / "gather.so"
     source = Path(__file__).with_name("gather.c")
     flags = ["-O3", "-march=native", "-ffast-math", "-shared", "-fPIC"]
@@ -143,9 +145,9 @@ def plain_c(folder: Path, sheet: Sheet, lines: Lines) -> Callable[[], object] | 
     function = ctypes.CDLL(str(library)).sample
     function.restype = ctypes.c_int64
     height = np.empty(int(lines.points.max()), np.float32)
-    arrays = (sheet.samples, lines.first_knot, lines.row, lines.column, lines.points, height)
+    arrays = (samples, lines.first_knot, lines.row, lines.column, lines.points, height)
     pointers = [ctypes.c_void_p(array.ctypes.data) for array in arrays]
-    count = [ctypes.c_int64(sheet.samples.shape[1]), ctypes.c_int64(lines.points.size)]
+    count = [ctypes.c_int64(samples.shape[1]), ctypes.c_int64(lines.points.size)]
     return lambda: (function(pointers[0], *count, *pointers[1:]), arrays)
 
 
@@ -240,11 +242,10 @@ def _rooftop_table(folder: Path, rounds: int) -> tuple[Ground, list[Row]]:
             )
             path_over(profile, ends.antenna_agl_m[p], ROOF, Assumptions())
 
-    (samples_file,), (water_file,) = cache.rglob("*-samples.npy"), cache.rglob("*-water.npy")
+    (patches_file,) = cache.rglob("*-patches.npy")
 
     def fresh_map() -> None:
-        samples, water = (np.asarray(np.load(file, mmap_mode="r")) for file in (samples_file, water_file))
-        digests(replace(sheet, samples=samples, water=water), ends, SPACING_M)
+        digests(replace(sheet, patches=np.asarray(np.load(patches_file, mmap_mode="r"))), ends, SPACING_M)
 
     def decode_ten() -> None:
         for path in sorted(tif.glob("*.tif"))[:10]:
@@ -256,7 +257,10 @@ def _rooftop_table(folder: Path, rounds: int) -> tuple[Ground, list[Row]]:
         Variant("scan", lambda: digests(sheet, ends, SPACING_M), flushed=True),
         Variant("scan on two", lambda: digests(sheet, ends, SPACING_M, each=pool.map, parts=2)),
         Variant("sampling", lambda: sampled(sheet, arrays, ends)),
-        Variant("kernel sampling", lambda: sample_all(arrays, lines.first_knot, lines.row, lines.column, lines.points)),
+        Variant(
+            "kernel sampling",
+            lambda: sample_all(arrays, scratch_for(arrays), lines.first_knot, lines.row, lines.column, lines.points),
+        ),
         Variant("numpy", by_numpy, some.size / ends.tx_latitude_deg.size, 1),
         Variant("12 frequencies", lambda: fields_of(digests(sheet, ends, SPACING_M), 12, np.array([50.0]), False)),
         Variant("1 frequency", lambda: fields_of(digests(sheet, ends, SPACING_M), 1, np.array([50.0]), False)),

@@ -10,7 +10,18 @@ from playwright.sync_api import Page, expect
 from app.demo.scenario import DEMO_ROOFS, DemoRoof
 
 NORTH, WEST, EAST, *_ = DEMO_ROOFS
-SHEETS = ("skyline", "path", "ledger", "elsewhere", "readings", "chains", "roofs", "transmitters", "assumptions")
+SHEETS = (
+    "skyline",
+    "path",
+    "ledger",
+    "elsewhere",
+    "readings",
+    "chains",
+    "roofs",
+    "transmitters",
+    "downloads",
+    "assumptions",
+)
 RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"]
 SENTENCE = re.compile(r"^(Today .+ of \d+\.|Nothing is up today\.) .+(worth it|measure first|any price|pay below).*\.$")
 

@@ -63,6 +63,8 @@ def test_the_saved_file_opens_alone(page, watched, browser, tmp_path):
     show(page, "path")
     expect(page.locator(".drawing .ground-line")).to_have_count(1)
     told = page.locator(".sentence").inner_text()
+    letters = page.evaluate("() => getComputedStyle(document.body).fontFamily")
+    page.get_by_label("Landmark along the line").fill("left of the chapel")
     open_sheet = page.get_by_role("tab", name="Roofs and report")
     open_sheet.click()
     with page.expect_download() as got:
@@ -76,15 +78,24 @@ def test_the_saved_file_opens_alone(page, watched, browser, tmp_path):
     alone.goto(Path(file).as_uri())
     expect(alone.locator(".sentence")).to_have_text(told)
     expect(alone.locator(".roofline")).to_be_visible()
-    assert alone.evaluate("() => getComputedStyle(document.querySelector('.sentence')).fontSize") != "16px"
+    expect(alone.locator(".masthead")).to_contain_text(
+        re.compile(r"Roof at 44\.3, ?-37\.\d+, aerial 10 m above ground")
+    )
+    expect(alone.locator(".landmark")).to_contain_text("left of the chapel")
+    expect(alone.locator(".roofs")).to_have_count(0)  # other roofs, and links that lead nowhere from a file
+    size = "() => getComputedStyle(document.querySelector('.sentence')).fontSize"
+    on_screen = alone.evaluate(size)
+    alone.emulate_media(media="print")
+    assert alone.evaluate(size) != on_screen != "16px"  # the rules for paper hold on paper only
+    assert alone.evaluate("() => getComputedStyle(document.body).fontFamily") == letters
 
 
 def test_on_paper_only_the_answer_stands(fresh):
     show(fresh, "path")
     fresh.emulate_media(media="print")
-    for gone in (".where", ".map", ".tabs", ".seen"):
+    for gone in (".field-go", "#now", ".map", ".tabs", ".seen", ".landmark"):
         expect(fresh.locator(gone)).to_be_hidden()
-    for there in (".sentence", ".roofline", ".cautions", ".path .drawing"):
+    for there in ("#place", "#height", ".sentence", ".roofline", ".cautions", ".path .drawing"):
         expect(fresh.locator(there).first).to_be_visible()
 
 

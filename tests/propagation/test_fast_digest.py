@@ -1,6 +1,8 @@
 """The compiled form says what the plain form says, field by field, over rasters of every kind; else it says nothing."""
 
+import shutil
 from dataclasses import fields
+from pathlib import Path
 from types import SimpleNamespace
 
 import numpy as np
@@ -17,6 +19,7 @@ from terrain.profile import sample_profile
 from terrain.raster import declare
 
 PATHS = 40
+CUTS = Path(__file__).parent.parent / "data" / "nasa" / "srtm"
 
 
 def hills(rows=300, columns=400, seed=3):
@@ -127,6 +130,27 @@ def test_paths_cross_tiles_of_one_lattice(raster, tmp_path):
     assert len(sheet.tiles) == 4
     count, largest = compare(ground, sheet, ends_within(sheet))
     assert count == PATHS
+    assert largest < 0.01
+
+
+@pytest.mark.parametrize(
+    ("cuts", "sheets", "fewest"),
+    [
+        (("hills_north", "hills_south"), 1, 38),  # two tiles that share a row, nearly all paths across the seam
+        (("island_west", "island_east"), 1, 38),  # a ridge and the sea
+        (("small_voids",), 1, 20),  # bridged
+        (("large_void",), 1, 2),  # paths beside it; the many over it are left to the plain form
+    ],
+)
+def test_both_forms_agree_over_cuts_of_real_tiles(tmp_path, cuts, sheets, fewest):
+    """SRTM of 3 arc-seconds, NASA, public domain: tests/data/nasa/srtm, each cut with its source beside it."""
+    for cut in cuts:
+        shutil.copy(CUTS / f"{cut}.tif", tmp_path)
+    ground = Ground.open([tmp_path], tmp_path / "cache")
+    found = ground.sheets()
+    assert len(found) == sheets
+    count, largest = compare(ground, found[0], ends_within(found[0]))
+    assert fewest <= count <= PATHS
     assert largest < 0.01
 
 

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from app.network import LIGHT_KM_PER_US, echo_rise_db, rise_at_0_db, split, symbol_of, useful_share
+from app.network import LIGHT_KM_PER_US, echo_rise_db, rise_at_0_db, shares_by_start, split, symbol_of, useful_share
 
 FIRST = "first above the threshold"
 
@@ -38,7 +38,7 @@ def test_identical_twin_adds_3_01_db_of_power_and_no_interference():
     """10 log 2: arithmetic; equal delays are one signal to the set, so the required C/N does not rise."""
     symbol = symbol_of("DVB-T", 8, "8K 1/4")
     power, arrival = np.array([5.0, 5.0]), np.array([100.0, 100.0])
-    share = split(power, arrival, symbol, FIRST, 10.0)
+    share = split(power, arrival, shares_by_start(arrival, symbol), FIRST, 10.0)
     assert 10 * np.log10((share * power).sum() / 5.0) == pytest.approx(3.0103, abs=1e-4)
     assert ((1 - share) * power).sum() == 0
     assert float(echo_rise_db(power, arrival, 8.0, 2.0, 10.0)) == 0
@@ -60,10 +60,12 @@ def test_outside_the_window_all_power_disturbs_before_and_after():
     symbol = symbol_of("DVB-T", 8, "8K 1/32")
     power = np.array([1.0, 10.0, 1.0])
     arrival = np.array([0.0, 400.0, 900.0])
-    assert split(power, arrival, symbol, "strongest", 10.0) == pytest.approx([0, 1, 0])  # a pre-echo and a late one
-    assert split(power, arrival, symbol, FIRST, 15.0) == pytest.approx([1, 0, 0])  # the window starts at the first
+    shares = shares_by_start(arrival, symbol)
+    assert split(power, arrival, shares, "strongest", 10.0) == pytest.approx([0, 1, 0])  # a pre-echo and a late one
+    assert split(power, arrival, shares, FIRST, 15.0) == pytest.approx([1, 0, 0])  # the window starts at the first
 
 
 def test_delay_of_hours_is_only_interference():
     symbol = symbol_of("DVB-T2", 8)
-    assert split(np.array([1.0, 0.5]), np.array([0.0, 3.6e9]), symbol, FIRST, 10.0) == pytest.approx([1, 0])
+    arrival = np.array([0.0, 3.6e9])
+    assert split(np.array([1.0, 0.5]), arrival, shares_by_start(arrival, symbol), FIRST, 10.0) == pytest.approx([1, 0])

@@ -34,7 +34,7 @@ test('what a link holds in another shape is left out and named', () => {
   };
   const found = decode(`#v=2&at=1,2&colour=red&sheet=cellar&more=${encodeURIComponent(JSON.stringify(strange))}`);
   const { edits, seen, assumptions, second, landmark, around, obstacles, sheet } = found;
-  assert.deepEqual({ edits, seen, assumptions, second, landmark, around, sheet }, { edits: [], seen: { a: 'perfect' }, assumptions: {}, second: null, landmark: 'tower', around: 'open', sheet: 'skyline' });
+  assert.deepEqual({ edits, seen, assumptions, second, landmark, around, sheet }, { edits: [], seen: { a: 'perfect' }, assumptions: {}, second: null, landmark: 'tower', around: 'mapped', sheet: 'skyline' });
   assert.equal(obstacles.length, 1);
   for (const words of ['“later”', 'edits', 'seen: b', 'assumptions', 'second “7”', 'around “moon”', '1 of obstacles']) assert.ok(found.notes[0].includes(words), words);
   assert.match(found.notes[0], /and 1 more\.$/);

@@ -12,6 +12,7 @@ from app.assumptions import Assumptions
 from app.chain.tables import CABLES
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import RequestError
+from app.mapped import cover_in_use, credits_of
 from app.request import LONGEST_REACH_KM
 from app.transmitters.store import DEMO_SOURCE
 from app.web.assets import ASSETS
@@ -97,6 +98,11 @@ def health(context: ContextDep) -> dict[str, Any]:
                 }
                 for raster in ground.rasters
             ],
+            "cover": [
+                {"name": one.name, "classes": one.classes, "spacing_m": one.grid.spacing_m}
+                for one in cover_in_use(ground)
+            ],
+            "credits": credits_of(ground),
             "refused": [{"file": one.path.name, "message": one.message} for one in ground.refused],
         },
         "sources": [dataclasses.asdict(one) for one in sources],

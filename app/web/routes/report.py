@@ -7,10 +7,12 @@ from urllib.parse import quote
 
 from fastapi import APIRouter, Path, Response
 from fastapi.responses import HTMLResponse
+from pydantic import ValidationError
 
 from app.report.content import Document, report_content
 from app.report.page import report_html
 from app.report.paper import report_pdf
+from app.transmitters.documents import damaged
 from app.web.context import Context, ContextDep
 from app.web.schemas import SavedRoofIn
 
@@ -36,8 +38,13 @@ async def page(id: Id, context: ContextDep) -> HTMLResponse:
 
 async def _content(id: str, context: Context) -> Document:
     kept = context.store.get_roof(id)
-    saved = SavedRoofIn(**{key: value for key, value in kept.items() if key in SavedRoofIn.model_fields})
+    try:
+        saved = SavedRoofIn(**{key: value for key, value in kept.items() if key in SavedRoofIn.model_fields})
+    except ValidationError as error:
+        raise damaged(f'roof "{kept["name"]}"', id) from error
     settings = context.settings
     asked = saved.question().model_copy(update={"ledgers": []})
     request = asked.request(settings.worth_per_multiplex, settings.reading_cost, context.store)
-    return await context.compute(report_content, kept, request, context.store, context.ground)
+    return await context.compute(
+        report_content, kept, request, context.store, context.ground, settings.refractivity_maps
+    )
