@@ -95,9 +95,10 @@ def _multiplex_cell(
     rows: Sequence[int], m: int, outcome: Outcome, turned: Turned, cells: Sequence[dict[str, Any]], air: Air
 ) -> dict[str, Any]:
     best = max(rows, key=lambda e: turned.chance[e])
+    chance = probability(outcome.chance[m])
     return {
-        "chance": probability(outcome.chance[m]),
-        "grade": grade(outcome.chance[m]),
+        "chance": chance,
+        "grade": grade(chance),  # of the figure that is shown
         "held_back_by": cells[best]["held_back_by"],
         "emission": air.fields[best].emission.id,
         "pointing_deg": turned.pointing_deg,
@@ -174,7 +175,7 @@ def _emission(
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
     chances = outcome.chance if outcome else np.zeros(0)
-    counts: dict[str, int] = {word: sum(grade(one) == word for one in chances) for _, word in GRADES}
+    counts: dict[str, int] = {word: sum(grade(probability(one)) == word for one in chances) for _, word in GRADES}
     return {
         "title": chain.title or chain.name,
         "price": chain.price,

@@ -37,7 +37,7 @@ SAME_CHANCE = 0.02  # chances this close are the same to a person
 HELP = {
     "noise": "gain helps",
     "time": "gain helps on bad nights",
-    "interference": "directivity, not gain, cures it, and an amplifier does not",
+    "interference": "directivity cures it, gain or an amplifier alone does little",
     "overload": "less gain helps, an amplifier harms",
 }
 
@@ -186,15 +186,15 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
         return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
-    held = "; ".join(
-        f"{limit} holds back {count} of {len(missing)}, {HELP.get(limit, 'see the ledger')}"
-        for limit, count in limits.most_common()
+    held = ", ".join(
+        f"{limit} holds back {count} ({HELP.get(limit, 'see step by step')})" for limit, count in limits.most_common()
     )
+    held = f"{len(missing)} of {len(wanted)} wanted {'is' if len(missing) == 1 else 'are'} not likely today: {held}"
     if baseline.chain is None:
-        held = f"nothing is up today for {len(missing)} wanted"
+        held = f"Nothing is up today for {len(missing)} wanted"
     if not cured:
-        return f"{_capital(held)}; {candidate.title} does not bring any of them to a likely chance."
-    return f"{_capital(held)}; {candidate.title} brings {len(cured)} of them to a likely chance."
+        return f"{held}; {candidate.title} makes none of them likely."
+    return f"{held}; {candidate.title} makes {len(cured)} of them likely."
 
 
 def _cheapest_equal(
@@ -220,7 +220,3 @@ def _cheapest_equal(
 
 def _named(multiplexes: Sequence[str], which: BoolArray) -> tuple[str, ...]:
     return tuple(name for name, yes in zip(multiplexes, which, strict=True) if yes)
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]

@@ -15,6 +15,11 @@ export function createActions(api, store, assess) {
   const height = () => /** @type {any} */ (parseHeight(store.get().height, store.get().units)).height ?? 10;
   const encoded = encodeURIComponent;
 
+  /** What another press or another window has taken away already is gone as it should be. @param {string} path */
+  async function gone(path) {
+    await api.remove(path).catch((error) => { if (error.status !== 404) throw error; });
+  }
+
   async function chainsAgain() {
     const { chains } = await api.read('/api/chains');
     store.set({ chains });
@@ -66,7 +71,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} id */
     async forget(id) {
-      await api.remove(`/api/readings/${encoded(id)}`);
+      await gone(`/api/readings/${encoded(id)}`);
       await assess();
     },
     /** A reading that surprised was looked at again. @param {any} item */
@@ -88,7 +93,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} name */
     async removeChain(name) {
-      await api.remove(`/api/chains/${encoded(name)}`);
+      await gone(`/api/chains/${encoded(name)}`);
       const { now, idea, second, edits } = store.get();
       store.set({ edits: edits.filter((one) => one.name !== name), now: now === name ? 'nothing' : now, idea: idea === name ? null : idea, second: second === name ? null : second });
       await chainsAgain();
@@ -128,7 +133,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} id */
     async forgetRoof(id) {
-      await api.remove(`/api/roofs/${encoded(id)}`);
+      await gone(`/api/roofs/${encoded(id)}`);
       if (store.get().saved?.id === id) store.set({ saved: null });
       await roofsAgain();
     },

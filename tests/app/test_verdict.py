@@ -116,6 +116,6 @@ def test_reason_counts_what_holds_back():
     small = outcome(SMALL, 0.1, 0.2, 0.3, limits=("noise", "noise", "time"))
     found = verdict(outcome(LARGE, 0.9, 0.9, 0.1), small)
     assert (
-        found.reason == "Noise holds back 2 of 3, gain helps; time holds back 1 of 3, gain helps on bad nights; "
-        "High-gain roof aerial brings 2 of them to a likely chance."
+        found.reason == "3 of 3 wanted are not likely today: noise holds back 2 (gain helps), "
+        "time holds back 1 (gain helps on bad nights); High-gain roof aerial makes 2 of them likely."
     )
