@@ -10,6 +10,7 @@ behind the aerial it does to both.
 from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -73,7 +74,7 @@ def ear_of(chain: Chain, polarisation: str, company: Company, assumptions: Assum
     return Ear(chain, polarisation, assumptions, company, on_axis, brought)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Effect:
     """What the company does to each wanted emission in one state."""
 
@@ -97,18 +98,18 @@ class Effect:
         order = order[power[order] > 0]
         return who[order], power[order] / self.carrier[e]
 
-    def brought_to(self, e: int) -> tuple[NDArray[np.intp], FloatArray]:
-        """Other networks' and single interferers of one wanted emission, and the power each brings. (k,)"""
+    @cached_property
+    def brought(self) -> FloatArray:
+        """Power that each pair brings into the wanted channel, in the order of the pairs, at one pointing. (p,)"""
         company = self.ear.company
-        weights = company.weights[self.state]
-        row = slice(weights.indptr[e], weights.indptr[e + 1])
-        who = weights.indices[row]
-        return who, weights.data[row] * self.left[company.kinds.of[who]] * self.ear.on_axis[self.state][who]
+        return company.brought(self.state, self.left[company.kinds.of] * self.ear.on_axis[self.state])
 
     def _acting_on(self, e: int) -> tuple[NDArray[np.intp], FloatArray]:
-        """Return the same, with members of its own network that stray."""
-        who, power = self.brought_to(e)
-        mine = self.ear.company.network_of.get(e)
+        """Interferers of one wanted emission, members of its own network that stray too, and their power. (k,)"""
+        company = self.ear.company
+        row = slice(*company.weights[self.state].indptr[e : e + 2])
+        who, power = company.pairs.disturber[row], self.brought[row]
+        mine = company.network_of.get(e)
         if mine is not None:
             who, power = np.append(who, mine.members), np.append(power, self.stray[mine.members])
         return who, power
