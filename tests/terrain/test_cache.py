@@ -95,9 +95,9 @@ def test_what_another_process_has_mapped_stays_however_long_ago_it_was_mapped(tm
         for path in tmp_path.rglob("*.npy"):
             os.utime(path, (0, 0))
         ArrayCache(tmp_path, limit_bytes=100).keep("b/0", np.zeros(5))
-        assert (tmp_path / "ground-1" / "a/0.npy").is_file()
-        assert not (tmp_path / "ground-1" / "a/1.npy").exists()
+        assert (tmp_path / "ground-2" / "a/0.npy").is_file()
+        assert not (tmp_path / "ground-2" / "a/1.npy").exists()
         assert holder.communicate("go on\n")[0] == "2000.0\n"
-    os.utime(tmp_path / "ground-1" / "a/0.npy", (0, 0))
+    os.utime(tmp_path / "ground-2" / "a/0.npy", (0, 0))
     ArrayCache(tmp_path, limit_bytes=100).keep("b/1", np.zeros(5))
-    assert not (tmp_path / "ground-1" / "a/0.npy").exists()  # its user has ended
+    assert not (tmp_path / "ground-2" / "a/0.npy").exists()  # its user has ended
