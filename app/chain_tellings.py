@@ -29,7 +29,7 @@ def told_cheapest(document: Mapping[str, Any]) -> str:
     lines = [f"{document['tried']} chains tried"]
     for row in document["front"]:
         price = f"{row['price']:g} {document['currency']}"
-        lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['name']}")
+        lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['title']}")
         lines.append(f"  {row['reason']}")
     if document["left_out"]:
         lines.append(f"left out for want of a price: {', '.join(document['left_out'])}")

@@ -39,6 +39,7 @@ from app.mapped import settled
 from app.margins import Turned, multiplex_chances, turn
 from app.request import AssessRequest
 from app.site import site_of
+from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
@@ -95,9 +96,9 @@ def cheapest_document(
     AppError, TerrainError
         The roof is not possible.
     """
-    parts = stored_parts(store)
+    parts = parts_for_sale(store)
     chains = list(sensible_chains(parts, wish))
-    assumptions = Assumptions(request.assumptions)
+    assumptions = Assumptions({**request.assumptions, **request.stated_values})
     request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
@@ -105,8 +106,13 @@ def cheapest_document(
     counted = [name for name in request.wanted or multiplexes if name in multiplexes]
     tried = [_tried(chain, air, request, multiplexes, counted, assumptions) for chain in chains] if air.fields else []
     front = pareto(tried)
+    known = store.multiplexes()
+    names = [known[one].name if one in known else one for one in multiplexes]
+    worth = assumptions.value("worth_per_multiplex")
     return {
         "tried": len(tried),
+        "multiplexes": len(multiplexes),
+        "worth_per_multiplex": worth,
         "left_out": sorted(part.name for part in parts if part.price is None),
         "currency": wish.currency,
         "front": [
@@ -115,11 +121,22 @@ def cheapest_document(
                 "price": one.price,
                 "expected_count": round(one.expected_count, 3),
                 "pointing_deg": one.turned.pointing_deg,
-                "reason": reason(front[i - 1] if i else None, one, air, multiplexes),
+                "price_per_extra": None if (each := price_per_extra(before, one)) is None else round(each, 2),
+                "pays": pays(before, one, worth),
+                "reason": reason(before, one, air, names),
             }
-            for i, one in enumerate(front)
+            for before, one in zip([None, *front], front, strict=False)
         ],
     }
+
+
+def parts_for_sale(store: Store) -> tuple[Part, ...]:
+    """Stored parts with their prices; where none is stored, the priced parts of the stored chains, each once."""
+    if sold := stored_parts(store):
+        return sold
+    chains = [stored_chain(store, str(one["id"])) for one in store.list_chains()]
+    known = {part.id: part for chain in reversed(chains) for part in chain.parts if part.price is not None}
+    return tuple(known.values())
 
 
 def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
@@ -155,7 +172,8 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
         set_behind = Receiver(id="set", name="Television set")
         words = [aerial.name, *(part.name for part in head), feeder.name]
         yield Chain(
-            name=f"{number}: {', '.join(words)}"[:110],
+            name=f"cheapest-{number}",
+            title=", ".join(words)[:110],
             parts=(aerial, *head, feeder, *supply, *splitters, *outlets, set_behind),
             currency=wish.currency,
             labour_price=wish.labour_price,
@@ -210,8 +228,20 @@ def pareto(tried: Sequence[Tried]) -> list[Tried]:
     return front
 
 
-def reason(before: Tried | None, after: Tried, air: Air, multiplexes: Sequence[str]) -> str:
-    """Say why the step from one chain of the front to the next pays."""
+def price_per_extra(before: Tried | None, after: Tried) -> float | None:
+    """What each multiplex costs that a chain of the front brings more than the one before; of the first, each."""
+    extra = after.expected_count - (before.expected_count if before else 0.0)
+    return (after.price - (before.price if before else 0.0)) / extra if extra > 0 else None
+
+
+def pays(before: Tried | None, after: Tried, worth_per_multiplex: float) -> bool:
+    """Whether what a chain brings more than the one before is worth what it costs more."""
+    each = price_per_extra(before, after)
+    return each is not None and each < worth_per_multiplex
+
+
+def reason(before: Tried | None, after: Tried, air: Air, names: Sequence[str]) -> str:
+    """Say what the step from one chain of the front to the next brings and why; `names` of the multiplexes."""
     if before is None:
         return f"The cheapest that can be built: about {after.expected_count:.1f} multiplexes."
     had = {part.id for part in before.chain.parts}
@@ -221,9 +251,9 @@ def reason(before: Tried | None, after: Tried, air: Air, multiplexes: Sequence[s
     swap = " and ".join(new) or "less"
     instead = f" for {' and '.join(gone)}" if gone else ""
     rise = after.chance - before.chance
-    risen = [m for m in range(len(multiplexes)) if rise[m] > MOVED]
-    limits = before.turned.held_back_by(air, multiplexes)
-    why = ", ".join(f"{multiplexes[m]} (held back by {limits[m]})" for m in risen) or "a little of each"
+    risen = [m for m in range(len(names)) if rise[m] > MOVED]
+    limits = before.turned.held_back_by(air, sorted(set(air.multiplex_of)))
+    why = ", ".join(f"{names[m]} (held back by {limits[m]})" for m in risen) or "a little of each"
     extra = after.expected_count - before.expected_count
-    each = (after.price - before.price) / extra
-    return f"{swap}{instead}: {extra:.1f} more, {each:.0f} {after.chain.currency} each: {why}."
+    each = f"{price_per_extra(before, after):.0f} {after.chain.currency} each"
+    return f"{swap}{instead}: {extra:.1f} more, {each}: {why}."
