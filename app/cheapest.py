@@ -1,8 +1,8 @@
 """The cheapest chain that does: what a list of parts with prices can make, price against multiplexes.
 
 Sensible chains only: each aerial alone or with each masthead amplifier, the amplifier with or without each filter
-ahead of it; the cheapest feeder long enough of each cable; the cheapest splitter with enough ports. Kept are those
-that no cheaper chain equals: the Pareto front.
+ahead of it; the cheapest feeder long enough of each cable; the cheapest splitter with enough ports; the outlets for
+sale, and where there are too few, outlets at no price. Kept are those that no cheaper chain equals: the Pareto front.
 """
 
 from __future__ import annotations
@@ -153,6 +153,7 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
             "no aerial is for sale: store parts with prices, `gainworth chains import FILE` with [[parts]]",
             field="parts",
         )
+    stocked = [part for part in sold if isinstance(part, Outlet)][: wish.outlets]
     heads: list[tuple[Part, ...]] = [()]
     heads += [(amplifier,) for amplifier in amplifiers]
     heads += [(one, amplifier) for one, amplifier in itertools.product(filters, amplifiers)]
@@ -166,9 +167,10 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
         if needs and not inserters:
             continue
         supply = (inserters[0],) if needs else ()
-        outlets = [
+        unpriced = [
             Outlet(id=f"outlet-{n}", name=f"Outlet {n}", price=0, loss_db=1.0) for n in range(1, wish.outlets + 1)
         ]
+        outlets = [*stocked, *unpriced[len(stocked) :]]
         set_behind = Receiver(id="set", name="Television set")
         words = [aerial.name, *(part.name for part in head), feeder.name]
         yield Chain(

@@ -110,7 +110,7 @@ def test_where_no_part_is_stored_those_of_the_stored_chains_are_for_sale(demo_wo
     sold = {part.id for part in parts_for_sale(demo_world.store)}
     assert {"short-yagi", "long-yagi", "loft-dipole", "masthead-amplifier", "roof-feeder"} <= sold
     got = cheapest_document(AssessRequest(NORTH), Wish(feeder_m=10), demo_world.store, demo_world.ground)
-    assert got["front"][0]["price"] == 9 + 8
+    assert got["front"][0]["price"] == 9 + 8 + 4  # aerial, feeder and outlet of the loft
 
 
 def test_front_leaves_out_what_a_cheaper_chain_equals(shop, demo_world):
