@@ -3,9 +3,11 @@
 import { createBoundFields } from './bound_fields.js';
 import { draftOf, hasBranches } from './chain_edits.js';
 import { button, make, part, refill } from './dom.js';
+import { BEGINNING } from './part_fields.js';
 import { createPartRows } from './part_rows.js';
+import { plain, sentence } from './sentence.js';
 import { chainsHere, titleOf, verdictOf } from './state.js';
-import { moneyText } from './units.js';
+import { countText, moneyText } from './units.js';
 
 const PAUSE_MS = 250; // after the last key, before the answer is asked for
 
@@ -18,6 +20,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
   const frame = part(element, '.frame-fields');
   const buttons = part(element, '.chain-buttons');
   const told = part(element, '.total');
+  const result = part(element, '.result');
   const problem = part(element, '.chain-problem');
   const branching = part(element, '.branching input');
   let chosen = '';
@@ -39,6 +42,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     },
   });
   const rows = createPartRows(part(element, '.parts'), { fields, change });
+  part(element, '.begin').addEventListener('click', () => choose({ edits: [...state.edits, structuredClone(BEGINNING)], opened: BEGINNING.name, idea: BEGINNING.name }));
   chooser.addEventListener('change', () => { flush(); show(chooser.value); });
   branching.addEventListener('change', () => { drawn = ''; update(state); });
 
@@ -66,7 +70,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     state = next;
     if (element.hidden) return;
     const all = chainsHere(state);
-    part(element, '.empty').hidden = all.length > 0;
+    for (const one of ['.empty', '.begin']) part(element, one).hidden = all.length > 0;
     part(element, '.body').hidden = all.length === 0;
     if (!all.length) return;
     const before = chosen;
@@ -74,7 +78,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     if (chosen !== before) branching.checked = false;
     chain = pending?.name === chosen ? pending : all.find((one) => one.name === chosen);
     const at = state.trouble?.at ?? null;
-    const marked = (one) => `${titleOf(state, one.name)}${state.edits.includes(one) ? ' (changed)' : ''}${at?.chain === one.name ? ' (to be mended)' : ''}`;
+    const marked = (one) => `${titleOf(state, one.name)}${isKept(one.name) ? (state.edits.includes(one) ? ' (changed)' : '') : ' (not kept yet)'}${at?.chain === one.name ? ' (to be mended)' : ''}`;
     refill(chooser, ...all.map((one) => make('option', { value: one.name, textContent: marked(one) })));
     chooser.value = chosen;
     controls();
@@ -90,12 +94,26 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     const mine = at?.chain === chosen ? { message: state.trouble?.message ?? '', at } : null;
     const said = fields.refresh(chain, mine);
     problem.textContent = mine && !said ? mine.message : '';
-    told.textContent = total(mine !== null);
+    told.textContent = total();
+    result.textContent = mine ? `${titleOf(state, chosen)} cannot be as it is now: mend it below. What is shown is the answer from before.` : effect();
+    result.classList.toggle('old', state.asking || mine !== null);
   }
 
-  /** @param {boolean} wrong */
-  function total(wrong) {
-    if (wrong) return 'What is shown above is the answer from before: mend this first.';
+  /** @param {string} name */
+  function isKept(name) {
+    return (state.chains ?? []).some((one) => one.name === name);
+  }
+
+  /** What the chain brings, beside its fields: the answer itself may be far up the page. */
+  function effect() {
+    const { answer } = state;
+    const verdict = answer?.verdicts.find((one) => one.candidate === chosen);
+    if (verdict) return plain(sentence(answer, verdict));
+    const entry = answer?.chains[chosen];
+    return entry ? `${titleOf(state, chosen)} is up now: ${countText(entry.expected_count)} of ${answer.multiplexes.length}.` : 'Place the roof to see what it brings there.';
+  }
+
+  function total() {
     const entry = state.answer?.chains[chosen];
     if (!entry) return '';
     const findings = [...(entry.findings ?? []), ...(entry.wind?.findings ?? [])];
@@ -105,7 +123,6 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
 
   function controls() {
     const changed = state.edits.some((one) => one.name === chosen);
-    const isKept = (state.chains ?? []).some((one) => one.name === chosen);
     const shown = verdictOf(state);
     const canBeIdea = chosen !== state.now && shown?.candidate !== chosen;
     const tried = async (action) => {
@@ -114,9 +131,9 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     refill(buttons,
       ...(canBeIdea ? [button('Show it as idea 1', () => { flush(); choose({ idea: chosen }); }, { 'data-key': 'idea' })] : []),
       button('Start another from this', copy, { 'data-key': 'copy' }),
-      ...(changed ? [button('Keep the changes', () => { flush(); void tried(() => keep(chain)); }, { 'data-key': 'keep' })] : []),
-      ...(changed ? [button(isKept ? 'Back to the kept one' : 'Drop it', () => { clearTimeout(timer); pending = null; drop(chosen); }, { 'data-key': 'drop' })] : []),
-      ...(isKept ? [button('Remove from the kept', () => tried(() => remove(chosen)), { 'data-key': 'remove' })] : []));
+      ...(changed ? [button(isKept(chosen) ? 'Keep the changes' : 'Keep this chain', () => { flush(); void tried(() => keep(chain)); }, { 'data-key': 'keep' })] : []),
+      ...(changed ? [button(isKept(chosen) ? 'Back to the kept one' : 'Drop it', () => { clearTimeout(timer); pending = null; drop(chosen); }, { 'data-key': 'drop' })] : []),
+      ...(isKept(chosen) ? [button('Remove from the kept', () => tried(() => remove(chosen)), { 'data-key': 'remove' })] : []));
   }
 
   /** Another like this one; it is shown as idea 1, so that what is changed in it is seen. */

@@ -28,6 +28,17 @@ export const NEW_PARTS = {
 /** What can be added, the usual first; a further aerial is joined by a combiner. */
 export const CAN_BE_ADDED = ['outlet', 'feeder', 'splitter', 'masthead-amplifier', 'aerial', ...Object.keys(NEW_PARTS).filter((kind) => !['outlet', 'feeder', 'splitter', 'masthead-amplifier'].includes(kind))];
 
+/** A chain to begin with where none is kept: every figure and price is an example to be replaced. */
+export const BEGINNING = {
+  name: 'own', title: 'My chain', currency: 'EUR', labour_price: 0, visit_price: 0,
+  parts: [
+    { kind: 'aerial', id: 'own-aerial', name: 'My aerial', gain_dbd: [[470, 6], [694, 10]], beamwidth_deg: 50, front_to_back_db: 18, price: 22 },
+    { kind: 'feeder', id: 'own-feeder', name: 'Feeder', ...NEW_PARTS.feeder },
+    { kind: 'outlet', id: 'own-outlet', name: 'Outlet', ...NEW_PARTS.outlet },
+    { kind: 'receiver', id: 'own-set', name: 'Set', price: 0 },
+  ],
+};
+
 const amplifier = [
   { key: 'gain_db', label: 'Gain', unit: 'dB' },
   { key: 'noise_figure_db', label: 'Noise figure', unit: 'dB' },
