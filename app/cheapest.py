@@ -45,6 +45,7 @@ from terrain.mosaic import Ground
 
 MOST_CHAINS = 300  # tried; more parts than that are asked to be sorted out first
 LEAST_STEP = 0.05  # expected multiplexes: a dearer chain must bring more than this
+MEND = "keep a chain that has one with its price, or `gainworth chains import FILE` with [[parts]]"
 MOVED = 0.1  # a chance that rises by more is named
 
 
@@ -149,10 +150,7 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
     feeders = _feeders(sold, wish)
     splitters = _splitter(sold, wish)
     if not aerials:
-        raise ChainError(
-            "no aerial is for sale: store parts with prices, `gainworth chains import FILE` with [[parts]]",
-            field="parts",
-        )
+        raise ChainError(f"no aerial is for sale: {MEND}", field="parts")
     stocked = [part for part in sold if isinstance(part, Outlet)][: wish.outlets]
     heads: list[tuple[Part, ...]] = [()]
     heads += [(amplifier,) for amplifier in amplifiers]
@@ -191,9 +189,7 @@ def _feeders(sold: Sequence[Part], wish: Wish) -> list[Feeder]:
     """Return the cheapest feeder of each cable that is long enough."""
     long_enough = [part for part in sold if isinstance(part, Feeder) and part.length_m >= wish.feeder_m]
     if not long_enough:
-        raise ChainError(
-            f"no feeder of {wish.feeder_m:g} m or more is for sale: store one with its price", field="parts"
-        )
+        raise ChainError(f"no feeder of {wish.feeder_m:g} m or more is for sale: {MEND}", field="parts")
     cables = dict.fromkeys(part.cable for part in long_enough)
     return [min((part for part in long_enough if part.cable == cable), key=_price) for cable in cables]
 
@@ -203,7 +199,7 @@ def _splitter(sold: Sequence[Part], wish: Wish) -> tuple[Splitter, ...]:
         return ()
     fit = [part for part in sold if isinstance(part, Splitter) and part.ports >= wish.outlets]
     if not fit:
-        raise ChainError(f"no splitter with {wish.outlets} ports or more is for sale: store one", field="parts")
+        raise ChainError(f"no splitter with {wish.outlets} ports or more is for sale: {MEND}", field="parts")
     return (min(fit, key=lambda part: (part.ports, _price(part))),)
 
 

@@ -108,6 +108,8 @@ class Chain:
             within(self, "pointing_deg", self.pointing_deg, 0, 360, "degrees from true north")
         if self.polarisation is not None:
             one_of(self, "polarisation", self.polarisation, AERIAL_POLARISATIONS)
+            if self.parts and isinstance(self.parts[0], Aerial):
+                self.parts[0].check_mounting(self.polarisation)
         object.__setattr__(self, "tree", tree_of(self, self.parts))
         if self.deciding_outlet:
             self._outlet(self.deciding_outlet)

@@ -6,7 +6,7 @@ import { parseNumber } from './units.js';
 
 /**
  * @typedef {{part: number|null, key: string}} Spot  of a part, or of the chain itself
- * @typedef {{control: any, shown: string, read: (chain: any) => string, spot: Spot, label: string, slip: string}} Bound
+ * @typedef {{control: any, was: string, read: (chain: any) => string, spot: Spot, label: string, slip: string}} Bound  `was`: its value in the chain
  */
 
 /** Values of one control as text. @param {any} value */
@@ -32,8 +32,8 @@ export function createBoundFields({ now, later }) {
 
   /** @param {string} label @param {any} control @param {Spot} spot @param {(chain: any) => string} read @param {any} chain @param {string} [hint] */
   function bind(label, control, spot, read, chain, hint) {
-    const one = { control, shown: read(chain), read, spot, label, slip: '' };
-    control.value = one.shown;
+    const one = { control, was: read(chain), read, spot, label, slip: '' };
+    control.value = one.was;
     control.dataset.key = `${spot.part ?? 'chain'}:${spot.key}`;
     bound.push(one);
     return { one, element: field(label, control, hint) };
@@ -42,7 +42,7 @@ export function createBoundFields({ now, later }) {
   /** @param {Bound} one @param {string} text @param {string} slip */
   function typed(one, text, slip) {
     one.slip = slip;
-    one.shown = text;
+    if (!slip) one.was = text;
     mark(one.spot.part, null);
   }
 
@@ -102,16 +102,17 @@ export function createBoundFields({ now, later }) {
     },
 
     /**
-     * Shows the values of a chain, and what is wrong where. What is being typed is left alone.
+     * Shows the values of a chain where they changed, and what is wrong where. What is being typed is left alone.
      * @param {any} chain @param {{message: string, at: {part: number|null, key: string|null}}|null} trouble of this chain
      * @returns {boolean} whether the trouble was said beside what it is about
      */
     refresh(chain, trouble) {
       for (const one of bound) {
         const text = one.read(chain);
-        if (text === one.shown || one.control === document.activeElement) continue;
+        if (text === one.was) continue; // what was typed stands, also where it is no value
+        one.was = text;
+        if (one.control === document.activeElement) continue;
         one.control.value = text;
-        one.shown = text;
         one.slip = '';
       }
       for (const part of notes.keys()) mark(part, trouble);

@@ -55,7 +55,7 @@ const supply = [{ key: 'draws_ma', label: 'Draws', unit: 'mA; empty: own supply'
 /** @type {Record<string, PartField[]>} */
 const FIELDS = {
   aerial: [
-    { key: 'gain_dbd', label: 'Gain', unit: 'MHz: dBd', table: '470: 6; 694: 10' },
+    { key: 'gain_dbd', label: 'Gain', unit: 'MHz: dBd, that is dBi less 2.15', table: '470: 6; 694: 10' },
     { key: 'beamwidth_deg', label: 'Beamwidth', unit: '°' },
     { key: 'front_to_back_db', label: 'Front to back', unit: 'dB' },
     { key: 'place', label: 'Where', choices: [['roof', 'on the roof'], ['loft', 'in the loft'], ['room', 'in a room']] },

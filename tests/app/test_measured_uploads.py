@@ -129,6 +129,22 @@ def test_a_measured_pattern_works_in_a_chain(client):
     assert counts[0] != counts[1]
 
 
+def test_an_aerial_is_mounted_as_its_pattern_was_measured(client):
+    """One cut with the rods upright: no other way is tried, and another is refused with its chain and part."""
+    rows = "".join(f"{a},{10 * (1 - math.cos(math.radians(a))):.3f},vertical\n" for a in range(0, 360, 5))
+    found = post(client, "pattern", file=file("p.csv", f"angle_deg,loss_db,polarisation\n{rows}")).json()
+    chain = next(one for one in client.get("/api/chains").json()["chains"] if one["name"] == "high-gain")
+    chain = {key: chain[key] for key in chain if key not in ("id", "created", "updated")}
+    chain["parts"][0] |= found["aerial"]
+    asked = {"roof": {"latitude_deg": 44.3, "longitude_deg": -37.4507}, "now": "nothing"}
+    answer = client.post("/api/assess", json=asked | {"chains": [chain]}).json()
+    assert answer["chains"]["high-gain"]["pointings"][0]["polarisation"] == "vertical"
+    refusal = client.post("/api/assess", json=asked | {"chains": [chain | {"polarisation": "horizontal"}]})
+    refused(
+        refusal, "measured with the rods vertical only, and they are to stand horizontal", "chains[0].parts[0].pattern"
+    )
+
+
 @pytest.mark.parametrize(
     ("name", "text", "words"),
     [

@@ -118,6 +118,11 @@ def test_what_is_no_number_is_said_at_once_and_not_asked(page):
     expect(part(page, "Aerial").locator(".problem")).to_contain_text("write pairs by rising frequency")
     page.wait_for_timeout(400)
     assert questions == []
+    with asked(page):
+        part(page, "Splitter").get_by_label("Price").fill("6")
+    still(page)
+    expect(part(page, "Feeder").get_by_label("Length")).to_have_value("12 m or so")  # nothing typed is lost
+    expect(part(page, "Feeder").locator(".problem")).to_contain_text("is not a number")
 
 
 def test_overtaken_questions_are_cancelled_while_editing(page):
