@@ -28,7 +28,7 @@ export function createBill(element) {
 function inShort(state, verdict) {
   const { currency } = state.answer.chains[verdict.candidate];
   const { bought, kept } = sorted(verdict.bill);
-  const price = verdict.price_difference === null ? 'A price that is not known' : moneyText(verdict.price_difference, currency);
+  const price = verdict.price_difference === null ? 'Price not known' : moneyText(verdict.price_difference, currency);
   const stays = kept.length ? `, ${kept.length} stay` : '';
   return `${price}, line by line: ${bought.length} to buy${stays}`;
 }
@@ -49,6 +49,7 @@ function sheet(state, verdict) {
       make('thead', {}, make('tr', {}, make('th', { scope: 'col', textContent: 'To be paid' }), make('th', { scope: 'col', className: 'number', textContent: 'Price' }))),
       make('tbody', {}, ...rows),
       make('tfoot', {}, make('tr', {}, make('th', { scope: 'row', textContent: 'Together' }), make('td', { className: 'number', textContent: money(verdict.price_difference) })))),
+    ...(verdict.price_difference === null ? [make('p', { textContent: 'Fill in every price under Chains to have the sum, and a verdict.' })] : []),
     ...list('Stays up, not paid again', kept), ...list('Comes down', down));
 }
 

@@ -2,7 +2,7 @@
 
 import { make, part } from './dom.js';
 import { chainsHere, verdictOf } from './state.js';
-import { numberText, parseNumber } from './units.js';
+import { asSentence, numberText, parseNumber } from './units.js';
 
 /**
  * @param {HTMLElement} element
@@ -40,7 +40,7 @@ export function createBlock(element, { block }) {
     const standard = made.standard.toUpperCase().replace('EN-', 'EN ');
     found.replaceChildren(
       make('p', { textContent: `It stands above as idea 1, to be changed and kept. Levels at its outlets: ${numberText(low, 0)} to ${numberText(high, 0)} dB(µV) on channel ${made.channels.join(', ')}.` }),
-      make('ul', {}, ...(made.findings.length ? made.findings : [`Every channel lies inside the window of ${standard} at every outlet.`]).map((text) => make('li', { textContent: text }))));
+      make('ul', {}, ...(made.findings.length ? made.findings : [`Every channel lies inside the window of ${standard} at every outlet.`]).map((text) => make('li', { textContent: asSentence(text) }))));
   }
 
   /** @param {import('./state.js').State} state */

@@ -7,7 +7,7 @@ import { BEGINNING } from './part_fields.js';
 import { createPartRows } from './part_rows.js';
 import { plain, sentence } from './sentence.js';
 import { chainsHere, titleOf, verdictOf } from './state.js';
-import { countText, moneyText } from './units.js';
+import { asSentence, countText, moneyText } from './units.js';
 
 const PAUSE_MS = 250; // after the last key, before the answer is asked for
 
@@ -118,7 +118,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     if (!entry) return '';
     const findings = [...(entry.findings ?? []), ...(entry.wind?.findings ?? [])];
     const price = entry.price === null ? 'Its price is not known: fill in every price to have one.' : `${moneyText(entry.price, chain.currency)} bought whole, with labour and visit.`;
-    return [price, ...findings.map((one) => (one.endsWith('.') ? one : `${one}.`))].join(' ');
+    return [price, ...findings.map(asSentence)].join(' ');
   }
 
   function controls() {

@@ -3,8 +3,8 @@
 import { draftOf } from './chain_edits.js';
 import { button, make, part } from './dom.js';
 import { sent } from './sent_file.js';
-import { chainsHere, titleOf } from './state.js';
-import { numberText, parseNumber } from './units.js';
+import { chainsHere, titleOf, verdictOf } from './state.js';
+import { asSentence, numberText, parseNumber } from './units.js';
 
 /**
  * @param {HTMLElement} element
@@ -13,6 +13,7 @@ import { numberText, parseNumber } from './units.js';
 export function createMeasured(element, { match, pattern, edit }) {
   const chooser = part(element, '.into');
   const forms = { match: part(element, 'form.match'), pattern: part(element, 'form.pattern') };
+  let picked = ''; // else the chain that is open
   /** @type {import('./state.js').State} */
   let state;
 
@@ -59,7 +60,7 @@ export function createMeasured(element, { match, pattern, edit }) {
       make('p', { textContent: title }),
       ...(channels.length ? [make('div', { className: 'scroll', tabIndex: 0, role: 'group', 'aria-label': 'Match by channel' }, matchTable(channels))] : [make('p', { textContent: 'Place the roof first: its channels are listed here then.' })]),
       make('p', { className: 'caution', textContent: got.caution }),
-      ...into('Take the match into', { reflection: got.reflection }),
+      ...(channels.length && channels.every((one) => one.refused) ? [] : into('Take the match into', { reflection: got.reflection })),
     ];
   }
 
@@ -85,16 +86,22 @@ export function createMeasured(element, { match, pattern, edit }) {
     state = next;
     const all = chainsHere(state).map((one) => [one.name, titleOf(state, one.name)]);
     const now = JSON.stringify(all);
-    if (chooser.dataset.pairs === now) return;
-    const before = chooser.value;
-    chooser.dataset.pairs = now;
-    chooser.replaceChildren(...all.map(([value, textContent]) => make('option', { value, textContent })));
-    const shown = state.opened ?? state.idea;
-    chooser.value = all.some(([name]) => name === before) ? before : all.some(([name]) => name === shown) ? shown : all[0]?.[0];
+    if (chooser.dataset.pairs !== now) {
+      chooser.dataset.pairs = now;
+      chooser.replaceChildren(...all.map(([value, textContent]) => make('option', { value, textContent })));
+    }
+    const wanted = [picked, state.opened, verdictOf(state)?.candidate, all[0]?.[0]].find((name) => all.some(([one]) => one === name));
+    if (wanted !== undefined && chooser.value !== wanted) {
+      chooser.value = wanted;
+      forget();
+    }
   }
-  chooser.addEventListener('change', () => {
+
+  /** What was read is offered for the aerials of one chain. */
+  function forget() {
     for (const one of ['.match-found', '.pattern-found']) part(element, one).replaceChildren();
-  });
+  }
+  chooser.addEventListener('change', () => { picked = chooser.value; forget(); });
   pads();
   return { update };
 }
@@ -106,7 +113,7 @@ function matchTable(channels) {
   return make('table', {},
     make('thead', {}, make('tr', {}, ...heads.map((textContent) => make('th', { scope: 'col', textContent })))),
     make('tbody', {}, ...channels.map((one) => make('tr', {}, make('th', { scope: 'row', textContent: one.channel }), ...(one.refused
-      ? [make('td', { colSpan: 4, textContent: one.refused })]
+      ? [make('td', { colSpan: 4, textContent: asSentence(one.refused.replace(/^.*?channel \S+: /, '')) })]
       : [figure(one.vswr, 2), figure(one.return_loss_db, 1), `${figure(one.return_loss_low_db, 1)} to ${figure(one.return_loss_high_db, 1)}`, figure(one.mismatch_loss_db, 2)].map((textContent) => make('td', { textContent })))))));
 }
 
