@@ -82,15 +82,15 @@ async function assess() {
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
   remember(true);
-  const asked = question(store.get(), up.height);
+  const { chains } = question(store.get(), up.height);
   try {
-    const answer = await askAssess({ ...asked, ledgers: [] });
+    const answer = await askAssess({ ...question(store.get(), up.height), ledgers: [] });
     if (answer) store.set({ answer, asking: false });
   } catch (error) {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
     const help = error.code === 'coverage' ? ' Under “Ground” below the page can fetch them.' : '';
-    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null, at: placeOfTrouble(error.field, asked.chains) } });
+    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null, at: placeOfTrouble(error.field, chains) } });
   }
 }
 

@@ -53,9 +53,9 @@ const LEAST_CHANGE = 0.05; // a smaller difference of chance is the same to a pe
 export function initialState() {
   return {
     where: '', height: '10', roof: null, now: '', idea: null, second: null, cell: null,
-    around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
+    undone: 0, opened: null, around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
     sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
-    said: '', moved: [], past: 0, undone: 0, opened: null,
+    said: '', moved: [], past: 0,
     chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null,
   };
 }
