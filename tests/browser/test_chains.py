@@ -20,6 +20,7 @@ RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"
 
 def show(page: Page, **more: str) -> None:
     pairs = {"v": "2", "at": f"{NORTH.latitude_deg},{NORTH.longitude_deg}", "height": "10", "now": "roof-yagi"}
+    page.goto("about:blank")  # a link that differs behind # only would not load anew
     page.goto("/#" + "&".join(f"{key}={value}" for key, value in (pairs | {"sheet": "chains"} | more).items()))
     page.wait_for_selector("html[data-ready]")
     page.wait_for_selector(".changes:not([hidden])")
@@ -81,6 +82,17 @@ def test_an_own_chain_is_compared_kept_and_removed(page):
     with page.expect_response("**/api/chains"):
         page.get_by_role("button", name="Remove from the kept").click()
     expect(page.get_by_label("Idea 1").locator("option", has_text="My own")).to_have_count(0)
+
+
+def test_where_no_chain_is_kept_one_is_begun(page):
+    page.route("**/api/chains", lambda route: route.fulfill(json={"chains": []}))
+    page.goto("about:blank")
+    page.goto(f"/#v=2&at={NORTH.latitude_deg},{NORTH.longitude_deg}&height=10&now=nothing&sheet=chains")
+    page.wait_for_selector("html[data-ready]")
+    with asked(page):
+        page.get_by_role("button", name="Begin a chain").click()
+    expect(page.locator(".sentence")).to_contain_text("My chain brings")
+    expect(page.locator(".chains .kind")).to_have_text(["Aerial", "Feeder", "Outlet", "Set"])
 
 
 def test_a_slip_names_chain_and_part_beside_its_field_and_loses_nothing(page, watched):
@@ -369,6 +381,7 @@ def test_everything_of_a_chain_is_without_fault_and_fits(page, watched):
         if width != 820:
             for inside in ("#chains", "#bill"):
                 assert violations(page, inside) == [], (inside, width, scheme)
+    page.emulate_media(color_scheme="light")
 
 
 def violations(page: Page, inside: str) -> list[tuple[str, str]]:
