@@ -108,7 +108,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
   function effect() {
     const { answer } = state;
     const verdict = answer?.verdicts.find((one) => one.candidate === chosen);
-    if (verdict) return plain(sentence(answer, verdict));
+    if (verdict) return plain(sentence(answer, verdict, true));
     const entry = answer?.chains[chosen];
     return entry ? `${titleOf(state, chosen)} is up now: ${countText(entry.expected_count)} of ${answer.multiplexes.length}.` : 'Place the roof to see what it brings there.';
   }
