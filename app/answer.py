@@ -11,6 +11,7 @@ import numpy as np
 from app.air import Air
 from app.answer_cells import cells_of, ledger_of_readings, probability
 from app.assumptions import Assumptions
+from app.bill import bill_document
 from app.cautions import CAUTIONS, SHOWN_NAMES, cautions_at
 from app.chain.parts import Chain
 from app.chance import GRADES, grade, rows_of
@@ -207,6 +208,7 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "expected_extra": round(verdict.expected_extra, 3),
         "expected_extra_error": round(verdict.expected_extra_error, 4),
         "price_difference": _rounded(verdict.price_difference),
+        "bill": bill_document(verdict.bill),
         "price_per_extra": _rounded(verdict.price_per_extra),
         "break_even_price": round(verdict.break_even_price, 2),
         "gained": list(verdict.gained),

@@ -64,7 +64,7 @@ def cautions_at(
             "Take one import out with `gainworth transmitters remove SOURCE`."
         )
     cautions += air.company.cautions
-    double = [chain.name for chain in chains if len(chain.aerials) > 1]
+    double = [chain.title or chain.name for chain in chains if len(chain.aerials) > 1]
     if double and air.company.pairs.disturber.size:
         cautions.append(
             f"Interference through {', '.join(double)} is reckoned with the pattern and pointing of the first aerial, "

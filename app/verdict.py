@@ -20,6 +20,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from app.bill import Line, bill, total
 from app.chain.parts import Chain
 from app.chance import DRAWS
 from app.reading_value import MeasureNext, Readable, most_valuable
@@ -69,7 +70,8 @@ class Verdict:
     chance_of_gain: float
     expected_extra: float
     expected_extra_error: float  # standard error of the samples
-    price_difference: float | None
+    price_difference: float | None  # sum of the bill
+    bill: tuple[Line, ...]
     price_per_extra: float | None
     break_even_price: float
     gained: tuple[str, ...]
@@ -94,20 +96,6 @@ def wanted_multiplexes(multiplexes: Sequence[str], outcomes: Sequence[Outcome]) 
     return list(_named(multiplexes, counts))
 
 
-def price_difference(candidate: Chain | None, baseline: Chain | None, baseline_is_up: bool) -> float | None:
-    """What changing to the candidate costs; parts, labour and visit. What is already up costs nothing.
-
-    None where a price is missing. A candidate that is the baseline costs nothing.
-    """
-    if candidate is None or candidate == baseline:
-        return 0.0
-    if baseline_is_up:
-        kept = {part.id for part in baseline.parts} if baseline else set()
-        return candidate.price_without(kept)
-    base = 0.0 if baseline is None else baseline.price
-    return None if candidate.price is None or base is None else candidate.price - base
-
-
 def compare(
     candidate: Outcome,
     baseline: Outcome,
@@ -130,7 +118,8 @@ def compare(
     # The expectation is that of the chances; the joint samples are moved by what they miss of it.
     expected_extra = float((candidate.chance[counted] - baseline.chance[counted]).sum())
     missed = expected_extra - float(extra.mean())
-    price = price_difference(candidate.chain, baseline.chain, baseline_is_up)
+    lines = bill(candidate.chain, baseline.chain, baseline_is_up)
+    price = total(lines)
     worth = None if price is None else worth_per_multiplex * expected_extra - price
     measure = (
         None
@@ -152,6 +141,7 @@ def compare(
         expected_extra=expected_extra,
         expected_extra_error=float(extra.std() / np.sqrt(DRAWS)),
         price_difference=price,
+        bill=lines,
         price_per_extra=None if price is None or expected_extra <= 0 else price / expected_extra,
         break_even_price=worth_per_multiplex * expected_extra,
         gained=_named(multiplexes, (after - before > GAIN_STEP) & (after >= HAVE)),
@@ -205,7 +195,7 @@ def _cheapest_equal(
     baseline_is_up: bool,
 ) -> str | None:
     def price(outcome: Outcome) -> float | None:
-        return price_difference(outcome.chain, baseline.chain, baseline_is_up)
+        return total(bill(outcome.chain, baseline.chain, baseline_is_up))
 
     own = price(candidate)
     as_good: Mapping[str, float] = {

@@ -3,9 +3,13 @@
 import { createActions } from './actions.js';
 import { createApi } from './api.js';
 import { createAssumptions } from './assumptions.js';
+import { createBill } from './bill.js';
+import { createBlock } from './block.js';
 import { createCautions } from './cautions.js';
+import { placeOfTrouble } from './chain_edits.js';
 import { createChains } from './chains.js';
 import { createChanges } from './changes.js';
+import { createCheapest } from './cheapest.js';
 import { createDecision } from './decision.js';
 import { createDownloads } from './downloads.js';
 import { createFollow } from './follow.js';
@@ -15,6 +19,7 @@ import { createHistory } from './history.js';
 import { latest } from './latest.js';
 import { createLedger } from './ledger.js';
 import { createMap } from './map.js';
+import { createMeasured } from './measured.js';
 import { createPath } from './path.js';
 import { createReadings } from './readings.js';
 import { createRoofline } from './roofline.js';
@@ -24,6 +29,7 @@ import { createSeen } from './seen.js';
 import { createSheets } from './sheets.js';
 import { createSkyline } from './skyline.js';
 import { chainNow, chainsHere, createStore, decode, encode, initialState, NOTHING, question } from './state.js';
+import { createSteps } from './steps.js';
 import { createTransmitters } from './transmitters.js';
 import { heightIn, parseHeight, parsePlace, placeText, plainText } from './units.js';
 import { createWhere } from './where.js';
@@ -42,6 +48,7 @@ const panels = [
   createDecision(byId('decision'), { place, back }),
   createChanges(byId('changes'), { choose }),
   createRoofline(byId('roofline'), { type }),
+  createBill(byId('bill')),
   createCautions(byId('cautions')),
   createSheets(byId('sheets'), { open: (sheet) => type({ sheet }) }),
   createSkyline(byId('skyline'), { aim }),
@@ -49,12 +56,16 @@ const panels = [
   createLedger(byId('ledger')),
   createElsewhere(byId('elsewhere'), { pin: actions.pin, unpin: actions.unpin, go, choose }),
   createReadings(byId('readings'), { read: actions.read, forget: told(actions.forget), confirm: told(actions.confirm), logbook: actions.logbook }),
-  createChains(byId('chains'), { edit, drop, keep: actions.keepChain, remove: actions.removeChain, block: actions.block }),
+  createChains(byId('chains'), { edit, drop, keep: actions.keepChain, remove: actions.removeChain, choose, show: (name) => store.set({ opened: name }) }),
+  createCheapest(byId('cheapest'), { cheapest: actions.cheapest, take: actions.take }),
+  createBlock(byId('block'), { block: actions.block }),
+  createMeasured(byId('measured'), { match: actions.match, pattern: actions.pattern, edit }),
   createRoofs(byId('roofs'), { keep: actions.keepRoof, open, compare: actions.compare, forget: told(actions.forgetRoof), link, file }),
   createTransmitters(byId('transmitters'), { load: actions.air, turn: actions.switchEmission }),
   createAssumptions(byId('assumptions'), { choose, units }),
   createDownloads(byId('downloads'), api, { again: overNewGround }),
   createMap(byId('map'), { place }),
+  createSteps(byId('again'), { back, forward }),
 ];
 createHere(byId('where'), { place });
 
@@ -71,6 +82,7 @@ async function assess() {
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
   remember(true);
+  const { chains } = question(store.get(), up.height);
   try {
     const answer = await askAssess({ ...question(store.get(), up.height), ledgers: [] });
     if (answer) store.set({ answer, asked: { where, height }, asking: false });
@@ -78,7 +90,7 @@ async function assess() {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
     const help = error.code === 'coverage' ? ' Under “Ground” below the page can fetch them.' : '';
-    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null } });
+    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null, at: placeOfTrouble(error.field, chains) } });
   }
 }
 
@@ -197,10 +209,19 @@ function initialStateOfARoof() {
 
 /** Takes the last step back. */
 function back() {
-  const before = past.back();
-  if (before === null) return;
-  store.set({ ...decode(before), past: past.steps });
-  keep(before);
+  stand(past.back());
+}
+
+/** Takes the step again that was taken back last. */
+function forward() {
+  stand(past.forward());
+}
+
+/** @param {string|null} kept as things are to stand */
+function stand(kept) {
+  if (kept === null) return;
+  store.set({ ...decode(kept), past: past.steps, undone: past.undone });
+  keep(kept);
   if (store.get().where) void assess();
 }
 
@@ -240,7 +261,7 @@ function remember(step) {
   const kept = encode(store.get());
   if (step) {
     past.push(kept);
-    if (store.get().past !== past.steps) store.set({ past: past.steps });
+    if (store.get().past !== past.steps || store.get().undone !== past.undone) store.set({ past: past.steps, undone: past.undone });
   }
   keep(kept);
 }

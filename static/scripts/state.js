@@ -31,6 +31,8 @@
  * @property {any[]} [values]      every value that was chosen, before there is an answer
  * @property {string[]} [cables]   classes of cable
  * @property {number} past         how many steps can be taken back
+ * @property {number} undone       how many of them can be taken again
+ * @property {string|null} opened  name of the chain that is open to be edited; null: the shown idea
  * @property {Cell|null} cell      the cell whose reasons are shown; null: the one that changes most
  * @property {any[]|null} chains   kept chains; null: not yet known
  * @property {any|null} health     what the server knows; null: not yet known
@@ -38,7 +40,7 @@
  * @property {any|null} path       the path of the shown cell
  * @property {{question: string, swapped: Place}|null} doubt  whether latitude and longitude are swapped
  * @property {boolean} asking      a question is on its way
- * @property {{message: string, field: string|null}|null} trouble
+ * @property {{message: string, field: string|null, at?: ReturnType<typeof import('./chain_edits.js').placeOfTrouble>}|null} trouble
  * @property {{where: string, height: string}|null} asked   as typed when the last answer came
  * @property {string[]} notes      what of a link was left out, until something is chosen
  */
@@ -54,7 +56,7 @@ export const LEAST_CHANGE = 0.05; // of a chance or a number of multiplexes: les
 export function initialState() {
   return {
     where: '', height: '10', roof: null, now: '', idea: null, second: null, cell: null,
-    around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
+    undone: 0, opened: null, around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
     sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
     said: '', moved: [], past: 0,
     chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null, asked: null, notes: [],

@@ -214,3 +214,9 @@ export function parseNumber(text, decimal = DECIMAL) {
 export function compassBearing(bearing, declination) {
   return bearing - (declination?.declination_deg ?? 0);
 }
+
+/** @param {string} text @returns {string} with a capital and a full stop */
+export function asSentence(text) {
+  const whole = text.charAt(0).toUpperCase() + text.slice(1);
+  return /[.!?]$/.test(whole) ? whole : `${whole}.`;
+}

@@ -139,40 +139,6 @@ def test_a_scan_list_is_pasted_and_what_was_not_recognised_is_said(page):
         still(page)
 
 
-def test_a_chain_is_edited_in_place_and_the_result_follows(page):
-    show(page, "chains")
-    page.locator(".chains .which").select_option("high-gain-masthead")
-    told = page.locator(".sentence").inner_text()
-    with page.expect_response("**/api/assess"):
-        page.locator(".chains .a-part", has_text="Masthead").get_by_label("Price").fill("300")
-    expect(page.locator(".sentence")).not_to_have_text(told)
-    part = page.locator(".chains .a-part", has_text="Masthead")
-    expect(part.get_by_label("Price")).to_have_value("300")
-    page.get_by_role("button", name="Back to the kept one").click()
-    expect(page.locator(".sentence")).to_have_text(told)
-    with page.expect_response("**/api/assess"):
-        page.get_by_role("button", name="Start another from this").click()
-    page.get_by_label("Called").fill("My own")
-    still(page)
-    with page.expect_response("**/api/chains"):
-        page.get_by_role("button", name="Keep the changes").click()
-    expect(page.get_by_label("Idea 2").locator("option", has_text="My own")).to_have_count(1)
-    with page.expect_response("**/api/chains"):
-        page.get_by_role("button", name="Remove from the kept").click()
-    expect(page.get_by_label("Idea 2").locator("option", has_text="My own")).to_have_count(0)
-
-
-def test_a_slip_in_a_chain_is_said_and_loses_nothing(page, watched):
-    watched.expected = "status of 422"
-    show(page, "chains")
-    told = page.locator(".sentence").inner_text()
-    with page.expect_response("**/api/assess"):
-        page.locator(".chains .a-part", has_text="Feeder").get_by_label("Length").fill("99999")
-    expect(page.locator(".trouble")).to_contain_text("length_m")
-    assert page.locator(".sentence").inner_text() == told
-    expect(page.locator(".chains .a-part", has_text="Feeder").get_by_label("Length")).to_have_value("99999")
-
-
 def test_transmitters_are_searched_filtered_and_switched_off(page):
     show(page, "transmitters")
     rows = page.locator(".transmitters tbody tr")
@@ -301,16 +267,6 @@ def test_chances_stand_against_height(page):
     expect(page.locator(".elsewhere .rise-line")).to_have_count(2)
     expect(page.locator(".by-height tbody tr")).to_have_count(11)
     assert page.locator(".by-height tbody th").all_inner_texts()[-1] == "25\u00a0m"
-
-
-def test_a_block_of_flats_comes_from_four_answers(page):
-    show(page, "chains")
-    page.get_by_label("Aerial", exact=True).select_option("long-yagi")
-    page.get_by_label("Outlets", exact=True).fill("6")
-    with page.expect_response("**/api/block"):
-        page.get_by_role("button", name="Propose a chain").click()
-    expect(page.locator(".sentence")).to_contain_text("Block of 6, star")
-    assert page.locator(".chains .an-outlet").count() == 6
 
 
 def test_sheets_are_opened_by_arrow_keys(page):
