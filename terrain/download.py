@@ -45,6 +45,11 @@ class Tile:
         """Where it grows."""
         return folder / _INCOMING / self.source.id / f"{self.source.file_name(self.corner)}.part"
 
+    def lock(self, folder: Path) -> Path:
+        """What a process holds while it fetches it."""
+        part = self.part(folder)
+        return part.with_name(f"{part.name}.lock")
+
     @property
     def has_land(self) -> bool:
         """Whether the land mask has any land in it, or within 2 km of it."""
@@ -149,6 +154,8 @@ def download(
     _check_room(plan)
     for tile in plan.there:
         forget(tile.part(plan.folder))  # left by an end just after the move
+        with contextlib.suppress(OSError):
+            tile.lock(plan.folder).unlink()
 
     def one(tile: Tile) -> DownloadError | None:
         def more(received: int) -> None:
@@ -235,7 +242,7 @@ def _bring_from(
 ) -> int:
     """Fetch, check and move one tile; returns its length in bytes."""
     part, target = tile.part(folder), tile.path(folder)
-    with alone(part.with_name(f"{part.name}.lock"), stop):
+    with alone(tile.lock(folder), stop):
         if stop.is_set():
             raise Stopped
         if target.is_file():  # another process was faster

@@ -32,6 +32,11 @@ def test_a_roof_is_kept_reported_on_and_forgotten(fresh, address, watched):
         fresh.set_viewport_size({"width": width, "height": 800})
         assert fresh.evaluate("() => document.documentElement.scrollWidth") <= width
     assert violations(fresh) == []
+    assert fresh.get_by_role("img").count() == fresh.locator(".path h3").count() > 0  # a drawing for each path
+    fresh.emulate_media(media="print", color_scheme="dark")
+    assert fresh.evaluate("() => getComputedStyle(document.querySelector('h1')).color") == "rgb(0, 0, 0)"
+    assert fresh.evaluate("() => getComputedStyle(document.querySelector('.said')).fill") == "rgb(0, 0, 0)"
+    fresh.emulate_media(media="screen", color_scheme="light")
     show(fresh, "roofs", roof=WEST)
     fresh.locator(".roofs .list li", has_text="12 Field Lane").get_by_role("button", name="Open").click()
     still(fresh)

@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from terrain.cache import _LAYOUT as FOLDER
 from terrain.cache import ArrayCache
 
 
@@ -35,7 +36,7 @@ def test_what_is_in_use_stays_whatever_the_limit(tmp_path):
         os.utime(path, (0, 0))
     mine.keep("a/5", np.zeros(2000))
     assert [float(array[-1]) for array in arrays] == [0, 1, 2, 3, 4]
-    assert all((tmp_path / "ground-2" / f"a/{number}.npy").is_file() for number in range(6))
+    assert all((tmp_path / FOLDER / f"a/{number}.npy").is_file() for number in range(6))
 
 
 def test_what_another_process_used_just_now_stays(tmp_path):
@@ -43,7 +44,7 @@ def test_what_another_process_used_just_now_stays(tmp_path):
     other.keep("a/0", np.zeros(2000))
     mine = ArrayCache(tmp_path, limit_bytes=17_000)
     mine.keep("b/0", np.zeros(2000))
-    assert (tmp_path / "ground-2" / "a/0.npy").is_file()
+    assert (tmp_path / FOLDER / "a/0.npy").is_file()
 
 
 def test_a_cache_of_an_older_version_is_not_read_and_goes(tmp_path):
@@ -95,9 +96,9 @@ def test_what_another_process_has_mapped_stays_however_long_ago_it_was_mapped(tm
         for path in tmp_path.rglob("*.npy"):
             os.utime(path, (0, 0))
         ArrayCache(tmp_path, limit_bytes=100).keep("b/0", np.zeros(5))
-        assert (tmp_path / "ground-1" / "a/0.npy").is_file()
-        assert not (tmp_path / "ground-1" / "a/1.npy").exists()
+        assert (tmp_path / FOLDER / "a/0.npy").is_file()
+        assert not (tmp_path / FOLDER / "a/1.npy").exists()
         assert holder.communicate("go on\n")[0] == "2000.0\n"
-    os.utime(tmp_path / "ground-1" / "a/0.npy", (0, 0))
+    os.utime(tmp_path / FOLDER / "a/0.npy", (0, 0))
     ArrayCache(tmp_path, limit_bytes=100).keep("b/1", np.zeros(5))
-    assert not (tmp_path / "ground-1" / "a/0.npy").exists()  # its user has ended
+    assert not (tmp_path / FOLDER / "a/0.npy").exists()  # its user has ended
