@@ -2,7 +2,7 @@
 
 import { make, part } from './dom.js';
 import { chainsHere, verdictOf } from './state.js';
-import { asSentence, numberText, parseNumber } from './units.js';
+import { asSentence, heightIn, numberText, parseLength, parseNumber, plainText } from './units.js';
 
 /**
  * @param {HTMLElement} element
@@ -12,6 +12,8 @@ export function createBlock(element, { block }) {
   const form = part(element, 'form');
   const problem = part(element, '.problem');
   const found = part(element, '.found');
+  /** @type {import('./units.js').Units} of both runs */
+  let units = 'metric';
   let picked = ''; // else the aerial of the shown idea
   form.elements.namedItem('aerial').addEventListener('change', () => { picked = value('aerial'); });
   const value = (name) => form.elements.namedItem(name).value;
@@ -19,7 +21,7 @@ export function createBlock(element, { block }) {
   form.addEventListener('submit', async (event) => {
     event.preventDefault();
     problem.textContent = '';
-    const answers = { outlets: parseNumber(value('outlets')), longest_m: parseNumber(value('longest')), shortest_m: parseNumber(value('shortest')) };
+    const answers = { outlets: parseNumber(value('outlets')), longest_m: parseLength(value('longest'), units), shortest_m: parseLength(value('shortest'), units) };
     const wrong = Object.values(answers).some((one) => one === null) || !Number.isInteger(answers.outlets);
     if (wrong) {
       problem.textContent = 'Outlets, longest and shortest run: write numbers, such as 8, 35 and 10.';
@@ -43,9 +45,20 @@ export function createBlock(element, { block }) {
       make('ul', {}, ...(made.findings.length ? made.findings : [`Every channel lies inside the window of ${standard} at every outlet.`]).map((text) => make('li', { textContent: asSentence(text) }))));
   }
 
+  /** Writes both runs in other units, as far as they can be read. @param {import('./units.js').Units} next */
+  function measureIn(next) {
+    for (const name of ['longest', 'shortest']) {
+      const metres = parseLength(value(name), units);
+      if (metres !== null) form.elements.namedItem(name).value = plainText(heightIn(metres, next), 1);
+      part(form.elements.namedItem(name).closest('.field'), '.hint').textContent = next === 'imperial' ? 'ft' : 'm';
+    }
+    units = next;
+  }
+
   /** @param {import('./state.js').State} state */
   function update(state) {
     if (element.hidden) return;
+    if (units !== state.units) measureIn(state.units);
     const list = form.elements.namedItem('aerial');
     const aerials = new Map(chainsHere(state).flatMap((one) => one.parts.filter((each) => each.kind === 'aerial').slice(0, 1)).map((one) => [one.id, one.name]));
     const now = JSON.stringify([...aerials]);

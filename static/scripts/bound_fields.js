@@ -2,7 +2,7 @@
 
 import { field, make, select } from './dom.js';
 import { gainText, parseGain } from './part_fields.js';
-import { parseNumber } from './units.js';
+import { heightIn, parseLength, parseNumber, plainText } from './units.js';
 
 /**
  * @typedef {{part: number|null, key: string}} Spot  of a part, or of the chain itself
@@ -79,6 +79,19 @@ export function createBoundFields({ now, later }) {
         if (!bad) later((draft) => put(draft, spot, number));
       } });
       const { one, element } = bind(label, control, spot, (of) => asText(holder(of, spot.part)?.[spot.key]), chain, hint);
+      return element;
+    },
+
+    /** Kept in metres. @param {string} label @param {Spot} spot @param {any} chain @param {string} hint what is said after the unit @param {import('./units.js').Units} units as it is shown and typed */
+    length(label, spot, chain, hint, units) {
+      const shown = (metres) => (metres === undefined || metres === null ? '' : plainText(heightIn(metres, units), 2));
+      const control = make('input', { type: 'text', inputMode: 'decimal', oninput: () => {
+        const empty = control.value.trim() === '';
+        const metres = parseLength(control.value, units);
+        typed(one, shown(metres), !empty && metres === null ? `${label}: “${control.value.trim()}” is not a length; write one such as 12.` : '');
+        if (empty || metres !== null) later((draft) => put(draft, spot, metres));
+      } });
+      const { one, element } = bind(label, control, spot, (of) => shown(holder(of, spot.part)?.[spot.key]), chain, `${units === 'imperial' ? 'ft' : 'm'}${hint}`);
       return element;
     },
 

@@ -86,7 +86,7 @@ export function createChains(element, { edit, drop, keep, remove, choose, show }
     branching.checked = branches;
     branching.disabled = hasBranches(chain);
     const shape = chain.parts.map((one) => [one.kind, one.id, one.pattern, one.reflection?.length, branches && [one.name, one.after, one.port]]);
-    const structure = JSON.stringify([chosen, shape, branches && state.answer?.chains[chosen]?.fed_by]);
+    const structure = JSON.stringify([chosen, state.units, shape, branches && state.answer?.chains[chosen]?.fed_by]);
     if (structure !== drawn) {
       drawn = structure;
       draw(all, branches);

@@ -24,6 +24,7 @@ export function createPartRows(list, { fields, change }) {
     const at = (key) => ({ part: place, key });
     const boxes = fieldsOf(one, chain).map(({ key, label, unit, choices, whole, table }) => {
       if (table) return fields.table(label, at(key), chain, unit ?? '', table);
+      if (key.endsWith('_m')) return fields.length(label, at(key), chain, (unit ?? 'm').slice(1), state.units);
       const listed = key === 'cable' ? (state.cables ?? [one.cable]).map((name) => [name, name]) : choices;
       return listed ? fields.choice(label, at(key), chain, listed, unit) : fields.figure(label, at(key), chain, unit, whole);
     });

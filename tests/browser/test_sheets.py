@@ -220,6 +220,14 @@ def test_feet_and_miles_hold_for_heights_distances_and_sentences(fresh):
         away.fill("100")
         away.press("Tab")
     assert json.loads(asked.value.request.post_data)["roof"]["obstacles"][0]["distance_m"] == 30.48
+    open_sheet(fresh, "Chains")
+    fresh.locator(".chains .which").select_option("roof-yagi")
+    feeder = fresh.locator(".chains .a-part", has_text="Feeder").get_by_label("Length")
+    with fresh.expect_response("**/api/assess") as asked:
+        feeder.fill("50")
+    edited = next(one for one in json.loads(asked.value.request.post_data)["chains"] if not isinstance(one, str))
+    assert [one["length_m"] for one in edited["parts"] if one["kind"] == "feeder"] == [15.24]  # 50 ft of 0.3048 m
+    expect(fresh.get_by_label("Longest run ft")).to_have_value("114.8")  # 35 m
     fresh.get_by_role("tab", name="Path", exact=True).click()
     expect(fresh.locator(".path .told")).to_have_text(re.compile(r"\d\u00a0mi.*\d\u00a0ft"))
 
