@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import os
+from collections.abc import Callable, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import replace
 from datetime import date
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
 
 from app.aiming import aimed
 from app.air import Air
@@ -31,6 +33,8 @@ from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from app.verdict import Outcome, Verdict, compare, nothing, ranked, wanted_multiplexes
 from terrain.mosaic import Ground
+
+T = TypeVar("T")
 
 
 def assess(
@@ -65,13 +69,13 @@ def assess(
         best = aimed(chain, air, request.roof, counted, assumptions)
         return turn(best, air, request.roof, counted, assumptions, known)
 
-    turned = {chain.name: turned_best(as_powered(chain), None) for chain in chains} if air.fields else {}
+    turned = _for_each(chains, lambda chain: turned_best(as_powered(chain), None)) if air.fields else {}
     place = Place(request, store, ground, heard, turned, assumptions, refractivity_maps)
     evidence = evidence_at(place)
     known = evidence.posterior
     if known is not None:
-        turned = {chain.name: turned_best(as_powered(chain), known) for chain in chains}
-    outcomes = {name: _outcome(one, air, multiplexes) for name, one in turned.items()}
+        turned = _for_each(chains, lambda chain: turned_best(as_powered(chain), known))
+    outcomes = _for_each(chains, lambda chain: _outcome(turned[chain.name], air, multiplexes)) if turned else {}
     readables = what_can_be_read(place, turned, known)
     verdicts = _verdicts(request, chains, outcomes, multiplexes, chosen, assumptions, readables)
     mended = {
@@ -133,6 +137,12 @@ def _wanted_ids(request: AssessRequest, store: Store) -> list[str]:
             raise RequestError(f'multiplex "{one}" is not known: use one of {names}', field="wanted", allowed=names)
         ids.append(one if one in known else by_name[one])
     return list(dict.fromkeys(ids))
+
+
+def _for_each(chains: Sequence[Chain], work: Callable[[Chain], T]) -> dict[str, T]:
+    """Return what work makes of each chain, by name: side by side, as numpy lets several cores at it."""
+    with ThreadPoolExecutor(min(len(chains), os.cpu_count() or 1)) as pool:
+        return {chain.name: made for chain, made in zip(chains, pool.map(work, chains), strict=True)}
 
 
 def _outcome(turned: Turned, air: Air, multiplexes: Sequence[str]) -> Outcome:

@@ -1,5 +1,9 @@
 """How quickly the page answers in a browser, on the demo and with 300 emissions: run it, it prints.
 
+`python tests/benchmarks/bench_page.py ROUNDS` gives medians and minima: first load, kB as sent, the click's way
+before, in and after the API, and sliding. Not yet run on an idle machine with the present code, whose `assess` took
+91 ms of one core on the demo and 1.0 s with 300 emissions (load 7), after 130 ms and 2.4 s (load 3) with the code of:
+
 1 December 2026, Chromium 156 without a graphics card, 2 cores that other work shared (load 3 to 5):
 demo: decision and table 1.2 s, map 1.5 s, 118 kB + 255 kB of map library; click to chances 265 ms, of which the API
 228 ms (100 ms on an idle machine); sliding 60 updates a second, 0.3 ms of script each.
