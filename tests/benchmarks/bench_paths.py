@@ -1,29 +1,34 @@
 """Paths of one rooftop and of a million roofs: the production code against pycraf, plain C, our numpy and itself.
 
 Every path goes through the same functions as an answer of the server, zones and water on. The relief is declared as
-bare ground: under surface models finer than 35 m the plain form answers, as bare ground is estimated there first.
+bare ground: under surface models finer than 35 m and under land cover the plain form answers.
 
-Medians of 7 rounds on 2 virtual Xeon processors (Sapphire Rapids, 2 MiB L2 each), shared with other busy programs,
-2026-12-01; 200 paths of 2697 points, 91 % of them meet the sea; microseconds a path: whole 58, its sampling kernel 40:
+Medians of 7 rounds on 2 virtual Xeon processors (2.6 GHz, Ice Lake, 1.25 MiB L2 each), 2026-12-01, while some 20 other
+busy programs shared them; 200 paths of 2697 points, 91 % of them meet the sea. Microseconds a path: whole 58, geodesics
+and sampling 32, sampling alone 25; with 5 to 10 others 40, 22 and 18.
 
-    against pycraf's diffraction on given profiles, warm   1.6 (goal 8)    missed
-    the same, caches flushed                               1.1 (goal 3)    missed
-    against pycraf's profiles and diffraction              137 (goal 60)
-    against our numpy                                      119 (goal 15)
-    sampling against plain C                               1.1 (goal 0.7)
-    whole against its geodesics and sampling               1.24 (goal 1.5)
-    two threads against one                                0.99 (goal 1.7) missed: no processor was free
-    12 frequencies against 1                               1.11 (goal 1.4)
-    both methods, 3 times, 200 × 6 emissions               0.41 (goal 5)
-    fresh map against decoding ten tiles                   0.03 (goal 0.05)
-    a million paths against their sampling                 1.57 (goal 1.5) missed; one round, after one with 0.90
+    against pycraf's diffraction on given profiles, warm   2.9 (goal 8)    missed; 3.6 with fewer others
+    the same, caches flushed                               2.7 (goal 3)    missed; 3.2 with fewer others
+    against pycraf's profiles and diffraction              354 (goal 60)
+    against our numpy                                      337 (goal 15)
+    sampling against plain C over samples in rows          4.4 (goal 0.7)
+    whole against its geodesics and sampling               1.61 (goal 1.5) missed
+    two threads against one                                0.87 (goal 1.7) missed: no processor was free
+    12 frequencies against 1                               1.14 (goal 1.4)
+    both methods, 3 times, 200 × 6 emissions               1.3 (goal 5)
+    fresh map against decoding ten tiles                   0.02 (goal 0.05)
+    a million paths against their sampling                 2.03 (goal 1.5) missed
+    a million paths, two threads against one               1.20 (goal 1.7) missed: as above
 
-What holds the first two: every point of a path that runs north or south lies on a memory line of its own, and these
-lines come from a third-level cache or memory that the other programs fill; plain C takes as long. On one path that
-stays in the second-level cache the whole takes 8 ns a point, sampling 5.4. Tried without gain: huge pages, asking for
-the next path's lines ahead, corners kept as 16-bit numbers until they are blended. With gain: maxima that become vector
-instructions, water looked up only in stretches that touch 0 m, zones by stretches of land (6 to 3 ns a point).
-Not tried: samples in blocks of one memory line, which halves the lines a path touches.
+With samples in rows it was 1.4 times pycraf: each point of a path to the north lies on a memory line and a page of its
+own, 24 ns a point. In patches (terrain/patches.py) sampling takes 6.5 to 8 ns over 200 paths, 3.1 over 5 that stay in
+the second-level cache, 2.1 in its three loops alone (where 0.8, fetch 0.9, blend 0.4). The difference of the first two
+is memory: a third of a line a point, from a cache and a memory that others fill; huge pages no longer change it. The
+rest of the whole, in microseconds a path: rays, sums and places 6, zones 2, closing formulas 3, geodesics 3, climate 1.
+With these 15 and samples at hand (8) it would be 4 times pycraf; 8 times would be 11 in all, which this processor does
+not reach. The two ratios to our own sampling were 1.28 and 1.6 to 1.7 when sampling was three times slower.
+Tried without gain: 512-bit vectors, stretches of 64 to 1024 points; with 0.4 ns, not taken up: asking for the next
+stretch before this one is blended, paths in the order of their bearing.
 """
 
 from __future__ import annotations
