@@ -66,7 +66,10 @@ async function assess() {
   const { where, height } = store.get();
   const at = await placed(where);
   if (where !== store.get().where) return;
-  if ('problem' in at) return void store.set({ trouble: { message: at.problem, field: 'where' } });
+  if ('problem' in at) {
+    const doubt = at.swapped ? { question: 'Are latitude and longitude swapped?', swapped: at.swapped } : null;
+    return void store.set({ trouble: { message: at.problem, field: 'where' }, doubt });
+  }
   const up = parseHeight(height, store.get().units);
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
@@ -87,6 +90,7 @@ async function submit() {
   const { where } = store.get();
   store.set({ doubt: null });
   await assess();
+  if (where !== store.get().where || store.get().trouble?.field === 'where') return;
   const asked = await api.read('/api/position', { text: where.trim() }).catch(() => null);
   if (!asked?.question || where !== store.get().where) return;
   store.set({ doubt: { question: asked.question, swapped: { latitude_deg: asked.longitude_deg, longitude_deg: asked.latitude_deg } } });
@@ -108,11 +112,11 @@ async function overNewGround() {
 /**
  * Degrees are read here; minutes and seconds, grids and codes by the server.
  * @param {string} text
- * @returns {Promise<{place: import('./state.js').Place} | {problem: string}>}
+ * @returns {Promise<{place: import('./state.js').Place} | {problem: string, swapped?: import('./state.js').Place}>}
  */
 async function placed(text) {
   const at = parsePlace(text);
-  if (!('problem' in at) || !/\d/.test(text)) return at;
+  if (!('problem' in at) || !/\d/.test(text) || at.problem.includes('not on Earth')) return at;
   try {
     const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
     return { place: { latitude_deg, longitude_deg } };

@@ -196,6 +196,12 @@ def test_latitude_and_longitude_that_look_swapped_are_asked(watched, browser):
     page.get_by_role("button", name="Swap them").click()
     expect(page.get_by_label("Roof at")).to_have_value(re.compile(r"^52\.3\d*, 5\.4"))
     expect(page.locator(".doubt")).to_be_empty()
+    page.get_by_label("Roof at").fill("111.5, 49.5")  # no latitude
+    page.get_by_label("Roof at").press("Enter")
+    expect(page.locator("#place-problem")).to_contain_text("Latitude 111.5 is not on Earth")
+    expect(page.locator(".doubt")).to_contain_text("Are latitude and longitude swapped?")
+    page.get_by_role("button", name="Swap them").click()
+    expect(page.get_by_label("Roof at")).to_have_value(re.compile(r"^49\.5\d*, 111\.5"))
 
 
 @pytest.mark.parametrize(

@@ -158,6 +158,8 @@ def test_the_keyboard_alone_does_everything(page):
     page.keyboard.press("Enter")
     expect(page.locator(".sentence")).to_have_text(SENTENCE)
     page.keyboard.press("Tab")
+    expect(page.get_by_role("button", name="Take this device’s place")).to_be_focused()
+    page.keyboard.press("Tab")
     expect(page.locator("#height")).to_be_focused()
     for _ in range(2):
         page.keyboard.press("Tab")
