@@ -116,7 +116,9 @@ async function overNewGround() {
  */
 async function placed(text) {
   const at = parsePlace(text);
-  if (!('problem' in at) || !/\d/.test(text) || at.problem.includes('not on Earth')) return at;
+  const numbers = text.match(/[\d.]+/g)?.length ?? 0;
+  const otherwise = numbers > 2 || (numbers > 0 && /[^\d\s.,;\u2212\u2013-]/.test(text));
+  if (!('problem' in at) || !otherwise || at.problem.includes('not on Earth')) return at;
   try {
     const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
     return { place: { latitude_deg, longitude_deg } };

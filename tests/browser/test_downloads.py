@@ -205,7 +205,8 @@ def test_latitude_and_longitude_that_look_swapped_are_asked(watched, browser):
 
 
 @pytest.mark.parametrize(
-    "text", ["49°30'0\"N 11°30'0\"E", "8FXHGG22+22", "EPSG:32632 681021 5486293", "32N 681021 5486293"]
+    "text",
+    ["49°30'0\"N 11°30'0\"E", "8FXHGG22+22", "EPSG:32632 681021 5486293", "32N 681021 5486293", "49 30 0 11 30 0"],
 )
 def test_a_position_is_read_in_every_writing_of_the_command_line(watched, browser, text):
     watched.expected = "422"
