@@ -11,6 +11,7 @@ import numpy as np
 from app.air import Air
 from app.answer_cells import cells_of, ledger_of_readings, probability
 from app.assumptions import Assumptions
+from app.bill import bill_document
 from app.cautions import CAUTIONS, SHOWN_NAMES, cautions_at
 from app.chain.parts import Chain
 from app.chance import GRADES, grade, rows_of
@@ -95,9 +96,10 @@ def _multiplex_cell(
     rows: Sequence[int], m: int, outcome: Outcome, turned: Turned, cells: Sequence[dict[str, Any]], air: Air
 ) -> dict[str, Any]:
     best = max(rows, key=lambda e: turned.chance[e])
+    chance = probability(outcome.chance[m])
     return {
-        "chance": probability(outcome.chance[m]),
-        "grade": grade(outcome.chance[m]),
+        "chance": chance,
+        "grade": grade(chance),  # of the figure that is shown
         "held_back_by": cells[best]["held_back_by"],
         "emission": air.fields[best].emission.id,
         "pointing_deg": turned.pointing_deg,
@@ -174,7 +176,7 @@ def _emission(
 
 def _chain(chain: Chain, turned: Turned | None, outcome: Outcome | None, air: Air) -> dict[str, Any]:
     chances = outcome.chance if outcome else np.zeros(0)
-    counts: dict[str, int] = {word: sum(grade(one) == word for one in chances) for _, word in GRADES}
+    counts: dict[str, int] = {word: sum(grade(probability(one)) == word for one in chances) for _, word in GRADES}
     return {
         "title": chain.title or chain.name,
         "price": chain.price,
@@ -206,6 +208,7 @@ def _verdict(verdict: Verdict) -> dict[str, Any]:
         "expected_extra": round(verdict.expected_extra, 3),
         "expected_extra_error": round(verdict.expected_extra_error, 4),
         "price_difference": _rounded(verdict.price_difference),
+        "bill": bill_document(verdict.bill),
         "price_per_extra": _rounded(verdict.price_per_extra),
         "break_even_price": round(verdict.break_even_price, 2),
         "gained": list(verdict.gained),

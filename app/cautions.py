@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Sequence
 from datetime import date
 
@@ -57,14 +58,24 @@ def cautions_at(
         cautions.append(
             f"The sea under {len(warm)} of the channels counts as warm for P.1546 (our choice by latitude and region)."
         )
-    twice = sorted({pair for field in fields for pair in _same_emission(field, fields)})
+    by_source: dict[str, list[EmissionField]] = {}
+    for field in fields:
+        by_source.setdefault(field.transmitter.source, []).append(field)
+    twice = sorted(
+        {
+            pair
+            for first, second in itertools.combinations(sorted(by_source), 2)
+            for field in by_source[first]
+            for pair in _same_emission(field, by_source[second])
+        }
+    )
     if twice:
         cautions.append(
             f"The same transmitter may be stored twice: {'; '.join(twice[:5])}. "
             "Take one import out with `gainworth transmitters remove SOURCE`."
         )
     cautions += air.company.cautions
-    double = [chain.name for chain in chains if len(chain.aerials) > 1]
+    double = [chain.title or chain.name for chain in chains if len(chain.aerials) > 1]
     if double and air.company.pairs.disturber.size:
         cautions.append(
             f"Interference through {', '.join(double)} is reckoned with the pattern and pointing of the first aerial, "
@@ -110,14 +121,13 @@ def _slot(emission: Emission) -> tuple[str, str, float]:
 
 
 def _same_emission(field: EmissionField, fields: Sequence[EmissionField]) -> list[str]:
-    """Emissions of other sources that are likely this one: same system, within 200 kHz and 1 km."""
+    """Emissions of sources later by name that are likely this one: same system, within 200 kHz and 1 km."""
     mine = field.emission
     return [
         f"{field.transmitter.name} in {field.transmitter.source} and "
         f"{other.transmitter.name} in {other.transmitter.source}"
         for other in fields
-        if other.transmitter.source > field.transmitter.source
-        and other.emission.system == mine.system
+        if other.emission.system == mine.system
         and abs(other.emission.frequency_mhz - mine.frequency_mhz) <= 0.2
         and abs(other.distance_km - field.distance_km) <= SAME_MAST_KM
         and abs(other.transmitter.latitude_deg - field.transmitter.latitude_deg) * 111 <= SAME_MAST_KM

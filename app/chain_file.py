@@ -33,10 +33,11 @@ from app.chain.document import (
 )
 from app.chain.files import content_of, text_of
 from app.chain.parts import Chain, Part
-from app.chain.pattern_files import read_pattern
+from app.chain.pattern import MeasuredPattern
 from app.errors import ChainError
 from app.transmitters.store import Store
 
+MOST_FRONT_TO_BACK_DB = 60.0  # that an aerial may state
 ADDED_BY_STORE = ("created", "updated")
 
 
@@ -94,10 +95,15 @@ def chain_text(chain: Mapping[str, Any]) -> str:
     return tomli_w.dumps({"chains": [dict(chain)]})
 
 
-def pattern_document(path: Path) -> dict[str, Any]:
-    """Measured pattern of a file as the keys of an aerial: pattern, cuts, and the gain if the file says it."""
-    pattern = read_pattern(path)
-    document: dict[str, Any] = {"pattern": "measured", "cuts": [cut_to_document(cut) for cut in pattern.cuts]}
+def pattern_document(pattern: MeasuredPattern) -> dict[str, Any]:
+    """Measured pattern as the keys of an aerial: pattern, cuts, what they say in figures, the gain if its file does."""
+    own = [cut for cut in pattern.cuts if not cut.is_cross]
+    document: dict[str, Any] = {
+        "pattern": "measured",
+        "beamwidth_deg": round(max(cut.beamwidth_deg for cut in own), 1),
+        "front_to_back_db": min(min(cut.back_db for cut in own), MOST_FRONT_TO_BACK_DB),
+        "cuts": [cut_to_document(cut) for cut in pattern.cuts],
+    }
     if pattern.gain_dbd:
         document["gain_dbd"] = [list(pair) for pair in pattern.gain_dbd]
     return document

@@ -31,6 +31,7 @@ def chain_notes(
     """
     return {
         "aerials": [] if turned is None else _aerials(turned),
+        "fed_by": {ident: list(feeding) for ident, feeding in chain.tree.fed_by.items()},
         "powering": powering_document(chain),
         "if_powered": None if if_powered is None else _counts(if_powered),
         "levels": [] if turned is None else outlet_levels(turned, air, standard),
@@ -39,17 +40,18 @@ def chain_notes(
     }
 
 
-def chain_cautions(notes: Mapping[str, Mapping[str, Any]]) -> list[str]:
+def chain_cautions(notes: Mapping[str, Mapping[str, Any]], titles: Mapping[str, str]) -> list[str]:
     """Return what of the notes has to be read before anything is bought."""
     cautions = []
     for name, note in notes.items():
-        cautions += [f"{name}: {row['message']}" for row in note["powering"] if row["message"]]
+        title = titles[name]
+        cautions += [f"{title}: {row['message']}" for row in note["powering"] if row["message"]]
         outside = [row for row in note["levels"] if row["too_strong"]]
         if outside:
             channels = sorted({channel for row in outside for channel in row["too_strong"]})
             standard = str(outside[0]["standard"]).upper().replace("EN-", "EN ")
             cautions.append(
-                f"{name}: channel {', '.join(channels)} stands above the level window of {standard} "
+                f"{title}: channel {', '.join(channels)} stands above the level window of {standard} "
                 f"at {', '.join(row['outlet'] for row in outside)}: an attenuator or less gain brings it down."
             )
     return cautions
@@ -173,4 +175,5 @@ def with_notes(
 ) -> dict[str, Any]:
     """Return the answer with what there is to say of its chains."""
     chains = {name: {**entry, **notes.get(name, {})} for name, entry in document["chains"].items()}
-    return {**document, "chains": chains, "cautions": [*first, *chain_cautions(notes), *document["cautions"]]}
+    titles = {name: str(entry["title"]) for name, entry in chains.items()}
+    return {**document, "chains": chains, "cautions": [*first, *chain_cautions(notes, titles), *document["cautions"]]}

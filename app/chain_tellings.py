@@ -29,8 +29,10 @@ def told_cheapest(document: Mapping[str, Any]) -> str:
     lines = [f"{document['tried']} chains tried"]
     for row in document["front"]:
         price = f"{row['price']:g} {document['currency']}"
-        lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['name']}")
-        lines.append(f"  {row['reason']}")
+        lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['title']}")
+        pays = "It pays" if row["pays"] else "It does not pay"
+        worth = f"{document['worth_per_multiplex']:g} {document['currency']}"
+        lines.append(f"  {row['reason']} {pays}, one more counting as worth {worth}.")
     if document["left_out"]:
         lines.append(f"left out for want of a price: {', '.join(document['left_out'])}")
     return "\n".join(lines)

@@ -156,10 +156,15 @@ def match(
     as_json: Json = False,
 ) -> None:
     """Show how an aerial matches 75 ohms, with the pad removed; match is not gain."""
-    from app.match_query import match_document, told_match
+    from app.chain.match import Measurement
+    from app.chain.touchstone import read_touchstone
+    from app.match_query import channels_of_raster, match_document, told_match
 
     with mendable():
-        document = match_document(file, calibrated, pad, own_pad, standard, raster, tuple(channel or ()))
+        pad_sweep = None if own_pad is None else read_touchstone(own_pad)
+        # measured_match checks the words
+        measured = Measurement(read_touchstone(file), calibrated, pad, pad_sweep, standard)  # type: ignore[arg-type]
+        document = match_document(measured, channels_of_raster(raster, channel or ()))
     show(document, as_json, lambda: told_match(document))
 
 
@@ -168,8 +173,9 @@ def pattern(
     file: Annotated[Path, typer.Argument(metavar="FILE", help="Our CSV, or the NSMA format.")], as_json: Json = False
 ) -> None:
     """Read a measured pattern and show it as the cuts that an aerial in a chain's file takes."""
+    from app.chain.pattern_files import read_pattern
     from app.chain_file import pattern_document, pattern_text
 
     with mendable():
-        document = pattern_document(file)
+        document = pattern_document(read_pattern(file))
     show(document, as_json, lambda: pattern_text(document))

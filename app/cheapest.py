@@ -1,8 +1,8 @@
 """The cheapest chain that does: what a list of parts with prices can make, price against multiplexes.
 
 Sensible chains only: each aerial alone or with each masthead amplifier, the amplifier with or without each filter
-ahead of it; the cheapest feeder long enough of each cable; the cheapest splitter with enough ports. Kept are those
-that no cheaper chain equals: the Pareto front.
+ahead of it; the cheapest feeder long enough of each cable; the cheapest splitter with enough ports; the outlets for
+sale, and where there are too few, outlets at no price. Kept are those that no cheaper chain equals: the Pareto front.
 """
 
 from __future__ import annotations
@@ -39,11 +39,13 @@ from app.mapped import settled
 from app.margins import Turned, multiplex_chances, turn
 from app.request import AssessRequest
 from app.site import site_of
+from app.stored_chains import stored_chain
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
 MOST_CHAINS = 300  # tried; more parts than that are asked to be sorted out first
 LEAST_STEP = 0.05  # expected multiplexes: a dearer chain must bring more than this
+MEND = "keep a chain that has one with its price, or `gainworth chains import FILE` with [[parts]]"
 MOVED = 0.1  # a chance that rises by more is named
 
 
@@ -95,9 +97,9 @@ def cheapest_document(
     AppError, TerrainError
         The roof is not possible.
     """
-    parts = stored_parts(store)
+    parts = parts_for_sale(store)
     chains = list(sensible_chains(parts, wish))
-    assumptions = Assumptions(request.assumptions)
+    assumptions = Assumptions({**request.assumptions, **request.stated_values})
     request, _ = settled(request, ground)
     site_of(request.roof, ground)
     air = air_at(request, request.roof, store, ground, assumptions, today, refractivity_maps).air
@@ -105,8 +107,13 @@ def cheapest_document(
     counted = [name for name in request.wanted or multiplexes if name in multiplexes]
     tried = [_tried(chain, air, request, multiplexes, counted, assumptions) for chain in chains] if air.fields else []
     front = pareto(tried)
+    known = store.multiplexes()
+    names = [known[one].name if one in known else one for one in multiplexes]
+    worth = assumptions.value("worth_per_multiplex")
     return {
         "tried": len(tried),
+        "multiplexes": len(multiplexes),
+        "worth_per_multiplex": worth,
         "left_out": sorted(part.name for part in parts if part.price is None),
         "currency": wish.currency,
         "front": [
@@ -115,11 +122,22 @@ def cheapest_document(
                 "price": one.price,
                 "expected_count": round(one.expected_count, 3),
                 "pointing_deg": one.turned.pointing_deg,
-                "reason": reason(front[i - 1] if i else None, one, air, multiplexes),
+                "price_per_extra": None if (each := price_per_extra(before, one)) is None else round(each, 2),
+                "pays": pays(before, one, worth),
+                "reason": reason(before, one, air, names),
             }
-            for i, one in enumerate(front)
+            for before, one in zip([None, *front], front, strict=False)
         ],
     }
+
+
+def parts_for_sale(store: Store) -> tuple[Part, ...]:
+    """Stored parts with their prices; where none is stored, the priced parts of the stored chains, each once."""
+    if sold := stored_parts(store):
+        return sold
+    chains = [stored_chain(store, str(one["id"])) for one in store.list_chains()]
+    known = {part.id: part for chain in reversed(chains) for part in chain.parts if part.price is not None}
+    return tuple(known.values())
 
 
 def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
@@ -132,10 +150,8 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
     feeders = _feeders(sold, wish)
     splitters = _splitter(sold, wish)
     if not aerials:
-        raise ChainError(
-            "no aerial is for sale: store parts with prices, `gainworth chains import FILE` with [[parts]]",
-            field="parts",
-        )
+        raise ChainError(f"no aerial is for sale: {MEND}", field="parts")
+    stocked = [part for part in sold if isinstance(part, Outlet)][: wish.outlets]
     heads: list[tuple[Part, ...]] = [()]
     heads += [(amplifier,) for amplifier in amplifiers]
     heads += [(one, amplifier) for one, amplifier in itertools.product(filters, amplifiers)]
@@ -149,13 +165,15 @@ def sensible_chains(parts: Sequence[Part], wish: Wish) -> Iterator[Chain]:
         if needs and not inserters:
             continue
         supply = (inserters[0],) if needs else ()
-        outlets = [
+        unpriced = [
             Outlet(id=f"outlet-{n}", name=f"Outlet {n}", price=0, loss_db=1.0) for n in range(1, wish.outlets + 1)
         ]
+        outlets = [*stocked, *unpriced[len(stocked) :]]
         set_behind = Receiver(id="set", name="Television set")
         words = [aerial.name, *(part.name for part in head), feeder.name]
         yield Chain(
-            name=f"{number}: {', '.join(words)}"[:110],
+            name=f"cheapest-{number}",
+            title=", ".join(words)[:110],
             parts=(aerial, *head, feeder, *supply, *splitters, *outlets, set_behind),
             currency=wish.currency,
             labour_price=wish.labour_price,
@@ -171,9 +189,7 @@ def _feeders(sold: Sequence[Part], wish: Wish) -> list[Feeder]:
     """Return the cheapest feeder of each cable that is long enough."""
     long_enough = [part for part in sold if isinstance(part, Feeder) and part.length_m >= wish.feeder_m]
     if not long_enough:
-        raise ChainError(
-            f"no feeder of {wish.feeder_m:g} m or more is for sale: store one with its price", field="parts"
-        )
+        raise ChainError(f"no feeder of {wish.feeder_m:g} m or more is for sale: {MEND}", field="parts")
     cables = dict.fromkeys(part.cable for part in long_enough)
     return [min((part for part in long_enough if part.cable == cable), key=_price) for cable in cables]
 
@@ -183,7 +199,7 @@ def _splitter(sold: Sequence[Part], wish: Wish) -> tuple[Splitter, ...]:
         return ()
     fit = [part for part in sold if isinstance(part, Splitter) and part.ports >= wish.outlets]
     if not fit:
-        raise ChainError(f"no splitter with {wish.outlets} ports or more is for sale: store one", field="parts")
+        raise ChainError(f"no splitter with {wish.outlets} ports or more is for sale: {MEND}", field="parts")
     return (min(fit, key=lambda part: (part.ports, _price(part))),)
 
 
@@ -210,8 +226,20 @@ def pareto(tried: Sequence[Tried]) -> list[Tried]:
     return front
 
 
-def reason(before: Tried | None, after: Tried, air: Air, multiplexes: Sequence[str]) -> str:
-    """Say why the step from one chain of the front to the next pays."""
+def price_per_extra(before: Tried | None, after: Tried) -> float | None:
+    """What each multiplex costs that a chain of the front brings more than the one before; of the first, each."""
+    extra = after.expected_count - (before.expected_count if before else 0.0)
+    return (after.price - (before.price if before else 0.0)) / extra if extra > 0 else None
+
+
+def pays(before: Tried | None, after: Tried, worth_per_multiplex: float) -> bool:
+    """Whether what a chain brings more than the one before is worth what it costs more."""
+    each = price_per_extra(before, after)
+    return each is not None and each < worth_per_multiplex
+
+
+def reason(before: Tried | None, after: Tried, air: Air, names: Sequence[str]) -> str:
+    """Say what the step from one chain of the front to the next brings and why; `names` of the multiplexes."""
     if before is None:
         return f"The cheapest that can be built: about {after.expected_count:.1f} multiplexes."
     had = {part.id for part in before.chain.parts}
@@ -221,9 +249,9 @@ def reason(before: Tried | None, after: Tried, air: Air, multiplexes: Sequence[s
     swap = " and ".join(new) or "less"
     instead = f" for {' and '.join(gone)}" if gone else ""
     rise = after.chance - before.chance
-    risen = [m for m in range(len(multiplexes)) if rise[m] > MOVED]
-    limits = before.turned.held_back_by(air, multiplexes)
-    why = ", ".join(f"{multiplexes[m]} (held back by {limits[m]})" for m in risen) or "a little of each"
+    risen = [m for m in range(len(names)) if rise[m] > MOVED]
+    limits = before.turned.held_back_by(air, sorted(set(air.multiplex_of)))
+    why = ", ".join(f"{names[m]} (held back by {limits[m]})" for m in risen) or "a little of each"
     extra = after.expected_count - before.expected_count
-    each = (after.price - before.price) / extra
-    return f"{swap}{instead}: {extra:.1f} more, {each:.0f} {after.chain.currency} each: {why}."
+    each = f"{price_per_extra(before, after):.0f} {after.chain.currency} each"
+    return f"{swap}{instead}: {extra:.1f} more, {each}: {why}."

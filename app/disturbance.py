@@ -9,7 +9,9 @@ behind the aerial it does to both.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -73,7 +75,7 @@ def ear_of(chain: Chain, polarisation: str, company: Company, assumptions: Assum
     return Ear(chain, polarisation, assumptions, company, on_axis, brought)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Effect:
     """What the company does to each wanted emission in one state."""
 
@@ -84,8 +86,8 @@ class Effect:
     gain_db: FloatArray  # (…, e) what the other members add to one's own carrier
     rise_db: FloatArray  # (…, e) of the required C/N
     carrier: FloatArray  # (…, e) useful power at the first outlet, of the network together
-    useful: FloatArray  # (…, e) useful share of each member's own power; 1 outside networks
-    stray: FloatArray  # (…, e) power of each member that disturbs its own network; 0 outside networks
+    shares: tuple[FloatArray, ...]  # (…, n, m) useful share of each member's own power, by group of networks
+    strays: tuple[FloatArray, ...]  # (…, n, m) power of each member that disturbs its own network, likewise
     cn_db: FloatArray  # (…, e) C/N at the deciding outlet with the network's gain, before interference
     i_over_n: FloatArray  # (…, e) there, linear
     told: dict[int, tuple[int | None, float | None]] = field(default_factory=dict)  # strongest, once reckoned
@@ -97,18 +99,34 @@ class Effect:
         order = order[power[order] > 0]
         return who[order], power[order] / self.carrier[e]
 
-    def brought_to(self, e: int) -> tuple[NDArray[np.intp], FloatArray]:
-        """Other networks' and single interferers of one wanted emission, and the power each brings. (k,)"""
+    @cached_property
+    def useful(self) -> FloatArray:
+        """Useful share of each emission's own power; 1 outside networks. (…, e)"""
+        return self._by_emission(self.shares, 1.0)
+
+    @cached_property
+    def stray(self) -> FloatArray:
+        """Power of each emission that disturbs its own network; 0 outside networks. (…, e)"""
+        return self._by_emission(self.strays, 0.0)
+
+    def _by_emission(self, of_groups: Sequence[FloatArray], usual: float) -> FloatArray:
+        values = np.full(self.carrier.shape, usual)
+        for group, ones in zip(self.ear.company.groups, of_groups, strict=True):
+            values[..., group.members] = ones
+        return values
+
+    @cached_property
+    def brought(self) -> FloatArray:
+        """Power that each pair brings into the wanted channel, in the order of the pairs, at one pointing. (p,)"""
         company = self.ear.company
-        weights = company.weights[self.state]
-        row = slice(weights.indptr[e], weights.indptr[e + 1])
-        who = weights.indices[row]
-        return who, weights.data[row] * self.left[company.kinds.of[who]] * self.ear.on_axis[self.state][who]
+        return company.brought(self.state, self.left[company.kinds.of] * self.ear.on_axis[self.state])
 
     def _acting_on(self, e: int) -> tuple[NDArray[np.intp], FloatArray]:
-        """Return the same, with members of its own network that stray."""
-        who, power = self.brought_to(e)
-        mine = self.ear.company.network_of.get(e)
+        """Interferers of one wanted emission, members of its own network that stray too, and their power. (k,)"""
+        company = self.ear.company
+        row = slice(*company.weights[self.state].indptr[e : e + 2])
+        who, power = company.pairs.disturber[row], self.brought[row]
+        mine = company.network_of.get(e)
         if mine is not None:
             who, power = np.append(who, mine.members), np.append(power, self.stray[mine.members])
         return who, power
@@ -117,12 +135,13 @@ class Effect:
         """Row of the strongest interferer and how far below it the next one stands [dB]; None: there is none."""
         if e not in self.told:
             who, power = self._acting_on(e)
-            first = int(np.argmax(power)) if power.size and power.max() > 0 else None
-            next_power = 0.0 if first is None else float(np.delete(power, first).max(initial=0.0))
-            self.told[e] = (
-                None if first is None else int(who[first]),
-                None if first is None or next_power == 0 else float(10 * np.log10(power[first] / next_power)),
-            )
+            first = int(np.argmax(power)) if power.size else 0
+            if not power.size or power[first] == 0:
+                self.told[e] = (None, None)
+            else:
+                next_power = max(power[:first].max(initial=0.0), power[first + 1 :].max(initial=0.0))
+                next_db = float(10 * np.log10(power[first] / next_power)) if next_power > 0 else None
+                self.told[e] = (int(who[first]), next_db)
         return self.told[e]
 
 
@@ -134,24 +153,25 @@ def effect_of(ear: Ear, reception: Reception, left: FloatArray, state: State) ->
     company, value = ear.company, ear.assumptions.value
     own = 10 ** (reception.outlets[0].level_dbuv / 10)
     disturbing = np.array(np.broadcast_to(nuisance_power(left, ear.brought[state]), own.shape))
-    carrier, rise, useful = own.copy(), np.zeros(own.shape), np.ones(own.shape)
-    stray = np.zeros(own.shape)
+    carrier, rise = own.copy(), np.zeros(own.shape)
+    shares, strays = [], []
     for group in company.groups:
         mine = own[..., group.members]
         share = network.split(mine, group.arrival_us, group.shares, _window(ear), value("sfn_threshold_db"))
-        risen = 10 ** (company.rise_db(state)[group.members] / 10)
-        stray[..., group.members] = (1 - share) * mine * risen
-        disturbing[..., group.members] += stray[..., group.members].sum(axis=-1, keepdims=True)
-        carrier[..., group.members] = (share * mine).sum(axis=-1, keepdims=True)
-        useful[..., group.members] = share
+        useful = share * mine
+        stray = (mine - useful) * 10 ** (company.rise_db(state)[group.members] / 10)
+        disturbing[..., group.members] += stray.sum(axis=-1, keepdims=True)
+        carrier[..., group.members] = useful.sum(axis=-1, keepdims=True)
         rise[..., group.members] = network.echo_rise_db(
-            share * mine, group.arrival_us, group.bandwidth_mhz, group.rise_at_0_db, value("sfn_echo_range_db")
+            useful, group.arrival_us, group.bandwidth_mhz, group.rise_at_0_db, value("sfn_echo_range_db")
         )[..., np.newaxis]
+        shares.append(share)
+        strays.append(stray)
     with np.errstate(divide="ignore"):
         gain = 10 * np.log10(carrier / own)
     i_over_c, cn_db = disturbing / carrier, reception.cn_db + gain
     i_over_n = i_over_c * 10 ** (cn_db / 10)
-    return Effect(state, ear, left, i_over_c, gain, rise, carrier, useful, stray, cn_db, i_over_n)
+    return Effect(state, ear, left, i_over_c, gain, rise, carrier, tuple(shares), tuple(strays), cn_db, i_over_n)
 
 
 def disturbed(reception: Reception, effect: Effect) -> Reception:

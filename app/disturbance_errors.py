@@ -142,27 +142,27 @@ def moved_by(
     path_off, band_off, common = np.zeros(count), np.zeros(count), np.ones(count)
     ranks = [_Rank(count) for _ in range(STRONGEST)]
     rest = np.zeros(count)
+    masts = np.array(disturbers.masts, dtype=object)
     for state in STATES:
-        effect, spread = effects[state], np.sqrt(disturbers.variance_db2(state) + rejection**2)
+        effect, decides = effects[state], state_b == (state == "b")
         slope, _ = slope_and_spread(effect, squares[state], by_kind)
-        alike = 1 / (1 + effect.i_over_n)
-        for e in np.flatnonzero(state_b == (state == "b")):
-            common[e] = alike[e]
-            who, power = effect.brought_to(int(e))
-            if not who.size:
-                continue
-            share = slope[e] * power / (effect.i_over_c[e] * effect.carrier[e])
-            order = np.argsort(-share * spread[who])
-            named = [k for k in order[:STRONGEST].tolist() if share[k] * spread[who[k]] >= NAMED_FROM_DB]
-            for place, k in enumerate(named):
-                i, moves = int(who[k]), float(share[k])
-                same_mast = disturbers.masts[i] == disturbers.masts[leader[e]]
-                if same_mast:
-                    path_off[e] += moves * disturbers.path_db[i]
-                    band_off[e] += moves * disturbers.band_db
-                ranks[place].put(int(e), i, moves, disturbers, float(rejection[i]), state, same_mast)
-            left = order[len(named) :]
-            rest[e] = float(np.sqrt(np.sum((share[left] * spread[who[left]]) ** 2)))
+        common = np.where(decides, 1 / (1 + effect.i_over_n), common)
+        ours = decides[company.pairs.wanted]
+        wanted, who = company.pairs.wanted[ours], company.pairs.disturber[ours]
+        share = slope[wanted] * effect.brought[ours] / (effect.i_over_c * effect.carrier)[wanted]
+        moves_db = share * np.sqrt(disturbers.variance_db2(state) + rejection**2)[who]
+        order = np.lexsort((-moves_db, wanted))  # by wanted emission, what moves it most first
+        wanted, who, share, moves_db = wanted[order], who[order], share[order], moves_db[order]
+        place = np.arange(len(wanted)) - np.searchsorted(wanted, wanted)
+        named = (place < STRONGEST) & (moves_db >= NAMED_FROM_DB)
+        rest += np.sqrt(np.bincount(wanted[~named], moves_db[~named] ** 2, count))
+        for number, rank in enumerate(ranks):
+            here = named & (place == number)
+            e, i, moves = wanted[here], who[here], share[here]
+            same_mast = masts[i] == masts[leader[e]]
+            path_off[e] += np.where(same_mast, moves * disturbers.path_db[i], 0.0)
+            band_off[e] += np.where(same_mast, moves * disturbers.band_db, 0.0)
+            rank.put(e, i, moves, disturbers, rejection[i], state, same_mast)
     ids = disturbers.ids
     parts = [part for rank in ranks for part in rank.parts(ear.chain.aerial.id, disturbers)]
     parts.append(ErrorPart(tuple(f"interference:{ids[e]}" for e in range(count)), rest))
@@ -181,12 +181,19 @@ class _Rank:
         self.sd_db = {name: np.zeros(count) for name in ("path", "band", "emission", "erp", "enhancement", "off-axis")}
 
     def put(
-        self, e: int, i: int, moves: float, ones: Disturbers, rejection_db: float, state: State, same_mast: bool
+        self,
+        e: NDArray[np.intp],
+        i: NDArray[np.intp],
+        moves: FloatArray,
+        ones: Disturbers,
+        rejection_db: FloatArray,
+        state: State,
+        same_mast: NDArray[np.bool_],
     ) -> None:
         self.who[e] = i
         # Signs: an interferer above its median lowers the margin.
-        self.sd_db["path"][e] = 0.0 if same_mast else -moves * ones.path_db[i]
-        self.sd_db["band"][e] = 0.0 if same_mast else -moves * ones.band_db
+        self.sd_db["path"][e] = np.where(same_mast, 0.0, -moves * ones.path_db[i])
+        self.sd_db["band"][e] = np.where(same_mast, 0.0, -moves * ones.band_db)
         self.sd_db["emission"][e] = -moves * ones.emission_db
         self.sd_db["erp"][e] = -moves * ones.erp_db[i]
         self.sd_db["enhancement"][e] = -moves * ones.enhancement_db[i] if state == "b" else 0.0

@@ -46,7 +46,13 @@ class TransmitterFileError(AppError, ValueError):
 
 
 class ChainError(AppError, ValueError):
-    """A chain or one of its parts is not possible as described."""
+    """A chain or one of its parts is not possible as described; `part` is the id of that part, if it is one."""
+
+    def __init__(
+        self, message: str, *, field: str | None = None, allowed: str | None = None, part: str | None = None
+    ) -> None:
+        super().__init__(message, field=field, allowed=allowed)
+        self.part = part
 
 
 class ReadingError(AppError, ValueError):

@@ -24,7 +24,7 @@ def findings(posterior: Posterior, chains: Sequence[Chain], assumptions: Assumpt
         mean, sd = (feeder_sd * one for one in posterior.of(key))
         if abs(mean) >= TOLD_FROM_DB and abs(mean) > SURE_SD * sd:
             told.append(
-                f"The run behind the aerial of {chain.name} loses {abs(mean):.1f} ± {sd:.1f} dB "
+                f"The run behind the aerial of {chain.title or chain.name} loses {abs(mean):.1f} ± {sd:.1f} dB "
                 + (
                     "more than its parts should: look for a bad joint, plug or wet lead."
                     if mean < 0

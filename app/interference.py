@@ -13,6 +13,7 @@ ratios decides; a pair without a row takes the row of any pair, and says so.
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass, field
 from functools import cache
 
@@ -96,14 +97,15 @@ def pairs_between(wanted: Spectra, required_cn_db: FloatArray, disturbers: Spect
     steady, tropospheric = np.full(len(i), -np.inf), np.full(len(i), -np.inf)
     rule = np.full(len(i), "", dtype=object)
 
-    systems = sorted({(wanted.system[b], disturbers.system[a]) for a, b in zip(i.tolist(), e.tolist(), strict=True)})
     of_wanted, of_disturber = np.array(wanted.system, dtype=object), np.array(disturbers.system, dtype=object)
     channels = apart / ((disturbers.channel_mhz[i] + wanted.channel_mhz[e]) / 2)
-    for pair in systems:
-        mine = (of_wanted[e] == pair[0]) & (of_disturber[i] == pair[1])
+    analogue = np.zeros(len(i), dtype=bool)  # no spectrum like noise: ratios by MHz alone
+    for pair in itertools.product(sorted(set(wanted.system)), sorted(set(disturbers.system))):
+        mine = (of_wanted == pair[0])[e] & (of_disturber == pair[1])[i]
         table = _table(*pair)
         by_mhz = [row for row in table if row.unit == "MHz"]
         if by_mhz:
+            analogue |= mine
             offsets = [row.offset for row in by_mhz]
             inside = mine & (np.abs(apart) <= offsets[-1] + SAME_MHZ)
             steady[inside] = np.interp(np.abs(apart[inside]), offsets, [row.ratio_db for row in by_mhz])
@@ -119,7 +121,6 @@ def pairs_between(wanted: Spectra, required_cn_db: FloatArray, disturbers: Spect
     relative = [values - required_cn_db[e] for values in (steady, tropospheric)]
 
     share = spectral_share(apart, wanted.occupied_mhz[e], disturbers.occupied_mhz[i])
-    analogue = np.array([bool(_by_mhz(*pair)) for pair in zip(of_wanted[e], of_disturber[i], strict=True)], dtype=bool)
     with np.errstate(divide="ignore"):
         share_db = np.where(analogue, -np.inf, 10 * np.log10(share))
     overlaps = share_db > relative[0]
@@ -194,8 +195,3 @@ def _table(wanted: str, interferer: str) -> tuple[_Ratio, ...]:
         if found:
             return found
     return ()
-
-
-@cache
-def _by_mhz(wanted: str, interferer: str) -> bool:
-    return any(row.unit == "MHz" for row in _table(wanted, interferer))

@@ -27,8 +27,9 @@ def wanted_errors(
         correlation=assumptions.value("path_bearing_correlation"),
         scale_deg=assumptions.value("path_bearing_scale_deg"),
     )
+    aerial_id = chain.aerial.id
     rejection = ErrorPart(
-        tuple(f"off-axis:{chain.aerial.id}:{field.emission.id}" for field in air.fields),
+        tuple(f"off-axis:{aerial_id}:{field.emission.id}" for field in air.fields),
         wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
     )
     return path, (*_parts_of_any_pointing(chain, air, assumptions), rejection)
@@ -56,9 +57,9 @@ def parts_of(
     moved: Moved,
 ) -> tuple[ErrorPart, ...]:
     """Errors of one chain turned one way, each margin in the state that decides it."""
-    ids = [air.fields[e].emission.id for e in moved.leader]
+    aerial_id = chain.aerial.id
     rejection = ErrorPart(
-        tuple(f"off-axis:{chain.aerial.id}:{name}" for name in ids),
+        tuple(f"off-axis:{aerial_id}:{air.fields[e].emission.id}" for e in moved.leader),
         moved.leader_share
         * wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions)[moved.leader],
     )

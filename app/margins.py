@@ -214,8 +214,7 @@ def chance_of_each(
 
 
 def _polarisations(chain: Chain) -> tuple[AerialPolarisation, ...]:
-    given = chain.polarisation or chain.aerial.polarisation
-    return (given,) if given else ("horizontal", "vertical")
+    return (chain.polarisation,) if chain.polarisation else chain.aerial.mountings
 
 
 def _sweep(

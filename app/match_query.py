@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import asdict
-from pathlib import Path
 from typing import Any
 
 from app.chain.match import (
@@ -12,44 +12,54 @@ from app.chain.match import (
     match_over_channels,
     measured_match,
 )
-from app.chain.touchstone import read_touchstone
 from app.channels import centre_mhz
+from app.errors import RequestError
 from app.lists import table
+from app.transmitters.store import Store
+
+Channel = tuple[str, float, float]  # name, centre and bandwidth [MHz]
 
 
-def match_document(
-    file: Path,
-    calibrated: str,
-    pad: str = "none",
-    own_pad: Path | None = None,
-    standard_ohm: float | None = None,
-    raster: str = "europe-uhf-8",
-    channels: tuple[str, ...] = (),
-) -> dict[str, Any]:
+def match_document(measured: Measurement, channels: Sequence[Channel]) -> dict[str, Any]:
     """Match of a measured aerial at 75 ohms over the wanted channels, with what a chain keeps of it.
 
     Raises
     ------
     ChainError
-        A file, calibration or pad that cannot be: named with the mend.
-    ModeError
-        An unknown raster or channel.
+        A calibration or pad that cannot be, or that does not fit the sweep: named with the mend.
     """
-    measured = Measurement(
-        read_touchstone(file),
-        calibrated,  # type: ignore[arg-type]  # measured_match checks the words
-        pad,  # type: ignore[arg-type]
-        None if own_pad is None else read_touchstone(own_pad),
-        standard_ohm,
-    )
     match = measured_match(measured)
-    wanted = [(name, *centre_mhz(raster, name)) for name in channels]
     return {
-        "file": file.name,
+        "file": match.name,
         "caution": MATCH_IS_NOT_GAIN,
-        "channels": [asdict(one) for one in match_over_channels(match, wanted)],
+        "from_mhz": round(float(match.frequency_mhz[0]), 6),
+        "to_mhz": round(float(match.frequency_mhz[-1]), 6),
+        "points": len(match.frequency_mhz),
+        "pad_loss_db": round(float(match.pad_loss_db.mean()), 3),
+        "channels": [asdict(one) for one in match_over_channels(match, channels)],
         "reflection": [[round(f, 6), round(magnitude, 6)] for f, magnitude in match.pairs],
     }
+
+
+def channels_of_raster(raster: str, names: Sequence[str]) -> list[Channel]:
+    """Channels by name; ModeError if the raster has none of that name."""
+    return [(name, *centre_mhz(raster, name)) for name in names]
+
+
+def channels_of_emissions(store: Store, ids: Sequence[str]) -> list[Channel]:
+    """Channels that emissions of the store are on, each once, by frequency.
+
+    Raises
+    ------
+    RequestError
+        An id that the store does not hold.
+    """
+    known = {one.id: one for one in store.emissions()}
+    for ident in ids:
+        if ident not in known:
+            raise RequestError(f'emission "{ident}" is not stored: take ids from /api/emissions', field="emissions")
+    wanted = {(known[one].frequency_mhz, known[one].bandwidth_mhz): known[one].channel for one in ids}
+    return [(name or f"{f:g} MHz", f, bandwidth) for (f, bandwidth), name in sorted(wanted.items())]
 
 
 def told_match(document: dict[str, Any]) -> str:

@@ -111,11 +111,18 @@ def path_document(
             "field_dbuv_m": float(field_strength_dbuv_m(length_km, 1.0)),
             "basic_loss_db": float(basic_loss_db(length_km, frequency_mhz)),
         },
-        "terms": {name: _plain(getattr(digest, name)) for name in (field.name for field in fields(digest))},
+        "terms": {_key(name): _plain(getattr(digest, name)) for name in (field.name for field in fields(digest))},
         "p1546": _p1546_terms(path, frequency_mhz, aerial_agl_m),
         "p1812": _p1812_terms(path, frequency_mhz, polarisation),
         "drawing": _drawing(path, frequency_mhz, antenna_agl_m, aerial_agl_m),
     }
+
+
+def _key(name: str) -> str:
+    """Name of a term with its unit, where the model's own name has none: both still wait for a wavelength."""
+    if name == "clearance":
+        return "clearance_m_per_root_km"
+    return f"{name}_root_m" if "_edge" in name else name
 
 
 def told_path(document: dict[str, Any]) -> str:
@@ -165,7 +172,7 @@ def _p1546_terms(path: Path, frequency_mhz: float, aerial_agl_m: float) -> dict[
         tx_ground_amsl_m=digest.tx_ground_amsl_m,
         rx_ground_amsl_m=digest.rx_ground_amsl_m,
     )
-    terms = {field.name: _plain(getattr(result, field.name)) for field in fields(result)}
+    terms = {_key(field.name): _plain(getattr(result, field.name)) for field in fields(result)}
     return {"time_percent": list(TIMES_PERCENT), **terms}
 
 
@@ -179,7 +186,7 @@ def _p1812_terms(path: Path, frequency_mhz: float, polarisation: str) -> dict[st
         polarisation=polarisation,
         n0=path.n0,
     )
-    terms = {field.name: _plain(getattr(result, field.name)) for field in fields(result)}
+    terms = {_key(field.name): _plain(getattr(result, field.name)) for field in fields(result)}
     return {"time_percent": list(TIMES_PERCENT), **terms}
 
 

@@ -142,8 +142,8 @@ def readings_of(request: AssessRequest, store: Store) -> list[Reading]:
 def evidence_at(place: Place) -> Evidence:
     """Return what the readings of a request leave of the errors; nothing without readings."""
     readings = readings_of(place.request, place.store)
-    if not readings:
-        return Evidence((), None)
+    if not readings or not (place.heard.air.fields or place.request.readings):
+        return Evidence((), None)  # kept ones wait until something is in reach
     if not place.heard.air.fields:
         raise ReadingError(
             "readings cannot be compared: nothing in reach can be predicted here; they are kept", field="readings"

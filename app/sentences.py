@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Literal
 
@@ -57,8 +58,9 @@ def _line(story: PathStory) -> str:
     if story.kind == "clear":
         return f"a clear line: it passes {-into_m:.0f} m over {_under(story)} at its tightest"
     if story.kind == "grazing":
-        share = f"{story.clearance_ratio:.1f} of the first Fresnel radius"
-        return f"in sight but tight: only {-into_m:.0f} m over {_under(story)}, {share}"
+        # Never rounded up to where a line counts as clear.
+        share = f"{math.floor(100 * story.clearance_ratio) / 100:g} of the first Fresnel radius"
+        return f"in sight but tight: only {abs(into_m):.0f} m over {_under(story)}, {share}"
     return f"blocked: {what} {into_m:.0f} m into the line"
 
 

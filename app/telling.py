@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
+from app.request import NOTHING
 from app.site import place
 
-LEAST_CHANGE = 0.05  # of a chance: less is no change to a person
+LEAST_CHANGE = 0.05  # of a chance, and of a number of multiplexes: less is no change to a person
 RODS = {"horizontal": "rods flat", "vertical": "rods upright"}
 
 
 def chance_words(chance: float) -> str:
-    """Write a chance as people weigh it; never certain, never impossible."""
+    """Write a chance as people weigh it; never certain, never impossible, never on the wrong side of a grade."""
     if chance >= 0.99:
         return "99 in 100"
     if chance >= 0.95:
@@ -21,7 +23,12 @@ def chance_words(chance: float) -> str:
         return "1 in 100"
     if chance < 0.075:
         return "1 in 20"
-    return f"{min(9, max(1, round(chance * 10)))} in 10"
+    # Just below where the words open and likely begin, the nearest tenth would say more than the word.
+    if 0.25 <= chance < 0.30:
+        return "1 in 4"
+    if 0.65 <= chance < 0.70:
+        return "2 in 3"
+    return f"{min(9, max(1, math.floor(chance * 10 + 0.5)))} in 10"
 
 
 def count_words(count: float) -> str:
@@ -32,6 +39,34 @@ def count_words(count: float) -> str:
         return "less than 1"
     whole = round(count)
     return f"about {whole}" if abs(count - whole) <= 0.25 else f"{int(count)} to {int(count) + 1}"
+
+
+def has_moved(before: Mapping[str, Any] | None, after: Mapping[str, Any] | None) -> bool:
+    """Whether a person would call two cells of a multiplex different; None: no aerial."""
+    step = abs((after["chance"] if after else 0.0) - (before["chance"] if before else 0.0))
+    return step >= LEAST_CHANGE or (before is not None and before["grade"] != (after or {}).get("grade"))
+
+
+def change_words(multiplexes: Sequence[Mapping[str, Any]], verdict: Mapping[str, Any]) -> str:
+    """Say what the candidate changes in all, so that it fits the table of what changes."""
+    extra, bare = verdict["expected_extra"], verdict["baseline"] == NOTHING
+    pairs = [(one["chains"].get(verdict["baseline"]), one["chains"].get(verdict["candidate"])) for one in multiplexes]
+    steps = [
+        (after["chance"] if after else 0.0) - (before["chance"] if before else 0.0)
+        for before, after in pairs
+        if has_moved(before, after)
+    ]
+    up, down = any(step > 0 for step in steps), any(step < 0 for step in steps)
+    if abs(extra) < LEAST_CHANGE:
+        return "gains and loses alike" if up and down else "adds next to nothing" if steps else "adds nothing"
+    if extra < 0:
+        return f"loses {count_words(-extra)}{' on balance' if up else ''}"
+    return f"{'brings' if bare else 'adds'} {count_words(extra)}{' on balance' if down else ''}"
+
+
+def none_is_worth_it(verdicts: Sequence[Mapping[str, Any]]) -> bool:
+    """Whether there were several candidates and none pays."""
+    return len(verdicts) > 1 and all(one["answer"] == "not worth it" for one in verdicts)
 
 
 def told(answer: Mapping[str, Any]) -> str:
@@ -50,6 +85,8 @@ def _lines(answer: Mapping[str, Any]) -> Iterator[str]:
     if not answer["multiplexes"]:
         yield "No multiplex can be predicted here."
     verdicts = answer["verdicts"]
+    if none_is_worth_it(verdicts):
+        yield f"None of the {len(verdicts)} is worth it here; the one that comes nearest stands first."
     for verdict in verdicts:
         yield sentence(answer, verdict)
     if verdicts:
@@ -75,15 +112,13 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
     total = len(answer["multiplexes"])
     baseline, candidate = verdict["baseline"], verdict["candidate"]
     currency = answer["chains"][candidate]["currency"]
-    extra, price, limit = verdict["expected_extra"], verdict["price_difference"], verdict["break_even_price"]
+    price, limit = verdict["price_difference"], verdict["break_even_price"]
     today = (
         "Nothing is up today."
         if baseline not in answer["chains"]
         else f"{baseline}: {count_words(answer['chains'][baseline]['expected_count'])} of {total}."
     )
-    adds = f"loses {count_words(-extra)}" if extra <= -0.05 else f"adds {count_words(extra)}"
-    if extra >= -0.05 and extra < 0.05:
-        adds = "adds nothing"
+    adds = change_words(answer["multiplexes"], verdict)
     cost = "its price is not known" if price is None else f"for {price:.0f} {currency}"
     word = verdict["answer"] or "no answer without a price"
     even = f", break-even {limit:.0f} {currency}" if limit >= 0.5 else " at any price"
@@ -125,10 +160,8 @@ def _table(answer: Mapping[str, Any], names: Sequence[str]) -> Iterator[str]:
     for multiplex in answer["multiplexes"]:
         cells = [multiplex["chains"][name] for name in names if name in multiplex["chains"]]
         words = [f"{chance_words(cell['chance'])} {cell['grade']}" for cell in cells]
-        chances = [cell["chance"] for cell in cells]
-        moved = len(cells) > 1 and (
-            max(chances) - min(chances) >= LEAST_CHANGE or len({cell["grade"] for cell in cells}) > 1
-        )
+        words = [_told_apart(words[0], each, cells[0], cell) for each, cell in zip(words, cells, strict=True)]
+        moved = any(has_moved(cells[0], cell) for cell in cells[1:])
         if moved or len(cells) == 1:
             rows.append([multiplex["name"], *words])
         elif words:
@@ -141,6 +174,13 @@ def _table(answer: Mapping[str, Any], names: Sequence[str]) -> Iterator[str]:
         )
     if unchanged:
         yield f"{len(unchanged)} unchanged: {', '.join(unchanged)}"
+
+
+def _told_apart(now: str, words: str, before: Mapping[str, Any], after: Mapping[str, Any]) -> str:
+    """Words of a cell; where they are those of today but the chance has moved, which way."""
+    if words != now or not has_moved(before, after):
+        return words
+    return f"{words}, {'better' if after['chance'] > before['chance'] else 'worse'}"
 
 
 def _roof_lines(answer: Mapping[str, Any], verdicts: Sequence[Mapping[str, Any]]) -> Iterator[str]:

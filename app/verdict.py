@@ -20,6 +20,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from app.bill import Line, bill, total
 from app.chain.parts import Chain
 from app.chance import DRAWS
 from app.reading_value import MeasureNext, Readable, most_valuable
@@ -37,7 +38,7 @@ SAME_CHANCE = 0.02  # chances this close are the same to a person
 HELP = {
     "noise": "gain helps",
     "time": "gain helps on bad nights",
-    "interference": "directivity, not gain, cures it, and an amplifier does not",
+    "interference": "directivity cures it, gain or an amplifier alone does little",
     "overload": "less gain helps, an amplifier harms",
 }
 
@@ -69,7 +70,8 @@ class Verdict:
     chance_of_gain: float
     expected_extra: float
     expected_extra_error: float  # standard error of the samples
-    price_difference: float | None
+    price_difference: float | None  # sum of the bill
+    bill: tuple[Line, ...]
     price_per_extra: float | None
     break_even_price: float
     gained: tuple[str, ...]
@@ -94,20 +96,6 @@ def wanted_multiplexes(multiplexes: Sequence[str], outcomes: Sequence[Outcome]) 
     return list(_named(multiplexes, counts))
 
 
-def price_difference(candidate: Chain | None, baseline: Chain | None, baseline_is_up: bool) -> float | None:
-    """What changing to the candidate costs; parts, labour and visit. What is already up costs nothing.
-
-    None where a price is missing. A candidate that is the baseline costs nothing.
-    """
-    if candidate is None or candidate == baseline:
-        return 0.0
-    if baseline_is_up:
-        kept = {part.id for part in baseline.parts} if baseline else set()
-        return candidate.price_without(kept)
-    base = 0.0 if baseline is None else baseline.price
-    return None if candidate.price is None or base is None else candidate.price - base
-
-
 def compare(
     candidate: Outcome,
     baseline: Outcome,
@@ -130,7 +118,8 @@ def compare(
     # The expectation is that of the chances; the joint samples are moved by what they miss of it.
     expected_extra = float((candidate.chance[counted] - baseline.chance[counted]).sum())
     missed = expected_extra - float(extra.mean())
-    price = price_difference(candidate.chain, baseline.chain, baseline_is_up)
+    lines = bill(candidate.chain, baseline.chain, baseline_is_up)
+    price = total(lines)
     worth = None if price is None else worth_per_multiplex * expected_extra - price
     measure = (
         None
@@ -152,6 +141,7 @@ def compare(
         expected_extra=expected_extra,
         expected_extra_error=float(extra.std() / np.sqrt(DRAWS)),
         price_difference=price,
+        bill=lines,
         price_per_extra=None if price is None or expected_extra <= 0 else price / expected_extra,
         break_even_price=worth_per_multiplex * expected_extra,
         gained=_named(multiplexes, (after - before > GAIN_STEP) & (after >= HAVE)),
@@ -186,15 +176,15 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
         return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
-    held = "; ".join(
-        f"{limit} holds back {count} of {len(missing)}, {HELP.get(limit, 'see the ledger')}"
-        for limit, count in limits.most_common()
+    held = ", ".join(
+        f"{limit} holds back {count} ({HELP.get(limit, 'see step by step')})" for limit, count in limits.most_common()
     )
+    held = f"{len(missing)} of {len(wanted)} wanted {'is' if len(missing) == 1 else 'are'} not likely today: {held}"
     if baseline.chain is None:
-        held = f"nothing is up today for {len(missing)} wanted"
+        held = f"Nothing is up today for {len(missing)} wanted"
     if not cured:
-        return f"{_capital(held)}; {candidate.title} does not bring any of them to a likely chance."
-    return f"{_capital(held)}; {candidate.title} brings {len(cured)} of them to a likely chance."
+        return f"{held}; {candidate.title} makes none of them likely."
+    return f"{held}; {candidate.title} makes {len(cured)} of them likely."
 
 
 def _cheapest_equal(
@@ -205,7 +195,7 @@ def _cheapest_equal(
     baseline_is_up: bool,
 ) -> str | None:
     def price(outcome: Outcome) -> float | None:
-        return price_difference(outcome.chain, baseline.chain, baseline_is_up)
+        return total(bill(outcome.chain, baseline.chain, baseline_is_up))
 
     own = price(candidate)
     as_good: Mapping[str, float] = {
@@ -220,7 +210,3 @@ def _cheapest_equal(
 
 def _named(multiplexes: Sequence[str], which: BoolArray) -> tuple[str, ...]:
     return tuple(name for name, yes in zip(multiplexes, which, strict=True) if yes)
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]

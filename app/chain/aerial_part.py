@@ -66,6 +66,22 @@ class Aerial(Part):
         within(self, "front_to_back_db", self.front_to_back_db, 0, 60, "dB")
         self._check_pattern()
 
+    @property
+    def mountings(self) -> tuple[AerialPolarisation, ...]:
+        """How the rods may stand: as stated, else as the pattern was measured, else either way."""
+        if self.polarisation is not None:
+            return (self.polarisation,)
+        measured = {cut.polarisation for cut in self.cuts if not cut.is_cross}
+        return tuple(one for one in AERIAL_POLARISATIONS if not measured or None in measured or one in measured)
+
+    def check_mounting(self, polarisation: AerialPolarisation) -> None:
+        """Refuse rods that stand otherwise than in any cut of a measured pattern."""
+        measured = {cut.polarisation for cut in self.cuts if not cut.is_cross}
+        if measured and None not in measured and polarisation not in measured:
+            listed = " or ".join(str(one) for one in measured)
+            came = f"its pattern was measured with the rods {listed} only, and they are to stand {polarisation}"
+            refuse(self, came, "mount it as it was measured, or add the cut", "pattern")
+
     def _check_gain(self) -> None:
         rising(self, "gain_dbd", self.gain_dbd, "[frequency_mhz, gain_dbd]", (30, 6000, "MHz"), "gain")
         for _, gain_dbd in self.gain_dbd:
@@ -106,6 +122,8 @@ class Aerial(Part):
             for cut in self.cuts:
                 checked_cut(name, cut.angle_deg, cut.loss_db, frequency_mhz=cut.frequency_mhz)
             checked_pattern(name, self.cuts)
+            if self.polarisation is not None:
+                self.check_mounting(self.polarisation)
         if self.pattern != "class":
             return
         if self.beamwidth_deg == 360 and self.front_to_back_db != 0:

@@ -60,13 +60,17 @@ class Part:
 
 
 def called(what: Named) -> str:
-    """Kind and name, as a message calls it."""
-    return f'{getattr(what, "kind", "chain")} "{what.name}"'
+    """Kind and name, as a message calls it; a chain by its title."""
+    return f'{getattr(what, "kind", "chain")} "{getattr(what, "title", "") or what.name}"'
+
+
+def _id(what: Named) -> str | None:
+    return getattr(what, "id", None)
 
 
 def refuse(what: Named, came: str, mend: str, field: str) -> NoReturn:
     """Raise the ChainError that names the part, what is wrong with it and the mend."""
-    raise ChainError(f"{called(what)}: {came}: {mend}", field=field)
+    raise ChainError(f"{called(what)}: {came}: {mend}", field=field, part=_id(what))
 
 
 def within(what: Named, key: str, value: float, lowest: float, highest: float, unit: str) -> None:
@@ -76,6 +80,7 @@ def within(what: Named, key: str, value: float, lowest: float, highest: float, u
             f"{called(what)}: {key} {value:g} is not possible: use {lowest:g} to {highest:g} {unit}",
             field=key,
             allowed=f"{lowest:g} to {highest:g}",
+            part=_id(what),
         )
 
 
@@ -92,6 +97,7 @@ def one_of(what: Named, key: str, value: str, allowed: Collection[str]) -> None:
             f'{called(what)}: {key} "{value}" is not known: use {", ".join(word or chr(34) * 2 for word in allowed)}',
             field=key,
             allowed=", ".join(allowed),
+            part=_id(what),
         )
 
 

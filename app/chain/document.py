@@ -83,11 +83,19 @@ def chain_from_document(document: object) -> Chain:
     Raises
     ------
     ChainError
-        The part, what came, what is allowed and what to do; `field` is the place in the document.
+        The chain, the part, what came, what is allowed and what to do; `field` is the place in the document.
     """
     if not isinstance(document, Mapping):
         raise ChainError(f"a chain is a table of keys and values, not {_came(document)}: give at least name and parts")
-    what = f'chain "{document.get("name") or ""}"'
+    what = f'chain "{document.get("title") or document.get("name") or ""}"'
+    try:
+        return _chain(document, what)
+    except ChainError as error:
+        message = error.message if error.message.startswith('chain "') else f"{what}: {error.message}"
+        raise ChainError(message, field=_place(document, error), allowed=error.allowed, part=error.part) from error
+
+
+def _chain(document: Mapping[Any, Any], what: str) -> Chain:
     _known_keys(document, CHAIN_KEYS, what, "")
     values = _values(Chain, document, what, "", skip=("parts",))
     parts = document.get("parts")
@@ -95,6 +103,14 @@ def chain_from_document(document: object) -> Chain:
         raise ChainError(f"{what}: parts is {_came(parts)}: give a list of parts, the aerial first", field="parts")
     read = tuple(_part(part, index) for index, part in enumerate(parts))
     return Chain(parts=read, **values)
+
+
+def _place(document: Mapping[Any, Any], error: ChainError) -> str | None:
+    """Place in the document of what an error is about, also where the parts did not go together."""
+    if error.part is None or not error.field or "[" in error.field:
+        return error.field
+    ids = [part.get("id") for part in document["parts"]]
+    return f"parts[{ids.index(error.part)}].{error.field}" if error.part in ids else error.field
 
 
 def chain_to_document(chain: Chain) -> dict[str, Any]:
@@ -195,7 +211,8 @@ def _part(document: object, index: int) -> Part:
     try:
         return kind(**values)
     except ChainError as error:
-        raise ChainError(error.message, field=f"{place}.{error.field}", allowed=error.allowed) from error
+        place = f"{place}.{error.field}"
+        raise ChainError(error.message, field=place, allowed=error.allowed, part=error.part) from error
 
 
 def _known_keys(document: Mapping[Any, Any], allowed: Sequence[str], what: str, place: str) -> None:

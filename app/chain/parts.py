@@ -8,7 +8,7 @@ free port. The receiver at the end stands for the set behind every outlet that h
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterable
+from collections.abc import Iterable
 from dataclasses import dataclass, field
 
 from app.chain.aerial_part import AERIAL_POLARISATIONS, Aerial, AerialPolarisation
@@ -108,6 +108,8 @@ class Chain:
             within(self, "pointing_deg", self.pointing_deg, 0, 360, "degrees from true north")
         if self.polarisation is not None:
             one_of(self, "polarisation", self.polarisation, AERIAL_POLARISATIONS)
+            if self.parts and isinstance(self.parts[0], Aerial):
+                self.parts[0].check_mounting(self.polarisation)
         object.__setattr__(self, "tree", tree_of(self, self.parts))
         if self.deciding_outlet:
             self._outlet(self.deciding_outlet)
@@ -189,14 +191,9 @@ class Chain:
     @property
     def price(self) -> float | None:
         """Parts, labour and visit; 0 for what is already up; None if one of them is missing."""
-        return self.price_without(())
-
-    def price_without(self, kept: Collection[str]) -> float | None:
-        """Return the price if the parts with these ids are up already; None if another one is missing."""
         if self.already_up:
             return 0.0
-        bought = (part.price for part in self.parts if part.id not in kept)
-        return _sum((*bought, self.labour_price, self.visit_price))
+        return _sum((self.parts_price, self.labour_price, self.visit_price))
 
 
 def _sum(prices: Iterable[float | None]) -> float | None:

@@ -19,6 +19,7 @@ FIELD = "pattern"  # of the part, where the page shows a refusal
 LARGEST_GAP_DEG = 15.0  # between measured bearings; an aerial of 30° falls by 3 dB within it
 FEWEST_POINTS = 8
 DEEPEST_DB = 100.0
+HALF_POWER_DB = 3.0
 AXIS_DB = 3.0  # the aerial's axis lies within its main lobe
 
 
@@ -40,6 +41,21 @@ class Cut:
     def at(self, angle_deg: ArrayLike) -> FloatArray:
         """Loss at angles from the axis, elementwise: linear in dB between the bearings measured, all round."""
         return np.asarray(np.interp(np.asarray(angle_deg, dtype=float), self.angle_deg, self.loss_db, period=360))
+
+    @property
+    def beamwidth_deg(self) -> float:
+        """Angle between the half-power points of the main lobe [deg], to 0.1; 360 if it nowhere falls so far."""
+        strongest = self.angle_deg[int(np.argmin(self.loss_db))]
+        away = np.arange(0, 1801) / 10
+        sides = [self.at(strongest + side * away) - min(self.loss_db) >= HALF_POWER_DB for side in (-1, 1)]
+        if not all(side.any() for side in sides):
+            return 360.0
+        return round(float(sum(away[int(np.argmax(side))] for side in sides)), 1)
+
+    @property
+    def back_db(self) -> float:
+        """Least loss within 60 degrees of the back [dB]: the trade's front-to-back ratio (practice, no source)."""
+        return round(float(self.at(np.arange(120, 241)).min() - min(self.loss_db)), 1)
 
 
 @dataclass(frozen=True)

@@ -64,7 +64,7 @@ def _check_ids(chain: Named, parts: Sequence[Part]) -> None:
     seen: set[str] = set()
     for part in parts:
         if part.id in seen:
-            came = f'id "{part.id}" appears twice in chain "{chain.name}"'
+            came = f'id "{part.id}" appears twice'
             refuse(part, came, "give each part its own id", "id")
         seen.add(part.id)
 

@@ -15,12 +15,11 @@ from app.report.masts import bearing_words, channel_words, masts_that_matter
 from app.request import NOTHING, AssessRequest
 from app.site import place
 from app.stored_chains import stored_chain
-from app.telling import RODS, chance_words, count_words
+from app.telling import RODS, chance_words, change_words, count_words, has_moved, none_is_worth_it
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
 Document = dict[str, Any]
-LEAST_CHANGE = 0.05
 KIND_WORDS = {"level": "dB(µV)", "cn": "dB C/N", "mer": "dB MER"}
 
 
@@ -116,19 +115,16 @@ def _decision(answer: Document, verdict: Document | None) -> str:
     if verdict is None:
         return "There is one chain only: nothing to compare it with."
     candidate = answer["chains"][verdict["candidate"]]
-    extra, price = verdict["expected_extra"], verdict["price_difference"]
+    price = verdict["price_difference"]
     bare = verdict["baseline"] == NOTHING
     today = (
         "Nothing is up today."
         if bare
         else f"Today {count_words(answer['chains'][verdict['baseline']]['expected_count'])} of {total}."
     )
-    if abs(extra) < LEAST_CHANGE:
-        change = f"{candidate['title']} adds nothing"
-    elif extra < 0:
-        change = f"{candidate['title']} loses {count_words(-extra)}"
-    else:
-        change = f"{candidate['title']} {'brings' if bare else 'adds'} {count_words(extra)}"
+    if none_is_worth_it(answer["verdicts"]):
+        today += f" None of the {len(answer['verdicts'])} ideas is worth it."
+    change = f"{candidate['title']} {change_words(answer['multiplexes'], verdict)}"
     cost = "; its price is not known" if price is None else f" for {_money(price, candidate['currency'])}"
     limit = max(0.0, verdict["break_even_price"])
     word = verdict["answer"] or "no answer without a price"
@@ -182,9 +178,8 @@ def _changes(answer: Document, names: Sequence[str]) -> tuple[list[Document], li
     for multiplex in answer["multiplexes"]:
         cells = [multiplex["chains"].get(name) for name in names]
         chances = [cell["chance"] if cell else 0.0 for cell in cells]
-        grades = {cell["grade"] if cell else None for cell in cells}
         words = [f"{chance_words(cell['chance'])} {cell['grade']}" if cell else "no aerial" for cell in cells]
-        if max(chances) - min(chances) >= LEAST_CHANGE or len(grades) > 1:
+        if any(has_moved(cells[0], cell) for cell in cells[1:]):
             emission = _emission(answer, next(cell["emission"] for cell in reversed(cells) if cell))
             origin = f"{channel_words(emission)} from {emission['transmitter_name']}"
             changed.append((chances, {"name": multiplex["name"], "from": origin, "cells": words}))

@@ -15,7 +15,7 @@ from app.web.context import Context
 from app.web.errors import add_error_handlers
 from app.web.guard import Guard
 from app.web.query import known_query
-from app.web.routes import air, assess, kept, pages, places, proposals, readings, report, tiles
+from app.web.routes import air, assess, kept, measured, pages, places, proposals, readings, report, tiles
 from terrain.mosaic import Ground
 
 
@@ -32,7 +32,7 @@ def create_app(store: Store, ground: Ground, settings: Settings | None = None) -
         dependencies=[Depends(known_query)],
     )
     app.state.context = Context(store, ground, settings)
-    for part in (assess, air, proposals, kept, places, readings, report, tiles, pages):
+    for part in (assess, air, proposals, measured, kept, places, readings, report, tiles, pages):
         app.include_router(part.router)
     app.mount("/static", StaticFiles(directory=static_dir()), name="static")
     add_error_handlers(app)

@@ -7,8 +7,10 @@ by Roof, AssessRequest and the chain itself, so that the command line says the s
 from __future__ import annotations
 
 import math
+from base64 import b64decode
 from collections.abc import Iterator
 from contextlib import contextmanager
+from dataclasses import replace
 from typing import Annotated, Any, Literal
 
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, ValidationInfo, model_validator
@@ -16,10 +18,12 @@ from pydantic_core import PydanticCustomError
 
 from app.block_query import BlockQuestion
 from app.chain.document import chain_from_document
+from app.chain.parts import Chain
 from app.chain.windows import DEFAULT_STANDARD
 from app.cheapest import Wish
-from app.errors import AppError
+from app.errors import AppError, RequestError
 from app.kept_readings import readings_of_documents
+from app.measured_files import Upload
 from app.request import AssessRequest
 from app.roof import Obstacle, Roof, Surroundings
 from app.sweeps import HEIGHTS_M
@@ -103,6 +107,17 @@ class RoofIn(Strict):
             )
 
 
+def _chains(sent: list[Name | ChainDocument] | None) -> tuple[str | Chain, ...] | None:
+    """Return names and chains as they were sent; an error says by its place which one is wrong."""
+    if sent is None:
+        return None
+    read: list[str | Chain] = []
+    for place, one in enumerate(sent):
+        with errors_at(f"chains[{place}]"):
+            read.append(one if isinstance(one, str) else chain_from_document(one))
+    return tuple(read)
+
+
 class AssessIn(Strict):
     """The question: a roof, and what to compare there."""
 
@@ -126,16 +141,11 @@ class AssessIn(Strict):
         """Return the question that the planner answers; the arguments stand in for what was not said."""
         roof = self.roof.roof()
         readings, _ = readings_of_documents(list(self.readings), store, roof.latitude_deg, roof.longitude_deg)
-        chains = (
-            None
-            if self.chains is None
-            else tuple(one if isinstance(one, str) else chain_from_document(one) for one in self.chains)
-        )
         return AssessRequest(
             roof=roof,
             readings=tuple(readings),
             stored_readings=self.stored_readings,
-            chains=chains,
+            chains=_chains(self.chains),
             now=self.now,
             wanted=None if self.wanted is None else tuple(self.wanted),
             worth_per_multiplex=worth_per_multiplex if self.worth_per_multiplex is None else self.worth_per_multiplex,
@@ -171,9 +181,7 @@ class AtRoofIn(Strict):
         """Return the question as `assess` takes it."""
         return AssessRequest(
             roof=self.roof.roof(),
-            chains=None
-            if self.chains is None
-            else tuple(one if isinstance(one, str) else chain_from_document(one) for one in self.chains),
+            chains=_chains(self.chains),
             wanted=None if self.wanted is None else tuple(self.wanted),
             availability_percent=self.availability_percent,
             reach_km=self.reach_km,
@@ -196,6 +204,11 @@ class CheapestIn(AtRoofIn):
     labour_price: float = 0.0
     visit_price: float = 0.0
     currency: Name = "EUR"
+    worth_per_multiplex: float | None = None
+
+    def assess_request(self) -> AssessRequest:
+        """Return the question as `assess` takes it, with what one more multiplex is worth."""
+        return replace(super().assess_request(), worth_per_multiplex=self.worth_per_multiplex)
 
     def wish(self) -> Wish:
         """Return what the chain has to be."""
@@ -218,6 +231,40 @@ class BlockIn(AtRoofIn):
         return BlockQuestion(
             self.outlets, self.layout, self.longest_m, self.shortest_m, self.aerial, self.standard, self.name
         )
+
+
+class FileIn(Strict):
+    """A file as it is: its bytes in base64, so that any encoding of its text arrives."""
+
+    name: Name
+    base64: str
+
+    def upload(self, place: str) -> Upload:
+        """Return name and bytes; RequestError if it is no base64."""
+        try:
+            return Upload(self.name, b64decode(self.base64, validate=True))
+        except ValueError as error:
+            came = f"{place}.base64 cannot be read: send the bytes of {self.name} in base64"
+            raise RequestError(came, field=f"{place}.base64", allowed="base64") from error
+
+
+class MatchIn(Strict):
+    """A sweep of an aerial's terminals, and what hung before it."""
+
+    sweep: FileIn = Field(description="Touchstone, .s1p")
+    calibrated: Literal["behind-pad", "before-pad"]
+    pad: Literal["none", "minimum-loss", "series-25", "own"] = "none"
+    own_pad: FileIn | None = Field(None, description="Touchstone, .s2p, port 1 at the analyser")
+    standard_ohm: float | None = Field(None, description="load used in calibration; null: as the file says")
+    emissions: list[Name] = Field([], max_length=1000, description="ids of stored emissions whose channels are wanted")
+    raster: Name = "europe-uhf-8"
+    channels: list[Name] = Field([], max_length=200, description="channels of the raster")
+
+
+class PatternIn(Strict):
+    """A measured pattern."""
+
+    file: FileIn
 
 
 class SavedRoofIn(Strict):

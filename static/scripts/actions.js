@@ -15,6 +15,11 @@ export function createActions(api, store, assess) {
   const height = () => /** @type {any} */ (parseHeight(store.get().height, store.get().units)).height ?? 10;
   const encoded = encodeURIComponent;
 
+  /** What another press or another window has taken away already is gone as it should be. @param {string} path */
+  async function gone(path) {
+    await api.remove(path).catch((error) => { if (error.status !== 404) throw error; });
+  }
+
   async function chainsAgain() {
     const { chains } = await api.read('/api/chains');
     store.set({ chains });
@@ -23,6 +28,27 @@ export function createActions(api, store, assess) {
   async function roofsAgain() {
     const { roofs } = await api.read('/api/roofs');
     store.set({ kept: roofs });
+  }
+
+  /** The roof and what is asked of it, for a question about its chains. @param {string} why the roof is needed */
+  function atRoof(why) {
+    const { roof, settings, assumptions } = store.get();
+    if (!roof) throw new Error(`Place the roof first: ${why}.`);
+    const { worth_per_multiplex, reading_cost, ...asked } = settings;
+    const { roof: whole } = question(store.get(), height());
+    return { ...asked, roof: whole, ...(Object.keys(assumptions).length ? { assumptions } : {}) };
+  }
+
+  /** Takes a proposed chain as idea 1, under a name of its own; one that was taken before is shown again. @param {any} chain @param {string} stem */
+  async function take(chain, stem) {
+    const { chains, edits } = store.get();
+    const same = edits.find((one) => one.title === chain.title && JSON.stringify(one.parts) === JSON.stringify(chain.parts));
+    const taken = new Set([...(chains ?? []), ...edits].map((one) => one.name));
+    let name = stem;
+    for (let number = 2; taken.has(name); number += 1) name = `${stem}-${number}`;
+    if (same) store.set({ idea: same.name, opened: same.name });
+    else store.set({ edits: [...edits, { ...chain, name }], idea: name, opened: name });
+    await assess();
   }
 
   /** Answers at the pinned places, one after the other. */
@@ -66,7 +92,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} id */
     async forget(id) {
-      await api.remove(`/api/readings/${encoded(id)}`);
+      await gone(`/api/readings/${encoded(id)}`);
       await assess();
     },
     /** A reading that surprised was looked at again. @param {any} item */
@@ -88,7 +114,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} name */
     async removeChain(name) {
-      await api.remove(`/api/chains/${encoded(name)}`);
+      await gone(`/api/chains/${encoded(name)}`);
       const { now, idea, second, edits } = store.get();
       store.set({ edits: edits.filter((one) => one.name !== name), now: now === name ? 'nothing' : now, idea: idea === name ? null : idea, second: second === name ? null : second });
       await chainsAgain();
@@ -96,17 +122,22 @@ export function createActions(api, store, assess) {
     },
     /** @param {any} answers of a block of flats */
     async block(answers) {
-      const { roof, settings } = store.get();
-      if (!roof) throw new Error('Place the roof first: what arrives there decides what the block needs.');
-      const taken = new Set([...(store.get().chains ?? []), ...store.get().edits].map((one) => one.name));
-      let name = 'block';
-      for (let number = 2; taken.has(name); number += 1) name = `block-${number}`;
-      const { worth_per_multiplex, reading_cost, ...asked } = settings;
-      const made = await api.post('/api/block', { ...asked, roof: { ...roof, aerial_agl_m: height() }, ...answers, name });
-      store.set({ edits: [...store.get().edits, made.chain], idea: made.chain.name });
-      await assess();
+      const made = await api.post('/api/block', { ...atRoof('what arrives there decides what the block needs'), ...answers });
+      await take(made.chain, 'block');
       return made;
     },
+    /** @param {any} wish */
+    cheapest(wish) {
+      const { chains, settings: { worth_per_multiplex } } = store.get();
+      const more = { currency: chains?.[0]?.currency ?? 'EUR', ...(worth_per_multiplex === undefined ? {} : { worth_per_multiplex }) };
+      return api.post('/api/cheapest', { ...atRoof('what arrives there decides which chain does'), ...wish, ...more });
+    },
+    /** @param {any} chain */
+    take: (chain) => take(chain, 'cheapest'),
+    /** @param {any} body */
+    match: (body) => api.post('/api/match', { ...body, emissions: (store.get().answer?.emissions ?? []).slice(0, 1000).map((one) => one.id) }),
+    /** @param {any} body */
+    pattern: (body) => api.post('/api/pattern', body),
 
     /** @param {string} name @param {boolean} over whatever another window kept meanwhile */
     async keepRoof(name, over) {
@@ -128,7 +159,7 @@ export function createActions(api, store, assess) {
     },
     /** @param {string} id */
     async forgetRoof(id) {
-      await api.remove(`/api/roofs/${encoded(id)}`);
+      await gone(`/api/roofs/${encoded(id)}`);
       if (store.get().saved?.id === id) store.set({ saved: null });
       await roofsAgain();
     },

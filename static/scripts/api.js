@@ -1,5 +1,7 @@
 /** The only module that asks the server. */
 
+import { asSentence } from './units.js';
+
 /** An answer that is no answer: what came, what is allowed, what to do next. */
 export class ApiError extends Error {
   /**
@@ -42,13 +44,7 @@ async function ask(path, options, send) {
   }
   if (response.ok) return body;
   const error = body.error ?? {};
-  throw new ApiError(sentence(error.message ?? `status ${response.status}`), { ...error, status: response.status });
-}
-
-/** @param {string} text @returns {string} with a capital and a full stop */
-function sentence(text) {
-  const whole = text.charAt(0).toUpperCase() + text.slice(1);
-  return /[.!?]$/.test(whole) ? whole : `${whole}.`;
+  throw new ApiError(asSentence(error.message ?? `status ${response.status}`), { ...error, status: response.status });
 }
 
 /** @param {typeof fetch} [send] */

@@ -1,8 +1,8 @@
 /** The multiplexes that an idea changes, number first; the others folded away. */
 
 import { make, mark, part } from './dom.js';
-import { cellOf, changes, columns, shownCell, titleOf } from './state.js';
-import { bearingText, chanceText } from './units.js';
+import { cellOf, changes, columns, hasMoved, LEAST_CHANGE, shownCell, stepOf, titleOf, verdictOf } from './state.js';
+import { bearingText, chanceText, dayText } from './units.js';
 
 const DRAWN = 300; // rows beyond these wait behind a button
 
@@ -47,6 +47,9 @@ export function createChanges(element, { choose }) {
     body.replaceChildren(...changed.slice(0, DRAWN).map((multiplex) => line(state, multiplex, names, cell)));
     table.hidden = changed.length === 0;
     empty.hidden = changed.length > 0;
+    empty.textContent = Math.abs(verdictOf(state)?.expected_extra ?? 0) < LEAST_CHANGE
+      ? 'Nothing changes: they bring the same.'
+      : 'No multiplex by itself changes by as much as 1 in 20; what is told above is all of them together.';
     folded.hidden = same.length === 0;
     summary.textContent = `${same.length} unchanged`;
     list.replaceChildren(...same.slice(0, DRAWN).map((multiplex) => make('li', {},
@@ -67,7 +70,7 @@ export function createChanges(element, { choose }) {
       const cell = cellOf(multiplex, name);
       if (!cell) return make('span', { className: 'nothing', textContent: 'no aerial' });
       const chosen = shown?.multiplex.id === multiplex.id && shown.chain === name;
-      const button = make('button', { type: 'button', className: 'cell', 'aria-pressed': chosen }, chance(cell));
+      const button = make('button', { type: 'button', className: 'cell', 'aria-pressed': chosen }, chance(cell, aside(multiplex, names[0], name)));
       Object.assign(button.dataset, { multiplex: multiplex.id, name });
       return button;
     });
@@ -82,13 +85,20 @@ export function createChanges(element, { choose }) {
   return { update };
 }
 
-/** @param {any} cell @returns {HTMLElement} number first, then the word with its mark */
-export function chance(cell) {
+/** Which way a chance has moved whose words are those of today. @param {any} multiplex @param {string} now @param {string} name */
+function aside(multiplex, now, name) {
+  const [before, after] = [cellOf(multiplex, now), cellOf(multiplex, name)];
+  if (!before || before.grade !== after.grade || chanceText(before.chance) !== chanceText(after.chance) || !hasMoved(multiplex, now, name)) return '';
+  return stepOf(multiplex, now, name) > 0 ? 'a little better' : 'a little worse';
+}
+
+/** @param {any} cell @param {string} [more] @returns {HTMLElement} number first, then the word with its mark */
+export function chance(cell, more = '') {
   const limit = ['open', 'doubtful'].includes(cell.grade) ? cell.held_back_by?.limit : null;
   return make('span', { className: 'chance' },
     make('span', { className: 'figure', textContent: chanceText(cell.chance) }),
     make('span', { className: 'grade' }, mark(cell.grade), make('span', { className: 'word', textContent: cell.grade })),
-    make('span', { className: 'held', textContent: limit ? `held back by ${limit}` : '' }));
+    make('span', { className: 'held', textContent: [more, limit ? `held back by ${limit}` : ''].filter(Boolean).join(', ') }));
 }
 
 /** @param {import('./state.js').State} state @param {any} multiplex @param {string} chain */
@@ -96,6 +106,6 @@ function origin(state, multiplex, chain) {
   const emission = state.answer.emissions.find((one) => one.id === cellOf(multiplex, chain)?.emission);
   if (!emission) return '';
   const channel = emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`;
-  const closes = emission.valid_to ? `, closes on ${new Date(`${emission.valid_to}T12:00`).toLocaleDateString()}` : '';
+  const closes = emission.valid_to ? `, closes on ${dayText(emission.valid_to)}` : '';
   return `${channel} from ${emission.transmitter_name}, ${bearingText(emission.bearing_deg)}${closes}`;
 }

@@ -1,8 +1,8 @@
 /** The sentence, its reason, and whatever went wrong. */
 
 import { sentence } from './sentence.js';
-import { titleOf, verdictOf } from './state.js';
-import { moneyText } from './units.js';
+import { isStale, titleOf, verdictOf } from './state.js';
+import { heightText, moneyText } from './units.js';
 
 /**
  * @param {HTMLElement} element
@@ -13,6 +13,8 @@ export function createDecision(element, { place, back }) {
   const reason = /** @type {HTMLElement} */ (element.querySelector('.reason'));
   const terms = /** @type {HTMLElement} */ (element.querySelector('.terms'));
   const trouble = /** @type {HTMLElement} */ (element.querySelector('.trouble'));
+  const notes = /** @type {HTMLElement} */ (element.querySelector('.notes'));
+  const old = /** @type {HTMLElement} */ (element.querySelector('.old'));
   const demo = /** @type {HTMLElement} */ (element.querySelector('.demo'));
   const roofs = /** @type {HTMLElement} */ (element.querySelector('.demo ul'));
   const undo = /** @type {HTMLElement} */ (element.querySelector('.back'));
@@ -22,7 +24,7 @@ export function createDecision(element, { place, back }) {
   /** @param {import('./state.js').State} state */
   function update(state) {
     const verdict = verdictOf(state);
-    const pieces = state.answer ? sentence(state.answer, verdict) : [{ text: invitation(state) }];
+    const pieces = state.answer ? sentence(state.answer, verdict, state.idea !== null) : [{ text: invitation(state) }];
     const now = JSON.stringify(pieces);
     if (now !== shown) {
       // Only a changed sentence is read out.
@@ -37,11 +39,15 @@ export function createDecision(element, { place, back }) {
     element.classList.toggle('asking', state.asking);
     element.classList.toggle('empty', !state.answer);
     element.setAttribute('aria-busy', String(state.asking));
-    reason.textContent = verdict?.reason ?? '';
+    reason.textContent = verdict?.reason ?? (state.answer || state.asking ? '' : 'The answer compares what is up now with every chain that is kept, and says which of them is worth its price here.');
     terms.textContent = verdict ? counted(state, verdict) : '';
     const text = state.trouble?.message ?? '';
     if (trouble.textContent !== text) trouble.textContent = text;
     undo.hidden = state.past === 0;
+    const stale = isStale(state) && !state.asking;
+    document.documentElement.dataset.stale = stale ? 'yes' : 'no'; // every panel of the answer is drawn as an old one
+    old.textContent = stale && state.trouble ? `Not an answer to what is typed now. It is still the one for ${state.asked?.where}, ${inWords(state)}:` : '';
+    if (notes.textContent !== state.notes.join(' ')) notes.textContent = state.notes.join(' ');
     offer(state);
   }
 
@@ -62,10 +68,16 @@ export function createDecision(element, { place, back }) {
 }
 
 /** @param {import('./state.js').State} state */
+function inWords(state) {
+  const { aerial_agl_m } = state.answer.roof;
+  return `aerial at ${heightText(aerial_agl_m, state.units, Number.isInteger(aerial_agl_m) ? 0 : 1)}`;
+}
+
+/** @param {import('./state.js').State} state */
 function invitation(state) {
   if (state.asking) return 'Looking along every path to this roof …';
   if (state.chains?.length === 0) return 'No chain is kept yet: import one, then place the roof.';
-  return 'Where is the roof? Type its position, or click it on the map.';
+  return 'Where is the roof? Type its position above, or click it on the map.';
 }
 
 /** @param {import('./state.js').State} state @param {any} verdict */

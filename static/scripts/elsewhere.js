@@ -3,7 +3,7 @@
 import { button, field, make, part, refill, shape } from './dom.js';
 import { chance } from './changes.js';
 import { columns, shownCell, titleOf, verdictOf } from './state.js';
-import { bearingText, chanceText, countText, heightText, numberText, parseNumber, placeText } from './units.js';
+import { bearingText, chanceText, countText, heightIn, heightText, parseLength, parseNumber, placeText, plainText } from './units.js';
 
 const MOST_PINS = 3;
 const LINES = { 'up now': 'now', 'idea 1': 'first', 'idea 2': 'second' };
@@ -20,6 +20,7 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
   const places = part(element, '.places');
   const pinned = part(element, '.pin');
   const near = part(element, '.obstacles');
+  const problem = part(element, '.problem');
   /** @type {import('./state.js').State} */
   let state;
   pinned.addEventListener('click', pin);
@@ -102,13 +103,29 @@ export function createElsewhere(element, { pin, unpin, go, choose }) {
   }
 
   function obstacles() {
-    const change = (place, key, value) => {
-      const number = parseNumber(value);
-      if (number !== null) choose({ obstacles: state.obstacles.map((one, each) => (each === place ? { ...one, [key]: number } : one)) });
+    const unit = state.units === 'imperial' ? 'ft' : 'm';
+    const [number, length] = [parseNumber, (text) => parseLength(text, state.units)];
+    const boxed = (place, key, label, hint, read) => {
+      const value = state.obstacles[place][key] ?? 0;
+      return field(label, make('input', {
+        type: 'text', inputMode: 'decimal', 'data-key': `${place}-${key}`,
+        value: plainText(read === length ? heightIn(value, state.units) : value, 1),
+        onchange: ({ target }) => {
+          const found = read(target.value);
+          target.toggleAttribute('aria-invalid', found === null);
+          problem.textContent = found === null ? `“${target.value}” is not a number: write ${label.toLowerCase()} such as ${plainText(value, 0)}${read === length ? `, in ${unit}` : ''}.` : '';
+          if (found !== null) choose({ obstacles: state.obstacles.map((one, each) => (each === place ? { ...one, [key]: found } : one)) });
+        },
+      }), hint);
     };
-    const boxed = (place, key, label, unit) => field(label, make('input', { type: 'text', inputMode: 'decimal', value: numberText(state.obstacles[place][key] ?? 0, 0), 'data-key': `${place}-${key}`, onchange: (event) => change(place, key, event.target.value) }), unit);
+    const now = JSON.stringify([state.obstacles, unit]);
+    if (near.dataset.drawn === now) return; // what is being typed stays
+    near.dataset.drawn = now;
+    problem.textContent = '';
     refill(near, ...state.obstacles.map((_, place) => make('li', {},
-      boxed(place, 'bearing_deg', 'Direction', '° true'), boxed(place, 'distance_m', 'Away', 'm'), boxed(place, 'height_agl_m', 'Height', 'm'), boxed(place, 'width_m', 'Width', 'm'), boxed(place, 'leaves_m', 'Leaves to pass', 'm, 0: a wall'),
+      boxed(place, 'bearing_deg', 'Direction', '° true', number), boxed(place, 'distance_m', 'Away', unit, length),
+      boxed(place, 'height_agl_m', 'Height', unit, length), boxed(place, 'width_m', 'Width', unit, length),
+      boxed(place, 'leaves_m', 'Leaves to pass', `${unit}, 0: a wall`, length),
       button('Take it away', () => choose({ obstacles: state.obstacles.filter((_, each) => each !== place) })))));
   }
   return { update };

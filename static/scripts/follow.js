@@ -3,6 +3,8 @@
 import { latest } from './latest.js';
 import { chainsAsked, columns, NOTHING, question, shownCell } from './state.js';
 
+const PAUSE_MS = 400; // that a roof or an obstacle stands still before every height is tried: that takes the server seconds
+
 /**
  * @param {any} api
  * @param {any} store
@@ -10,6 +12,9 @@ import { chainsAsked, columns, NOTHING, question, shownCell } from './state.js';
  */
 export function createFollow(api, store) {
   const had = { path: '', skyline: '', heights: '', steps: '' };
+  let pause = 0;
+  /** The answer that the ledger was asked for: readings and what is on the air change it, too. @type {any} */
+  let stepsOf = null;
   /** Answers at which a question failed: it is not put again before there is another. @type {Record<string, any>} */
   const failed = {};
   const asks = {
@@ -22,9 +27,12 @@ export function createFollow(api, store) {
   /** @param {'path'|'skyline'|'heights'|'steps'} what @param {string} of @param {any} query @param {(found: any) => any} made */
   async function once(what, of, query, made) {
     const { answer } = store.get();
-    if (had[what] === of || failed[what] === answer) return;
+    const another = had[what] !== of;
+    const newer = what === 'steps' && stepsOf !== answer;
+    if (!(another || newer) || failed[what] === answer) return;
     had[what] = of;
-    if (what === 'skyline' || what === 'heights') store.set({ [what]: null });
+    if (what === 'steps') stepsOf = answer;
+    if (another && (what === 'skyline' || what === 'heights')) store.set({ [what]: null });
     try {
       const found = await asks[what](query);
       if (found) store.set({ [what]: made(found) });
@@ -37,6 +45,7 @@ export function createFollow(api, store) {
 
   return (state) => {
     const { answer, sheet } = state;
+    clearTimeout(pause);
     if (!answer || state.asking) return;
     const { latitude_deg, longitude_deg, aerial_agl_m } = answer.roof;
     const place = JSON.stringify([latitude_deg, longitude_deg, aerial_agl_m]);
@@ -64,7 +73,13 @@ export function createFollow(api, store) {
       const chains = chainsAsked(state).filter((one) => names.includes(one.name ?? one));
       const { worth_per_multiplex, reading_cost, readings, now, ...asked } = question(state, aerial_agl_m);
       const { aerial_agl_m: _, ...rest } = asked.roof;
-      void once('heights', JSON.stringify([{ ...asked, roof: rest }, chains]), { ...asked, chains, roof: asked.roof }, (found) => ({ rows: found.height }));
+      const kept = (state.chains ?? []).map((one) => one.updated); // and what is on the air: both may change under the same names
+      const of = JSON.stringify([{ ...asked, roof: rest }, chains, kept, answer.emissions.map((one) => one.id)]);
+      const ask = { ...asked, chains, roof: asked.roof };
+      if (had.heights !== of) {
+        if (state.heights) store.set({ heights: null });
+        pause = window.setTimeout(() => void once('heights', of, ask, (found) => ({ rows: found.height })), PAUSE_MS);
+      }
     }
   };
 }

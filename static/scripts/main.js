@@ -3,9 +3,13 @@
 import { createActions } from './actions.js';
 import { createApi } from './api.js';
 import { createAssumptions } from './assumptions.js';
+import { createBill } from './bill.js';
+import { createBlock } from './block.js';
 import { createCautions } from './cautions.js';
+import { placeOfTrouble } from './chain_edits.js';
 import { createChains } from './chains.js';
 import { createChanges } from './changes.js';
+import { createCheapest } from './cheapest.js';
 import { createDecision } from './decision.js';
 import { createDownloads } from './downloads.js';
 import { createFollow } from './follow.js';
@@ -15,6 +19,7 @@ import { createHistory } from './history.js';
 import { latest } from './latest.js';
 import { createLedger } from './ledger.js';
 import { createMap } from './map.js';
+import { createMeasured } from './measured.js';
 import { createPath } from './path.js';
 import { createReadings } from './readings.js';
 import { createRoofline } from './roofline.js';
@@ -24,8 +29,9 @@ import { createSeen } from './seen.js';
 import { createSheets } from './sheets.js';
 import { createSkyline } from './skyline.js';
 import { chainNow, chainsHere, createStore, decode, encode, initialState, NOTHING, question } from './state.js';
+import { createSteps } from './steps.js';
 import { createTransmitters } from './transmitters.js';
-import { heightIn, numberText, parseHeight, parsePlace, placeText } from './units.js';
+import { heightIn, parseHeight, parsePlace, placeText, plainText } from './units.js';
 import { createWhere } from './where.js';
 
 const MEMORY = 'gainworth';
@@ -42,6 +48,7 @@ const panels = [
   createDecision(byId('decision'), { place, back }),
   createChanges(byId('changes'), { choose }),
   createRoofline(byId('roofline'), { type }),
+  createBill(byId('bill')),
   createCautions(byId('cautions')),
   createSheets(byId('sheets'), { open: (sheet) => type({ sheet }) }),
   createSkyline(byId('skyline'), { aim }),
@@ -49,12 +56,16 @@ const panels = [
   createLedger(byId('ledger')),
   createElsewhere(byId('elsewhere'), { pin: actions.pin, unpin: actions.unpin, go, choose }),
   createReadings(byId('readings'), { read: actions.read, forget: told(actions.forget), confirm: told(actions.confirm), logbook: actions.logbook }),
-  createChains(byId('chains'), { edit, drop, keep: actions.keepChain, remove: actions.removeChain, block: actions.block }),
+  createChains(byId('chains'), { edit, drop, keep: actions.keepChain, remove: actions.removeChain, choose, show: (name) => store.set({ opened: name }) }),
+  createCheapest(byId('cheapest'), { cheapest: actions.cheapest, take: actions.take }),
+  createBlock(byId('block'), { block: actions.block }),
+  createMeasured(byId('measured'), { match: actions.match, pattern: actions.pattern, edit }),
   createRoofs(byId('roofs'), { keep: actions.keepRoof, open, compare: actions.compare, forget: told(actions.forgetRoof), link, file }),
   createTransmitters(byId('transmitters'), { load: actions.air, turn: actions.switchEmission }),
   createAssumptions(byId('assumptions'), { choose, units }),
   createDownloads(byId('downloads'), api, { again: overNewGround }),
   createMap(byId('map'), { place }),
+  createSteps(byId('again'), { back, forward }),
 ];
 createHere(byId('where'), { place });
 
@@ -74,21 +85,22 @@ async function assess() {
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
   remember(true);
+  const { chains } = question(store.get(), up.height);
   try {
     const answer = await askAssess({ ...question(store.get(), up.height), ledgers: [] });
-    if (answer) store.set({ answer, asking: false });
+    if (answer) store.set({ answer, asked: { where, height }, asking: false });
   } catch (error) {
     // A refused place has no answer; a server that is gone, or a slip in a chain, leaves the last one standing.
     const refused = error.status >= 400 && error.status < 500 && !/chain|part|reading|assumption/.test(error.field ?? error.code ?? '');
     const help = error.code === 'coverage' ? ' Under “Ground” below the page can fetch them.' : '';
-    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null } });
+    store.set({ answer: refused ? null : store.get().answer, asking: false, trouble: { message: error.message + help, field: error.field ?? null, at: placeOfTrouble(error.field, chains) } });
   }
 }
 
 /** Answers what was typed, and asks about it where latitude and longitude look swapped. */
 async function submit() {
   const { where } = store.get();
-  store.set({ doubt: null });
+  store.set({ doubt: null, notes: [] });
   await assess();
   if (where !== store.get().where || store.get().trouble?.field === 'where') return;
   const asked = await api.read('/api/position', { text: where.trim() }).catch(() => null);
@@ -135,7 +147,7 @@ function type(change) {
 
 /** @param {import('./state.js').Place} at a place shown on the map */
 function place(at) {
-  store.set({ where: placeText(at), seen: {}, doubt: null });
+  store.set({ where: placeText(at), seen: {}, doubt: null, notes: [] });
   void assess();
 }
 
@@ -143,7 +155,7 @@ const NEW_ANSWER = ['now', 'around', 'seen', 'obstacles', 'settings', 'assumptio
 
 /** @param {Partial<import('./state.js').State>} change a choice; some need a new answer */
 function choose(change) {
-  store.set(change);
+  store.set({ ...change, notes: [] });
   const { idea, second, now, where } = store.get();
   if ('now' in change) store.set({ idea: idea === now ? null : idea, second: second === now ? null : second, seen: {} });
   if (NEW_ANSWER.some((key) => key in change) && where) void assess();
@@ -170,7 +182,7 @@ function aim(name, degree) {
 
 /** @param {any} pin a compared place to go to */
 function go(pin) {
-  store.set({ where: placeText(pin.where), height: numberText(heightIn(pin.height, store.get().units), 0) });
+  store.set({ where: placeText(pin.where), height: plainText(heightIn(pin.height, store.get().units), 2) });
   void assess();
 }
 
@@ -183,7 +195,7 @@ function open(kept) {
   store.set({
     ...initialStateOfARoof(),
     where: placeText(roof),
-    height: numberText(heightIn(roof.aerial_agl_m, store.get().units), 0),
+    height: plainText(heightIn(roof.aerial_agl_m, store.get().units), 2),
     around: roof.surroundings ?? 'mapped',
     obstacles: roof.obstacles ?? [],
     now: kept.now ?? NOTHING, idea: kept.idea ?? null, second: kept.second ?? null, landmark: kept.landmark ?? '',
@@ -203,18 +215,28 @@ function initialStateOfARoof() {
 
 /** Takes the last step back. */
 function back() {
-  const before = past.back();
-  if (before === null) return;
-  store.set({ ...decode(before), past: past.steps });
-  keep(before);
+  stand(past.back());
+}
+
+/** Takes the step again that was taken back last. */
+function forward() {
+  stand(past.forward());
+}
+
+/** @param {string|null} kept as things are to stand */
+function stand(kept) {
+  if (kept === null) return;
+  store.set({ ...decode(kept), past: past.steps, undone: past.undone });
+  keep(kept);
   if (store.get().where) void assess();
 }
 
 /** @param {string} units heights are told in; what is typed changes with them */
 function units(units) {
-  const { height, units: before } = store.get();
+  const { height, units: before, asked } = store.get();
   const up = parseHeight(height, before);
-  store.set({ units: /** @type {any} */ (units), ...('height' in up ? { height: String(Number(heightIn(up.height, /** @type {any} */ (units)).toFixed(1))) } : {}) });
+  const typed = 'height' in up ? plainText(heightIn(up.height, /** @type {any} */ (units)), 1) : height;
+  store.set({ units: /** @type {any} */ (units), height: typed, asked: asked && { where: asked.where, height: asked.height === height ? typed : asked.height } });
   try {
     localStorage.setItem(UNITS, units);
   } catch {
@@ -245,7 +267,7 @@ function remember(step) {
   const kept = encode(store.get());
   if (step) {
     past.push(kept);
-    if (store.get().past !== past.steps) store.set({ past: past.steps });
+    if (store.get().past !== past.steps || store.get().undone !== past.undone) store.set({ past: past.steps, undone: past.undone });
   }
   keep(kept);
 }
@@ -262,15 +284,37 @@ function keep(kept) {
 
 function remembered() {
   if (location.hash.length > 1) {
-    const found = decode(location.hash);
-    const strange = Object.keys(found).length === 0 && /\bv=/.test(location.hash);
-    return strange ? { trouble: { message: 'This link was made by another version of Gainworth and cannot be read: type the position again.', field: null } } : found;
+    return { ...decode(location.hash), ...chosenUnits() };
   }
   try {
-    return { ...decode(localStorage.getItem(MEMORY) ?? ''), units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
+    return { ...decode(localStorage.getItem(MEMORY) ?? ''), ...chosenUnits() };
   } catch {
     return {};
   }
+}
+
+function chosenUnits() {
+  try {
+    return { units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
+  } catch {
+    return {};
+  }
+}
+
+/** Asks what a link or the last visit asked; what it names and is not there is said. */
+async function assessLink() {
+  const { now, idea, second, cell, chains } = store.get();
+  const say = (words) => store.set({ notes: [...store.get().notes, words] });
+  if (chains) {
+    const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
+    const kept = (name) => (name && known(name) ? name : null);
+    store.set({ now: kept(now) ?? chainNow(chains), idea: kept(idea), second: kept(second) });
+    for (const name of new Set([now, idea, second])) if (name && !known(name)) say(`No chain “${name}” is kept here: ${name === now ? 'look at “Up now”' : 'it is left out'}.`);
+  }
+  if (!store.get().where) return;
+  await assess();
+  const { answer } = store.get();
+  if (cell && answer && !answer.multiplexes.some((one) => one.id === cell.multiplex)) say(`No multiplex “${cell.multiplex}” is in reach: the one that changes most is shown.`);
 }
 
 async function start() {
@@ -278,14 +322,11 @@ async function start() {
   try {
     const [{ chains }, health, { cables }] = await Promise.all(['chains', 'health', 'cables'].map((one) => api.read(`/api/${one}`)));
     store.set({ chains, health, cables });
-    const known = (name) => name === NOTHING || chainsHere(store.get()).some((chain) => chain.name === name);
-    const { now, idea, second } = store.get();
-    store.set({ now: known(now) ? now : chainNow(chains), idea: idea && known(idea) ? idea : null, second: second && known(second) ? second : null });
     showSources(health);
   } catch (error) {
     store.set({ trouble: { message: error.message, field: null } });
   }
-  if (store.get().where) await assess();
+  await assessLink();
   document.documentElement.dataset.ready = 'yes';
   void later();
 }
@@ -315,8 +356,9 @@ store.subscribe((state) => {
   follow(state);
 });
 window.addEventListener('hashchange', () => {
-  store.set(decode(location.hash));
-  if (store.get().where) void assess();
+  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash) });
+  void assessLink();
+  if (store.get().pins.length) void actions.comparePins();
 });
 for (const panel of panels) panel.update(store.get());
 void start();

@@ -5,6 +5,7 @@
  * @property {boolean} dark
  * @property {string} version       of the ground
  * @property {boolean} keepPixels   so that a picture of the page holds the map
+ * @property {number[]|null} bounds west, south, east, north to begin with; null: the whole Earth
  * @property {() => void} onMove
  * @property {() => void} onIdle
  * @property {(latitude: number, longitude: number) => void} onClick
@@ -28,6 +29,7 @@ import { bearingText, distanceText } from './units.js';
 const SVG = 'http://www.w3.org/2000/svg';
 const SIDE = 42; // px between the map and the outer line, left and right; as in map.css
 const RIM = 30; // the same, above and below
+const LEAST_SCALE = 60; // px of a tenth of a degree, below which a short path is looked at closer
 const STEP = 10; // px a press of an arrow key moves the crosshair
 
 /** @param {string} file */
@@ -96,6 +98,7 @@ export function createMap(element, { place }) {
     options = {
       dark: darkness.matches,
       version: state.health.ground.version,
+      bounds: groundBounds(),
       keepPixels: navigator.webdriver,
       onMove: draw,
       onIdle: () => { element.dataset.idle = 'yes'; },
@@ -103,7 +106,6 @@ export function createMap(element, { place }) {
     };
     adapter = await openAny(view, options);
     darkness.addEventListener('change', () => adapter?.theme(darkness.matches));
-    lookAtGround();
     update(state);
   }
 
@@ -112,15 +114,15 @@ export function createMap(element, { place }) {
     if (!adapter || options.version === state.health.ground.version) return;
     options.version = state.health.ground.version;
     adapter.theme(darkness.matches);
-    lookAtGround();
+    const bounds = groundBounds();
+    if (bounds) adapter.fit(bounds, 4);
   }
 
-  function lookAtGround() {
+  /** What all rasters cover together. */
+  function groundBounds() {
     const bounds = state.health.ground.rasters.map((raster) => raster.bounds_deg);
-    if (bounds.length === 0) return;
-    const [west, south] = [0, 1].map((side) => Math.min(...bounds.map((one) => one[side])));
-    const [east, north] = [2, 3].map((side) => Math.max(...bounds.map((one) => one[side])));
-    adapter?.fit([west, south, east, north], 4);
+    if (bounds.length === 0) return null;
+    return [0, 1, 2, 3].map((side) => (side < 2 ? Math.min : Math.max)(...bounds.map((one) => one[side])));
   }
 
   /** The emission of the shown path: its mast is the far end. */
@@ -130,7 +132,7 @@ export function createMap(element, { place }) {
 
   function look() {
     const { roof } = state;
-    const far = mast();
+    const far = state.asking ? null : mast(); // until the answer comes, the mast is that of the roof before
     const now = JSON.stringify([roof, far?.transmitter]);
     if (!adapter || !roof || drag.at || now === shown) return;
     shown = now;
@@ -139,7 +141,7 @@ export function createMap(element, { place }) {
       const point = adapter?.project(end.latitude_deg, end.longitude_deg) ?? { x: -1, y: -1 };
       return point.x > 12 && point.y > 12 && point.x < view.clientWidth - 12 && point.y < view.clientHeight - 12;
     });
-    if (inside) return;
+    if (inside && !(far && tooSmall(roof, far))) return;
     if (!far) {
       adapter.centre(roof.latitude_deg, roof.longitude_deg);
       return;
@@ -148,6 +150,14 @@ export function createMap(element, { place }) {
       Math.min(roof.longitude_deg, far.longitude_deg), Math.min(roof.latitude_deg, far.latitude_deg),
       Math.max(roof.longitude_deg, far.longitude_deg), Math.max(roof.latitude_deg, far.latitude_deg),
     ], 36);
+  }
+
+  /** Whether a path is a dot in a view of half the Earth. @param {import('./state.js').Place} roof @param {import('./state.js').Place} far */
+  function tooSmall(roof, far) {
+    const at = ({ latitude_deg, longitude_deg }) => /** @type {MapAdapter} */ (adapter).project(latitude_deg, longitude_deg);
+    const apart = (one, other) => Math.hypot(one.x - other.x, one.y - other.y);
+    const scale = apart(at(roof), at({ ...roof, latitude_deg: roof.latitude_deg + (roof.latitude_deg > 0 ? -0.1 : 0.1) }));
+    return apart(at(roof), at(far)) < view.clientWidth / 6 && scale < LEAST_SCALE;
   }
 
   /** @param {string} name @param {Record<string, string|number>} attributes @param {string} [text] */

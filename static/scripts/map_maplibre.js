@@ -1,7 +1,10 @@
 /** MapLibre behind the map's adapter; drawn by WebGL. */
 
 /* global maplibregl */
-import { paper, tileUrl } from './map_tiles.js';
+import { tileUrl } from './map_tiles.js';
+
+/** @param {number[]} bounds west, south, east, north @returns {number[][]} corners as the library has them */
+const box = ([west, south, east, north]) => [[west, south], [east, north]];
 
 /**
  * @param {HTMLElement} element
@@ -15,10 +18,10 @@ export async function open(element, options) {
       version: 8,
       sources: { relief: { type: 'raster', tiles: [tileUrl(options)], tileSize: 256, maxzoom: 15 } },
       layers: [
-        { id: 'paper', type: 'background', paint: { 'background-color': paper(options.dark) } },
         { id: 'relief', type: 'raster', source: 'relief', paint: { 'raster-fade-duration': 0 } },
       ],
     },
+    ...(options.bounds ? { bounds: box(options.bounds), fitBoundsOptions: { padding: 4 } } : {}),
     attributionControl: false,
     keyboard: false,
     doubleClickZoom: false,
@@ -48,13 +51,10 @@ export async function open(element, options) {
       return { latitude_deg: place.lat, longitude_deg: place.lng };
     },
     centre: (lat, lon) => map.jumpTo({ center: [lon, lat] }),
-    fit: ([west, south, east, north], padding) => map.fitBounds([[west, south], [east, north]], { padding, animate: false, maxZoom: 12 }),
+    fit: (bounds, padding) => map.fitBounds(box(bounds), { padding, animate: false, maxZoom: 12 }),
     pan: (x, y) => map.panBy([x, y], { animate: false }),
     zoom: (steps) => map.jumpTo({ zoom: map.getZoom() + steps }),
     wheel: (on) => (on ? map.scrollZoom.enable() : map.scrollZoom.disable()),
-    theme: (dark) => {
-      map.setPaintProperty('paper', 'background-color', paper(dark));
-      map.getSource('relief').setTiles([tileUrl({ ...options, dark })]);
-    },
+    theme: (dark) => map.getSource('relief').setTiles([tileUrl({ ...options, dark })]),
   };
 }

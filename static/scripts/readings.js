@@ -2,7 +2,7 @@
 
 import { button, field, make, part, refill, select } from './dom.js';
 import { NOTHING, titleOf, verdictOf, chainsHere } from './state.js';
-import { bearingText, chanceText, moneyText, numberText, parseNumber, signedText } from './units.js';
+import { bearingText, chanceText, dayText, moneyText, numberText, parseNumber, signedText } from './units.js';
 
 const KINDS = [['level', 'level, dB(µV)'], ['mer', 'MER, dB'], ['cn', 'C/N, dB'], ['perfect', 'perfect'], ['breaks up', 'breaks up'], ['not found', 'not found']];
 const INSTRUMENTS = [['meter', 'installer’s meter'], ['analyser', 'analyser'], ['stick', 'tuner stick'], ['set', 'the set’s own menu']];
@@ -58,7 +58,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     if (!done) return;
     area.value = '';
     const rest = done.scan_list?.not_recognised ?? [];
-    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${one.of}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
+    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${nameOf(one.of)}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
   });
   part(element, '.show-logbook').addEventListener('click', async () => {
     const document = await logbook();
@@ -113,6 +113,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     points();
     shape();
     scan.hidden = state.now === NOTHING;
+    part(element, '.no-scan').hidden = !scan.hidden;
   }
 
   function points() {
@@ -120,7 +121,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     renew(point, [['', 'the weakest outlet'], ['aerial', 'the aerial'], ...parts.filter((one) => one.kind === 'outlet').map((one) => [one.name, one.name])]);
   }
 
-  const nameOf = (id) => state.answer.multiplexes.find((one) => one.id === id)?.name ?? id;
+  const nameOf = (id) => state.answer?.multiplexes.find((one) => one.id === id)?.name ?? id;
 
   function items() {
     const readings = state.answer.readings;
@@ -137,7 +138,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     const against = one.predicted_db === null || one.read_db === null ? '' : `, ${numberText(one.predicted_db, 1)} was foreseen (${signedText(one.read_db - one.predicted_db)} dB)`;
     const not = one.used ? '' : `kept but not used: ${one.reason}`;
     return make('li', {},
-      make('b', { textContent: figure }), ` ${what}${one.day ? `, ${new Date(`${one.day}T12:00`).toLocaleDateString()}` : ''}${against}`,
+      make('b', { textContent: figure }), ` ${what}${one.day ? `, ${dayText(one.day)}` : ''}${against}`,
       not ? make('span', { className: 'not-used', textContent: ` ${not}` }) : '',
       ...(one.candidates ?? []).map((text) => make('span', { className: 'not-used', textContent: ` ${text}` })),
       ...(one.id ? [' ', ...(one.used ? [] : [button('It was right', () => confirm(one), { 'data-key': `right-${one.id}` })]), button('Forget it', () => forget(one.id), { 'data-key': `forget-${one.id}`, 'aria-label': `Forget the reading of ${what}` })] : []));

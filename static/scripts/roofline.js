@@ -1,8 +1,8 @@
 /** The line for whoever turns the aerial. */
 
 import { make, part } from './dom.js';
-import { NOTHING, titleOf, verdictOf } from './state.js';
-import { bearingText, compassBearing, heightText, numberText, rodsText } from './units.js';
+import { chainForTheRoof, titleOf } from './state.js';
+import { bearingText, compassBearing, dayText, heightText, numberText, rodsText } from './units.js';
 
 const SAME_MAST_DEG = 1;
 
@@ -19,12 +19,11 @@ export function createRoofline(element, { type }) {
 
   /** @param {import('./state.js').State} state */
   function update(state) {
-    const verdict = verdictOf(state);
-    const name = verdict?.candidate ?? NOTHING;
+    const name = chainForTheRoof(state);
     const chain = state.answer?.chains[name];
     element.hidden = !chain?.pointings[0];
     if (element.hidden) return;
-    title.textContent = titleOf(state, name);
+    title.textContent = `${titleOf(state, name)}${name === state.now ? ', which is up now' : ''}`;
     if (landmark.value !== state.landmark) landmark.value = state.landmark;
     list.replaceChildren(...rows(state, name).map(([figure, words]) => make('li', {}, make('b', { textContent: figure }), ' ', make('span', { textContent: words }))));
     compass.textContent = about(state.answer.roof.declination);
@@ -60,7 +59,7 @@ function rows(state, name) {
 function about(declination) {
   if (!declination) return 'No compass bearing: the place or the day is outside the model of the Earth’s field.';
   const off = `${numberText(Math.abs(declination.declination_deg), 1)}° ${declination.declination_deg < 0 ? 'west' : 'east'}`;
-  const day = new Date(`${declination.day}T12:00`).toLocaleDateString();
+  const day = dayText(declination.day);
   return `A compass points ${off} of true north here on ${day}, give or take ${numberText(2 * declination.error_deg, 1)}° (19 in 20; ${declination.model}); steel nearby turns it further. ${declination.caution ?? ''}`.trim();
 }
 

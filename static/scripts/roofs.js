@@ -43,6 +43,7 @@ export function createRoofs(element, { keep, open, compare, forget, link, file }
   function update(state) {
     if (element.hidden) return;
     form.hidden = !state.answer;
+    part(element, '.why').hidden = !state.answer || state.kept.length > 0;
     part(element, '.with-answer').hidden = !state.answer;
     part(element, '.empty').hidden = Boolean(state.answer) || state.kept.length > 0;
     const mine = state.kept.find((one) => one.id === state.saved?.id);

@@ -1,25 +1,32 @@
 /** The answer as one sentence, from the numbers of the document. Pure: no page, no network. */
 
 import { bearingText, countText, moneyText } from './units.js';
-import { NOTHING } from './state.js';
-
-const NO_CHANGE = 0.05; // multiplexes; less is nothing to a person
+import { hasMoved, LEAST_CHANGE, noneIsWorthIt, NOTHING, stepOf } from './state.js';
 
 /**
  * @typedef {{text: string, weight?: 'strong'|'answer'}} Piece a stretch of the sentence and how it stands out
  * @param {any} answer document
  * @param {any} verdict one of its verdicts
+ * @param {boolean} [asked] whether the user chose this idea: else it is said where none pays
  * @returns {Piece[]}
  */
-export function sentence(answer, verdict) {
+export function sentence(answer, verdict, asked = false) {
   const total = answer.multiplexes.length;
   if (total === 0) return [{ text: 'Nothing is on the air within reach of this roof.' }];
   if (!verdict) return [{ text: 'Keep a second chain to compare it with what is up now.' }];
   const currency = answer.chains[verdict.candidate]?.currency;
+  const title = answer.chains[verdict.candidate]?.title ?? verdict.candidate;
+  const idea = [...change(answer, verdict, total), ...price(verdict, currency)];
+  if (!asked && noneIsWorthIt(answer)) {
+    return [
+      ...today(answer, verdict, total),
+      { text: `None of the ${answer.verdicts.length} ideas is worth it`, weight: 'answer' },
+      { text: `. What comes nearest, ${title},` }, ...idea, { text: `${below(verdict, currency)}.` },
+    ];
+  }
   return [
     ...today(answer, verdict, total),
-    ...change(verdict, total, answer.chains[verdict.candidate]?.title ?? verdict.candidate),
-    ...price(verdict, currency),
+    { text: title }, ...idea,
     ...judgement(verdict, currency, toRead(answer, verdict.measure_next)),
     { text: '.' },
   ];
@@ -37,16 +44,27 @@ function today(answer, verdict, total) {
   return [{ text: 'Today ' }, { text: count, weight: 'strong' }, { text: ` of ${total}. ` }];
 }
 
-/** @returns {Piece[]} */
-function change(verdict, total, title) {
-  const extra = verdict.expected_extra;
-  const name = title;
-  if (Math.abs(extra) < NO_CHANGE) return [{ text: `${name} adds ` }, { text: 'nothing', weight: 'strong' }];
-  if (extra < 0) return [{ text: `${name} loses ` }, { text: countText(-extra), weight: 'strong' }];
-  if (verdict.baseline === NOTHING) {
-    return [{ text: `${name} brings ` }, { text: countText(extra), weight: 'strong' }, { text: ` of ${total}` }];
+/** What it changes in all, said so that it fits the table of what changes. @returns {Piece[]} */
+function change(answer, verdict, total) {
+  const { expected_extra: extra, baseline, candidate } = verdict;
+  const bare = baseline === NOTHING;
+  const steps = answer.multiplexes.filter((one) => hasMoved(one, baseline, candidate)).map((one) => stepOf(one, baseline, candidate));
+  const [up, down] = [steps.some((one) => one > 0), steps.some((one) => one < 0)];
+  if (Math.abs(extra) < LEAST_CHANGE) {
+    if (up && down) return [{ text: ' gains and loses ' }, { text: 'alike', weight: 'strong' }];
+    return [{ text: ' adds ' }, { text: steps.length ? 'next to nothing' : 'nothing', weight: 'strong' }];
   }
-  return [{ text: `${name} adds ` }, { text: countText(extra), weight: 'strong' }];
+  const against = extra < 0 ? up : down;
+  return [
+    { text: extra < 0 ? ' loses ' : bare ? ' brings ' : ' adds ' },
+    { text: countText(Math.abs(extra)), weight: 'strong' },
+    { text: `${bare && extra > 0 ? ` of ${total}` : ''}${against ? ' on balance' : ''}` },
+  ];
+}
+
+/** What it might cost to pay, where it does not. */
+function below(verdict, currency) {
+  return verdict.break_even_price >= 1 ? `, and would pay below ${moneyText(verdict.break_even_price, currency)}` : ', and would not pay at any price';
 }
 
 /** @returns {Piece[]} */
@@ -78,5 +96,5 @@ function judgement(verdict, currency, reading) {
 function toRead(answer, next) {
   const emission = answer.emissions.find((one) => one.id === next?.emission);
   if (!emission) return '';
-  return `${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(next.bearing_deg)}`;
+  return `the level of ${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(next.bearing_deg)}`;
 }

@@ -31,6 +31,8 @@
  * @property {any[]} [values]      every value that was chosen, before there is an answer
  * @property {string[]} [cables]   classes of cable
  * @property {number} past         how many steps can be taken back
+ * @property {number} undone       how many of them can be taken again
+ * @property {string|null} opened  name of the chain that is open to be edited; null: the shown idea
  * @property {Cell|null} cell      the cell whose reasons are shown; null: the one that changes most
  * @property {any[]|null} chains   kept chains; null: not yet known
  * @property {any|null} health     what the server knows; null: not yet known
@@ -38,23 +40,26 @@
  * @property {any|null} path       the path of the shown cell
  * @property {{question: string, swapped: Place}|null} doubt  whether latitude and longitude are swapped
  * @property {boolean} asking      a question is on its way
- * @property {{message: string, field: string|null}|null} trouble
+ * @property {{message: string, field: string|null, at?: ReturnType<typeof import('./chain_edits.js').placeOfTrouble>}|null} trouble
+ * @property {{where: string, height: string}|null} asked   as typed when the last answer came
+ * @property {string[]} notes      what of a link was left out, until something is chosen
  */
+
+import { isSheet, linkNotes, strangers, usable } from './link.js';
 
 export const NOTHING = 'nothing';
 const VERSION = '2';
-const READABLE = ['1', VERSION]; // links of these versions can be opened
 const MORE = /** @type {const} */ (['second', 'around', 'seen', 'landmark', 'obstacles', 'edits', 'settings', 'assumptions', 'pins']);
-const LEAST_CHANGE = 0.05; // a smaller difference of chance is the same to a person
+export const LEAST_CHANGE = 0.05; // of a chance or a number of multiplexes: less is the same to a person
 
 /** @returns {State} */
 export function initialState() {
   return {
     where: '', height: '10', roof: null, now: '', idea: null, second: null, cell: null,
-    around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
+    undone: 0, opened: null, around: 'mapped', seen: {}, landmark: '', obstacles: [], edits: [], settings: {}, assumptions: {}, pins: [],
     sheet: 'skyline', units: 'metric', skyline: null, heights: null, steps: null, compared: [], kept: [], saved: null,
     said: '', moved: [], past: 0,
-    chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null,
+    chains: null, health: null, answer: null, path: null, asking: false, trouble: null, doubt: null, asked: null, notes: [],
   };
 }
 
@@ -99,36 +104,56 @@ export function encode(state) {
   return kept.toString();
 }
 
-/** @param {string} text of encode, or anything else @returns {Partial<State>} what of it can be used */
+/**
+ * What of a link can be used, whatever version it is of; `notes` say what was left out.
+ * @param {string} text of encode, or anything else
+ * @returns {Partial<State>}
+ */
 export function decode(text) {
   const kept = new URLSearchParams(text.replace(/^#/, ''));
-  if (!READABLE.includes(kept.get('v') ?? '')) return {};
+  const version = kept.get('v');
+  if (version === null && !kept.get('at')) return {};
   const multiplex = kept.get('multiplex');
   const chain = kept.get('chain');
+  const sheet = kept.get('sheet') ?? 'skyline';
+  const { values, dropped } = more(kept.get('more'));
+  dropped.push(...strangers(kept), ...(isSheet(sheet) ? [] : [`sheet “${sheet}”`]));
   return {
     where: kept.get('at') ?? '',
     height: kept.get('height') ?? '10',
     now: kept.get('now') ?? '',
     idea: kept.get('idea'),
     cell: multiplex && chain ? { multiplex, chain } : null,
-    sheet: kept.get('sheet') ?? 'skyline',
-    ...more(kept.get('more')),
+    sheet: isSheet(sheet) ? sheet : 'skyline',
+    ...values,
+    notes: linkNotes(version ?? '', VERSION, dropped),
   };
 }
 
 /** What a link holds beside the usual, each only if it has the shape it should have. @param {string|null} text */
 function more(text) {
   const usual = initialState();
-  const start = Object.fromEntries(MORE.map((key) => [key, usual[key]]));
+  const values = Object.fromEntries(MORE.map((key) => [key, usual[key]]));
   let found;
   try {
-    found = JSON.parse(text ?? '{}');
+    found = Object(JSON.parse(text ?? '{}'));
   } catch {
-    return start;
+    return { values, dropped: ['what follows “more”, which is cut off'] };
   }
-  const alike = (value, like) => (like === null ? typeof value === 'string' : typeof value === typeof like && Array.isArray(value) === Array.isArray(like) && value !== null);
-  for (const key of MORE) if (found !== null && typeof found === 'object' && alike(found[key], usual[key])) start[key] = found[key];
-  return start;
+  const dropped = Object.keys(found).filter((key) => !(/** @type {readonly string[]} */ (MORE).includes(key))).map((key) => `“${key}”`);
+  for (const key of MORE) {
+    if (!(key in found)) continue;
+    const part = usable(key, found[key], usual[key]);
+    values[key] = part.value;
+    dropped.push(...part.dropped);
+  }
+  return { values, dropped };
+}
+
+/** Whether what is typed is no longer what was answered. @param {State} state */
+export function isStale(state) {
+  const { answer, asked, where, height } = state;
+  return Boolean(answer && asked) && (asked?.where !== where || asked?.height !== height);
 }
 
 /**
@@ -201,20 +226,44 @@ export function cellOf(multiplex, chain) {
   return multiplex.chains[chain] ?? null;
 }
 
+/** By how much a chain changes the chance of a multiplex. @param {any} multiplex @param {string} now @param {string} idea */
+export function stepOf(multiplex, now, idea) {
+  return (cellOf(multiplex, idea)?.chance ?? 0) - (cellOf(multiplex, now)?.chance ?? 0);
+}
+
+/** Whether a person would call two cells of a multiplex different. @param {any} multiplex @param {string} now @param {string} idea */
+export function hasMoved(multiplex, now, idea) {
+  const [before, after] = [cellOf(multiplex, now), cellOf(multiplex, idea)];
+  return Math.abs(stepOf(multiplex, now, idea)) >= LEAST_CHANGE || (before !== null && before.grade !== after?.grade);
+}
+
 /**
  * Splits the multiplexes by whether an idea changes them; the largest change comes first.
  * @param {any} answer @param {string} now @param {...string} ideas
  * @returns {{changed: any[], same: any[]}}
  */
 export function changes(answer, now, ...ideas) {
-  const chance = (multiplex, name) => cellOf(multiplex, name)?.chance ?? 0;
-  const difference = (multiplex) => Math.max(...ideas.map((idea) => Math.abs(chance(multiplex, idea) - chance(multiplex, now))));
-  const moved = (multiplex) =>
-    difference(multiplex) >= LEAST_CHANGE ||
-    (cellOf(multiplex, now) !== null && ideas.some((idea) => cellOf(multiplex, now).grade !== cellOf(multiplex, idea)?.grade));
+  const difference = (multiplex) => Math.max(...ideas.map((idea) => Math.abs(stepOf(multiplex, now, idea))));
+  const moved = (multiplex) => ideas.some((idea) => hasMoved(multiplex, now, idea));
   const changed = answer.multiplexes.filter(moved);
   changed.sort((a, b) => difference(b) - difference(a));
   return { changed, same: answer.multiplexes.filter((multiplex) => !moved(multiplex)) };
+}
+
+/** Whether there are several ideas and none pays. @param {any} answer */
+export function noneIsWorthIt(answer) {
+  return (answer?.verdicts.length ?? 0) > 1 && answer.verdicts.every((one) => one.answer === 'not worth it');
+}
+
+/**
+ * The chain for the rigger: the shown idea; what is up where no idea pays and none was asked for.
+ * @param {State} state @returns {string}
+ */
+export function chainForTheRoof(state) {
+  const verdict = verdictOf(state);
+  if (!verdict) return NOTHING;
+  const stays = state.idea === null && noneIsWorthIt(state.answer) && verdict.baseline !== NOTHING;
+  return stays ? verdict.baseline : verdict.candidate;
 }
 
 /**

@@ -2,7 +2,7 @@
 
 import { make, part } from './dom.js';
 import { found, SHOWN_ROWS } from './air_list.js';
-import { bearingText, distanceText, numberText } from './units.js';
+import { bearingText, distanceText, numberText, dayText } from './units.js';
 
 /**
  * @param {HTMLElement} element
@@ -55,8 +55,7 @@ export function createTransmitters(element, { load, turn }) {
       : `${shown.length} of ${(rows ?? []).length} channels${shown.length > SHOWN_ROWS ? `; the first ${SHOWN_ROWS} are shown, search to find others` : ''}`;
     body.replaceChildren(...shown.slice(0, SHOWN_ROWS).map((one) => {
       const here = near.get(one.id);
-      const day = (text) => new Date(`${text}T12:00`).toLocaleDateString();
-      const validity = one.valid_to ? `closes on ${day(one.valid_to)}` : one.valid_from && one.valid_from > today ? `opens on ${day(one.valid_from)}` : '';
+      const validity = one.valid_to ? `closes on ${dayText(one.valid_to)}` : one.valid_from && one.valid_from > today ? `opens on ${dayText(one.valid_from)}` : '';
       return make('tr', {},
         make('td', {}, make('input', { type: 'checkbox', value: one.id, checked: one.on, 'aria-label': `${one.transmitter} channel ${one.channel} counts` })),
         make('th', { scope: 'row', textContent: one.transmitter }),

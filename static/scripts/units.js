@@ -6,10 +6,14 @@ const MILES_PER_KM = 1 / 1.609344;
 /** @type {Map<number, Intl.NumberFormat>} */
 const formats = new Map();
 
+const HEIGHTS_M = [1, 200]; // above the ground; as the server allows
+const DECIMAL = new Intl.NumberFormat().formatToParts(1.5).find((one) => one.type === 'decimal')?.value ?? '.';
+
 /** @typedef {'metric'|'imperial'} Units of heights and distances */
 
 /**
- * A chance in words a customer can weigh. Never certain: the ends are told as one in a hundred.
+ * A chance in words a customer can weigh. Never certain: the ends are told as one in a hundred. Never on the
+ * wrong side of a grade: just below where the words open and likely begin, a tenth would say more than the word.
  * @param {number} chance 0 to 1
  * @returns {string} for instance "9 in 10"
  */
@@ -18,6 +22,8 @@ export function chanceText(chance) {
   if (chance >= 0.95) return '19 in 20';
   if (chance <= 0.01) return '1 in 100';
   if (chance < 0.075) return '1 in 20';
+  if (chance >= 0.25 && chance < 0.3) return '1 in 4';
+  if (chance >= 0.65 && chance < 0.7) return '2 in 3';
   return `${Math.min(9, Math.max(1, Math.round(chance * 10)))} in 10`;
 }
 
@@ -59,6 +65,16 @@ export function numberText(value, digits) {
   return value < 0 && Number(Math.abs(value).toFixed(digits)) !== 0 ? MINUS + text : text;
 }
 
+/** @param {number} value @param {number} most digits after the point @returns {string} without zeros at the end, as it can be typed */
+export function plainText(value, most) {
+  return numberText(value, [...Array(most).keys()].find((digits) => Math.abs(Number(value.toFixed(digits)) - value) < 0.5 * 10 ** -most) ?? most);
+}
+
+/** @param {string} day year-month-day @returns {string} as the reader's locale writes it, the month by name */
+export function dayText(day) {
+  return new Date(`${day}T12:00`).toLocaleDateString(undefined, { dateStyle: 'medium' });
+}
+
 /** @param {number} value decibels, told with its sign @param {number} [digits] @returns {string} */
 export function signedText(value, digits = 1) {
   const text = numberText(value, digits);
@@ -73,7 +89,7 @@ export function bearingText(bearing) {
 
 /** @param {number} km @param {Units} [units] @returns {string} */
 export function distanceText(km, units = 'metric') {
-  const value = units === 'imperial' ? km * MILES_PER_KM : km;
+  const value = distanceIn(km, units);
   return `${numberText(value, value < 10 ? 1 : 0)}\u00a0${units === 'imperial' ? 'mi' : 'km'}`;
 }
 
@@ -85,6 +101,20 @@ export function heightText(metres, units = 'metric', digits = 0) {
 /** @param {number} metres @param {Units} units @returns {number} in the units of heights */
 export function heightIn(metres, units) {
   return units === 'imperial' ? metres * FEET_PER_M : metres;
+}
+
+/** @param {number} km @param {Units} units @returns {number} in the units of distances */
+export function distanceIn(km, units) {
+  return units === 'imperial' ? km * MILES_PER_KM : km;
+}
+
+/** @param {string} text "150", "150 km", "90 mi" @param {Units} units of a bare number @returns {number|null} kilometres; null where it is no distance */
+export function parseDistance(text, units) {
+  const match = /^(.*?)\s*(km|mi)?$/i.exec(text.trim());
+  const value = parseNumber(match?.[1] ?? '');
+  if (value === null || value < 0) return null;
+  const miles = match?.[2] ? match[2].toLowerCase() === 'mi' : units === 'imperial';
+  return miles ? Math.round(value / MILES_PER_KM * 100) / 100 : value;
 }
 
 /**
@@ -122,7 +152,7 @@ export function placeText(place) {
  * @typedef {{latitude_deg: number, longitude_deg: number}} Place
  */
 export function parsePlace(text) {
-  const example = 'write it as latitude, longitude in degrees, such as 12.345, -6.789';
+  const example = 'write it as latitude, longitude in degrees, such as 12.345, -6.789 (degrees and minutes, grid references and Plus Codes are read, too)';
   const tidy = text.trim().replace(/[\u2212\u2013]/g, '-').replace(/°/g, ' ');
   if (!tidy) return { problem: `The position is empty: ${example}.` };
   const number = /(\d),(\d)(?=[^,]*[;\s])/.test(tidy) && !/,\s/.test(tidy) && !/\./.test(tidy)
@@ -148,19 +178,49 @@ export function parsePlace(text) {
  * @returns {{height: number} | {problem: string}} metres
  */
 export function parseHeight(text, units = 'metric') {
-  const match = /^(\d+(?:\.\d+)?)\s*(m|ft|')?$/i.exec(text.trim().replace(',', '.'));
-  if (!match) return { problem: units === 'imperial' ? 'Write the height in feet, such as 33.' : 'Write the height in metres, such as 10.' };
-  const feet = match[2] ? match[2].toLowerCase() !== 'm' : units === 'imperial';
-  return { height: feet ? Math.round(Number(match[1]) / FEET_PER_M * 100) / 100 : Number(match[1]) };
+  const [least, most, example] = units === 'imperial' ? [3.3, 656, 33] : [...HEIGHTS_M, 10];
+  const allowed = `write it in ${units === 'imperial' ? 'feet' : 'metres'} above the ground, ${plainText(least, 1)} to ${most}, such as ${example}`;
+  const height = parseLength(text, units);
+  if (!text.trim()) return { problem: `The height is empty: ${allowed}.` };
+  if (height === null) return { problem: `“${text.trim()}” is not a height: ${allowed}.` };
+  if (height < HEIGHTS_M[0] || height > HEIGHTS_M[1]) return { problem: `A height of “${text.trim()}” is not possible: ${allowed}.` };
+  return { height };
 }
 
-/** @param {string} text @returns {number|null} a number as people type it, null where it is none */
-export function parseNumber(text) {
-  const tidy = text.trim().replace(',', '.').replace(MINUS, '-');
-  return /^-?\d+(\.\d+)?$/.test(tidy) ? Number(tidy) : null;
+/**
+ * @param {string} text "10", "10 m", "33 ft"
+ * @param {Units} units of a bare number
+ * @returns {number|null} metres to a centimetre; null where it is no length
+ */
+export function parseLength(text, units) {
+  const match = /^(.*?)\s*(m|ft|'|′)?$/i.exec(text.trim());
+  const value = parseNumber(match?.[1] ?? '');
+  if (value === null || value < 0) return null;
+  const feet = match?.[2] ? match[2].toLowerCase() !== 'm' : units === 'imperial';
+  return feet ? Math.round(value / FEET_PER_M * 100) / 100 : value;
+}
+
+/**
+ * A number as people type it, with a point or a comma. What may be a comma between thousands is refused: "1,250".
+ * @param {string} text
+ * @param {string} [decimal] the mark that the reader's locale writes
+ * @returns {number|null} null where it is no number
+ */
+export function parseNumber(text, decimal = DECIMAL) {
+  const match = /^([-\u2212]?)(\d+)(?:([.,])(\d+))?$/.exec(text.trim());
+  if (!match) return null;
+  const [, sign, whole, mark, rest] = match;
+  if (mark && mark !== decimal && rest.length === 3 && whole.length <= 3 && whole !== '0') return null;
+  return Number(`${sign && '-'}${whole}.${rest ?? 0}`);
 }
 
 /** @param {number} bearing true @param {{declination_deg: number}|null|undefined} declination @returns {number} by compass */
 export function compassBearing(bearing, declination) {
   return bearing - (declination?.declination_deg ?? 0);
+}
+
+/** @param {string} text @returns {string} with a capital and a full stop */
+export function asSentence(text) {
+  const whole = text.charAt(0).toUpperCase() + text.slice(1);
+  return /[.!?]$/.test(whole) ? whole : `${whole}.`;
 }

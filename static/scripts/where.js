@@ -1,7 +1,7 @@
 /** What is asked first: where, how high, what stands around, what is up, which ideas. */
 
 import { button, refill } from './dom.js';
-import { columns, NOTHING, titleOf, chainsHere } from './state.js';
+import { columns, noneIsWorthIt, NOTHING, titleOf, chainsHere } from './state.js';
 
 const AROUND = [['mapped', 'as mapped'], ['open', 'open ground'], ['suburban', 'houses'], ['urban', 'town houses'], ['trees', 'trees']];
 
@@ -41,7 +41,7 @@ export function createWhere(element, { type, submit, choose, place: move }) {
       .filter(([name]) => name !== state.now)
       .map(([name, title]) => [name, answers.get(name) ? `${title}: ${answers.get(name)}` : title]);
     const best = state.answer?.verdicts[0];
-    options(idea, [['', best ? `best: ${titleOf(state, best.candidate)}` : 'the best there is'], ...judged], state.idea ?? '');
+    options(idea, [['', best ? `${noneIsWorthIt(state.answer) ? 'nearest' : 'best'}: ${titleOf(state, best.candidate)}` : 'the best'], ...judged], state.idea ?? '');
     const first = columns(state)[1]?.name;
     options(second, [['', 'none'], ...judged.filter(([name]) => name !== first)], state.second ?? '');
     problem(place, state.trouble, 'where', 'latitude_deg', 'longitude_deg');

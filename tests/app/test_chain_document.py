@@ -84,13 +84,13 @@ def changed(index=None, **changes):
     [
         ([], r"a chain is a table of keys and values, not \[\]", None),
         ("roof", r'not "roof": give at least name and parts', None),
-        (changed(parts="aerial"), r'chain "mine": parts is "aerial": give a list of parts', "parts"),
+        (changed(parts="aerial"), r'chain "My aerial": parts is "aerial": give a list of parts', "parts"),
         (
             changed(colour="red"),
-            r'chain "mine": "colour" is not a key of it: use name, parts, currency',
+            r'chain "My aerial": "colour" is not a key of it: use name, parts, currency',
             "colour",
         ),
-        (changed(name=None), r'chain "": name is missing: add it', "name"),
+        (changed(name=None), r'chain "My aerial": name is missing: add it', "name"),
         (changed(already_up="yes"), r'already_up is "yes": use true or false', "already_up"),
         (changed(pointing_deg=True), r"pointing_deg is True: use a number", "pointing_deg"),
         (
@@ -138,3 +138,11 @@ def test_part_that_is_no_table_is_counted_out():
     ) as caught:
         chain_from_document(whole)
     assert caught.value.field == "parts[1]"
+
+
+def test_a_fault_between_parts_names_the_chain_and_the_part_it_is_at():
+    whole = document()
+    whole["parts"][1]["after"] = "nowhere"
+    with pytest.raises(ChainError, match=r'^chain "My aerial": feeder "downlead": is fed by "nowhere"') as caught:
+        chain_from_document(whole)
+    assert caught.value.field == "parts[1].after"

@@ -80,7 +80,10 @@ def test_dry_run_stores_nothing(store):
         ("colour = 1", r'mine.toml: holds "colour": use \[\[chains\]\] and \[\[parts\]\]'),
         ("# nothing", r"mine.toml: holds nothing: use"),
         ("chains = 3", r"mine.toml: chains is no list of tables: write \[\[chains\]\] above each"),
-        (ONE.replace("front_to_back_db = 18", ""), r'mine.toml: aerial "Yagi": front_to_back_db is missing: add it'),
+        (
+            ONE.replace("front_to_back_db = 18", ""),
+            r'mine.toml: chain "[^"]*": aerial "Yagi": front_to_back_db is missing: add it',
+        ),
         (ONE.replace("length_m = 20", "length_m = -2"), r'feeder "20 m": length_m -2 is not possible: use 0 to 1000'),
         (ONE + ONE, r'mine.toml: chain "mine" comes twice'),
     ],

@@ -9,7 +9,7 @@ from typer.testing import CliRunner
 from app.chain.document import chain_from_document, chain_to_document
 from app.chain.parts import Combiner, MastheadAmplifier, PowerInserter
 from app.chain_file import import_text
-from app.cheapest import Wish, cheapest_document, pareto
+from app.cheapest import Wish, cheapest_document, pareto, parts_for_sale
 from app.cli import main
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import ChainError, RequestError
@@ -97,8 +97,20 @@ def test_front_rises_in_price_and_count_and_says_why(shop, demo_world):
     assert front[0]["price"] == 22 + 12 + 5 + 20
     assert front[0]["reason"].startswith("The cheapest that can be built")
     assert "held back by noise" in front[-1]["reason"]
-    for row in front:
+    assert "Strait" in front[-1]["reason"]  # names, not ids
+    assert got["worth_per_multiplex"] == 50
+    for before, row in zip([{"price": 0, "expected_count": 0}, *front], front, strict=False):
         assert chain_from_document(row["chain"]).price == row["price"]
+        each = (row["price"] - before["price"]) / (row["expected_count"] - before["expected_count"])
+        assert row["price_per_extra"] == pytest.approx(each, rel=0.01)  # counts are written to 0.001
+        assert row["pays"] == (each < 50)
+
+
+def test_where_no_part_is_stored_those_of_the_stored_chains_are_for_sale(demo_world):
+    sold = {part.id for part in parts_for_sale(demo_world.store)}
+    assert {"short-yagi", "long-yagi", "loft-dipole", "masthead-amplifier", "roof-feeder"} <= sold
+    got = cheapest_document(AssessRequest(NORTH), Wish(feeder_m=10), demo_world.store, demo_world.ground)
+    assert got["front"][0]["price"] == 9 + 8 + 4  # aerial, feeder and outlet of the loft
 
 
 def test_front_leaves_out_what_a_cheaper_chain_equals(shop, demo_world):
@@ -203,7 +215,7 @@ def test_amplifier_without_supply_is_named_and_shown_both_ways(demo_world):
     whole = chain_to_document(stored_chain(demo_world.store, "high-gain-masthead"))
     amplifier = next(part for part in whole["parts"] if part["kind"] == MastheadAmplifier.kind)
     amplifier |= {"draws_ma": 60, "needs_v": 11}
-    whole["name"] = "unfed"
+    whole |= {"name": "unfed", "title": "Without supply"}
     answer = assess(
         AssessRequest(NORTH, chains=("high-gain-masthead", chain_from_document(whole))),
         demo_world.store,
@@ -212,7 +224,7 @@ def test_amplifier_without_supply_is_named_and_shown_both_ways(demo_world):
     note = answer["chains"]["unfed"]
     assert not note["powering"][0]["is_fed"]
     assert "has no supply" in note["powering"][0]["message"]
-    assert any("unfed: masthead-amplifier" in caution for caution in answer["cautions"])
+    assert any("Without supply: masthead-amplifier" in caution for caution in answer["cautions"])
     powered = answer["chains"]["high-gain-masthead"]["expected_count"]
     assert note["expected_count"] < note["if_powered"]["expected_count"] == pytest.approx(powered, abs=0.01)
     inserter = PowerInserter(id="p", name="supply", supply_v=12, most_ma=100)

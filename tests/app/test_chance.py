@@ -51,6 +51,11 @@ def test_another_emission_leaves_the_draws_as_they_were():
     assert np.array_equal(alone[:, 0], beside[:, 0])
 
 
+def test_some_of_the_margins_have_the_draws_that_they_have_among_all():
+    every = cells([1.0, -30.0], parts=[ErrorPart(("roof", "roof"), np.array([2.0, 1.0]))])
+    assert np.array_equal(every.of([1]).draws()[:, 0], every.draws()[:, 1])
+
+
 def test_a_key_always_has_the_same_sample_of_the_normal():
     assert np.array_equal(normals("roof"), normals("roof"))
     assert not np.array_equal(normals("roof"), normals("mast"))

@@ -12,7 +12,7 @@ from app.chain.catalogue import demo_chains
 from app.company import company_of
 from app.fields import EmissionField, PathFacts
 from app.interferers import Interferer
-from app.margins import turn
+from app.margins import NEVER, multiplex_chances, turn
 from app.roof import Roof
 from app.transmitters.model import Emission, Transmitter
 from propagation import p1546
@@ -162,6 +162,34 @@ def test_equal_chains_differ_by_exactly_nothing_with_interference():
     other = received_field(emission("b"), 100.0, 60.0)
     one, two = (turned([ALONE], [other], chain=replace(SHORT, name=name))[0] for name in ("one", "two"))
     assert (one.cells.draws() == two.cells.draws()).all()
+
+
+def test_interferers_summed_by_direction_are_those_summed_one_by_one():
+    """Two of one direction and band, one of the other polarisation there, one elsewhere."""
+    others = [
+        received_field(emission("b"), 100.0, 60.0),
+        received_field(emission("c"), 100.0, 57.0, km=90.0),
+        received_field(emission("d", polarisation="vertical"), 100.0, 70.0, km=120.0),
+        received_field(emission("e"), 200.0, 66.0),
+    ]
+    one, air = turned([ALONE], others)
+    assert len(air.company.kinds.bearing_deg) == 4
+    for effect in one.effects.values():
+        assert effect.i_over_c[0] == pytest.approx(effect.brought.sum() / effect.carrier[0], rel=1e-12)
+        who, over_c = effect.contributions(0)
+        assert len(who) == 4
+        assert over_c.sum() == pytest.approx(effect.i_over_c[0], rel=1e-12)
+
+
+def test_what_is_hopeless_is_not_drawn_and_changes_no_chance():
+    weak = received_field(emission("w", 690.0, multiplex="mux-a"), 20.0, -60.0, km=300.0)
+    alone, air = turned([ALONE])
+    both, air_of_both = turned([ALONE, weak])
+    assert both.enough[1] < NEVER
+    draws, _ = multiplex_chances(alone, air, ["mux-a"])
+    again, chance = multiplex_chances(both, air_of_both, ["mux-a"])
+    assert np.array_equal(draws, again)
+    assert chance[0] == draws.mean()
 
 
 # Networks

@@ -130,7 +130,7 @@ def test_two_points_of_one_chain_locate_a_bad_joint(ask):
     answer = ask(top, bottom)
     assert all(item["used"] for item in answer["readings"]["items"])
     (finding,) = answer["readings"]["findings"]
-    assert finding.startswith("The run behind the aerial of roof-yagi loses 9.")
+    assert finding.startswith("The run behind the aerial of Short roof Yagi loses 9.")
     assert "bad joint" in finding
     assert margins(answer)["northern-range-30"] == pytest.approx(margins(ask())["northern-range-30"] - 9.5, abs=1)
 

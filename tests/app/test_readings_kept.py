@@ -213,3 +213,14 @@ def test_a_reading_of_what_is_not_on_the_air_or_through_an_unknown_chain_is_kept
     )
     for known in ({"emission": "48"}, {"emission": "far-island-48"}, {"emission": None, "multiplex": "Range One"}):
         assert keep(store, NORTH.latitude_deg, NORTH.longitude_deg, LEVEL | known)["notes"] == []
+
+
+def test_kept_readings_do_not_stop_an_answer_where_nothing_is_in_reach(client):
+    client.post("/api/readings", json={**PLACE, "reading": LEVEL})
+    question = {"roof": PLACE, "chains": ["roof-yagi"], "reach_km": 1}
+    answer = client.post("/api/assess", json=question)
+    assert answer.status_code == 200
+    assert answer.json()["emissions"] == []
+    brought = client.post("/api/assess", json=question | {"readings": [LEVEL]})
+    assert brought.status_code == 422
+    assert "nothing in reach can be predicted here" in brought.json()["error"]["message"]

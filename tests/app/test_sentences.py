@@ -55,6 +55,13 @@ def test_clear_path_says_by_how_much():
     assert path_sentence(CLEAR) == told
 
 
+def test_a_grazing_path_is_never_rounded_up_to_a_clear_one():
+    """0.55 to 0.6 of the first radius would round to the 0.6 from which a line counts as clear."""
+    for ratio, told in ((0.5999, "0.59"), (0.55, "0.55"), (0.0, "0")):
+        story = replace(CLEAR, kind="grazing", into_line_m=-7.0, clearance_ratio=ratio)
+        assert f", {told} of the first Fresnel radius" in path_sentence(story)
+
+
 def test_grazing_path_says_how_little_is_left_and_what_it_costs():
     story = replace(
         CLEAR,

@@ -1,8 +1,5 @@
 """The CSV of transmitters: what is kept, what is refused and with which words."""
 
-import csv
-import io
-import json
 from datetime import date
 
 import pytest
@@ -11,54 +8,8 @@ from app.errors import TransmitterFileError
 from app.systems import systems
 from app.transmitters import csv_text, template
 from app.transmitters.model import Multiplex
-from app.transmitters.rows import Source
-from app.transmitters.store import Store
-from app.transmitters.template import COLUMNS, import_template, read_template, template_example
-
-ROW = {
-    "transmitter": "Mast One",
-    "latitude_deg": "44.412",
-    "longitude_deg": "-36.905",
-    "multiplex": "First",
-    "channel": "47",
-    "raster": "europe-uhf-8",
-    "system": "DVB-T2",
-    "mode": "256-QAM 2/3",
-    "erp_kw": "20",
-    "polarisation": "horizontal",
-    "antenna_agl_m": "150",
-    "pattern_db": "round",
-}
-
-
-PLAIN = {"channel": "", "raster": "", "frequency_mhz": "682"}
-MOBILE = {"system": "mobile", "mode": "", "raster": "", "channel": "europe-700-downlink"}
-
-
-def text_of(*changes, separator=",", columns=COLUMNS):
-    """A file with one row per dictionary of changes to ROW."""
-    file = io.StringIO()
-    writer = csv.DictWriter(file, columns, delimiter=separator, restval="", extrasaction="ignore", lineterminator="\n")
-    writer.writeheader()
-    for change in changes:
-        writer.writerow(ROW | change)
-    return file.getvalue()
-
-
-@pytest.fixture
-def read(tmp_path):
-    def read(content, name="mine.csv"):
-        path = tmp_path / name
-        path.write_bytes(content if isinstance(content, bytes) else content.encode())
-        return read_template(path)
-
-    return read
-
-
-def only_refusal(result):
-    assert len(result.refused) == 1, [str(refusal) for refusal in result.refused]
-    return result.refused[0]
-
+from app.transmitters.template import COLUMNS, read_template, template_example
+from tests.app.template_text import MOBILE, PLAIN, only_refusal, text_of
 
 # What is kept
 
@@ -298,87 +249,6 @@ def test_a_last_line_cut_short_is_refused(read):
     assert only_refusal(read(cut)).line == 3
 
 
-PLACES = [("44.4", "-36.9"), ("44.5", "-37.3"), ("44.1", "-37.0"), ("43.9", "-37.4")]
-
-
-def placed(*places):
-    return text_of(
-        *({"transmitter": f"M{n}", "latitude_deg": a, "longitude_deg": o} for n, (a, o) in enumerate(places))
-    )
-
-
-@pytest.mark.parametrize(
-    ("position", "words"),
-    [
-        (("-37.0", "44.2"), "latitude and longitude swapped?"),
-        (("44.2", "37.0"), "sign of the longitude lost?"),
-        (("-44.2", "-37.0"), "sign of the latitude lost?"),
-    ],
-)
-def test_a_position_that_belongs_beside_the_others_if_read_otherwise_is_refused(read, position, words):
-    result = read(placed(*PLACES, position))
-    refusal = only_refusal(result)
-    assert (refusal.line, refusal.column) == (6, "latitude_deg")
-    assert words in refusal.message
-    assert len(result.transmitters) == 4
-
-
-def test_a_far_position_that_no_slip_explains_is_kept(read):
-    assert read(placed(*PLACES, ("30.0", "-60.0"))).refused == ()
-
-
-def test_swapped_positions_are_seen_across_the_date_line(read):
-    result = read(
-        placed(("-16.5", "179.9"), ("-16.6", "-179.9"), ("-16.9", "179.5"), ("-17", "-179.5"), ("-16.5", "-0.1"))
-    )
-    assert result.refused == ()  # far off, but no slip: kept
-    swapped = read(placed(("60", "20"), ("61", "21"), ("60.5", "22"), ("20", "60")))
-    assert "swapped?" in only_refusal(swapped).message
-
-
-def test_two_masts_are_no_neighbourhood(read):
-    assert read(placed(("44", "-37"), ("-37", "44"))).refused == ()
-
-
-@pytest.mark.parametrize("change", [{}, {"multiplex": "Other"}, {"transmitter": "Mast Same"}, {"polarisation": "V"}])
-def test_a_repetition_is_refused_with_the_line_of_the_first(read, change):
-    refusal = only_refusal(read(text_of({}, change)))
-    assert refusal.line == 3
-    assert "radiates 682 MHz already in line 2" in refusal.message
-
-
-@pytest.mark.parametrize(
-    "change",
-    [
-        {"channel": "48"},
-        {"transmitter": "Mast Two", "latitude_deg": "44.5"},
-        {"multiplex": "Other", "polarisation": "V"},
-    ],
-)
-def test_another_channel_place_or_polarised_multiplex_is_no_repetition(read, change):
-    assert read(text_of({}, change)).refused == ()
-
-
-def test_the_same_channel_before_and_after_a_day_is_two_emissions_with_two_ids(read):
-    result = read(text_of({"valid_to": "2026-12-31"}, {"valid_from": "2027-01-01", "erp_kw": "50"}))
-    assert result.refused == ()
-    assert len({e.id for e in result.emissions}) == 2
-
-
-def test_one_mast_has_one_place_and_one_ground(read):
-    elsewhere = only_refusal(read(text_of({}, {"channel": "48", "latitude_deg": "44.5"})))
-    assert "and at 44.412, -36.905 in line 2" in elsewhere.message
-    ground = only_refusal(read(text_of({"ground_amsl_m": "100"}, {"channel": "48", "ground_amsl_m": "130"})))
-    assert (ground.column, ground.value) == ("ground_amsl_m", "130")
-    filled = read(text_of({}, {"channel": "48", "ground_amsl_m": "130"}))
-    assert filled.transmitters[0].ground_amsl_m == 130
-
-
-def test_a_date_line_mast_may_be_written_from_both_sides(read):
-    sides = {"longitude_deg": "180"}, {"longitude_deg": "-180", "channel": "48"}
-    assert read(text_of(*sides)).refused == ()
-
-
 # Files that cannot be used at all
 
 
@@ -431,88 +301,6 @@ def test_too_many_rows_are_refused(read, monkeypatch):
 def test_a_file_cannot_take_the_demos_name(read, name):
     with pytest.raises(TransmitterFileError, match="give the file a name"):
         read(text_of({}), name)
-
-
-# Import
-
-
-@pytest.fixture
-def store(tmp_path):
-    return Store.open(tmp_path / "data")
-
-
-def write(tmp_path, text, name="mine.csv"):
-    path = tmp_path / name
-    path.write_text(text)
-    return path
-
-
-def test_an_import_stores_the_good_rows_and_counts_the_others(tmp_path, store):
-    summary = import_template(write(tmp_path, text_of({}, {"channel": "48"}, {"channel": "1"})), store)
-    assert (summary.written, len(summary.added), summary.result.rows_refused) == (True, 2, 1)
-    assert [e.channel for e in store.emissions()] == ["47", "48"]
-    (source,) = store.sources()
-    assert (source.id, source.name, source.rows_kept, source.rows_refused) == ("mine", "mine.csv", 2, 1)
-
-
-def test_an_import_is_told_in_lines_and_as_json(tmp_path, store):
-    text = text_of({}, {"channel": "1"}, {"channel": "48", "erp_kw": "x"}, columns=(*COLUMNS, "remark"))
-    summary = import_template(write(tmp_path, text), store, dry_run=True)
-    lines = summary.text().splitlines()
-    assert lines[0] == "1 of 3 rows kept, 2 refused (transmitters: 1, multiplexes: 1)"
-    assert lines[1] == 'source "mine": 1 added, 0 changed, 0 gone (dry run: nothing was stored)'
-    assert lines[2] == "columns not used: remark"
-    assert lines[4] == 'line 4: erp_kw is "x": write a number such as 100, or <=100 where only the limit is known'
-    document = json.loads(json.dumps(summary.document()))
-    assert (document["rows_kept"], document["refused"][1]["column"], document["written"]) == (
-        1,
-        "erp_kw",
-        False,
-    )
-
-
-def test_a_dry_run_tells_the_changes_and_stores_nothing(tmp_path, store):
-    import_template(write(tmp_path, text_of({}, {"channel": "48"})), store)
-    before = store.emissions()
-    path = write(tmp_path, text_of({"erp_kw": "50"}, {"channel": "49"}))
-    trial = import_template(path, store, dry_run=True)
-    assert not trial.written
-    assert store.emissions() == before
-    real = import_template(path, store)
-    assert (trial.added, trial.changed, trial.gone) == (real.added, real.changed, real.gone)
-    assert [len(ids) for ids in (real.added, real.changed, real.gone)] == [1, 1, 1]
-
-
-def test_importing_the_same_file_again_changes_nothing(tmp_path, store):
-    path = write(tmp_path, template_example())
-    first = import_template(path, store)
-    again = import_template(path, store)
-    assert len(first.added) == 3
-    assert (again.added, again.changed, again.gone) == ((), (), ())
-
-
-def test_a_file_without_a_good_row_leaves_what_is_stored(tmp_path, store):
-    import_template(write(tmp_path, text_of({})), store)
-    with pytest.raises(TransmitterFileError, match=r"no usable row \(1 read\): [^\n]+\nline 2: erp_kw is empty"):
-        import_template(write(tmp_path, text_of({"erp_kw": ""})), store)
-    with pytest.raises(TransmitterFileError, match="add rows under the header"):
-        import_template(write(tmp_path, text_of()), store)
-    assert len(store.emissions()) == 1
-
-
-def test_a_spoiled_file_does_not_replace_good_rows(tmp_path, store):
-    import_template(write(tmp_path, text_of({}, {"channel": "48"}, {"channel": "49"})), store)
-    spoiled = write(tmp_path, text_of({}, {"channel": "48", "erp_kw": "x"}, {"channel": "49", "erp_kw": "x"}))
-    with pytest.raises(TransmitterFileError, match="2 of 3 rows are refused, too many to replace"):
-        import_template(spoiled, store)
-    assert len(store.emissions()) == 3
-
-
-def test_two_files_stand_side_by_side(tmp_path, store):
-    store.replace_source(Source("demo", "demo"), [], [], [])
-    import_template(write(tmp_path, text_of({}), "north.csv"), store)
-    import_template(write(tmp_path, text_of({}), "south.csv"), store)
-    assert [e.id for e in store.emissions()] == ["north:mast-one:first:682", "south:mast-one:first:682"]
 
 
 def test_thousands_of_rows_are_read_in_moments(read):

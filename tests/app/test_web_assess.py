@@ -262,3 +262,12 @@ def test_an_impossible_obstacle_names_its_field(client):
     answer = client.post("/api/assess", json={"roof": roof | {"obstacles": [house]}})
     assert answer.status_code == 422
     assert answer.json()["error"]["field"] == "roof.obstacles.0.width_m"
+
+
+def test_a_wrong_chain_among_several_is_named_with_its_part_and_place(client):
+    chain = next(one for one in client.get("/api/chains").json()["chains"] if one["name"] == "high-gain")
+    chain = {key: chain[key] for key in chain if key not in ("id", "created", "updated")}
+    chain["parts"][1]["length_m"] = 99999
+    error = refused(ask(client, chains=["roof-yagi", "loft-dipole", chain]))
+    assert error["field"] == "chains[2].parts[1].length_m"
+    assert error["message"].startswith('chain "High-gain roof aerial": feeder "Feeder from the roof": length_m 99999')

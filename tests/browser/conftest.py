@@ -8,7 +8,17 @@ from collections.abc import Iterator
 
 import pytest
 import uvicorn
-from playwright.sync_api import Browser, BrowserContext, ConsoleMessage, Page, Playwright, Request, sync_playwright
+from playwright.sync_api import (
+    Browser,
+    BrowserContext,
+    ConsoleMessage,
+    Page,
+    Playwright,
+    Request,
+    ViewportSize,
+    expect,
+    sync_playwright,
+)
 
 from app.demo.scenario import ensure_demo
 from app.transmitters.store import Store
@@ -24,6 +34,12 @@ FLAGS = [
     "--disable-component-update",
     "--disable-sync",
 ]
+expect.set_options(timeout=45_000)  # a busy machine is not a fault of the page
+WINDOW: ViewportSize = {"width": 1280, "height": 900}
+# What other pages of the context kept is not this one's memory; sessionStorage is a page's own.
+FORGET = """try {
+    if (!sessionStorage.getItem('begun')) { localStorage.clear(); sessionStorage.setItem('begun', 'yes'); }
+} catch { /* a document without storage */ }"""
 NO_WEBGL = ["--disable-webgl", "--disable-webgl2", "--disable-3d-apis"]
 
 
@@ -76,15 +92,27 @@ class Watched:
 
     def open(self, browser: Browser, **options: object) -> Page:
         """Open a new page in a context of its own."""
-        wanted = {"viewport": {"width": 1280, "height": 900}, "base_url": self.address} | options
-        context = browser.new_context(**wanted)
+        context = self.context(browser, **options)
         self.contexts.append(context)
+        return self.page_in(context)
+
+    def context(self, browser: Browser, **options: object) -> BrowserContext:
+        """Return a context on the server."""
+        return browser.new_context(**({"viewport": WINDOW, "base_url": self.address} | options))
+
+    def page_in(self, context: BrowserContext) -> Page:
+        """Open a page whose console and requests are watched."""
         page = context.new_page()
-        page.set_default_timeout(15_000)
+        page.set_default_timeout(45_000)
         page.on("pageerror", lambda error: self.wrong.append(str(error)))
         page.on("console", self._hear)
         page.on("request", self._see)
         return page
+
+    def check(self) -> None:
+        """Fail if anything went wrong, and begin anew."""
+        wrong, self.wrong, self.also, self.expected = self.wrong, [], "data:", ""
+        assert wrong == []
 
     def _hear(self, message: ConsoleMessage) -> None:
         if message.type == "error" and not (self.expected and self.expected in message.text):
@@ -95,15 +123,54 @@ class Watched:
             self.wrong.append(f"left the server: {request.url}")
 
 
+@pytest.fixture(scope="session")
+def watcher(address) -> Watched:
+    return Watched(address)
+
+
 @pytest.fixture
-def watched(address) -> Iterator[Watched]:
-    one = Watched(address)
-    yield one
-    for context in one.contexts:
+def watched(watcher) -> Iterator[Watched]:
+    yield watcher
+    for context in watcher.contexts:
         context.close()
-    assert one.wrong == []
+    watcher.contexts.clear()
+    watcher.check()
+
+
+@pytest.fixture(scope="session")
+def common(watcher, browser) -> Iterator[BrowserContext]:
+    """One context for most tests: what its cache holds is not loaded again."""
+    context = watcher.context(browser)
+    yield context
+    context.close()
 
 
 @pytest.fixture
-def page(watched, browser) -> Page:
-    return watched.open(browser)
+def fresh(watched, common) -> Iterator[Page]:
+    """A page that has not been loaded, and remembers nothing."""
+    page = watched.page_in(common)
+    page.add_init_script(FORGET)
+    yield page
+    page.close()
+
+
+@pytest.fixture(scope="module")
+def open_page(watcher, common) -> Iterator[list[Page]]:
+    """The page that a module's tests pass on; empty until it is needed, and after a failure."""
+    pages: list[Page] = []
+    yield pages
+    for page in pages:
+        page.close()
+
+
+@pytest.fixture
+def page(watched, common, open_page) -> Iterator[Page]:
+    """A page that an earlier test may have loaded: `answered` and `show` bring it to a roof of their own."""
+    if not open_page:
+        open_page.append(watched.page_in(common))
+        open_page[0].add_init_script(FORGET)
+    page = open_page[0]
+    yield page
+    page.unroute_all()
+    if page.viewport_size != WINDOW:
+        page.set_viewport_size(WINDOW)

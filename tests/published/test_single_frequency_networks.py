@@ -69,3 +69,15 @@ def test_delay_of_hours_is_only_interference():
     symbol = symbol_of("DVB-T2", 8)
     arrival = np.array([0.0, 3.6e9])
     assert split(np.array([1.0, 0.5]), arrival, shares_by_start(arrival, symbol), FIRST, 10.0) == pytest.approx([1, 0])
+
+
+def test_networks_reckoned_together_are_as_each_alone():
+    symbols = [symbol_of("DVB-T", 8, "8K 1/32"), symbol_of("DVB-T2", 8)]
+    arrival = np.array([[0.0, 20.0, 300.0], [5.0, 460.0, 2.0]])
+    power = np.random.default_rng(3).uniform(0.1, 10, (7, 2, 3))
+    shares = np.stack([shares_by_start(one, symbol) for one, symbol in zip(arrival, symbols, strict=True)])
+    together = split(power, arrival, shares, FIRST, 10.0)
+    rise = echo_rise_db(power, arrival, np.array([8.0, 7.0]), np.array([2.0, 1.0]), 10.0)
+    for n, (width, most) in enumerate(((8.0, 2.0), (7.0, 1.0))):
+        assert np.array_equal(together[:, n], split(power[:, n], arrival[n], shares[n], FIRST, 10.0))
+        assert np.array_equal(rise[:, n], echo_rise_db(power[:, n], arrival[n], width, most, 10.0))

@@ -3,7 +3,7 @@ import test from 'node:test';
 import { movedBetween } from '../../static/scripts/actions.js';
 import { found, joined } from '../../static/scripts/air_list.js';
 import { createHistory } from '../../static/scripts/history.js';
-import { fieldsOf, gainText, NEW_PARTS, parseGain, PART_WORDS } from '../../static/scripts/part_fields.js';
+import { gainText, parseGain } from '../../static/scripts/part_fields.js';
 
 const rows = joined(
   [{ id: '1', transmitter_id: 't', multiplex_id: 'm', channel: '30', on: true, valid_to: '2027-01-01' }, { id: '2', transmitter_id: 'u', multiplex_id: 'm', channel: '31', on: false }],
@@ -32,10 +32,6 @@ test('steps are taken back one by one, and the same twice is one', () => {
 test('a gain table is typed and read back; what is none is none', () => {
   assert.deepEqual(parseGain(gainText([[470, 8.9], [694, 14.4]])), [[470, 8.9], [694, 14.4]]);
   for (const text of ['', '470', '694: 1; 470: 2', '470: x']) assert.equal(parseGain(text), null);
-});
-
-test('every kind that can be added has a name and fields', () => {
-  for (const kind of Object.keys(NEW_PARTS)) assert.ok(PART_WORDS[kind] && fieldsOf(kind).length, kind);
 });
 
 test('what a reading moved is told, largest first', () => {

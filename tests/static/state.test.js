@@ -1,7 +1,7 @@
 import assert from 'node:assert/strict';
 import test from 'node:test';
 import {
-  chainNow, chainsAsked, chainsHere, changes, columns, createStore, decode, encode, initialState, NOTHING, question, shownCell, titleOf, verdictOf,
+  chainForTheRoof, chainNow, chainsAsked, chainsHere, changes, columns, createStore, decode, encode, initialState, isStale, NOTHING, question, shownCell, titleOf, verdictOf,
 } from '../../static/scripts/state.js';
 import { sampleAnswer, sampleVerdict } from './sample.js';
 
@@ -10,26 +10,55 @@ const answered = (change = {}) => ({ ...initialState(), answer: sampleAnswer(), 
 test('a link carries everything that was typed, ticked and changed', () => {
   const kept = {
     where: '44.5, -37.2 & #', height: '8', now: 'loft', idea: 'long', cell: { multiplex: 'b', chain: 'long' }, sheet: 'path',
-    second: 'short', around: 'trees', seen: { a: 'perfect' }, landmark: 'left of the tower', obstacles: [{ bearing_deg: 1 }],
-    edits: [{ name: 'own', parts: [] }], settings: { method: 'p1546' }, assumptions: { reserve_db: 2 }, pins: [{ name: 'A' }],
+    second: 'short', around: 'trees', seen: { a: 'perfect' }, landmark: 'left of the tower',
+    obstacles: [{ bearing_deg: 1, distance_m: 30, height_agl_m: 8, width_m: 10 }],
+    edits: [{ name: 'own', parts: [] }], settings: { method: 'p1546' }, assumptions: { reserve_db: 2 },
+    pins: [{ name: 'A', where: { latitude_deg: 1, longitude_deg: 2 }, height: 10 }], notes: [],
   };
   assert.deepEqual(decode(`#${encode({ ...initialState(), ...kept })}`), kept);
 });
 
-test('a link of the first version still opens', () => {
-  const { where, height, now, seen, edits } = decode('#v=1&at=1%2C2&height=9&now=loft');
+test('a link of an older or unknown version fills in what it holds, and that is said', () => {
+  const { where, height, now, seen, edits, notes } = decode('#v=1&at=1%2C2&height=9&now=loft');
   assert.deepEqual({ where, height, now, seen, edits }, { where: '1,2', height: '9', now: 'loft', seen: {}, edits: [] });
+  assert.match(notes[0], /older version of Gainworth: what it holds is filled in/);
+  assert.match(decode('#v=99&at=1,2&height=7').notes[0], /another version/);
+  assert.equal(decode('#v=99&at=1,2&height=7').height, '7');
+  assert.equal(decode('#at=1,2').where, '1,2');
 });
 
-test('what a link holds in another shape is left out', () => {
-  const strange = JSON.stringify({ edits: 'none', seen: [], assumptions: null, second: 7, landmark: 'tower' });
-  const { edits, seen, assumptions, second, landmark } = decode(`#v=2&more=${encodeURIComponent(strange)}`);
-  assert.deepEqual({ edits, seen, assumptions, second, landmark }, { edits: [], seen: {}, assumptions: {}, second: null, landmark: 'tower' });
-  assert.deepEqual(decode('#v=2&more=%7B').edits, []);
+test('what a link holds in another shape is left out and named', () => {
+  const strange = {
+    edits: 'none', seen: { a: 'perfect', b: 'green' }, assumptions: null, second: 7, landmark: 'tower', around: 'moon', later: 1,
+    obstacles: [{ bearing_deg: 1 }, { bearing_deg: 1, distance_m: 30, height_agl_m: 8, width_m: 10 }],
+  };
+  const found = decode(`#v=2&at=1,2&colour=red&sheet=cellar&more=${encodeURIComponent(JSON.stringify(strange))}`);
+  const { edits, seen, assumptions, second, landmark, around, obstacles, sheet } = found;
+  assert.deepEqual({ edits, seen, assumptions, second, landmark, around, sheet }, { edits: [], seen: { a: 'perfect' }, assumptions: {}, second: null, landmark: 'tower', around: 'mapped', sheet: 'skyline' });
+  assert.equal(obstacles.length, 1);
+  for (const words of ['“later”', 'edits', 'seen: b', 'assumptions', 'second “7”', 'around “moon”', '1 of obstacles']) assert.ok(found.notes[0].includes(words), words);
+  assert.match(found.notes[0], /and 1 more\.$/);
+  assert.match(decode('#v=2&more=%7B').notes[0], /cut off/);
 });
 
-test('a link of an unknown version or from elsewhere is left alone', () => {
-  for (const text of ['', '#', '#v=0&at=1,2', '#top', '#v=99']) assert.deepEqual(decode(text), {});
+test('what is no link says nothing', () => {
+  for (const text of ['', '#', '#top']) assert.deepEqual(decode(text), {});
+});
+
+test('an answer is stale once something else is typed', () => {
+  const asked = { where: '1, 2', height: '10' };
+  assert.equal(isStale(answered({ asked, where: '1, 2' })), false);
+  assert.equal(isStale(answered({ asked, where: '1, 3' })), true);
+  assert.equal(isStale(answered({ asked, where: '1, 2', height: 'abc' })), true);
+  assert.equal(isStale(initialState()), false);
+});
+
+test('where no idea pays, the rigger is told what is up', () => {
+  const verdicts = ['long', 'short'].map((candidate) => sampleVerdict({ candidate, answer: 'not worth it' }));
+  const answer = { ...sampleAnswer(), verdicts };
+  assert.equal(chainForTheRoof(answered({ answer })), 'loft');
+  assert.equal(chainForTheRoof(answered({ answer, idea: 'long' })), 'long');
+  assert.equal(chainForTheRoof(answered()), 'long');
 });
 
 test('listeners hear each change with the state before it', () => {

@@ -50,6 +50,8 @@ def test_pure_modules_know_neither_page_nor_network():
         "history",
         "air_list",
         "part_fields",
+        "chain_edits",
+        "sent_file",
     ):
         text = (STATIC / "scripts" / f"{name}.js").read_text()
         assert not re.search(r"\b(document\.(get|query|create)|window\.|localStorage|fetch\()", text), name

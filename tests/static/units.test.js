@@ -1,7 +1,7 @@
 import assert from 'node:assert/strict';
 import test from 'node:test';
 import {
-  bearingText, chanceText, compassBearing, countText, distanceText, heightIn, heightText, moneyText, numberText, parseHeight, parseNumber, parsePlace, placeText, rodsText, signedText, told,
+  bearingText, chanceText, compassBearing, countText, distanceText, heightIn, heightText, moneyText, numberText, parseHeight, parseLength, parseNumber, parsePlace, placeText, plainText, rodsText, signedText, told,
 } from '../../static/scripts/units.js';
 
 test('a chance is told in tenths, and never as certain or impossible', () => {
@@ -76,8 +76,25 @@ test('a height is metres, with or without the unit', () => {
   assert.deepEqual(['10', ' 8.5 m', '8,5'].map(parseHeight), [{ height: 10 }, { height: 8.5 }, { height: 8.5 }]);
 });
 
-test('what is no height says what to write', () => {
-  for (const text of ['', 'ten', '1e2', '10 miles']) assert.match(parseHeight(text).problem, /metres, such as 10/);
+test('what is no height says what came, what is allowed and how to write it', () => {
+  for (const text of ['ten', '1e2', '10 miles', '-3', '1.000,5']) {
+    assert.equal(parseHeight(text).problem, `“${text}” is not a height: write it in metres above the ground, 1 to 200, such as 10.`);
+  }
+  assert.match(parseHeight(' ').problem, /empty: write it in metres/);
+  assert.match(parseHeight('5000').problem, /“5000” is not possible: .* 1 to 200/);
+  assert.match(parseHeight('0,5').problem, /“0,5” is not possible/);
+  assert.match(parseHeight('abc', 'imperial').problem, /in feet above the ground, 3.3 to 656, such as 33/);
+});
+
+test('lengths are read in the reader’s units', () => {
+  assert.equal(parseLength('10', 'imperial'), 3.05); // 1 ft = 0.3048 m, to a centimetre
+  assert.equal(parseLength('10 m', 'imperial'), 10);
+  assert.equal(parseLength('12,5', 'metric'), 12.5);
+  for (const text of ['', '-1', 'x', '1,250']) assert.equal(parseLength(text, 'metric'), null);
+});
+
+test('a number is typed back as it is shown', () => {
+  assert.deepEqual([10, 12.5, 3.048, 0].map((one) => plainText(one, 2)), ['10', '12.5', '3.05', '0']);
 });
 
 test('feet and miles by their exact lengths', () => {
@@ -97,6 +114,12 @@ test('a sentence of the server is told in the reader’s units, other figures un
 
 test('numbers are read with point or comma, and what is none is none', () => {
   assert.deepEqual(['52', '52,5', '\u22123', 'x', ''].map(parseNumber), [52, 52.5, -3, null, null]);
+});
+
+test('a mark that may part thousands is not taken for a decimal one', () => {
+  const read = (text, decimal) => parseNumber(text, decimal);
+  assert.deepEqual(['1,250', '1.250', '0,125', '1,25', '1234,567', '1,234.5'].map((text) => read(text, '.')), [null, 1.25, 0.125, 1.25, 1234.567, null]);
+  assert.deepEqual(['1,250', '1.250', '52.5'].map((text) => read(text, ',')), [1.25, null, 52.5]);
 });
 
 test('west of true north, a compass reads more', () => {
