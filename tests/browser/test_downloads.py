@@ -59,7 +59,7 @@ def tiles():
 
 
 @pytest.fixture
-def address(tiles, tmp_path, monkeypatch):
+def own_address(tiles, tmp_path, monkeypatch):
     """A server of our own with masts on land and no ground at all."""
     monkeypatch.setenv("GAINWORTH_DATA_DIR", str(tmp_path / "data"))
     monkeypatch.setenv("GAINWORTH_CACHE_DIR", str(tmp_path / "cache"))
@@ -80,6 +80,12 @@ def address(tiles, tmp_path, monkeypatch):
     yield f"http://127.0.0.1:{server.servers[0].sockets[0].getsockname()[1]}"
     server.should_exit = True
     thread.join(10)
+
+
+@pytest.fixture
+def watcher(watcher, own_address):
+    """Pages on the server of our own, watched as all are."""
+    return type(watcher)(own_address)
 
 
 def open_panel(page, reach="30"):
