@@ -77,7 +77,10 @@ async function assess() {
   const { where, height } = store.get();
   const at = await placed(where);
   if (where !== store.get().where) return;
-  if ('problem' in at) return void store.set({ trouble: { message: at.problem, field: 'where' } });
+  if ('problem' in at) {
+    const doubt = at.swapped ? { question: 'Are latitude and longitude swapped?', swapped: at.swapped } : null;
+    return void store.set({ trouble: { message: at.problem, field: 'where' }, doubt });
+  }
   const up = parseHeight(height, store.get().units);
   if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
   store.set({ roof: at.place, asking: true, trouble: null });
@@ -99,6 +102,7 @@ async function submit() {
   const { where } = store.get();
   store.set({ doubt: null, notes: [] });
   await assess();
+  if (where !== store.get().where || store.get().trouble?.field === 'where') return;
   const asked = await api.read('/api/position', { text: where.trim() }).catch(() => null);
   if (!asked?.question || where !== store.get().where) return;
   store.set({ doubt: { question: asked.question, swapped: { latitude_deg: asked.longitude_deg, longitude_deg: asked.latitude_deg } } });
@@ -120,11 +124,13 @@ async function overNewGround() {
 /**
  * Degrees are read here; minutes and seconds, grids and codes by the server.
  * @param {string} text
- * @returns {Promise<{place: import('./state.js').Place} | {problem: string}>}
+ * @returns {Promise<{place: import('./state.js').Place} | {problem: string, swapped?: import('./state.js').Place}>}
  */
 async function placed(text) {
   const at = parsePlace(text);
-  if (!('problem' in at) || !/\d/.test(text)) return at;
+  const numbers = text.match(/[\d.]+/g)?.length ?? 0;
+  const otherwise = numbers > 2 || (numbers > 0 && /[^\d\s.,;\u2212\u2013-]/.test(text));
+  if (!('problem' in at) || !otherwise || at.problem.includes('not on Earth')) return at;
   try {
     const { latitude_deg, longitude_deg } = await api.read('/api/position', { text: text.trim() });
     return { place: { latitude_deg, longitude_deg } };

@@ -148,7 +148,8 @@ export function placeText(place) {
 /**
  * Reads a position: "51.5, -3.1", "51.5 N 3.1 W", "51,5; -3,1".
  * @param {string} text
- * @returns {{place: {latitude_deg: number, longitude_deg: number}} | {problem: string}}
+ * @returns {{place: Place} | {problem: string, swapped?: Place}}
+ * @typedef {{latitude_deg: number, longitude_deg: number}} Place
  */
 export function parsePlace(text) {
   const example = 'write it as latitude, longitude in degrees, such as 12.345, -6.789 (degrees and minutes, grid references and Plus Codes are read, too)';
@@ -162,7 +163,10 @@ export function parsePlace(text) {
   const [, first, northSouth, second, eastWest] = match;
   const latitude = Number(first) * (northSouth?.toUpperCase() === 'S' ? -1 : 1);
   const longitude = Number(second) * (eastWest?.toUpperCase() === 'W' ? -1 : 1);
-  if (Math.abs(latitude) > 90) return { problem: `Latitude ${latitude} is not on Earth: use ${MINUS}90 to 90.` };
+  if (Math.abs(latitude) > 90) {
+    const swapped = Math.abs(latitude) <= 180 && Math.abs(longitude) <= 90 ? { latitude_deg: longitude, longitude_deg: latitude } : undefined;
+    return { problem: `Latitude ${latitude} is not on Earth: use ${MINUS}90 to 90.`, swapped };
+  }
   if (Math.abs(longitude) > 180) return { problem: `Longitude ${longitude} is not on Earth: use ${MINUS}180 to 180.` };
   return { place: { latitude_deg: latitude, longitude_deg: longitude } };
 }

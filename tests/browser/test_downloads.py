@@ -59,7 +59,7 @@ def tiles():
 
 
 @pytest.fixture
-def address(tiles, tmp_path, monkeypatch):
+def own_address(tiles, tmp_path, monkeypatch):
     """A server of our own with masts on land and no ground at all."""
     monkeypatch.setenv("GAINWORTH_DATA_DIR", str(tmp_path / "data"))
     monkeypatch.setenv("GAINWORTH_CACHE_DIR", str(tmp_path / "cache"))
@@ -80,6 +80,12 @@ def address(tiles, tmp_path, monkeypatch):
     yield f"http://127.0.0.1:{server.servers[0].sockets[0].getsockname()[1]}"
     server.should_exit = True
     thread.join(10)
+
+
+@pytest.fixture
+def watcher(watcher, own_address):
+    """Pages on the server of our own, watched as all are."""
+    return type(watcher)(own_address)
 
 
 def open_panel(page, reach="30"):
@@ -196,10 +202,17 @@ def test_latitude_and_longitude_that_look_swapped_are_asked(watched, browser):
     page.get_by_role("button", name="Swap them").click()
     expect(page.get_by_label("Roof at")).to_have_value(re.compile(r"^52\.3\d*, 5\.4"))
     expect(page.locator(".doubt")).to_be_empty()
+    page.get_by_label("Roof at").fill("111.5, 49.5")  # no latitude
+    page.get_by_label("Roof at").press("Enter")
+    expect(page.locator("#place-problem")).to_contain_text("Latitude 111.5 is not on Earth")
+    expect(page.locator(".doubt")).to_contain_text("Are latitude and longitude swapped?")
+    page.get_by_role("button", name="Swap them").click()
+    expect(page.get_by_label("Roof at")).to_have_value(re.compile(r"^49\.5\d*, 111\.5"))
 
 
 @pytest.mark.parametrize(
-    "text", ["49°30'0\"N 11°30'0\"E", "8FXHGG22+22", "EPSG:32632 681021 5486293", "32N 681021 5486293"]
+    "text",
+    ["49°30'0\"N 11°30'0\"E", "8FXHGG22+22", "EPSG:32632 681021 5486293", "32N 681021 5486293", "49 30 0 11 30 0"],
 )
 def test_a_position_is_read_in_every_writing_of_the_command_line(watched, browser, text):
     watched.expected = "422"

@@ -119,6 +119,8 @@ def test_the_keyboard_alone_does_everything(fresh):
     fresh.keyboard.press("Enter")
     expect(fresh.locator(".sentence")).to_have_text(SENTENCE)
     fresh.keyboard.press("Tab")
+    expect(fresh.get_by_role("button", name="Take this device’s place")).to_be_focused()
+    fresh.keyboard.press("Tab")
     expect(fresh.locator("#height")).to_be_focused()
     for _ in range(2):
         fresh.keyboard.press("Tab")
