@@ -79,10 +79,10 @@ async function assess() {
   if (where !== store.get().where) return;
   if ('problem' in at) {
     const doubt = at.swapped ? { question: 'Are latitude and longitude swapped?', swapped: at.swapped } : null;
-    return void store.set({ trouble: { message: at.problem, field: 'where' }, doubt });
+    return void store.set({ trouble: { message: at.problem, field: 'where' }, doubt, asking: false });
   }
   const up = parseHeight(height, store.get().units);
-  if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' } });
+  if ('problem' in up) return void store.set({ trouble: { message: up.problem, field: 'height' }, asking: false });
   store.set({ roof: at.place, asking: true, trouble: null });
   remember(true);
   const { chains } = question(store.get(), up.height);
@@ -311,7 +311,7 @@ async function assessLink() {
     store.set({ now: kept(now) ?? chainNow(chains), idea: kept(idea), second: kept(second) });
     for (const name of new Set([now, idea, second])) if (name && !known(name)) say(`No chain “${name}” is kept here: ${name === now ? 'look at “Up now”' : 'it is left out'}.`);
   }
-  if (!store.get().where) return;
+  if (!store.get().where) return void store.set({ asking: false });
   await assess();
   const { answer } = store.get();
   if (cell && answer && !answer.multiplexes.some((one) => one.id === cell.multiplex)) say(`No multiplex “${cell.multiplex}” is in reach: the one that changes most is shown.`);
@@ -356,7 +356,7 @@ store.subscribe((state) => {
   follow(state);
 });
 window.addEventListener('hashchange', () => {
-  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash) });
+  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash), asking: true }); // sheets wait for the new answer
   void assessLink();
   if (store.get().pins.length) void actions.comparePins();
 });

@@ -87,6 +87,7 @@ def test_a_cell_opens_its_path_and_ledger(page):
 
 def test_the_ledger_adds_up_to_the_margin_in_both_nights(page):
     answered(page, sheet="ledger")
+    expect(page.locator(".ledger .body")).to_be_visible()  # what stood there before is hidden until the steps come
     expect(page.locator(".ledger .held-back")).to_contain_text("What limits it is")
     margins = []
     for night in range(2):
@@ -101,9 +102,9 @@ def test_the_ledger_adds_up_to_the_margin_in_both_nights(page):
 
 def test_only_part_of_the_zone_is_filled_and_the_line_is_drawn(page):
     answered(page, sheet="path")
+    expect(page.locator(".drawing .said.halo")).to_contain_text("into the line")
     assert page.locator(".drawing .line").get_attribute("d").startswith("M")
     assert page.locator(".drawing .taken").get_attribute("d").startswith("M")
-    assert "into the line" in page.locator(".drawing .said.halo").inner_html()
     facts = page.locator(".path .facts").inner_text()
     assert re.search(r"P\.1546\s+\d+\.\d dB", facts)
     assert re.search(r"P\.1812\s+\d+\.\d dB", facts)
