@@ -173,19 +173,24 @@ def turn(
 def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> tuple[NDArray[np.bool_], FloatArray]:
     """Return draws of what is received (draws, m) and the chance of each multiplex (m,).
 
-    One emission alone has its closed form; alternatives are counted over the joint draws. What is hopeless is not
-    drawn, but for the loudest emission, whose errors eat up the headroom of all.
+    One emission alone has its closed form. Of alternatives the best one's chance of enough signal has it; what the
+    others add, and too much level takes, is counted over the joint draws. What is hopeless is not drawn, but for the
+    loudest emission, whose errors eat up the headroom of all.
     """
     median, loudest = turned.median, int(turned.median.loudest)
     rows = [e for e, chance in enumerate(turned.enough.tolist()) if chance >= NEVER or e == loudest]
     cells = turned.cells.of(rows)
-    margins = capped(cells.draws(), cells.median_db, median.headroom_db[rows], rows.index(loudest) if rows else 0)
+    enough = cells.draws()
+    margins = capped(enough, cells.median_db, median.headroom_db[rows], rows.index(loudest) if rows else 0)
     draws = received(margins, [air.multiplex_of[e] for e in rows], multiplexes)
-    chance = draws.mean(axis=0)
-    owned = rows_of(air.multiplex_of)
+    owned, drawn = rows_of(air.multiplex_of), {e: row for row, e in enumerate(rows)}
+    chance = np.empty(len(multiplexes))
     for m, name in enumerate(multiplexes):
-        if len(owned[name]) == 1:
-            chance[m] = turned.chance[owned[name][0]]
+        best = max(owned[name], key=lambda e: turned.chance[e])
+        chance[m] = turned.chance[best]
+        if len(owned[name]) > 1 and best in drawn:
+            counted = draws[:, m].mean() - (enough[:, drawn[best]] >= 0).mean()
+            chance[m] = max(chance[m], turned.enough[best] + counted)
     return draws, chance
 
 

@@ -10,10 +10,13 @@ from datetime import date
 from pathlib import Path
 from typing import Any, TypeVar
 
+import numpy as np
+
 from app.aiming import aimed
 from app.air import Air
 from app.air_at import air_at
 from app.answer import answer_document
+from app.answer_cells import probability
 from app.assumptions import Assumptions
 from app.cautions import off_air_notes
 from app.chain.parts import Chain
@@ -147,6 +150,8 @@ def _for_each(chains: Sequence[Chain], work: Callable[[Chain], T]) -> dict[str, 
 
 def _outcome(turned: Turned, air: Air, multiplexes: Sequence[str]) -> Outcome:
     draws, chance = multiplex_chances(turned, air, multiplexes)
+    # Judged as they are written, so that what is gained, lost or wanted fits the grades beside it.
+    chance = np.array([probability(one) for one in chance])
     return Outcome(turned.chain.name, turned.chain, draws, chance, turned.held_back_by(air, multiplexes))
 
 

@@ -4,9 +4,12 @@ import json
 import math
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
+from app import planner
 from app.cautions import CAUTIONS
+from app.chance import DRAWS
 from app.demo.scenario import DEMO_ROOFS
 from app.errors import ChainError, NotStoredError, RequestError, RoofError
 from app.planner import assess, stored_chain
@@ -51,6 +54,33 @@ def test_document_has_the_shape_of_the_interface(ask):
             "price_per_extra", "break_even_price", "gained", "lost", "now_secure", "cheapest_equal", "measure_next",
             "reason"} <= set(answer["verdicts"][0])  # fmt: skip
     json.dumps(answer, allow_nan=False)
+
+
+@pytest.mark.parametrize("roof", [BAY, FOOT])
+@pytest.mark.parametrize("availability_percent", [50, 90, 99])
+def test_a_multiplex_is_as_likely_as_its_best_channel_or_more(ask, roof, availability_percent):
+    """Fréchet's bounds of a union: no less than the greatest, no more than the sum (which 4096 draws blur)."""
+    answer = ask(roof, availability_percent=availability_percent)
+    emissions = {one["id"]: one["chains"] for one in answer["emissions"]}
+    for multiplex in answer["multiplexes"]:
+        for name, found in multiplex["chains"].items():
+            each = [emissions[one][name]["chance"] for one in multiplex["emissions"]]
+            assert max(each) <= found["chance"] <= sum(each) + 0.003
+
+
+def test_what_is_written_as_secure_is_counted_as_secure(demo_world, monkeypatch):
+    """A chance of 0.94996 is written 0.95: its grade, the verdict and the count by grade go by what is written."""
+    draws = np.ones((DRAWS, 8), dtype=bool)
+    written = {"loft-dipole": 0.94994, "roof-yagi": 0.94996}
+    monkeypatch.setattr(
+        planner, "multiplex_chances", lambda turned, air, names: (draws, np.full(8, written[turned.chain.name]))
+    )
+    request = AssessRequest(NORTH, chains=tuple(written), now="loft-dipole")
+    answer = assess(request, demo_world.store, demo_world.ground)
+    names = [one["id"] for one in answer["multiplexes"]]
+    assert {cell(answer, name, "roof-yagi")["grade"] for name in names} == {"secure"}
+    assert answer["chains"]["roof-yagi"]["secure"] == 8
+    assert answer["verdicts"][0]["now_secure"] == names
 
 
 def test_all_three_answers_occur(ask):
