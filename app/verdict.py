@@ -32,6 +32,7 @@ GAIN_STEP = 0.2  # a chance must move by more than this to count as gained or lo
 HAVE = 0.70  # and reach, or have had, this
 SECURE = 0.95
 COUNTS_FROM, COUNTS_TO = 0.05, 0.95  # wanted unless chosen: possible somewhere, not secure everywhere
+LEAST_EXTRA = 0.0005  # of a multiplex: less is written as none, and no price can be set against none
 SAME_CHANCE = 0.02  # chances this close are the same to a person
 
 # What helps against a limit and what does not.
@@ -142,7 +143,7 @@ def compare(
         expected_extra_error=float(extra.std() / np.sqrt(DRAWS)),
         price_difference=price,
         bill=lines,
-        price_per_extra=None if price is None or expected_extra <= 0 else price / expected_extra,
+        price_per_extra=None if price is None or expected_extra < LEAST_EXTRA else price / expected_extra,
         break_even_price=worth_per_multiplex * expected_extra,
         gained=_named(multiplexes, (after - before > GAIN_STEP) & (after >= HAVE)),
         lost=_named(multiplexes, (before - after > GAIN_STEP) & (before >= HAVE)),
@@ -173,7 +174,8 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
     place = {name: m for m, name in enumerate(multiplexes)}
     missing = [name for name in wanted if baseline.chance[place[name]] < HAVE]
     if not missing:
-        return f"All {len(wanted)} wanted are likely already with {baseline.title}; little is left to gain."
+        whole = "The one wanted is" if len(wanted) == 1 else f"All {len(wanted)} wanted are"
+        return f"{whole} likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
     held = ", ".join(

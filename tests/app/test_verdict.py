@@ -45,6 +45,17 @@ def test_higher_price_and_no_gain_is_not_worth_it():
     assert (found.answer, found.expected_extra, found.price_per_extra) == ("not worth it", 0, None)
 
 
+def test_no_price_is_set_against_a_gain_that_is_written_as_none():
+    """The answer writes 0.000 more: 52 divided by it would be a hundred million for each."""
+    found = verdict(outcome(LARGE, 1, 0.5004, 0), outcome(SMALL, 1, 0.5, 0))
+    assert (round(found.expected_extra, 3), found.price_per_extra) == (0, None)
+
+
+def test_one_that_works_already_is_spoken_of_as_one():
+    found = verdict(outcome(LARGE, 1, 0.9, 0), outcome(SMALL, 1, 0.8, 0), wanted=("b",))
+    assert found.reason.startswith("The one wanted is likely already with Short roof Yagi")
+
+
 def test_an_identical_candidate_differs_by_exactly_nothing():
     same = outcome(SMALL, 0.3, 0.6, 0.9)
     found = verdict(same, outcome(SMALL, 0.3, 0.6, 0.9))
