@@ -119,9 +119,16 @@ def sentence(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
         else f"{baseline}: {count_words(answer['chains'][baseline]['expected_count'])} of {total}."
     )
     adds = change_words(answer["multiplexes"], verdict)
-    cost = "its price is not known" if price is None else f"for {price:.0f} {currency}"
     word = verdict["answer"] or "no answer without a price"
     even = f", break-even {limit:.0f} {currency}" if limit >= 0.5 else " at any price"
+    if price is None:
+        cost = "its price is not known"
+    elif round(price) == 0:
+        cost = "at no cost"
+    elif price < 0:
+        cost, even = f"and saves {-price:.0f} {currency}", even if limit >= 0.5 else ""
+    else:
+        cost = f"for {price:.0f} {currency}"
     return f"{today} {candidate} {adds} {cost}: {word}{even}."
 
 

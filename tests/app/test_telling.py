@@ -5,7 +5,7 @@ import json
 import pytest
 
 from app.chance import grade
-from app.telling import chance_words, change_words, count_words, none_is_worth_it
+from app.telling import chance_words, change_words, count_words, none_is_worth_it, sentence
 
 
 @pytest.fixture(scope="module")
@@ -55,3 +55,20 @@ def test_none_is_worth_it_only_where_several_were_tried_and_none_pays():
     assert not none_is_worth_it([no])
     assert not none_is_worth_it([no, yes])
     assert not none_is_worth_it([no, {"answer": None}])
+
+
+@pytest.mark.parametrize(
+    ("price", "limit", "told"),
+    [
+        (52.0, 100.0, "for 52 EUR: not worth it, break-even 100 EUR."),
+        (52.0, -20.0, "for 52 EUR: not worth it at any price."),
+        (0.2, -20.0, "at no cost: not worth it at any price."),
+        (-112.0, -160.0, "and saves 112 EUR: not worth it."),
+    ],
+)
+def test_what_costs_less_saves(price, limit, told):
+    """In the page's words; what saves money can hardly be said not to pay at any price."""
+    verdict = {"baseline": "now", "candidate": "idea", "expected_extra": -3.2, "answer": "not worth it"}
+    chains = {name: {"currency": "EUR", "expected_count": 5.0} for name in ("now", "idea")}
+    answer = {"multiplexes": multiplexes([[0.9, 0.1]]), "chains": chains}
+    assert sentence(answer, verdict | {"price_difference": price, "break_even_price": limit}).endswith(told)
