@@ -163,7 +163,7 @@ def _roof_line(answer: Document, name: str, landmark: str) -> list[list[str]]:
         rows.append([bearing_words(aerial["pointing_deg"]), "from true north"])
         if declination:
             compass = aerial["pointing_deg"] - declination["declination_deg"]
-            error = f"by compass on {declination['day']}, ± {declination['error_deg']:.1f}°"
+            error = f"by compass on {declination['day']}, ±{2 * declination['error_deg']:.1f}° (19 in 20)"
             rows.append([bearing_words(compass), error])
         rows.append([RODS[aerial["polarisation"]], "seen from the ground"])
     rows.append([f"{answer['roof']['aerial_agl_m']:g} m", "above the ground"])

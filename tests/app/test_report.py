@@ -46,6 +46,10 @@ def test_the_roof_line_names_true_and_compass_bearing_rods_height_and_landmark(c
     words = [word for _, word in content["roof_line"]]
     assert words[0] == "from true north"
     assert words[1].startswith("by compass on ")
+    # Two standard deviations of a normal hold 19 in 20; the caution on the same sheet says as much.
+    doubt = re.search(r"±[\d.]+° \(19 in 20", words[1])
+    assert doubt
+    assert any(doubt[0] in caution for caution in content["cautions"])
     assert [content["roof_line"][place][0] for place in (2, 3, 4)] == ["rods flat", "10 m", "left of the chapel"]
 
 
