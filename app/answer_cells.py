@@ -26,6 +26,7 @@ def cells_of(turned: Turned, air: Air) -> list[dict[str, Any]]:
         "margin_p05_db": _rounded(margin_db - QUANTILE_95 * sigma_db),
         "margin_p95_db": _rounded(margin_db + QUANTILE_95 * sigma_db),
         "sigma_db": _rounded(sigma_db),
+        "level_sigma_db": _rounded(turned.level_sd_db),
         "chance": _rounded(np.clip(turned.chance, 0, 1), 4),
         "held_back_by": _limits(turned, turned.held_back()),
         "outlets": [list(ones) for ones in zip(*outlets, strict=True)],
@@ -61,7 +62,7 @@ def _at_outlet(turned: Turned, number: int, air: Air) -> list[dict[str, Any]]:
     better_off = margin_db != turned.margin_db  # than the outlet that decides
     here = np.maximum(turned.enough, exceedance(margin_db + turned.read_db, turned.sigma_db))
     enough = np.where(better_off, here, turned.enough)
-    chance = not_too_much(enough, median.headroom_db, turned.median.of_loudest(turned.sigma_db))
+    chance = not_too_much(enough, median.headroom_db, turned.median.of_loudest(turned.level_sd_db))
     columns: dict[str, list[Any]] = {
         "name": [median.name] * len(margin_db),
         "level_dbuv": _rounded(np.where(by_raised, raised.level_dbuv, faded.level_dbuv)),

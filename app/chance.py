@@ -223,7 +223,7 @@ def exceedance_through(median_db: FloatArray, sigma_db: FloatArray, curved: Erro
 
 
 def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: FloatArray) -> FloatArray:
-    """Chance of enough signal less that of too much; the loudest emission's error eats up the headroom of all."""
+    """Chance of enough signal less that of too much; the error of the loudest level eats up the headroom of all."""
     near = np.asarray(headroom_db <= NEVER_SD * loudest_sd_db)
     if not near.any():
         return chance
@@ -231,12 +231,9 @@ def not_too_much(chance: FloatArray, headroom_db: FloatArray, loudest_sd_db: Flo
     return result
 
 
-def capped(draws_db: FloatArray, median_db: FloatArray, headroom_db: FloatArray, loudest: int) -> FloatArray:
-    """Draws of margins (DRAWS, e), below 0 also where the loudest one's draw exceeds its median by the headroom."""
-    if not len(median_db):
-        return draws_db
-    louder = draws_db[:, loudest] - median_db[loudest]
-    result: FloatArray = np.minimum(draws_db.T, headroom_db[:, np.newaxis] - louder).T
+def capped(draws_db: FloatArray, headroom_db: FloatArray, louder_db: FloatArray) -> FloatArray:
+    """Draws of margins (DRAWS, e), below 0 also where the loudest level's draws (DRAWS,) exceed the headroom (e,)."""
+    result: FloatArray = np.minimum(draws_db.T, headroom_db[:, np.newaxis] - louder_db).T
     return result
 
 

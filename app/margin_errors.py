@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -14,6 +16,8 @@ from app.disturbance_errors import Disturbers, Moved, disturbers_of
 from app.link_budget import Reception
 
 FloatArray = NDArray[np.float64]
+
+BAD_NIGHT = ("fade:", "enhancement:")  # how the normals of a time state are named
 
 
 def wanted_errors(
@@ -33,6 +37,11 @@ def wanted_errors(
         wanted_rejection_sd_db(chain.aerial, polarisation, air, reception, assumptions),
     )
     return path, (*_parts_of_any_pointing(chain, air, assumptions), rejection)
+
+
+def of_an_ordinary_day(parts: Sequence[ErrorPart]) -> tuple[ErrorPart, ...]:
+    """Return the errors that a level has at its median: all but those of a bad night."""
+    return tuple(part for part in parts if not all(key.startswith(BAD_NIGHT) for key in part.keys))
 
 
 def path_error(air: Air, assumptions: Assumptions, moved: Moved) -> PathError:

@@ -16,7 +16,14 @@ from app.company import STATES, Company, State
 from app.disturbance import Ear, Effect, disturbed, ear_of, effect_of
 from app.disturbance_errors import moved_by, rejection_sd_db, slope_and_spread, squares_of
 from app.link_budget import Reception, is_overload, receive
-from app.margin_errors import air_disturbers, parts_of, path_error, wanted_errors, wanted_rejection_sd_db
+from app.margin_errors import (
+    air_disturbers,
+    of_an_ordinary_day,
+    parts_of,
+    path_error,
+    wanted_errors,
+    wanted_rejection_sd_db,
+)
 from app.roof import Roof
 
 FloatArray = NDArray[np.float64]
@@ -48,7 +55,9 @@ class Turned:
     company: Company
     effects: dict[State, Effect]
     cells: Cells
+    level: Cells  # of the levels on an ordinary day, relative to their medians
     sigma_db: FloatArray  # (e,) of the cells
+    level_sd_db: FloatArray  # (e,)
     read_db: FloatArray  # (e,) by how much readings moved the margin
     enough: FloatArray  # (e,) chance that the margin is at least 0
     chance: FloatArray  # (e,) likewise, less that of too much level
@@ -150,7 +159,9 @@ def turn(
         parts_of(chain, polarisation, air, faded, assumptions, state_b, moved),
         known,
     )
-    sigma_db, enough = cells.sigma_db, cells.chance
+    own_path, own_parts = wanted_errors(chain, polarisation, air, median, assumptions)
+    level = Cells(np.zeros_like(air.fade_db), own_path, of_an_ordinary_day(own_parts), known)
+    sigma_db, level_sd_db, enough = cells.sigma_db, level.sigma_db, cells.chance
     return Turned(
         chain,
         pointing_deg,
@@ -161,10 +172,12 @@ def turn(
         air.company,
         effects,
         cells,
+        level,
         sigma_db,
+        level_sd_db,
         cells.mean_db - cells.median_db,
         enough,
-        not_too_much(enough, median.headroom_db, median.of_loudest(sigma_db)),
+        not_too_much(enough, median.headroom_db, median.of_loudest(level_sd_db)),
         counts,
         swept,
     )
@@ -174,14 +187,14 @@ def multiplex_chances(turned: Turned, air: Air, multiplexes: Sequence[str]) -> t
     """Return draws of what is received (draws, m) and the chance of each multiplex (m,).
 
     One emission alone has its closed form. Of alternatives the best one's chance of enough signal has it; what the
-    others add, and too much level takes, is counted over the joint draws. What is hopeless is not drawn, but for the
-    loudest emission, whose errors eat up the headroom of all.
+    others add, and too much level takes, is counted over the joint draws. What is hopeless is not drawn.
     """
-    median, loudest = turned.median, int(turned.median.loudest)
-    rows = [e for e, chance in enumerate(turned.enough.tolist()) if chance >= NEVER or e == loudest]
-    cells = turned.cells.of(rows)
-    enough = cells.draws()
-    margins = capped(enough, cells.median_db, median.headroom_db[rows], rows.index(loudest) if rows else 0)
+    median = turned.median
+    rows = [e for e, chance in enumerate(turned.enough.tolist()) if chance >= NEVER]
+    enough = turned.cells.of(rows).draws()
+    margins = enough
+    if rows:
+        margins = capped(enough, median.headroom_db[rows], turned.level.of([int(median.loudest)]).draws()[:, 0])
     draws = received(margins, [air.multiplex_of[e] for e in rows], multiplexes)
     owned, drawn = rows_of(air.multiplex_of), {e: row for row, e in enumerate(rows)}
     chance = np.empty(len(multiplexes))
@@ -261,7 +274,9 @@ def _sweep(
     turned_away = wanted_rejection_sd_db(ear.chain.aerial, polarisation, air, reception, assumptions)
     sigma_db = np.sqrt(fixed.sigma_db**2 + turned_away**2 + moved**2)
     enough = exceedance_through(margin + fixed.mean_db, sigma_db, fixed.curved)
-    return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(sigma_db)), lost)
+    level = replace(fixed, parts=of_an_ordinary_day(parts[:-1]))
+    level_sd_db = np.sqrt(level.sigma_db**2 + turned_away**2)
+    return Swept(not_too_much(enough, reception.headroom_db, reception.of_loudest(level_sd_db)), lost)
 
 
 def _expected_by_degree(chances: FloatArray, air: Air, counted: Sequence[str]) -> FloatArray:

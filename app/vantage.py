@@ -17,13 +17,12 @@ from app.chain.parts import Aerial, AerialPolarisation, Chain, Feeder, Outlet, R
 from app.chance import Cells, Knowledge, Loadings
 from app.disturbance import disturbed, ear_of, effect_of
 from app.link_budget import receive
-from app.margin_errors import wanted_errors
+from app.margin_errors import of_an_ordinary_day, wanted_errors
 from app.readings import AT_THE_AERIAL, Size
 from app.roof import Roof
 
 FloatArray = NDArray[np.float64]
 
-STATES_OF_TIME = ("fade:", "enhancement:")  # normals of a bad night, not of the median state
 
 # A neighbour's aerial by its looks: gain [dBd] and beamwidth; common practice, no source.
 NEIGHBOURS: dict[Size, tuple[float, float]] = {"small": (6.0, 60.0), "medium": (9.0, 45.0), "large": (12.0, 30.0)}
@@ -72,9 +71,8 @@ def vantage(
     path, errors = wanted_errors(chain, polarisation, air, got, assumptions)
     parts = tuple(
         part
-        for part in errors
-        if not part.keys[0].startswith(STATES_OF_TIME)
-        and not (point == AT_THE_AERIAL and part.keys[0].startswith("feeder:"))
+        for part in of_an_ordinary_day(errors)
+        if not (point == AT_THE_AERIAL and part.keys[0].startswith("feeder:"))
     )
     margin_db = shown.cn_db - air.signals.required_cn_db
     cells = Cells(margin_db, path, parts, known)

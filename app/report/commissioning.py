@@ -19,7 +19,8 @@ def sheet_rows(answer: dict[str, Any], chain: str, mer_limit_db: float) -> list[
             continue
         emission = next(one for one in answer["emissions"] if one["id"] == cell["emission"])
         through = emission["chains"][chain]
-        spread_db = QUANTILE_95 * through["sigma_db"]
+        spread_db = QUANTILE_95 * through["sigma_db"]  # of a margin: interference moves it, too
+        louder_db = QUANTILE_95 * through["level_sigma_db"]
         for outlet in through["outlets"]:
             level = outlet["level_median_dbuv"]
             cn_db = outlet["cn_db"] + level - outlet["level_dbuv"]
@@ -30,7 +31,7 @@ def sheet_rows(answer: dict[str, Any], chain: str, mer_limit_db: float) -> list[
                     "outlet": outlet["name"],
                     "multiplex": multiplex["name"],
                     "channel": channel,
-                    "level": f"{level:.0f} ({level - spread_db:.0f} to {level + spread_db:.0f})",
+                    "level": f"{level:.0f} ({level - louder_db:.0f} to {level + louder_db:.0f})",
                     "mer": _span(max(0.0, low), max(0.0, high)),
                 }
             )

@@ -108,7 +108,7 @@ def test_every_ledger_runs_from_the_radiated_power_to_the_margin(ask):
 
 
 def test_chance_of_one_emission_is_the_normal_of_its_margin_less_too_much_level(ask):
-    """Enough by its own margin; too much by the headroom, which the loudest emission's error eats up."""
+    """Enough by its own margin; too much by the headroom, which the error of the loudest level eats up."""
     emissions = ask(now="roof-yagi")["emissions"]
     for name in ("loft-dipole", "roof-yagi", "high-gain", "high-gain-masthead"):
         cells = [emission["chains"][name] for emission in emissions if emission["chains"]]
@@ -116,8 +116,21 @@ def test_chance_of_one_emission_is_the_normal_of_its_margin_less_too_much_level(
         for cell in cells:
             enough = 0.5 * math.erfc(-cell["margin_db"] / cell["sigma_db"] / math.sqrt(2))
             headroom_db = min(outlet["headroom_db"] for outlet in cell["outlets"])
-            too_much = 0.5 * math.erfc(headroom_db / loudest["sigma_db"] / math.sqrt(2))
+            too_much = 0.5 * math.erfc(headroom_db / loudest["level_sigma_db"] / math.sqrt(2))
             assert cell["chance"] == pytest.approx(max(enough - too_much, 0), abs=2e-3)
+
+
+def test_a_level_has_the_errors_of_its_own_signal_whatever_disturbs_it(ask):
+    answer = ask(FOOT, now="roof-yagi", chains=("roof-yagi",))
+    own = 2.0**2 + 2.0**2 + 2.5**2 + 1.5**2 + 1.0**2  # roof, band, emission, aerial, feeder: the stated error model
+    disturbed = False
+    for emission in answer["emissions"]:
+        through = emission["chains"]["roof-yagi"]
+        squares = own + emission["field"]["sigma_db"] ** 2
+        expected = [math.sqrt(squares + away**2) for away in (0.0, 3.0, 4.0)]  # on the axis, off it, cross-polar
+        assert min(abs(through["level_sigma_db"] - one) for one in expected) < 0.02
+        disturbed |= abs(through["sigma_db"] - through["level_sigma_db"]) > 1
+    assert disturbed
 
 
 def test_multiplex_on_two_masts_has_at_least_the_better_ones_chance(ask):
