@@ -227,6 +227,8 @@ def _measure_next(one: MeasureNext) -> dict[str, Any]:
         "bearing_deg": round(one.bearing_deg, 2),
         "value": round(one.value, 2),
         "expected_dbuv": round(one.expected_dbuv, 1),
+        "through": one.through,
+        "point": one.point,
         "tipping": [
             {"from_dbuv": part.from_dbuv, "to_dbuv": part.to_dbuv, "answer": part.answer, "why": part.why}
             for part in one.tipping

@@ -11,6 +11,7 @@ from app.readings import Reading, reading_from_document, reading_to_document
 from app.roof import check
 from app.scan_list import ANY, OnAir, ScanList, read_scan_list
 from app.transmitters.store import Store
+from app.vantage import MEASURING_AERIAL
 
 REACH_KM = 150.0
 SCAN_LIST = "scan list"
@@ -86,7 +87,7 @@ def _notes(readings: Sequence[Reading], store: Store, latitude_deg: float, longi
                 f'"{named[0]:.60}" is no channel or multiplex on the air within {REACH_KM:g} km: kept, and not used '
                 "before it is; `gainworth transmitters list` shows what is stored"
             )
-        if one.chain and one.chain not in chains:
+        if one.chain and one.chain not in (*chains, MEASURING_AERIAL):
             stored = ", ".join(sorted(chains)) or "none"
             notes.append(
                 f'no chain "{one.chain:.60}" is stored: kept, and used by answers that bring it; stored: {stored}'

@@ -47,6 +47,8 @@ class Readable:
     level_dbuv: FloatArray  # (DRAWS,) what there is to read
     sd_db: float  # of the reading about it: meter, position, weather
     least_dbuv: float = -np.inf  # a meter shows no lower level; what it learns there is only that
+    through: str = ""  # name of the chain it is read through
+    point: str = ""  # where on it: an outlet's name, or "aerial"
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,6 +70,8 @@ class MeasureNext:
     value: float  # in the chains' currency
     expected_dbuv: float
     tipping: tuple[Interval, ...]
+    through: str = ""  # as in Readable: a level means nothing without the place it is read at
+    point: str = ""
 
 
 def most_valuable(
@@ -102,6 +106,8 @@ def most_valuable(
         values[best],
         float(np.median(one.level_dbuv)),
         tipping(one, worth, has_before, has_after),
+        one.through,
+        one.point,
     )
 
 

@@ -25,7 +25,7 @@ from app.roof import Roof
 from app.statements import QUANTILE_99, Situation
 from app.stored_chains import stored_chain
 from app.transmitters.store import Store
-from app.vantage import Vantage, measuring_chain, vantage
+from app.vantage import MEASURING_AERIAL, Vantage, measuring_chain, vantage
 from terrain.mosaic import Ground
 
 SAME_HEIGHT_M = 0.25
@@ -58,6 +58,9 @@ class Place:
         name = reading.chain or self.default_chain()
         if name is None:
             raise LookupError("no chain to read through: name one")
+        if name == MEASURING_AERIAL and name not in self.turned:
+            plane = reading.polarisation or self._plane_of(reading)
+            return self.seen_from(measuring_chain(), 0.0, plane, AT_THE_AERIAL, reading)
         one = self.turned.get(name) or self._turned(name)
         point = reading.point or ""
         if point not in ("", AT_THE_AERIAL, *one.chain.outlet_names):
@@ -119,6 +122,16 @@ class Place:
             self._airs[height_m] = air_of(fields, disturbers)
         return self._airs[height_m]
 
+    def _plane_of(self, reading: Reading) -> AerialPolarisation:
+        """How a measuring aerial is held for what is read: as the transmitter's antenna is."""
+        found = (
+            one.emission.polarisation
+            for one in self.heard.fields
+            if reading.emission in (one.emission.id, str(one.emission.channel))
+            or reading.multiplex == one.emission.multiplex_id
+        )
+        return "vertical" if next(found, "") == "vertical" else "horizontal"
+
     def _turned(self, name: str) -> Turned:
         try:
             chain = stored_chain(self.store, name)
@@ -175,10 +188,12 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
         looks = [vantage(measuring_chain(), 0.0, plane, "", air, roof, place.assumptions, known) for plane in planes]
         upright = np.array([one == "vertical" for one in air.signals.polarisation])
         levels = np.where(upright, looks[1].level_draws(), looks[0].level_draws())
+        through, points = MEASURING_AERIAL, looks[0].read_at
     else:
         one = turned[str(place.default_chain())]
         looked = vantage(one.chain, one.pointing_deg, one.polarisation, "", air, roof, place.assumptions, known)
         levels = looked.level_draws()
+        through, points = one.chain.name, looked.read_at
     meter = INSTRUMENTS["meter"]
     fade_db, enhancement_db = _weather(place)
     readables = []
@@ -187,7 +202,17 @@ def what_can_be_read(place: Place, turned: Mapping[str, Turned], known: Knowledg
         parts = (meter.calibration_sd_db, meter.repeat_sd_db, value("position_sd_db"), weather)
         if float((levels[:, e] >= LEAST_READABLE_DBUV).mean()) >= 0.05:
             spread_db = float(np.linalg.norm(parts))
-            readables.append(Readable(here.emission.id, here.bearing_deg, levels[:, e], spread_db, LEAST_READABLE_DBUV))
+            readables.append(
+                Readable(
+                    here.emission.id,
+                    here.bearing_deg,
+                    levels[:, e],
+                    spread_db,
+                    LEAST_READABLE_DBUV,
+                    through,
+                    points[e],
+                )
+            )
     return readables
 
 

@@ -8,6 +8,7 @@ from typing import Any
 
 from app.request import NOTHING
 from app.site import place
+from app.vantage import MEASURING_AERIAL
 
 LEAST_CHANGE = 0.05  # of a chance, and of a number of multiplexes: less is no change to a person
 RODS = {"horizontal": "rods flat", "vertical": "rods upright"}
@@ -144,7 +145,15 @@ def measure_line(answer: Mapping[str, Any], verdict: Mapping[str, Any]) -> str:
     currency = answer["chains"][verdict["candidate"]]["currency"]
     where = f"channel {emission['channel']} from {first['bearing_deg']:.0f}°"
     levels = ", ".join(parts) or "any level"
-    return f"Measure first: {where}, in dB(µV): {levels}; worth {first['value']:.0f} {currency}."
+    place_words = reading_place(first, first["through"])
+    return f"Measure first: {where} {place_words}, in dB(µV): {levels}; worth {first['value']:.0f} {currency}."
+
+
+def reading_place(first: Mapping[str, Any], through: str) -> str:
+    """Say where a level is to be read and through what, `through` being the chain as its reader knows it."""
+    if first["through"] == MEASURING_AERIAL:
+        return "with a measuring aerial of 6 dBd straight into the meter"
+    return f"at the outlet {first['point']} through {through}"
 
 
 def reading_lines(answer: Mapping[str, Any]) -> Iterator[str]:

@@ -23,6 +23,7 @@ from app.roof import Roof
 
 FloatArray = NDArray[np.float64]
 
+MEASURING_AERIAL = "measuring aerial"  # names the chain of a reading where nothing is up
 
 # A neighbour's aerial by its looks: gain [dBd] and beamwidth; common practice, no source.
 NEIGHBOURS: dict[Size, tuple[float, float]] = {"small": (6.0, 60.0), "medium": (9.0, 45.0), "large": (12.0, 30.0)}
@@ -36,6 +37,7 @@ class Vantage:
     pointing_deg: float
     polarisation: AerialPolarisation
     point: str  # "aerial", an outlet's name, or "" for the outlet that decides
+    read_at: tuple[str, ...]  # (e,) the point by name, also where it is the outlet that decides
     level_dbuv: FloatArray  # (e,)
     cn_db: FloatArray  # (e,)
     margin_db: FloatArray  # (e,) above the required C/N, without reserve
@@ -77,7 +79,10 @@ def vantage(
     margin_db = shown.cn_db - air.signals.required_cn_db
     cells = Cells(margin_db, path, parts, known)
     levels = shown.level_dbuv
-    return Vantage(chain, pointing_deg, polarisation, point, levels, shown.cn_db, margin_db, cells, cells.loadings())
+    read_at = tuple(point or got.outlets[i].name for i in got.deciding_outlet)
+    return Vantage(
+        chain, pointing_deg, polarisation, point, read_at, levels, shown.cn_db, margin_db, cells, cells.loadings()
+    )
 
 
 def at_the_aerial(chain: Chain) -> Chain:
@@ -116,7 +121,7 @@ def measuring_chain() -> Chain:
         front_to_back_db=0,
     )
     return Chain(
-        name="measuring aerial",
+        name=MEASURING_AERIAL,
         parts=(aerial, Outlet(id="terminals", name=AT_THE_AERIAL), Receiver(id="meter", name="Meter")),
     )
 

@@ -15,7 +15,7 @@ from app.report.masts import bearing_words, channel_words, masts_that_matter
 from app.request import NOTHING, AssessRequest
 from app.site import place
 from app.stored_chains import stored_chain
-from app.telling import RODS, chance_words, change_words, count_words, has_moved, none_is_worth_it
+from app.telling import RODS, chance_words, change_words, count_words, has_moved, none_is_worth_it, reading_place
 from app.transmitters.store import Store
 from terrain.mosaic import Ground
 
@@ -58,7 +58,7 @@ def report_content(
         "price": _price(answer, chosen, verdict),
         "paths": paths,
         "paths_left_out": left_out,
-        "readings": [_reading(one) for one in answer.get("readings", {}).get("items", [])],
+        "readings": [_reading(answer, one) for one in answer.get("readings", {}).get("items", [])],
         "commissioning": sheet_rows(answer, chosen, INSTRUMENTS["meter"].mer_limit_db),
         "assumptions": [
             f"{one['id']}: {one['value']:g} {one['unit']} ({one['reason']})" for one in answer["assumptions"]
@@ -128,7 +128,7 @@ def _decision(answer: Document, verdict: Document | None) -> str:
     cost = "; its price is not known" if price is None else f" for {_money(price, candidate['currency'])}"
     limit = max(0.0, verdict["break_even_price"])
     word = verdict["answer"] or "no answer without a price"
-    up_to = f", worth up to {_money(limit, candidate['currency'])}" if limit >= 1 else ""
+    up_to = f", up to {_money(limit, candidate['currency'])}" if limit >= 1 else ""
     return f"{today} {change}{cost}: {word}{up_to}."
 
 
@@ -147,6 +147,7 @@ def _measure(answer: Document, verdict: Document | None) -> Document | None:
         tips.append(f"{span} dB(µV): {tip['answer'] or 'no answer'}")
     return {
         "what": f"{channel_words(emission)} from {emission['transmitter_name']} at {bearing_words(one['bearing_deg'])}",
+        "where": reading_place(one, _title(answer, one["through"])),
         "first": bool(verdict and verdict["answer"] == "measure first"),
         "tips": tips,
     }
@@ -222,13 +223,18 @@ def _price(answer: Document, name: str, verdict: Document | None) -> str:
     return words if difference is None else f"{words}; to pay {_money(difference, chain['currency'])}"
 
 
-def _reading(one: Mapping[str, Any]) -> str:
+def _reading(answer: Document, one: Mapping[str, Any]) -> str:
     unit = KIND_WORDS.get(one["kind"], "")
     value = one.get("state") or (f"{one['value_db']:.1f} {unit}" if "value_db" in one else one["kind"])
     day = f"{one['day']}: " if one.get("day") else ""
     used = "" if one["used"] else f" (not used: {one['reason']})"
-    foreseen = "" if one.get("predicted_db") is None else f", foreseen {one['predicted_db']:.1f}"
-    of = one.get("read_of") or one.get("multiplex") or one.get("emission") or ""
+    foreseen = ""
+    if one["kind"] in KIND_WORDS and one.get("predicted_db") is not None:  # a picture has no figure to set beside it
+        foreseen = f", foreseen {one['predicted_db']:.1f}"
+    of = one.get("multiplex") or one.get("emission") or ""
+    if any(each["id"] == one.get("read_of") for each in answer["emissions"]):
+        emission = _emission(answer, one["read_of"])
+        of = f"{channel_words(emission)} from {emission['transmitter_name']}"
     return f"{day}{of} {value}{foreseen}{used}"
 
 

@@ -41,7 +41,8 @@ def _body(content: Mapping[str, Any], pdf_address: str) -> Iterable[str]:
         yield f"<p>{escape(content['note'])}</p>"
     if content["measure"]:
         lead = "Read first" if content["measure"]["first"] else "A reading would tell most"
-        yield f"<p>{lead}: <strong>{escape(content['measure']['what'])}</strong></p>"
+        what, where = (escape(content["measure"][key]) for key in ("what", "where"))
+        yield f"<p>{lead}: <strong>{what}</strong>, {where}</p>"
         yield _list(content["measure"]["tips"])
     if content["roof_line"]:
         yield f"<h2>On the roof: {escape(content['chain'])}</h2><dl class='roof-line'>"

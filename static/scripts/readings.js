@@ -1,7 +1,7 @@
 /** Readings of this roof: what to read next, what was read and what it moved, and the logbook of all roofs. */
 
 import { button, field, make, part, refill, select } from './dom.js';
-import { NOTHING, titleOf, verdictOf, chainsHere } from './state.js';
+import { MEASURING_AERIAL, NOTHING, titleOf, verdictOf, chainsHere } from './state.js';
 import { bearingText, chanceText, dayText, moneyText, numberText, parseNumber, signedText } from './units.js';
 
 const KINDS = [['level', 'level, dB(µV)'], ['mer', 'MER, dB'], ['cn', 'C/N, dB'], ['perfect', 'perfect'], ['breaks up', 'breaks up'], ['not found', 'not found']];
@@ -29,6 +29,8 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
   const note = make('input', { type: 'text', maxLength: 200 });
   /** @type {import('./state.js').State} */
   let state;
+  /** @type {string | undefined} */
+  let upNow;
   form.prepend(field('Channel or multiplex', of), field('What was read', kind), field('Figure', value), field('Through', chain), field('At', point), field('With', instrument), field('Note', note));
   kind.addEventListener('change', shape);
   chain.addEventListener('change', points);
@@ -58,7 +60,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     if (!done) return;
     area.value = '';
     const rest = done.scan_list?.not_recognised ?? [];
-    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${nameOf(one.of)}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
+    found.replaceChildren(...(done.scan_list?.recognised ?? []).map((one) => make('li', { textContent: `${one.text}: ${onAir(one.of)}, ${one.state}` })), ...rest.map((one) => make('li', { className: 'rest', textContent: `not recognised: ${one.text}` })));
   });
   part(element, '.show-logbook').addEventListener('click', async () => {
     const document = await logbook();
@@ -101,15 +103,25 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
     const currency = state.answer.chains[verdict.candidate]?.currency;
     const from = (tip) => (tip.from_dbuv === null ? `below ${numberText(tip.to_dbuv, 0)}` : tip.to_dbuv === null ? `above ${numberText(tip.from_dbuv, 0)}` : `${numberText(tip.from_dbuv, 0)} to ${numberText(tip.to_dbuv, 0)}`);
     next.replaceChildren(
-      make('p', {}, 'Read next: ', make('b', { textContent: `${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(one.bearing_deg)}` }), ` (${emission.transmitter_name}), expected ${numberText(one.expected_dbuv ?? 0, 0)} dB(µV). Knowing it is worth ${moneyText(one.value, currency)}.`),
+      make('p', {}, 'Read next: ', make('b', { textContent: `${emission.channel ? `channel ${emission.channel}` : `${emission.frequency_mhz} MHz`} at ${bearingText(one.bearing_deg)}` }), ` (${emission.transmitter_name}), ${readAt(one)}: expected ${numberText(one.expected_dbuv ?? 0, 0)} dB(µV). Knowing it is worth ${moneyText(one.value, currency)}.`),
       make('ul', {}, ...(one.tipping ?? []).map((tip) => make('li', {}, `${from(tip)} dB(µV): `, make('b', { textContent: tip.answer ?? 'no answer' }), tip.why ? `, ${tip.why}` : ''))));
+  }
+
+  /** Where, and through what: a level means nothing without. */
+  function readAt(one) {
+    if (one.through === MEASURING_AERIAL) return 'with a measuring aerial of 6 dBd straight into the meter';
+    return `at the outlet ${one.point} through ${titleOf(state, one.through)}`;
   }
 
   function fill() {
     const emissions = state.answer.emissions.map((one) => [`e:${one.id}`, `${one.channel ? `channel ${one.channel}` : `${one.frequency_mhz} MHz`}, ${nameOf(one.multiplex)} from ${one.transmitter_name}`]);
     const whole = state.answer.multiplexes.map((one) => [`m:${one.id}`, one.name]);
     renew(of, [...whole, ...emissions]);
-    renew(chain, chainsHere(state).map((one) => [one.name, titleOf(state, one.name)]), state.now === NOTHING ? undefined : state.now);
+    if (upNow !== state.now) chain.replaceChildren(); // what is up is read through, not what was before
+    upNow = state.now;
+    const measuring = [MEASURING_AERIAL, 'a measuring aerial, 6 dBd'];
+    const kept = chainsHere(state).map((one) => [one.name, titleOf(state, one.name)]);
+    renew(chain, state.now === NOTHING ? [measuring, ...kept] : [...kept, measuring], state.now === NOTHING ? MEASURING_AERIAL : state.now);
     points();
     shape();
     scan.hidden = state.now === NOTHING;
@@ -117,8 +129,15 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
   }
 
   function points() {
+    if (chain.value === MEASURING_AERIAL) return renew(point, [['aerial', 'its terminals']]);
     const parts = chainsHere(state).find((one) => one.name === chain.value)?.parts ?? [];
     renew(point, [['', 'the weakest outlet'], ['aerial', 'the aerial'], ...parts.filter((one) => one.kind === 'outlet').map((one) => [one.name, one.name])]);
+  }
+
+  /** What a line of a list was taken for: a multiplex, or one channel. */
+  function onAir(id) {
+    const emission = state.answer?.emissions.find((one) => one.id === id);
+    return emission ? `${nameOf(emission.multiplex)} from ${emission.transmitter_name}` : nameOf(id);
   }
 
   const nameOf = (id) => state.answer?.multiplexes.find((one) => one.id === id)?.name ?? id;
@@ -158,7 +177,7 @@ export function createReadings(element, { read, forget, confirm, logbook }) {
 /** Gives a list new choices without losing the chosen one. @param {any} list @param {string[][]} pairs @param {string} [first] */
 function renew(list, pairs, first) {
   const now = JSON.stringify(pairs);
-  if (list.dataset.pairs === now) return;
+  if (list.dataset.pairs === now && list.children.length) return;
   const chosen = list.value || first;
   list.dataset.pairs = now;
   list.replaceChildren(...pairs.map(([value, textContent]) => make('option', { value, textContent })));

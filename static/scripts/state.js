@@ -48,6 +48,7 @@
 import { isSheet, linkNotes, strangers, usable } from './link.js';
 
 export const NOTHING = 'nothing';
+export const MEASURING_AERIAL = 'measuring aerial'; // the chain of a reading where nothing is up
 const VERSION = '2';
 const MORE = /** @type {const} */ (['second', 'around', 'seen', 'landmark', 'obstacles', 'edits', 'settings', 'assumptions', 'pins']);
 export const LEAST_CHANGE = 0.05; // of a chance or a number of multiplexes: less is the same to a person

@@ -86,6 +86,7 @@ def test_measure_first_occurs_and_the_reading_decides(ask, plain):
     assert (verdict["candidate"], verdict["answer"]) == ("high-gain-masthead", "measure first")
     first = verdict["measure_next"]
     assert first["emission"].startswith("far-island")
+    assert (first["through"], first["point"]) == ("roof-yagi", "Living room")
     assert first["value"] > 10
     assert [part["answer"] for part in first["tipping"]][-2:] == ["worth it", "not worth it"]
     assert first["tipping"][-1]["why"] == "works already"
@@ -257,7 +258,13 @@ def test_nothing_up_is_read_with_a_measuring_aerial(demo_world):
     request = AssessRequest(NORTH, chains=("high-gain-masthead",), now="nothing", worth_per_multiplex=20.0)
     verdict = assess(request, demo_world.store, demo_world.ground)["verdicts"][0]
     assert verdict["measure_next"]["emission"].startswith("far-island")
-    assert verdict["measure_next"]["expected_dbuv"] > 20
+    first = verdict["measure_next"]
+    assert first["expected_dbuv"] > 20
+    assert (first["through"], first["point"]) == ("measuring aerial", "aerial")
+    read = Reading(kind="level", emission=first["emission"], value_db=first["expected_dbuv"], chain="measuring aerial")
+    [item] = assess(replace(request, readings=(read,)), demo_world.store, demo_world.ground)["readings"]["items"]
+    assert item["used"]
+    assert item["predicted_db"] == pytest.approx(first["expected_dbuv"], abs=0.5)  # median of samples
 
 
 def test_equal_chains_stay_equal_after_readings(ask, demo_world):

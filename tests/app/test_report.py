@@ -53,6 +53,21 @@ def test_the_roof_line_names_true_and_compass_bearing_rods_height_and_landmark(c
     assert [content["roof_line"][place][0] for place in (2, 3, 4)] == ["rods flat", "10 m", "left of the chapel"]
 
 
+def test_the_compass_is_as_doubtful_on_the_roof_line_as_in_the_cautions(content):
+    [line] = [word for _, word in content["roof_line"] if word.startswith("by compass")]
+    [caution] = [one for one in content["cautions"] if one.startswith("A compass points")]
+    said = [re.search(r"±\s?([\d.]+)°", one) for one in (line, caution)]
+    assert said[0] and said[1] and said[0][1] == said[1][1]
+
+
+def test_a_level_is_asked_for_with_its_place_and_a_reading_is_told_by_its_channel(demo_world):
+    read = [{"kind": "seen", "emission": "northern-range-30", "state": "perfect"}]
+    request = SavedRoofIn(**KEPT, readings=read).question().request(None, None, demo_world.store)
+    content = report_content(KEPT, request, demo_world.store, demo_world.ground)
+    assert content["measure"]["where"] == "at the outlet Living room through Short roof Yagi"
+    assert content["readings"] == ["channel 30 from Northern Range perfect"]
+
+
 def test_parts_have_prices_that_add_up_to_the_price_of_the_chain(content):
     prices = [int(price.split()[0]) for _, price in content["parts"] if price]
     assert f"together {sum(prices)} EUR" in content["price"]
