@@ -26,6 +26,7 @@ class DemoRoof:
     name: str
     latitude_deg: float
     longitude_deg: float
+    now: str  # name of the chain that is up there
     shows: str
 
 
@@ -99,8 +100,8 @@ def emissions() -> tuple[Emission, ...]:
     )
 
 
-def _roof(name: str, east_km: float, north_km: float, shows: str) -> DemoRoof:
-    return DemoRoof(name, *_position_deg(east_km, north_km), shows)
+def _roof(name: str, east_km: float, north_km: float, now: str, shows: str) -> DemoRoof:
+    return DemoRoof(name, *_position_deg(east_km, north_km), now, shows)
 
 
 def _position_deg(east_km: float, north_km: float) -> tuple[float, float]:
@@ -110,11 +111,19 @@ def _position_deg(east_km: float, north_km: float) -> tuple[float, float]:
 
 
 DEMO_ROOFS = (
-    _roof("Northern fields", -20, 0, "the far island's multiplexes are missed by a small aerial"),
-    _roof("Western plain", -25, -20, "all that can be had is secure already"),
-    _roof("Eastern bay", -7, -22, "the strong mast is behind a range; a relay with rods upright fills in"),
-    _roof("North shore", -19, 0, "with the short Yagi up, one reading of the far island settles the answer"),
-    _roof("Backbone foot", -10, -22, "a mast on the same channel takes one multiplex away from a small aerial"),
+    _roof("Northern fields", -20, 0, "loft-dipole", "the far island's multiplexes are missed by a small aerial"),
+    _roof("Western plain", -25, -20, "loft-dipole", "all that can be had is secure already"),
+    _roof(
+        "Eastern bay", -7, -22, "loft-dipole", "the strong mast is behind a range; a relay with rods upright fills in"
+    ),
+    _roof("North shore", -19, 0, "roof-yagi", "one reading of the far island settles the answer"),
+    _roof(
+        "Backbone foot",
+        -10,
+        -22,
+        "roof-yagi",
+        "a mast on the same channel takes one multiplex away from a small aerial",
+    ),
 )
 
 

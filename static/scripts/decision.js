@@ -6,9 +6,9 @@ import { heightText, moneyText } from './units.js';
 
 /**
  * @param {HTMLElement} element
- * @param {{place: (place: import('./state.js').Place) => void, back: () => void}} actions
+ * @param {{visit: (roof: any) => void, back: () => void}} actions
  */
-export function createDecision(element, { place, back }) {
+export function createDecision(element, { visit, back }) {
   const told = /** @type {HTMLElement} */ (element.querySelector('.sentence'));
   const reason = /** @type {HTMLElement} */ (element.querySelector('.reason'));
   const terms = /** @type {HTMLElement} */ (element.querySelector('.terms'));
@@ -59,7 +59,7 @@ export function createDecision(element, { place, back }) {
     roofs.replaceChildren(...known.map((roof) => {
       const item = document.createElement('li');
       const button = Object.assign(document.createElement('button'), { type: 'button', textContent: roof.name });
-      button.addEventListener('click', () => place(roof));
+      button.addEventListener('click', () => visit(roof));
       item.append(button, Object.assign(document.createElement('span'), { textContent: roof.shows }));
       return item;
     }));

@@ -45,7 +45,7 @@ const byId = (id) => /** @type {any} */ (document.getElementById(id));
 const panels = [
   createWhere(byId('where'), { type, submit, choose, place }),
   createSeen(byId('seen'), { choose }),
-  createDecision(byId('decision'), { place, back }),
+  createDecision(byId('decision'), { visit, back }),
   createChanges(byId('changes'), { choose }),
   createRoofline(byId('roofline'), { type }),
   createBill(byId('bill')),
@@ -149,6 +149,12 @@ function type(change) {
 function place(at) {
   store.set({ where: placeText(at), seen: {}, doubt: null, notes: [] });
   void assess();
+}
+
+/** @param {any} roof of the demo, with what is up there as long as that chain is kept */
+function visit(roof) {
+  if (chainsHere(store.get()).some((one) => one.name === roof.now)) store.set({ now: roof.now, idea: null, second: null });
+  place(roof);
 }
 
 const NEW_ANSWER = ['now', 'around', 'seen', 'obstacles', 'settings', 'assumptions', 'edits'];

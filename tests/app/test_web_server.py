@@ -134,6 +134,8 @@ def test_health_tells_ground_sources_and_the_demos_roofs(client, demo_world):
     assert len(health["ground"]["rasters"]) == len(demo_world.ground.rasters) > 0
     assert [source["id"] for source in health["sources"]] == ["demo"]
     assert len(health["demo_roofs"]) == len(DEMO_ROOFS)
+    kept = {one["name"] for one in client.get("/api/chains").json()["chains"]}
+    assert {one["now"] for one in health["demo_roofs"]} <= kept
 
 
 def test_lists_are_those_of_the_store(client, demo_world):

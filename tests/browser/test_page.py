@@ -29,6 +29,7 @@ def test_a_roof_of_the_demo_is_one_press_away(fresh):
     fresh.get_by_role("button", name=EAST.name).click()
     expect(fresh.locator(".sentence")).to_have_text(SENTENCE)
     assert fresh.get_by_label("Roof at").input_value().startswith(f"{EAST.latitude_deg}")
+    expect(fresh.get_by_label("Up now")).to_have_value(EAST.now)
 
 
 def test_the_page_and_the_answer_agree(page, address):

@@ -129,10 +129,27 @@ def test_readings_are_entered_move_predictions_and_are_forgotten(page):
     expect(page.locator(".readings .items li")).to_have_count(0)
 
 
+def test_a_reading_is_asked_for_through_what_is_up_or_with_a_measuring_aerial(page):
+    show(page, "readings")
+    through = page.get_by_label("Through")
+    expect(through).to_have_value("roof-yagi")
+    expect(page.locator(".readings .next")).to_contain_text("at the outlet Living room through Short roof Yagi")
+    with page.expect_response("**/api/assess"):
+        page.get_by_label("Up now").select_option("nothing")
+    still(page)
+    expect(through).to_have_value("measuring aerial")
+    expect(page.locator(".readings form.one").get_by_label("At", exact=True)).to_have_value("aerial")
+    with page.expect_response("**/api/assess"):
+        page.get_by_label("Up now").select_option("high-gain")
+    still(page)
+    expect(through).to_have_value("high-gain")
+
+
 def test_a_scan_list_is_pasted_and_what_was_not_recognised_is_said(page):
     show(page, "readings", roof=WEST)
-    page.get_by_label("Or paste the set’s list of channels").fill("Range One 30 quality 90%\nnonsense line")
+    page.get_by_label("Or paste the set’s list of channels").fill("Range One 30 quality 90%\nnonsense line\n33")
     page.get_by_role("button", name="Keep the list").click()
+    expect(page.locator(".readings .recognised")).to_contain_text("33: Range Two from Northern Range, perfect")
     expect(page.locator(".readings .recognised")).to_contain_text("not recognised: nonsense line")
     while page.locator(".readings .items li button", has_text="Forget").count():
         with page.expect_response("**/api/assess"):
