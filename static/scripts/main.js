@@ -232,7 +232,7 @@ function forward() {
 /** @param {string|null} kept as things are to stand */
 function stand(kept) {
   if (kept === null) return;
-  store.set({ ...decode(kept), past: past.steps, undone: past.undone });
+  store.set({ ...decode(kept, store.get().units), past: past.steps, undone: past.undone });
   keep(kept);
   if (store.get().where) void assess();
 }
@@ -290,15 +290,16 @@ function keep(kept) {
 
 function remembered() {
   if (location.hash.length > 1) {
-    return { ...decode(location.hash), ...chosenUnits() };
+    return { ...decode(location.hash, chosenUnits().units), ...chosenUnits() };
   }
   try {
-    return { ...decode(localStorage.getItem(MEMORY) ?? ''), ...chosenUnits() };
+    return { ...decode(localStorage.getItem(MEMORY) ?? '', chosenUnits().units), ...chosenUnits() };
   } catch {
     return {};
   }
 }
 
+/** @returns {{units?: import('./units.js').Units}} */
 function chosenUnits() {
   try {
     return { units: localStorage.getItem(UNITS) === 'imperial' ? 'imperial' : 'metric' };
@@ -362,7 +363,7 @@ store.subscribe((state) => {
   follow(state);
 });
 window.addEventListener('hashchange', () => {
-  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash), asking: true }); // sheets wait for the new answer
+  store.set({ ...initialStateOfARoof(), saved: null, ...decode(location.hash, store.get().units), asking: true }); // sheets wait for the new answer
   void assessLink();
   if (store.get().pins.length) void actions.comparePins();
 });

@@ -46,6 +46,7 @@
  */
 
 import { isSheet, linkNotes, strangers, usable } from './link.js';
+import { heightIn, parseHeight, plainText } from './units.js';
 
 export const NOTHING = 'nothing';
 export const MEASURING_AERIAL = 'measuring aerial'; // the chain of a reading where nothing is up
@@ -92,7 +93,7 @@ export function encode(state) {
   const kept = new URLSearchParams({ v: VERSION });
   const usual = initialState();
   if (state.where) kept.set('at', state.where);
-  kept.set('height', state.height);
+  kept.set('height', state.units === 'imperial' && /\d\s*$/.test(state.height) ? `${state.height.trim()} ft` : state.height);
   if (state.now) kept.set('now', state.now);
   if (state.idea) kept.set('idea', state.idea);
   if (state.cell) {
@@ -108,9 +109,10 @@ export function encode(state) {
 /**
  * What of a link can be used, whatever version it is of; `notes` say what was left out.
  * @param {string} text of encode, or anything else
+ * @param {import('./units.js').Units} [units] heights are told in here; those of a link are metres unless it says feet
  * @returns {Partial<State>}
  */
-export function decode(text) {
+export function decode(text, units = 'metric') {
   const kept = new URLSearchParams(text.replace(/^#/, ''));
   const version = kept.get('v');
   if (version === null && !kept.get('at')) return {};
@@ -121,7 +123,7 @@ export function decode(text) {
   dropped.push(...strangers(kept), ...(isSheet(sheet) ? [] : [`sheet “${sheet}”`]));
   return {
     where: kept.get('at') ?? '',
-    height: kept.get('height') ?? '10',
+    height: heightOf(kept.get('height') ?? '10', units),
     now: kept.get('now') ?? '',
     idea: kept.get('idea'),
     cell: multiplex && chain ? { multiplex, chain } : null,
@@ -129,6 +131,15 @@ export function decode(text) {
     ...values,
     notes: linkNotes(version ?? '', VERSION, dropped),
   };
+}
+
+/** @param {string} height of a link @param {import('./units.js').Units} units @returns {string} as it would be typed here */
+function heightOf(height, units) {
+  const bare = /\d\s*$/.test(height);
+  if (bare && units === 'metric') return height;
+  const up = parseHeight(height, 'metric');
+  if ('height' in up) return plainText(heightIn(up.height, units), 1);
+  return bare ? `${height} m` : height; // not possible, and not to be taken for feet
 }
 
 /** What a link holds beside the usual, each only if it has the shape it should have. @param {string|null} text */

@@ -27,6 +27,16 @@ test('a link of an older or unknown version fills in what it holds, and that is 
   assert.equal(decode('#at=1,2').where, '1,2');
 });
 
+test('a height in a link is the same height to who reads feet and to who reads metres', () => {
+  const at = (units, height) => encode({ ...initialState(), where: '1,2', units, height });
+  assert.equal(decode(at('metric', '10'), 'imperial').height, '32.8'); // the international foot is 0.3048 m
+  assert.equal(decode(at('imperial', '33'), 'metric').height, '10.1');
+  assert.equal(decode(at('imperial', '33'), 'imperial').height, '33');
+  assert.equal(decode(at('imperial', '10 m'), 'metric').height, '10');
+  assert.equal(decode('#v=2&at=1,2', 'imperial').height, '32.8');
+  assert.equal(decode(at('metric', '300'), 'imperial').height, '300 m');
+});
+
 test('what a link holds in another shape is left out and named', () => {
   const strange = {
     edits: 'none', seen: { a: 'perfect', b: 'green' }, assumptions: null, second: 7, landmark: 'tower', around: 'moon', later: 1,
