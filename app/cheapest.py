@@ -41,6 +41,7 @@ from app.request import AssessRequest
 from app.site import site_of
 from app.stored_chains import stored_chain
 from app.transmitters.store import Store
+from app.verdict import LIMIT_WORDS
 from terrain.mosaic import Ground
 
 MOST_CHAINS = 300  # tried; more parts than that are asked to be sorted out first
@@ -251,7 +252,10 @@ def reason(before: Tried | None, after: Tried, air: Air, names: Sequence[str]) -
     rise = after.chance - before.chance
     risen = [m for m in range(len(names)) if rise[m] > MOVED]
     limits = before.turned.held_back_by(air, sorted(set(air.multiplex_of)))
-    why = ", ".join(f"{names[m]} (held back by {limits[m]})" for m in risen) or "a little of each"
+    why = (
+        ", ".join(f"{names[m]} (held back by {LIMIT_WORDS.get(limits[m], limits[m])})" for m in risen)
+        or "a little of each"
+    )
     extra = after.expected_count - before.expected_count
     each = f"{price_per_extra(before, after):.0f} {after.chain.currency} each"
     return f"{swap}{instead}: {extra:.1f} more, {each}: {why}."

@@ -35,10 +35,12 @@ COUNTS_FROM, COUNTS_TO = 0.05, 0.95  # wanted unless chosen: possible somewhere,
 LEAST_EXTRA = 0.0005  # of a multiplex: less is written as none, and no price can be set against none
 SAME_CHANCE = 0.02  # chances this close are the same to a person
 
+LIMIT_WORDS = {"time": "bad nights"}  # the others are called what they are
+
 # What helps against a limit and what does not.
 HELP = {
     "noise": "gain helps",
-    "time": "gain helps on bad nights",
+    "time": "gain helps",
     "interference": "directivity cures it, gain or an amplifier alone does little",
     "overload": "less gain helps, an amplifier harms",
 }
@@ -174,19 +176,23 @@ def reason(candidate: Outcome, baseline: Outcome, multiplexes: Sequence[str], wa
     place = {name: m for m, name in enumerate(multiplexes)}
     missing = [name for name in wanted if baseline.chance[place[name]] < HAVE]
     if not missing:
-        whole = "The one wanted is" if len(wanted) == 1 else f"All {len(wanted)} wanted are"
-        return f"{whole} likely already with {baseline.title}; little is left to gain."
+        return f"{_in_question(len(wanted))}, likely already with {baseline.title}; little is left to gain."
     limits = Counter(baseline.held_back_by[place[name]] or "noise" for name in missing)
     cured = [name for name in missing if candidate.chance[place[name]] >= HAVE]
     held = ", ".join(
-        f"{limit} holds back {count} ({HELP.get(limit, 'see step by step')})" for limit, count in limits.most_common()
+        f"{count} held back by {LIMIT_WORDS.get(limit, limit)} ({HELP.get(limit, 'see step by step')})"
+        for limit, count in limits.most_common()
     )
-    held = f"{len(missing)} of {len(wanted)} wanted {'is' if len(missing) == 1 else 'are'} not likely today: {held}"
-    if baseline.chain is None:
-        held = f"Nothing is up today for {len(missing)} wanted"
-    if not cured:
-        return f"{held}; {candidate.title} makes none of them likely."
-    return f"{held}; {candidate.title} makes {len(cured)} of them likely."
+    few = "not likely" if len(missing) == len(wanted) else f"{len(missing)} of them not likely"
+    held = _in_question(len(wanted)) + ("" if baseline.chain is None else f", {few} today: {held}")
+    if len(missing) == 1:
+        return f"{held}; {candidate.title} {'makes' if cured else 'does not make'} it likely."
+    return f"{held}; {candidate.title} makes {len(cured) or 'none'} of them likely."
+
+
+def _in_question(count: int) -> str:
+    """Say how many multiplexes the decision hangs on: those asked for, else all that are open to change."""
+    return "1 multiplex is in question" if count == 1 else f"{count} multiplexes are in question"
 
 
 def _cheapest_equal(

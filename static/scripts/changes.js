@@ -4,6 +4,7 @@ import { make, mark, part } from './dom.js';
 import { cellOf, changes, columns, hasMoved, LEAST_CHANGE, shownCell, stepOf, titleOf, verdictOf } from './state.js';
 import { bearingText, chanceText, dayText } from './units.js';
 
+const LIMITS = { time: 'bad nights' }; // the others are called what they are
 const DRAWN = 300; // rows beyond these wait behind a button
 
 /**
@@ -98,7 +99,7 @@ export function chance(cell, more = '') {
   return make('span', { className: 'chance' },
     make('span', { className: 'figure', textContent: chanceText(cell.chance) }),
     make('span', { className: 'grade' }, mark(cell.grade), make('span', { className: 'word', textContent: cell.grade })),
-    make('span', { className: 'held', textContent: [more, limit ? `held back by ${limit}` : ''].filter(Boolean).join(', ') }));
+    make('span', { className: 'held', textContent: [more, limit ? `held back by ${LIMITS[limit] ?? limit}` : ''].filter(Boolean).join(', ') }));
 }
 
 /** @param {import('./state.js').State} state @param {any} multiplex @param {string} chain */

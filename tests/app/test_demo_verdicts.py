@@ -121,6 +121,6 @@ def test_verdict_says_that_directivity_cures_interference_and_an_amplifier_does_
         ground,
     )
     reason = verdict(answer, "high-gain")["reason"]
-    assert "interference holds back 1 (directivity cures it, gain or an amplifier alone does little)" in reason
+    assert "1 held back by interference (directivity cures it, gain or an amplifier alone does little)" in reason
     shared = next(one for one in answer["emissions"] if one["id"] == "far-island-45")["chains"]
     assert shared["amplified"]["margin_db"] < 1.5 < 3 < shared["high-gain"]["margin_db"]

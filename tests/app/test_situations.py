@@ -102,7 +102,7 @@ def test_noise_limited_gain_is_worth_it():
     assert found.answer == "worth it"
     assert found.expected_extra == pytest.approx(3.6, abs=0.15)
     assert found.gained == ("mux-0", "mux-1", "mux-2", "mux-3")
-    assert found.reason.startswith("4 of 4 wanted are not likely today: noise holds back 4 (gain helps)")
+    assert found.reason.startswith("4 multiplexes are in question, not likely today: 4 held back by noise (gain helps)")
 
 
 def test_interference_that_directivity_helps_is_worth_it():
@@ -110,7 +110,7 @@ def test_interference_that_directivity_helps_is_worth_it():
     limits = ("interference",) * 2
     found = decide(Side("now", (-10, -10), limits=limits), Side("narrow", (10, 10), "long", 40))
     assert found.answer == "worth it"
-    assert "interference holds back 2 (directivity cures it, gain or an amplifier alone does little)" in found.reason
+    assert "2 held back by interference (directivity cures it, gain or an amplifier alone does little)" in found.reason
 
 
 def test_interference_that_an_amplifier_cannot_help_is_not():

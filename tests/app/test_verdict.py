@@ -53,7 +53,7 @@ def test_no_price_is_set_against_a_gain_that_is_written_as_none():
 
 def test_one_that_works_already_is_spoken_of_as_one():
     found = verdict(outcome(LARGE, 1, 0.9, 0), outcome(SMALL, 1, 0.8, 0), wanted=("b",))
-    assert found.reason.startswith("The one wanted is likely already with Short roof Yagi")
+    assert found.reason.startswith("1 multiplex is in question, likely already with Short roof Yagi")
 
 
 def test_an_identical_candidate_differs_by_exactly_nothing():
@@ -120,6 +120,11 @@ def test_reason_counts_what_holds_back():
     small = outcome(SMALL, 0.1, 0.2, 0.3, limits=("noise", "noise", "time"))
     found = verdict(outcome(LARGE, 0.9, 0.9, 0.1), small)
     assert (
-        found.reason == "3 of 3 wanted are not likely today: noise holds back 2 (gain helps), "
-        "time holds back 1 (gain helps on bad nights); High-gain roof aerial makes 2 of them likely."
+        found.reason == "3 multiplexes are in question, not likely today: 2 held back by noise (gain helps), "
+        "1 held back by bad nights (gain helps); High-gain roof aerial makes 2 of them likely."
     )
+
+
+def test_reason_of_a_single_multiplex_speaks_of_one():
+    found = verdict(outcome(LARGE, 0.99, 0.9, 0.99), outcome(SMALL, 0.99, 0.2, 0.99, limits=(None, "noise", None)))
+    assert "1 held back by noise (gain helps); High-gain roof aerial makes it likely." in found.reason
