@@ -113,5 +113,5 @@ def _aerial(wanted: str, store: Store) -> Aerial:
         return known[wanted]
     if wanted in chains:
         return chains[wanted].aerial
-    listed = ", ".join([*known, *chains])
+    listed = ", ".join(dict.fromkeys([*known, *chains]))
     raise ChainError(f'aerial "{wanted}" is not stored: use one of {listed}', field="aerial", allowed=listed)

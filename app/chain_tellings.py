@@ -26,7 +26,10 @@ def told_sweep(document: Mapping[str, Any]) -> str:
 
 def told_cheapest(document: Mapping[str, Any]) -> str:
     """Return the Pareto front as text, cheapest first."""
-    lines = [f"{document['tried']} chains tried"]
+    own = [(row["chain"]["labour_price"], row["chain"]["visit_price"]) for row in document["front"]]
+    parts_alone = any(not any(prices) for prices in own)
+    work = "without labour and visit: --labour and --visit add them" if parts_alone else "with labour and visit"
+    lines = [f"{document['tried']} chains tried; prices are of a chain bought whole, {work}"]
     for row in document["front"]:
         price = f"{row['price']:g} {document['currency']}"
         lines.append(f"{price}: about {row['expected_count']:.1f}, {row['chain']['title']}")

@@ -221,6 +221,7 @@ export function compassBearing(bearing, declination) {
 
 /** @param {string} text @returns {string} with a capital and a full stop */
 export function asSentence(text) {
-  const whole = text.charAt(0).toUpperCase() + text.slice(1);
+  const file = /^[^\s:]+\.\w+:/.test(text); // a file's name stays as it is written
+  const whole = file ? text : text.charAt(0).toUpperCase() + text.slice(1);
   return /[.!?]$/.test(whole) ? whole : `${whole}.`;
 }

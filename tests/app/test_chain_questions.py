@@ -9,6 +9,7 @@ from typer.testing import CliRunner
 from app.chain.document import chain_from_document, chain_to_document
 from app.chain.parts import Combiner, MastheadAmplifier, PowerInserter
 from app.chain_file import import_text
+from app.chain_tellings import told_cheapest
 from app.cheapest import Wish, cheapest_document, pareto, parts_for_sale
 from app.cli import main
 from app.demo.scenario import DEMO_ROOFS
@@ -104,6 +105,10 @@ def test_front_rises_in_price_and_count_and_says_why(shop, demo_world):
         each = (row["price"] - before["price"]) / (row["expected_count"] - before["expected_count"])
         assert row["price_per_extra"] == pytest.approx(each, rel=0.01)  # counts are written to 0.001
         assert row["pays"] == (each < 50)
+    assert told_cheapest(got).splitlines()[0].endswith("bought whole, with labour and visit")
+    for row in front:
+        row["chain"] |= {"labour_price": 0, "visit_price": 0}
+    assert "without labour and visit" in told_cheapest(got).splitlines()[0]
 
 
 def test_where_no_part_is_stored_those_of_the_stored_chains_are_for_sale(demo_world):

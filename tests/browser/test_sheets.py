@@ -131,7 +131,7 @@ def test_readings_are_entered_move_predictions_and_are_forgotten(page):
 
 def test_a_reading_is_asked_for_through_what_is_up_or_with_a_measuring_aerial(page):
     show(page, "readings")
-    through = page.get_by_label("Through")
+    through = page.get_by_label("Through", exact=True)
     expect(through).to_have_value("roof-yagi")
     expect(page.locator(".readings .next")).to_contain_text("at the outlet Living room through Short roof Yagi")
     with page.expect_response("**/api/assess"):

@@ -1,13 +1,18 @@
 import assert from 'node:assert/strict';
 import test from 'node:test';
 import {
-  bearingText, chanceText, compassBearing, countText, distanceText, heightIn, heightText, moneyText, numberText, parseHeight, parseLength, parseNumber, parsePlace, placeText, plainText, rodsText, signedText, told,
+  asSentence, bearingText, chanceText, compassBearing, countText, distanceText, heightIn, heightText, moneyText, numberText, parseHeight, parseLength, parseNumber, parsePlace, placeText, plainText, rodsText, signedText, told,
 } from '../../static/scripts/units.js';
 
 test('a chance is told in tenths, and never as certain or impossible', () => {
   assert.deepEqual([0.9, 0.72, 0.5, 0.3, 0.1].map(chanceText), ['9 in 10', '7 in 10', '5 in 10', '3 in 10', '1 in 10']);
   assert.equal(chanceText(1), '99 in 100');
   assert.equal(chanceText(0), '1 in 100');
+});
+
+test('a sentence begins with a capital, a file with its own name', () => {
+  assert.equal(asSentence('is binary'), 'Is binary.');
+  assert.equal(asSentence('sweep.s1p: line 1: no data.'), 'sweep.s1p: line 1: no data.');
 });
 
 test('19 in 20 begins where a chance is called secure', () => {
