@@ -40,7 +40,7 @@ export function createTransmitters(element, { load, turn }) {
     if (rows === null) {
       rows = [];
       count.textContent = 'Reading the list …';
-      load().then((all) => { rows = all; draw(); }).catch((error) => { rows = null; problem.textContent = error.message; });
+      load().then((all) => { rows = all; problem.textContent = ''; draw(); }).catch((error) => { rows = null; count.textContent = ''; problem.textContent = error.message; });
     } else if (other && rows.length) {
       draw();
     }

@@ -49,6 +49,9 @@ def test_a_server_that_is_gone_loses_nothing(page, watched):
     page.get_by_label("Roof at").fill(f"{WEST.latitude_deg}, {WEST.longitude_deg}")
     page.get_by_role("button", name="Work it out").click()
     expect(page.locator(".trouble")).to_contain_text("does not answer")
+    page.get_by_role("tab", name="On the air").click()
+    expect(page.locator(".transmitters .problem")).to_contain_text("does not answer")
+    expect(page.locator(".transmitters")).not_to_contain_text("Reading the list")  # nothing is under way
     assert page.get_by_label("Roof at").input_value().startswith(f"{WEST.latitude_deg}")
     assert sentence(page) == told
     page.unroute("**/api/**")
