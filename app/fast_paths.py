@@ -76,7 +76,7 @@ def warm_up_in_background(ground: Ground) -> threading.Thread:
 
 
 def warm_up(ground: Ground) -> bool:
-    """Lay the ground's rasters together and compile; false, with a line in the log, where that is not possible."""
+    """Lay the ground's rasters and their land cover out and compile; false, logged, where that is not possible."""
     keep_machine_code()
     try:
         from propagation.fast_digest import digests

@@ -18,6 +18,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from app.assumptions import Assumptions
 from app.roof import Roof
+from propagation.constants import FLATTENED_KM
 from propagation.diffraction import knife_edge_loss_db
 from propagation.foliage import woodland_loss_db
 from propagation.units import wavelength_m
@@ -27,7 +28,6 @@ from terrain.profile import Profile
 FloatArray = NDArray[np.float64]
 Standing = Literal["ground", "surroundings", "obstacle"]
 
-FLATTENED_KM = 0.05
 SURROUNDINGS_KM = 0.027  # where Rec. ITU-R P.1546 places the cover round an antenna
 
 

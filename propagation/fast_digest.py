@@ -15,7 +15,7 @@ from typing import Any, TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
-from propagation.constants import EARTH_RADIUS_KM
+from propagation.constants import EARTH_RADIUS_KM, FLATTENED_KM
 from propagation.diffraction import SmoothEarth, bullington_edge_of_rays, smooth_earth_of_fit
 from propagation.digest import PathDigest
 from propagation.p1812.climate import beta0_percent, path_centre_latitude_deg
@@ -25,6 +25,7 @@ from propagation.refractivity import refractivity
 from propagation.scan import BACK, ROOT, SCAN
 from propagation.scan_lines import scan_lines
 from propagation.smooth_edge import smooth_rays
+from terrain.cover_kernels import cover_arrays
 from terrain.kernels import SheetArrays, scratch_for, sheet_arrays
 from terrain.lines import lines_over
 from terrain.sheet import Sheet
@@ -117,17 +118,24 @@ def _digests(
     )
     lapse, n0 = refractivity(lines.middle_latitude_deg, lines.middle_longitude_deg, maps_folder)
     scans, sources = np.zeros(lines.points.size, SCAN), np.zeros((2, ends.edge_km.size))
+    points, cover_knots = lines.points, np.zeros((0, 2, lines.row.size))
+    if sheet.cover is not None:
+        cover_knots, whole = sheet.cover.knots(lines.knot_latitude_deg, lines.knot_longitude_deg, lines.first_knot)
+        points = np.where(whole, points, 0)
     scan_lines(
         arrays,
+        cover_arrays(sheet.cover),
         scratch_for(arrays),
         lines.first_knot,
         lines.row,
         lines.column,
+        cover_knots,
         lines.length_km,
-        lines.points,
+        points,
         500 / effective_earth_radius_km(lapse),
         ends.antenna_agl_m,
         ends.aerial_agl_m,
+        FLATTENED_KM,
         ends.first_edge,
         ends.edge_km,
         ROOT,
@@ -192,7 +200,7 @@ def _closed(
         name: bullington_edge_of_rays(s[f"tx_{name}"], s[f"rx_{name}"], s[f"nu_{name}"], d, a, b)
         for name in ("median", "true_earth", "beta0")
     }
-    horizon_rays = _horizon_rays_mrad(s["tx_median"], s["rx_median"], d, a, b, radius)
+    horizon_rays = _horizon_rays_mrad(s["tx_horizon_median"], s["rx_horizon_median"], d, a, b, radius)
     return Digests(
         known,
         _digest(s, d, a, b, radius, smooth, edge, smooth_edge, horizon_rays),
@@ -240,7 +248,7 @@ def _digest(
     worst, into_line = s["worst_km"], s["worst_into_line_m"]
     clearance = -into_line * np.sqrt(d / np.where(s["known"], worst * (d - worst), 1.0))
     true_earth_rays = _horizon_rays_mrad(
-        s["tx_true_earth"], s["rx_true_earth"], d, a, b, np.full_like(d, EARTH_RADIUS_KM)
+        s["tx_horizon_true_earth"], s["rx_horizon_true_earth"], d, a, b, np.full_like(d, EARTH_RADIUS_KM)
     )
     return PathDigest(
         path_length_km=d,

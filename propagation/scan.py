@@ -52,6 +52,7 @@ SCAN = np.dtype(
         ("over_line_from_tx", "f8"),
         ("over_line_from_rx", "f8"),
         *((f"{ray}_{radius}", "f8") for radius in ("median", "true_earth", "beta0") for ray in ("tx", "rx", "nu")),
+        *((f"{end}_horizon_{radius}", "f8") for radius in ("median", "true_earth") for end in ("tx", "rx")),
         ("worst_km", "f8"),  # where the ground comes nearest to the ray in Fresnel radii
         ("worst_into_line_m", "f8"),
         ("line_of_sight", "?"),
@@ -74,6 +75,8 @@ def scan_profile(
     row: FloatArray,  # (k,) of the geodesic's knots
     column: FloatArray,
     height: Heights,  # (n,) bare ground
+    surface: Heights,  # (n,) what a ray meets, equal to the ground at both ends; the same array where nothing stands
+    standing: Heights,  # (n,) surface less ground, exactly; () where nothing stands
     length_km: float,
     antenna_agl_m: float,
     aerial_agl_m: float,
@@ -81,27 +84,21 @@ def scan_profile(
     root: Heights,  # (n,) 1 / root(i)
     back: Heights,  # (n,) 1 / root(j)
     tops: Heights,  # (MOST_STRETCHES, 12) is left with what `ray_source` needs
+    ground_tops: Heights,  # the same, for the bare ground where something stands
     out: NDArray[np.void],  # (1,) of SCAN
 ) -> None:
     """Scan one profile."""
     n = height.size
+    covered = standing.size > 0
     step = length_km / (n - 1)
     tx_amsl, rx_amsl = height[0] + antenna_agl_m, height[n - 1] + aerial_agl_m
     slope = (rx_amsl - tx_amsl) / length_km
     median = bulges[0] * step**2
 
     _ground(height, length_km, tx_amsl, rx_amsl, out)
-    stretches = (n - 3) // STRETCH + 1
-    for number in range(stretches):
-        first = 1 + number * STRETCH
-        last = min(first + STRETCH, n - 1)
-        tops[number] = _rays(
-            height, root, back, first, last, tx_amsl, rx_amsl, median, bulges[1] * step**2, bulges[2] * step**2
-        )
-    rays = tops[0].copy()
-    for number in range(1, stretches):
-        for ray in range(rays.size):
-            rays[ray] = max(rays[ray], tops[number, ray])
+    bends = (median, bulges[1] * step**2, bulges[2] * step**2)
+    rays = _all_rays(surface, root, back, tx_amsl, rx_amsl, bends, tops)
+    ground_rays = _all_rays(height, root, back, tx_amsl, rx_amsl, bends, ground_tops) if covered else rays
     to_nu = math.sqrt(0.002 * length_km) / step
     out[0].tx_median, out[0].rx_median, out[0].nu_median = (
         rays[0] / step + slope,
@@ -111,17 +108,27 @@ def scan_profile(
     out[0].tx_true_earth, out[0].rx_true_earth = rays[3] / step + slope, rays[4] / step - slope
     out[0].nu_true_earth = rays[5] * to_nu
     out[0].tx_beta0, out[0].rx_beta0, out[0].nu_beta0 = rays[6] / step + slope, rays[7] / step - slope, rays[8] * to_nu
-    out[0].over_line_m = rays[9]
-    out[0].over_line_from_tx, out[0].over_line_from_rx = rays[10] / step, rays[11] / step
+    out[0].tx_horizon_median, out[0].rx_horizon_median = ground_rays[0] / step + slope, ground_rays[1] / step - slope
+    out[0].tx_horizon_true_earth = ground_rays[3] / step + slope
+    out[0].rx_horizon_true_earth = ground_rays[4] / step - slope
+    out[0].over_line_m = ground_rays[9]
+    out[0].over_line_from_tx, out[0].over_line_from_rx = ground_rays[10] / step, ground_rays[11] / step
 
     # The ray meets the ground where the slope to the highest point exceeds that to the other antenna, eq. (78).
-    sees = not rays[0] > 0
+    sees = not ground_rays[0] > 0
     ends = (tx_amsl, rx_amsl, median)
-    nearest = _place(sheet, row, column, height, ends, root, back, tops, _NU, sees, n - 1)
+    last_of_equals = sees and not covered
+    nearest = _place(sheet, row, column, surface, standing, ends, root, back, tops, _NU, last_of_equals, n - 1)
     first_horizon = last_horizon = nearest
-    if not sees:
-        first_horizon = _place(sheet, row, column, height, ends, root, back, tops, _TX, False, n - 1)
-        last_horizon = _place(sheet, row, column, height, ends, root, back, tops, _RX, True, n - 1)
+    if covered or not sees:
+        bare = standing[:0]
+        bare_tops = ground_tops if covered else tops
+        if sees:
+            first_horizon = _place(sheet, row, column, height, bare, ends, root, back, bare_tops, _NU, True, n - 1)
+            last_horizon = first_horizon
+        else:
+            first_horizon = _place(sheet, row, column, height, bare, ends, root, back, bare_tops, _TX, False, n - 1)
+            last_horizon = _place(sheet, row, column, height, bare, ends, root, back, bare_tops, _RX, True, n - 1)
     out[0].line_of_sight = sees
     out[0].tx_horizon_km, out[0].rx_horizon_km = first_horizon * step, length_km - last_horizon * step
     out[0].roughness_m = _roughness_m(
@@ -133,7 +140,31 @@ def scan_profile(
     )
     x = nearest * step
     out[0].worst_km = x
-    out[0].worst_into_line_m = height[nearest] - (tx_amsl + slope * x) + bulges[0] * x * (length_km - x)
+    out[0].worst_into_line_m = surface[nearest] - (tx_amsl + slope * x) + bulges[0] * x * (length_km - x)
+
+
+@compiled
+def _all_rays(
+    height: Heights,
+    root: Heights,
+    back: Heights,
+    tx_amsl: float,
+    rx_amsl: float,
+    bends: tuple[float, float, float],  # bulges per step²
+    tops: Heights,  # result (MOST_STRETCHES, 12): `_rays` of each stretch
+) -> Heights:
+    """`_rays` of all points between both ends. (12,)"""
+    n = height.size
+    stretches = (n - 3) // STRETCH + 1
+    for number in range(stretches):
+        first = 1 + number * STRETCH
+        last = min(first + STRETCH, n - 1)
+        tops[number] = _rays(height, root, back, first, last, tx_amsl, rx_amsl, bends[0], bends[1], bends[2])
+    rays: Heights = tops[0].copy()
+    for number in range(1, stretches):
+        for ray in range(rays.size):
+            rays[ray] = max(rays[ray], tops[number, ray])
+    return rays
 
 
 @compiled
@@ -180,6 +211,7 @@ def _place(
     row: FloatArray,
     column: FloatArray,
     height: Heights,
+    standing: Heights,  # part of it that stands on the ground; () for none
     ends: tuple[float, float, float],  # antenna and aerial above sea level, bulge per step²
     root: Heights,
     back: Heights,
@@ -213,6 +245,8 @@ def _place(
         if (height[i] - bent_line + _CLOSE_M) * one[i] * other[i] < best:
             continue
         above = height_at(sheet, row, column, n, i) - bent_line
+        if standing.size > 0:
+            above += standing[i]
         if ray == _TX:
             value = above / i
         elif ray == _RX:
@@ -318,6 +352,7 @@ def ray_source(
     row: FloatArray,
     column: FloatArray,
     surface: Heights,
+    standing: Heights,  # (n,) part of it that stands on the ground; () for none
     beyond_km: float,
     length_km: float,
     antenna_agl_m: float,
@@ -343,7 +378,7 @@ def ray_source(
         stop -= 1
     if stop > 1:
         ends = (tx_amsl, rx_amsl, bulge * step**2)
-        i = _place(sheet, row, column, surface, ends, root, back, tops, _RX, False, stop)
+        i = _place(sheet, row, column, surface, standing, ends, root, back, tops, _RX, False, stop)
         y = (n - 1 - i) * step
         slope = (surface[i] - rx_amsl) / y - bulge * y
         if slope > steepest:

@@ -90,7 +90,7 @@ def sample_heights(
     first = 0
     for segment in range(segments):
         last = n if segment == segments - 1 else int(np.ceil((segment + 1) / per_point))
-        rows, columns = _cubic(row, segment), _cubic(column, segment)
+        rows, columns = cubic_of(row, segment), cubic_of(column, segment)
         for start in range(first, last, STRETCH):
             stop = min(start + STRETCH, last)
             t = start * per_point - segment
@@ -117,7 +117,7 @@ def height_at(sheet: SheetArrays, row: NDArray[np.float64], column: NDArray[np.f
     at = i * (segments / (points - 1))
     segment = min(int(at), segments - 1)
     t = at - segment
-    r, c = _value(_cubic(row, segment), t), _value(_cubic(column, segment), t)
+    r, c = value_of(cubic_of(row, segment), t), value_of(cubic_of(column, segment), t)
     top, left = int(r), int(c)
     height = 0.0
     for down in range(2):
@@ -145,7 +145,7 @@ def inside(row: NDArray[np.float64], column: NDArray[np.float64], rows: int, col
 
 
 @compiled
-def _cubic(knots: NDArray[np.float64], segment: int) -> Cubic:
+def cubic_of(knots: NDArray[np.float64], segment: int) -> Cubic:
     """Coefficients of the cubic through a segment's four knots at 0, 1/3, 2/3 and 1."""
     k = KNOTS * segment
     y0, y1, y2, y3 = knots[k], knots[k + 1], knots[k + 2], knots[k + 3]
@@ -158,7 +158,8 @@ def _cubic(knots: NDArray[np.float64], segment: int) -> Cubic:
 
 
 @compiled
-def _value(cubic: Cubic, t: float) -> float:
+def value_of(cubic: Cubic, t: float) -> float:
+    """Value of a cubic."""
     return cubic[0] + t * (cubic[1] + t * (cubic[2] + t * cubic[3]))
 
 
@@ -166,7 +167,7 @@ def _value(cubic: Cubic, t: float) -> float:
 def _from(cubic: Cubic, t: float, step: float) -> Cubic:
     """Give the same cubic counted in steps from t."""
     return (
-        _value(cubic, t),
+        value_of(cubic, t),
         (cubic[1] + t * (2 * cubic[2] + t * 3 * cubic[3])) * step,
         (cubic[2] + 3 * cubic[3] * t) * step**2,
         cubic[3] * step**3,

@@ -30,6 +30,8 @@ class Lines:
     first_knot: IndexArray  # (p + 1,) into row and column
     row: FloatArray  # (k,) of the knots on the sheet
     column: FloatArray
+    knot_latitude_deg: FloatArray  # (k,)
+    knot_longitude_deg: FloatArray
 
 
 def lines_over(
@@ -63,4 +65,4 @@ def lines_over(
     points = np.where(np.isfinite(step) & (length > 0), points, 0).astype(np.int64)
     middle = length * (points // 2) / np.maximum(points - 1, 1)
     middle_lat, middle_lon = points_on(tx_latitude_deg, tx_longitude_deg, bearing, np.arange(paths + 1), middle)
-    return Lines(length, points, middle_lat, middle_lon, first, row, column)
+    return Lines(length, points, middle_lat, middle_lon, first, row, column, lat, lon)

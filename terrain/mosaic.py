@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from pathlib import Path
 
@@ -14,12 +14,13 @@ from numpy.typing import ArrayLike, NDArray
 from terrain.bilinear import bilinear
 from terrain.blocks import COARSE, Blocks
 from terrain.cache import LIMIT_BYTES, ArrayCache
+from terrain.cover_sheet import cover_sheet
 from terrain.errors import RasterError
 from terrain.files import Refused, raster_files
 from terrain.grid import Boxes
 from terrain.headers import open_rasters
 from terrain.layer import Layer, surrounded, within
-from terrain.overlay import Overlay
+from terrain.overlay import STANDING_SHARE, Overlay
 from terrain.raster import Raster
 from terrain.sheet import Sheet, sheets_of
 
@@ -145,12 +146,15 @@ class Ground:
     def sheets(self, wanted: Callable[[Raster], bool] = lambda _: True) -> list[Sheet]:
         """The wanted rasters laid together as far as one array can hold them (sheet.py), decoded the first time.
 
-        None with land cover, which sheets do not know.
+        With the land cover under them, if there is any; those whose cover would be too large are left out.
         Raises RasterError for a damaged file and CacheError if the arrays cannot be kept.
         """
-        if self.overlay is not None and self.overlay.cover is not None:
-            return []
-        return sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
+        sheets = sheets_of([(layer.raster, layer.blocks) for layer in self._layers], self._cache, wanted)
+        if self.overlay is None or self.overlay.cover is None:
+            return sheets
+        cover = self.overlay.cover
+        under = [cover_sheet(cover, one.grid, STANDING_SHARE.get(one.kind, 0.0), self._cache) for one in sheets]
+        return [replace(one, cover=found) for one, found in zip(sheets, under, strict=True) if found is not None]
 
     def survey(self) -> Ground:
         """Read every raster whole, once: void shares are known, and damaged files join `refused`."""

@@ -19,6 +19,7 @@ from scipy import ndimage
 
 from terrain.blocks import Blocks
 from terrain.cache import ArrayCache
+from terrain.cover_sheet import CoverSheet
 from terrain.grid import Grid, apply
 from terrain.patches import BLOCK, MOST_PLACES, ROOM, blocks_of, laid_out
 from terrain.raster import Raster
@@ -52,6 +53,7 @@ class Sheet:
     scale: float  # metres = sample × scale + offset_m
     offset_m: float
     kind: str
+    cover: CoverSheet | None = None  # what stands on it, where land cover is on
 
     def spacing_m(self, row: FloatArray, column: FloatArray) -> FloatArray:
         """Spacing of the raster that answers at positions (n,) of the sheet [m]; NaN outside its tiles."""

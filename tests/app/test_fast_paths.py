@@ -3,14 +3,23 @@
 import subprocess
 import sys
 from concurrent.futures import ThreadPoolExecutor
+from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from app import kept_paths
-from app.fast_paths import is_ready, warm_up
+from app.assumptions import Assumptions
+from app.fast_paths import Line, fast_digests, is_ready, warm_up
+from app.paths_to_roof import path_over
 from app.planner import assess
 from app.request import AssessRequest
 from app.roof import Obstacle, Roof
+from terrain.cover import Cover
+from terrain.mosaic import Ground
+from terrain.overlay import Overlay
+from terrain.profile import sample_profile
+from terrain.raster import declare
 
 ROOF = Roof(44.3, -37.4507, 10.0, "urban", (Obstacle(90.0, 60.0, 18.0, 30.0),))
 
@@ -77,3 +86,27 @@ def test_machine_code_goes_to_a_temporary_folder_where_the_cache_is_read_only(tm
         env={"GAINWORTH_CACHE_DIR": str(tmp_path / "cache"), "PATH": "", "PYTHONPATH": ":".join(sys.path)},
     )
     assert "gainworth-" in done.stdout
+
+
+@pytest.mark.parametrize(("kind", "fast"), [("bare", True), ("surface", False)])
+def test_under_land_cover_the_fast_form_answers_over_bare_ground(write_raster, tmp_path, kind, fast):
+    """24 m from sample to sample: a surface model as fine as that is left to the plain form."""
+    y, x = np.mgrid[0:300, 0:300] / 30
+    heights = write_raster((300 + 40 * np.sin(x) * np.cos(1.3 * y)).astype("float32"), pixel=0.00025)
+    declare(heights, kind=kind)
+    wood = write_raster(np.full((300, 300), 10, "uint8"), name="WorldCover.tif", pixel=0.00025)
+    cover = Cover.open([wood], tmp_path / "cache")
+    ground = Ground.open([heights], tmp_path / "cache", overlay=Overlay(cover))
+    roof, mast = Roof(46.96, 8.05, 10.0), Line(46.99, 8.01, 30.0, ())
+    assert warm_up(ground)
+    answers = fast_digests(roof, [mast], ground, None)
+    assert bool(answers) == fast
+    profile = sample_profile(ground, mast.latitude_deg, mast.longitude_deg, roof.latitude_deg, roof.longitude_deg)
+    plain = path_over(profile, mast.antenna_agl_m, roof, Assumptions())
+    over_fields = path_over(
+        replace(profile, ground_amsl_m=profile.bare_amsl_m), mast.antenna_agl_m, roof, Assumptions()
+    )
+    for one in answers:
+        assert one.digest.clearance == pytest.approx(plain.digest.clearance, abs=0.001)
+        assert one.digest.actual_edge == pytest.approx(plain.digest.actual_edge, abs=0.001)
+        assert one.digest.actual_edge > over_fields.digest.actual_edge + 1  # the wood is in the way

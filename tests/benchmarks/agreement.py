@@ -1,4 +1,4 @@
-"""How far the compiled and the plain form of a path differ over real rasters: `agreement.py FOLDER [--paths N]`.
+"""How far both forms of a path differ over real rasters: `agreement.py FOLDER [--paths N] [--cover MAP]`.
 
 Every raster of the folder is taken for bare ground, alone and then all together; random pairs of places on each sheet
 are digested both ways and the fields of both methods compared at 1, 10 and 50 % of the time, 100, 474 and 690 MHz.
@@ -22,8 +22,10 @@ from propagation import p1546, p1812
 from propagation.digest import PathDigest, stacked_digests
 from propagation.fast_digest import Ends, digests
 from propagation.p1812 import PathTerms
+from terrain.cover import Cover
 from terrain.errors import TerrainError
 from terrain.mosaic import Ground
+from terrain.overlay import Overlay
 from terrain.profile import sample_profile
 from terrain.raster import declare
 from terrain.sheet import Sheet
@@ -105,7 +107,7 @@ def compare(ground: Ground, sheet: Sheet, paths: int, seed: int) -> tuple[int, f
     return len(kept), float(off.max()), where
 
 
-def grounds(folder: Path, work: Path) -> Iterator[tuple[str, Ground]]:
+def grounds(folder: Path, work: Path, overlay: Overlay | None) -> Iterator[tuple[str, Ground]]:
     """Each raster alone, then all of them as one ground."""
     files = []
     for number, path in enumerate(sorted(folder.iterdir())):
@@ -115,15 +117,16 @@ def grounds(folder: Path, work: Path) -> Iterator[tuple[str, Ground]]:
             files.append(own / path.name)
             shutil.copyfile(path, files[-1])
             declare(files[-1], kind="bare")
-            yield path.name, Ground.open([files[-1]], work / "cache")
-    yield "all together", Ground.open(files, work / "cache")
+            yield path.name, Ground.open([files[-1]], work / "cache", overlay=overlay)
+    yield "all together", Ground.open(files, work / "cache", overlay=overlay)
 
 
-def report(folder: Path, paths: int) -> None:
+def report(folder: Path, paths: int, maps: list[Path]) -> None:
     """Print a line for each sheet, and the largest difference of all."""
     total, largest, where = 0, 0.0, ""
     with tempfile.TemporaryDirectory() as work:
-        for name, ground in grounds(folder, Path(work)):
+        overlay = Overlay(Cover.open(maps, Path(work) / "cache")) if maps else None
+        for name, ground in grounds(folder, Path(work), overlay):
             try:
                 sheets = ground.sheets()
             except TerrainError as error:
@@ -142,5 +145,6 @@ if __name__ == "__main__":
     options = argparse.ArgumentParser(description=__doc__)
     options.add_argument("folder", type=Path)
     options.add_argument("--paths", type=int, default=300, help="random paths of each sheet")
+    options.add_argument("--cover", type=Path, action="append", default=[], help="a map that stands on all of them")
     chosen = options.parse_args()
-    report(chosen.folder, chosen.paths)
+    report(chosen.folder, chosen.paths, chosen.cover)

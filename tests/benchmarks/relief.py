@@ -37,6 +37,25 @@ def write_tiles(folder: Path) -> tuple[Path, Path]:
     return tif, hgt
 
 
+def write_cover(folder: Path) -> Path:
+    """Write a map of the same 3° × 4°: sea where the relief ends, else patches of woods, fields, lakes and towns."""
+    side, patch = SIDE - 1, 8
+    random = np.random.default_rng(5)
+    codes = np.array([12, 18, 23, 24, 2, 1, 41], np.uint8)  # CORINE's places in its list
+    small = random.choice(codes, (side // patch, side // patch), p=[0.3, 0.15, 0.2, 0.2, 0.1, 0.03, 0.02])
+    one = np.where(_tile()[:side, :side] == 0, np.uint8(44), small.repeat(patch, axis=0).repeat(patch, axis=1))
+    rows = [np.hstack([one[:: (-1) ** row, :: (-1) ** column] for column in range(COLUMNS)]) for row in range(ROWS)]
+    path = folder / "corine.tif"
+    profile = {
+        "driver": "GTiff", "height": ROWS * side, "width": COLUMNS * side, "count": 1, "dtype": "uint8",
+        "crs": "EPSG:4326", "transform": Affine(1 / side, 0, WEST, 0, -1 / side, SOUTH + ROWS),
+        "compress": "deflate", "tiled": True, "blockxsize": 512, "blockysize": 512,
+    }  # fmt: skip
+    with rasterio.open(path, "w", **profile) as file:
+        file.write(np.vstack(rows), 1)
+    return path
+
+
 def _tile() -> np.ndarray:
     """Fractal heights: spectrum falling with the wavenumber to the power -2.1, about 9 % root mean square slope."""
     side = 4096

@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 
 import bench_assess
+import bench_cover
 import bench_paths
 from protocol import ROUNDS, machine
 
@@ -15,5 +16,7 @@ if __name__ == "__main__":
     chosen = options.parse_args()
     print(machine())
     for row in bench_paths.table(chosen.rounds, not chosen.rooftop):
+        print(row.told())
+    for row in bench_cover.table(chosen.rounds):
         print(row.told())
     print("\n".join(bench_assess.report()))
