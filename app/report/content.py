@@ -7,7 +7,7 @@ from datetime import date
 from pathlib import Path
 from typing import Any
 
-from app.chain.document import chain_to_document
+from app.bill import bill, bill_document
 from app.planner import assess
 from app.readings import INSTRUMENTS
 from app.report.commissioning import sheet_rows
@@ -54,7 +54,7 @@ def report_content(
         "roles": ["up now", "idea 1", "idea 2"][: len(names)],
         "changed": changed,
         "same": same,
-        "parts": _parts(request, store, chosen),
+        "parts": _parts(request, store, chosen, verdict),
         "price": _price(answer, chosen, verdict),
         "paths": paths,
         "paths_left_out": left_out,
@@ -190,37 +190,45 @@ def _changes(answer: Document, names: Sequence[str]) -> tuple[list[Document], li
     return [row for _, row in changed], same
 
 
-def _parts(request: AssessRequest, store: Store, name: str) -> list[list[str]]:
-    """Name and price of every part of a chain."""
+def _parts(request: AssessRequest, store: Store, name: str, verdict: Document | None) -> list[list[str]]:
+    """Name and price of what has to be paid for: the verdict's bill, or the whole chain without one."""
     if name == NOTHING:
         return []
     given = {chain.name: chain for chain in request.chains or () if not isinstance(chain, str)}
-    document = chain_to_document(given.get(name) or stored_chain(store, name))
-    currency = document["currency"]
-    rows = [
-        [_part_words(part), "" if part.get("price") is None else _money(part["price"], currency)]
-        for part in document["parts"]
+    chain = given.get(name) or stored_chain(store, name)
+    lines = _bill(verdict, name) or bill_document(bill(chain, None, baseline_is_up=True))
+    return [
+        [_line_words(line), "not known" if line["pays"] is None else _to_pay(line["pays"], chain.currency)]
+        for line in lines
+        if line["state"] in ("bought", "set off") and line["pays"] != 0
     ]
-    for key, words in (("labour_price", "Labour"), ("visit_price", "Visit")):
-        if document.get(key) is not None:
-            rows.append([words, _money(document[key], currency)])
-    return rows
 
 
-def _part_words(part: Mapping[str, Any]) -> str:
-    length = f", {part['length_m']:g} m of {part['cable']}" if "length_m" in part else ""
-    return f"{part['name']}{length}"
+def _to_pay(value: float, currency: str) -> str:
+    return f"{value:.0f} {currency}" if float(value).is_integer() else f"{value:.2f} {currency}"
+
+
+def _bill(verdict: Document | None, name: str) -> list[Document]:
+    return list(verdict["bill"]) if verdict and verdict["candidate"] == name else []
+
+
+def _line_words(line: Mapping[str, Any]) -> str:
+    words = ", ".join(filter(None, (line["name"], line["detail"])))
+    return f"less {words}, bought instead" if line["what"] == "baseline" else words
 
 
 def _price(answer: Document, name: str, verdict: Document | None) -> str:
+    """What it comes to, what stays and what comes down."""
     chain = answer["chains"].get(name)
     if chain is None:
         return ""
-    if chain["price"] is None:
-        return "the price of a part is not known"
-    words = f"together {_money(chain['price'], chain['currency'])}"
-    difference = verdict["price_difference"] if verdict else None
-    return words if difference is None else f"{words}; to pay {_money(difference, chain['currency'])}"
+    lines = _bill(verdict, name)
+    pays = verdict["price_difference"] if verdict and lines else chain["price"]
+    told = ["The price of a part is not known." if pays is None else f"Together {_to_pay(pays, chain['currency'])}."]
+    for state, words in (("kept", "Stays up, not paid again"), ("taken down", "Comes down")):
+        named = [_line_words(line) for line in lines if line["state"] == state and line["what"] == "part"]
+        told += [f"{words}: {'; '.join(named)}."] if named else []
+    return " ".join(told)
 
 
 def _reading(answer: Document, one: Mapping[str, Any]) -> str:

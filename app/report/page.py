@@ -55,7 +55,7 @@ def _body(content: Mapping[str, Any], pdf_address: str) -> Iterable[str]:
     if content["same"]:
         yield f"<p>{len(content['same'])} unchanged: {escape(', '.join(content['same']))}.</p>"
     if content["parts"]:
-        yield "<h2>Parts and prices</h2>" + _table(["Part", "Price"], content["parts"], "prices")
+        yield "<h2>Parts and prices</h2>" + _table(["To be paid", "Price"], content["parts"], "prices")
         yield f"<p>{escape(content['price'])}</p>"
     yield "<h2>The paths that matter</h2>" + (f"<p class='small'>{LEGEND}</p>" if content["paths"] else "")
     for row in content["paths"]:

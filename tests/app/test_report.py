@@ -67,9 +67,10 @@ def test_a_level_is_asked_for_with_its_place_and_a_reading_is_told_by_its_channe
     assert content["readings"] == ["channel 30 from Northern Range perfect"]
 
 
-def test_parts_have_prices_that_add_up_to_the_price_of_the_chain(content):
-    prices = [int(price.split()[0]) for _, price in content["parts"] if price]
-    assert f"together {sum(prices)} EUR" in content["price"]
+def test_what_is_to_be_paid_adds_up_and_what_stays_is_named(content):
+    prices = [int(price.split()[0]) for _, price in content["parts"]]
+    assert content["price"].startswith(f"Together {sum(prices)} EUR. Stays up, not paid again: Feeder")
+    assert f"for {sum(prices)} EUR" in content["decision"]
 
 
 def test_the_commissioning_sheet_has_a_line_for_each_outlet_and_multiplex(content):
