@@ -264,7 +264,7 @@ def test_a_measured_match_is_said_by_channel_and_taken(page, watched):
     expect(page.locator(".match-problem")).to_have_text(re.compile("^Choose the sweep"))
     page.locator("#match-sweep").set_input_files({"name": "a.s1p", "mimeType": "", "buffer": b"\x00\x01"})
     page.get_by_role("button", name="Read the match").click()
-    expect(page.locator(".match-problem")).to_contain_text("A.s1p: is binary, not text: export it as text")
+    expect(page.locator(".match-problem")).to_contain_text("a.s1p: is binary, not text: export it as text")
     page.locator("#match-sweep").set_input_files({"name": "a.s1p", "mimeType": "", "buffer": b"1" * 700_001})
     page.get_by_role("button", name="Read the match").click()
     expect(page.locator(".match-problem")).to_contain_text("the limit here is 700 kB")
