@@ -36,7 +36,7 @@ if TYPE_CHECKING:
 T = TypeVar("T", PathDigest, PathTerms)
 
 THREADS = min(8, os.cpu_count() or 1)
-WORTH_THREADS = 64  # paths; fewer are done before a second thread has begun
+WORTH_THREADS = 1000  # paths; two threads over 200 are no quicker than one (tests/benchmarks/bench_paths.py)
 P1812_KM = (0.25, 1000.0)  # where both methods hold whatever the profile is
 P1812_HEIGHT_M = (1.0, 3000.0)
 

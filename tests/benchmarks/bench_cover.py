@@ -3,12 +3,12 @@
 The relief of `bench_paths.py` under an invented map of 30 m whose sea, lakes, woods and towns lie in patches of 240 m.
 Every path sets the map up on the ground: its rays run over the surface, its horizons and fits over the bare ground.
 
-Medians of 5 rounds on 2 virtual Xeon processors, 2026-12-01, with other busy programs; 200 paths, 91 % meet
-the sea, and on 90 % the cover decides. Microseconds a path: whole 89, geodesics and sampling 64; over open ground in
-the same rounds 42.
+Medians of 7 rounds on 2 virtual Xeon processors, 2026-12-01, little else running; 200 paths, 91 % meet the sea, and on
+90 % the cover decides. Microseconds a path: whole 135, geodesics and sampling 90; over open ground in the same rounds
+58 (of 5 earlier rounds 89, 64 and 42).
 
-    against our numpy                                      147 (goal 15)
-    whole against its geodesics and sampling               1.42 (goal 1.5)
+    against our numpy                                      163 (goal 15)
+    whole against its geodesics and sampling               1.48 (goal 1.5)
 
 The map itself, 156 MB, is laid out once; of 10 m it would be 144 MB for a square degree, never whole in memory.
 """

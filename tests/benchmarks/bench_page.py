@@ -1,13 +1,19 @@
 """How quickly the page answers in a browser, on the demo and with 300 emissions: run it, it prints.
 
 `python tests/benchmarks/bench_page.py ROUNDS` gives medians and minima: first load, kB as sent, the click's way
-before, in and after the API, and sliding. Not yet run on an idle machine with the present code, whose `assess` took
-91 ms of one core on the demo and 1.0 s with 300 emissions (load 7), after 130 ms and 2.4 s (load 3) with the code of:
+before, in and after the API, and sliding. Medians (minima) of 5 rounds on 1 December 2026, Chromium 156 without a
+graphics card, 2 cores, nothing else running:
 
-1 December 2026, Chromium 156 without a graphics card, 2 cores that other work shared (load 3 to 5):
-demo: decision and table 1.2 s, map 1.5 s, 118 kB + 255 kB of map library; click to chances 265 ms, of which the API
-228 ms (100 ms on an idle machine); sliding 60 updates a second, 0.3 ms of script each.
-300 emissions, four chains: decision and table 4.7 s, of which the API 2.0 to 4.4 s; 182 kB.
+                                        demo             300 emissions
+    decision and table, s               2.0 (1.5)        3.5 (2.9)
+    map, s                              2.3 (2.2)        3.5 (2.9)
+    kB, besides 255 of map library      161              221
+    click to chances on screen, ms      382 (281)        1787 (1301)
+      of which the API                  286 (190)        1573 (1082)
+    slides of the aerial a second       59               59
+
+Aimed at: 150 and 400 ms from click to chances, 30 slides. What holds the clicks is `assess` (`bench_assess.py`): 0.15
+to 0.20 s and 0.9 to 1.3 s without a browser; turning the chains takes 45 to 70 % of it, the document 20 to 40 %.
 """
 
 from __future__ import annotations

@@ -3,22 +3,25 @@
 Every path goes through the same functions as an answer of the server, zones and water on. The relief is declared as
 bare ground: under surface models finer than 35 m the plain form answers. Under land cover: `bench_cover.py`.
 
-Medians of 7 rounds on 2 virtual Xeon processors (2.6 GHz, Ice Lake, 1.25 MiB L2 each), 2026-12-01, while some 20 other
-busy programs shared them; 200 paths of 2697 points, 91 % of them meet the sea. Microseconds a path: whole 58, geodesics
-and sampling 32, sampling alone 25; with 5 to 10 others 40, 22 and 18.
+Medians of 7 rounds on 2 virtual Xeon processors (2.6 GHz, Ice Lake, 1.25 MiB L2 each), 2026-12-01, little else running;
+200 paths of 2697 points, 91 % of them meet the sea. Microseconds a path: whole 38, geodesics and sampling 25, sampling
+alone 17. A million paths take 6.9 s on two threads.
 
-    against pycraf's diffraction on given profiles, warm   2.9 (goal 8)    missed; 3.6 with fewer others
-    the same, caches flushed                               2.7 (goal 3)    missed; 3.2 with fewer others
-    against pycraf's profiles and diffraction              354 (goal 60)
-    against our numpy                                      337 (goal 15)
-    sampling against plain C over samples in rows          4.4 (goal 0.7)
-    whole against its geodesics and sampling               1.61 (goal 1.5) missed
-    two threads against one                                0.87 (goal 1.7) missed: no processor was free
-    12 frequencies against 1                               1.14 (goal 1.4)
-    both methods, 3 times, 200 × 6 emissions               1.3 (goal 5)
-    fresh map against decoding ten tiles                   0.02 (goal 0.05)
-    a million paths against their sampling                 2.03 (goal 1.5) missed
-    a million paths, two threads against one               1.20 (goal 1.7) missed: as above
+    against pycraf's diffraction on given profiles, warm   3.0 (goal 8)    missed
+    the same, caches flushed                               3.0 (goal 3)
+    against pycraf's profiles and diffraction              63 (goal 60)
+    against our numpy                                      281 (goal 15)
+    sampling against plain C over samples in rows          4.7 (goal 0.7)
+    whole against its geodesics and sampling               1.60 (goal 1.5) missed; 1.48 under land cover
+    two threads against one                                0.94 (goal 1.7) missed
+    12 frequencies against 1                               1.18 (goal 1.4)
+    both methods, 3 times, 200 × 6 emissions               1.05 (goal 5)
+    fresh map against decoding ten tiles                   0.03 (goal 0.05)
+    a million paths against their sampling                 2.15 (goal 1.5) missed
+    a million paths, two threads against one               2.00 (goal 1.7)
+
+Two threads bring nothing for one rooftop: 100 paths are 4 ms, of which numpy's calls between the compiled passes hold
+the interpreter; so an answer stays on one thread below 1000 paths. Not tried: closing the formulas in compiled code.
 
 With samples in rows it was 1.4 times pycraf: each point of a path to the north lies on a memory line and a page of its
 own, 24 ns a point. In patches (terrain/patches.py) sampling takes 6.5 to 8 ns over 200 paths, 3.1 over 5 that stay in
