@@ -7,7 +7,7 @@ import pytest
 from starlette.testclient import TestClient
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "terrain"))
-from tile_server import TileServer, hgt_tile
+from tile_server import OWN_SOURCE, TileServer, hgt_tile
 
 from app import open_tiles
 from app.mapped import credits_of, with_surroundings
@@ -16,23 +16,6 @@ from app.web.main import create_app
 from terrain.cover import Cover
 from terrain.mosaic import Ground
 from terrain.overlay import Overlay
-
-OWN = """
-[hills]
-title = "Invented hills"
-holds = "elevation"
-url = "{url}/{{tile}}.hgt.gz"
-naming = "south-west"
-tile_deg = 1
-kind = "radar-surface"
-spacing_m = 1800
-samples = "points"
-datum = "WGS 84"
-typical_mb = 0.01
-largest_mb = 1
-licence = "free"
-attribution = "© nobody"
-"""
 
 
 @pytest.fixture
@@ -49,7 +32,7 @@ def tiles(tmp_path, monkeypatch):
         monkeypatch.delenv(name, raising=False)
     (tmp_path / "data").mkdir()
     with TileServer() as server:
-        (tmp_path / "data" / "sources.toml").write_text(OWN.format(url=server.url))
+        (tmp_path / "data" / "sources.toml").write_text(OWN_SOURCE.format(url=server.url))
         server.files["/N49E011.hgt.gz"] = hgt_tile(1)
         yield server
 

@@ -2,12 +2,9 @@
 
 from __future__ import annotations
 
-import threading
-import time
 from collections.abc import Iterator
 
 import pytest
-import uvicorn
 from playwright.sync_api import (
     Browser,
     BrowserContext,
@@ -23,6 +20,7 @@ from playwright.sync_api import (
 from app.demo.scenario import ensure_demo
 from app.transmitters.store import Store
 from app.web.main import create_app
+from tests.browser.serving import serving
 
 FLAGS = [
     "--headless",
@@ -47,17 +45,8 @@ NO_WEBGL = ["--disable-webgl", "--disable-webgl2", "--disable-3d-apis"]
 def address(demo_world, tmp_path_factory) -> Iterator[str]:
     store = Store.open(tmp_path_factory.mktemp("page"))  # its own: what the pages keep reaches no other test
     ensure_demo(store)
-    config = uvicorn.Config(create_app(store, demo_world.ground), port=0, log_level="error")
-    server = uvicorn.Server(config)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    end = time.monotonic() + 20
-    while not server.started:
-        assert time.monotonic() < end, "the server did not start"
-        time.sleep(0.05)
-    yield f"http://127.0.0.1:{server.servers[0].sockets[0].getsockname()[1]}"
-    server.should_exit = True
-    thread.join(10)
+    with serving(create_app(store, demo_world.ground)) as own:
+        yield own
 
 
 @pytest.fixture(scope="session")

@@ -4,45 +4,27 @@ from __future__ import annotations
 
 import re
 import sys
-import threading
-import time
 from pathlib import Path
 
 import pytest
-import uvicorn
 from axe_playwright_python.sync_playwright import Axe
 from playwright.sync_api import expect
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "terrain"))
-from tile_server import TileServer, hgt_tile
+from tile_server import OWN_SOURCE, TileServer, hgt_tile
 
 from app.demo.scenario import ensure_demo
 from app.transmitters.store import Store
 from app.transmitters.template import import_template
 from app.web.main import create_app
 from app.world import open_ground
+from tests.browser.serving import serving
 
 pytestmark = pytest.mark.browser
 
 SOON_MS = 30_000  # a first answer loads libraries
 
 RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa", "best-practice"]
-OWN = """
-[hills]
-title = "Invented hills"
-holds = "elevation"
-url = "{url}/{{tile}}.hgt.gz"
-naming = "south-west"
-tile_deg = 1
-kind = "radar-surface"
-spacing_m = 1800
-samples = "points"
-datum = "WGS 84"
-typical_mb = 0.01
-largest_mb = 1
-licence = "free with credit"
-attribution = "© nobody"
-"""
 MASTS = """transmitter,latitude_deg,longitude_deg,multiplex,channel,raster,system,mode,erp_kw,polarisation,antenna_agl_m
 North Mast,49.8,11.5,Blue,27,europe-uhf-8,DVB-T2,256-QAM 2/3,50,horizontal,180
 North Mast,49.8,11.5,Green,33,europe-uhf-8,DVB-T2,256-QAM 2/3,50,horizontal,180
@@ -66,20 +48,12 @@ def own_address(tiles, tmp_path, monkeypatch):
     for name in ("http_proxy", "HTTP_PROXY", "https_proxy", "HTTPS_PROXY"):
         monkeypatch.delenv(name, raising=False)
     store = Store.open(tmp_path / "data")
-    (tmp_path / "data" / "sources.toml").write_text(OWN.format(url=tiles.url))
+    (tmp_path / "data" / "sources.toml").write_text(OWN_SOURCE.format(url=tiles.url))
     (tmp_path / "mine.csv").write_text(MASTS)
     ensure_demo(store)
     import_template(tmp_path / "mine.csv", store)
-    server = uvicorn.Server(uvicorn.Config(create_app(store, open_ground(False)), port=0, log_level="error"))
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    end = time.monotonic() + 20
-    while not server.started:
-        assert time.monotonic() < end, "the server did not start"
-        time.sleep(0.05)
-    yield f"http://127.0.0.1:{server.servers[0].sockets[0].getsockname()[1]}"
-    server.should_exit = True
-    thread.join(10)
+    with serving(create_app(store, open_ground(False))) as own:
+        yield own
 
 
 @pytest.fixture

@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 
 sys.path.insert(0, str(Path(__file__).parent))
-from tile_server import TileServer, hgt_tile
+from tile_server import OWN_SOURCE, TileServer, hgt_tile
 
 from terrain.cache import ArrayCache
 from terrain.locks import alone
@@ -37,22 +37,6 @@ print("ready", flush=True)
 sys.stdin.readline()
 done = download(plan, {}, patience=Patience(tries=3, first_wait_s=0.01))
 print(sorted({one.state for one in done.outcomes}), flush=True)
-"""
-OWN = """
-[hills]
-title = "Invented hills"
-holds = "elevation"
-url = "{url}/{{tile}}.hgt.gz"
-naming = "south-west"
-tile_deg = 1
-kind = "radar-surface"
-spacing_m = 1800
-samples = "points"
-datum = "WGS 84"
-typical_mb = 0.01
-largest_mb = 1
-licence = "free"
-attribution = "© nobody"
 """
 
 
@@ -94,7 +78,7 @@ def test_two_processes_fetch_each_tile_once_and_whole(tmp_path, monkeypatch):
     for name in ("http_proxy", "HTTP_PROXY", "all_proxy", "ALL_PROXY"):
         monkeypatch.delenv(name, raising=False)
     with TileServer() as server:
-        (tmp_path / "sources.toml").write_text(OWN.format(url=server.url))
+        (tmp_path / "sources.toml").write_text(OWN_SOURCE.format(url=server.url))
         for south in (48, 49, 50):
             for east in (10, 11, 12):
                 server.files[f"/N{south}E{east:03d}.hgt.gz"] = hgt_tile(south + east, 121)

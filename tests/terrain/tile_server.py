@@ -16,6 +16,24 @@ import numpy as np
 from affine import Affine
 from rasterio.io import MemoryFile
 
+# How a user names such a server in sources.toml.
+OWN_SOURCE = """
+[hills]
+title = "Invented hills"
+holds = "elevation"
+url = "{url}/{{tile}}.hgt.gz"
+naming = "south-west"
+tile_deg = 1
+kind = "radar-surface"
+spacing_m = 1800
+samples = "points"
+datum = "WGS 84"
+typical_mb = 0.01
+largest_mb = 1
+licence = "free with credit"
+attribution = "© nobody"
+"""
+
 
 def hgt_tile(seed: int, side: int = 61) -> bytes:
     """A small gzipped tile of invented hills."""
